@@ -1,0 +1,1 @@
+"""Finds and explains word associations in text."""
