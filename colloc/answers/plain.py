@@ -1,0 +1,138 @@
+"""Columns as aligned plain text: how numbers and words of any script look to a person.
+
+Used by ``repr`` of an answer and by the command line's tables.
+"""
+
+from __future__ import annotations
+
+import math
+import unicodedata
+from collections.abc import Sequence
+from typing import Any
+
+DECIMALS = 4
+"""Digits after the point of a measure, enough to tell neighbours in a ranking apart."""
+
+_FIRST_STRONG_ISOLATE = "\u2068"
+_POP_ISOLATE = "\u2069"
+_RIGHT_TO_LEFT = frozenset(("R", "AL", "AN"))
+_ZERO_WIDTH = frozenset(("Mn", "Me", "Cf"))
+_HANGUL_VOWELS_AND_FINALS = range(0x1160, 0x1200)
+
+
+def width(text: str) -> int:
+    """Terminal columns that ``text`` takes.
+
+    Wide and fullwidth characters (UAX #11) take two, combining marks and
+    format characters none.
+    """
+    if text.isascii():
+        return len(text)
+    return sum(map(_character_width, text))
+
+
+def _character_width(character: str) -> int:
+    if unicodedata.category(character) in _ZERO_WIDTH or ord(character) in _HANGUL_VOWELS_AND_FINALS:
+        return 0
+    return 2 if unicodedata.east_asian_width(character) in "WF" else 1
+
+
+def shown_text(text: str) -> str:
+    """A cell's text, safe to print.
+
+    Control characters and bidirectional controls are written as escapes, since
+    text is not trusted to steer a terminal. Text with right-to-left letters
+    stands in an isolate (UAX #9), so that the columns beside it keep their place.
+    """
+    if text.isascii() and text.isprintable():
+        return text
+    escaped = "".join(_escape(character) if _steers(character) else character for character in text)
+    if any(unicodedata.bidirectional(character) in _RIGHT_TO_LEFT for character in escaped):
+        return f"{_FIRST_STRONG_ISOLATE}{escaped}{_POP_ISOLATE}"
+    return escaped
+
+
+def _steers(character: str) -> bool:
+    # Joiners and soft hyphens (also Cf) belong to words and stay; Cs would not encode.
+    return unicodedata.category(character) in ("Cc", "Cs", "Zl", "Zp") or character in _BIDI_CONTROLS
+
+
+_BIDI_CONTROLS = frozenset("\u061c\u200e\u200f\u202a\u202b\u202c\u202d\u202e\u2066\u2067\u2068\u2069")
+
+
+def _escape(character: str) -> str:
+    return f"\\x{ord(character):02x}" if ord(character) < 256 else f"\\u{ord(character):04x}"
+
+
+def number_text(value: float) -> str:
+    """A measure's value with ``DECIMALS`` decimals; very small and very large ones with an exponent.
+
+    >>> [number_text(v) for v in (0.25, -0.0, 12345.678, 3e-9, float("nan"), float("-inf"))]
+    ['0.2500', '0.0000', '12345.6780', '3.000e-09', '', '-inf']
+    """
+    if math.isnan(value):
+        return ""
+    if math.isinf(value):
+        return "inf" if value > 0 else "-inf"
+    size = abs(value)
+    if size == 0:
+        return f"{0.0:.{DECIMALS}f}"
+    if size < 10**-DECIMALS or size >= 1e12:
+        return f"{value:.{DECIMALS - 1}e}"
+    return f"{value:.{DECIMALS}f}"
+
+
+def cell_text(value: Any) -> str:
+    """What a table shows for one value; nothing where it is missing."""
+    if value is None:
+        return ""
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    if isinstance(value, int):
+        return str(value)
+    if isinstance(value, float):
+        return number_text(value)
+    return shown_text(str(value))
+
+
+class Grid:
+    """Rows of cells put into aligned lines: numbers to the right, text to the left.
+
+    Parameters
+    ----------
+    names : sequence of str
+    numeric : sequence of bool
+        Which columns hold numbers.
+
+    Rows may come in several lots; a later lot never narrows a column.
+    """
+
+    def __init__(self, names: Sequence[str], numeric: Sequence[bool]) -> None:
+        self._heads = [shown_text(name) for name in names]
+        self._numeric = list(numeric)
+        self._widths = [width(head) for head in self._heads]
+
+    def lines(self, columns: Sequence[Sequence[Any]], *, heading: bool) -> list[str]:
+        """Lines for equally long columns of values, after the column names where ``heading``."""
+        cells = [self._column(values, numeric) for values, numeric in zip(columns, self._numeric, strict=True)]
+        for place, column in enumerate(cells):
+            self._widths[place] = max([self._widths[place], *map(width, column)])
+        rows = zip(*cells, strict=True)
+        return [self._line(row) for row in ([tuple(self._heads), *rows] if heading else rows)]
+
+    @staticmethod
+    def _column(values: Sequence[Any], numeric: bool) -> list[str]:
+        texts = [cell_text(value) for value in values]
+        # Whole numbers held as floats (halved margins) read as counts where the whole column is whole.
+        whole = numeric and all(
+            isinstance(value, float) and math.isfinite(value) and value == int(value) and abs(value) < 1e15
+            for value in values
+        )
+        return [str(int(value)) for value in values] if whole and values else texts
+
+    def _line(self, cells: Sequence[str]) -> str:
+        padded = []
+        for cell, numeric, wanted in zip(cells, self._numeric, self._widths, strict=True):
+            space = " " * (wanted - width(cell))
+            padded.append(space + cell if numeric else cell + space)
+        return "  ".join(padded).rstrip()
