@@ -1,0 +1,131 @@
+"""The command line: its commands, and the one place where errors become a line and an exit code.
+
+A command module has ``register(app)``, which adds light functions: whatever they
+need is imported when they run, so that ``colloc --help`` loads no numpy.
+"""
+
+from __future__ import annotations
+
+import errno
+import os
+import sys
+from collections.abc import Sequence
+from importlib import import_module
+
+import typer
+from typer.exceptions import Abort, TyperException
+from typer.main import get_command
+
+from colloc.cli.output import ReaderGone, remark
+from colloc.errors import CollocError, InputOutputError, LockedError, StoreDamagedError
+
+COMMAND_MODULES: tuple[str, ...] = ()
+"""Modules of this folder with a ``register`` function, in the order of the help page."""
+
+INTERRUPTED = 130
+"""Exit code after control-C, as shells report it (128 + SIGINT)."""
+
+_DISK_ERRORS = frozenset(
+    (errno.EIO, errno.ENOSPC, errno.EROFS, errno.EFBIG, errno.EDQUOT, errno.EACCES, errno.EPERM, errno.EMFILE)
+)
+"""What the machine can do to us anywhere; any other OSError that gets here is a bug of ours."""
+
+
+def build_app() -> typer.Typer:
+    """The program with all its commands."""
+    app = typer.Typer(
+        name="colloc",
+        help="Finds word associations in text and explains them. Counts are kept in one SQLite file, the STORE.",
+        epilog="Begin with `colloc demo`. `colloc COMMAND --help` tells more about a command.",
+        no_args_is_help=True,
+        rich_markup_mode=None,
+        pretty_exceptions_enable=False,
+        context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 110},
+    )
+    app.callback(invoke_without_command=True)(_root)
+    for name in COMMAND_MODULES:
+        import_module(f"colloc.cli.{name}").register(app)
+    return app
+
+
+def _root(version: bool = typer.Option(False, "--version", help="Print the version and leave.")) -> None:
+    if version:
+        from importlib.metadata import version as version_of
+
+        from colloc.cli.output import print_lines
+
+        print_lines([f"colloc {version_of('colloc')}"])
+        raise typer.Exit
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run one command line and return its exit code.
+
+    Errors that a user can cause become one line on standard error, ``colloc: ...``;
+    anything unexpected keeps its traceback.
+    """
+    try:
+        code = get_command(build_app()).main(
+            args=None if arguments is None else list(arguments),
+            prog_name="colloc",
+            standalone_mode=False,
+        )
+    except CollocError as error:
+        return _failed(error)
+    except TyperException as error:
+        return _wrong_usage(error)
+    except (Abort, KeyboardInterrupt):
+        return _interrupted()
+    except ReaderGone:
+        _forget_output()
+        return 0
+    except OSError as error:
+        if error.errno not in _DISK_ERRORS:
+            raise
+        place = f"{error.filename}: " if error.filename else ""
+        return _failed(InputOutputError(f"{place}{error.strerror}"))
+    except Exception as error:
+        known = _from_sqlite(error)
+        if known is None:
+            raise
+        return _failed(known)
+    return _interrupted() if code == INTERRUPTED else code if isinstance(code, int) else 0
+
+
+def _failed(error: CollocError) -> int:
+    remark(f"colloc: {error}")
+    return error.exit_code
+
+
+def _wrong_usage(error: TyperException) -> int:
+    context = getattr(error, "ctx", None)
+    message = " ".join(error.format_message().split())
+    if type(error).__name__ == "NoArgsIsHelpError":
+        remark(error.format_message())
+    else:
+        command = context.command_path if context is not None else "colloc"
+        remark(f"colloc: {message.rstrip('.')}; see `{command} --help`")
+    return error.exit_code
+
+
+def _interrupted() -> int:
+    remark("colloc: interrupted")
+    return INTERRUPTED
+
+
+def _forget_output() -> None:
+    """Let the interpreter's last flush go nowhere instead of complaining about the closed pipe."""
+    with open(os.devnull, "wb") as nowhere:
+        os.dup2(nowhere.fileno(), sys.stdout.fileno())
+
+
+def _from_sqlite(error: Exception) -> CollocError | None:
+    """A failure of the disk or of locking that SQLite reports; None for anything else."""
+    name = getattr(error, "sqlite_errorname", "")
+    if name.startswith(("SQLITE_IOERR", "SQLITE_FULL", "SQLITE_CANTOPEN", "SQLITE_READONLY")):
+        return InputOutputError(f"{error}; free some space or check the disk, then run the same command again")
+    if name.startswith(("SQLITE_BUSY", "SQLITE_LOCKED")):
+        return LockedError(f"{error}; another process is writing, try again")
+    if name.startswith(("SQLITE_CORRUPT", "SQLITE_NOTADB")):
+        return StoreDamagedError(f"{error}; run `colloc check STORE`")
+    return None

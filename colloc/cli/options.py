@@ -1,0 +1,173 @@
+"""Options that several commands share: the same idea has the same name and help everywhere."""
+
+from __future__ import annotations
+
+import difflib
+from collections.abc import Iterable, Sequence
+from pathlib import Path
+from typing import Annotated, Any, Literal
+
+import typer
+
+from colloc.cli.sizes import size_in_bytes
+from colloc.errors import UsageError
+from colloc.settings import Inside, Margins
+
+Format = Literal["table", "csv", "tsv", "jsonl", "json", "parquet"]
+
+
+def complete_measures(incomplete: str) -> list[str]:
+    """Names of measures for shell completion."""
+    from colloc.measures.catalogue import MEASURES
+
+    return [name for name in ("joint", *MEASURES) if name.startswith(incomplete)]
+
+
+def split_names(values: Iterable[str] | None) -> list[str] | None:
+    """``--show pmi,g2 --show dice`` as one list without repeats; None where the option was not given."""
+    if not values:
+        return None
+    names = [name.strip() for value in values for name in value.split(",")]
+    return list(dict.fromkeys(name for name in names if name))
+
+
+def shown_measures(values: Iterable[str] | None) -> list[str] | None:
+    """Names given with ``--show``, ``all`` standing for the whole catalogue.
+
+    Raises
+    ------
+    UsageError
+        For an unknown name, with the nearest known one.
+    """
+    from colloc.measures.catalogue import MEASURES
+
+    names = split_names(values)
+    if names is None:
+        return None
+    if "all" in names:
+        return list(MEASURES)
+    for name in names:
+        check_measure(name)
+    return names
+
+
+def check_measure(name: str | None) -> None:
+    """Raise UsageError for a name that is neither ``joint`` nor in the catalogue."""
+    from colloc.measures.catalogue import MEASURES
+
+    if name is None or name == "joint" or name in MEASURES:
+        return
+    near = difflib.get_close_matches(name, ["joint", *MEASURES], n=1)
+    meant = f"did you mean {near[0]!r}? " if near else ""
+    raise UsageError(f"unknown measure {name!r}; {meant}choose from joint, {', '.join(MEASURES)}")
+
+
+def read_words(words: Sequence[str], listed: Path | None) -> list[str]:
+    """Words given as arguments, then those of a file, one a line.
+
+    Raises
+    ------
+    UsageError
+        Where there is no word at all.
+    NoInputError, DataError
+        Where the file is missing, or not UTF-8.
+    """
+    from colloc.cli.tables_in import read_lines
+
+    found = [*words, *(read_lines(listed) if listed is not None else [])]
+    if not found:
+        raise UsageError("give at least one word, or a file of words with --words-from")
+    return found
+
+
+def _option(*names: str, help: str, **more: Any) -> Any:
+    return typer.Option(*names, help=help, **more)
+
+
+StoreArgument = Annotated[Path, typer.Argument(metavar="STORE", help="The store: one SQLite file.")]
+InputArgument = Annotated[
+    list[str],
+    typer.Argument(metavar="INPUT...", help="Files, folders or quoted globs; - reads standard input."),
+]
+
+# Result
+FormatOption = Annotated[Format, _option("--format", "-f", help="How the result is written.")]
+OutputOption = Annotated[
+    Path | None, _option("--output", "-o", help="Write to this file instead of standard output.", metavar="FILE")
+]
+QuietOption = Annotated[bool, _option("--quiet", "-q", help="No settings line, progress or remarks.")]
+BesideOption = Annotated[
+    bool, _option("--settings-beside", help="Also write the settings as JSON to FILE.settings.json; needs -o.")
+]
+LimitOption = Annotated[int, _option("--limit", "-n", min=0, help="Rows shown; 0 for all.")]
+
+# Measures
+MeasureOption = Annotated[
+    str | None,
+    _option("--measure", "-m", help="Rank by this measure, or by joint.", autocompletion=complete_measures),
+]
+ShowOption = Annotated[
+    list[str] | None,
+    _option(
+        "--show",
+        help="Measures to show, separated by commas or repeated; all for the whole catalogue.",
+        autocompletion=complete_measures,
+    ),
+]
+
+# Which co-occurrences
+LayerOption = Annotated[str | None, _option("--layer", help="Layer counted: form, fold, lemma, ...")]
+WindowOption = Annotated[int | None, _option("--window", "-w", help="Words of reach on either side.")]
+LeftOption = Annotated[int | None, _option("--left", help="Words of reach to the left; goes with --right.")]
+RightOption = Annotated[int | None, _option("--right", help="Words of reach to the right; goes with --left.")]
+UnitOption = Annotated[
+    bool, _option("--unit", help="Count the units (--inside) that hold both words, instead of windows.")
+]
+InsideOption = Annotated[Inside | None, _option("--inside", help="What no window reaches beyond.")]
+MarginsOption = Annotated[
+    Margins | None,
+    _option("--margins", help="What one observation is: a pair of tokens, a position, or a token."),
+]
+DirectedOption = Annotated[bool, _option("--directed", help="Count (x, y) only where y follows x.")]
+NoSpanOption = Annotated[
+    bool, _option("--no-span", help="With --margins tokens: divide by the number of tokens, not of pairs.")
+]
+WhereOption = Annotated[
+    list[str] | None,
+    _option("--where", help="Only documents with this metadata: key=value, key=a,b or key=1990..1999. Repeats join."),
+]
+RelationOption = Annotated[
+    str | None,
+    _option("--relation", help="Pairs of head and dependent in this relation; an empty name takes all relations."),
+]
+
+# Thresholds
+MinCountOption = Annotated[int, _option("--min-count", min=0, help="Least joint count shown.")]
+MinWordCountOption = Annotated[int, _option("--min-word-count", min=0, help="Least frequency of each word shown.")]
+MinDocsOption = Annotated[int, _option("--min-docs", min=0, help="Least number of documents that hold the row.")]
+AvoidOption = Annotated[
+    bool, _option("--avoid", help="Also rows met as often as expected or less, not only attraction.")
+]
+
+# Resources
+JobsOption = Annotated[int | None, _option("--jobs", "-j", min=1, help="Processes; all cores when not given.")]
+MemoryOption = Annotated[str, _option("--memory", metavar="SIZE", help="Memory to stay below, all processes together.")]
+TempOption = Annotated[
+    str | None, _option("--temp", metavar="FOLDER", help="Folder for temporary files; the system's when not given.")
+]
+
+DEFAULT_MEMORY = "2GB"
+
+
+def memory_bytes(text: str) -> int:
+    """The value of ``--memory``; at least 64 MB, below which no block of text can be held.
+
+    Raises
+    ------
+    UsageError
+        Where it is no size, or too small.
+    """
+    memory = size_in_bytes(text)
+    if memory < 64 * 2**20:
+        raise UsageError(f"--memory must be at least 64MB, not {text}")
+    return memory

@@ -1,0 +1,133 @@
+"""Where results and remarks go: data to standard output or a file, everything else to standard error."""
+
+from __future__ import annotations
+
+import contextlib
+import json
+import sys
+from collections.abc import Iterable, Iterator, Mapping
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING, Any, BinaryIO
+
+from colloc.cli.render import make_writer
+from colloc.errors import UsageError
+from colloc.exports.replacing import replacing
+
+if TYPE_CHECKING:
+    from colloc.answers.columns import Columns
+
+
+class ReaderGone(Exception):
+    """Whoever read our standard output has closed it (``| head``): nothing more is wanted."""
+
+
+@dataclass(frozen=True, slots=True)
+class Target:
+    """Where and how one command's result is written.
+
+    Parameters
+    ----------
+    format : str
+        One of the formats of ``render.make_writer``.
+    path : Path or None
+        ``None`` or ``-``: standard output.
+    quiet : bool
+        No remarks on standard error.
+    settings_beside : bool
+        Also write the settings as JSON to ``PATH.settings.json``.
+    """
+
+    format: str = "table"
+    path: Path | None = None
+    quiet: bool = False
+    settings_beside: bool = False
+
+    def __post_init__(self) -> None:
+        if self.settings_beside and not self.to_file:
+            raise UsageError("--settings-beside writes next to a file: name one with -o")
+        if self.format == "parquet" and not self.to_file and sys.stdout.isatty():
+            raise UsageError("parquet is not for a terminal: name a file with -o")
+
+    @property
+    def to_file(self) -> bool:
+        return self.path is not None and str(self.path) != "-"
+
+
+@contextlib.contextmanager
+def opened(path: Path | None) -> Iterator[BinaryIO]:
+    """The file (whole or not there), or standard output for ``None`` and ``-``."""
+    if path is not None and str(path) != "-":
+        with replacing(path) as stream:
+            yield stream
+        return
+    try:
+        sys.stdout.flush()
+        yield sys.stdout.buffer
+        sys.stdout.buffer.flush()
+    except BrokenPipeError as error:
+        raise ReaderGone from error
+
+
+def deliver(answer: Columns, target: Target, command: str) -> None:
+    """Write an answer, its settings line on standard error first."""
+    deliver_parts([answer], answer.settings, target, command)
+
+
+def deliver_parts(parts: Iterable[Columns], settings: Mapping[str, Any], target: Target, command: str) -> None:
+    """Write an answer that comes in parts with the same columns, holding one part at a time."""
+    remark(settings_line(command, settings), quiet=target.quiet)
+    with opened(target.path) as stream:
+        writer = make_writer(target.format, stream, settings)
+        for part in parts:
+            writer.write(part)
+        writer.close()
+    if target.settings_beside and target.path is not None:
+        write_settings(target.path, settings, command)
+
+
+def write_settings(path: Path, settings: Mapping[str, Any], command: str) -> None:
+    """The settings of the result ``path`` as JSON in ``PATH.settings.json``."""
+    from importlib.metadata import version
+
+    record = {"colloc": version("colloc"), "command": command, "settings": dict(settings)}
+    with replacing(path.with_name(f"{path.name}.settings.json")) as stream:
+        stream.write((json.dumps(record, ensure_ascii=False, indent=2) + "\n").encode())
+
+
+def print_lines(lines: Iterable[str]) -> None:
+    """Plain lines to standard output, for commands whose result is not a table."""
+    with opened(None) as stream:
+        stream.write("".join(f"{line}\n" for line in lines).encode())
+
+
+def remark(text: str, *, quiet: bool = False) -> None:
+    """One line on standard error, unless quiet."""
+    if not quiet:
+        print(text, file=sys.stderr, flush=True)
+
+
+def settings_line(command: str, settings: Mapping[str, Any]) -> str:
+    """The header line: what was asked, in words that are options of the command.
+
+    >>> settings_line("pairs", {"layer": "fold", "kind": "window", "left": 0, "right": 5, "where": "", "min_count": 5})
+    '# pairs: layer fold; window 5; min count 5'
+    """
+    shown = dict(settings)
+    if shown.get("kind") == "window":
+        # A window tally is stored as followers; what the user chose is one number for both sides.
+        shown = {("window" if key == "kind" else key): value for key, value in shown.items()}
+        shown["window"] = shown.pop("right")
+        del shown["left"]
+    phrases = [_phrase(key.replace("_", " "), value) for key, value in shown.items()]
+    return f"# {command}: " + "; ".join(phrase for phrase in phrases if phrase)
+
+
+def _phrase(key: str, value: Any) -> str:
+    if value is None or value is False or value in ("", [], ()):
+        return ""
+    if value is True:
+        return key
+    if isinstance(value, list | tuple):
+        return f"{key} {', '.join(map(str, value))}"
+    return f"{key} {value}"

@@ -1,0 +1,211 @@
+"""Tables and lists that users bring: CSV, TSV and JSON Lines, read a stretch at a time."""
+
+from __future__ import annotations
+
+import csv
+import io
+import json
+import sys
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any, BinaryIO, Literal
+
+from colloc.cli.spreadsheets import restore
+from colloc.errors import DataError, NoInputError
+
+TableFormat = Literal["auto", "csv", "tsv", "jsonl"]
+ROWS_A_PART = 1 << 16
+LONGEST_FIELD = 1 << 24
+"""Characters of one CSV field; the library's own limit is too small for text columns."""
+
+
+@dataclass(frozen=True, slots=True)
+class Rows:
+    """A stretch of a table.
+
+    Attributes
+    ----------
+    name : str
+        The file, as errors name it.
+    columns : dict of str to list
+        Values by column: text from CSV and TSV, JSON values from JSON Lines (None where a row has no such key).
+    lines : list of int
+        The line of the file on which each row ends.
+    """
+
+    name: str
+    columns: dict[str, list[Any]]
+    lines: list[int]
+
+    def __len__(self) -> int:
+        return len(self.lines)
+
+
+def read_rows(path: Path, file_format: TableFormat = "auto") -> Iterator[Rows]:
+    """Stretches of a table; ``-`` is standard input; spreadsheet guards are taken off.
+
+    ``auto`` goes by the file's ending, else by its first line: an opening brace is
+    JSON Lines, a tab is TSV, anything else CSV. A table with a header and no rows
+    gives one empty stretch.
+
+    Raises
+    ------
+    NoInputError
+        Where the file is missing or empty.
+    DataError
+        Where a line cannot be read; the message names file and line.
+    """
+    with _opened_text(path) as stream:
+        name = "standard input" if str(path) == "-" else str(path)
+        lines = _Lines(stream, name)
+        first = lines.peek()
+        if not first.strip():
+            raise NoInputError(f"{name}: the table is empty; it needs a header line and rows")
+        chosen = _format_of(path, first) if file_format == "auto" else file_format
+        if chosen == "jsonl":
+            yield from _json_rows(lines)
+        else:
+            yield from _delimited_rows(lines, "\t" if chosen == "tsv" else ",")
+
+
+def read_lines(path: Path) -> list[str]:
+    """Lines of a UTF-8 text file without their ends, blank ones left out."""
+    with _opened_text(path) as stream:
+        stripped = (line.strip() for line in _Lines(stream, str(path)))
+        return [line for line in stripped if line]
+
+
+@contextmanager
+def _opened_text(path: Path) -> Iterator[BinaryIO]:
+    if str(path) == "-":
+        yield sys.stdin.buffer
+        return
+    try:
+        stream = open(path, "rb")
+    except FileNotFoundError as error:
+        raise NoInputError(f"{path}: no such file") from error
+    except OSError as error:
+        raise NoInputError(f"{path}: cannot be read: {error.strerror}") from error
+    with stream:
+        yield stream
+
+
+class _Lines:
+    """Decoded lines with their ends, counted, a byte order mark taken off."""
+
+    def __init__(self, stream: BinaryIO, name: str) -> None:
+        self.name = name
+        self.number = 0
+        self._stream = stream
+        self._ahead: str | None = None
+
+    def peek(self) -> str:
+        self._ahead = self._decode(self._stream.readline()).removeprefix("\ufeff")
+        return self._ahead
+
+    def __iter__(self) -> Iterator[str]:
+        while True:
+            line, self._ahead = self._ahead, None
+            if line is None:
+                line = self._decode(self._stream.readline())
+            if not line:
+                return
+            self.number += 1
+            yield line
+
+    def _decode(self, line: bytes) -> str:
+        try:
+            return line.decode("utf-8")
+        except UnicodeDecodeError as error:
+            place = f"{self.name}:{self.number + 1}"
+            raise DataError(
+                f"{place}: not UTF-8 (byte {error.start + 1} of the line); convert the file first"
+            ) from error
+
+
+def _format_of(path: Path, first_line: str) -> TableFormat:
+    ending: dict[str, TableFormat] = {".csv": "csv", ".tsv": "tsv", ".jsonl": "jsonl", ".ndjson": "jsonl"}
+    if path.suffix.lower() in ending:
+        return ending[path.suffix.lower()]
+    if first_line.lstrip().startswith("{"):
+        return "jsonl"
+    return "tsv" if "\t" in first_line else "csv"
+
+
+def _delimited_rows(lines: _Lines, delimiter: str) -> Iterator[Rows]:
+    csv.field_size_limit(LONGEST_FIELD)
+    reader = csv.reader(lines, delimiter=delimiter, strict=True)
+    names: list[str] = []
+    rows: list[list[str]] = []
+    ends: list[int] = []
+    try:
+        names = [restore(name.strip()) for name in next(reader)]
+        _check_names(names, lines)
+        for row in reader:
+            if not row:
+                continue
+            if len(row) != len(names):
+                raise DataError(
+                    f"{lines.name}:{lines.number}: {len(row)} cells where the header has {len(names)}; "
+                    f"quote cells that hold the separator"
+                )
+            rows.append([restore(cell) for cell in row])
+            ends.append(lines.number)
+            if len(rows) == ROWS_A_PART:
+                yield _transposed(lines.name, names, rows, ends)
+                rows, ends = [], []
+    except csv.Error as error:
+        raise DataError(f"{lines.name}:{lines.number}: not a table of the expected form: {error}") from error
+    yield _transposed(lines.name, names, rows, ends)
+
+
+def _check_names(names: list[str], lines: _Lines) -> None:
+    twice = sorted({name for name in names if names.count(name) > 1})
+    if twice:
+        raise DataError(f"{lines.name}:1: the header names {', '.join(map(repr, twice))} twice; rename one")
+
+
+def _transposed(name: str, names: list[str], rows: list[list[str]], ends: list[int]) -> Rows:
+    columns = zip(*rows, strict=True) if rows else ((),) * len(names)
+    return Rows(name, {column: list(values) for column, values in zip(names, columns, strict=True)}, ends)
+
+
+def _json_rows(lines: _Lines) -> Iterator[Rows]:
+    names: list[str] = []
+    rows: list[dict[str, Any]] = []
+    ends: list[int] = []
+    for line in lines:
+        if not line.strip():
+            continue
+        row = _json_object(line, lines)
+        if not names:
+            names = list(row)
+        elif row.keys() - set(names):
+            extra = ", ".join(sorted(map(repr, row.keys() - set(names))))
+            raise DataError(f"{lines.name}:{lines.number}: {extra} is not in the first line; give every line all keys")
+        rows.append(row)
+        ends.append(lines.number)
+        if len(rows) == ROWS_A_PART:
+            yield _gathered(lines.name, names, rows, ends)
+            rows, ends = [], []
+    yield _gathered(lines.name, names, rows, ends)
+
+
+def _json_object(line: str, lines: _Lines) -> dict[str, Any]:
+    place = f"{lines.name}:{lines.number}"
+    try:
+        row = json.loads(line)
+    except (json.JSONDecodeError, RecursionError) as error:
+        reason = (
+            f"{error.msg} at column {error.colno}" if isinstance(error, json.JSONDecodeError) else "nested too deeply"
+        )
+        raise DataError(f"{place}: not a line of JSON: {reason}") from error
+    if not isinstance(row, dict):
+        raise DataError(f"{place}: a JSON object is needed on each line, not {type(row).__name__}")
+    return row
+
+
+def _gathered(name: str, names: list[str], rows: list[dict[str, Any]], ends: list[int]) -> Rows:
+    return Rows(name, {column: [row.get(column) for row in rows] for column in names}, ends)
