@@ -88,11 +88,14 @@ class TokenSpan:
         Every document start is a unit start.
     context : int
         The first ``context`` tokens were counted elsewhere: pairs wholly inside them are not counted again.
+    ahead : int
+        The last ``ahead`` tokens are there to be looked at only and are counted with the next span (position counts).
     """
 
     terms: UInt32Array
     units: Int64Array
     context: int = 0
+    ahead: int = 0
 
 
 NO_TERM = np.uint32(0xFFFFFFFF)

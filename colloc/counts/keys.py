@@ -1,0 +1,122 @@
+"""Directed pairs of terms as 64-bit keys, and sorted runs of them.
+
+A key is ``low << 32 | high << 1 | direction`` with ``low <= high``; direction 0
+is the table cell [low, high], 1 the cell [high, low]. Both cells of a pair are
+therefore neighbours in sorted order, and keys sort as (low, high) does. Terms
+are below 2**31, so nothing overflows.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colloc.records import Int64Array, PairBlock, UInt32Array, UInt64Array
+
+_LOW = np.uint64(32)
+_ONE = np.uint64(1)
+_HIGH_MASK = np.uint64(0x7FFFFFFF)
+
+
+@dataclass(frozen=True, slots=True)
+class Run:
+    """Counted directed pairs.
+
+    Attributes
+    ----------
+    keys : uint64 array, shape (n,)
+        Sorted, unique.
+    counts : int64 array, shape (n,)
+    """
+
+    keys: UInt64Array
+    counts: Int64Array
+
+    def __len__(self) -> int:
+        return len(self.keys)
+
+
+def empty_run() -> Run:
+    """A run of no pairs."""
+    return Run(np.empty(0, np.uint64), np.empty(0, np.int64))
+
+
+def pack(first: NDArray[Any], second: NDArray[Any]) -> UInt64Array:
+    """Keys of the table cells [first, second]; on the diagonal the direction is 0."""
+    keys: UInt64Array = np.minimum(first, second).astype(np.uint64)
+    keys <<= _LOW
+    high = np.maximum(first, second).astype(np.uint64)
+    high <<= _ONE
+    keys |= high
+    keys |= first > second
+    return keys
+
+
+def run_of_keys(keys: UInt64Array) -> Run:
+    """Sort ``keys`` in place and count equal ones."""
+    if len(keys) == 0:
+        return empty_run()
+    keys.sort()
+    starts = _group_starts(keys)
+    return Run(keys[starts], np.diff(starts, append=len(keys)))
+
+
+def merge(runs: Sequence[Run]) -> Run:
+    """One run that holds the sum of all. Counts add up in int64.
+
+    The stable sort of numpy finds the sorted stretches and merges them, which
+    costs a sixth of sorting anew and needs no packing of counts beside keys.
+    """
+    filled = [run for run in runs if len(run)]
+    if len(filled) < 2:
+        return filled[0] if filled else empty_run()
+    keys = np.concatenate([run.keys for run in filled])
+    order = np.argsort(keys, kind="stable")
+    keys = keys[order]
+    counts = np.concatenate([run.counts for run in filled])[order]
+    starts = _group_starts(keys)
+    return Run(keys[starts], np.add.reduceat(counts, starts))
+
+
+def pair_block(run: Run) -> PairBlock:
+    """The run as unordered pairs with both directions beside each other, sorted by (low, high)."""
+    if len(run) == 0:
+        nothing, none = np.empty(0, np.uint32), np.empty(0, np.int64)
+        return PairBlock(nothing, nothing, none, none)
+    unordered = run.keys >> _ONE
+    starts = _group_starts(unordered)
+    lengths = np.diff(starts, append=len(unordered))
+    backward_first = (run.keys[starts] & _ONE) == _ONE
+    # a pair has one key or two; its last key is the backward one unless the only key is forward
+    last = run.counts[starts + lengths - 1]
+    forward = np.where(backward_first, 0, run.counts[starts])
+    backward = np.where(backward_first | (lengths == 2), last, 0)
+    pairs = unordered[starts]
+    return PairBlock(low_terms(pairs << _ONE), high_terms(pairs << _ONE), forward, backward)
+
+
+def low_terms(keys: UInt64Array) -> UInt32Array:
+    """The lower term of each key."""
+    return (keys >> _LOW).astype(np.uint32)
+
+
+def high_terms(keys: UInt64Array) -> UInt32Array:
+    """The higher term of each key."""
+    return ((keys >> _ONE) & _HIGH_MASK).astype(np.uint32)
+
+
+def backward(keys: UInt64Array) -> NDArray[np.bool_]:
+    """Whether each key is the cell [high, low]."""
+    return (keys & _ONE).astype(np.bool_)
+
+
+def _group_starts(values: UInt64Array) -> Int64Array:
+    """Offsets where a new value begins in the sorted, non-empty ``values``."""
+    fresh = np.empty(len(values), np.bool_)
+    fresh[0] = True
+    np.not_equal(values[1:], values[:-1], out=fresh[1:])
+    return np.flatnonzero(fresh)

@@ -1,0 +1,44 @@
+"""Pairs of tokens at distance 1..w inside one unit."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from colloc.counts.accumulating import Accumulator
+from colloc.counts.keys import Run
+from colloc.records import Int64Array, TokenSpan
+
+
+def tokens_left(span: TokenSpan) -> Int64Array:
+    """For each token the number of tokens that follow it in its unit."""
+    n = len(span.terms)
+    starts = np.concatenate([span.units[(span.units > 0) & (span.units < n)], [n]])
+    ends = np.repeat(starts, np.diff(starts, prepend=0))
+    return ends - 1 - np.arange(n)
+
+
+def add_windows(span: TokenSpan, left: int, right: int, into: Accumulator) -> None:
+    """Count ``span`` into ``into``.
+
+    Each pair of tokens i < j in one unit adds to the cell [t_i, t_j] where j - i <= right, and to the
+    cell [t_j, t_i] where j - i <= left: the table M_right + transpose(M_left). With left = 0 this is M.
+    """
+    n = len(span.terms)
+    into.load(span.terms)
+    remaining = tokens_left(span).astype(np.int32)
+    for distance in range(1, min(max(left, right), n - 1) + 1):
+        # pairs whose second token is in the context were counted with the span before
+        begin = max(0, span.context - distance)
+        first, second = slice(begin, n - distance), slice(begin + distance, n)
+        valid = remaining[first] >= distance
+        if distance <= right:
+            into.pair(first, second, valid)
+        if distance <= left:
+            into.pair(second, first, valid)
+
+
+def count_windows(span: TokenSpan, left: int, right: int) -> Run:
+    """The pairs of ``span`` alone, as a run."""
+    into = Accumulator()
+    add_windows(span, left, right, into)
+    return into.finish()
