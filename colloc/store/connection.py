@@ -1,0 +1,147 @@
+"""One connection to a store: transactions, and SQLite's errors in our words."""
+
+from __future__ import annotations
+
+import sqlite3
+from collections.abc import Iterable, Iterator, Sequence
+from contextlib import contextmanager
+from pathlib import Path
+from types import TracebackType
+from typing import Any, Self
+
+from colloc.errors import CannotCreateError, CollocError, InputOutputError, LockedError, StoreDamagedError
+from colloc.store.locking import WriterLock
+
+_FULL = {sqlite3.SQLITE_FULL}
+_BUSY = {sqlite3.SQLITE_BUSY, sqlite3.SQLITE_LOCKED}
+_READ_ONLY = {sqlite3.SQLITE_READONLY, sqlite3.SQLITE_PERM}
+_DAMAGED = {sqlite3.SQLITE_CORRUPT, sqlite3.SQLITE_NOTADB, sqlite3.SQLITE_FORMAT}
+_INPUT_OUTPUT = {sqlite3.SQLITE_IOERR, sqlite3.SQLITE_CANTOPEN}
+_DAMAGE_TEXTS = ("no such table", "no such column", "malformed")
+
+
+def in_our_words(error: sqlite3.Error, path: Path) -> CollocError | None:
+    """The error a user should see for SQLite's; None where it is a mistake of ours and must surface."""
+    code = getattr(error, "sqlite_errorcode", 0) & 0xFF  # without the extended part
+    if code in _FULL:
+        return InputOutputError(f"{path}: the disk is full; free some space and run the same command again")
+    if code in _BUSY:
+        return LockedError(f"{path}: another process is writing; try again")
+    if code in _READ_ONLY:
+        return CannotCreateError(f"{path}: cannot be written ({error}); check its permissions and those of its folder")
+    if code in _INPUT_OUTPUT:
+        return InputOutputError(f"{path}: the system could not read or write ({error})")
+    if code in _DAMAGED or any(text in str(error) for text in _DAMAGE_TEXTS):
+        return StoreDamagedError(f"{path}: damaged ({error}); run `colloc check` to see what can be saved")
+    return None
+
+
+@contextmanager
+def translated(path: Path) -> Iterator[None]:
+    """Turns SQLite's errors into ours, in this one place."""
+    try:
+        yield
+    except sqlite3.Error as error:
+        ours = in_our_words(error, path)
+        if ours is None:
+            raise
+        raise ours from error
+
+
+class Store:
+    """An open store. All SQL of the package runs through these methods.
+
+    Attributes
+    ----------
+    path : Path
+    connection : sqlite3.Connection
+        In autocommit mode; writing goes inside :meth:`transaction`.
+    writable : bool
+    """
+
+    def __init__(self, path: Path, connection: sqlite3.Connection, lock: WriterLock | None = None) -> None:
+        self.path = path
+        self.connection = connection
+        self.writable = lock is not None
+        self._lock = lock
+
+    def execute(self, sql: str, parameters: Sequence[Any] = ()) -> sqlite3.Cursor:
+        """Run one statement."""
+        with translated(self.path):
+            return self.connection.execute(sql, parameters)
+
+    def execute_many(self, sql: str, rows: Iterable[Sequence[Any]]) -> None:
+        """Run one statement for many rows."""
+        with translated(self.path):
+            self.connection.executemany(sql, rows)
+
+    def rows(self, sql: str, parameters: Sequence[Any] = ()) -> list[Any]:
+        """All rows of a query."""
+        with translated(self.path):
+            return self.connection.execute(sql, parameters).fetchall()
+
+    def row(self, sql: str, parameters: Sequence[Any] = ()) -> Any:
+        """The first row, or None."""
+        with translated(self.path):
+            return self.connection.execute(sql, parameters).fetchone()
+
+    def value(self, sql: str, parameters: Sequence[Any] = ()) -> Any:
+        """The first column of the first row, or None."""
+        row = self.row(sql, parameters)
+        return None if row is None else row[0]
+
+    def iterate(self, sql: str, parameters: Sequence[Any] = (), batch: int = 1000) -> Iterator[Any]:
+        """The rows of a query, some at a time; the table must not be written meanwhile."""
+        with translated(self.path):
+            cursor = self.connection.execute(sql, parameters)
+            while rows := cursor.fetchmany(batch):
+                yield from rows
+
+    @contextmanager
+    def transaction(self) -> Iterator[None]:
+        """All that is written inside is committed together, or not at all.
+
+        Inside another transaction it joins that one.
+        """
+        if self.connection.in_transaction:
+            yield
+            return
+        self.execute("BEGIN IMMEDIATE")
+        try:
+            yield
+            self.execute("COMMIT")
+        except BaseException:
+            # SQLite may have rolled back on its own (disk full); a second rollback would hide the first error.
+            if self.connection.in_transaction:
+                self.connection.rollback()
+            raise
+
+    def make_durable(self) -> None:
+        """Move every commit into the main file and wait until the disk has it.
+
+        Each commit is on the disk when it returns (synchronous FULL); this makes
+        the one file complete without its ``-wal`` companion, so that it can be
+        copied. Readers at work may delay it: then the companion stays.
+        """
+        with translated(self.path):
+            self.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchall()
+
+    def close(self) -> None:
+        """Close the connection and give the writer lock back."""
+        try:
+            if self._lock is not None:
+                self._lock.forget_holder(self.connection)
+            with translated(self.path):
+                self.connection.close()
+        finally:
+            if self._lock is not None:
+                self._lock.release()
+                self._lock = None
+
+    def __enter__(self) -> Self:
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, traceback: TracebackType | None
+    ) -> None:
+        self.close()

@@ -1,0 +1,91 @@
+"""Documents: who they are, where their tokens and characters lie."""
+
+from __future__ import annotations
+
+import json
+import sqlite3
+from collections.abc import Iterable, Iterator
+from typing import Any
+
+from colloc.errors import DataError, NotSeenError, StoreDamagedError
+from colloc.records import DocumentRow
+from colloc.store import stream, texts
+from colloc.store.connection import Store
+
+_COLUMNS = "id, identifier, source, record, first_token, n_tokens, first_character, n_characters, metadata"
+
+
+def append_documents(store: Store, rows: Iterable[DocumentRow]) -> None:
+    """Add documents; DataError where an identifier is taken."""
+    rows = list(rows)
+    try:
+        store.execute_many(
+            f"INSERT INTO documents ({_COLUMNS}) VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?)", (_as_tuple(row) for row in rows)
+        )
+    except sqlite3.IntegrityError as error:
+        taken = [row.identifier for row in rows if find_document(store, row.identifier) is not None]
+        repeated = {row.identifier for row in rows if sum(row.identifier == other.identifier for other in rows) > 1}
+        name = (taken or sorted(repeated) or [str(error)])[0]
+        raise DataError(f"document {name!r} is in the store already; identifiers must differ") from error
+    except UnicodeEncodeError as error:
+        raise DataError(f"an identifier or metadata holds half a surrogate pair: {error.object!a}") from error
+
+
+def next_document(store: Store) -> int:
+    """The number for the next document; numbers of removed ones are not given again."""
+    last = store.value("SELECT seq FROM sqlite_sequence WHERE name = 'documents'")
+    return 0 if last is None else int(last) + 1
+
+
+def document(store: Store, number: int) -> DocumentRow:
+    """One document; NotSeenError where there is none."""
+    row = store.row(f"SELECT {_COLUMNS} FROM documents WHERE id = ?", (number,))
+    if row is None:
+        raise NotSeenError(f"{store.path}: no document {number}")
+    return _as_row(store, row)
+
+
+def iterate_documents(store: Store) -> Iterator[DocumentRow]:
+    """All documents, by number."""
+    for row in store.iterate(f"SELECT {_COLUMNS} FROM documents ORDER BY id"):
+        yield _as_row(store, row)
+
+
+def find_document(store: Store, identifier: str) -> int | None:
+    """The number of a document, or None."""
+    found = store.value("SELECT id FROM documents WHERE identifier = ?", (identifier,))
+    return None if found is None else int(found)
+
+
+def document_count(store: Store) -> int:
+    """How many documents the store has."""
+    return int(store.value("SELECT count(*) FROM documents"))
+
+
+def remove_document(store: Store, number: int) -> None:
+    """Delete a document: its row, its text and its tokens, overwritten on the disk as well.
+
+    Tallies and word counts are the caller's to change first, while the tokens can still be read.
+    """
+    row = document(store, number)
+    with store.transaction():
+        stream.blank_document(store, number)
+        texts.blank_text(store, row.first_character, row.first_character + row.n_characters)
+        store.execute("DELETE FROM documents WHERE id = ?", (number,))
+
+
+def _as_tuple(row: DocumentRow) -> tuple[Any, ...]:
+    metadata = json.dumps(dict(row.metadata), ensure_ascii=False, sort_keys=True, allow_nan=False)
+    where = (row.first_token, row.n_tokens, row.first_character, row.n_characters)
+    return (row.number, row.identifier, row.source, row.record, *where, metadata)
+
+
+def _as_row(store: Store, row: Any) -> DocumentRow:
+    try:
+        metadata = json.loads(row[8])
+    except (TypeError, ValueError) as error:
+        raise StoreDamagedError(f"{store.path}: the metadata of document {row[0]} is not JSON") from error
+    number, identifier, source, record, first_token, n_tokens, first_character, n_characters = row[:8]
+    return DocumentRow(
+        number, identifier, source, record, first_token, n_tokens, first_character, n_characters, metadata
+    )

@@ -1,0 +1,40 @@
+"""Settings and state of a store as key -> text."""
+
+from __future__ import annotations
+
+from colloc.store.connection import Store
+
+GENERATION = "generation"
+
+
+def get(store: Store, key: str, default: str | None = None) -> str | None:
+    """The text kept under ``key``."""
+    value = store.value("SELECT value FROM facts WHERE key = ?", (key,))
+    return default if value is None else str(value)
+
+
+def put(store: Store, key: str, value: str) -> None:
+    """Keep a text under ``key``, instead of what was there."""
+    store.execute("INSERT OR REPLACE INTO facts VALUES (?, ?)", (key, value))
+
+
+def remove(store: Store, key: str) -> None:
+    """Keep nothing under ``key``."""
+    store.execute("DELETE FROM facts WHERE key = ?", (key,))
+
+
+def every(store: Store) -> dict[str, str]:
+    """All facts, by key."""
+    return dict(store.rows("SELECT key, value FROM facts ORDER BY key"))
+
+
+def generation(store: Store) -> int:
+    """How often the documents have changed: 0 for a new store."""
+    return int(get(store, GENERATION, "0") or 0)
+
+
+def next_generation(store: Store) -> int:
+    """Count one change of documents; returns the new number."""
+    number = generation(store) + 1
+    put(store, GENERATION, str(number))
+    return number

@@ -1,0 +1,231 @@
+"""Layers: what a type is called once case, lemma or word class decides.
+
+A layer is a function of (form, lemma, upos); its map type -> term is kept as
+packed parts of 65,536 types and applied with one ``take``. Terms are numbered
+in order of first appearance. While a store holds plain text only, the layer
+``form`` is the identity and keeps neither map nor texts of its own.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from colloc.errors import StoreDamagedError, UsageError
+from colloc.records import NO_TERM, UInt32Array
+from colloc.store import packing
+from colloc.store.connection import Store
+from colloc.tokens.folding import fold
+
+TypeKey = str | tuple[str, str, str]
+"""A form, or (form, lemma, upos); texts are NFC already."""
+
+PART = 65_536
+_BATCH = 65_536
+
+_COMPONENTS: dict[str, Callable[[tuple[str, str, str]], str]] = {
+    "form": lambda key: key[0],
+    "fold": lambda key: fold(key[0]),
+    "lemma": lambda key: key[1],
+    "lemma_fold": lambda key: fold(key[1]),
+    "upos": lambda key: key[2],
+}
+
+
+@dataclass(slots=True)
+class Layer:
+    """One row of ``layers``."""
+
+    number: int
+    name: str
+    terms: int
+    types: int
+    same: bool
+
+
+def layer_function(name: str) -> Callable[[tuple[str, str, str]], str]:
+    """What a layer calls a type; empty where the type has no such thing.
+
+    Parameters
+    ----------
+    name : str
+        ``form``, ``fold``, ``lemma``, ``lemma_fold``, ``upos``, or several of
+        them joined by ``/``, as in ``lemma/upos``.
+    """
+    parts = name.split("/")
+    unknown = [part for part in parts if part not in _COMPONENTS]
+    if unknown or len(set(parts)) != len(parts):
+        raise UsageError(
+            f"no layer {name!r}: a layer is one of {', '.join(_COMPONENTS)}, or several joined by / (lemma/upos)"
+        )
+    functions = [_COMPONENTS[part] for part in parts]
+    if len(functions) == 1:
+        return functions[0]
+
+    def joined(key: tuple[str, str, str]) -> str:
+        texts = [function(key) for function in functions]
+        return "/".join(texts) if all(texts) else ""
+
+    return joined
+
+
+def layer_names(store: Store) -> list[str]:
+    """Layers of the store, in the order in which they were made."""
+    return [row[0] for row in store.rows("SELECT name FROM layers ORDER BY id")]
+
+
+def find_layer(store: Store, name: str) -> Layer:
+    """The layer's row; UsageError where the store does not have it."""
+    row = store.row("SELECT id, name, terms, types, same FROM layers WHERE name = ?", (name,))
+    if row is None:
+        layer_function(name)
+        raise UsageError(f"{store.path}: has no layer {name!r} yet, only {', '.join(layer_names(store))}")
+    return Layer(row[0], row[1], row[2], row[3], bool(row[4]))
+
+
+def term_count(store: Store, layer: str) -> int:
+    """How many terms a layer has."""
+    return find_layer(store, layer).terms
+
+
+def layer_map(store: Store, name: str) -> UInt32Array:
+    """Term of each type: uint32 array, shape (number of types,); NO_TERM where a type is not in the layer."""
+    layer = find_layer(store, name)
+    if layer.same:
+        return np.arange(layer.types, dtype=np.uint32)
+    parts = [_read_part(store, layer, part) for part in range(-(-layer.types // PART))]
+    terms = np.concatenate([np.empty(0, dtype=np.uint32), *parts])
+    if len(terms) != layer.types or (terms[terms != NO_TERM] >= layer.terms).any():
+        raise StoreDamagedError(f"{store.path}: the map of layer {name} does not fit its types and terms")
+    return terms
+
+
+def _read_part(store: Store, layer: Layer, part: int) -> UInt32Array:
+    data = store.value("SELECT data FROM layer_maps WHERE layer = ? AND part = ?", (layer.number, part))
+    return packing.unpack_as(data, np.uint32, f"{store.path}: map of layer {layer.name}, part {part}")
+
+
+class LayerWriter:
+    """Extends one layer as types are added.
+
+    Parameters
+    ----------
+    limit : int
+        How many texts are remembered; the others are looked up in the store.
+    """
+
+    def __init__(self, store: Store, layer: Layer, limit: int) -> None:
+        self._store = store
+        self._limit = limit
+        self._known: dict[str, int] = {}
+        self._complete = layer.terms == 0
+        self._function = layer_function(layer.name)
+        self.layer = layer
+
+    def extend(self, keys: Sequence[tuple[str, str, str]]) -> None:
+        """Map new types, which follow the last one mapped."""
+        layer = self.layer
+        if layer.same:
+            layer.types += len(keys)
+            layer.terms = layer.types
+        else:
+            texts = [*map(self._function, keys)]
+            self._append_map(self._numbers(texts))
+            layer.types += len(keys)
+        self._store.execute(
+            "UPDATE layers SET terms = ?, types = ?, same = ? WHERE id = ?",
+            (layer.terms, layer.types, layer.same, layer.number),
+        )
+
+    def _numbers(self, texts: list[str]) -> UInt32Array:
+        known = self._known
+        if not self._complete:
+            if len(known) > 2 * self._limit:
+                known.clear()
+            wanted = {text for text in texts if text and text not in known}
+            known.update(look_up_terms(self._store, self.layer.number, wanted))
+        first = next_number = self.layer.terms
+        fresh: dict[str, int] = {}
+        numbers = []
+        for text in texts:
+            number = known.get(text)
+            if number is None:
+                number = fresh.get(text)
+            if number is None:
+                if not text:
+                    numbers.append(int(NO_TERM))
+                    continue
+                number = fresh[text] = next_number
+                next_number += 1
+            numbers.append(number)
+        rows = zip([self.layer.number] * len(fresh), range(first, next_number), fresh, strict=True)
+        self._store.execute_many("INSERT INTO terms VALUES (?, ?, ?)", rows)
+        self.layer.terms = next_number
+        room = self._limit - len(known)
+        if room < len(fresh):
+            self._complete = False
+            fresh = dict(list(fresh.items())[: max(room, 0)])
+        known.update(fresh)
+        return np.array(numbers, dtype=np.uint32)
+
+    def _append_map(self, terms: UInt32Array) -> None:
+        part, filled = divmod(self.layer.types, PART)
+        if filled:
+            terms = np.concatenate([_read_part(self._store, self.layer, part), terms])
+        for start in range(0, len(terms), PART):
+            self._store.execute(
+                "INSERT OR REPLACE INTO layer_maps VALUES (?, ?, ?)",
+                (self.layer.number, part + start // PART, packing.pack(terms[start : start + PART])),
+            )
+
+
+def look_up_terms(store: Store, layer: int, texts: set[str]) -> dict[str, int]:
+    """Numbers of those texts that are terms of a layer which keeps its own texts."""
+    found = {}
+    for text in texts:
+        row = store.row("SELECT id FROM terms WHERE layer = ? AND text = ?", (layer, text))
+        if row is not None:
+            found[text] = row[0]
+    return found
+
+
+def type_keys(store: Store, first: int, stop: int) -> list[tuple[str, str, str]]:
+    """(form, lemma, upos) of the types numbered first..stop-1."""
+    rows = store.rows("SELECT form, lemma, upos FROM types WHERE id >= ? AND id < ? ORDER BY id", (first, stop))
+    if len(rows) != stop - first:
+        raise StoreDamagedError(f"{store.path}: types {first} to {stop - 1} are not all there")
+    return rows
+
+
+def ensure_layer(store: Store, name: str, limit: int = 2_000_000) -> None:
+    """Make a layer where it is not there yet, and keep it from now on.
+
+    Raises
+    ------
+    UsageError
+        No such layer, or no type of the store has what it needs.
+    """
+    layer_function(name)
+    if name in layer_names(store):
+        return
+    types = find_layer(store, "form").types
+    with store.transaction():
+        store.execute("INSERT INTO layers (name, terms, types, same) VALUES (?, 0, 0, 0)", (name,))
+        writer = LayerWriter(store, find_layer(store, name), limit)
+        for first in range(0, types, _BATCH):
+            writer.extend(type_keys(store, first, min(first + _BATCH, types)))
+        if types and writer.layer.terms == 0:
+            raise UsageError(
+                f"{store.path}: its words carry nothing for the layer {name!r}; build it from annotated text"
+            )
+
+
+def detach_forms(store: Store, layer: Layer, limit: int) -> LayerWriter:
+    """Give the layer ``form`` a map and texts of its own, as annotated types arrive."""
+    types, layer.terms, layer.types, layer.same = layer.types, 0, 0, False
+    writer = LayerWriter(store, layer, limit)
+    for first in range(0, types, _BATCH):
+        writer.extend(type_keys(store, first, min(first + _BATCH, types)))
+    return writer

@@ -1,0 +1,44 @@
+"""Content hashes of what is in the store, so that exact repeats can be dropped."""
+
+from __future__ import annotations
+
+import sqlite3
+from collections.abc import Iterable
+from pathlib import Path
+from typing import Self
+
+from colloc.store.opening import Store
+
+
+def remember(store: Store, digests: Iterable[bytes]) -> None:
+    """Store hashes with the batch whose text they are of, inside the caller's transaction."""
+    store.connection.executemany("INSERT OR IGNORE INTO content_hashes VALUES (?)", ((digest,) for digest in digests))
+
+
+class SeenHashes:
+    """The stored hashes and those met since, in a scratch database: any number in bounded memory.
+
+    Parameters
+    ----------
+    folder : Path
+        For the scratch database; removed by whoever made the folder.
+    """
+
+    def __init__(self, store: Store, folder: Path) -> None:
+        self._connection = sqlite3.connect(folder / "seen", isolation_level=None)
+        self._connection.execute("PRAGMA journal_mode = OFF")
+        self._connection.execute("PRAGMA synchronous = OFF")
+        self._connection.execute("CREATE TABLE seen (digest BLOB PRIMARY KEY) WITHOUT ROWID")
+        self._connection.execute("BEGIN")
+        stored = store.connection.execute("SELECT digest FROM content_hashes ORDER BY digest")
+        self._connection.executemany("INSERT INTO seen VALUES (?)", stored)
+
+    def add(self, digest: bytes) -> bool:
+        """Remember a hash; False when it was there already."""
+        return self._connection.execute("INSERT OR IGNORE INTO seen VALUES (?)", (digest,)).rowcount == 1
+
+    def __enter__(self) -> Self:
+        return self
+
+    def __exit__(self, *_: object) -> None:
+        self._connection.close()

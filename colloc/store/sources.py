@@ -1,0 +1,66 @@
+"""Provenance: which inputs went in, and how far each has been read."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from colloc.records import SourceInfo
+from colloc.store.connection import Store
+
+_COLUMNS = "id, name, size, modified, digest, records, finished"
+
+
+@dataclass(frozen=True, slots=True)
+class SourceRow:
+    """One input as the store keeps it.
+
+    Attributes
+    ----------
+    digest : str or None
+        blake2b-128 of the raw bytes, known once the source was read to its end.
+    records : int
+        Documents finished so far: where a resumed build goes on.
+    """
+
+    number: int
+    info: SourceInfo
+    digest: str | None
+    records: int
+    finished: bool
+
+
+def add_source(store: Store, info: SourceInfo) -> int:
+    """The number of a source, which is entered if it is new; an unfinished one keeps its records."""
+    found = find_source(store, info.name)
+    if found is not None:
+        store.execute(
+            "UPDATE sources SET size = ?, modified = ? WHERE id = ?", (info.size, info.modified, found.number)
+        )
+        return found.number
+    number = store.value("SELECT coalesce(max(id) + 1, 0) FROM sources")
+    store.execute("INSERT INTO sources VALUES (?, ?, ?, ?, NULL, 0, 0)", (number, info.name, info.size, info.modified))
+    return int(number)
+
+
+def note_progress(store: Store, number: int, records: int, digest: str | None = None, finished: bool = False) -> None:
+    """Note how many documents of a source are in the store, and at its end its digest."""
+    store.execute(
+        "UPDATE sources SET records = ?, digest = ?, finished = ? WHERE id = ?",
+        (records, digest, int(finished), number),
+    )
+
+
+def find_source(store: Store, name: str) -> SourceRow | None:
+    """A source by the name under which it was read."""
+    row = store.row(f"SELECT {_COLUMNS} FROM sources WHERE name = ?", (name,))
+    return None if row is None else _as_row(row)
+
+
+def source_list(store: Store) -> list[SourceRow]:
+    """All sources, in the order in which they were read."""
+    return [_as_row(row) for row in store.rows(f"SELECT {_COLUMNS} FROM sources ORDER BY id")]
+
+
+def _as_row(row: tuple[int, str, int, float, str | None, int, int]) -> SourceRow:
+    number, name, size, modified, digest, records, finished = row
+    return SourceRow(number, SourceInfo(name, size, modified), digest, records, bool(finished))

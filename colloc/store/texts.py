@@ -1,0 +1,102 @@
+"""The text as it was decoded, compressed in blocks and addressed by character.
+
+Characters are numbered through the whole store; block borders mean nothing.
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+from colloc.errors import StoreDamagedError, UsageError
+from colloc.store import packing
+from colloc.store.connection import Store
+
+BLOCK_CHARACTERS = 131_072
+_BLANK = " "
+_IN_REACH = (
+    "SELECT first_character, n_characters, data FROM text_blocks WHERE first_character < ? AND first_character >= ?"
+)
+
+
+def append_text(store: Store, first_character: int, text: str) -> None:
+    """Keep a stretch of text; long stretches make the best blocks (each call begins a new one).
+
+    Half surrogate pairs, as JSON escapes can bring them, are kept as they are.
+    """
+    if not text:
+        return
+    rows = []
+    for start in range(0, len(text), BLOCK_CHARACTERS):
+        piece = text[start : start + BLOCK_CHARACTERS]
+        rows.append((first_character + start, len(piece), packing.pack_bytes(_encoded(piece))))
+    store.execute_many("INSERT INTO text_blocks VALUES (?, ?, ?)", rows)
+
+
+def has_text(store: Store) -> bool:
+    """Whether any text was kept."""
+    return store.value("SELECT 1 FROM text_blocks LIMIT 1") is not None
+
+
+def character_count(store: Store) -> int:
+    """Where the text kept so far ends."""
+    last = store.row("SELECT first_character + n_characters FROM text_blocks ORDER BY first_character DESC LIMIT 1")
+    return 0 if last is None else int(last[0])
+
+
+def read_text(store: Store, start: int, stop: int) -> str:
+    """The characters start..stop-1.
+
+    Raises
+    ------
+    UsageError
+        The store keeps no text.
+    StoreDamagedError
+        Some of these characters are missing, or a block does not verify.
+    """
+    if not has_text(store):
+        raise UsageError(f"{store.path}: was built without its text (--no-text), so there is nothing to show")
+    pieces = []
+    position = start
+    for first, length, data in _blocks(store, start, stop):
+        if first > position:
+            break
+        text = _decoded(store, first, length, data)
+        pieces.append(text[position - first : stop - first])
+        position = min(stop, first + length)
+    if position < stop:
+        raise StoreDamagedError(f"{store.path}: text from character {position} to {stop} is missing")
+    return "".join(pieces)
+
+
+def blank_text(store: Store, start: int, stop: int) -> None:
+    """Overwrite the characters start..stop-1 with spaces, so that all others keep their numbers."""
+    for first, length, data in _blocks(store, start, stop):
+        text = _decoded(store, first, length, data)
+        begin, end = max(start - first, 0), min(stop - first, length)
+        blanked = text[:begin] + _BLANK * (end - begin) + text[end:]
+        packed = packing.pack_bytes(_encoded(blanked))
+        store.execute("UPDATE text_blocks SET data = ? WHERE first_character = ?", (packed, first))
+
+
+def _blocks(store: Store, start: int, stop: int) -> list[Any]:
+    """The blocks that hold any of the characters start..stop-1, in order."""
+    if stop <= start:
+        return []
+    before = store.value("SELECT max(first_character) FROM text_blocks WHERE first_character <= ?", (start,))
+    rows = store.rows(f"{_IN_REACH} ORDER BY first_character", (stop, start if before is None else before))
+    return [row for row in rows if row[0] + row[1] > start]
+
+
+def _decoded(store: Store, first: int, length: int, data: Any) -> str:
+    what = f"{store.path}: text from character {first}"
+    try:
+        text = packing.unpack_bytes(data, what).decode("utf-8", "surrogatepass")
+    except UnicodeDecodeError as error:
+        raise StoreDamagedError(f"{what}: not UTF-8 ({error.reason})") from error
+    if len(text) != length:
+        raise StoreDamagedError(f"{what}: holds {len(text)} characters instead of {length}")
+    return text
+
+
+def _encoded(text: str) -> bytes:
+    return text.encode("utf-8", "surrogatepass")

@@ -1,0 +1,148 @@
+"""Types: numbered in order of first appearance, and carried on into every layer."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from colloc.errors import DataError
+from colloc.records import UInt32Array
+from colloc.store import schema
+from colloc.store.connection import Store
+from colloc.store.frequencies import append_word_counts, has_word_counts, word_counts
+from colloc.store.layers import (
+    LayerWriter,
+    TypeKey,
+    detach_forms,
+    ensure_layer,
+    find_layer,
+    layer_map,
+    layer_names,
+    term_count,
+    type_keys,
+)
+from colloc.store.terms import term_numbers, term_texts, terms_matching
+
+__all__ = [
+    "TypeKey",
+    "TypeRegistry",
+    "append_word_counts",
+    "ensure_layer",
+    "has_word_counts",
+    "layer_map",
+    "layer_names",
+    "term_count",
+    "term_numbers",
+    "term_texts",
+    "terms_matching",
+    "type_count",
+    "type_keys",
+    "word_counts",
+]
+
+_LARGEST = 2**31 - 1
+"""Type numbers stay below this, so that a pair key has room for a direction."""
+
+
+def type_count(store: Store) -> int:
+    """How many types the store has."""
+    return find_layer(store, "form").types
+
+
+class TypeRegistry:
+    """Looks types up and adds those that are new, in the order given.
+
+    Must be used inside a transaction. The first ``limit`` types met are
+    remembered (the first are the frequent ones), the others looked up in the
+    store, so memory is bounded.
+
+    Parameters
+    ----------
+    limit : int
+        Types, and terms of each layer, to remember; about 150 bytes each.
+    """
+
+    def __init__(self, store: Store, limit: int = 2_000_000) -> None:
+        self._store = store
+        self._limit = limit
+        self._known: dict[TypeKey, int] = {}
+        self._count = type_count(store)
+        self._complete = self._count == 0
+        self._layers: dict[str, LayerWriter] = {}
+
+    def __len__(self) -> int:
+        """How many types the store has."""
+        return self._count
+
+    def number(self, keys: Sequence[TypeKey]) -> UInt32Array:
+        """Type numbers of ``keys``, in their order: uint32 array, shape (len(keys),).
+
+        A key is a form, or (form, lemma, upos); ``(form, "", "")`` is the same as the form.
+        """
+        keys = [key[0] if isinstance(key, tuple) and not key[1] and not key[2] else key for key in keys]
+        known = self._known
+        if not self._complete:
+            if len(known) > 2 * self._limit:
+                known.clear()
+            self._look_up([key for key in keys if key not in known])
+        fresh: dict[TypeKey, int] = {}
+        first = next_number = self._count
+        numbers = []
+        for key in keys:
+            number = known.get(key)
+            if number is None:
+                number = fresh.get(key)
+                if number is None:
+                    number = fresh[key] = next_number
+                    next_number += 1
+            numbers.append(number)
+        if fresh:
+            self._add(first, list(fresh))
+            room = max(self._limit - len(known), 0)
+            if room < len(fresh):
+                self._complete = False
+                fresh = dict(list(fresh.items())[:room])
+            known.update(fresh)
+        return np.array(numbers, dtype=np.uint32)
+
+    def finish(self) -> None:
+        """Make the indexes by which words are found; call it once a first build is complete."""
+        for statement in schema.VOCABULARY_INDEXES:
+            self._store.execute(statement)
+
+    def _add(self, first: int, keys: list[TypeKey]) -> None:
+        triples = [key if isinstance(key, tuple) else (key, "", "") for key in keys]
+        if first + len(keys) > _LARGEST:
+            raise DataError(
+                f"{self._store.path}: more than {_LARGEST} distinct words; split the text into several stores"
+            )
+        try:
+            self._store.execute_many(
+                "INSERT INTO types VALUES (?, ?, ?, ?)",
+                ((number, *triple) for number, triple in enumerate(triples, first)),
+            )
+        except UnicodeEncodeError as error:
+            raise DataError(f"a word holds half a surrogate pair, which is no character: {error.object!a}") from error
+        self._count += len(keys)
+        for writer in self._writers(annotated=any(isinstance(key, tuple) for key in keys)):
+            writer.extend(triples)
+
+    def _writers(self, annotated: bool) -> list[LayerWriter]:
+        for name in layer_names(self._store):
+            if name not in self._layers:
+                self._layers[name] = LayerWriter(self._store, find_layer(self._store, name), self._limit)
+        forms = self._layers["form"].layer
+        if annotated and forms.same:
+            self._layers["form"] = detach_forms(self._store, forms, self._limit)
+        return list(self._layers.values())
+
+    def _look_up(self, keys: list[TypeKey]) -> None:
+        """Learn the numbers of types that are in the store already, for this batch."""
+        if keys:
+            self.finish()  # without the index each look-up would read the whole table
+        for key in keys:
+            triple = key if isinstance(key, tuple) else (key, "", "")
+            row = self._store.row("SELECT id FROM types WHERE form = ? AND lemma = ? AND upos = ?", triple)
+            if row is not None:
+                self._known[key] = row[0]
