@@ -10,8 +10,8 @@ Column names are stable; the command line, the files and the Python calls use th
     Joint count expected if the words were independent: first_total * second_total / total.
 ``pmi``, ``npmi``, ``ppmi``, ``g2``, ...
     Measures, by their names in ``colloc.measures.catalogue``.
-``tokens``, ``documents``, ``per_million``
-    Frequencies of a word, or of a pair where documents are asked for.
+``count``, ``per_million``, ``documents``, ``dp``, ``dp_norm``
+    Frequency and dispersion of a word; ``documents`` also of a pair where it is asked for.
 """
 
 from __future__ import annotations
@@ -61,7 +61,7 @@ class Columns:
     (np.int64(10), 1, {'first': 'sea', 'joint': 7})
     """
 
-    data: Mapping[str, NDArray[Any]]
+    data: Mapping[str, Any]
     settings: Mapping[str, Any] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
@@ -96,7 +96,8 @@ class Columns:
             return self.take(key)
         if key not in self.data:
             raise KeyError(f"no column {key!r}: there are {', '.join(self.names)}")
-        return self.data[key]
+        column: NDArray[Any] = self.data[key]
+        return column
 
     def __contains__(self, name: object) -> bool:
         return name in self.data
@@ -117,7 +118,7 @@ class Columns:
 
     def adding(self, more: Mapping[str, ArrayLike]) -> Columns:
         """The same columns, then others; a name already there is replaced in its place."""
-        return Columns({**self.data, **more}, self.settings)  # type: ignore[dict-item]
+        return Columns({**self.data, **more}, self.settings)
 
     def is_numeric(self, name: str) -> bool:
         """Whether the column holds numbers (and stands to the right in a table)."""

@@ -11,16 +11,21 @@ import os
 import sys
 from collections.abc import Sequence
 from importlib import import_module
+from inspect import getdoc
+from typing import Any
 
 import typer
+from typer.core import TyperGroup
 from typer.exceptions import Abort, TyperException
 from typer.main import get_command
 
 from colloc.cli.output import ReaderGone, remark
 from colloc.errors import CollocError, InputOutputError, LockedError, StoreDamagedError
 
-COMMAND_MODULES: tuple[str, ...] = ()
-"""Modules of this folder with a ``register`` function, in the order of the help page."""
+COMMAND_MODULES = ("demonstrating", "building", "keeping", "asking", "measuring")
+"""Modules of ``colloc.cli.commands``, in the order of the help page."""
+
+CONTEXT = {"help_option_names": ["-h", "--help"], "max_content_width": 110}
 
 INTERRUPTED = 130
 """Exit code after control-C, as shells report it (128 + SIGINT)."""
@@ -31,20 +36,50 @@ _DISK_ERRORS = frozenset(
 """What the machine can do to us anywhere; any other OSError that gets here is a bug of ours."""
 
 
+class CommandTable(TyperGroup):
+    """The commands of all modules; the options of one are worked out only when it is run or asked about."""
+
+    def __init__(self, **settings: Any) -> None:
+        super().__init__(**settings)
+        shelf = typer.Typer()
+        for name in COMMAND_MODULES:
+            import_module(f"colloc.cli.commands.{name}").register(shelf)
+        self._functions = {
+            info.name or info.callback.__name__: info.callback for info in shelf.registered_commands if info.callback
+        }
+        self.commands = dict.fromkeys(self._functions)  # type: ignore[assignment] # names, for suggestions
+
+    def list_commands(self, ctx: Any) -> list[str]:
+        """Names in the order of the help page."""
+        return list(self._functions)
+
+    def get_command(self, ctx: Any, cmd_name: str) -> Any:
+        """One command with its options; None where there is none."""
+        if cmd_name not in self._functions:
+            return None
+        alone = typer.Typer(add_completion=False, rich_markup_mode=None, pretty_exceptions_enable=False)
+        alone.command(cmd_name, context_settings=CONTEXT)(self._functions[cmd_name])
+        return get_command(alone)
+
+    def format_commands(self, ctx: Any, formatter: Any) -> None:
+        """The list on the help page: the first line of each command's help."""
+        with formatter.section("Commands"):
+            formatter.write_dl([(name, (getdoc(run) or "").split("\n")[0]) for name, run in self._functions.items()])
+
+
 def build_app() -> typer.Typer:
     """The program with all its commands."""
     app = typer.Typer(
         name="colloc",
+        cls=CommandTable,
         help="Finds word associations in text and explains them. Counts are kept in one SQLite file, the STORE.",
         epilog="Begin with `colloc demo`. `colloc COMMAND --help` tells more about a command.",
         no_args_is_help=True,
         rich_markup_mode=None,
         pretty_exceptions_enable=False,
-        context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 110},
+        context_settings=CONTEXT,
     )
     app.callback(invoke_without_command=True)(_root)
-    for name in COMMAND_MODULES:
-        import_module(f"colloc.cli.{name}").register(app)
     return app
 
 

@@ -9,7 +9,7 @@ from typing import Annotated, Any, Literal
 
 import typer
 
-from colloc.cli.sizes import size_in_bytes
+from colloc.cli.sizes import size_in_bytes, written_size
 from colloc.errors import UsageError
 from colloc.settings import Inside, Margins
 
@@ -99,27 +99,34 @@ QuietOption = Annotated[bool, _option("--quiet", "-q", help="No settings line, p
 BesideOption = Annotated[
     bool, _option("--settings-beside", help="Also write the settings as JSON to FILE.settings.json; needs -o.")
 ]
-LimitOption = Annotated[int, _option("--limit", "-n", min=0, help="Rows shown; 0 for all.")]
+LimitOption = Annotated[int, _option("--limit", "-n", metavar="N", min=0, help="Rows shown; 0 for all.")]
 
 # Measures
 MeasureOption = Annotated[
     str | None,
-    _option("--measure", "-m", help="Rank by this measure, or by joint.", autocompletion=complete_measures),
+    _option(
+        "--measure", "-m", metavar="NAME", help="Rank by this measure, or by joint.", autocompletion=complete_measures
+    ),
 ]
 ShowOption = Annotated[
     list[str] | None,
     _option(
         "--show",
         help="Measures to show, separated by commas or repeated; all for the whole catalogue.",
+        metavar="NAMES",
         autocompletion=complete_measures,
     ),
 ]
 
 # Which co-occurrences
-LayerOption = Annotated[str | None, _option("--layer", help="Layer counted: form, fold, lemma, ...")]
-WindowOption = Annotated[int | None, _option("--window", "-w", help="Words of reach on either side.")]
-LeftOption = Annotated[int | None, _option("--left", help="Words of reach to the left; goes with --right.")]
-RightOption = Annotated[int | None, _option("--right", help="Words of reach to the right; goes with --left.")]
+LayerOption = Annotated[str | None, _option("--layer", metavar="NAME", help="Layer counted: form, fold, lemma, ...")]
+WindowOption = Annotated[int | None, _option("--window", "-w", metavar="N", help="Words of reach on either side.")]
+LeftOption = Annotated[
+    int | None, _option("--left", metavar="N", help="Words of reach to the left; goes with --right.")
+]
+RightOption = Annotated[
+    int | None, _option("--right", metavar="N", help="Words of reach to the right; goes with --left.")
+]
 UnitOption = Annotated[
     bool, _option("--unit", help="Count the units (--inside) that hold both words, instead of windows.")
 ]
@@ -134,23 +141,37 @@ NoSpanOption = Annotated[
 ]
 WhereOption = Annotated[
     list[str] | None,
-    _option("--where", help="Only documents with this metadata: key=value, key=a,b or key=1990..1999. Repeats join."),
+    _option(
+        "--where",
+        metavar="SLICE",
+        help="Only documents with this metadata: key=value, key=a,b or key=1990..1999. Repeats join.",
+    ),
 ]
 RelationOption = Annotated[
     str | None,
-    _option("--relation", help="Pairs of head and dependent in this relation; an empty name takes all relations."),
+    _option(
+        "--relation",
+        metavar="NAME",
+        help="Pairs of head and dependent in this relation; an empty name takes all relations.",
+    ),
 ]
 
 # Thresholds
-MinCountOption = Annotated[int, _option("--min-count", min=0, help="Least joint count shown.")]
-MinWordCountOption = Annotated[int, _option("--min-word-count", min=0, help="Least frequency of each word shown.")]
-MinDocsOption = Annotated[int, _option("--min-docs", min=0, help="Least number of documents that hold the row.")]
+MinCountOption = Annotated[int, _option("--min-count", metavar="N", min=0, help="Least joint count shown.")]
+MinWordCountOption = Annotated[
+    int, _option("--min-word-count", metavar="N", min=0, help="Least frequency of each word shown.")
+]
+MinDocsOption = Annotated[
+    int, _option("--min-docs", metavar="N", min=0, help="Least number of documents that hold the row.")
+]
 AvoidOption = Annotated[
     bool, _option("--avoid", help="Also rows met as often as expected or less, not only attraction.")
 ]
 
 # Resources
-JobsOption = Annotated[int | None, _option("--jobs", "-j", min=1, help="Processes; all cores when not given.")]
+JobsOption = Annotated[
+    int | None, _option("--jobs", "-j", metavar="N", min=1, help="Processes; all cores when not given.")
+]
 MemoryOption = Annotated[str, _option("--memory", metavar="SIZE", help="Memory to stay below, all processes together.")]
 TempOption = Annotated[
     str | None, _option("--temp", metavar="FOLDER", help="Folder for temporary files; the system's when not given.")
@@ -160,14 +181,16 @@ DEFAULT_MEMORY = "2GB"
 
 
 def memory_bytes(text: str) -> int:
-    """The value of ``--memory``; at least 64 MB, below which no block of text can be held.
+    """The value of ``--memory``.
 
     Raises
     ------
     UsageError
-        Where it is no size, or too small.
+        Where it is no size, or less than counting needs at all.
     """
+    from colloc.build.building import SMALLEST_MEMORY
+
     memory = size_in_bytes(text)
-    if memory < 64 * 2**20:
-        raise UsageError(f"--memory must be at least 64MB, not {text}")
+    if memory < SMALLEST_MEMORY:
+        raise UsageError(f"--memory must be at least {written_size(SMALLEST_MEMORY)}, not {text}")
     return memory

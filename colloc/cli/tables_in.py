@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import csv
-import io
 import json
 import sys
 from collections.abc import Iterator
@@ -83,7 +82,7 @@ def _opened_text(path: Path) -> Iterator[BinaryIO]:
         yield sys.stdin.buffer
         return
     try:
-        stream = open(path, "rb")
+        stream = path.open("rb")
     except FileNotFoundError as error:
         raise NoInputError(f"{path}: no such file") from error
     except OSError as error:

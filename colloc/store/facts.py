@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from colloc.errors import StoreDamagedError
 from colloc.store.connection import Store
 
 GENERATION = "generation"
@@ -11,6 +12,14 @@ def get(store: Store, key: str, default: str | None = None) -> str | None:
     """The text kept under ``key``."""
     value = store.value("SELECT value FROM facts WHERE key = ?", (key,))
     return default if value is None else str(value)
+
+
+def need(store: Store, key: str) -> str:
+    """The text under a key that every store has; StoreDamagedError where it is missing."""
+    value = get(store, key)
+    if value is None:
+        raise StoreDamagedError(f"{store.path}: the fact {key!r} is missing; build the store anew")
+    return value
 
 
 def put(store: Store, key: str, value: str) -> None:

@@ -1,0 +1,192 @@
+"""``words``, ``pairs`` and ``around``: lists of what a store holds."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Annotated, Literal
+
+import typer
+
+from colloc.cli import options as opt
+from colloc.cli.output import Target, deliver
+from colloc.cli.progress import ProgressLine
+from colloc.settings import DEFAULT_MIN_COUNT
+
+LIMIT = 50
+
+
+def words(
+    store: opt.StoreArgument,
+    pattern: Annotated[
+        str | None, typer.Argument(metavar="[PATTERN]", help="Only words like this; * stands for any characters.")
+    ] = None,
+    layer: opt.LayerOption = None,
+    where: opt.WhereOption = None,
+    min_count: Annotated[int, typer.Option("--min-count", metavar="N", min=0, help="Least frequency shown.")] = 1,
+    min_docs: opt.MinDocsOption = 1,
+    sort: Annotated[
+        Literal["count", "documents", "word", "dp_norm"], typer.Option("--sort", help="What the list is sorted by.")
+    ] = "count",
+    limit: opt.LimitOption = LIMIT,
+    format: opt.FormatOption = "table",
+    output: opt.OutputOption = None,
+    settings_beside: opt.BesideOption = False,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """List words with their frequency, rate per million, documents and dispersion."""
+    from colloc import verbs
+
+    target = Target(format, output, quiet, settings_beside)
+    answer = verbs.words(
+        store,
+        layer=layer,
+        where=where or (),
+        pattern=pattern,
+        min_count=min_count,
+        min_docs=min_docs,
+        sort=sort,
+        limit=limit,
+    )
+    deliver(answer, target, "words")
+
+
+def pairs(
+    store: opt.StoreArgument,
+    measure: opt.MeasureOption = None,
+    show: opt.ShowOption = None,
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    directed: opt.DirectedOption = False,
+    no_span: opt.NoSpanOption = False,
+    relation: opt.RelationOption = None,
+    where: opt.WhereOption = None,
+    min_count: opt.MinCountOption = DEFAULT_MIN_COUNT,
+    min_word_count: opt.MinWordCountOption = 1,
+    min_docs: opt.MinDocsOption = 1,
+    avoid: opt.AvoidOption = False,
+    limit: opt.LimitOption = LIMIT,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    format: opt.FormatOption = "table",
+    output: opt.OutputOption = None,
+    settings_beside: opt.BesideOption = False,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """List the strongest pairs of words.
+
+    What is not said about the counting is as the store was built; another window,
+    layer or slice is counted from the store, and kept there for the next time.
+    """
+    from colloc import verbs
+
+    opt.check_measure(measure)
+    target = Target(format, output, quiet, settings_beside)
+    with ProgressLine(quiet=quiet) as progress:
+        answer = verbs.pairs(
+            store,
+            measure=measure,
+            show=opt.shown_measures(show),
+            layer=layer,
+            window=window,
+            left=left,
+            right=right,
+            unit=unit,
+            inside=inside,
+            margins=margins,
+            directed=directed,
+            spanned=not no_span,
+            relation=relation,
+            where=where or (),
+            min_count=min_count,
+            min_word_count=min_word_count,
+            min_docs=min_docs,
+            avoid=avoid,
+            limit=limit,
+            jobs=jobs,
+            memory=opt.memory_bytes(memory),
+            progress=progress,
+        )
+    deliver(answer, target, "pairs")
+
+
+def around(
+    store: opt.StoreArgument,
+    words: Annotated[list[str] | None, typer.Argument(metavar="[WORD]...", help="Words asked for.")] = None,
+    words_from: Annotated[
+        Path | None, typer.Option("--words-from", metavar="FILE", help="Also the words of this file, one a line.")
+    ] = None,
+    side: Annotated[
+        Literal["both", "left", "right"], typer.Option("--side", help="Which side of the word the others stand on.")
+    ] = "both",
+    measure: opt.MeasureOption = None,
+    show: opt.ShowOption = None,
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    directed: opt.DirectedOption = False,
+    no_span: opt.NoSpanOption = False,
+    relation: opt.RelationOption = None,
+    where: opt.WhereOption = None,
+    min_count: opt.MinCountOption = DEFAULT_MIN_COUNT,
+    min_word_count: opt.MinWordCountOption = 1,
+    min_docs: opt.MinDocsOption = 1,
+    avoid: opt.AvoidOption = False,
+    limit: Annotated[
+        int, typer.Option("--limit", "-n", metavar="N", min=0, help="Rows shown for each word; 0 for all.")
+    ] = LIMIT,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    format: opt.FormatOption = "table",
+    output: opt.OutputOption = None,
+    settings_beside: opt.BesideOption = False,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """List what stands around each word, strongest first; the word asked for is `first`."""
+    from colloc import verbs
+
+    opt.check_measure(measure)
+    asked = opt.read_words(words or [], words_from)
+    target = Target(format, output, quiet, settings_beside)
+    with ProgressLine(quiet=quiet) as progress:
+        answer = verbs.around(
+            store,
+            asked,
+            side=side,
+            measure=measure,
+            show=opt.shown_measures(show),
+            layer=layer,
+            window=window,
+            left=left,
+            right=right,
+            unit=unit,
+            inside=inside,
+            margins=margins,
+            directed=directed,
+            spanned=not no_span,
+            relation=relation,
+            where=where or (),
+            min_count=min_count,
+            min_word_count=min_word_count,
+            min_docs=min_docs,
+            avoid=avoid,
+            limit=limit,
+            jobs=jobs,
+            memory=opt.memory_bytes(memory),
+            progress=progress,
+        )
+    deliver(answer, target, "around")
+
+
+def register(app: typer.Typer) -> None:
+    """Add the commands of this module."""
+    for command in (words, pairs, around):
+        app.command()(command)

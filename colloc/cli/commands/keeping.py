@@ -1,0 +1,132 @@
+"""``info``, ``check`` and ``tally``: looking after a store."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Iterator, Mapping
+from typing import Annotated, Any
+
+import typer
+
+from colloc.cli import options as opt
+from colloc.cli.output import Target, deliver, deliver_parts, opened, print_lines, write_settings
+from colloc.cli.progress import ProgressLine
+from colloc.errors import UsageError
+
+
+def info(
+    store: opt.StoreArgument,
+    by: Annotated[
+        str | None, typer.Option("--by", metavar="KEY", help="Documents, tokens and types for each value of this key.")
+    ] = None,
+    documents: Annotated[bool, typer.Option("--documents", help="List the documents with their metadata.")] = False,
+    format: opt.FormatOption = "table",
+    output: opt.OutputOption = None,
+    settings_beside: opt.BesideOption = False,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """Tell what is inside a store: sizes, settings, layers, tables and sources."""
+    from colloc import verbs
+
+    target = Target(format, output, quiet, settings_beside)
+    if by is not None and documents:
+        raise UsageError("--by and --documents are two questions: ask one at a time")
+    if by is not None:
+        deliver(verbs.documents_by(store, by), target, "info")
+    elif documents:
+        deliver_parts(verbs.documents(store), {"store": str(store)}, target, "info")
+    elif format == "json":
+        with opened(output) as stream:
+            stream.write((json.dumps(verbs.info(store), ensure_ascii=False, indent=2) + "\n").encode())
+        if settings_beside and output is not None:
+            write_settings(output, {"store": str(store)}, "info")
+    else:
+        from colloc.answers.columns import Columns
+
+        rows = list(_flattened("", verbs.info(store)))
+        answer = Columns(
+            {"item": [name for name, _ in rows], "value": [value for _, value in rows]}, {"store": str(store)}
+        )
+        deliver(answer, target, "info")
+
+
+def _flattened(prefix: str, value: Any) -> Iterator[tuple[str, str]]:
+    """Nested values as dotted names and text: ``settings.read.encoding``, ``sources.1.name``."""
+    if isinstance(value, Mapping):
+        inner = [(str(key), item) for key, item in value.items()]
+    elif isinstance(value, list | tuple) and any(isinstance(item, Mapping) for item in value):
+        inner = [(str(number), item) for number, item in enumerate(value, start=1)]
+    else:
+        plain = ", ".join(map(str, value)) if isinstance(value, list | tuple) else "" if value is None else str(value)
+        yield prefix, plain
+        return
+    for name, item in inner:
+        yield from _flattened(f"{prefix}.{name}" if prefix else name, item)
+
+
+def check(store: opt.StoreArgument, quiet: opt.QuietOption = False) -> None:
+    """Verify a store: pages, sums and sizes. The exit code is 1 where something is wrong."""
+    from colloc import verbs
+
+    findings = verbs.check(store)
+    if findings:
+        print_lines(f"{store}: {finding}" for finding in findings)
+        raise typer.Exit(1)
+    if not quiet:
+        print_lines([f"{store}: all is well"])
+
+
+def tally(
+    store: opt.StoreArgument,
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    relation: opt.RelationOption = None,
+    where: opt.WhereOption = None,
+    drop: Annotated[bool, typer.Option("--drop", help="Drop this table instead of counting it.")] = False,
+    listed: Annotated[bool, typer.Option("--list", help="List the tables that are kept, and count nothing.")] = False,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    format: opt.FormatOption = "table",
+    output: opt.OutputOption = None,
+    settings_beside: opt.BesideOption = False,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """Count another table and keep it, so that questions about it are answered at once.
+
+    What is not said is as the store was built. The result is the list of tables kept.
+    """
+    from colloc import verbs
+
+    target = Target(format, output, quiet, settings_beside)
+    if listed and drop:
+        raise UsageError("--list changes nothing: leave out --drop")
+    if not listed:
+        with ProgressLine(quiet=quiet) as progress:
+            verbs.tally(
+                store,
+                layer=layer,
+                window=window,
+                left=left,
+                right=right,
+                unit=unit,
+                inside=inside,
+                margins=margins,
+                relation=relation,
+                where=where or (),
+                drop=drop,
+                jobs=jobs,
+                memory=opt.memory_bytes(memory),
+                progress=progress,
+            )
+    deliver(verbs.tallies(store), target, "tally")
+
+
+def register(app: typer.Typer) -> None:
+    """Add the commands of this module."""
+    for command in (info, check, tally):
+        app.command()(command)
