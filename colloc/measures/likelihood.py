@@ -1,4 +1,4 @@
-"""Tests of independence that compare all four cells: the likelihood ratio G2 and Pearson's X2, with p-values."""
+"""Evidence against independence: the likelihood ratio G2 and Pearson's X2 with p-values, t-score and z-score."""
 
 from __future__ import annotations
 
@@ -74,6 +74,21 @@ def g2_log10_p(table: Table) -> FloatArray:
 def chi2_log10_p(table: Table) -> FloatArray:
     """log10 of ``chi2_p``, exact where the p-value itself is too small for a float."""
     return _log_p(x2(table)) * LOG10_E
+
+
+@table_function
+def t(table: Table) -> FloatArray:
+    """t-score (O - E) / sqrt(O) (Church et al. 1991; Manning & Schuetze 1999, section 5.3.1).
+
+    -inf where words expected to meet never do; nan where a word never occurs.
+    """
+    return table.excess / np.sqrt(table.joint)
+
+
+@table_function
+def z(table: Table) -> FloatArray:
+    """z-score (O - E) / sqrt(E) (Berry-Rogghe 1973, without the factor for E / N); nan where a word never occurs."""
+    return table.excess / np.sqrt(table.expected)
 
 
 def chi_square_p(statistic: ArrayLike) -> FloatArray:

@@ -1,4 +1,4 @@
-"""Shares: how much of each word's occurrences the joint ones are."""
+"""Shares of a word's occurrences that are joint ones, and how much they sink without the other word (Delta-P)."""
 
 from __future__ import annotations
 
@@ -35,3 +35,15 @@ def p_second_given_first(table: Table) -> FloatArray:
 def p_first_given_second(table: Table) -> FloatArray:
     """Conditional probability p(x|y) = O / C; nan where the second word never occurs."""
     return table.joint / table.second_total
+
+
+@table_function
+def delta_p_second_given_first(table: Table) -> FloatArray:
+    """p(y|x) - p(y|not x), from -1 to 1 (Gries 2013, section 3); nan where the first word is never or always there."""
+    return table.joint / table.first_total - table.only_second / (table.total - table.first_total)
+
+
+@table_function
+def delta_p_first_given_second(table: Table) -> FloatArray:
+    """p(x|y) - p(x|not y), from -1 to 1 (Gries 2013, section 3); nan where the second word is never or always there."""
+    return table.joint / table.second_total - table.only_first / (table.total - table.second_total)

@@ -1,16 +1,18 @@
-"""``docs/measures.md``, made from the catalogue: ``python -m colloc.measures.page > docs/measures.md``."""
+"""``docs/measures.md``, made from the catalogue: ``python -m colloc.measures.catalogue.page > docs/measures.md``."""
 
+# ruff: noqa: E501  (rows of a Markdown table cannot be wrapped)
 from __future__ import annotations
 
 import sys
 from collections.abc import Iterator
 
-from colloc.measures.catalogue import MEASURES, Measure
+from colloc.measures.catalogue import MEASURES
+from colloc.measures.catalogue.entries import Measure
 
 _OPENING = """\
 # Measures of association
 
-<!-- Made from the catalogue: python -m colloc.measures.page > docs/measures.md -->
+<!-- Made from the catalogue: python -m colloc.measures.catalogue.page > docs/measures.md -->
 
 Every measure is a function of four numbers: how often the two words meet (O, `joint`), how often each occurs (R,
 `first_total`, and C, `second_total`), and how many observations there are (N, `total`). E = R C / N is the joint count
@@ -103,7 +105,7 @@ def _overview() -> Iterator[str]:
     yield "| --- | --- | --- | --- | --- |"
     for measure in MEASURES.values():
         alike, cells = _yes(measure.symmetric), _yes(measure.needs_cells)
-        yield f"| [`{measure.name}`](#{measure.name}) | {measure.title} | {measure.unit} | {alike} | {cells} |"
+        yield f"| `{measure.name}` | [{measure.title}](#{_anchor(measure.title)}) | {measure.unit} | {alike} | {cells} |"
     yield ""
     yield (
         'Measures that "need a real table" are refused where the margins count something else than the joint count '
@@ -112,9 +114,9 @@ def _overview() -> Iterator[str]:
 
 
 def _section(measure: Measure) -> Iterator[str]:
-    yield f"## {measure.name}"
+    yield f"## {measure.title}"
     yield ""
-    yield f"{measure.title}: `{measure.formula}`"
+    yield f"`{measure.name}` = `{measure.formula}`"
     yield ""
     yield f"- **Range**: {measure.range}"
     yield f"- **Unit**: {measure.unit}"
@@ -122,6 +124,11 @@ def _section(measure: Measure) -> Iterator[str]:
     yield f"- **Underrates**: {measure.under_rates}"
     yield f"- **Misleads**: {measure.misleads}"
     yield f"- **Source**: {measure.source}"
+
+
+def _anchor(heading: str) -> str:
+    kept = "".join(character for character in heading.lower() if character.isalnum() or character in " -")
+    return kept.replace(" ", "-")
 
 
 def _yes(fact: bool) -> str:

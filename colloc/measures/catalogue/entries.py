@@ -1,16 +1,13 @@
-"""The one list of measures: the command line, the documentation and the shared tests are made from it."""
+"""The entries of the catalogue: what each measure is, what it favours, when it misleads, where it comes from."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
-from types import MappingProxyType
 
 from numpy.typing import ArrayLike
 
-from colloc.errors import UsageError
-from colloc.measures import delta_p, exact, likelihood, odds, overlap, pmi, scores
-from colloc.measures.contingency import FloatArray, Rule, TableFunction, evaluate
+from colloc.measures import exact, likelihood, odds, overlap, pmi
+from colloc.measures.contingency import FloatArray, Rule, TableFunction
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -64,40 +61,12 @@ class Measure:
         return self.function(joint, first_total, second_total, total)
 
 
-def compute_all(
-    names: Sequence[str], joint: ArrayLike, first_total: ArrayLike, second_total: ArrayLike, total: ArrayLike
-) -> dict[str, FloatArray]:
-    """Several measures of the same tables, in the order asked, sharing what they have in common.
-
-    Raises
-    ------
-    UsageError
-        A name is not in the catalogue.
-    """
-    rules = [find(name).rule for name in names]
-    return dict(zip(names, evaluate(rules, joint, first_total, second_total, total), strict=True))
-
-
-def find(name: str) -> Measure:
-    """The measure of that name.
-
-    Raises
-    ------
-    UsageError
-        There is none; the message lists those there are.
-    """
-    try:
-        return MEASURES[name]
-    except KeyError as error:
-        raise UsageError(f"unknown measure {name!r}; there are {', '.join(MEASURES)}") from error
-
-
 _CELL_P_MISLEADS = (
     "Windowed pair counts are not independent trials, so the p-value is too small; with thousands of pairs use "
     "q-values. In a large corpus a tiny p-value says that the count is large, not that the association is strong."
 )
 
-_ENTRIES = (
+ENTRIES = (
     Measure(
         name="pmi",
         title="Pointwise mutual information",
@@ -312,7 +281,7 @@ _ENTRIES = (
         "when O is small. Below 0 it exaggerates, as O in the denominator vanishes.",
         source="Church, Gale, Hanks & Hindle 1991, Using statistics in lexical analysis; Manning & Schuetze 1999, "
         "section 5.3.1",
-        function=scores.t,
+        function=likelihood.t,
     ),
     Measure(
         name="z",
@@ -326,7 +295,7 @@ _ENTRIES = (
         under_rates="pairs of frequent words",
         misleads="Where E is below 5 it is far from normal.",
         source="Berry-Rogghe 1973, in The Computer and Literary Studies (there with sqrt(E (1 - p)))",
-        function=scores.z,
+        function=likelihood.z,
     ),
     Measure(
         name="dice",
@@ -382,7 +351,7 @@ _ENTRIES = (
         under_rates="rare second words: it cannot exceed O / R",
         misleads="From one direction nothing follows about the other. At small R the value is coarse.",
         source="Gries 2013, Int. J. of Corpus Linguistics 18(1), section 3, doi:10.1075/ijcl.18.1.09gri",
-        function=delta_p.delta_p_second_given_first,
+        function=overlap.delta_p_second_given_first,
     ),
     Measure(
         name="delta_p_first_given_second",
@@ -396,7 +365,7 @@ _ENTRIES = (
         under_rates="rare first words: it cannot exceed O / C",
         misleads="From one direction nothing follows about the other. At small C the value is coarse.",
         source="Gries 2013, Int. J. of Corpus Linguistics 18(1), section 3, doi:10.1075/ijcl.18.1.09gri",
-        function=delta_p.delta_p_first_given_second,
+        function=overlap.delta_p_first_given_second,
     ),
     Measure(
         name="log_odds",
@@ -457,6 +426,3 @@ _ENTRIES = (
         function=overlap.p_first_given_second,
     ),
 )
-
-MEASURES: Mapping[str, Measure] = MappingProxyType({entry.name: entry for entry in _ENTRIES})
-"""All measures by name, in the order of the documentation. A new one is a function and an entry above."""
