@@ -66,12 +66,16 @@ class Contexts:
             return self.habit.astype(np.float64)
         if name.startswith("topic_"):
             topic = name.removeprefix("topic_")
-            genre = next(g for g in GENRES if topic in TOPICS[g])
-            own = (self.genre == GENRES.index(genre)) & (self.topic == list(TOPICS[genre]).index(topic))
-            return own.astype(np.float64)
+            for g, genre in enumerate(GENRES):
+                if topic in TOPICS[genre]:
+                    own: NDArray[np.bool_] = (self.genre == g) & (self.topic == list(TOPICS[genre]).index(topic))
+                    return own.astype(np.float64)
+        if name not in SHARES:
+            raise ValueError(f"no curve is called {name}")
         start, end = SHARES[name]
         passed: NDArray[np.float64] = (self.year - FIRST_YEAR) / (LAST_YEAR - FIRST_YEAR)
-        return start + (end - start) * passed
+        values: NDArray[np.float64] = start + (end - start) * passed
+        return values
 
     def sentence_weights(self) -> NDArray[np.float64]:
         """Expected number of body sentences that one document adds in each context."""

@@ -47,7 +47,10 @@ def read_rules(texts: Mapping[str, str], contexts: Contexts) -> dict[str, list[R
             weight, bar, body = line.partition("|")
             if not bar or not body.split():
                 raise ValueError(f"{name}: a rule is 'weight | symbols', not {line!r}")
-            weights.append(_weight(weight.strip(), contexts))
+            try:
+                weights.append(_weight(weight.strip(), contexts))
+            except ValueError as error:
+                raise ValueError(f"{name}: {error}") from error
             bodies.append(tuple(body.split()))
         total = np.add.reduce(np.broadcast_arrays(*weights))
         # A name of one topic is never reached in the others: there any probabilities will do.
