@@ -111,7 +111,7 @@ def _document(opened: Opened, record: int, number: int, value: dict[str, Any]) -
     identifier = value.pop(id_column, None)
     if isinstance(identifier, (dict, list)) or (settings.id_column and identifier in (None, "")):
         raise opened.error(f"column {id_column!r} holds no identifier; give each record one", number)
-    columns = {key: metadata(opened, number, key, item) for key, item in value.items()}
+    columns = {key: item if type(item) is str else metadata(opened, number, key, item) for key, item in value.items()}
     return record_document(opened, record, text, None if identifier == "" else identifier, columns)
 
 

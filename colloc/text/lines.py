@@ -103,7 +103,9 @@ def universal_lines(opened: Opened) -> Iterator[str]:
 
 def pieces(text: str) -> tuple[str, ...]:
     """``text`` in pieces of bounded size."""
-    return tuple(text[start : start + PIECE] for start in range(0, len(text), PIECE)) or ("",)
+    if len(text) <= PIECE:
+        return (text,)
+    return tuple(text[start : start + PIECE] for start in range(0, len(text), PIECE))
 
 
 def record_document(

@@ -16,6 +16,9 @@ from colloc.settings import ReadSettings
 from colloc.text.opening import STANDARD_INPUT, Opened, reading, shown
 from colloc.text.readers import PLAIN, Format, checked_format, format_by_name
 
+_Identity = tuple[int, int]
+"""Device and inode."""
+
 
 @dataclass(frozen=True, slots=True)
 class InputFile:
@@ -53,13 +56,14 @@ class Listing:
     """Files in folders that were passed over: their names tell of no known format, or are hidden."""
 
 
-def list_inputs(inputs: Sequence[str], format: str = "auto") -> Listing:
+def list_inputs(inputs: Sequence[str], format: str = "auto", apart: str | None = None) -> Listing:
     """Find the files that ``inputs`` mean, without opening them.
 
     A folder is walked in sorted order, links followed; taken are the files
     with an extension of ``format`` (of any format for ``auto``). A file named
     itself or by a glob is taken whatever it is called, as plain text where its
-    name tells of no format.
+    name tells of no format. The file ``apart`` (a table of metadata, which
+    may lie in the same folder) is left out.
 
     Raises
     ------
@@ -71,33 +75,33 @@ def list_inputs(inputs: Sequence[str], format: str = "auto") -> Listing:
     chosen = checked_format(format)
     if not inputs:
         raise NoInputError("no input: name files, folders, globs, or - for standard input")
-    seen: set[str] = set()
-    files: list[InputFile] = []
+    left_out = None if apart is None else os.path.realpath(apart)
+    files: dict[str, InputFile] = {}
     ignored = 0
     for given in inputs:
-        found = 0
+        found = False
         for path, folder in _found(given):
+            real = path if path == STANDARD_INPUT else os.path.realpath(path)
+            if real == left_out:
+                continue
             format_ = format_by_name(path)
-            if folder and (os.path.basename(path).startswith(".") or format_ is None or chosen not in (None, format_)):
+            if folder and (_is_hidden(path) or format_ is None or chosen not in (None, format_)):
                 ignored += 1
                 continue
-            found += 1
-            real = path if path == STANDARD_INPUT else os.path.realpath(path)
-            if real not in seen:
-                seen.add(real)
-                files.append(_input_file(path, folder, chosen or format_ or PLAIN))
+            found = True
+            if real not in files:
+                files[real] = _input_file(path, folder, chosen or format_ or PLAIN)
         if not found:
             endings = " ".join((chosen or PLAIN).extensions)
             raise NoInputError(
                 f"{shown(_printable(given))}: no file to read in it: from folders those of known formats are taken "
                 f"(such as {endings}), others must be named"
             )
-    if all(file.size == 0 for file in files):
-        raise NoInputError(
-            f"{shown(files[0].name)}: empty{' like all other inputs' if len(files) > 1 else ''}; "
-            "name a file with text in it"
-        )
-    return Listing(tuple(_distinct(files)), ignored)
+    listed = list(files.values())
+    if all(file.size == 0 for file in listed):
+        others = " like all other inputs" if len(listed) > 1 else ""
+        raise NoInputError(f"{shown(listed[0].name)}: empty{others}; name a file with text in it")
+    return Listing(tuple(_distinct(listed)), ignored)
 
 
 def _found(given: str) -> Iterator[tuple[str, str]]:
@@ -126,34 +130,33 @@ def _found(given: str) -> Iterator[tuple[str, str]]:
 
 def _walk(folder: str) -> Iterator[str]:
     """Regular files below a folder in sorted order, each folder once even where several links lead to it."""
-    walked: set[tuple[int, int]] = set()
-    # Each level: the folder's identity and the entries still to be visited, last first.
-    levels: list[tuple[tuple[int, int], list[str]]] = []
-    path: str | None = folder
-    while True:
-        if path is not None:
-            with reading(_printable(path)):
-                status = os.stat(path)
-                key = (status.st_dev, status.st_ino)
-                if stat.S_ISREG(status.st_mode):
-                    yield path
-                elif stat.S_ISDIR(status.st_mode):
-                    if any(key == above for above, _ in levels):
-                        raise DataError(
-                            f"{shown(_printable(path))}: a link back to a folder above it: "
-                            "remove the link, or name the folders to read"
-                        )
-                    if key not in walked:
-                        walked.add(key)
-                        entries = sorted(os.listdir(path), reverse=True)
-                        levels.append((key, [os.path.join(path, entry) for entry in entries]))
-        while levels and not levels[-1][1]:
+    walked: set[_Identity] = set()
+    # From the folder down to where the walk is: what each folder is, and its entries still to be visited.
+    levels: list[tuple[_Identity | None, Iterator[str]]] = [(None, iter((folder,)))]
+    while levels:
+        path = next(levels[-1][1], None)
+        if path is None:
             levels.pop()
-        if not levels:
-            return
-        path = levels[-1][1].pop()
-        if os.path.isdir(path) and os.path.basename(path).startswith("."):
-            path = None
+            continue
+        with reading(_printable(path)):
+            status = os.stat(path)
+            if stat.S_ISREG(status.st_mode):
+                yield path
+            if not stat.S_ISDIR(status.st_mode) or (len(levels) > 1 and _is_hidden(path)):
+                continue
+            identity = (status.st_dev, status.st_ino)
+            if any(identity == above for above, _ in levels):
+                raise DataError(
+                    f"{shown(_printable(path))}: a link back to a folder above it: "
+                    "remove the link, or name the folders to read"
+                )
+            if identity not in walked:
+                walked.add(identity)
+                levels.append((identity, iter([os.path.join(path, entry) for entry in sorted(os.listdir(path))])))
+
+
+def _is_hidden(path: str) -> bool:
+    return os.path.basename(path).startswith(".")
 
 
 def _input_file(path: str, folder: str, format: Format) -> InputFile:
@@ -179,5 +182,5 @@ def _distinct(files: list[InputFile]) -> Iterator[InputFile]:
 
 
 def _printable(path: str) -> str:
-    """A path as text that UTF-8 can hold: bytes of file names that are no UTF-8 are written as escapes."""
-    return path.encode("utf-8", "surrogateescape").decode("utf-8", "backslashreplace")
+    """A path as text that UTF-8 can hold: what Python puts for bytes that are no UTF-8 is written as escapes."""
+    return path.encode("utf-8", "backslashreplace").decode("utf-8")

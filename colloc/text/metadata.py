@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import functools
 import math
 import os
 import re
@@ -18,6 +19,9 @@ from colloc.text.opening import shown
 
 _FIELD = re.compile(r"\{([^{}]*)\}")
 _LARGEST_INTEGER = 2**63 - 1
+_NUMBER_STARTS = "-0123456789"
+_LONGEST_NUMBER = 24
+"""Characters of the longest canonical float, -2.2250738585072014e-308."""
 
 
 def typed(text: str) -> MetaValue:
@@ -25,14 +29,19 @@ def typed(text: str) -> MetaValue:
 
     ``1990`` is a number; ``007``, ``1.50``, ``+1`` and ``nan`` stay text, so nothing is lost.
     """
-    if len(text) > 24 or not text.isascii():
+    if text[:1] not in _NUMBER_STARTS or len(text) > _LONGEST_NUMBER:
         return text
+    return _number(text)
+
+
+@functools.lru_cache(maxsize=4096)
+def _number(text: str) -> MetaValue:
     for kind in (int, float):
         try:
             value = kind(text)
         except ValueError:
             continue
-        if repr(value) == text and math.isfinite(value) and abs(value) <= _LARGEST_INTEGER:
+        if repr(value) == text and (abs(value) <= _LARGEST_INTEGER if kind is int else math.isfinite(value)):
             return value
     return text
 

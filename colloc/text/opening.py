@@ -49,7 +49,7 @@ _BINARY = (
 
 def shown(name: str) -> str:
     """A file name as it may stand in a one-line message."""
-    return name if name.isprintable() else name.encode("unicode_escape").decode("ascii")
+    return (name if name.isprintable() else name.encode("unicode_escape").decode("ascii")) or "''"
 
 
 @contextmanager
@@ -63,6 +63,8 @@ def reading(name: str) -> Iterator[None]:
         raise NoInputError(f"{shown(name)}: no permission to read it") from error
     except OSError as error:
         raise InputOutputError(f"{shown(name)}: cannot be read: {error.strerror or error}") from error
+    except ValueError as error:
+        raise NoInputError(f"{shown(name)}: no file can have this name") from error
 
 
 class Opened:

@@ -79,6 +79,6 @@ def open_sources(inputs: Sequence[str], settings: ReadSettings) -> Iterator[Sour
         For a link loop, a wrong metadata table, or a path that does not match the pattern.
     """
     checked_encoding(settings.encoding)
-    files = list_inputs(inputs, settings.format).files
+    files = list_inputs(inputs, settings.format, apart=settings.meta_table).files
     metadata = FileMetadata(settings, files)
     return iter([Source(file, metadata.of(file), settings) for file in files])
