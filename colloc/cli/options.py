@@ -47,19 +47,23 @@ def shown_measures(values: Iterable[str] | None) -> list[str] | None:
     if "all" in names:
         return list(MEASURES)
     for name in names:
-        check_measure(name)
+        _check_known(name, list(MEASURES))
     return names
 
 
-def check_measure(name: str | None) -> None:
-    """Raise UsageError for a name that is neither ``joint`` nor in the catalogue."""
+def check_ranking(name: str | None) -> None:
+    """Raise UsageError for a ``--measure`` that is neither ``joint`` nor in the catalogue."""
     from colloc.measures.catalogue import MEASURES
 
-    if name is None or name == "joint" or name in MEASURES:
-        return
-    near = difflib.get_close_matches(name, ["joint", *MEASURES], n=1)
-    meant = f"did you mean {near[0]!r}? " if near else ""
-    raise UsageError(f"unknown measure {name!r}; {meant}choose from joint, {', '.join(MEASURES)}")
+    if name is not None:
+        _check_known(name, ["joint", *MEASURES])
+
+
+def _check_known(name: str, known: list[str]) -> None:
+    if name not in known:
+        near = difflib.get_close_matches(name, known, n=1)
+        meant = f"did you mean {near[0]!r}? " if near else ""
+        raise UsageError(f"unknown measure {name!r}; {meant}choose from {', '.join(known)}")
 
 
 def read_words(words: Sequence[str], listed: Path | None) -> list[str]:
@@ -87,7 +91,7 @@ def _option(*names: str, help: str, **more: Any) -> Any:
 StoreArgument = Annotated[Path, typer.Argument(metavar="STORE", help="The store: one SQLite file.")]
 InputArgument = Annotated[
     list[str],
-    typer.Argument(metavar="INPUT...", help="Files, folders or quoted globs; - reads standard input."),
+    typer.Argument(metavar="INPUT", help="Files, folders or quoted globs; - reads standard input."),
 ]
 
 # Result

@@ -7,6 +7,7 @@ import json
 import sys
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
+from itertools import chain
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, BinaryIO
 
@@ -75,11 +76,16 @@ def deliver(answer: Columns, target: Target, command: str) -> None:
 
 
 def deliver_parts(parts: Iterable[Columns], settings: Mapping[str, Any], target: Target, command: str) -> None:
-    """Write an answer that comes in parts with the same columns, holding one part at a time."""
+    """Write an answer that comes in parts with the same columns, holding one part at a time.
+
+    Nothing is written before the first part is there, so that most errors leave no trace.
+    """
+    rest = iter(parts)
+    first = next(rest)
     remark(settings_line(command, settings), quiet=target.quiet)
     with opened(target.path) as stream:
         writer = make_writer(target.format, stream, settings)
-        for part in parts:
+        for part in chain([first], rest):
             writer.write(part)
         writer.close()
     if target.settings_beside and target.path is not None:

@@ -18,7 +18,7 @@ LIMIT = 50
 def words(
     store: opt.StoreArgument,
     pattern: Annotated[
-        str | None, typer.Argument(metavar="[PATTERN]", help="Only words like this; * stands for any characters.")
+        str | None, typer.Argument(metavar="PATTERN", help="Only words like this; * stands for any characters.")
     ] = None,
     layer: opt.LayerOption = None,
     where: opt.WhereOption = None,
@@ -84,7 +84,7 @@ def pairs(
     """
     from colloc import verbs
 
-    opt.check_measure(measure)
+    opt.check_ranking(measure)
     target = Target(format, output, quiet, settings_beside)
     with ProgressLine(quiet=quiet) as progress:
         answer = verbs.pairs(
@@ -116,7 +116,7 @@ def pairs(
 
 def around(
     store: opt.StoreArgument,
-    words: Annotated[list[str] | None, typer.Argument(metavar="[WORD]...", help="Words asked for.")] = None,
+    words: Annotated[list[str] | None, typer.Argument(metavar="WORD", help="Words asked for.")] = None,
     words_from: Annotated[
         Path | None, typer.Option("--words-from", metavar="FILE", help="Also the words of this file, one a line.")
     ] = None,
@@ -153,7 +153,7 @@ def around(
     """List what stands around each word, strongest first; the word asked for is `first`."""
     from colloc import verbs
 
-    opt.check_measure(measure)
+    opt.check_ranking(measure)
     asked = opt.read_words(words or [], words_from)
     target = Target(format, output, quiet, settings_beside)
     with ProgressLine(quiet=quiet) as progress:

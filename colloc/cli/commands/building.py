@@ -274,7 +274,7 @@ def add(
 def remove(
     store: opt.StoreArgument,
     identifiers: Annotated[
-        list[str] | None, typer.Argument(metavar="[DOCUMENT]...", help="Identifiers of documents.")
+        list[str] | None, typer.Argument(metavar="DOCUMENT", help="Identifiers of documents.")
     ] = None,
     where: opt.WhereOption = None,
     jobs: opt.JobsOption = None,
@@ -300,7 +300,7 @@ def remove(
 
 def merge(
     store: opt.StoreArgument,
-    others: Annotated[list[Path], typer.Argument(metavar="OTHER...", help="Stores to take in; they stay as they are.")],
+    others: Annotated[list[Path], typer.Argument(metavar="OTHER", help="Stores to take in; they stay as they are.")],
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
     temp: opt.TempOption = None,

@@ -21,7 +21,7 @@ CORPUS = "corpora_demo"
 
 def demo(
     folder: Annotated[
-        Path, typer.Argument(metavar="[FOLDER]", help=f"Folder in which {STORE_NAME} is built; it is made if missing.")
+        Path, typer.Argument(metavar="FOLDER", help=f"Folder in which {STORE_NAME} is built; it is made if missing.")
     ] = Path("."),
     quiet: opt.QuietOption = False,
 ) -> None:

@@ -11,7 +11,7 @@ import typer
 from colloc.cli import options as opt
 from colloc.cli.output import Target, deliver_parts
 from colloc.cli.tables_in import Rows, TableFormat, read_rows
-from colloc.errors import DataError, UsageError
+from colloc.errors import DataError
 
 if TYPE_CHECKING:
     from colloc.answers.columns import Columns
@@ -45,8 +45,6 @@ def measure(
     colloc pairs STORE --format csv | colloc measure -
     """
     names = opt.shown_measures(measures)
-    if names is not None and "joint" in names:
-        raise UsageError("joint is a column of the table, not a measure: leave it out of --measure")
     target = Target(format, output, quiet, settings_beside)
     settings: dict[str, Any] = {"table": "standard input" if str(table) == "-" else str(table), "measures": names}
     deliver_parts(_measured(read_rows(table, input_format), names), settings, target, "measure")

@@ -1,0 +1,84 @@
+"""The page ``docs/cli.md``, written from the commands themselves: ``python -m colloc.cli.reference``."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+import typer
+from typer.main import get_command
+
+from colloc.cli.app import build_app
+from colloc.cli.output import opened
+
+PAGE = Path(__file__).resolve().parents[2] / "docs" / "cli.md"
+WIDTH = 100
+
+INTRODUCTION = """\
+# Commands
+
+This page is written by `python -m colloc.cli.reference` from the commands themselves.
+
+STORE is the SQLite file that holds a corpus and its counts; it comes first. Results go to standard
+output or to the file of `-o`, everything else (the line with the settings, progress, errors) to standard error. A file
+named with `-o` is whole or not there: it is written beside its place and then renamed.
+
+## Formats
+
+| `--format` | result |
+| --- | --- |
+| `table` | aligned text for reading; measures with 4 decimals |
+| `csv`, `tsv` | RFC 4180 quoting, UTF-8, line feeds; numbers in full precision, nothing where there is no number |
+| `jsonl` | one object a line; `null` where there is no number, `"inf"` and `"-inf"` for infinities |
+| `json` | one object with `settings` and `rows` |
+| `parquet` | Apache Parquet, settings in the schema's metadata; needs `pip install 'colloc[tables]'` |
+
+In CSV and TSV a text that begins with `=`, `+`, `-`, `@`, a tab or a carriage return and is no number has an
+apostrophe put before it, so that no spreadsheet takes it for a formula; texts that begin with apostrophes before such a
+character get one more. `colloc measure` takes it off again.
+
+Sizes such as `--memory 2GB` are written with KB, MB, GB or TB, in powers of 1024.
+
+## Exit codes
+
+| code | meaning |
+| --- | --- |
+| 0 | done |
+| 1 | a check found problems, or the word or pair was never seen |
+| 2 | wrong usage |
+| 65 | bad data |
+| 66 | no input |
+| 69 | an optional library is missing |
+| 73 | the output cannot be created |
+| 74 | the disk is full, or reading or writing failed |
+| 75 | the store is locked by another process; try again |
+| 130 | interrupted |
+"""
+
+
+def markdown() -> str:
+    """The whole page."""
+    group: Any = get_command(build_app())
+    root = _context(group, "colloc", None)
+    parts = [INTRODUCTION, _section("colloc", group.get_help(root))]
+    for name in group.list_commands(root):
+        command = group.get_command(root, name)
+        parts.append(_section(f"colloc {name}", command.get_help(_context(command, name, root))))
+    return "\n".join(parts)
+
+
+def _context(command: Any, name: str, parent: typer.Context | None) -> typer.Context:
+    # A width of its own: the page must not depend on the terminal it is written from.
+    return typer.Context(
+        command, info_name=name, parent=parent, **{**command.context_settings, "terminal_width": WIDTH}
+    )
+
+
+def _section(title: str, text: str) -> str:
+    lines = "\n".join(line.rstrip() for line in text.splitlines())
+    return f"## {title}\n\n```text\n{lines}\n```\n"
+
+
+if __name__ == "__main__":
+    with opened(PAGE) as page:
+        page.write(markdown().encode())
