@@ -10,7 +10,7 @@ from types import TracebackType
 from typing import Any, Self
 
 from colloc.errors import CannotCreateError, CollocError, InputOutputError, LockedError, StoreDamagedError
-from colloc.store.locking import WriterLock
+from colloc.store.database.locking import WriterLock
 
 _FULL = {sqlite3.SQLITE_FULL}
 _BUSY = {sqlite3.SQLITE_BUSY, sqlite3.SQLITE_LOCKED}

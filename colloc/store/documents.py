@@ -9,7 +9,7 @@ from typing import Any
 
 from colloc.errors import DataError, NotSeenError, StoreDamagedError
 from colloc.records import DocumentRow
-from colloc.store import stream, texts
+from colloc.store import facts, stream, texts
 from colloc.store.connection import Store
 
 _COLUMNS = "id, identifier, source, record, first_token, n_tokens, first_character, n_characters, metadata"
@@ -46,8 +46,8 @@ def document(store: Store, number: int) -> DocumentRow:
 
 
 def iterate_documents(store: Store) -> Iterator[DocumentRow]:
-    """All documents, by number."""
-    for row in store.iterate(f"SELECT {_COLUMNS} FROM documents ORDER BY id"):
+    """All documents that readers see, by number."""
+    for row in store.iterate(f"SELECT {_COLUMNS} FROM documents WHERE id < ? ORDER BY id", (visible_end(store),)):
         yield _as_row(store, row)
 
 
@@ -57,9 +57,15 @@ def find_document(store: Store, identifier: str) -> int | None:
     return None if found is None else int(found)
 
 
+def visible_end(store: Store) -> int:
+    """Documents below this number are counted and seen by readers; those from it on are still being added."""
+    mark = facts.get(store, "counted")
+    return int(json.loads(mark)["documents"]) if mark is not None else 0
+
+
 def document_count(store: Store) -> int:
-    """How many documents the store has."""
-    return int(store.value("SELECT count(*) FROM documents"))
+    """How many documents readers see."""
+    return int(store.value("SELECT count(*) FROM documents WHERE id < ?", (visible_end(store),)))
 
 
 def remove_document(store: Store, number: int) -> None:
@@ -71,6 +77,7 @@ def remove_document(store: Store, number: int) -> None:
     with store.transaction():
         stream.blank_document(store, number)
         texts.blank_text(store, row.first_character, row.first_character + row.n_characters)
+        store.execute("DELETE FROM content_hashes WHERE document = ?", (number,))
         store.execute("DELETE FROM documents WHERE id = ?", (number,))
 
 

@@ -2,16 +2,33 @@
 
 from __future__ import annotations
 
+from enum import Enum
+from typing import overload
+
 from colloc.errors import StoreDamagedError
 from colloc.store.connection import Store
 
 GENERATION = "generation"
 
 
-def get(store: Store, key: str, default: str | None = None) -> str | None:
-    """The text kept under ``key``."""
+class _Required(Enum):
+    REQUIRED = 0
+
+
+@overload
+def get(store: Store, key: str) -> str: ...
+@overload
+def get(store: Store, key: str, default: str) -> str: ...
+@overload
+def get(store: Store, key: str, default: None) -> str | None: ...
+def get(store: Store, key: str, default: str | _Required | None = _Required.REQUIRED) -> str | None:
+    """The text kept under ``key``; where there is none, ``default``, or StoreDamagedError if none was given."""
     value = store.value("SELECT value FROM facts WHERE key = ?", (key,))
-    return default if value is None else str(value)
+    if value is not None:
+        return str(value)
+    if isinstance(default, _Required):
+        raise StoreDamagedError(f"{store.path}: does not say its {key!r}; build the store again")
+    return default
 
 
 def need(store: Store, key: str) -> str:
@@ -19,6 +36,14 @@ def need(store: Store, key: str) -> str:
     value = get(store, key)
     if value is None:
         raise StoreDamagedError(f"{store.path}: the fact {key!r} is missing; build the store anew")
+    return value
+
+
+def required(store: Store, key: str) -> str:
+    """The text kept under ``key``; StoreDamagedError where it is missing."""
+    value = get(store, key)
+    if value is None:
+        raise StoreDamagedError(f"{store.path}: its {key.replace('_', ' ')} are missing; build the store again")
     return value
 
 
@@ -39,10 +64,10 @@ def every(store: Store) -> dict[str, str]:
 
 def generation(store: Store) -> int:
     """How often the documents have changed: 0 for a new store."""
-    return int(get(store, GENERATION, "0") or 0)
+    return int(get(store, GENERATION, "0"))
 
 
-def next_generation(store: Store) -> int:
+def change_generation(store: Store) -> int:
     """Count one change of documents; returns the new number."""
     number = generation(store) + 1
     put(store, GENERATION, str(number))

@@ -8,9 +8,10 @@ from collections.abc import Mapping
 from pathlib import Path
 
 from colloc.errors import CannotCreateError, DataError, InputOutputError, NoInputError
-from colloc.store import migrations, schema, scratch
+from colloc.store import scratch
 from colloc.store.connection import Store, translated
-from colloc.store.locking import WriterLock
+from colloc.store.database import migrations, schema
+from colloc.store.database.locking import WriterLock
 
 __all__ = ["Store", "create", "open_for_reading", "open_for_writing"]
 

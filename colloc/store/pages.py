@@ -30,7 +30,7 @@ from numpy.typing import NDArray
 
 from colloc.errors import StoreDamagedError
 from colloc.records import Int64Array, PairBlock, UInt32Array, UInt64Array
-from colloc.store.packing import checksum
+from colloc.store.database.packing import checksum
 
 PAGE_PAIRS = 65_536
 Order = Literal["low", "high"]

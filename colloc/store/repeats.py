@@ -7,12 +7,13 @@ from collections.abc import Iterable
 from pathlib import Path
 from typing import Self
 
-from colloc.store.opening import Store
+from colloc.store.connection import Store
 
 
-def remember(store: Store, digests: Iterable[bytes]) -> None:
-    """Store hashes with the batch whose text they are of, inside the caller's transaction."""
-    store.connection.executemany("INSERT OR IGNORE INTO content_hashes VALUES (?)", ((digest,) for digest in digests))
+def remember(store: Store, document: int, digests: Iterable[bytes]) -> None:
+    """Store hashes with the document whose text they are of, inside the caller's transaction."""
+    rows = ((digest, document) for digest in digests)
+    store.execute_many("INSERT OR IGNORE INTO content_hashes VALUES (?, ?)", rows)
 
 
 class SeenHashes:
@@ -30,7 +31,7 @@ class SeenHashes:
         self._connection.execute("PRAGMA synchronous = OFF")
         self._connection.execute("CREATE TABLE seen (digest BLOB PRIMARY KEY) WITHOUT ROWID")
         self._connection.execute("BEGIN")
-        stored = store.connection.execute("SELECT digest FROM content_hashes ORDER BY digest")
+        stored = store.iterate("SELECT digest FROM content_hashes ORDER BY digest")
         self._connection.executemany("INSERT INTO seen VALUES (?)", stored)
 
     def add(self, digest: bytes) -> bool:

@@ -11,7 +11,7 @@ from contextlib import contextmanager
 from pathlib import Path
 
 from colloc.errors import CannotCreateError
-from colloc.store.locking import process_lives
+from colloc.store.database.locking import process_lives
 
 
 @contextmanager

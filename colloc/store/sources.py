@@ -42,12 +42,24 @@ def add_source(store: Store, info: SourceInfo) -> int:
     return int(number)
 
 
-def note_progress(store: Store, number: int, records: int, digest: str | None = None, finished: bool = False) -> None:
-    """Note how many documents of a source are in the store, and at its end its digest."""
+def copy_source(store: Store, source: SourceRow) -> int:
+    """Enter a source of another store, as finished; returns its number here."""
+    number = add_source(store, source.info)
     store.execute(
         "UPDATE sources SET records = ?, digest = ?, finished = ? WHERE id = ?",
-        (records, digest, int(finished), number),
+        (source.records, source.digest, int(source.finished), number),
     )
+    return number
+
+
+def note_records(store: Store, number: int, records: int) -> None:
+    """Note how many documents of a source are in the store."""
+    store.execute("UPDATE sources SET records = ? WHERE id = ?", (records, number))
+
+
+def finish(store: Store, number: int, digest: str) -> None:
+    """Note that a source was read to its end."""
+    store.execute("UPDATE sources SET digest = ?, finished = 1 WHERE id = ?", (digest, number))
 
 
 def find_source(store: Store, name: str) -> SourceRow | None:

@@ -15,8 +15,8 @@ from numpy.typing import NDArray
 
 from colloc.errors import StoreDamagedError, UsageError
 from colloc.records import NO_TERM, Anchors, Int64Array, UInt32Array
-from colloc.store import packing
 from colloc.store.connection import Store
+from colloc.store.database import packing
 
 _OFFSETS = ("sentences", "paragraphs", "document_starts", "document_numbers", "anchor_tokens", "anchor_characters")
 _HEAD = struct.Struct("<4q")
@@ -88,6 +88,16 @@ def token_count(store: Store) -> int:
     """Length of the stream, removed tokens included: where the next block begins."""
     last = store.row("SELECT first_token + n_tokens FROM blocks ORDER BY id DESC LIMIT 1")
     return 0 if last is None else int(last[0])
+
+
+def block_count(store: Store) -> int:
+    """Number of blocks, and so the number of the next."""
+    return int(store.value("SELECT coalesce(max(id) + 1, 0) FROM blocks"))
+
+
+def block_count(store: Store) -> int:
+    """How many blocks the stream has: the number of the next one."""
+    return int(store.value("SELECT coalesce(max(id) + 1, 0) FROM blocks"))
 
 
 def read_block(store: Store, number: int) -> Block:
@@ -200,13 +210,13 @@ def read_column(store: Store, block: int, name: str) -> NDArray[Any]:
     return packing.unpack(data, f"{_name(store, block)}, column {name}")
 
 
-def column_names(store: Store) -> list[str]:
-    """Columns that any block has, sorted."""
-    return [name for (name,) in store.rows("SELECT DISTINCT name FROM block_columns ORDER BY name")]
+def column_names(store: Store, block: int) -> list[str]:
+    """Columns of annotation that a block has, sorted."""
+    return [name for (name,) in store.rows("SELECT name FROM block_columns WHERE block = ? ORDER BY name", (block,))]
 
 
 def _blank_columns(store: Store, block: int, first: int, last: int) -> None:
-    for (name,) in store.rows("SELECT name FROM block_columns WHERE block = ?", (block,)):
+    for name in column_names(store, block):
         values = read_column(store, block, name).copy()
         values[first:last] = 0
         append_column(store, block, name, values)
@@ -223,8 +233,8 @@ def _packed_offsets(block: Block) -> tuple[bytes, ...]:
 
 
 def _present(tokens: UInt32Array) -> UInt32Array:
-    present: UInt32Array = np.unique(tokens)
-    return present[present != NO_TERM]
+    present: UInt32Array = np.unique(tokens[tokens != NO_TERM])
+    return present
 
 
 def _head_checksum(head: BlockHead) -> int:

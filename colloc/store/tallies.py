@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import time
 from collections.abc import Iterator
+from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
@@ -11,10 +12,10 @@ import numpy as np
 from colloc.errors import StoreDamagedError
 from colloc.records import Int64Array, PairBlock, UInt32Array
 from colloc.settings import TallySpec
-from colloc.store import layers
 from colloc.store.connection import Store
+from colloc.store.lexicon import layers
 from colloc.store.pages import ORDERS, PAGE_PAIRS, Order, keys_of
-from colloc.store.runs import (
+from colloc.store.paging.runs import (
     StoredRun,
     add_margins,
     join_blocks,
@@ -23,7 +24,7 @@ from colloc.store.runs import (
     merged,
     take,
 )
-from colloc.store.tally_writing import TallyWriter, drop, limit_cache, set_kept
+from colloc.store.paging.writing import TallyWriter, drop, limit_cache, set_kept
 
 __all__ = ["Tally", "TallyWriter", "compact", "drop", "find", "limit_cache", "set_kept", "tally_list"]
 
@@ -145,9 +146,41 @@ def find(store: Store, spec: TallySpec) -> Tally | None:
     return Tally(store, number, spec)
 
 
-def tally_list(store: Store) -> list[TallySpec]:
-    """Specs of all tallies, in the order in which they were counted."""
-    return [TallySpec.from_json(text) for (text,) in store.rows("SELECT spec FROM tallies ORDER BY id")]
+@dataclass(frozen=True, slots=True)
+class TallyEntry:
+    """What the list of tallies says of one.
+
+    Attributes
+    ----------
+    kept : bool
+        Asked for by the user; False for one that is only a cache.
+    n_bytes : int
+        Size of its pages.
+    last_used : int
+        Seconds since the epoch.
+    n_pairs : int
+        Pairs of the table as last compacted; changes added since are not in it.
+    total : int
+    """
+
+    spec: TallySpec
+    kept: bool
+    n_bytes: int
+    last_used: int
+    n_pairs: int
+    total: int
+
+
+def tally_list(store: Store) -> list[TallyEntry]:
+    """All tallies, in the order in which they were counted."""
+    entries = []
+    for number, text, kept, size, used in store.rows(
+        "SELECT id, spec, kept, bytes, last_used FROM tallies ORDER BY id"
+    ):
+        runs = load_runs(store, number)
+        total = sum(run.total for run in runs)
+        entries.append(TallyEntry(TallySpec.from_json(text), bool(kept), size, used, runs[0].n_pairs, total))
+    return entries
 
 
 def compact(store: Store, spec: TallySpec, share: float = 0.25) -> bool:

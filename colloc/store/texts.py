@@ -5,11 +5,12 @@ Characters are numbered through the whole store; block borders mean nothing.
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from typing import Any
 
 from colloc.errors import StoreDamagedError, UsageError
-from colloc.store import packing
 from colloc.store.connection import Store
+from colloc.store.database import packing
 
 BLOCK_CHARACTERS = 131_072
 _BLANK = " "
@@ -18,18 +19,36 @@ _IN_REACH = (
 )
 
 
-def append_text(store: Store, first_character: int, text: str) -> None:
-    """Keep a stretch of text; long stretches make the best blocks (each call begins a new one).
+PackedText = list[tuple[int, int, bytes]]
+"""Offset, length and packed bytes of the blocks of a stretch of text."""
+
+
+def pack_text(text: str) -> PackedText:
+    """A stretch of text as blocks ready to store: what worker processes do.
 
     Half surrogate pairs, as JSON escapes can bring them, are kept as they are.
     """
-    if not text:
-        return
-    rows = []
+    blocks = []
     for start in range(0, len(text), BLOCK_CHARACTERS):
         piece = text[start : start + BLOCK_CHARACTERS]
-        rows.append((first_character + start, len(piece), packing.pack_bytes(_encoded(piece))))
+        blocks.append((start, len(piece), packing.pack_bytes(_encoded(piece))))
+    return blocks
+
+
+def append_packed(store: Store, first_character: int, blocks: PackedText) -> None:
+    """Keep the blocks of a stretch of text that begins at ``first_character``."""
+    rows = ((first_character + start, length, data) for start, length, data in blocks)
     store.execute_many("INSERT INTO text_blocks VALUES (?, ?, ?)", rows)
+
+
+def append_text(store: Store, first_character: int, text: str) -> None:
+    """Keep a stretch of text; long stretches make the best blocks (each call begins a new one)."""
+    append_packed(store, first_character, pack_text(text))
+
+
+def packed_blocks(store: Store) -> Iterator[tuple[int, int, bytes]]:
+    """All blocks as they are stored: first character, length, packed bytes."""
+    yield from store.iterate("SELECT first_character, n_characters, data FROM text_blocks ORDER BY 1", batch=64)
 
 
 def has_text(store: Store) -> bool:
@@ -41,6 +60,12 @@ def character_count(store: Store) -> int:
     """Where the text kept so far ends."""
     last = store.row("SELECT first_character + n_characters FROM text_blocks ORDER BY first_character DESC LIMIT 1")
     return 0 if last is None else int(last[0])
+
+
+def next_character(store: Store) -> int:
+    """Where the next text begins, also where texts are not kept."""
+    last = "SELECT coalesce(max(first_character + n_characters), 0) FROM documents"
+    return max(character_count(store), int(store.value(last)))
 
 
 def read_text(store: Store, start: int, stop: int) -> str:

@@ -8,10 +8,10 @@ import numpy as np
 
 from colloc.errors import DataError
 from colloc.records import UInt32Array
-from colloc.store import schema
 from colloc.store.connection import Store
-from colloc.store.frequencies import append_word_counts, has_word_counts, word_counts
-from colloc.store.layers import (
+from colloc.store.database import schema
+from colloc.store.lexicon.frequencies import append_word_counts, has_word_counts, word_counts
+from colloc.store.lexicon.layers import (
     LayerWriter,
     TypeKey,
     detach_forms,
@@ -22,7 +22,7 @@ from colloc.store.layers import (
     term_count,
     type_keys,
 )
-from colloc.store.terms import term_numbers, term_texts, terms_matching
+from colloc.store.lexicon.terms import term_numbers, term_texts, terms_matching
 
 __all__ = [
     "TypeKey",

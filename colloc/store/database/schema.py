@@ -1,7 +1,7 @@
 """The tables of a store as readable SQL; ``docs/file-format.md`` describes each.
 
 Numbers that a wrong answer could come from stand in checksummed blobs
-(:mod:`colloc.store.packing`, :mod:`colloc.store.pages`); the columns beside
+(:mod:`colloc.store.database.packing`, :mod:`colloc.store.pages`); the columns beside
 them are for people with an SQL prompt.
 """
 
@@ -163,7 +163,13 @@ INITIAL = (
     """,
     """
     CREATE TABLE content_hashes (
-        digest BLOB PRIMARY KEY     -- blake2b-128 of a document's or paragraph's text, where repeats are dropped
+        digest BLOB PRIMARY KEY,    -- blake2b-128 of a document's or paragraph's text, where repeats are dropped
+        document INTEGER NOT NULL   -- where it was met first
+    ) WITHOUT ROWID
+    """,
+    """
+    CREATE TABLE content_hashes (
+        digest BLOB PRIMARY KEY     -- of a document or paragraph, where repeats are dropped
     ) WITHOUT ROWID
     """,
     "CREATE INDEX blocks_by_token ON blocks (first_token)",

@@ -54,7 +54,7 @@ class WriterLock:
             self._lock.acquire(timeout=wait, poll_interval=0.05)
         except Timeout as error:
             raise LockedError(f"{self.path}: {_holder(self.path)}; waited {wait:g} s, try again later") from error
-        except (OSError, NotImplementedError) as error:
+        except OSError as error:
             raise CannotCreateError(f"{self._file}: cannot be created ({error}); writing needs it") from error
 
     def tell_holder(self, connection: sqlite3.Connection, purpose: str) -> None:

@@ -15,8 +15,8 @@ import numpy as np
 
 from colloc.errors import StoreDamagedError, UsageError
 from colloc.records import NO_TERM, UInt32Array
-from colloc.store import packing
 from colloc.store.connection import Store
+from colloc.store.database import packing
 from colloc.tokens.folding import fold
 
 TypeKey = str | tuple[str, str, str]

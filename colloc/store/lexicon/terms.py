@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from colloc.errors import StoreDamagedError
 from colloc.records import Int64Array
 from colloc.store.connection import Store
-from colloc.store.layers import find_layer
+from colloc.store.lexicon.layers import find_layer
 from colloc.tokens.folding import fold
 
 _FOLDED = {"fold", "lemma_fold"}

@@ -9,10 +9,10 @@ import numpy as np
 
 from colloc.errors import StoreDamagedError
 from colloc.records import Int64Array, PairBlock, UInt64Array
-from colloc.store import packing
 from colloc.store.connection import Store
-from colloc.store.directory import Directory, unpack_directory
+from colloc.store.database import packing
 from colloc.store.pages import ORDERS, Order, decode_page, keys_of
+from colloc.store.paging.directory import Directory, unpack_directory
 
 
 @dataclass(frozen=True, slots=True)

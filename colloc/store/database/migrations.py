@@ -12,7 +12,7 @@ import sqlite3
 from typing import TYPE_CHECKING
 
 from colloc.errors import DataError, StoreDamagedError
-from colloc.store import schema
+from colloc.store.database import schema
 
 if TYPE_CHECKING:
     from sqlite_utils.db import Database

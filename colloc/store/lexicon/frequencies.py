@@ -6,9 +6,9 @@ import numpy as np
 
 from colloc.errors import StoreDamagedError, UsageError
 from colloc.records import Int64Array, UInt32Array, WordCounts
-from colloc.store import packing
 from colloc.store.connection import Store
-from colloc.store.layers import Layer, find_layer
+from colloc.store.database import packing
+from colloc.store.lexicon.layers import Layer, find_layer
 
 _MOST_RUNS = 32
 _SHARE = 4

@@ -9,11 +9,11 @@ import numpy as np
 from colloc.errors import UsageError
 from colloc.records import Int64Array, PairBlock, UInt32Array
 from colloc.settings import TallySpec
-from colloc.store import packing
 from colloc.store.connection import Store
-from colloc.store.directory import pack_directory
+from colloc.store.database import packing
 from colloc.store.pages import ORDERS, PAGE_PAIRS, Order, PageHead, encode_page, head_of
-from colloc.store.runs import take
+from colloc.store.paging.directory import pack_directory
+from colloc.store.paging.runs import take
 
 MARGIN_PART = 262_144
 """Terms of one margin page: 5 MB before compression."""

@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from colloc.errors import StoreDamagedError
 from colloc.records import UInt64Array
-from colloc.store import packing
+from colloc.store.database import packing
 from colloc.store.pages import PAGE_PAIRS, PageHead
 
 _FIELDS = 4

@@ -1,0 +1,152 @@
+"""Documents into batches: the unit of work of segmenting, and later one block of the token stream.
+
+A batch is a stretch of text with the documents that lie in it, joined by a
+hard break. Batches end where documents end, except inside a document longer
+than ``BATCH_CHARACTERS``, which is cut by ``safe_cut``. Where batches end
+depends on the input only, never on the number of processes, so that the store's
+content does not either.
+"""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass, field
+
+from colloc.build.repeats import Repeats
+from colloc.records import Document
+from colloc.settings import SegmentSettings
+from colloc.tokens.cutting import is_hard_break, safe_cut
+
+BATCH_CHARACTERS = 4 * 2**20
+SEPARATOR = "\n\n"
+"""Stands between documents: a hard break in every setting."""
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """One document, or a part of one, inside a batch."""
+
+    identifier: str
+    metadata: str
+    """JSON object."""
+    source: int
+    record: int
+    start: int
+    """Code point in the batch's text."""
+    length: int
+    first: bool
+    """Whether the document begins here."""
+    last: bool
+    """Whether the document ends here."""
+    digests: tuple[bytes, ...] = ()
+    """Content hashes to remember once the document is stored."""
+    repeat: bool = False
+    """A long document that turned out, at its end, to be an exact repeat: to be taken out again."""
+
+
+@dataclass(frozen=True, slots=True)
+class Batch:
+    """A stretch of text to segment.
+
+    ``opening``: whether a sentence begins at its start for certain; where not,
+    the stretch before says so. ``following``: the code point after its end.
+    """
+
+    text: str
+    entries: tuple[Entry, ...]
+    opening: bool = True
+    following: str = ""
+
+
+@dataclass(slots=True)
+class _Growing:
+    """The batch being filled."""
+
+    parts: list[str] = field(default_factory=list)
+    entries: list[Entry] = field(default_factory=list)
+    length: int = 0
+    opening: bool = True
+
+    def append(self, text: str) -> tuple[int, int]:
+        """Where the text begins in the batch, and its length."""
+        start = self.length
+        self.parts.append(text)
+        self.length += len(text)
+        return start, len(text)
+
+    def close(self, following: str = "") -> Batch:
+        batch = Batch("".join(self.parts), tuple(self.entries), self.opening, following)
+        self.parts, self.entries, self.length, self.opening = [], [], 0, True
+        return batch
+
+
+Numbered = tuple[int, Document]
+"""Number of the source, document."""
+
+
+class Batcher:
+    """Fills batches from documents.
+
+    Parameters
+    ----------
+    settings : SegmentSettings
+    repeats : Repeats
+        Finds exact repeats, where they are to be dropped.
+    """
+
+    def __init__(self, settings: SegmentSettings, repeats: Repeats) -> None:
+        self._settings = settings
+        self._repeats = repeats
+
+    def batches(self, documents: Iterable[Numbered]) -> Iterator[Batch]:
+        """Batches in the order of the documents."""
+        growing = _Growing()
+        for source, document in documents:
+            yield from self._document(growing, source, document)
+            if growing.length >= BATCH_CHARACTERS:
+                yield growing.close()
+        if growing.entries:
+            yield growing.close()
+
+    def _document(self, growing: _Growing, source: int, document: Document) -> Iterator[Batch]:
+        metadata = json.dumps(dict(document.metadata), ensure_ascii=False)
+        first = True
+        waiting = ""
+        fingerprint = self._repeats.fingerprint()
+
+        def enter(text: str, last: bool, repeat: bool = False) -> None:
+            start, length = growing.append(text)
+            growing.entries.append(
+                Entry(
+                    identifier=document.identifier,
+                    metadata=metadata,
+                    source=source,
+                    record=document.record,
+                    start=start,
+                    length=length,
+                    first=first,
+                    last=last,
+                    digests=tuple(self._repeats.take_new()),
+                    repeat=repeat,
+                )
+            )
+
+        for piece in self._repeats.without_paragraphs(document.pieces):
+            fingerprint.update(piece)
+            waiting += piece
+            while len(waiting) > BATCH_CHARACTERS:
+                if first and growing.entries:
+                    # A long document begins a batch of its own, so that what precedes it can be committed.
+                    yield growing.close()
+                cut = safe_cut(waiting[:BATCH_CHARACTERS], self._settings, BATCH_CHARACTERS // 2) or BATCH_CHARACTERS
+                enter(waiting[:cut], last=False)
+                hard = is_hard_break(waiting[: cut + 1], cut, self._settings)
+                yield growing.close(following=waiting[cut : cut + 1])
+                growing.opening = hard
+                waiting, first = waiting[cut:], False
+        repeat = self._repeats.is_repeat(fingerprint)
+        if repeat and first:
+            return
+        enter(waiting, last=True, repeat=repeat)
+        growing.append(SEPARATOR)

@@ -1,0 +1,181 @@
+"""The main use case: text in, counts in one store."""
+
+from __future__ import annotations
+
+import importlib.metadata
+import json
+import os
+import platform
+import sqlite3
+import time
+from collections.abc import Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+from colloc.build.counting import count_new_documents
+from colloc.build.reading import Progress, Read, Resources, read_into
+from colloc.errors import CannotCreateError, DataError
+from colloc.settings import Margins, ReadSettings, SegmentSettings, TallySpec
+from colloc.store import documents, facts
+from colloc.store.opening import Store, create, open_for_writing
+from colloc.store.scratch import scratch_folder
+
+DEFAULT_MEMORY = 2 * 2**30
+SMALLEST_MEMORY = 256 * 2**20
+
+NOTHING_READ = Read(0, 0, 0, 0, 0, 0)
+
+
+@dataclass(frozen=True, slots=True)
+class BuildReport:
+    """What a build, add or merge did.
+
+    Attributes
+    ----------
+    documents, tokens : int
+        Read in this run.
+    total_documents : int
+        In the store now.
+    pairs : int
+        Distinct pairs in the default tally.
+    seconds : float
+    already_complete : bool
+        Nothing was left to do.
+    """
+
+    path: Path
+    read: Read
+    total_documents: int
+    pairs: int
+    seconds: float
+    already_complete: bool = False
+
+
+def resources(jobs: int | None, memory: int, temp: str | None) -> Resources:
+    """Checked resources: all cores unless told otherwise."""
+    return Resources(
+        jobs=max(jobs or len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1, 1),
+        memory=max(memory, SMALLEST_MEMORY),
+        temp=Path(temp) if temp else None,
+    )
+
+
+def build(
+    path: str | Path,
+    inputs: Sequence[str],
+    *,
+    read: ReadSettings | None = None,
+    segment: SegmentSettings | None = None,
+    tally: TallySpec | None = None,
+    margins: Margins = "pairs",
+    jobs: int | None = None,
+    memory: int = DEFAULT_MEMORY,
+    temp: str | None = None,
+    keep_text: bool = True,
+    progress: Progress | None = None,
+) -> BuildReport:
+    """Read, segment, keep and count ``inputs`` into the store at ``path``.
+
+    A build that was stopped goes on with the same call: documents that are in
+    the store are not read again. On a complete store the same call does nothing.
+
+    Raises
+    ------
+    CannotCreateError
+        When the path holds a store built from other inputs or with other settings.
+    NoInputError, DataError, InputOutputError, LockedError
+    """
+    began = time.perf_counter()
+    wanted = _description(
+        inputs, read or ReadSettings(), segment or SegmentSettings(), tally or TallySpec(), margins, keep_text
+    )
+    limits = resources(jobs, memory, temp)
+    with _open_or_create(Path(path), wanted) as store:
+        if facts.get(store, "state") == "complete":
+            return _report(store, NOTHING_READ, began, already_complete=True)
+        done = fill(store, inputs, limits, progress, read or ReadSettings())
+        return _report(store, done, began)
+
+
+def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progress | None, read: ReadSettings) -> Read:
+    """Read what is missing, count what is not counted, and make it durable."""
+    with scratch_folder(store.path, limits.temp) as folder:
+        done = read_into(
+            store,
+            inputs,
+            read,
+            SegmentSettings.from_json(facts.required(store, "segment_settings")),
+            keep_text=facts.get(store, "keep_text") == "1",
+            resources=limits,
+            folder=folder,
+            progress=progress,
+        )
+        count_new_documents(store, limits, progress)
+    store.make_durable()
+    return done
+
+
+def report(store: Store, read: Read, began: float) -> BuildReport:
+    """The report of a run that has just ended."""
+    return _report(store, read, began)
+
+
+def _report(store: Store, read: Read, began: float, already_complete: bool = False) -> BuildReport:
+    from colloc.store import tallies
+
+    spec = TallySpec.from_json(facts.required(store, "default_tally"))
+    tally = tallies.find(store, spec)
+    return BuildReport(
+        path=store.path,
+        read=read,
+        total_documents=documents.document_count(store),
+        pairs=tally.n_pairs if tally is not None else 0,
+        seconds=time.perf_counter() - began,
+        already_complete=already_complete,
+    )
+
+
+def _description(
+    inputs: Sequence[str],
+    read: ReadSettings,
+    segment: SegmentSettings,
+    tally: TallySpec,
+    margins: Margins,
+    keep_text: bool,
+) -> dict[str, str]:
+    """What decides a store's content, as facts."""
+    return {
+        "inputs": json.dumps([str(name) for name in inputs]),
+        "read_settings": read.to_json(),
+        "segment_settings": segment.to_json(),
+        "default_tally": tally.to_json(),
+        "default_margins": margins,
+        "keep_text": "1" if keep_text else "0",
+    }
+
+
+def versions() -> dict[str, str]:
+    """Versions of what made the numbers."""
+    packages = {name: importlib.metadata.version(name) for name in ("colloc", "numpy", "regex")}
+    return {**packages, "python": platform.python_version(), "sqlite": sqlite3.sqlite_version}
+
+
+def _open_or_create(path: Path, wanted: dict[str, str]) -> Store:
+    if not path.exists() or path.stat().st_size == 0:
+        more = {"state": "building", "versions": json.dumps(versions())}
+        return create(path, {**wanted, **more})
+    store = open_for_writing(path, "build")
+    try:
+        for key, value in wanted.items():
+            kept = facts.get(store, key)
+            if kept != value:
+                raise CannotCreateError(
+                    f"{path} was built with other {key.replace('_', ' ')}: use `colloc add` for more documents, "
+                    "`colloc tally` for another table, or another name"
+                )
+        if facts.get(store, "state") not in ("building", "complete"):
+            raise DataError(f"{path}: a change was interrupted; run that command again to finish it")
+    except BaseException:
+        store.close()
+        raise
+    return store

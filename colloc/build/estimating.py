@@ -1,0 +1,161 @@
+"""What a build will take, from a sample: time, memory, temporary and final disk."""
+
+from __future__ import annotations
+
+import json
+import shutil
+import tempfile
+import time
+from collections.abc import Iterable, Iterator, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+from colloc.build.batches import BATCH_CHARACTERS
+from colloc.build.building import DEFAULT_MEMORY, build, resources
+from colloc.errors import InputOutputError
+from colloc.records import Document
+from colloc.settings import ReadSettings, SegmentSettings, TallySpec
+from colloc.text.sources import open_sources
+
+SAMPLE_CHARACTERS = 2 * BATCH_CHARACTERS
+
+SECOND_CORE = 1.8
+"""How much faster two processes are than one, measured."""
+
+PAIR_GROWTH = 0.8
+"""Exponent by which distinct pairs grow with text, measured on English prose of 1 to 12 million tokens."""
+
+DISK_FOR_TEXT = 3.5
+"""Bytes of store and temporary files for each byte of plain text, window 5, from above."""
+
+COMPRESSION = 4.0
+"""Bytes of text for each byte of a compressed input, where nothing better is known."""
+
+
+@dataclass(frozen=True, slots=True)
+class Estimate:
+    """What a build of these inputs is expected to need.
+
+    Attributes
+    ----------
+    sampled_tokens, tokens : int
+        Tokens in the sample and expected in all.
+    seconds : float
+    memory, temporary_bytes, store_bytes : int
+        Bytes: peak of all processes, temporary files, finished store.
+    free_bytes : int
+        Free where the store will be.
+    """
+
+    sampled_tokens: int
+    tokens: int
+    seconds: float
+    memory: int
+    temporary_bytes: int
+    store_bytes: int
+    free_bytes: int
+
+    @property
+    def fits(self) -> bool:
+        """Whether the disk has room for the store and the temporary files."""
+        return self.temporary_bytes + self.store_bytes <= self.free_bytes
+
+
+def estimate(
+    path: str | Path,
+    inputs: Sequence[str],
+    *,
+    read: ReadSettings | None = None,
+    segment: SegmentSettings | None = None,
+    tally: TallySpec | None = None,
+    jobs: int | None = None,
+    memory: int = DEFAULT_MEMORY,
+    temp: str | None = None,
+    keep_text: bool = True,
+) -> Estimate:
+    """Build a store of a sample, measure it, and extrapolate; nothing is left behind.
+
+    Raises
+    ------
+    NoInputError, DataError
+        As the build itself would.
+    """
+    limits = resources(jobs, memory, temp)
+    folder = Path(path).absolute().parent
+    with tempfile.TemporaryDirectory(dir=limits.temp or folder, prefix=f"{Path(path).name}.tmp-") as scratch:
+        sample, share = _write_sample(Path(scratch), inputs, read or ReadSettings())
+        store = Path(scratch) / "sample"
+        began = time.perf_counter()
+        done = build(
+            store,
+            [str(sample)],
+            read=ReadSettings(format="jsonl"),
+            segment=segment,
+            tally=tally,
+            jobs=1,
+            memory=memory,
+            keep_text=keep_text,
+        )
+        seconds = time.perf_counter() - began
+        size = store.stat().st_size
+    tokens = round(done.read.tokens / share)
+    growth = 1 / share
+    # Text and stream grow with the text, pairs more slowly; about half a small store is pairs.
+    store_bytes = size // 2 * growth + size // 2 * growth**PAIR_GROWTH
+    run_bytes = min(tokens * 5 * 12, round(done.pairs * 16 * growth))
+    return Estimate(
+        sampled_tokens=done.read.tokens,
+        tokens=tokens,
+        seconds=seconds * growth / (1 if limits.jobs == 1 else SECOND_CORE * limits.jobs / 2),
+        memory=min(limits.memory, round(300e6 * limits.jobs)),
+        temporary_bytes=run_bytes,
+        store_bytes=round(store_bytes),
+        free_bytes=shutil.disk_usage(folder).free,
+    )
+
+
+def check_space(path: Path, sizes: Iterable[tuple[str, int]]) -> None:
+    """Refuse a build for which the disk is plainly too small, before it starts.
+
+    Raises
+    ------
+    InputOutputError
+        Naming what is needed and what is free.
+    """
+    needed = 0.0
+    for name, size in sizes:
+        packed = name.lower().endswith((".gz", ".bz2", ".xz", ".zst"))
+        needed += max(size, 0) * DISK_FOR_TEXT * (COMPRESSION if packed else 1.0)
+    free = shutil.disk_usage(path.absolute().parent).free
+    if needed > free:
+        raise InputOutputError(
+            f"{path}: the disk has {free / 1e9:.1f} GB free, and this build may need {needed / 1e9:.1f} GB: "
+            "choose another place for the store, or --temp for the temporary files"
+        )
+
+
+def _write_sample(folder: Path, inputs: Sequence[str], read: ReadSettings) -> tuple[Path, float]:
+    """A JSON Lines file of the first documents, and the share of all input they are."""
+    sources = list(open_sources(inputs, read))
+    sizes = [max(source.info.size, 1) for source in sources]
+    sample = folder / "sample.jsonl"
+    written, done = 0, 0.0
+    with sample.open("w", encoding="utf-8") as file:
+        for number, source in enumerate(sources):
+            for document in source.documents():
+                text = "".join(_first(document, SAMPLE_CHARACTERS - written))
+                file.write(json.dumps({"text": text}) + "\n")
+                written += len(text)
+                done = (sum(sizes[:number]) + sizes[number] * source.position) / sum(sizes)
+                if written >= SAMPLE_CHARACTERS:
+                    return sample, max(done, 1e-9)
+    return sample, 1.0
+
+
+def _first(document: Document, characters: int) -> Iterator[str]:
+    """The document's text up to about so many characters."""
+    for piece in document.pieces:
+        yield piece[:characters]
+        characters -= len(piece)
+        if characters <= 0:
+            return

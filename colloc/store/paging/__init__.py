@@ -1,0 +1,1 @@
+"""Runs of a tally and their directories; :mod:`colloc.store.tallies` is the front."""
