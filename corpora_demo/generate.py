@@ -35,6 +35,16 @@ FILES = {"log": "logbooks.jsonl", "notice": "notices.jsonl"}
 STATION_OF = {author.name: author.station for author in AUTHORS}
 
 
+def talkative_number(n_documents: int) -> int:
+    """Number (from 0) of the talkative document: the log in the middle of the corpus."""
+    return n_documents // 2 // len(GENRES) * len(GENRES)
+
+
+def identifier(number: int) -> str:
+    """Identifier of a document: its genre, and its number in the genre from 1."""
+    return f"{GENRES[number % len(GENRES)]}-{number // len(GENRES) + 1:04d}"
+
+
 def documents(seed: int, n_documents: int, bursty: bool = True) -> Iterator[dict[str, str | int]]:
     """Yield documents with the keys id, genre, year, author, station, text, in order of time, genres taking turns.
 
@@ -43,7 +53,7 @@ def documents(seed: int, n_documents: int, bursty: bool = True) -> Iterator[dict
     bounded, whatever `n_documents`.
     """
     random = np.random.default_rng(seed)
-    talkative = n_documents // 2 // len(GENRES) * len(GENRES) if bursty else -1
+    talkative = talkative_number(n_documents) if bursty else -1
     for start in range(0, n_documents, BATCH):
         yield from _batch(random, range(start, min(start + BATCH, n_documents)), n_documents, talkative)
 
@@ -71,10 +81,9 @@ def _batch(
         lengths.append(len(sentences))
         contexts.append(language.contexts.number(genre, year, topic, author == HABIT_AUTHOR))
         stations.append(language.sampler.word_numbers[STATION_OF[author]])
-        number_in_genre = number // len(GENRES) + 1
         rows.append(
             {
-                "id": f"{genre}-{number_in_genre:04d}",
+                "id": identifier(number),
                 "genre": genre,
                 "year": year,
                 "author": author,
@@ -104,7 +113,9 @@ def made_files() -> dict[str, str]:
     for document in documents(SEED, N_DOCUMENTS):
         lines[str(document["genre"])].append(json.dumps(document, ensure_ascii=False) + "\n")
     made = {FILES[genre]: "".join(lines[genre]) for genre in GENRES}
-    true = truths()
+    talkative = identifier(talkative_number(N_DOCUMENTS))
+    committed = {"seed": SEED, "documents": N_DOCUMENTS, "talkative_document": talkative}
+    true = {"committed": committed} | truths()
     made["truths.json"] = json.dumps(true, indent=1, ensure_ascii=False) + "\n"
     made[README] = with_table((HERE / README).read_text(encoding="utf-8"), true["items"])
     return made

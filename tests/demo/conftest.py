@@ -21,7 +21,8 @@ def committed() -> list[dict[str, Any]]:
 @pytest.fixture(scope="session")
 def ordinary(committed: list[dict[str, Any]]) -> list[dict[str, Any]]:
     """All documents but the talkative one, which is the log in the middle."""
-    return [document for document in committed if document["id"] != "log-0151"]
+    truths = json.loads((FOLDER / "truths.json").read_text(encoding="utf-8"))
+    return [document for document in committed if document["id"] != truths["committed"]["talkative_document"]]
 
 
 @pytest.fixture(scope="session")
