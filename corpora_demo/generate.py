@@ -11,6 +11,7 @@ import json
 import sys
 from collections.abc import Iterator
 from pathlib import Path
+from typing import Any
 
 if not __package__:  # run as a script: the package's parent must be on the path
     sys.path.insert(0, str(Path(__file__).resolve().parents[1]))
@@ -115,7 +116,7 @@ def made_files() -> dict[str, str]:
     made = {FILES[genre]: "".join(lines[genre]) for genre in GENRES}
     talkative = identifier(talkative_number(N_DOCUMENTS))
     committed = {"seed": SEED, "documents": N_DOCUMENTS, "talkative_document": talkative}
-    true = {"committed": committed} | truths()
+    true: dict[str, Any] = {"committed": committed, **truths()}
     made["truths.json"] = json.dumps(true, indent=1, ensure_ascii=False) + "\n"
     made[README] = with_table((HERE / README).read_text(encoding="utf-8"), true["items"])
     return made
