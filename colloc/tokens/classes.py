@@ -1,0 +1,157 @@
+"""Unicode properties as whole-array look-ups: code point -> kind (one byte) -> whatever a rule asks.
+
+The table comes from ``unicode_classes.json`` (see ``make_classes``). Kinds are
+renumbered on loading so that those that can end a sentence come last and
+paragraph separators after them: one comparison finds either.
+"""
+
+from __future__ import annotations
+
+import json
+from dataclasses import dataclass
+from functools import cache
+from importlib.resources import files
+
+import numpy as np
+from numpy.typing import NDArray
+
+Kinds = NDArray[np.uint8]
+Points = NDArray[np.uint8] | NDArray[np.uint16] | NDArray[np.uint32]
+
+# Bits of ``Classes.word_flags``. A mid bit shifted right by three is the bit of the letters it joins.
+LETTER, NUMERIC, CONNECTOR, MID_LETTER, MID_NUMBER, SOLO, UNCOMMON, BARE = (1 << bit for bit in range(8))
+WORDISH = LETTER | NUMERIC | CONNECTOR
+
+_WORDISH_CLASSES = {
+    "ALetter": LETTER,
+    "Hebrew_Letter": LETTER,
+    "Numeric": NUMERIC,
+    "ExtendNumLet": CONNECTOR,
+    "Katakana": CONNECTOR,
+}
+_MID_CLASSES = {
+    "MidLetter": MID_LETTER,
+    "MidNum": MID_NUMBER,
+    "MidNumLet": MID_LETTER | MID_NUMBER,
+    "Single_Quote": MID_LETTER | MID_NUMBER,
+}
+_UNCOMMON_WORD = {"Extend", "Format", "ZWJ", "Hebrew_Letter", "Katakana"}
+_UNCOMMON_SENTENCE = {"Extend", "Format"}
+_PARAGRAPH_ENDS = {"CR", "LF", "Sep"}
+_TERMINATORS = {"STerm", "ATerm"}
+
+
+@dataclass(frozen=True)
+class Classes:
+    """All look-up tables. Tables over kinds have 256 entries; unused ones are "Other"."""
+
+    unicode: str
+    kind_of: Kinds
+    """Kind of each of the 0x110000 code points."""
+    latin: bytes
+    """Kinds of the first 256 code points, for ``bytes.translate``."""
+    word: dict[str, NDArray[np.bool_]]
+    """Word_Break value -> which kinds have it."""
+    sentence: dict[str, NDArray[np.bool_]]
+    """Sentence_Break value -> which kinds have it."""
+    pictographic: NDArray[np.bool_]
+    letter: NDArray[np.bool_]
+    """General category L*."""
+    spoken: NDArray[np.bool_]
+    """General category L* or N*: what makes a segment a word."""
+    word_flags: bytes
+    first_terminator: int
+    """Kinds from here on are STerm, ATerm or a paragraph separator."""
+    first_paragraph_end: int
+    space_kind: int
+    """A kind that is a space for sentences."""
+
+    def words(self, *names: str) -> NDArray[np.bool_]:
+        """Which kinds have one of these Word_Break values."""
+        return np.any([self.word[name] for name in names], axis=0)
+
+    def sentences(self, *names: str) -> NDArray[np.bool_]:
+        """Which kinds have one of these Sentence_Break values."""
+        return np.any([self.sentence[name] for name in names], axis=0)
+
+
+def _flags(word: str, sentence: str, category: str) -> int:
+    spoken = category in ("L", "N")
+    flags = _WORDISH_CLASSES.get(word, 0) | _MID_CLASSES.get(word, 0)
+    if flags & WORDISH and not spoken:
+        flags |= BARE
+    if spoken and not flags & WORDISH:
+        flags |= SOLO
+    if word in _UNCOMMON_WORD or sentence in _UNCOMMON_SENTENCE:
+        flags |= UNCOMMON
+    return flags
+
+
+@cache
+def classes() -> Classes:
+    """The tables, read once (about 3 ms)."""
+    table = json.loads(files("colloc.tokens").joinpath("unicode_classes.json").read_text(encoding="utf-8"))
+
+    def rank(kind: list[str]) -> int:
+        return 2 if kind[1] in _PARAGRAPH_ENDS else 1 if kind[1] in _TERMINATORS else 0
+
+    order = sorted(range(len(table["kinds"])), key=lambda number: rank(table["kinds"][number]))
+    kinds = [table["kinds"][number] for number in order]
+    renumbered = np.empty(len(order), np.uint8)
+    renumbered[order] = np.arange(len(order), dtype=np.uint8)
+    lengths = np.diff(np.array([*table["starts"], 0x110000]))
+    kind_of = np.repeat(renumbered[table["runs"]], lengths)
+    ranks = [rank(kind) for kind in kinds]
+
+    def which(column: int, value: object) -> NDArray[np.bool_]:
+        found = np.zeros(256, np.bool_)
+        found[: len(kinds)] = [kind[column] == value for kind in kinds]
+        return found
+
+    return Classes(
+        unicode=table["unicode"],
+        kind_of=kind_of,
+        latin=kind_of[:256].tobytes(),
+        word={str(name): which(0, name) for name in {kind[0] for kind in kinds}},
+        sentence={str(name): which(1, name) for name in {kind[1] for kind in kinds}},
+        pictographic=which(2, True),
+        letter=which(3, "L"),
+        spoken=which(3, "L") | which(3, "N"),
+        word_flags=bytes(_flags(kind[0], kind[1], kind[3]) for kind in kinds).ljust(256, b"\0"),
+        first_terminator=ranks.index(1),
+        first_paragraph_end=ranks.index(2),
+        space_kind=int(kind_of[0x20]),
+    )
+
+
+def code_points(text: str) -> Points:
+    """Code points of `text` in the narrowest array that holds them all, read-only, shape (len(text),)."""
+    if text.isascii():
+        return np.frombuffer(text.encode("ascii"), np.uint8)
+    try:
+        return np.frombuffer(text.encode("latin-1"), np.uint8)
+    except UnicodeEncodeError:
+        pass
+    # Lone surrogates can stand in a Python string; "surrogatepass" lets them through unchanged.
+    narrow = text.encode("utf-16-le", "surrogatepass")
+    if len(narrow) == 2 * len(text):
+        return np.frombuffer(narrow, "<u2")
+    return np.frombuffer(text.encode("utf-32-le", "surrogatepass"), "<u4")
+
+
+def kinds_of(points: Points) -> Kinds:
+    """Kind of each code point, shape (len(points),)."""
+    tables = classes()
+    if points.dtype == np.uint8:
+        return np.frombuffer(points.tobytes().translate(tables.latin), np.uint8)
+    high = np.flatnonzero(points > 255)
+    if 4 * len(high) > len(points):
+        return tables.kind_of[points]
+    kinds = np.frombuffer(bytearray(points.astype(np.uint8).tobytes().translate(tables.latin)), np.uint8)
+    kinds[high] = tables.kind_of[points[high]]
+    return kinds
+
+
+def translated(kinds: Kinds, table: bytes) -> Kinds:
+    """``table[kind]`` for each kind; several times faster than fancy indexing."""
+    return np.frombuffer(kinds.tobytes().translate(table), np.uint8)

@@ -1,0 +1,197 @@
+"""Surface forms -> local type numbers, exactly and on whole arrays.
+
+A short token becomes a key of one or two 64-bit words that spells it out, so that
+equal keys are equal strings: eight characters a word through an alphabet of up to
+255 characters that is filled as they are met, or three a word as plain code
+points. Keys are found in hash tables that compare them; only forms not met
+before, and long tokens, become Python strings.
+"""
+
+from __future__ import annotations
+
+import unicodedata
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colloc.records import Int64Array, Segments, UInt32Array, UInt64Array
+from colloc.tokens.classes import Points, code_points
+from colloc.tokens.keytable import ABSENT, KeyTable
+
+_CODED_WORD: Final = 8
+_PLAIN_WORD: Final = 3
+_MASKS: Final = np.array([(1 << (8 * n)) - 1 for n in range(_CODED_WORD + 1)], np.uint64)
+_BYTES_A_STRING: Final = 120
+"""A short string, its number and its share of the dict, roughly."""
+
+
+class Alphabet:
+    """An injective map from code points to one byte: ASCII to itself, others as they come; 0: no code.
+
+    Ideographs and other characters of large scripts get no code; the alphabets
+    of several scripts fit in together.
+    """
+
+    def __init__(self) -> None:
+        self._codes = np.zeros(0x110000, np.uint8)
+        self._codes[1:128] = np.arange(1, 128)
+        self._free = 128
+
+    @property
+    def nbytes(self) -> int:
+        """Bytes held."""
+        return self._codes.nbytes
+
+    def encode(self, points: Points) -> NDArray[np.uint8]:
+        """Codes of code points, shape (n,), with room for reading 16 bytes from each place: shape (n + 16,)."""
+        coded = np.zeros(len(points) + 2 * _CODED_WORD, np.uint8)
+        coded[: len(points)] = points
+        foreign = np.flatnonzero(points > 127)
+        if len(foreign):
+            characters = points[foreign]
+            codes = self._codes[characters]
+            if self._free < 256 and not codes.all():
+                self._extend(characters[codes == 0])
+                codes = self._codes[characters]
+            coded[foreign] = codes
+        return coded
+
+    def _extend(self, characters: Points) -> None:
+        fresh = np.unique(characters)
+        # U+2E80 begins the blocks of East Asian scripts; katakana (U+30A0..) is small enough to be coded.
+        fresh = fresh[(fresh < 0x2E80) | ((fresh >= 0x30A0) & (fresh < 0x3100))][: 256 - self._free]
+        self._codes[fresh] = np.arange(self._free, self._free + len(fresh))
+        self._free += len(fresh)
+
+
+@dataclass(frozen=True)
+class _Unknown:
+    """Keys that a table does not know yet: distinct, each with the token where it first stands."""
+
+    table: KeyTable
+    keys: list[UInt64Array]
+    first: Int64Array
+    tokens: Int64Array
+    inverse: Int64Array
+
+
+class TypeNumberer:
+    """Numbers surface forms by their type (the form in NFC), in order of first appearance."""
+
+    nbytes: int
+    """Bytes held, roughly."""
+
+    def __init__(self) -> None:
+        self.reset()
+
+    def reset(self) -> None:
+        """Forget everything: numbers begin again at 0."""
+        self._alphabet = Alphabet()
+        self._short, self._long, self._plain = KeyTable(1), KeyTable(2), KeyTable(2)
+        self._numbers: dict[str, int] = {}
+        self._new: list[str] = []
+        self._measure()
+
+    def take_new(self) -> list[str]:
+        """NFC type keys first seen since the last call, in the order of their numbers."""
+        taken, self._new = self._new, []
+        return taken
+
+    def number(self, segments: Segments) -> UInt32Array:
+        """Local type number of each token, shape (n_tokens,)."""
+        starts, lengths = segments.starts, segments.ends - segments.starts
+        numbers = np.full(len(starts), ABSENT, np.uint32)
+        if not len(starts):
+            return numbers
+        points = code_points(segments.text)
+        coded = self._alphabet.encode(points)
+        uncoded = _tokens_with_zeros(coded[: len(points)], starts, segments.ends)
+        # A view at every byte: the word that begins at a token's start is one element.
+        words = np.ndarray((len(coded) - _CODED_WORD + 1,), "<u8", coded, strides=(1,))
+        is_coded = np.ones(len(starts), np.bool_)
+        is_coded[uncoded] = False
+        short = np.flatnonzero(is_coded & (lengths <= _CODED_WORD))
+        long = np.flatnonzero(is_coded & (lengths > _CODED_WORD) & (lengths <= 2 * _CODED_WORD))
+        plain, plain_keys = _plain_keys(points, starts, lengths, uncoded)
+        unknown = [
+            _look_up(self._short, short, [words[starts[short]] & _MASKS[lengths[short]]], numbers),
+            _look_up(
+                self._long,
+                long,
+                [words[starts[long]], words[starts[long] + _CODED_WORD] & _MASKS[lengths[long] - _CODED_WORD]],
+                numbers,
+            ),
+            _look_up(self._plain, plain, plain_keys, numbers),
+        ]
+        self._number_new(segments, numbers, unknown)
+        self._measure()
+        return numbers
+
+    def _number_new(self, segments: Segments, numbers: UInt32Array, unknown: list[_Unknown]) -> None:
+        """Give numbers to what no table knows, in the order of the text."""
+        listed = numbers == ABSENT
+        for part in unknown:
+            listed[part.tokens] = False
+            listed[part.first] = True
+        tokens = np.flatnonzero(listed)
+        spans = zip(segments.starts[tokens].tolist(), segments.ends[tokens].tolist(), strict=True)
+        numbers[tokens] = [self._type_number(segments.text[start:end]) for start, end in spans]
+        for part in unknown:
+            values = numbers[part.first]
+            part.table.add(part.keys, values)
+            numbers[part.tokens] = values[part.inverse]
+
+    def _type_number(self, surface: str) -> int:
+        """The number of the type of a surface form; surfaces that are canonically equivalent share it."""
+        number = self._numbers.get(surface)
+        if number is None:
+            key = unicodedata.normalize("NFC", surface)
+            number = self._numbers.get(key)
+            if number is None:
+                number = self._numbers[key] = len(self._numbers)
+                self._new.append(key)
+        return number
+
+    def _measure(self) -> None:
+        tables = self._short.nbytes + self._long.nbytes + self._plain.nbytes + self._alphabet.nbytes
+        self.nbytes = tables + _BYTES_A_STRING * len(self._numbers)
+
+
+def _tokens_with_zeros(coded: NDArray[np.uint8], starts: Int64Array, ends: Int64Array) -> Int64Array:
+    """Tokens that hold a character without a code, ascending."""
+    zeros = np.flatnonzero(coded == 0)
+    tokens = np.searchsorted(starts, zeros, "right") - 1
+    inside = (tokens >= 0) & (zeros < ends[np.maximum(tokens, 0)])
+    return np.unique(tokens[inside])
+
+
+def _plain_keys(
+    points: Points, starts: Int64Array, lengths: Int64Array, tokens: Int64Array
+) -> tuple[Int64Array, list[UInt64Array]]:
+    """Those of `tokens` that fit into two words of three code points, and their keys."""
+    tokens = tokens[lengths[tokens] <= 2 * _PLAIN_WORD]
+    keys = [np.zeros(len(tokens), np.uint64), np.zeros(len(tokens), np.uint64)]
+    spelled = np.ones(len(tokens), np.bool_)
+    for offset in range(2 * _PLAIN_WORD):
+        inside = offset < lengths[tokens]
+        found = points[np.minimum(starts[tokens] + offset, len(points) - 1)].astype(np.uint64)
+        found[~inside] = 0
+        spelled &= (found != 0) | ~inside  # U+0000 could not be told from the padding
+        keys[offset // _PLAIN_WORD] |= found << np.uint64(21 * (offset % _PLAIN_WORD))
+    return tokens[spelled], [key[spelled] for key in keys]
+
+
+def _look_up(table: KeyTable, tokens: Int64Array, keys: list[UInt64Array], numbers: UInt32Array) -> _Unknown:
+    """Write the numbers of the keys that the table knows; tell the others."""
+    found = table.find(keys)
+    numbers[tokens] = found
+    absent = np.flatnonzero(found == ABSENT)
+    tokens, keys = tokens[absent], [key[absent] for key in keys]
+    combined = keys[0]
+    if len(keys) == 2:
+        ranks = [np.unique(key, return_inverse=True)[1] for key in keys]
+        combined = (ranks[0] * len(absent) + ranks[1]).astype(np.uint64)
+    _, first, inverse = np.unique(combined, return_index=True, return_inverse=True)
+    return _Unknown(table, [key[first] for key in keys], tokens[first], tokens, inverse)

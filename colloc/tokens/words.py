@@ -1,0 +1,189 @@
+"""Word boundaries of UAX #29 (rules WB1 to WB999) on whole arrays.
+
+Characters that rule WB4 attaches to the one before (Extend, Format, ZWJ) are
+taken out first and the results mapped back. Then every rule is a statement about
+neighbours: ``joined[i]`` says that no boundary lies between the kept characters
+i and i + 1. Rules that few texts need are applied at the places where their
+characters occur.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colloc.records import Int64Array
+from colloc.tokens.classes import (
+    BARE,
+    LETTER,
+    MID_LETTER,
+    MID_NUMBER,
+    NUMERIC,
+    SOLO,
+    UNCOMMON,
+    WORDISH,
+    Kinds,
+    classes,
+    code_points,
+    kinds_of,
+    translated,
+)
+
+Mask = NDArray[np.bool_]
+
+
+def any_within(flags: Mask, starts: Int64Array, ends: Int64Array) -> Mask:
+    """Whether a flag is set within each of the disjoint, ascending, non-empty spans."""
+    if not len(starts):
+        return np.zeros(0, np.bool_)
+    bounds = np.empty(2 * len(starts), np.int64)
+    bounds[0::2], bounds[1::2] = starts, ends
+    if ends[-1] == len(flags):
+        bounds = bounds[:-1]
+    return np.logical_or.reduceat(flags, bounds)[::2]
+
+
+@dataclass
+class _Joins:
+    """Which kept characters hang together, and which belong to a word or may do so."""
+
+    kept: Int64Array | None
+    """Positions of the kept characters; None where all are kept."""
+    flags: Kinds
+    joined: Mask
+    tokenish: Mask
+    doubtful: bool = False
+    """Whether any token may turn out to hold no letter and no digit."""
+
+    def spread(self) -> None:
+        """A segment is tokenish as a whole or not at all."""
+        bounds = np.concatenate(([0], np.flatnonzero(~self.joined) + 1))
+        lengths = np.diff(np.append(bounds, len(self.tokenish)))
+        self.tokenish = np.repeat(np.logical_or.reduceat(self.tokenish, bounds), lengths)
+        self.doubtful = True
+
+
+def absorbed(kinds: Kinds, attached: Mask, newline: Mask) -> Mask:
+    """Where a character attaches to the one before: rules WB4 and SB5, which spare the one after a line end."""
+    result = attached[kinds]
+    result[0] = False
+    result[1:] &= ~newline[kinds[:-1]]
+    return result
+
+
+def _join(kinds: Kinds, flags: Kinds, hyphens: Int64Array | None) -> _Joins:
+    """Rules WB4 to WB13b and WB3c, and single hyphens between letters or digits where `hyphens` are given."""
+    tables = classes()
+    uncommon = bool(np.bitwise_or.reduce(flags) & UNCOMMON)
+    kept: Int64Array | None = None
+    if uncommon:
+        attached = absorbed(kinds, tables.words("Extend", "Format", "ZWJ"), tables.words("CR", "LF", "Newline"))
+        kept = np.flatnonzero(~attached)
+        flags = flags[kept]
+    wordish = (flags & WORDISH) != 0
+    joined = wordish[1:] & wordish[:-1]
+    joins = _Joins(kept, flags, joined, (flags & (WORDISH | SOLO)) != 0)
+
+    middle = np.flatnonzero((flags[1:-1] & (MID_LETTER | MID_NUMBER)) != 0) + 1
+    between = flags[middle - 1] & flags[middle + 1] & (flags[middle] >> 3) & (LETTER | NUMERIC)
+    _bind(joins, middle[between != 0])
+    if kept is not None:
+        _join_uncommon(joins, kinds, kept)
+    if hyphens is not None and len(hyphens):
+        inner = hyphens if kept is None else np.searchsorted(kept, hyphens)
+        inner = inner[(inner > 0) & (inner < len(flags) - 1)]
+        spoken = ((flags & (WORDISH | SOLO)) != 0) & ((flags & BARE) == 0)
+        _bind(joins, inner[spoken[inner - 1] & spoken[inner + 1]])
+    return joins
+
+
+def _bind(joins: _Joins, middle: Int64Array) -> None:
+    """Join each of these characters to both neighbours."""
+    joins.joined[middle - 1] = True
+    joins.joined[middle] = True
+    joins.tokenish[middle] = True
+
+
+def _join_uncommon(joins: _Joins, kinds: Kinds, kept: Int64Array) -> None:
+    """Hebrew quotes (WB7a-c), Katakana (WB13) and pictographs after a joiner (WB3c)."""
+    tables = classes()
+    inner = kinds[kept]
+    hebrew = tables.word["Hebrew_Letter"][inner]
+    if hebrew.any():
+        after_hebrew = np.flatnonzero(hebrew[:-1] & tables.word["Single_Quote"][inner[1:]])
+        joins.joined[after_hebrew] = True
+        joins.tokenish[after_hebrew + 1] = True
+        _bind(joins, np.flatnonzero(hebrew[:-2] & tables.word["Double_Quote"][inner[1:-1]] & hebrew[2:]) + 1)
+    katakana = tables.word["Katakana"][inner]
+    if katakana.any():
+        neither = ~(katakana | tables.word["ExtendNumLet"][inner])
+        joins.joined &= ~((katakana[:-1] & neither[1:]) | (neither[:-1] & katakana[1:]))
+    joiners = np.flatnonzero(tables.word["ZWJ"][kinds[:-1]] & tables.pictographic[kinds[1:]])
+    places = np.searchsorted(kept, joiners + 1)
+    joins.joined[places - 1] = True
+    # A few attached marks are letters by category (halfwidth voicing marks): they make their segment a word.
+    letters = tables.spoken[kinds]
+    letters[kept] = False
+    marks = np.flatnonzero(letters)
+    joins.tokenish[np.searchsorted(kept, marks) - 1] = True
+    if len(places) or len(marks):
+        joins.spread()
+
+
+def word_tokens(kinds: Kinds, hyphens: Int64Array | None = None) -> tuple[Int64Array, Int64Array]:
+    """Segments between word boundaries that hold a letter or digit (general category L or N).
+
+    Parameters
+    ----------
+    kinds : uint8 array, shape (n,)
+        From ``kinds_of``.
+    hyphens : int64 array or None
+        Positions of hyphens, ascending: a single one between two letters or digits joins them.
+
+    Returns
+    -------
+    starts, ends : int64 arrays, shape (n_tokens,)
+    """
+    if not len(kinds):
+        return np.zeros(0, np.int64), np.zeros(0, np.int64)
+    flags = translated(kinds, classes().word_flags)
+    joins = _join(kinds, flags, hyphens)
+    first, last = joins.tokenish.copy(), joins.tokenish.copy()
+    first[1:] &= ~joins.joined
+    last[:-1] &= ~joins.joined
+    starts, ends = np.flatnonzero(first), np.flatnonzero(last) + 1
+    if joins.doubtful:
+        suspects = np.arange(len(starts))
+    else:
+        bare = np.flatnonzero((joins.flags & BARE) != 0)
+        places = np.searchsorted(starts, bare)
+        suspects = places[np.append(starts, -1)[places] == bare]
+    if joins.kept is not None:
+        starts, ends = joins.kept[starts], np.append(joins.kept, len(kinds))[ends]
+    if len(suspects):
+        spoken = classes().spoken[kinds]
+        silent = suspects[~any_within(spoken, starts[suspects], ends[suspects])]
+        starts, ends = np.delete(starts, silent), np.delete(ends, silent)
+    return starts, ends
+
+
+def word_boundaries(text: str) -> Int64Array:
+    """All word boundaries of UAX #29 without tailoring: offsets in code points, 0 and len(text) among them."""
+    if not text:
+        return np.zeros(0, np.int64)
+    tables = classes()
+    kinds = kinds_of(code_points(text))
+    joins = _join(kinds, translated(kinds, tables.word_flags), None)
+    kept = np.arange(len(kinds)) if joins.kept is None else joins.kept
+    inner = kinds[kept]
+    joined = joins.joined
+    joined |= tables.word["CR"][inner[:-1]] & tables.word["LF"][inner[1:]]  # WB3
+    spaces = tables.word["WSegSpace"][inner]
+    joined |= spaces[:-1] & spaces[1:] & (np.diff(kept) == 1)  # WB3d comes before WB4
+    flags = tables.word["Regional_Indicator"][inner]
+    run_start = np.maximum.accumulate(np.where(flags, -1, np.arange(len(flags))))
+    pairs = flags[:-1] & flags[1:]
+    joined |= pairs & ((np.arange(len(pairs)) - run_start[:-1]) % 2 == 1)  # WB15, WB16
+    return np.concatenate(([0], kept[np.flatnonzero(~joined) + 1], [len(kinds)]))
