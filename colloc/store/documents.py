@@ -59,7 +59,7 @@ def find_document(store: Store, identifier: str) -> int | None:
 
 def visible_end(store: Store) -> int:
     """Documents below this number are counted and seen by readers; those from it on are still being added."""
-    mark = facts.get(store, "counted")
+    mark = facts.get(store, "counted", None)
     return int(json.loads(mark)["documents"]) if mark is not None else 0
 
 

@@ -31,22 +31,6 @@ def get(store: Store, key: str, default: str | _Required | None = _Required.REQU
     return default
 
 
-def need(store: Store, key: str) -> str:
-    """The text under a key that every store has; StoreDamagedError where it is missing."""
-    value = get(store, key)
-    if value is None:
-        raise StoreDamagedError(f"{store.path}: the fact {key!r} is missing; build the store anew")
-    return value
-
-
-def required(store: Store, key: str) -> str:
-    """The text kept under ``key``; StoreDamagedError where it is missing."""
-    value = get(store, key)
-    if value is None:
-        raise StoreDamagedError(f"{store.path}: its {key.replace('_', ' ')} are missing; build the store again")
-    return value
-
-
 def put(store: Store, key: str, value: str) -> None:
     """Keep a text under ``key``, instead of what was there."""
     store.execute("INSERT OR REPLACE INTO facts VALUES (?, ?)", (key, value))
@@ -67,7 +51,7 @@ def generation(store: Store) -> int:
     return int(get(store, GENERATION, "0"))
 
 
-def change_generation(store: Store) -> int:
+def next_generation(store: Store) -> int:
     """Count one change of documents; returns the new number."""
     number = generation(store) + 1
     put(store, GENERATION, str(number))

@@ -91,11 +91,6 @@ def token_count(store: Store) -> int:
 
 
 def block_count(store: Store) -> int:
-    """Number of blocks, and so the number of the next."""
-    return int(store.value("SELECT coalesce(max(id) + 1, 0) FROM blocks"))
-
-
-def block_count(store: Store) -> int:
     """How many blocks the stream has: the number of the next one."""
     return int(store.value("SELECT coalesce(max(id) + 1, 0) FROM blocks"))
 

@@ -43,7 +43,7 @@ def drop_uncounted(store: Store) -> None:
 
     Types that it brought stay, with a frequency of zero.
     """
-    mark = json.loads(facts.get(store, MARK) or "{}")
+    mark = json.loads(facts.get(store, MARK, "{}"))
     first = mark.get("documents", 0)
     store.execute("DELETE FROM documents WHERE id >= ?", (first,))
     # Their numbers were never seen by anyone, so they are given again and the result is that of an undisturbed run.

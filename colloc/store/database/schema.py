@@ -167,11 +167,6 @@ INITIAL = (
         document INTEGER NOT NULL   -- where it was met first
     ) WITHOUT ROWID
     """,
-    """
-    CREATE TABLE content_hashes (
-        digest BLOB PRIMARY KEY     -- of a document or paragraph, where repeats are dropped
-    ) WITHOUT ROWID
-    """,
     "CREATE INDEX blocks_by_token ON blocks (first_token)",
     "CREATE INDEX documents_by_token ON documents (first_token)",
     "CREATE INDEX word_counts_by_layer ON word_counts (layer)",
