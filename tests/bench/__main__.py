@@ -8,6 +8,7 @@ the fastest counts, since everything else that a machine does can only add time.
 from __future__ import annotations
 
 import argparse
+import json
 import os
 import re
 import sys
@@ -73,12 +74,12 @@ def measure(text: Path, folder: Path, chosen: argparse.Namespace) -> Iterator[Ta
         if "colloc" in chosen.engines:
             built = fastest(chosen.repeat, lambda w=window: subject.build(store, [text], w, chosen.jobs))
             tokens = subject.tokens_in(store)
-            yield Task("build", "colloc", window, built, tokens)
+            yield Task("build", "colloc", window, built, tokens, subject.occurrences_in(store))
         for name in chosen.engines:
             if window in ENGINE_WINDOWS.get(name, ()):
                 times = 1 if name in ("coreutils", "sklearn") else chosen.repeat
                 counted = fastest(times, lambda n=name, w=window: engine(n, text, w, chosen.jobs))
-                yield Task("build", name, window, counted, tokens)
+                yield Task("build", name, window, counted, tokens, json.loads(counted.output)["occurrences"])
     if "colloc" in chosen.engines:
         single = fastest(chosen.repeat, lambda: subject.build(store, [text], 5, 1))
         yield Task("build, one core", "colloc", 5, single, tokens)

@@ -9,7 +9,7 @@ from typing import Any
 
 from .subject import Task
 
-HEADINGS = ("task", "engine", "window", "seconds", "cpu s", "M tokens/s", "peak MB", "times colloc")
+HEADINGS = ("task", "engine", "window", "seconds", "cpu s", "M tokens/s", "M pairs", "peak MB", "times colloc")
 
 
 def rows_of(tasks: Sequence[Task]) -> list[dict[str, Any]]:
@@ -26,6 +26,7 @@ def rows_of(tasks: Sequence[Task]) -> list[dict[str, Any]]:
                 "seconds": round(task.run.seconds, 3),
                 "cpu_seconds": round(task.run.cpu_seconds, 3),
                 "tokens_per_second": round(task.tokens / task.run.seconds) if task.tokens else None,
+                "occurrences": task.occurrences or None,
                 "peak_bytes": task.run.peak_bytes or None,
                 "times_colloc": round(task.run.seconds / base, 2) if base and task.engine != "colloc" else None,
             }
@@ -34,7 +35,7 @@ def rows_of(tasks: Sequence[Task]) -> list[dict[str, Any]]:
 
 
 def _cells(row: Mapping[str, Any]) -> list[str]:
-    rate, peak, ratio = row["tokens_per_second"], row["peak_bytes"], row["times_colloc"]
+    rate, pairs, peak, ratio = (row[key] for key in ("tokens_per_second", "occurrences", "peak_bytes", "times_colloc"))
     return [
         row["task"],
         row["engine"],
@@ -42,6 +43,7 @@ def _cells(row: Mapping[str, Any]) -> list[str]:
         f"{row['seconds']:.2f}",
         f"{row['cpu_seconds']:.2f}",
         f"{rate / 1e6:.2f}" if rate else "",
+        f"{pairs / 1e6:.2f}" if pairs else "",
         f"{peak / 1e6:.0f}" if peak else "",
         f"{ratio:.2f}" if ratio else "",
     ]

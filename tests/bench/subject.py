@@ -7,6 +7,7 @@ import sys
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Any
 
 from .running import Run, run
 
@@ -17,13 +18,14 @@ COLD_RUNS = 5
 
 @dataclass(frozen=True)
 class Task:
-    """One measurement. ``tokens`` is what the task works through, 0 where that is not the point."""
+    """One measurement. ``tokens`` and ``occurrences`` (of pairs) are what was worked through, 0 where not the point."""
 
     name: str
     engine: str
     window: int
     run: Run
     tokens: int = 0
+    occurrences: int = 0
 
 
 def drop(store: Path) -> None:
@@ -39,11 +41,20 @@ def build(store: Path, inputs: Sequence[Path], window: int, jobs: int) -> Run:
     return run([COLLOC, "build", str(store), *names, "--window", str(window), "--jobs", str(jobs), "--quiet"])
 
 
+def info(store: Path) -> dict[str, Any]:
+    """What ``colloc info`` tells."""
+    command = [COLLOC, "info", str(store), "--format", "json", "--quiet"]
+    facts: dict[str, Any] = json.loads(run(command, watch_memory=False).output)
+    return facts
+
+
 def tokens_in(store: Path) -> int:
-    """Tokens as ``colloc info`` tells them."""
-    info = json.loads(run([COLLOC, "info", str(store), "--format", "json", "--quiet"], watch_memory=False).output)
-    rows = {row["item"]: row["value"] for row in info["rows"]} if "rows" in info else info
-    return int(rows["tokens"])
+    return int(info(store)["tokens"])
+
+
+def occurrences_in(store: Path) -> int:
+    """Pairs of tokens in the table that the store was built with."""
+    return int(info(store)["tallies"][0]["total"])
 
 
 def cold(command: Sequence[str]) -> Run:

@@ -38,7 +38,7 @@ def test_generated_text_follows_where_no_real_text_is(tmp_path: Path, monkeypatc
 
 def test_ratios_stand_beside_the_same_task_and_window() -> None:
     tasks = [
-        Task("build", "colloc", 5, Run(2.0, 3.0, 10**8, ""), 4_000_000),
+        Task("build", "colloc", 5, Run(2.0, 3.0, 10**8, ""), 4_000_000, 20_000_000),
         Task("build", "other", 5, Run(7.0, 9.0, 3 * 10**8, ""), 4_000_000),
         Task("build", "other", 1, Run(1.0, 1.0, 10**8, "")),
     ]
@@ -54,6 +54,7 @@ def test_ratios_stand_beside_the_same_task_and_window() -> None:
         "7.00",
         "9.00",
         "0.57",
+        "",
         "300",
         "3.50",
     ]
