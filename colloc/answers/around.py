@@ -17,7 +17,7 @@ from colloc.errors import NotSeenError, UsageError
 from colloc.records import Int64Array
 from colloc.settings import DEFAULT_MIN_COUNT
 from colloc.store import vocabulary
-from colloc.store.opening import Store
+from colloc.store.connection import Store
 
 Side = Literal["both", "left", "right"]
 

@@ -10,7 +10,8 @@ from colloc.answers.questions import built_margins, built_spec
 from colloc.counts.words import slice_word_counts
 from colloc.errors import UsageError
 from colloc.store import documents, facts, slices, tallies, vocabulary
-from colloc.store.opening import Store
+from colloc.store.connection import Store
+from colloc.store.sources import source_list
 
 
 def describe(store: Store) -> dict[str, Any]:
@@ -36,21 +37,30 @@ def describe(store: Store) -> dict[str, Any]:
         "text": "kept" if facts.get(store, "keep_text", "1") == "1" else "not kept",
         "metadata": slices.metadata_keys(store),
         "settings": {
-            "read": json.loads(facts.required(store, "read_settings")),
-            "segment": json.loads(facts.required(store, "segment_settings")),
+            "read": json.loads(facts.get(store, "read_settings")),
+            "segment": json.loads(facts.get(store, "segment_settings")),
             "tally": json.loads(spec.to_json()),
             "margins": built_margins(store),
         },
-        "versions": json.loads(facts.required(store, "versions")),
+        "versions": json.loads(facts.get(store, "versions")),
         "left_out": {
             "overlong_tokens": int(facts.get(store, "dropped_tokens", "0")),
             "undecodable_bytes": int(facts.get(store, "replaced_bytes", "0")),
             "repeated_documents": int(facts.get(store, "repeated_documents", "0")),
             "repeated_paragraphs": int(facts.get(store, "repeated_paragraphs", "0")),
         },
-        "sources": [dict(row) for row in documents.sources(store)],
+        "sources": [
+            {
+                "name": source.info.name,
+                "bytes": source.info.size,
+                "digest": source.digest,
+                "documents": source.records,
+                "finished": source.finished,
+            }
+            for source in source_list(store)
+        ],
         "tallies": [
-            {**json.loads(entry.spec.to_json()), "pairs": entry.n_pairs, "total": entry.total, "bytes": entry.n_bytes}
+            {**json.loads(entry.spec.to_json()), "kept": entry.kept, "bytes": entry.n_bytes}
             for entry in tallies.tally_list(store)
         ],
     }

@@ -61,8 +61,8 @@ def kept_tallies(store: Store) -> Columns:
     Columns
         layer, kind, left, right, inside, where, relation, pairs (distinct), total.
     """
-    specs = tallies.tally_list(store)
-    found = [tally for spec in specs if (tally := tallies.find(store, spec)) is not None]
+    entries = tallies.tally_list(store)
+    found = [tally for entry in entries if (tally := tallies.find(store, entry.spec)) is not None]
     text = {
         name: np.array([getattr(tally.spec, name) for tally in found], dtype=object)
         for name in ("layer", "kind", "inside", "where", "relation")

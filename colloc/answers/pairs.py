@@ -17,7 +17,7 @@ from colloc.measures.contingency import expected
 from colloc.records import FloatArray, Int64Array
 from colloc.settings import DEFAULT_MIN_COUNT
 from colloc.store import vocabulary
-from colloc.store.opening import Store
+from colloc.store.connection import Store
 
 
 def pairs(
@@ -129,7 +129,7 @@ def as_columns(
         "first_total": table.first_total,
         "second_total": table.second_total,
         "total": table.total,
-        "expected": expected(table.first_total, table.second_total, table.total),
+        "expected": expected(*table.arguments),
     }
     if documents is not None:
         columns["documents"] = documents

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import asdict, dataclass
-from typing import Any, get_args
+from typing import Any, cast, get_args
 
 from colloc.answers.tables import Convention, TableReader
 from colloc.counts.tallying import obtain_tally
@@ -14,7 +14,7 @@ from colloc.measures.catalogue import MEASURES
 from colloc.records import WordCounts
 from colloc.settings import DEFAULT_MEASURE, Inside, Margins, TallySpec
 from colloc.store import facts, slices
-from colloc.store.opening import Store
+from colloc.store.connection import Store
 
 DEFAULT_SHOWN = ("pmi", "npmi", "g2")
 """Measures shown beside the one that ranks."""
@@ -81,13 +81,12 @@ class Question:
 
 def built_spec(store: Store) -> TallySpec:
     """The tally the store was built with."""
-    return TallySpec.from_json(facts.required(store, "default_tally"))
+    return TallySpec.from_json(facts.get(store, "default_tally"))
 
 
 def built_margins(store: Store) -> Margins:
     """The margins convention the store was built with."""
-    margins: Margins = facts.required(store, "default_margins")
-    return margins
+    return cast(Margins, facts.get(store, "default_margins"))
 
 
 def resolve_spec(store: Store, options: PairOptions) -> tuple[TallySpec, Margins]:

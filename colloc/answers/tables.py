@@ -131,6 +131,8 @@ class TableReader:
         convention.check(tally.spec.kind)
         self.tally = tally
         self.convention = convention
+        self._first: Int64Array | FloatArray
+        self._second: Int64Array | FloatArray
         self.ordered = convention.directed or tally.spec.kind in ("positions", "span", "relation")
         """Whether (x, y) and (y, x) are separate rows."""
         kind = tally.spec.kind

@@ -13,7 +13,7 @@ from colloc.counts.words import slice_dispersion, slice_word_counts
 from colloc.errors import UsageError
 from colloc.records import Int64Array
 from colloc.store import slices, vocabulary
-from colloc.store.opening import Store
+from colloc.store.connection import Store
 
 WordOrder = Literal["count", "documents", "word", "dp_norm"]
 

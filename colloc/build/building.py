@@ -104,7 +104,7 @@ def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progr
             store,
             inputs,
             read,
-            SegmentSettings.from_json(facts.required(store, "segment_settings")),
+            SegmentSettings.from_json(facts.get(store, "segment_settings")),
             keep_text=facts.get(store, "keep_text") == "1",
             resources=limits,
             folder=folder,
@@ -123,7 +123,7 @@ def report(store: Store, read: Read, began: float) -> BuildReport:
 def _report(store: Store, read: Read, began: float, already_complete: bool = False) -> BuildReport:
     from colloc.store import tallies
 
-    spec = TallySpec.from_json(facts.required(store, "default_tally"))
+    spec = TallySpec.from_json(facts.get(store, "default_tally"))
     tally = tallies.find(store, spec)
     return BuildReport(
         path=store.path,

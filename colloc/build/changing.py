@@ -44,7 +44,7 @@ def add(
     began = time.perf_counter()
     limits = resources(jobs, memory, temp)
     with open_for_writing(Path(path), "add") as store:
-        wanted = (read or ReadSettings.from_json(facts.required(store, "read_settings"))).to_json()
+        wanted = (read or ReadSettings.from_json(facts.get(store, "read_settings"))).to_json()
         _begin(store, {"state": "adding", "pending_inputs": json.dumps(list(inputs)), "pending_read": wanted})
         try:
             done = fill(store, inputs, limits, progress, ReadSettings.from_json(wanted))

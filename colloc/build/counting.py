@@ -42,7 +42,7 @@ def _count(
     finish: Callable[[], None],
 ) -> None:
     kept = {entry.spec for entry in tallies.tally_list(store) if entry.kept}
-    kept.add(TallySpec.from_json(facts.required(store, "default_tally")))
+    kept.add(TallySpec.from_json(facts.get(store, "default_tally")))
     count_change(
         store,
         sorted(kept, key=TallySpec.to_json),

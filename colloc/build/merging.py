@@ -152,5 +152,5 @@ def _copy_block(
     )
     with store.transaction():
         stream.append_block(store, copied, np.sort(mapping[stream.block_types(other, number)]))
-        for name in stream.column_names(other):
+        for name in stream.column_names(other, number):
             stream.append_column(store, next_block, name, stream.read_column(other, number, name))

@@ -175,7 +175,7 @@ class _Sources:
 
     @property
     def share(self) -> float:
-        done = sum(self._weight[: self._current])
+        done: float = sum(self._weight[: self._current])
         if self._current < len(self._sources):
             done += self._weight[self._current] * self._sources[self._current].position
         return done / sum(self._weight) if self._weight else 1.0

@@ -16,6 +16,7 @@ from pathlib import Path
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colloc.build.batches import Batch
 from colloc.errors import CollocError, InputOutputError
@@ -67,7 +68,8 @@ class SegmentedBatch:
     texts: PackedText
 
 
-_ARRAYS = ("tokens", "present", "sentences", "paragraphs", "entry_tokens", "anchor_tokens", "anchor_characters")
+Arrays = dict[str, NDArray[Any]]
+_ARRAYS = ("tokens", "present", "sentences", "paragraphs", "entry_tokens")
 
 
 class _Worker:
@@ -79,7 +81,7 @@ class _Worker:
         self._keep_text = keep_text
         self._memory = memory
 
-    def segment(self, batch: Batch) -> tuple[dict[str, np.ndarray], dict[str, Any]]:
+    def segment(self, batch: Batch) -> tuple[Arrays, dict[str, Any]]:
         """Arrays and small facts of one batch."""
         restarted = self._numberer.nbytes > self._memory
         if restarted:
@@ -89,7 +91,7 @@ class _Worker:
         new_types = self._numberer.take_new()
         starts = np.fromiter((entry.start for entry in batch.entries), dtype=np.int64, count=len(batch.entries))
         anchor_tokens = _spaced(segments.sentences, ANCHOR_EVERY)
-        arrays = {
+        arrays: Arrays = {
             "tokens": tokens,
             "present": _present(tokens),
             "sentences": segments.sentences,
@@ -98,7 +100,7 @@ class _Worker:
             "anchor_tokens": anchor_tokens,
             "anchor_characters": segments.starts[anchor_tokens],
         }
-        facts = {
+        facts: dict[str, Any] = {
             "new_types": new_types,
             "restarted": restarted,
             "closed": segments.closed,
@@ -124,10 +126,10 @@ def _present(tokens: UInt32Array) -> UInt32Array:
     return np.flatnonzero(seen).astype(np.uint32)
 
 
-def _segmented(batch: Batch, worker: int, arrays: dict[str, np.ndarray], facts: dict[str, Any]) -> SegmentedBatch:
+def _segmented(batch: Batch, worker: int, arrays: Arrays, facts: dict[str, Any]) -> SegmentedBatch:
     anchors = Anchors(arrays["anchor_tokens"], arrays["anchor_characters"])
-    plain = {name: arrays[name] for name in _ARRAYS[:5]}
-    return SegmentedBatch(batch=batch, worker=worker, anchors=anchors, **plain, **facts)
+    values: dict[str, Any] = {name: arrays[name] for name in _ARRAYS} | facts
+    return SegmentedBatch(batch=batch, worker=worker, anchors=anchors, **values)
 
 
 def segment_batches(
@@ -165,7 +167,7 @@ class _Pool:
 
     def __init__(self, settings: SegmentSettings, keep_text: bool, folder: Path, jobs: int, memory: int) -> None:
         forks = "fork" in multiprocessing.get_all_start_methods()
-        context = multiprocessing.get_context("fork" if forks else "spawn")
+        context: Any = multiprocessing.get_context("fork" if forks else "spawn")
         self._pipes: list[Connection] = []
         self._processes: list[Any] = []
         self._given: list[deque[int]] = [deque() for _ in range(jobs)]
@@ -275,14 +277,14 @@ def _serve(
         return
 
 
-def _write_arrays(path: Path, arrays: dict[str, np.ndarray]) -> list[tuple[str, str, int]]:
+def _write_arrays(path: Path, arrays: Arrays) -> list[tuple[str, str, int]]:
     with path.open("wb") as file:
         for array in arrays.values():
             array.tofile(file)
     return [(name, array.dtype.str, len(array)) for name, array in arrays.items()]
 
 
-def _read_arrays(path: Path, lengths: list[tuple[str, str, int]]) -> dict[str, np.ndarray]:
+def _read_arrays(path: Path, lengths: list[tuple[str, str, int]]) -> Arrays:
     with path.open("rb") as file:
         arrays = {name: np.fromfile(file, dtype=dtype, count=count) for name, dtype, count in lengths}
     path.unlink()
