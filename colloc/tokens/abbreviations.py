@@ -12,12 +12,10 @@ from __future__ import annotations
 from functools import cache
 
 import numpy as np
-from numpy.typing import NDArray
 
-from colloc.records import Int64Array
-from colloc.tokens.classes import Points, classes
-
-Mask = NDArray[np.bool_]
+from colloc.records import Int64Array, UInt64Array
+from colloc.tokens.classes import Mask, Points, classes, code_points
+from colloc.tokens.keytable import KeyTable
 
 # Written without the last full stop.
 ALWAYS = {
@@ -37,38 +35,46 @@ BEFORE_NUMBERS = {
     "German": "S Seite Bd Aufl Anm Art geb gest",
     "French": "n nos p pp t chap fig art vol env",
     "Spanish": "n p pp t cap fig art vol",
-    "Russian": "с стр т рис гл ст № п",
+    "Russian": "с стр т рис гл ст п",
 }
 INITIALS = "ABCDEFGHJKLMNOPQRSTUVWXYZ"
 """Single capitals stand for given names (J. R. Smith); "I" is a word of its own too often."""
 
-_LONGEST = 12
+_WORDS = 4
+_LETTERS_A_WORD = 3
+_LONGEST = _WORDS * _LETTERS_A_WORD
+_ALWAYS, _BEFORE_NUMBERS = 2, 1
 
 
 @cache
-def _lists() -> tuple[frozenset[str], frozenset[str], NDArray[np.uint64]]:
-    always = frozenset(" ".join(ALWAYS.values()).split()) | frozenset(INITIALS)
-    numbered = frozenset(" ".join(BEFORE_NUMBERS.values()).split())
-    keys = {_ending_key(word) for word in always | numbered}
-    return always, numbered, np.array(sorted(keys), np.uint64)
+def _table() -> tuple[UInt64Array, KeyTable]:
+    """Keys of the last three letters, sorted; and a table of whole abbreviations, spelled as keys."""
+    kinds: dict[str, int] = dict.fromkeys(" ".join(BEFORE_NUMBERS.values()).split(), _BEFORE_NUMBERS)
+    kinds |= dict.fromkeys([*" ".join(ALWAYS.values()).split(), *INITIALS], _ALWAYS)
+    points = code_points(" " * _LONGEST + " ".join(kinds) + " ")
+    stops = np.cumsum([len(word) + 1 for word in kinds]) + _LONGEST - 1
+    keys, _ = _spelled(points, stops, _WORDS)
+    table = KeyTable(_WORDS)
+    table.add(keys, np.array(list(kinds.values()), np.uint32))
+    return np.unique(keys[0]), table
 
 
-def _ending_key(word: str) -> int:
-    """The last three characters as one number."""
-    key = 0
-    for character in word[-3:]:
-        key = key << 21 | ord(character)
-    return key
+def _spelled(points: Points, stops: Int64Array, words: int) -> tuple[list[UInt64Array], Mask]:
+    """The run of letters, digits, full stops and hyphens before each place, three characters a word, last ones first.
 
-
-def _word_masks(points: Points, places: Int64Array) -> tuple[Mask, NDArray[np.uint64]]:
-    """Whether a letter, digit, full stop or hyphen stands at each place, and the code point there (else 0)."""
-    inside = places >= 0
-    found = points[np.maximum(places, 0)].astype(np.uint64)
-    kinds = classes().kind_of[found]
-    inside &= classes().spoken[kinds] | (found == ord(".")) | (found == ord("-"))
-    found[~inside] = 0
-    return inside, found
+    Also tells which runs go on beyond what fits.
+    """
+    tables = classes()
+    keys = [np.zeros(len(stops), np.uint64) for _ in range(words)]
+    going = np.ones(len(stops), np.bool_)
+    for back in range(words * _LETTERS_A_WORD + 1):
+        found = points[np.maximum(stops - 1 - back, 0)].astype(np.uint64)
+        going &= tables.spoken[tables.kind_of[found]] | (found == ord(".")) | (found == ord("-"))
+        going &= stops > back
+        if back < words * _LETTERS_A_WORD:
+            found[~going] = 0
+            keys[back // _LETTERS_A_WORD] |= found << np.uint64(21 * (back % _LETTERS_A_WORD))
+    return keys, going
 
 
 def after_abbreviation(points: Points, stops: Int64Array, numeric: Mask) -> Mask:
@@ -82,21 +88,12 @@ def after_abbreviation(points: Points, stops: Int64Array, numeric: Mask) -> Mask
     numeric : bool array, shape (m,)
         Whether a digit comes next, after spaces and closing marks.
     """
-    always, numbered, keys = _lists()
-    key = np.zeros(len(stops), np.uint64)
-    going = np.ones(len(stops), np.bool_)
-    for back in range(3):
-        inside, found = _word_masks(points, stops - 1 - back)
-        going &= inside
-        key |= np.where(going, found << np.uint64(21 * back), np.uint64(0))
+    endings, table = _table()
     result = np.zeros(len(stops), np.bool_)
-    # Most words are ruled out by their last letters; the few left are looked up whole.
-    nearest = keys[np.minimum(np.searchsorted(keys, key), len(keys) - 1)]
-    for index in np.flatnonzero(nearest == key):
-        stop = int(stops[index])
-        first = max(stop - _LONGEST - 1, 0)
-        inside, found = _word_masks(points, np.arange(first, stop))
-        outside = np.flatnonzero(~inside)
-        word = "".join(map(chr, found[outside[-1] + 1 if len(outside) else 0 :]))
-        result[index] = word in always or (bool(numeric[index]) and word in numbered)
+    # Most words are ruled out by their last letters.
+    key = _spelled(points, stops, 1)[0][0]
+    likely = np.flatnonzero(endings[np.minimum(np.searchsorted(endings, key), len(endings) - 1)] == key)
+    keys, longer = _spelled(points, stops[likely], _WORDS)
+    kinds = table.find(keys)
+    result[likely] = ~longer & ((kinds == _ALWAYS) | ((kinds == _BEFORE_NUMBERS) & numeric[likely]))
     return result

@@ -14,6 +14,7 @@ import re
 import numpy as np
 
 from colloc.records import Int64Array
+from colloc.tokens.classes import Points
 
 _REST = re.compile(r"""[^\s<>"“”„«»\x00-\x1f]*""")
 _SCHEME = frozenset("abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789+.-")
@@ -83,25 +84,39 @@ def _end_of(pattern: re.Pattern[str], text: str, start: int, limit: int) -> int:
 _MARKS = (("://", _url_at), ("www.", _www_at), ("WWW.", _www_at), ("@", _mail_at))
 
 
-def find_addresses(text: str) -> tuple[Int64Array, Int64Array]:
-    """Starts and ends of addresses, ascending and apart; of two that overlap, URLs come before e-mail addresses."""
+def _places(points: Points, mark: str) -> list[int]:
+    """Where `mark` stands: array comparisons, which cost a tenth of searching the string."""
+    found = points[: len(points) - len(mark) + 1] == ord(mark[0])
+    for offset in range(1, len(mark)):
+        found &= points[offset : len(points) - len(mark) + 1 + offset] == ord(mark[offset])
+    return np.flatnonzero(found).tolist() if found.any() else []
+
+
+def find_addresses(text: str, points: Points) -> tuple[Int64Array, Int64Array]:
+    """Starts and ends of addresses, ascending and apart; of two that overlap, URLs come before e-mail addresses.
+
+    Parameters
+    ----------
+    points : array
+        Code points of `text`; those beyond its end are not looked at.
+    """
     spans: list[tuple[int, int]] = []
     for mark, recognise in _MARKS:
-        position = text.find(mark)
-        if position < 0:
+        places = _places(points[: len(text)], mark) if len(text) >= len(mark) else []
+        if not places:
             continue
         taken = iter([*spans, (len(text), len(text))])
         start, end = next(taken)
         least = 0
-        while position >= 0:
+        for position in places:
             while end <= position:
                 least, (start, end) = max(least, end), next(taken)
-            # What reaches into the next address ends there, so that no stretch is looked at twice.
-            span = recognise(text, position, least, start) if position < start else None
-            if span is not None:
-                spans.append(span)
-                least = span[1]
-            position = text.find(mark, max(position + len(mark), least))
+            if least <= position < start:
+                # What reaches into the next address ends there, so that no stretch is looked at twice.
+                span = recognise(text, position, least, start)
+                if span is not None:
+                    spans.append(span)
+                    least = span[1]
         spans.sort()
     found = np.array(spans, np.int64).reshape(-1, 2)
     return found[:, 0].copy(), found[:, 1].copy()

@@ -9,14 +9,16 @@ from __future__ import annotations
 
 import json
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, reduce
 from importlib.resources import files
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 Kinds = NDArray[np.uint8]
-Points = NDArray[np.uint8] | NDArray[np.uint16] | NDArray[np.uint32]
+Mask = NDArray[np.bool_]
+Points = NDArray[np.unsignedinteger[Any]]
 
 # Bits of ``Classes.word_flags``. A mid bit shifted right by three is the bit of the letters it joins.
 LETTER, NUMERIC, CONNECTOR, MID_LETTER, MID_NUMBER, SOLO, UNCOMMON, BARE = (1 << bit for bit in range(8))
@@ -50,14 +52,14 @@ class Classes:
     """Kind of each of the 0x110000 code points."""
     latin: bytes
     """Kinds of the first 256 code points, for ``bytes.translate``."""
-    word: dict[str, NDArray[np.bool_]]
+    word: dict[str, Mask]
     """Word_Break value -> which kinds have it."""
-    sentence: dict[str, NDArray[np.bool_]]
+    sentence: dict[str, Mask]
     """Sentence_Break value -> which kinds have it."""
-    pictographic: NDArray[np.bool_]
-    letter: NDArray[np.bool_]
+    pictographic: Mask
+    letter: Mask
     """General category L*."""
-    spoken: NDArray[np.bool_]
+    spoken: Mask
     """General category L* or N*: what makes a segment a word."""
     word_flags: bytes
     first_terminator: int
@@ -66,13 +68,13 @@ class Classes:
     space_kind: int
     """A kind that is a space for sentences."""
 
-    def words(self, *names: str) -> NDArray[np.bool_]:
+    def words(self, *names: str) -> Mask:
         """Which kinds have one of these Word_Break values."""
-        return np.any([self.word[name] for name in names], axis=0)
+        return reduce(np.bitwise_or, (self.word[name] for name in names))
 
-    def sentences(self, *names: str) -> NDArray[np.bool_]:
+    def sentences(self, *names: str) -> Mask:
         """Which kinds have one of these Sentence_Break values."""
-        return np.any([self.sentence[name] for name in names], axis=0)
+        return reduce(np.bitwise_or, (self.sentence[name] for name in names))
 
 
 def _flags(word: str, sentence: str, category: str) -> int:
@@ -103,7 +105,7 @@ def classes() -> Classes:
     kind_of = np.repeat(renumbered[table["runs"]], lengths)
     ranks = [rank(kind) for kind in kinds]
 
-    def which(column: int, value: object) -> NDArray[np.bool_]:
+    def which(column: int, value: object) -> Mask:
         found = np.zeros(256, np.bool_)
         found[: len(kinds)] = [kind[column] == value for kind in kinds]
         return found

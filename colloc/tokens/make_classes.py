@@ -16,11 +16,18 @@ from pathlib import Path
 
 import regex
 
-WORD_BREAK = (
-    "Other CR LF Newline Extend ZWJ Format Regional_Indicator Katakana Hebrew_Letter ALetter Single_Quote "
-    "Double_Quote MidNumLet MidLetter MidNum Numeric ExtendNumLet WSegSpace"
-).split()
-SENTENCE_BREAK = "Other CR LF Extend Sep Format Sp Lower Upper OLetter Numeric ATerm SContinue STerm Close".split()
+# fmt: off
+WORD_BREAK = [
+    "Other", "CR", "LF", "Newline", "Extend", "ZWJ",
+    "Format", "Regional_Indicator", "Katakana", "Hebrew_Letter", "ALetter", "Single_Quote",
+    "Double_Quote", "MidNumLet", "MidLetter", "MidNum", "Numeric", "ExtendNumLet",
+    "WSegSpace",
+]
+SENTENCE_BREAK = [
+    "Other", "CR", "LF", "Extend", "Sep", "Format", "Sp", "Lower", "Upper",
+    "OLetter", "Numeric", "ATerm", "SContinue", "STerm", "Close",
+]
+# fmt: on
 UNICODE_VERSION = "17.0.0"
 """The version of the `regex` release (2026.11.19) that the committed table was made with."""
 

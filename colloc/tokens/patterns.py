@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from functools import cache
+from itertools import pairwise
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -49,7 +50,7 @@ def pattern_tokens(
     finder = compiled(pattern)
     bounds = [0, *paragraphs.tolist(), len(text)]
     spans: list[tuple[int, int]] = []
-    for first, last in zip(bounds, bounds[1:], strict=False):
+    for first, last in pairwise(bounds):
         try:
             matches = finder.finditer(text[first:last], timeout=seconds)
             spans.extend(
@@ -57,8 +58,8 @@ def pattern_tokens(
             )
         except TimeoutError as error:
             raise DataError(
-                f"the token pattern {pattern!r} took longer than {seconds:g} s on a paragraph of {last - first} characters "
-                f"that begins {text[first : first + 40]!r}; simplify the pattern, without nested repetition"
+                f"the token pattern {pattern!r} took longer than {seconds:g} s on a paragraph of {last - first} "
+                f"characters that begins {text[first : first + 40]!r}; make it simpler, without nested repetition"
             ) from error
     found_spans = np.array(spans, np.int64).reshape(-1, 2)
     return found_spans[:, 0].copy(), found_spans[:, 1].copy()

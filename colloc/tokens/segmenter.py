@@ -61,7 +61,7 @@ class Segmenter:
         else:
             addresses = _no_spans()
             if settings.tailored and settings.addresses != "split":
-                addresses = find_addresses(text)
+                addresses = find_addresses(text, points)
                 sentence_starts = _outside(sentence_starts, addresses)
             starts, ends = self._words(points, kinds, addresses)
             starts, ends = _clipped(starts, ends, len(text))

@@ -10,14 +10,12 @@ from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
-from numpy.typing import NDArray
 
 from colloc.records import Int64Array
 from colloc.tokens.abbreviations import after_abbreviation
-from colloc.tokens.classes import Kinds, Points, classes, code_points, kinds_of
+from colloc.tokens.classes import Kinds, Mask, Points, classes, code_points, kinds_of
 from colloc.tokens.words import absorbed
 
-Mask = NDArray[np.bool_]
 _PARAGRAPH_SEPARATOR = 0x2029
 _FULL_STOP = 0x2E
 _ROUNDS = 16

@@ -12,7 +12,6 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
 from colloc.records import Int64Array
 from colloc.tokens.classes import (
@@ -25,13 +24,12 @@ from colloc.tokens.classes import (
     UNCOMMON,
     WORDISH,
     Kinds,
+    Mask,
     classes,
     code_points,
     kinds_of,
     translated,
 )
-
-Mask = NDArray[np.bool_]
 
 
 def any_within(flags: Mask, starts: Int64Array, ends: Int64Array) -> Mask:
