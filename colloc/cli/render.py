@@ -2,11 +2,10 @@
 
 from __future__ import annotations
 
-import csv
-import io
 import json
 import math
-from collections.abc import Mapping
+import re
+from collections.abc import Mapping, Sequence
 from typing import TYPE_CHECKING, Any, BinaryIO, Protocol
 
 from colloc.cli.spreadsheets import defuse
@@ -51,31 +50,39 @@ class DelimitedWriter:
     def __init__(self, stream: BinaryIO, settings: Mapping[str, Any], *, delimiter: str) -> None:
         self._stream = stream
         self._delimiter = delimiter
+        self._special = re.compile(rf'["\r\n{delimiter}]').search
         self._begun = False
 
     def write(self, part: Columns) -> None:
-        text = io.StringIO()
-        out = csv.writer(text, delimiter=self._delimiter, lineterminator="\n")
-        if not self._begun:
-            out.writerow([defuse(name) for name in part.names])
-            self._begun = True
-        out.writerows(zip(*[_cells(array.tolist()) for array in part.data.values()], strict=True))
-        self._stream.write(text.getvalue().encode())
+        lines = [] if self._begun else [self._line([defuse(name) for name in part.names])]
+        self._begun = True
+        lines += map(self._line, zip(*[_cells(array.tolist()) for array in part.data.values()], strict=True))
+        self._stream.write("".join(lines).encode())
+
+    def _line(self, cells: Sequence[str]) -> str:
+        # Not csv.writer: with line feeds as row ends it leaves a carriage return inside a cell unquoted.
+        line = self._delimiter.join(
+            [f'"{cell.replace(_QUOTE, _QUOTE * 2)}"' if self._special(cell) else cell for cell in cells]
+        )
+        return f"{line}\n" if line else '""\n'
 
     def close(self) -> None:
         """Nothing is left to write."""
 
 
-def _cells(values: list[Any]) -> list[Any]:
+_QUOTE = '"'
+
+
+def _cells(values: list[Any]) -> list[str]:
     return [defuse(value) if isinstance(value, str) else _cell(value) for value in values]
 
 
-def _cell(value: Any) -> Any:
+def _cell(value: Any) -> str:
     if value is None or (isinstance(value, float) and math.isnan(value)):
         return ""
     if isinstance(value, bool):
         return "true" if value else "false"
-    return value
+    return str(value)
 
 
 class JsonLinesWriter:
