@@ -12,6 +12,8 @@ from colloc.records import DocumentRow
 from colloc.store import facts, stream, texts
 from colloc.store.connection import Store
 
+_BATCH = 500
+"""Numbers that one statement asks for; SQLite allows 999 and more."""
 _COLUMNS = "id, identifier, source, record, first_token, n_tokens, first_character, n_characters, metadata"
 
 
@@ -43,6 +45,22 @@ def document(store: Store, number: int) -> DocumentRow:
     if row is None:
         raise NotSeenError(f"{store.path}: no document {number}")
     return _as_row(store, row)
+
+
+def token_places(store: Store, numbers: Int64Array) -> tuple[Int64Array, Int64Array]:
+    """First token and number of tokens of some documents, in their order; NotSeenError where one is not there."""
+    found: dict[int, tuple[int, int]] = {}
+    wanted = numbers.tolist()
+    for start in range(0, len(wanted), _BATCH):
+        batch = wanted[start : start + _BATCH]
+        marks = ", ".join("?" * len(batch))
+        rows = store.rows(f"SELECT id, first_token, n_tokens FROM documents WHERE id IN ({marks})", batch)
+        found.update((number, (first, n_tokens)) for number, first, n_tokens in rows)
+    missing = [number for number in wanted if number not in found]
+    if missing:
+        raise NotSeenError(f"{store.path}: no document {missing[0]}")
+    places = np.array([found[number] for number in wanted], dtype=np.int64).reshape(-1, 2)
+    return places[:, 0], places[:, 1]
 
 
 def iterate_documents(store: Store) -> Iterator[DocumentRow]:

@@ -20,7 +20,7 @@ import json
 import math
 import re
 from collections import Counter
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -145,7 +145,7 @@ def _fitting(store: Store, condition: _Condition) -> Int64Array:
 
 def _parsed(where: str) -> list[_Condition]:
     """The conditions of one text."""
-    conditions = []
+    conditions: list[_Condition] = []
     position = 0
     while position < len(where.rstrip()) or (conditions and position <= len(where)):
         match = _KEY.match(where, position)

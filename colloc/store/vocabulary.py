@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-
-import numpy as np
+from typing import cast
 
 from colloc.errors import DataError
 from colloc.records import UInt32Array
@@ -14,11 +13,14 @@ from colloc.store.lexicon.frequencies import append_word_counts, has_word_counts
 from colloc.store.lexicon.layers import (
     LayerWriter,
     TypeKey,
+    as_columns,
     detach_forms,
     ensure_layer,
     find_layer,
     layer_map,
     layer_names,
+    number_texts,
+    remember,
     term_count,
     type_keys,
 )
@@ -80,53 +82,44 @@ class TypeRegistry:
 
         A key is a form, or (form, lemma, upos); ``(form, "", "")`` is the same as the form.
         """
-        keys = [key[0] if isinstance(key, tuple) and not key[1] and not key[2] else key for key in keys]
+        annotated = {*map(type, keys)} - {str}
+        if annotated:
+            keys = [key[0] if isinstance(key, tuple) and not key[1] and not key[2] else key for key in keys]
         known = self._known
         if not self._complete:
             if len(known) > 2 * self._limit:
                 known.clear()
-            self._look_up([key for key in keys if key not in known])
-        fresh: dict[TypeKey, int] = {}
-        first = next_number = self._count
-        numbers = []
-        for key in keys:
-            number = known.get(key)
-            if number is None:
-                number = fresh.get(key)
-                if number is None:
-                    number = fresh[key] = next_number
-                    next_number += 1
-            numbers.append(number)
+            self._look_up({key for key in keys if key not in known})
+        numbers, fresh = number_texts(keys, known, self._count)
         if fresh:
-            self._add(first, list(fresh))
-            room = max(self._limit - len(known), 0)
-            if room < len(fresh):
-                self._complete = False
-                fresh = dict(list(fresh.items())[:room])
-            known.update(fresh)
-        return np.array(numbers, dtype=np.uint32)
+            self._add(list(fresh), bool(annotated))
+            self._complete &= remember(known, fresh, self._limit)
+        return numbers
 
     def finish(self) -> None:
         """Make the indexes by which words are found; call it once a first build is complete."""
         for statement in schema.VOCABULARY_INDEXES:
             self._store.execute(statement)
 
-    def _add(self, first: int, keys: list[TypeKey]) -> None:
-        triples = [key if isinstance(key, tuple) else (key, "", "") for key in keys]
-        if first + len(keys) > _LARGEST:
+    def _add(self, keys: list[TypeKey], annotated: bool) -> None:
+        first, stop = self._count, self._count + len(keys)
+        if stop > _LARGEST:
             raise DataError(
                 f"{self._store.path}: more than {_LARGEST} distinct words; split the text into several stores"
             )
+        if annotated:
+            columns = as_columns([key if isinstance(key, tuple) else (key, "", "") for key in keys])
+        else:
+            columns = cast(list[str], keys), [""] * len(keys), [""] * len(keys)
         try:
             self._store.execute_many(
-                "INSERT INTO types VALUES (?, ?, ?, ?)",
-                ((number, *triple) for number, triple in enumerate(triples, first)),
+                "INSERT INTO types VALUES (?, ?, ?, ?)", zip(range(first, stop), *columns, strict=True)
             )
         except UnicodeEncodeError as error:
             raise DataError(f"a word holds half a surrogate pair, which is no character: {error.object!a}") from error
-        self._count += len(keys)
-        for writer in self._writers(annotated=any(isinstance(key, tuple) for key in keys)):
-            writer.extend(triples)
+        self._count = stop
+        for writer in self._writers(annotated):
+            writer.extend(columns)
 
     def _writers(self, annotated: bool) -> list[LayerWriter]:
         for name in layer_names(self._store):
@@ -137,7 +130,7 @@ class TypeRegistry:
             self._layers["form"] = detach_forms(self._store, forms, self._limit)
         return list(self._layers.values())
 
-    def _look_up(self, keys: list[TypeKey]) -> None:
+    def _look_up(self, keys: set[TypeKey]) -> None:
         """Learn the numbers of types that are in the store already, for this batch."""
         if keys:
             self.finish()  # without the index each look-up would read the whole table

@@ -8,8 +8,11 @@ in order of first appearance. While a store holds plain text only, the layer
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+import operator
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from itertools import compress, islice, repeat
+from typing import TypeVar
 
 import numpy as np
 
@@ -22,15 +25,20 @@ from colloc.tokens.folding import fold
 TypeKey = str | tuple[str, str, str]
 """A form, or (form, lemma, upos); texts are NFC already."""
 
+Key = TypeVar("Key", str, TypeKey)
+
 PART = 65_536
 _BATCH = 65_536
 
-_COMPONENTS: dict[str, Callable[[tuple[str, str, str]], str]] = {
-    "form": lambda key: key[0],
-    "fold": lambda key: fold(key[0]),
-    "lemma": lambda key: key[1],
-    "lemma_fold": lambda key: fold(key[1]),
-    "upos": lambda key: key[2],
+Columns = tuple[Sequence[str], Sequence[str], Sequence[str]]
+"""Forms, lemmas and word classes of a stretch of types."""
+
+_COMPONENTS: dict[str, Callable[[Columns], list[str]]] = {
+    "form": lambda columns: list(columns[0]),
+    "fold": lambda columns: [*map(fold, columns[0])],
+    "lemma": lambda columns: list(columns[1]),
+    "lemma_fold": lambda columns: [*map(fold, columns[1])],
+    "upos": lambda columns: list(columns[2]),
 }
 
 
@@ -45,8 +53,8 @@ class Layer:
     same: bool
 
 
-def layer_function(name: str) -> Callable[[tuple[str, str, str]], str]:
-    """What a layer calls a type; empty where the type has no such thing.
+def layer_function(name: str) -> Callable[[Columns], list[str]]:
+    """What a layer calls types; empty where a type has no such thing.
 
     Parameters
     ----------
@@ -64,9 +72,9 @@ def layer_function(name: str) -> Callable[[tuple[str, str, str]], str]:
     if len(functions) == 1:
         return functions[0]
 
-    def joined(key: tuple[str, str, str]) -> str:
-        texts = [function(key) for function in functions]
-        return "/".join(texts) if all(texts) else ""
+    def joined(columns: Columns) -> list[str]:
+        parts = zip(*(function(columns) for function in functions), strict=True)
+        return ["/".join(texts) if all(texts) else "" for texts in parts]
 
     return joined
 
@@ -107,6 +115,30 @@ def _read_part(store: Store, layer: Layer, part: int) -> UInt32Array:
     return packing.unpack_as(data, np.uint32, f"{store.path}: map of layer {layer.name}, part {part}")
 
 
+def number_texts(texts: Sequence[Key], known: Mapping[Key, int], first: int) -> tuple[UInt32Array, dict[Key, int]]:
+    """Numbers of the texts, and those that were new, numbered from ``first`` in order of appearance.
+
+    The empty text is no term: NO_TERM.
+    """
+    numbers = [*map(known.get, texts)]
+    if None not in numbers:
+        return np.array(numbers, dtype=np.uint32), {}
+    unknown = dict.fromkeys(compress(texts, map(operator.is_, numbers, repeat(None))))
+    empty = "" in unknown
+    if empty:
+        del unknown[""]
+    fresh = dict(zip(unknown, range(first, first + len(unknown)), strict=True))
+    given = fresh | {"": int(NO_TERM)} if empty else fresh
+    return np.fromiter(map(given.get, texts, numbers), dtype=np.uint32, count=len(texts)), fresh
+
+
+def remember(known: dict[Key, int], fresh: dict[Key, int], limit: int) -> bool:
+    """Put as many of ``fresh`` into ``known`` as the limit allows; says whether that was all."""
+    room = max(limit - len(known), 0)
+    known.update(fresh if len(fresh) <= room else islice(fresh.items(), room))
+    return len(fresh) <= room
+
+
 class LayerWriter:
     """Extends one layer as types are added.
 
@@ -124,16 +156,15 @@ class LayerWriter:
         self._function = layer_function(layer.name)
         self.layer = layer
 
-    def extend(self, keys: Sequence[tuple[str, str, str]]) -> None:
+    def extend(self, columns: Columns) -> None:
         """Map new types, which follow the last one mapped."""
         layer = self.layer
         if layer.same:
-            layer.types += len(keys)
+            layer.types += len(columns[0])
             layer.terms = layer.types
         else:
-            texts = [*map(self._function, keys)]
-            self._append_map(self._numbers(texts))
-            layer.types += len(keys)
+            self._append_map(self._numbers(self._function(columns)))
+            layer.types += len(columns[0])
         self._store.execute(
             "UPDATE layers SET terms = ?, types = ?, same = ? WHERE id = ?",
             (layer.terms, layer.types, layer.same, layer.number),
@@ -146,29 +177,11 @@ class LayerWriter:
                 known.clear()
             wanted = {text for text in texts if text and text not in known}
             known.update(look_up_terms(self._store, self.layer.number, wanted))
-        first = next_number = self.layer.terms
-        fresh: dict[str, int] = {}
-        numbers = []
-        for text in texts:
-            number = known.get(text)
-            if number is None:
-                number = fresh.get(text)
-            if number is None:
-                if not text:
-                    numbers.append(int(NO_TERM))
-                    continue
-                number = fresh[text] = next_number
-                next_number += 1
-            numbers.append(number)
-        rows = zip([self.layer.number] * len(fresh), range(first, next_number), fresh, strict=True)
-        self._store.execute_many("INSERT INTO terms VALUES (?, ?, ?)", rows)
-        self.layer.terms = next_number
-        room = self._limit - len(known)
-        if room < len(fresh):
-            self._complete = False
-            fresh = dict(list(fresh.items())[: max(room, 0)])
-        known.update(fresh)
-        return np.array(numbers, dtype=np.uint32)
+        numbers, fresh = number_texts(texts, known, self.layer.terms)
+        self._store.insert_columns("terms", [[self.layer.number] * len(fresh), [*fresh.values()], [*fresh]])
+        self.layer.terms += len(fresh)
+        self._complete &= remember(known, fresh, self._limit)
+        return numbers
 
     def _append_map(self, terms: UInt32Array) -> None:
         part, filled = divmod(self.layer.types, PART)
@@ -192,11 +205,18 @@ def look_up_terms(store: Store, layer: int, texts: set[str]) -> dict[str, int]:
 
 
 def type_keys(store: Store, first: int, stop: int) -> list[tuple[str, str, str]]:
-    """(form, lemma, upos) of the types numbered first..stop-1."""
+    """(form, lemma, upos) of the types numbered first..stop-1, as far as there are any."""
+    stop = min(stop, find_layer(store, "form").types)
     rows = store.rows("SELECT form, lemma, upos FROM types WHERE id >= ? AND id < ? ORDER BY id", (first, stop))
-    if len(rows) != stop - first:
+    if len(rows) != max(stop - first, 0):
         raise StoreDamagedError(f"{store.path}: types {first} to {stop - 1} are not all there")
     return rows
+
+
+def as_columns(keys: Sequence[tuple[str, str, str]]) -> Columns:
+    """Forms, lemmas and word classes of some types."""
+    forms, lemmas, classes = zip(*keys, strict=True) if keys else ((), (), ())
+    return forms, lemmas, classes
 
 
 def ensure_layer(store: Store, name: str, limit: int = 2_000_000) -> None:
@@ -215,7 +235,7 @@ def ensure_layer(store: Store, name: str, limit: int = 2_000_000) -> None:
         store.execute("INSERT INTO layers (name, terms, types, same) VALUES (?, 0, 0, 0)", (name,))
         writer = LayerWriter(store, find_layer(store, name), limit)
         for first in range(0, types, _BATCH):
-            writer.extend(type_keys(store, first, min(first + _BATCH, types)))
+            writer.extend(as_columns(type_keys(store, first, first + _BATCH)))
         if types and writer.layer.terms == 0:
             raise UsageError(
                 f"{store.path}: its words carry nothing for the layer {name!r}; build it from annotated text"
@@ -227,5 +247,5 @@ def detach_forms(store: Store, layer: Layer, limit: int) -> LayerWriter:
     types, layer.terms, layer.types, layer.same = layer.types, 0, 0, False
     writer = LayerWriter(store, layer, limit)
     for first in range(0, types, _BATCH):
-        writer.extend(type_keys(store, first, min(first + _BATCH, types)))
+        writer.extend(as_columns(type_keys(store, first, first + _BATCH)))
     return writer
