@@ -17,6 +17,7 @@ Column names are stable; the command line, the files and the Python calls use th
 from __future__ import annotations
 
 import importlib
+import json
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from types import MappingProxyType, ModuleType
@@ -148,10 +149,11 @@ class Columns:
         MissingExtraError
             Where pyarrow is not installed.
         """
-        import json
-
         arrow = _library("pyarrow")
-        arrays = [arrow.array(self[name].tolist(), type=self._arrow_type(name, arrow)) for name in self.names]
+        arrays = [
+            arrow.array(_texts(array), type=arrow.string()) if array.dtype.kind == "O" else arrow.array(array)
+            for array in self.data.values()
+        ]
         table: pa.Table = arrow.table(arrays, names=list(self.names))
         return table.replace_schema_metadata({"colloc": json.dumps(dict(self.settings), default=str)})
 
@@ -165,7 +167,7 @@ class Columns:
         """
         polars = _library("polars")
         text = {name: polars.String for name in self.names if self[name].dtype.kind == "O"}
-        columns = {name: array.tolist() if name in text else array for name, array in self.data.items()}
+        columns = {name: _texts(array) if name in text else array for name, array in self.data.items()}
         frame: pl.DataFrame = polars.DataFrame(columns, schema_overrides=text)
         return frame
 
@@ -192,10 +194,6 @@ class Columns:
             lines.append(f"... {len(self) - REPR_ROWS} more")
         return "\n".join(lines)
 
-    def _arrow_type(self, name: str, arrow: ModuleType) -> Any:
-        dtype = self[name].dtype
-        return arrow.string() if dtype.kind == "O" else arrow.from_numpy_dtype(dtype)
-
 
 def _frozen(values: ArrayLike) -> NDArray[Any]:
     array = np.asarray(values, dtype=object) if _is_text(values) else np.asarray(values)
@@ -216,6 +214,11 @@ def _is_text(values: ArrayLike) -> bool:
     if not isinstance(values, list | tuple):
         return False
     return not values or any(isinstance(value, str) or value is None for value in values)
+
+
+def _texts(array: NDArray[Any]) -> list[str | None]:
+    """Values of an object column as text: data frames have no columns of mixed kinds, so others become JSON."""
+    return [value if value is None or isinstance(value, str) else json.dumps(value) for value in array.tolist()]
 
 
 def _equal(one: NDArray[Any], other: NDArray[Any]) -> bool:

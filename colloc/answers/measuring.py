@@ -59,6 +59,20 @@ def measured(table: Mapping[str, ArrayLike] | Columns, measures: Sequence[str] |
     return columns.adding(compute_all(names, joint, first, second, total))
 
 
+def from_values(columns: Mapping[str, Sequence[Any]]) -> Columns:
+    """Columns of values read from a file, each kept as it is: all whole numbers, all numbers, or anything."""
+
+    def array(values: Sequence[Any]) -> NDArray[Any]:
+        kinds = set(map(type, values))
+        if kinds in ({int}, {float}):
+            numbers = np.asarray(values)
+            if numbers.dtype.kind in "if":
+                return numbers
+        return np.fromiter(values, dtype=object, count=len(values))
+
+    return Columns({name: array(values) for name, values in columns.items()})
+
+
 def check_tables(joint: FloatArray, first: FloatArray, second: FloatArray, total: FloatArray, *, cells: bool) -> None:
     """Raise BadRowError for the first row whose counts no table can have.
 

@@ -82,7 +82,7 @@ def _cell(value: Any) -> str:
         return ""
     if isinstance(value, bool):
         return "true" if value else "false"
-    return str(value)
+    return json.dumps(value, ensure_ascii=False) if isinstance(value, list | dict) else str(value)
 
 
 class JsonLinesWriter:

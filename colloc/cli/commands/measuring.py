@@ -52,12 +52,11 @@ def measure(
 
 def _measured(parts: Iterator[Rows], names: list[str] | None) -> Iterator[Columns]:
     """Each stretch with its measures; errors name file and line."""
-    from colloc.answers.columns import Columns
-    from colloc.answers.measuring import BadRowError, measured
+    from colloc.answers.measuring import BadRowError, from_values, measured
 
     for rows in parts:
         try:
-            yield measured(Columns(rows.columns), names)
+            yield measured(from_values(rows.columns), names)
         except BadRowError as error:
             raise DataError(f"{rows.name}:{rows.lines[error.row]}: {error.problem}") from error
         except DataError as error:
