@@ -125,25 +125,23 @@ def sentence_breaks(
     if not len(kinds):
         return Breaks(np.zeros(0, np.int64), np.zeros(0, np.int64))
     tables = classes()
-    attached = tables.sentences("Extend", "Format")
-    places: Int64Array | None = None
-    kept_points = points
-    if attached[kinds].any():
-        places = np.flatnonzero(~absorbed(kinds, attached, tables.sentences("CR", "LF", "Sep")))
-        kinds, kept_points = kinds[places], points[places]
-    ends, final = paragraph_ends(kinds, kept_points, line_ends)
-    if not final.all():
+    ends, final = paragraph_ends(kinds, points, line_ends)
+    paragraphs = ends[final] + 1
+    if len(paragraphs) < len(ends):
         spaces = ends[~final]
         feeds = spaces[tables.sentence["LF"][kinds[spaces]] & (spaces > 0)]
         returns = feeds[tables.sentence["CR"][kinds[feeds - 1]]] - 1
         kinds = kinds.copy()
         kinds[spaces] = kinds[returns] = tables.space_kind
-    paragraphs = ends[final] + 1
+    attached = tables.sentences("Extend", "Format")
+    places: Int64Array | None = None
+    if attached[kinds].any():
+        places = np.flatnonzero(~absorbed(kinds, attached, tables.sentences("CR", "LF", "Sep")))
+        kinds = kinds[places]
     sentences = _terminated(kinds, points, places, abbreviations)
-    sentences = np.unique(np.concatenate((sentences, paragraphs)))
     if places is not None:
-        positions = np.append(places, len(points))
-        sentences, paragraphs = positions[sentences], positions[paragraphs]
+        sentences = np.append(places, len(points))[sentences]
+    sentences = np.unique(np.concatenate((sentences, paragraphs)))
     return Breaks(sentences, paragraphs)
 
 
