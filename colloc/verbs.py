@@ -34,6 +34,7 @@ from typing import TYPE_CHECKING, Any, Literal
 
 from colloc.errors import NotSeenError, UsageError
 from colloc.settings import (
+    DEFAULT_MEMORY,
     DEFAULT_MIN_COUNT,
     Inside,
     Margins,
@@ -55,7 +56,6 @@ StorePath = str | os.PathLike[str]
 ProgressCall = Callable[[float, int, str], None]
 """Called with the share done (0..1), tokens so far, and the phase."""
 
-DEFAULT_MEMORY = 2 * 2**30
 DEFAULT_LIMIT = 50
 
 
@@ -323,7 +323,7 @@ def reading_settings(store: StorePath | Store) -> ReadSettings:
     from colloc.store import facts
 
     with _reading(store) as opened:
-        return ReadSettings.from_json(facts.need(opened, "read_settings"))
+        return ReadSettings.from_json(facts.get(opened, "read_settings"))
 
 
 def words(

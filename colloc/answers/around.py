@@ -9,13 +9,13 @@ import numpy as np
 
 from colloc.answers.columns import Columns
 from colloc.answers.pairs import as_columns, filtered, score, text_ranks
-from colloc.answers.questions import DEFAULT_MEMORY, PairOptions, Question, ask, measure_names, resolve_spec
+from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
 from colloc.answers.spread import document_counts
 from colloc.answers.tables import PairTable, joined
 from colloc.errors import NotSeenError, UsageError
 from colloc.records import Int64Array
-from colloc.settings import DEFAULT_MIN_COUNT
+from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store import vocabulary
 from colloc.store.connection import Store
 

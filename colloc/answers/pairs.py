@@ -8,14 +8,14 @@ from typing import Any
 import numpy as np
 
 from colloc.answers.columns import Columns
-from colloc.answers.questions import DEFAULT_MEMORY, PairOptions, Question, ask, measure_names, resolve_spec
+from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
 from colloc.answers.spread import document_counts
 from colloc.answers.tables import PairTable
 from colloc.measures.catalogue import MEASURES
 from colloc.measures.contingency import expected
 from colloc.records import FloatArray, Int64Array
-from colloc.settings import DEFAULT_MIN_COUNT
+from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store import vocabulary
 from colloc.store.connection import Store
 

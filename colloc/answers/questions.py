@@ -12,14 +12,12 @@ from colloc.counts.words import slice_word_counts
 from colloc.errors import UsageError
 from colloc.measures.catalogue import MEASURES
 from colloc.records import WordCounts
-from colloc.settings import DEFAULT_MEASURE, Inside, Margins, TallySpec
+from colloc.settings import DEFAULT_MEASURE, DEFAULT_MEMORY, Inside, Margins, TallySpec
 from colloc.store import facts, slices
 from colloc.store.connection import Store
 
 DEFAULT_SHOWN = ("pmi", "npmi", "g2")
 """Measures shown beside the one that ranks."""
-
-DEFAULT_MEMORY = 2 * 2**30
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

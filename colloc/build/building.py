@@ -15,13 +15,10 @@ from pathlib import Path
 from colloc.build.counting import count_new_documents
 from colloc.build.reading import Progress, Read, Resources, read_into
 from colloc.errors import CannotCreateError, DataError
-from colloc.settings import Margins, ReadSettings, SegmentSettings, TallySpec
+from colloc.settings import DEFAULT_MEMORY, SMALLEST_MEMORY, Margins, ReadSettings, SegmentSettings, TallySpec
 from colloc.store import documents, facts
 from colloc.store.opening import Store, create, open_for_writing
 from colloc.store.scratch import scratch_folder
-
-DEFAULT_MEMORY = 2 * 2**30
-SMALLEST_MEMORY = 256 * 2**20
 
 NOTHING_READ = Read(0, 0, 0, 0, 0, 0)
 

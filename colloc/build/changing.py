@@ -9,11 +9,11 @@ from pathlib import Path
 
 import numpy as np
 
-from colloc.build.building import DEFAULT_MEMORY, BuildReport, fill, report, resources
+from colloc.build.building import BuildReport, fill, report, resources
 from colloc.build.counting import count_removed_documents
 from colloc.build.reading import Progress, Read
 from colloc.errors import CollocError, DataError, NotSeenError, UsageError
-from colloc.settings import ReadSettings
+from colloc.settings import DEFAULT_MEMORY, ReadSettings
 from colloc.store import documents, facts, slices, visibility
 from colloc.store.connection import Store
 from colloc.store.opening import open_for_writing

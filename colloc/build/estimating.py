@@ -11,10 +11,10 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from colloc.build.batches import BATCH_CHARACTERS
-from colloc.build.building import DEFAULT_MEMORY, build, resources
+from colloc.build.building import build, resources
 from colloc.errors import InputOutputError
 from colloc.records import Document
-from colloc.settings import ReadSettings, SegmentSettings, TallySpec
+from colloc.settings import DEFAULT_MEMORY, ReadSettings, SegmentSettings, TallySpec
 from colloc.text.sources import open_sources
 
 SAMPLE_CHARACTERS = 2 * BATCH_CHARACTERS

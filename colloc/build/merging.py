@@ -10,12 +10,13 @@ from pathlib import Path
 
 import numpy as np
 
-from colloc.build.building import DEFAULT_MEMORY, BuildReport, report, resources
+from colloc.build.building import BuildReport, report, resources
 from colloc.build.changing import require_complete
 from colloc.build.counting import count_new_documents
 from colloc.build.reading import Progress, Read, registry_limit
 from colloc.errors import CollocError, UsageError
 from colloc.records import NO_TERM, Anchors, UInt32Array
+from colloc.settings import DEFAULT_MEMORY
 from colloc.store import documents, facts, stream, texts, visibility, vocabulary
 from colloc.store.connection import Store
 from colloc.store.opening import open_for_reading, open_for_writing

@@ -9,6 +9,7 @@ from typing import Annotated, Any, Literal
 
 import typer
 
+from colloc import settings
 from colloc.cli.sizes import size_in_bytes, written_size
 from colloc.errors import UsageError
 from colloc.settings import Inside, Margins
@@ -181,7 +182,7 @@ TempOption = Annotated[
     str | None, _option("--temp", metavar="FOLDER", help="Folder for temporary files; the system's when not given.")
 ]
 
-DEFAULT_MEMORY = "2GB"
+DEFAULT_MEMORY = written_size(settings.DEFAULT_MEMORY).replace(" ", "")
 
 
 def memory_bytes(text: str) -> int:
@@ -192,9 +193,7 @@ def memory_bytes(text: str) -> int:
     UsageError
         Where it is no size, or less than counting needs at all.
     """
-    from colloc.build.building import SMALLEST_MEMORY
-
     memory = size_in_bytes(text)
-    if memory < SMALLEST_MEMORY:
-        raise UsageError(f"--memory must be at least {written_size(SMALLEST_MEMORY)}, not {text}")
+    if memory < settings.SMALLEST_MEMORY:
+        raise UsageError(f"--memory must be at least {written_size(settings.SMALLEST_MEMORY)}, not {text}")
     return memory
