@@ -7,8 +7,10 @@ import sqlite3
 from collections.abc import Iterable, Iterator
 from typing import Any
 
+import numpy as np
+
 from colloc.errors import DataError, NotSeenError, StoreDamagedError
-from colloc.records import DocumentRow
+from colloc.records import DocumentRow, Int64Array
 from colloc.store import facts, stream, texts
 from colloc.store.connection import Store
 
@@ -61,6 +63,13 @@ def token_places(store: Store, numbers: Int64Array) -> tuple[Int64Array, Int64Ar
         raise NotSeenError(f"{store.path}: no document {missing[0]}")
     places = np.array([found[number] for number in wanted], dtype=np.int64).reshape(-1, 2)
     return places[:, 0], places[:, 1]
+
+
+def document_spans(store: Store) -> tuple[Int64Array, Int64Array, Int64Array]:
+    """Number, first token and number of tokens of all documents that readers see, by number."""
+    rows = store.rows("SELECT id, first_token, n_tokens FROM documents WHERE id < ? ORDER BY id", (visible_end(store),))
+    numbers, firsts, lengths = np.array(rows, dtype=np.int64).reshape(-1, 3).T
+    return numbers, firsts, lengths
 
 
 def iterate_documents(store: Store) -> Iterator[DocumentRow]:

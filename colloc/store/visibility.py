@@ -11,7 +11,7 @@ import json
 import numpy as np
 
 from colloc.records import Int64Array
-from colloc.store import documents, facts, sources, stream, texts
+from colloc.store import documents, facts, sources, stream, texts, vocabulary
 from colloc.store.connection import Store
 
 MARK = "counted"
@@ -36,6 +36,7 @@ def show_all(store: Store) -> None:
     }
     facts.put(store, MARK, json.dumps(mark))
     facts.next_generation(store)
+    vocabulary.index_words(store)
 
 
 def drop_uncounted(store: Store) -> None:

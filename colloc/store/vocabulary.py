@@ -32,6 +32,7 @@ __all__ = [
     "append_word_counts",
     "ensure_layer",
     "has_word_counts",
+    "index_words",
     "layer_map",
     "layer_names",
     "term_count",
@@ -50,6 +51,12 @@ _LARGEST = 2**31 - 1
 def type_count(store: Store) -> int:
     """How many types the store has."""
     return find_layer(store, "form").types
+
+
+def index_words(store: Store) -> None:
+    """Make the indexes by which words are found, where they are not there yet: at the end of a first build."""
+    for statement in schema.VOCABULARY_INDEXES:
+        store.execute(statement)
 
 
 class TypeRegistry:
@@ -96,11 +103,6 @@ class TypeRegistry:
             self._complete &= remember(known, fresh, self._limit)
         return numbers
 
-    def finish(self) -> None:
-        """Make the indexes by which words are found; call it once a first build is complete."""
-        for statement in schema.VOCABULARY_INDEXES:
-            self._store.execute(statement)
-
     def _add(self, keys: list[TypeKey], annotated: bool) -> None:
         first, stop = self._count, self._count + len(keys)
         if stop > _LARGEST:
@@ -133,7 +135,7 @@ class TypeRegistry:
     def _look_up(self, keys: set[TypeKey]) -> None:
         """Learn the numbers of types that are in the store already, for this batch."""
         if keys:
-            self.finish()  # without the index each look-up would read the whole table
+            index_words(self._store)  # without the index each look-up would read the whole table
         for key in keys:
             triple = key if isinstance(key, tuple) else (key, "", "")
             row = self._store.row("SELECT id FROM types WHERE form = ? AND lemma = ? AND upos = ?", triple)

@@ -1,0 +1,37 @@
+"""A store beside the store: for tables that are counted where the store itself cannot be written."""
+
+from __future__ import annotations
+
+import os
+import tempfile
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+
+from colloc.store.connection import Store
+from colloc.store.opening import create
+from colloc.store.scratch import scratch_folder
+from colloc.store.vocabulary import term_count
+
+
+@contextmanager
+def store_aside(store: Store, layer: str, temp: str | os.PathLike[str] | None = None) -> Iterator[Store]:
+    """An empty store, open for writing, that knows how many terms a layer of ``store`` has; gone afterwards.
+
+    Parameters
+    ----------
+    temp : path, optional
+        Where it is made; when None, beside the store, or in the system's folder for temporary files where the
+        store's own folder cannot be written.
+    """
+    beside = store.path.absolute().parent
+    place = Path(temp) if temp is not None else beside if os.access(beside, os.W_OK) else Path(tempfile.gettempdir())
+    with scratch_folder(store.path, place) as folder, create(folder / store.path.name, {}, "count aside") as aside:
+        with aside.transaction():
+            terms = term_count(store, layer)
+            aside.execute(
+                "INSERT INTO layers (name, terms, types, same) VALUES (?, ?, 0, 0) "
+                "ON CONFLICT (name) DO UPDATE SET terms = excluded.terms",
+                (layer, terms),
+            )
+        yield aside
