@@ -140,17 +140,16 @@ def welch_test(
         ``z`` holds the t statistic; ``log_p`` is ln of the two-sided p-value of the t distribution, nan where both
         variances are 0.
     """
+    n_this, n_that = np.asarray(documents_this, dtype=np.float64), np.asarray(documents_that, dtype=np.float64)
+    gap = np.asarray(mean_this, dtype=np.float64) - np.asarray(mean_that, dtype=np.float64)
     with np.errstate(divide="ignore", invalid="ignore"):
-        share_this = np.asarray(variance_this, dtype=np.float64) / np.asarray(documents_this, dtype=np.float64)
-        share_that = np.asarray(variance_that, dtype=np.float64) / np.asarray(documents_that, dtype=np.float64)
-        gap = np.asarray(mean_this, dtype=np.float64) - np.asarray(mean_that, dtype=np.float64)
+        share_this = np.asarray(variance_this, dtype=np.float64) / n_this
+        share_that = np.asarray(variance_that, dtype=np.float64) / n_that
         se = np.sqrt(share_this + share_that)
-        df = (share_this + share_that) ** 2 / (
-            share_this**2 / (np.asarray(documents_this, dtype=np.float64) - 1.0)
-            + share_that**2 / (np.asarray(documents_that, dtype=np.float64) - 1.0)
-        )
+        df = (share_this + share_that) ** 2 / (share_this**2 / (n_this - 1.0) + share_that**2 / (n_that - 1.0))
         t = gap / se
-        return Difference(gap, se, t, _t_log_p(t, df)), df
+        log_p = np.where(np.minimum(n_this, n_that) < 2, np.nan, _t_log_p(t, df))
+    return Difference(gap, se, t, log_p), df
 
 
 def _t_log_p(t: FloatArray, df: FloatArray) -> FloatArray:
