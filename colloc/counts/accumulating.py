@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +17,16 @@ Places = slice | Int64Array
 """Tokens of the loaded span: a stretch, or their offsets."""
 
 DEFAULT_PENDING = 2**22
+
+
+class PairSink(Protocol):
+    """Whoever takes the pairs that a kernel finds."""
+
+    def load(self, terms: UInt32Array) -> None:
+        """Set the tokens that `pair` speaks of."""
+
+    def pair(self, first: Places, second: Places, valid: BoolArray | None = None) -> None:
+        """Take the pairs [first, second] of places, those that are valid where that is said."""
 
 
 class Accumulator:

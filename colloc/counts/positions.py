@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from colloc.counts.accumulating import Accumulator
+from colloc.counts.accumulating import Accumulator, PairSink
 from colloc.counts.keys import Run
 from colloc.counts.windows import tokens_left
 from colloc.records import Int64Array, TokenSpan
@@ -26,7 +26,7 @@ def gaps_to_previous(span: TokenSpan) -> Int64Array:
     return gaps
 
 
-def add_positions(span: TokenSpan, left: int, right: int, into: Accumulator) -> None:
+def add_positions(span: TokenSpan, left: int, right: int, into: PairSink) -> None:
     """Count into the cell [x, y] the tokens of x that have a y at distance -left..right (not 0) in their unit.
 
     Counted are tokens from ``span.context`` up to ``span.ahead`` before the end; those around them are

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from colloc.counts.accumulating import Accumulator
+from colloc.counts.accumulating import Accumulator, PairSink
 from colloc.counts.keys import Run
 from colloc.counts.windows import tokens_left
 from colloc.records import NO_TERM, Int64Array, TokenSpan, UInt32Array
@@ -36,7 +36,7 @@ def unit_terms(span: TokenSpan) -> tuple[UInt32Array, Int64Array]:
     return (keys & np.uint64(0xFFFFFFFF)).astype(np.uint32), starts
 
 
-def add_units(terms: UInt32Array, starts: Int64Array, into: Accumulator) -> None:
+def add_units(terms: UInt32Array, starts: Int64Array, into: PairSink) -> None:
     """Count every two terms of a unit once, forward; ``terms`` and ``starts`` as `unit_terms` gives them."""
     into.load(terms)
     followers = tokens_left(TokenSpan(terms, starts))

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from colloc.counts.accumulating import Accumulator
+from colloc.counts.accumulating import Accumulator, PairSink
 from colloc.counts.keys import Run
 from colloc.records import Int64Array, TokenSpan
 
@@ -17,7 +17,7 @@ def tokens_left(span: TokenSpan) -> Int64Array:
     return ends - 1 - np.arange(n)
 
 
-def add_windows(span: TokenSpan, left: int, right: int, into: Accumulator) -> None:
+def add_windows(span: TokenSpan, left: int, right: int, into: PairSink) -> None:
     """Count ``span`` into ``into``.
 
     Each pair of tokens i < j in one unit adds to the cell [t_i, t_j] where j - i <= right, and to the

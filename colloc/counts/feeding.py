@@ -1,0 +1,79 @@
+"""The stored stream fed to a sink of pairs, each pair once, with the document of every token."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Protocol
+
+import numpy as np
+
+from colloc.counts.accumulating import PairSink
+from colloc.counts.placing import DocumentPlaces
+from colloc.counts.positions import add_positions
+from colloc.counts.selection import Selection
+from colloc.counts.spans import PIECE, read_stretches, whole_units, window_spans
+from colloc.counts.tasks import reach
+from colloc.counts.units import add_units
+from colloc.counts.windows import add_windows
+from colloc.errors import UsageError
+from colloc.records import Int64Array, UInt32Array
+from colloc.settings import TallySpec
+from colloc.store.connection import Store
+
+
+class PlacedSink(PairSink, Protocol):
+    """A sink that is told before each `load` which tokens they are."""
+
+    def place(self, documents: Int64Array, begin: int, stop: int) -> None:
+        """Index of the document of every token; those from ``begin`` up to ``stop`` are counted in this load."""
+
+
+def feed(
+    store: Store,
+    spec: TallySpec,
+    selection: Selection,
+    documents: DocumentPlaces,
+    labels: UInt32Array,
+    sink: PlacedSink,
+) -> Iterator[int]:
+    """Hand every pair that a tally of ``spec`` counts to ``sink``.
+
+    Parameters
+    ----------
+    labels : uint32 array, shape (n_types,)
+        What each type counts as; `NO_TERM` for no word at all.
+
+    Yields
+    ------
+    int
+        After each load the index of a document: those before it will bring nothing more.
+
+    Raises
+    ------
+    UsageError
+        The spec counts dependents, not places.
+    """
+    if spec.kind == "relation":
+        raise UsageError("pairs of head and dependent cannot be followed through documents: ask with a window")
+    stop = documents.stop
+    if spec.kind == "unit":
+        stretches = read_stretches(store, labels, selection, spec.inside, 0, stop)
+        for terms, starts, places in whole_units(stretches, 0, stop):
+            units = documents.of(places)
+            sink.place(np.repeat(units, np.diff(starts, append=len(terms))), 0, len(terms))
+            add_units(terms, starts, sink)
+            yield int(units[-1]) if len(units) else 0
+        return
+    back, ahead = reach(spec)
+    stretches = read_stretches(store, labels, selection, spec.inside, 0, stop)
+    place = 0
+    for span in window_spans(stretches, 0, stop, back, ahead, PIECE):
+        begin = place - span.context
+        end = begin + len(span.terms)
+        sink.place(documents.of_stretch(begin, end), span.context, len(span.terms) - span.ahead)
+        if spec.kind == "positions":
+            add_positions(span, spec.left, spec.right, sink)
+        else:
+            add_windows(span, spec.left, spec.right, sink)
+        place = end - span.ahead
+        yield int(documents.of(np.array([place - 1]))[0])
