@@ -3,13 +3,14 @@
 A URL is a scheme (RFC 3986, section 3.1) and ``://``, or ``www.``, and all that
 follows up to a space, a control character or one of ``<>"``, without closing
 punctuation at its end. An e-mail address has the dot-atom form of RFC 5322,
-section 3.2.3, and a domain name with at least one dot (RFC 1035, section 2.3.1,
-letters of all scripts allowed).
+section 3.2.3, and a domain name with at least one dot (RFC 1035, section 2.3.1),
+both with letters of all scripts (RFC 6531).
 """
 
 from __future__ import annotations
 
 import re
+from collections.abc import Callable
 
 import numpy as np
 
@@ -41,17 +42,25 @@ def _without_closing(text: str, start: int, end: int) -> int:
     return end
 
 
-def _back(text: str, position: int, allowed: frozenset[str], longest: int) -> int:
+def _in_scheme(character: str) -> bool:
+    return character in _SCHEME
+
+
+def _in_local_part(character: str) -> bool:
+    return character in _ATOM or (not character.isascii() and character.isalnum())
+
+
+def _back(text: str, position: int, allowed: Callable[[str], bool], longest: int) -> int:
     """Where the run of allowed characters before `position` begins (at most `longest` of them)."""
     first = max(position - longest, 0)
-    while position > first and text[position - 1] in allowed:
+    while position > first and allowed(text[position - 1]):
         position -= 1
     return position
 
 
 def _url_at(text: str, mark: int, least: int, limit: int) -> tuple[int, int] | None:
     """The URL whose ``://`` stands at `mark`, between `least` and `limit`."""
-    start = max(_back(text, mark, _SCHEME, _LONGEST_SCHEME), least)
+    start = max(_back(text, mark, _in_scheme, _LONGEST_SCHEME), least)
     while start < mark and not (text[start].isascii() and text[start].isalpha()):
         start += 1
     if start == mark:
@@ -68,7 +77,7 @@ def _www_at(text: str, mark: int, least: int, limit: int) -> tuple[int, int] | N
 
 
 def _mail_at(text: str, mark: int, least: int, limit: int) -> tuple[int, int] | None:
-    start = max(_back(text, mark, _ATOM, _LONGEST_LOCAL_PART), least)
+    start = max(_back(text, mark, _in_local_part, _LONGEST_LOCAL_PART), least)
     while start < mark and not text[start].isalnum():
         start += 1
     end = _end_of(_DOMAIN, text, mark + 1, limit)

@@ -62,15 +62,16 @@ def _blank_lines(settings: SegmentSettings) -> bool:
 
 
 def _widening(text: str, at_least: int, find: Callable[[str], int]) -> int:
-    """The last place that `find` sees, looking at ever longer ends of the text; 0 where none is beyond `at_least`."""
+    """The last place that `find` sees, looking at ever longer ends of the text; 0 where none is beyond `at_least`.
+
+    What makes a place may begin before `at_least`.
+    """
     size = _FIRST_LOOK
     while True:
-        first = max(len(text) - size, at_least)
+        first = max(len(text) - size, 0)
         found = find(text[first:])
-        if found > 0:
-            return first + found
-        if first <= at_least:
-            return 0
+        if found > 0 or first <= at_least - _FIRST_LOOK or first == 0:
+            return first + found if found > 0 and first + found > at_least else 0
         size *= 4
 
 

@@ -87,9 +87,10 @@ class KeyTable:
         waiting = np.arange(len(values))
         while len(waiting):
             free = self._values[slots] == ABSENT
-            # Of several keys that want one free slot the last written gets it; the rest go on.
-            self._values[slots[free]] = values[waiting[free]]
-            placed = free & (self._values[slots] == values[waiting])
+            # Of several keys that want one free slot the last one to sign it gets it; the rest go on.
+            self._values[slots[free]] = waiting[free]
+            placed = free & (self._values[slots] == waiting)
+            self._values[slots[placed]] = values[waiting[placed]]
             for table, key in zip(self._keys, keys, strict=True):
                 table[slots[placed]] = key[waiting[placed]]
             waiting, slots = waiting[~placed], (slots[~placed] + 1) & last

@@ -32,9 +32,7 @@ def compiled(pattern: str) -> regex.Pattern[str]:
     return result
 
 
-def pattern_tokens(
-    text: str, pattern: str, paragraphs: Int64Array, seconds: float = SECONDS
-) -> tuple[Int64Array, Int64Array]:
+def pattern_tokens(text: str, pattern: str, paragraphs: Int64Array) -> tuple[Int64Array, Int64Array]:
     """Matches in each paragraph of `text`, which the pattern sees by itself: no token crosses a paragraph end.
 
     Parameters
@@ -45,20 +43,20 @@ def pattern_tokens(
     Raises
     ------
     DataError
-        Where a paragraph takes longer than `seconds`.
+        Where a paragraph takes longer than ``SECONDS``.
     """
     finder = compiled(pattern)
     bounds = [0, *paragraphs.tolist(), len(text)]
     spans: list[tuple[int, int]] = []
     for first, last in pairwise(bounds):
         try:
-            matches = finder.finditer(text[first:last], timeout=seconds)
+            matches = finder.finditer(text[first:last], timeout=SECONDS)
             spans.extend(
                 (first + found.start(), first + found.end()) for found in matches if found.end() > found.start()
             )
         except TimeoutError as error:
             raise DataError(
-                f"the token pattern {pattern!r} took longer than {seconds:g} s on a paragraph of {last - first} "
+                f"the token pattern {pattern!r} took longer than {SECONDS:g} s on a paragraph of {last - first} "
                 f"characters that begins {text[first : first + 40]!r}; make it simpler, without nested repetition"
             ) from error
     found_spans = np.array(spans, np.int64).reshape(-1, 2)

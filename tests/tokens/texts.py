@@ -23,8 +23,36 @@ CHARACTERS = (
 )
 ASCII = "aaabBC01 .,:;'?!-_()\"\n\r\t"
 WORDS = [
-    *["the ", "The ", "ship", "Dr. ", "e.g. ", "No. ", "5 ", "3.14", "it's", "x-y", " -- ", "\n\n", "\r\n", ". ", "? ", "etc.) "],
-    *["http://a.b/c.D?e ", "www.x.org", "me@x.org ", "J. R. ", "Stop.\u201d ", "\u00ad", "e\u0301", "日本。", "שׁ\"ל", "Ende.\n"],
+    *[
+        "the ",
+        "The ",
+        "ship",
+        "Dr. ",
+        "e.g. ",
+        "No. ",
+        "5 ",
+        "3.14",
+        "it's",
+        "x-y",
+        " -- ",
+        "\n\n",
+        "\r\n",
+        ". ",
+        "? ",
+        "etc.) ",
+    ],
+    *[
+        "http://a.b/c.D?e ",
+        "www.x.org",
+        "me@x.org ",
+        "J. R. ",
+        "Stop.\u201d ",
+        "\u00ad",
+        "e\u0301",
+        "日本。",
+        'שׁ"ל',
+        "Ende.\n",
+    ],
 ]
 
 any_class = st.text(st.sampled_from(CHARACTERS), max_size=24)
