@@ -14,6 +14,7 @@ the total is some 10^12 (the same decomposition for the binomial: Loader 2000).
 
 from __future__ import annotations
 
+from functools import cache
 from typing import Literal, get_args
 
 import numpy as np
@@ -152,7 +153,8 @@ def _log_rest(point: FloatArray, a: FloatArray, b: FloatArray, c: FloatArray, d:
     length = 2.0 * _NEGLIGIBLE / (slope + np.sqrt(slope * slope + 2.0 * _NEGLIGIBLE / spread))
     long = length > _SUM_TERMS
     result = np.empty_like(point)
-    result[long] = _integrated(point[long], a[long], b[long], c[long], d[long], length[long])
+    if long.any():
+        result[long] = _integrated(point[long], a[long], b[long], c[long], d[long], length[long])
     short = ~long
     result[short] = _added_up(a[short], b[short], c[short], d[short])
     return result
@@ -179,15 +181,20 @@ def _integrated(
     point: FloatArray, a: FloatArray, b: FloatArray, c: FloatArray, d: FloatArray, length: FloatArray
 ) -> FloatArray:
     """The sum of a long, hence smooth, tail: the midpoint Euler-Maclaurin formula with one correction term."""
-    nodes, weights = np.polynomial.legendre.leggauss(_NODES)
     end = np.minimum(1.3 * length, np.minimum(b, c))
     half_width = 0.5 * (end - 0.5)
     integral = np.zeros_like(point)
-    for node, weight in zip(nodes, weights, strict=True):
+    for node, weight in zip(*_gauss_legendre(), strict=True):
         j = 0.5 + half_width * (1.0 + node)
         integral += weight * np.exp(_log_point(a + j, b - j, c - j, d + j) - point)
     slope_at_half = b * c / ((a + 1.0) * (d + 1.0)) - 1.0
     return np.log(half_width * integral + slope_at_half / 24.0)
+
+
+@cache
+def _gauss_legendre() -> tuple[FloatArray, FloatArray]:
+    nodes, weights = np.polynomial.legendre.leggauss(_NODES)
+    return nodes, weights
 
 
 def _log_far_tail(
