@@ -130,6 +130,7 @@ def count_change(
             if spec.where:
                 chosen = documents_selection(store, np.intersect1d(numbers, select(store, spec.where)))
             if tallies.find(store, spec) is None:
+                ensure_layer(store, spec.layer)
                 counter.count(store, spec, chosen, kept=True)
             elif len(chosen):
                 counter.count(store, spec, chosen, kept=True, sign=sign, delta=True)
