@@ -178,6 +178,16 @@ def test_only_the_pmi_family_does_without_a_real_table() -> None:
     ]
 
 
+@every
+def test_the_strongest_end_is_where_association_grows(measure: Measure) -> None:
+    # More joint occurrences between the same margins: attraction grows, and so must the value, or fall.
+    weaker, stronger = (float(measure.compute(joint, 300, 400, 10_000)) for joint in (40, 120))
+    if measure.name == "log_odds_se":
+        assert measure.strongest == "lowest", "the surest first"
+    else:
+        assert (stronger > weaker) == (measure.strongest == "highest")
+
+
 def test_the_catalogue_loads_no_scipy() -> None:
     code = "import sys, colloc.measures.catalogue as c; c.find('g2').compute(1, 2, 3, 9); print('scipy' in sys.modules)"
     assert subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True).stdout == "False\n"

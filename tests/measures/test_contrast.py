@@ -41,6 +41,14 @@ def test_log_ratio_agrees_with_statsmodels() -> None:
         )
 
 
+def test_dagan_itai_lower_bounds() -> None:
+    # Dagan & Itai 1994, Computational Linguistics 20(4): ln(n1/n2) - 1.282 sqrt(1/n1 + 1/n2), counts of two readings
+    # out of the same large corpus; 1.282 is the two-sided quantile of 80 %.
+    for this, that, printed in ((10, 5, "-0.009"), (29, 5, "1.137"), (20.5, 0.5, "1.879"), (7.5, 0.5, "0.836")):
+        _, interval = log_ratio_interval(this, 1e12, that, 1e12, confidence=0.8)
+        assert float(interval.low) * np.log(2) == pytest.approx(float(printed), abs=0.0015)
+
+
 def test_log_ratio_stays_finite_at_zero() -> None:
     value, interval = log_ratio_interval([5, 0, 0], 1000, [0, 5, 0], 1000)
     assert np.isfinite([value, interval.low, interval.high]).all()

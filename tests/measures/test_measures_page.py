@@ -27,7 +27,7 @@ def test_page_names_only_functions_that_are_there() -> None:
 
 def test_every_section_has_every_heading() -> None:
     text = markdown()
-    for heading in ("Range", "Unit", "Overrates", "Underrates", "Misleads", "Source"):
+    for heading in ("Range", "Unit", "Ranks first", "Overrates", "Underrates", "Misleads", "Source"):
         assert text.count(f"- **{heading}**: ") == len(MEASURES)
     for part in ("Limits at zero cells", "Intervals", "p-values and q-values"):
         assert f"\n## {part}\n" in text

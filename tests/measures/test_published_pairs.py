@@ -272,3 +272,24 @@ def test_everything_about_the_swiss() -> None:
     assert rounds_to(float(z(*new_companies)), "1.243644")
     assert rounds_to(float(g2(*new_companies)), "1.325389")
     assert rounds_to(float(pmi(*new_companies)), "0.629343")
+
+
+def test_church_adaptation() -> None:
+    # Church 2000, COLING: hostages in the halves of AP documents; prior .015, +adapt .56, -adapt .0072.
+    table = from_cells(638, 505, 557, 76_787)
+    values = compute_all(["p_second_given_first", "delta_p_second_given_first"], *table)
+    assert rounds_to(table[2] / table[3], "0.015")
+    assert rounds_to(float(values["p_second_given_first"]), "0.56")
+    assert rounds_to(float(values["p_second_given_first"] - values["delta_p_second_given_first"]), "0.0072")
+
+
+def test_manning_schuetze_table_5_17_has_one_total() -> None:
+    # PMI, f1, f2 with O = 1 out of a 1,000-document subset whose N is not printed: there must be one that suits all.
+    rows = "16.95 5 1|15.02 1 19|13.78 5 9|12.00 5 31|9.82 26 27|9.21 13 82|7.37 24 159|6.68 687 9|6.00 661 15"
+    totals = np.arange(600_000, 660_000, 10)
+    suits = np.ones(totals.size, dtype=np.bool)
+    for row in rows.split("|"):
+        printed, first, second = row.split()
+        suits &= np.abs(pmi(1, int(first), int(second), totals) - float(printed)) <= 0.00501
+    assert suits.any()
+    assert totals[suits] == pytest.approx(633_000, rel=0.005)

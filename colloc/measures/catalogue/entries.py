@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from typing import Literal
 
 from numpy.typing import ArrayLike
 
@@ -28,6 +29,8 @@ class Measure:
     needs_cells : bool
         Whether the four numbers must be one real table (all cells in the same unit, none negative). Only the PMI
         family does without: it may be given margins counted otherwise than the joint counts.
+    strongest : "highest" or "lowest"
+        Which end of the range is the strongest association: the end that a ranking begins with.
     over_rates, under_rates, misleads : str
         Which pairs rank too high, which too low, and when not to trust it.
     source : str
@@ -48,6 +51,7 @@ class Measure:
     misleads: str
     source: str
     function: TableFunction = field(repr=False)
+    strongest: Literal["highest", "lowest"] = "highest"
 
     @property
     def rule(self) -> Rule:
@@ -196,6 +200,7 @@ ENTRIES = (
         misleads=_CELL_P_MISLEADS,
         source="Dunning 1993, section 4; Wilks 1938, doi:10.1214/aoms/1177732360",
         function=likelihood.g2_p,
+        strongest="lowest",
     ),
     Measure(
         name="g2_log10_p",
@@ -210,6 +215,7 @@ ENTRIES = (
         misleads=_CELL_P_MISLEADS,
         source="as g2_p; for p-values too small for a float",
         function=likelihood.g2_log10_p,
+        strongest="lowest",
     ),
     Measure(
         name="chi2_p",
@@ -224,6 +230,7 @@ ENTRIES = (
         misleads=_CELL_P_MISLEADS,
         source="Pearson 1900, doi:10.1080/14786440009463897",
         function=likelihood.chi2_p,
+        strongest="lowest",
     ),
     Measure(
         name="chi2_log10_p",
@@ -238,6 +245,7 @@ ENTRIES = (
         misleads=_CELL_P_MISLEADS,
         source="as chi2_p; for p-values too small for a float",
         function=likelihood.chi2_log10_p,
+        strongest="lowest",
     ),
     Measure(
         name="fisher_p",
@@ -252,6 +260,7 @@ ENTRIES = (
         misleads=_CELL_P_MISLEADS,
         source="Fisher 1935, doi:10.2307/2342435; Pedersen 1996, arXiv:cmp-lg/9608010",
         function=exact.fisher_p,
+        strongest="lowest",
     ),
     Measure(
         name="fisher_log10_p",
@@ -266,6 +275,7 @@ ENTRIES = (
         misleads=_CELL_P_MISLEADS,
         source="as fisher_p; for p-values too small for a float",
         function=exact.fisher_log10_p,
+        strongest="lowest",
     ),
     Measure(
         name="t",
@@ -396,6 +406,7 @@ ENTRIES = (
         "over documents.",
         source="Woolf 1955, doi:10.1111/j.1469-1809.1955.tb01348.x",
         function=odds.log_odds_se,
+        strongest="lowest",
     ),
     Measure(
         name="p_second_given_first",

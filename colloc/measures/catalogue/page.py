@@ -120,6 +120,7 @@ def _section(measure: Measure) -> Iterator[str]:
     yield ""
     yield f"- **Range**: {measure.range}"
     yield f"- **Unit**: {measure.unit}"
+    yield f"- **Ranks first**: the {measure.strongest} value"
     yield f"- **Overrates**: {measure.over_rates}"
     yield f"- **Underrates**: {measure.under_rates}"
     yield f"- **Misleads**: {measure.misleads}"
