@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from itertools import islice
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colloc.answers.columns import Columns
-from colloc.records import DocumentRow
+from colloc.records import DocumentRow, Int64Array
 from colloc.store import documents, slices, tallies
 from colloc.store.opening import Store
 
@@ -59,20 +61,31 @@ def kept_tallies(store: Store) -> Columns:
     Returns
     -------
     Columns
-        layer, kind, left, right, inside, where, relation, pairs (distinct), total.
+        layer, kind, left, right, inside, where, relation, asked_for (by the build or
+        ``colloc tally``; else a cache that makes room when needed), pairs (distinct), total, bytes.
     """
     entries = tallies.tally_list(store)
-    found = [tally for entry in entries if (tally := tallies.find(store, entry.spec)) is not None]
-    text = {
-        name: np.array([getattr(tally.spec, name) for tally in found], dtype=object)
-        for name in ("layer", "kind", "inside", "where", "relation")
-    }
-    numbers = {
-        "left": [tally.spec.left for tally in found],
-        "right": [tally.spec.right for tally in found],
-        "pairs": [tally.n_pairs for tally in found],
-        "total": [tally.total for tally in found],
-    }
-    columns = {**text, **{name: np.array(values, dtype=np.int64) for name, values in numbers.items()}}
-    order = ("layer", "kind", "left", "right", "inside", "where", "relation", "pairs", "total")
-    return Columns({name: columns[name] for name in order}, {"store": str(store.path)})
+    counted = [tally for entry in entries if (tally := tallies.find(store, entry.spec)) is not None]
+
+    def text(name: str) -> NDArray[Any]:
+        return np.array([getattr(entry.spec, name) for entry in entries], dtype=object)
+
+    def numbers(values: Iterable[int]) -> Int64Array:
+        return np.array(list(values), dtype=np.int64)
+
+    return Columns(
+        {
+            "layer": text("layer"),
+            "kind": text("kind"),
+            "left": numbers(entry.spec.left for entry in entries),
+            "right": numbers(entry.spec.right for entry in entries),
+            "inside": text("inside"),
+            "where": text("where"),
+            "relation": text("relation"),
+            "asked_for": np.array([entry.kept for entry in entries], dtype=bool),
+            "pairs": numbers(tally.n_pairs for tally in counted),
+            "total": numbers(tally.total for tally in counted),
+            "bytes": numbers(entry.n_bytes for entry in entries),
+        },
+        {"store": str(store.path)},
+    )

@@ -13,6 +13,12 @@ from typing import Any
 DECIMALS = 4
 """Digits after the point of a measure, enough to tell neighbours in a ranking apart."""
 
+COLUMN_DECIMALS = {"per_million": 1}
+"""Columns that need fewer."""
+
+MARGIN_COLUMNS = ("first_total", "second_total", "total")
+"""Counts that halving on the diagonal makes floats: shown as counts where the whole column is whole."""
+
 _FIRST_STRONG_ISOLATE = "\u2068"
 _POP_ISOLATE = "\u2069"
 _RIGHT_TO_LEFT = frozenset(("R", "AL", "AN"))
@@ -64,8 +70,8 @@ def _escape(character: str) -> str:
     return f"\\x{ord(character):02x}" if ord(character) < 256 else f"\\u{ord(character):04x}"
 
 
-def number_text(value: float) -> str:
-    """A measure's value with ``DECIMALS`` decimals; very small and very large ones with an exponent.
+def number_text(value: float, decimals: int = DECIMALS) -> str:
+    """A number with so many decimals; very small and very large ones with an exponent.
 
     >>> [number_text(v) for v in (0.25, -0.0, 12345.678, 3e-9, float("nan"), float("-inf"))]
     ['0.2500', '0.0000', '12345.6780', '3.000e-09', '', '-inf']
@@ -76,13 +82,13 @@ def number_text(value: float) -> str:
         return "inf" if value > 0 else "-inf"
     size = abs(value)
     if size == 0:
-        return f"{0.0:.{DECIMALS}f}"
+        return f"{0.0:.{decimals}f}"
     if size < 10**-DECIMALS or size >= 1e12:
         return f"{value:.{DECIMALS - 1}e}"
-    return f"{value:.{DECIMALS}f}"
+    return f"{value:.{decimals}f}"
 
 
-def cell_text(value: Any) -> str:
+def cell_text(value: Any, decimals: int = DECIMALS) -> str:
     """What a table shows for one value; nothing where it is missing."""
     if value is None:
         return ""
@@ -91,7 +97,7 @@ def cell_text(value: Any) -> str:
     if isinstance(value, int):
         return str(value)
     if isinstance(value, float):
-        return number_text(value)
+        return number_text(value, decimals)
     return shown_text(str(value))
 
 
@@ -108,27 +114,24 @@ class Grid:
     """
 
     def __init__(self, names: Sequence[str], numeric: Sequence[bool]) -> None:
+        self._names = list(names)
         self._heads = [shown_text(name) for name in names]
         self._numeric = list(numeric)
         self._widths = [width(head) for head in self._heads]
 
     def lines(self, columns: Sequence[Sequence[Any]], *, heading: bool) -> list[str]:
         """Lines for equally long columns of values, after the column names where ``heading``."""
-        cells = [self._column(values, numeric) for values, numeric in zip(columns, self._numeric, strict=True)]
+        cells = [self._column(values, name) for values, name in zip(columns, self._names, strict=True)]
         for place, column in enumerate(cells):
             self._widths[place] = max([self._widths[place], *map(width, column)])
         rows = zip(*cells, strict=True)
         return [self._line(row) for row in ([tuple(self._heads), *rows] if heading else rows)]
 
     @staticmethod
-    def _column(values: Sequence[Any], numeric: bool) -> list[str]:
-        texts = [cell_text(value) for value in values]
-        # Whole numbers held as floats (halved margins) read as counts where the whole column is whole.
-        whole = numeric and all(
-            isinstance(value, float) and math.isfinite(value) and value == int(value) and abs(value) < 1e15
-            for value in values
-        )
-        return [str(int(value)) for value in values] if whole and values else texts
+    def _column(values: Sequence[Any], name: str) -> list[str]:
+        if name in MARGIN_COLUMNS and all(isinstance(value, float) and value.is_integer() for value in values):
+            return [str(int(value)) for value in values]
+        return [cell_text(value, COLUMN_DECIMALS.get(name, DECIMALS)) for value in values]
 
     def _line(self, cells: Sequence[str]) -> str:
         padded = []

@@ -182,6 +182,12 @@ def test_cells() -> None:
 
 
 def test_halved_margins_read_as_counts_where_they_are_whole() -> None:
-    grid = Grid(["total"], [True])
-    assert grid.lines([[10.0, 8.0]], heading=True) == ["total", "   10", "    8"]
-    assert grid.lines([[10.0, 8.5]], heading=False) == ["10.0000", " 8.5000"]
+    grid = Grid(["total", "pmi", "per_million"], [True, True, True])
+    assert grid.lines([[10.0], [1.0], [2.0]], heading=True) == [
+        "total     pmi  per_million",
+        "   10  1.0000          2.0",
+    ]
+    assert grid.lines([[10.0, 8.5], [1.0, 1.0], [2.0, 2.25]], heading=False) == [
+        "10.0000  1.0000          2.0",
+        " 8.5000  1.0000          2.2",
+    ]
