@@ -1,8 +1,9 @@
 """Unicode properties as whole-array look-ups: code point -> kind (one byte) -> whatever a rule asks.
 
 The table comes from ``unicode_classes.json`` (see ``make_classes``). Kinds are
-renumbered on loading so that those that can end a sentence come last and
-paragraph separators after them: one comparison finds either.
+renumbered on loading so that one comparison finds a group: first those that attach
+to the character before, last those that end a sentence, paragraph separators after
+all others.
 """
 
 from __future__ import annotations
@@ -37,8 +38,8 @@ _MID_CLASSES = {
     "MidNumLet": MID_LETTER | MID_NUMBER,
     "Single_Quote": MID_LETTER | MID_NUMBER,
 }
-_UNCOMMON_WORD = {"Extend", "Format", "ZWJ", "Hebrew_Letter", "Katakana"}
-_UNCOMMON_SENTENCE = {"Extend", "Format"}
+_ATTACHED = {"Extend", "Format", "ZWJ"}
+_UNCOMMON = {*_ATTACHED, "Hebrew_Letter", "Katakana"}
 _PARAGRAPH_ENDS = {"CR", "LF", "Sep"}
 _TERMINATORS = {"STerm", "ATerm"}
 
@@ -62,6 +63,8 @@ class Classes:
     spoken: Mask
     """General category L* or N*: what makes a segment a word."""
     word_flags: bytes
+    first_free: int
+    """Kinds before this one may attach to the character before (Extend, Format, ZWJ for words or sentences)."""
     first_terminator: int
     """Kinds from here on are STerm, ATerm or a paragraph separator."""
     first_paragraph_end: int
@@ -77,14 +80,14 @@ class Classes:
         return reduce(np.bitwise_or, (self.sentence[name] for name in names))
 
 
-def _flags(word: str, sentence: str, category: str) -> int:
+def _flags(word: str, category: str) -> int:
     spoken = category in ("L", "N")
     flags = _WORDISH_CLASSES.get(word, 0) | _MID_CLASSES.get(word, 0)
     if flags & WORDISH and not spoken:
         flags |= BARE
     if spoken and not flags & WORDISH:
         flags |= SOLO
-    if word in _UNCOMMON_WORD or sentence in _UNCOMMON_SENTENCE:
+    if word in _UNCOMMON:
         flags |= UNCOMMON
     return flags
 
@@ -95,7 +98,9 @@ def classes() -> Classes:
     table = json.loads(files("colloc.tokens").joinpath("unicode_classes.json").read_text(encoding="utf-8"))
 
     def rank(kind: list[str]) -> int:
-        return 2 if kind[1] in _PARAGRAPH_ENDS else 1 if kind[1] in _TERMINATORS else 0
+        if kind[0] in _ATTACHED or kind[1] in _ATTACHED:
+            return 0
+        return 3 if kind[1] in _PARAGRAPH_ENDS else 2 if kind[1] in _TERMINATORS else 1
 
     order = sorted(range(len(table["kinds"])), key=lambda number: rank(table["kinds"][number]))
     kinds = [table["kinds"][number] for number in order]
@@ -119,9 +124,10 @@ def classes() -> Classes:
         pictographic=which(2, True),
         letter=which(3, "L"),
         spoken=which(3, "L") | which(3, "N"),
-        word_flags=bytes(_flags(kind[0], kind[1], kind[3]) for kind in kinds).ljust(256, b"\0"),
-        first_terminator=ranks.index(1),
-        first_paragraph_end=ranks.index(2),
+        word_flags=bytes(_flags(kind[0], kind[3]) for kind in kinds).ljust(256, b"\0"),
+        first_free=ranks.index(1),
+        first_terminator=ranks.index(2),
+        first_paragraph_end=ranks.index(3),
         space_kind=int(kind_of[0x20]),
     )
 

@@ -10,6 +10,7 @@ before, and long tokens, become Python strings.
 from __future__ import annotations
 
 import unicodedata
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Final
 
@@ -17,11 +18,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colloc.records import Int64Array, Segments, UInt32Array, UInt64Array
+from colloc.tokens.arrays import distinct
 from colloc.tokens.classes import Points, code_points
 from colloc.tokens.keytable import ABSENT, KeyTable
 
 _CODED_WORD: Final = 8
 _PLAIN_WORD: Final = 3
+_PART: Final = 1 << 15
 _MASKS: Final = np.array([(1 << (8 * n)) - 1 for n in range(_CODED_WORD + 1)], np.uint64)
 _BYTES_A_STRING: Final = 120
 """A short string, its number and its share of the dict, roughly."""
@@ -110,20 +113,22 @@ class TypeNumberer:
         uncoded = _tokens_with_zeros(coded[: len(points)], starts, segments.ends)
         # A view at every byte: the word that begins at a token's start is one element.
         words = np.ndarray((len(coded) - _CODED_WORD + 1,), "<u8", coded, strides=(1,))
-        is_coded = np.ones(len(starts), np.bool_)
-        is_coded[uncoded] = False
-        short = np.flatnonzero(is_coded & (lengths <= _CODED_WORD))
-        long = np.flatnonzero(is_coded & (lengths > _CODED_WORD) & (lengths <= 2 * _CODED_WORD))
-        plain, plain_keys = _plain_keys(points, starts, lengths, uncoded)
+        is_short = lengths <= _CODED_WORD
+        is_long = (lengths > _CODED_WORD) & (lengths <= 2 * _CODED_WORD)
+        is_short[uncoded] = is_long[uncoded] = False
+
+        def short_keys(tokens: Int64Array) -> list[UInt64Array]:
+            return [words[starts[tokens]] & _MASKS[lengths[tokens]]]
+
+        def long_keys(tokens: Int64Array) -> list[UInt64Array]:
+            second = words[starts[tokens] + _CODED_WORD] & _MASKS[lengths[tokens] - _CODED_WORD]
+            return [words[starts[tokens]], second]
+
+        plain = _plain_tokens(points, starts, lengths, uncoded)
         unknown = [
-            _look_up(self._short, short, [words[starts[short]] & _MASKS[lengths[short]]], numbers),
-            _look_up(
-                self._long,
-                long,
-                [words[starts[long]], words[starts[long] + _CODED_WORD] & _MASKS[lengths[long] - _CODED_WORD]],
-                numbers,
-            ),
-            _look_up(self._plain, plain, plain_keys, numbers),
+            _look_up(self._short, np.flatnonzero(is_short), short_keys, numbers),
+            _look_up(self._long, np.flatnonzero(is_long), long_keys, numbers),
+            _look_up(self._plain, plain, lambda tokens: _plain_keys(points, starts, lengths, tokens), numbers),
         ]
         self._number_new(segments, numbers, unknown)
         self._measure()
@@ -159,39 +164,42 @@ class TypeNumberer:
         self.nbytes = tables + _BYTES_A_STRING * len(self._numbers)
 
 
-def _tokens_with_zeros(coded: NDArray[np.uint8], starts: Int64Array, ends: Int64Array) -> Int64Array:
+def _tokens_with_zeros(codes: Points, starts: Int64Array, ends: Int64Array) -> Int64Array:
     """Tokens that hold a character without a code, ascending."""
-    zeros = np.flatnonzero(coded == 0)
+    zeros = np.flatnonzero(codes == 0)
     tokens = np.searchsorted(starts, zeros, "right") - 1
     inside = (tokens >= 0) & (zeros < ends[np.maximum(tokens, 0)])
-    return np.unique(tokens[inside])
+    return distinct(tokens[inside])
 
 
-def _plain_keys(
-    points: Points, starts: Int64Array, lengths: Int64Array, tokens: Int64Array
-) -> tuple[Int64Array, list[UInt64Array]]:
-    """Those of `tokens` that fit into two words of three code points, and their keys."""
-    tokens = tokens[lengths[tokens] <= 2 * _PLAIN_WORD]
+def _plain_tokens(points: Points, starts: Int64Array, lengths: Int64Array, tokens: Int64Array) -> Int64Array:
+    """Those of `tokens` that two words of three code points can spell; U+0000 would pass for padding."""
+    fitting = tokens[lengths[tokens] <= 2 * _PLAIN_WORD]
+    return np.setdiff1d(fitting, _tokens_with_zeros(points, starts, starts + lengths), assume_unique=True)
+
+
+def _plain_keys(points: Points, starts: Int64Array, lengths: Int64Array, tokens: Int64Array) -> list[UInt64Array]:
     keys = [np.zeros(len(tokens), np.uint64), np.zeros(len(tokens), np.uint64)]
-    spelled = np.ones(len(tokens), np.bool_)
     for offset in range(2 * _PLAIN_WORD):
-        inside = offset < lengths[tokens]
         found = points[np.minimum(starts[tokens] + offset, len(points) - 1)].astype(np.uint64)
-        found[~inside] = 0
-        spelled &= (found != 0) | ~inside  # U+0000 could not be told from the padding
+        found[offset >= lengths[tokens]] = 0
         keys[offset // _PLAIN_WORD] |= found << np.uint64(21 * (offset % _PLAIN_WORD))
-    return tokens[spelled], [key[spelled] for key in keys]
+    return keys
 
 
-def _look_up(table: KeyTable, tokens: Int64Array, keys: list[UInt64Array], numbers: UInt32Array) -> _Unknown:
+def _look_up(
+    table: KeyTable, tokens: Int64Array, keys_of: Callable[[Int64Array], list[UInt64Array]], numbers: UInt32Array
+) -> _Unknown:
     """Write the numbers of the keys that the table knows; tell the others."""
-    found = table.find(keys)
-    numbers[tokens] = found
-    absent = np.flatnonzero(found == ABSENT)
-    tokens, keys = tokens[absent], [key[absent] for key in keys]
+    # In parts that stay in the processor's cache.
+    for first in range(0, len(tokens), _PART):
+        part = tokens[first : first + _PART]
+        numbers[part] = table.find(keys_of(part))
+    tokens = tokens[numbers[tokens] == ABSENT]
+    keys = keys_of(tokens)
     combined = keys[0]
     if len(keys) == 2:
         ranks = [np.unique(key, return_inverse=True)[1] for key in keys]
-        combined = (ranks[0] * len(absent) + ranks[1]).astype(np.uint64)
-    _, first, inverse = np.unique(combined, return_index=True, return_inverse=True)
-    return _Unknown(table, [key[first] for key in keys], tokens[first], tokens, inverse)
+        combined = (ranks[0] * len(tokens) + ranks[1]).astype(np.uint64)
+    _, first_places, inverse = np.unique(combined, return_index=True, return_inverse=True)
+    return _Unknown(table, [key[first_places] for key in keys], tokens[first_places], tokens, inverse)

@@ -7,10 +7,11 @@ import numpy as np
 from colloc.records import Int64Array, Segments
 from colloc.settings import SegmentSettings
 from colloc.tokens.addresses import find_addresses
+from colloc.tokens.arrays import any_within, distinct
 from colloc.tokens.classes import Kinds, Points, classes, code_points, kinds_of
 from colloc.tokens.patterns import compiled, pattern_tokens
 from colloc.tokens.sentences import sentence_breaks
-from colloc.tokens.words import any_within, word_tokens
+from colloc.tokens.words import word_tokens
 
 _HYPHENS = (0x2D, 0x2010, 0x2011)
 _Spans = tuple[Int64Array, Int64Array]
@@ -164,4 +165,4 @@ def _first_tokens(starts: Int64Array, breaks: Int64Array, opening: bool) -> Int6
     found = np.searchsorted(starts, breaks)
     if opening:
         found = np.concatenate((np.zeros(1, np.int64), found))
-    return np.unique(found[found < len(starts)])
+    return distinct(found[: np.searchsorted(found, len(starts))])

@@ -13,6 +13,7 @@ import numpy as np
 
 from colloc.records import Int64Array
 from colloc.tokens.abbreviations import after_abbreviation
+from colloc.tokens.arrays import distinct
 from colloc.tokens.classes import Kinds, Mask, Points, classes, code_points, kinds_of
 from colloc.tokens.words import absorbed
 
@@ -133,15 +134,15 @@ def sentence_breaks(
         returns = feeds[tables.sentence["CR"][kinds[feeds - 1]]] - 1
         kinds = kinds.copy()
         kinds[spaces] = kinds[returns] = tables.space_kind
-    attached = tables.sentences("Extend", "Format")
     places: Int64Array | None = None
-    if attached[kinds].any():
+    if kinds.min() < tables.first_free:
+        attached = tables.sentences("Extend", "Format")
         places = np.flatnonzero(~absorbed(kinds, attached, tables.sentences("CR", "LF", "Sep")))
         kinds = kinds[places]
     sentences = _terminated(kinds, points, places, abbreviations)
     if places is not None:
         sentences = np.append(places, len(points))[sentences]
-    sentences = np.unique(np.concatenate((sentences, paragraphs)))
+    sentences = distinct(np.sort(np.concatenate((sentences, paragraphs))))
     return Breaks(sentences, paragraphs)
 
 

@@ -14,6 +14,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from colloc.records import Int64Array
+from colloc.tokens.arrays import any_within
 from colloc.tokens.classes import (
     BARE,
     LETTER,
@@ -30,17 +31,6 @@ from colloc.tokens.classes import (
     kinds_of,
     translated,
 )
-
-
-def any_within(flags: Mask, starts: Int64Array, ends: Int64Array) -> Mask:
-    """Whether a flag is set within each of the disjoint, ascending, non-empty spans."""
-    if not len(starts):
-        return np.zeros(0, np.bool_)
-    bounds = np.empty(2 * len(starts), np.int64)
-    bounds[0::2], bounds[1::2] = starts, ends
-    if ends[-1] == len(flags):
-        bounds = bounds[:-1]
-    return np.logical_or.reduceat(flags, bounds)[::2]
 
 
 @dataclass

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 from functools import cache
+from itertools import pairwise
 
 import regex
 
@@ -16,10 +17,13 @@ WORD_BREAK = [
     *["Single_Quote", "Double_Quote", "MidNumLet", "MidLetter", "MidNum", "Numeric", "ExtendNumLet", "WSegSpace"],
 ]
 # One letter for each Sentence_Break value, so that the rules can be written as patterns of letters.
-SENTENCE_BREAK = {
-    **{"CR": "r", "LF": "n", "Sep": "p", "Extend": "x", "Format": "f", "Sp": "_", "Lower": "l", "Upper": "U"},
-    **{"OLetter": "O", "Numeric": "N", "ATerm": "A", "SContinue": ",", "STerm": "S", "Close": ")"},
-}
+SENTENCE_BREAK = dict(
+    zip(
+        "CR LF Sep Extend Format Sp Lower Upper OLetter Numeric ATerm SContinue STerm Close".split(),  # noqa: SIM905
+        "rnpxf_lUONA,S)",
+        strict=True,
+    )
+)
 NEWLINES = ("CR", "LF", "Newline")
 ATTACHED = ("Extend", "Format", "ZWJ")
 
@@ -136,7 +140,7 @@ def words(text: str, hyphens: bool = False) -> list[tuple[int, int]]:
         for left, middle, right in zip(kept, kept[1:], kept[2:], strict=False):
             if text[middle] in "-\u2010\u2011" and regex.match(r"[\p{L}\p{N}]{2}", text[left] + text[right]):
                 bounds = [bound for bound in bounds if bound not in (middle, right)]
-    spans = zip(bounds, bounds[1:], strict=False)
+    spans = pairwise(bounds)
     return [(start, end) for start, end in spans if regex.search(r"[\p{L}\p{N}]", text[start:end])]
 
 

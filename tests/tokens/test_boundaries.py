@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from itertools import pairwise
 from pathlib import Path
 
 import numpy as np
@@ -89,7 +90,7 @@ def test_agrees_with_another_library(text: str) -> None:
     assert np.cumsum([0, *map(len, words)]).tolist() == word_boundaries(text).tolist()
     # The crate's sentence iterator leaves out sentences without a letter or digit; those that it gives must be ours.
     bounds = sentence_boundaries(text).tolist()
-    ours = [text[start:end] for start, end in zip(bounds, bounds[1:], strict=False)]
+    ours = [text[start:end] for start, end in pairwise(bounds)]
     spoken = [sentence for sentence in ours if regex.search(r"[\p{Alphabetic}\p{N}]", sentence)]
     assert unicode_segmentation_rs.unicode_sentences(text) == spoken
 

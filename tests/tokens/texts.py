@@ -14,7 +14,8 @@ from tests.tokens import slow_rules
 # At least one character of each pair of Word_Break and Sentence_Break values, of each
 # general category that matters, inside and outside of Latin-1 and of the basic plane.
 CHARACTERS = (
-    "aZ0 \t\n\r\v\x0b\x0c\x85\u2028\u2029\u3000.?!,;:'\"()-_@/&\u00a0\u00ad\u00b2\u00df\u00e9\u00aa\u00b7\u2018\u2019\u201c"
+    "aZ0 \t\n\r\v\x0b\x0c\x85\u2028\u2029\u3000.?!,;:'\"()-_@/&\u00a0\u00ad\u00b2\u00df\u00e9\u00aa\u00b7"
+    "\u2018\u2019\u201c"
     "\u2010\u2011\u2013\u2014\u2024\u2026\u203f\u202f\u200b\u200c\u200d\u200e\u0300\u0308\u0903\u0345\u02c2\u02d7\u037e\u0589"
     "\u05d0\u05d1\u05f3\u05f4\u0600\u0623\u0660\u066b\u066c\u070f\u0e01\u0e31\u1100\uac00\u3042\u30a2\u30a3\u30fc\uff9e\uff9f"
     "\uff71\u3031\u4e00\u3007\u3002\uff0c\uff0e\uff0d\ufe13\ufe14\ufeff\u2060\u2139\u24c2\u24d0\u2160\u2170\u2180\u2701\u2764"
@@ -60,31 +61,9 @@ plain = st.text(st.sampled_from(ASCII), max_size=40)
 prose = st.lists(st.sampled_from(WORDS), max_size=14).map("".join)
 mixed = st.lists(st.one_of(any_class, plain, prose), max_size=4).map("".join)
 
-# Article 1 of the Universal Declaration of Human Rights (United Nations, public domain), some of it twice
-# with typographic variety of our own.
-DECLARATION = {
-    "en": "All human beings are born free and equal in dignity and rights. They are endowed with reason and conscience "
-    "and should act towards one another in a spirit of brotherhood. It's 3,141.59 m\u00b2 \u2014 \u201cnot\u201d 2? No! (Yes.) So.",
-    "de": "Alle Menschen sind frei und gleich an Würde und Rechten geboren. Sie sind mit Vernunft und Gewissen begabt "
-    "und sollen einander im Geiste der Brüderlichkeit begegnen.",
-    "fr": "Tous les êtres humains naissent libres et égaux en dignité et en droits. Ils sont doués de raison et de "
-    "conscience et doivent agir les uns envers les autres dans un esprit de fraternité. L'homme aujourd\u2019hui\u00a0!",
-    "es": "Todos los seres humanos nacen libres e iguales en dignidad y derechos y, dotados como están de razón y "
-    "conciencia, deben comportarse fraternalmente los unos con los otros. ¿Sí? ¡Sí!",
-    "ru": "Все люди рождаются свободными и равными в своем достоинстве и правах. Они наделены разумом и совестью и "
-    "должны поступать в отношении друг друга в духе братства.",
-    "el": "Όλοι οι άνθρωποι γεννιούνται ελεύθεροι και ίσοι στην αξιοπρέπεια και τα δικαιώματα. Είναι προικισμένοι με "
-    "λογική και συνείδηση, και οφείλουν να συμπεριφέρονται μεταξύ τους με πνεύμα αδελφοσύνης.",
-    "he": "כל בני האדם נולדו בני חורין ושווים בערכם ובזכויותיהם. כולם חוננו בתבונה ובמצפון, לפיכך חובה עליהם לנהוג "
-    "איש ברעהו ברוח של אחווה. צה\"ל ג'ירפה",
-    "ar": "يولد جميع الناس أحرارا متساوين في الكرامة والحقوق. وقد وهبوا عقلا وضميرا وعليهم أن يعامل بعضهم بعضا بروح الإخاء.",
-    "hi": "सभी मनुष्यों को गौरव और अधिकारों के मामले में जन्मजात स्वतन्त्रता और समानता प्राप्त है। उन्हें बुद्धि और अन्तरात्मा की देन प्राप्त है।",
-    "th": "มนุษย์ทั้งหลายเกิดมามีอิสระและเสมอภาคกันในเกียรติศักดิ์และสิทธิ",
-    "ja": "すべての人間は、生まれながらにして自由であり、かつ、尊厳と権利とについて平等である。人間は、理性と良心とを授けられている。カタカナ。",
-    "zh": "人人生而自由,在尊严和权利上一律平等。他们赋有理性和良心,并应以兄弟关系的精神相对待。",
-    "ko": "모든 인간은 태어날 때부터 자유로우며 그 존엄과 권리에 있어 동등하다. 인간은 천부적으로 이성과 양심을 부여받았다.",
-    "emoji": "Family: \U0001f468\u200d\U0001f469\u200d\U0001f467 flags \U0001f1e9\U0001f1ea\U0001f1eb\U0001f1f7. Hearts \u2764\ufe0f!",
-}
+# Article 1 of the Universal Declaration of Human Rights in thirteen languages (United Nations, public
+# domain), with additions of our own: quotation marks, numbers, emoji.
+DECLARATION: dict[str, str] = json.loads(Path(__file__).with_name("declaration.json").read_text(encoding="utf-8"))
 
 
 def real_texts() -> list[str]:
