@@ -91,6 +91,9 @@ def build(
         if facts.get(store, "state") == "complete":
             return _report(store, NOTHING_READ, began, already_complete=True)
         done = fill(store, inputs, limits, progress, read or ReadSettings())
+        with store.transaction():
+            facts.put(store, "state", "complete")
+        store.make_durable()
         return _report(store, done, began)
 
 
