@@ -120,11 +120,16 @@ def settings_line(command: str, settings: Mapping[str, Any]) -> str:
     '# pairs: layer fold; window 5; min count 5'
     """
     shown = dict(settings)
-    if shown.get("kind") == "window":
-        # A window tally is stored as followers; what the user chose is one number for both sides.
-        shown = {("window" if key == "kind" else key): value for key, value in shown.items()}
-        shown["window"] = shown.pop("right")
-        del shown["left"]
+    if shown.get("kind") in ("window", "unit", "relation"):
+        # Stored tables of these kinds have one reach or none; what the user chose has the name of the kind.
+        kind = shown["kind"]
+        reach, _ = shown.pop("right"), shown.pop("left")
+        shown["kind"] = reach if kind == "window" else shown.pop(kind, "") or True
+        shown = {kind if key == "kind" else key: value for key, value in shown.items()}
+    else:
+        shown.pop("kind", None)
+    if not shown.pop("spanned", True):
+        shown["no_span"] = True
     phrases = [_phrase(key.replace("_", " "), value) for key, value in shown.items()]
     return f"# {command}: " + "; ".join(phrase for phrase in phrases if phrase)
 

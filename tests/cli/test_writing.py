@@ -154,22 +154,47 @@ def test_files_are_whole_or_not_there(tmp_path: Path, file_format: str, capsys: 
     assert sorted(path.name for path in tmp_path.iterdir()) == ["out", "out.settings.json"]
 
 
-def test_settings_line_uses_the_words_of_the_options() -> None:
-    settings = {
-        "store": "x",
-        "kind": "window",
-        "left": 0,
-        "right": 5,
-        "where": "",
-        "directed": True,
-        "spanned": False,
-        "measure": "npmi",
-        "words": ["a", "b"],
-        "min_word_count": 1,
-    }
-    assert settings_line("around", settings) == (
-        "# around: store x; window 5; directed; measure npmi; words a, b; min word count 1"
-    )
+PAIR_SETTINGS = {
+    "store": "x",
+    "layer": "fold",
+    "kind": "window",
+    "left": 0,
+    "right": 5,
+    "inside": "sentence",
+    "where": "",
+    "relation": "",
+    "margins": "pairs",
+    "directed": False,
+    "spanned": True,
+    "min_word_count": 1,
+}
+
+
+@pytest.mark.parametrize(
+    ("changes", "line"),
+    [
+        ({}, "store x; layer fold; window 5; inside sentence; margins pairs; min word count 1"),
+        (
+            {"kind": "span", "left": 1, "right": 0, "directed": True},
+            "store x; layer fold; left 1; right 0; inside sentence; margins pairs; directed; min word count 1",
+        ),
+        ({"kind": "unit", "right": 0}, "store x; layer fold; unit; inside sentence; margins pairs; min word count 1"),
+        (
+            {"kind": "relation", "relation": "obj"},
+            "store x; layer fold; relation obj; inside sentence; margins pairs; min word count 1",
+        ),
+        (
+            {"kind": "relation"},
+            "store x; layer fold; relation; inside sentence; margins pairs; min word count 1",
+        ),
+        (
+            {"margins": "tokens", "spanned": False, "words": ["a", "b"]},
+            "store x; layer fold; window 5; inside sentence; margins tokens; min word count 1; words a, b; no span",
+        ),
+    ],
+)
+def test_settings_line_uses_the_words_of_the_options(changes: dict[str, Any], line: str) -> None:
+    assert settings_line("pairs", {**PAIR_SETTINGS, **changes}) == f"# pairs: {line}"
 
 
 class Screen(io.StringIO):
