@@ -7,6 +7,7 @@ through a pipe. Results come back in the order of the batches.
 
 from __future__ import annotations
 
+import json
 import multiprocessing
 from collections import deque
 from collections.abc import Iterable, Iterator
@@ -229,6 +230,8 @@ class _Pool:
                 raise answer
             number, path, lengths, facts = answer
             arrays = _read_arrays(path, lengths)
+            facts["new_types"] = json.loads(arrays.pop("types").tobytes())
+            facts["texts"] = _divided(arrays.pop("texts"), facts.pop("text_sizes"))
             self._given[worker].remove(number)
             done[number] = _segmented(waiting.pop(number), worker, arrays, facts)
 
@@ -272,9 +275,28 @@ def _serve(
                 pipe.send(error)
                 return
             path = folder / f"segments-{number}-{ordinal}"
+            arrays["types"] = _as_bytes(json.dumps(facts.pop("new_types")).encode())
+            texts = facts.pop("texts")
+            arrays["texts"] = _as_bytes(b"".join(data for _, _, data in texts))
+            facts["text_sizes"] = [(start, length, len(data)) for start, length, data in texts]
+            # What goes through the pipe stays small: were both ends to wait for room in it, neither would go on.
             pipe.send((ordinal, path, _write_arrays(path, arrays), facts))
     except (EOFError, KeyboardInterrupt, BrokenPipeError):
         return
+
+
+def _as_bytes(data: bytes) -> NDArray[Any]:
+    return np.frombuffer(data, dtype=np.uint8)
+
+
+def _divided(data: NDArray[Any], sizes: list[tuple[int, int, int]]) -> PackedText:
+    """The packed blocks of text out of one array."""
+    blocks = []
+    end = 0
+    for start, length, size in sizes:
+        blocks.append((start, length, data[end : end + size].tobytes()))
+        end += size
+    return blocks
 
 
 def _write_arrays(path: Path, arrays: Arrays) -> list[tuple[str, str, int]]:
