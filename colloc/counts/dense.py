@@ -24,7 +24,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.counts.keys import Run, pack
+from colloc.counts.keys import Run, pack_ordered, sorted_run
 from colloc.records import Int64Array
 
 Int32Array = NDArray[np.int32]
@@ -110,17 +110,18 @@ def _size(limits: Int64Array) -> int:
 
 def run_of_cells(plan: DensePlan, cells: Int64Array) -> Run:
     """The counts of the table ``cells`` (shape (n_cells,)) as a run."""
-    filled = np.flatnonzero(cells)
-    rows = np.searchsorted(plan.row_starts, filled, side="right") - 1
-    within = filled - plan.row_starts[np.maximum(rows, 0)]
-    higher = np.maximum(rows, 0) + (within >> 1)
-    # spare cells: the invalid pairs (before row 0), the end of each row, and the row of all others
-    ends = plan.row_starts[1:] - 1
-    real = (rows >= 0) & (rows < len(ends))
-    real[real] &= filled[real] != ends[rows[real]]
-    filled, rows, within, higher = filled[real], rows[real], within[real], higher[real]
-    lower_terms, higher_terms = plan.terms[rows], plan.terms[higher]
-    swapped = (within & 1).astype(np.bool_)
-    keys = pack(np.where(swapped, higher_terms, lower_terms), np.where(swapped, lower_terms, higher_terms))
-    order = np.argsort(keys)
-    return Run(keys[order], cells[filled][order])
+    used = cells != 0
+    # spare cells count nothing: the invalid pairs (before row 0), the end of each row, and the row of all others
+    used[0] = used[-1] = False
+    used[plan.row_starts[1:] - 1] = False
+    filled = np.flatnonzero(used)
+    edges = np.searchsorted(filled, plan.row_starts)
+    lengths = np.diff(edges)
+    within = filled - np.repeat(plan.row_starts[:-1], lengths)
+    rows = np.arange(len(lengths))
+    lower_terms = np.repeat(plan.terms[rows], lengths)
+    higher_terms = plan.terms[np.repeat(rows, lengths) + (within >> 1)]
+    # odd cells stand for [h, l]
+    swapped = ((within & 1) == 1) ^ (lower_terms > higher_terms)
+    keys = pack_ordered(np.minimum(lower_terms, higher_terms), np.maximum(lower_terms, higher_terms), swapped)
+    return sorted_run(keys, cells[filled])

@@ -63,7 +63,15 @@ def unit_starts(block: Block, inside: Inside) -> Int64Array:
     parts = [block.sentences if inside == "sentence" else block.paragraphs, block.document_starts]
     if inside == "sentence" and not block.continues:
         parts.append(np.zeros(1, np.int64))
-    return np.unique(np.concatenate(parts))
+    return _union(*parts)
+
+
+def _union(*sorted_places: Int64Array) -> Int64Array:
+    """Ascending places together, each once; numpy's stable sort merges them, its ``unique`` would hash them."""
+    places: Int64Array = np.sort(np.concatenate(sorted_places), kind="stable")
+    if len(places) > 1:
+        places = places[np.concatenate([[True], places[1:] != places[:-1]])]
+    return places
 
 
 def read_stretches(
@@ -107,7 +115,7 @@ def _stretch(block: Block, layer: UInt32Array, selection: Selection, ranges: sli
     chosen = range_of >= 0
     chosen[chosen] &= starts[chosen] < stops[range_of[chosen]]
     starts, range_of = starts[chosen], range_of[chosen]
-    units = np.union1d(starts - begins[range_of] + places[range_of], places[places >= first])
+    units = _union(starts - begins[range_of] + places[range_of], places[places >= first])
     return Stretch(first, apply_layer(layer, types[0] if len(types) == 1 else np.concatenate(types)), units)
 
 
