@@ -88,7 +88,14 @@ class TypeRegistry:
         """Type numbers of ``keys``, in their order: uint32 array, shape (len(keys),).
 
         A key is a form, or (form, lemma, upos); ``(form, "", "")`` is the same as the form.
+        DataError where a word holds half a surrogate pair.
         """
+        try:
+            return self._numbers(keys)
+        except UnicodeEncodeError as error:
+            raise DataError(f"a word holds half a surrogate pair, which is no character: {error.object!a}") from error
+
+    def _numbers(self, keys: Sequence[TypeKey]) -> UInt32Array:
         annotated = {*map(type, keys)} - {str}
         if annotated:
             keys = [key[0] if isinstance(key, tuple) and not key[1] and not key[2] else key for key in keys]
@@ -113,12 +120,7 @@ class TypeRegistry:
             columns = as_columns([key if isinstance(key, tuple) else (key, "", "") for key in keys])
         else:
             columns = cast(list[str], keys), [""] * len(keys), [""] * len(keys)
-        try:
-            self._store.execute_many(
-                "INSERT INTO types VALUES (?, ?, ?, ?)", zip(range(first, stop), *columns, strict=True)
-            )
-        except UnicodeEncodeError as error:
-            raise DataError(f"a word holds half a surrogate pair, which is no character: {error.object!a}") from error
+        self._store.insert_columns("types", [range(first, stop), *columns])
         self._count = stop
         for writer in self._writers(annotated):
             writer.extend(columns)

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import functools
+import tempfile
+import uuid
 from collections import Counter
 from pathlib import Path
 
@@ -10,7 +13,7 @@ import numpy as np
 from colloc.records import Anchors, DocumentRow, PairBlock, SourceInfo
 from colloc.settings import TallySpec
 from colloc.store import documents, sources, stream, tallies, texts, visibility, vocabulary
-from colloc.store.opening import Store, create
+from colloc.store.opening import Store, create, open_for_writing
 from colloc.store.pages import ORDERS, Order, encode_page, head_of
 from colloc.store.tallies import TallyWriter
 
@@ -85,9 +88,24 @@ def margins_of(cells: Cells) -> tuple[Counter[int], Counter[int]]:
     return first, second
 
 
-def store_of_terms(path: Path, terms: int) -> Store:
+@functools.cache
+def _empty_file() -> bytes:
+    with tempfile.TemporaryDirectory() as folder:
+        path = Path(folder) / "empty"
+        create(path, {}).close()
+        return path.read_bytes()
+
+
+def empty_store(folder: Path) -> Store:
+    """A new store open for writing; copied, since laying one out takes a tenth of a second."""
+    path = folder / f"{uuid.uuid4().hex}.colloc"
+    path.write_bytes(_empty_file())
+    return open_for_writing(path, "test")
+
+
+def store_of_terms(folder: Path, terms: int) -> Store:
     """A store whose layer ``form`` has so many terms, and nothing else."""
-    store = create(path, {})
+    store = empty_store(folder)
     with store.transaction():
         vocabulary.TypeRegistry(store).number([f"w{number}" for number in range(terms)])
     return store

@@ -37,8 +37,7 @@ class TallyAgainstDictionary(RuleBasedStateMachine):
 
     @initialize(cells=CELLS, pages=st.integers(1, 9))
     def begin(self, cells: Cells, pages: int) -> None:
-        path = self.folder / f"{len(list(self.folder.iterdir()))}.colloc"
-        self.store = store_of_terms(path, TERMS)
+        self.store = store_of_terms(self.folder, TERMS)
         self.model: Counter[tuple[int, int]] = Counter(cells)
         self.pages = pages
         write_tally(self.store, SPEC, cells, pairs_a_page=pages)
@@ -129,7 +128,7 @@ def test_pages_of_the_real_size(tmp_path: Path) -> None:
     generator = random.Random(3)
     pairs = {(generator.randrange(900), generator.randrange(900)) for _ in range(75_000)}
     cells = {pair: generator.choice([1, 1, 1, 2, 700]) for pair in pairs}
-    store = store_of_terms(tmp_path / "a.colloc", 900)
+    store = store_of_terms(tmp_path, 900)
     write_tally(store, SPEC, cells, pairs_a_page=65_536)
     assert store.value("SELECT count(*) FROM tally_pages") == 4
     write_tally(store, SPEC, {pair: -cells[pair] for pair in list(cells)[:50]}, delta=True)
@@ -144,7 +143,7 @@ def test_pages_of_the_real_size(tmp_path: Path) -> None:
 
 
 def test_only_the_pages_needed_are_read(tmp_path: Path) -> None:
-    store = store_of_terms(tmp_path / "a.colloc", 100)
+    store = store_of_terms(tmp_path, 100)
     write_tally(store, SPEC, {(x, y): 1 for x in range(100) for y in range(x, 100, 9)}, pairs_a_page=20)
     pages = store.value("SELECT count(*) FROM tally_pages")
     tally = tallies.find(store, SPEC)
@@ -159,7 +158,7 @@ def test_only_the_pages_needed_are_read(tmp_path: Path) -> None:
 
 
 def test_a_failed_write_leaves_the_old_table(tmp_path: Path) -> None:
-    store = store_of_terms(tmp_path / "a.colloc", 5)
+    store = store_of_terms(tmp_path, 5)
     write_tally(store, SPEC, {(0, 1): 2})
     with contextlib.suppress(KeyboardInterrupt), store.transaction():
         writer = tallies.TallyWriter(store, SPEC)
@@ -172,7 +171,7 @@ def test_a_failed_write_leaves_the_old_table(tmp_path: Path) -> None:
 
 
 def test_writing_again_takes_the_place_of_the_old_table(tmp_path: Path) -> None:
-    store = store_of_terms(tmp_path / "a.colloc", 5)
+    store = store_of_terms(tmp_path, 5)
     write_tally(store, SPEC, {(0, 1): 2})
     write_tally(store, SPEC, {(0, 2): 1}, delta=True)
     write_tally(store, SPEC, {(3, 4): 1})
@@ -183,7 +182,7 @@ def test_writing_again_takes_the_place_of_the_old_table(tmp_path: Path) -> None:
 
 
 def test_a_change_needs_a_table_and_orders_must_agree(tmp_path: Path) -> None:
-    store = store_of_terms(tmp_path / "a.colloc", 5)
+    store = store_of_terms(tmp_path, 5)
     with pytest.raises(UsageError, match="no such tally to change"):
         write_tally(store, SPEC, {(0, 1): 1}, delta=True)
     with pytest.raises(RuntimeError, match="inside a transaction"):
@@ -199,7 +198,7 @@ def test_a_change_needs_a_table_and_orders_must_agree(tmp_path: Path) -> None:
 
 
 def test_cache_limit_drops_the_least_recently_used(tmp_path: Path) -> None:
-    store = store_of_terms(tmp_path / "a.colloc", 5)
+    store = store_of_terms(tmp_path, 5)
     specs = [TallySpec(layer="form", right=right) for right in (1, 2, 3, 4)]
     for number, spec in enumerate(specs):
         write_tally(store, spec, {(0, 1): 1, (1, 2): 300}, kept=number == 0)
@@ -219,7 +218,7 @@ def test_cache_limit_drops_the_least_recently_used(tmp_path: Path) -> None:
 
 
 def test_using_a_tally_is_noted_only_by_writers(tmp_path: Path) -> None:
-    store = store_of_terms(tmp_path / "a.colloc", 5)
+    store = store_of_terms(tmp_path, 5)
     write_tally(store, SPEC, {(0, 1): 1})
     store.execute("UPDATE tallies SET last_used = 5")
     with open_for_reading(store.path) as reader:
@@ -231,7 +230,7 @@ def test_using_a_tally_is_noted_only_by_writers(tmp_path: Path) -> None:
 
 
 def test_terms_that_the_layer_does_not_have_are_damage(tmp_path: Path) -> None:
-    store = store_of_terms(tmp_path / "a.colloc", 5)
+    store = store_of_terms(tmp_path, 5)
     write_tally(store, SPEC, {(0, 7): 1})
     tally = tallies.find(store, SPEC)
     assert tally is not None

@@ -72,7 +72,7 @@ class WriterLock:
             return
 
     def release(self) -> None:
-        """Give the lock back and remove its file where nobody else has it open."""
+        """Give the lock back. The empty file stays: removing it could give two who wait for it the same right."""
         self._lock.release()
 
 
