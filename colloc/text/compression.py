@@ -102,7 +102,7 @@ class _Zstd:
             try:
                 unpacked = self._engine.decompress(data[start:stop])
             except self._error as error:
-                raise DamagedError(str(error)) from error
+                raise ValueError(str(error)) from error
             yield unpacked
             if self._engine.eof:
                 self.rest = self._engine.unused_data + data[stop:]

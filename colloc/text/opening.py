@@ -100,6 +100,7 @@ class Opened:
         self._consumed = 0
         self._size = -1
         self._exhausted = False
+        self._drained = False
         self._decoder: Decoder | None = None
         self._raw = self._read_raw()
 
@@ -126,7 +127,8 @@ class Opened:
         return DataError(f"{shown(self.name)}{'' if line is None else f':{line}'}: {message}")
 
     def drain(self) -> None:
-        """Read the raw bytes that are left, for the digest."""
+        """Read the raw bytes that are left, for the digest; what was to be read of the text is gone then."""
+        self._drained = True
         for _ in self._raw:
             pass
 
@@ -167,6 +169,16 @@ class Opened:
                 f"{packing.name} data {error}: get the file again, or unpack it yourself and read the result"
             ) from error
 
+    def _undrained(self, chunks: Iterator[bytes]) -> Iterator[bytes]:
+        """The same chunks; whoever asks too late gets an error, and not a shortened text."""
+        while True:
+            if self._drained:
+                raise RuntimeError(f"{shown(self.name)}: a document is to be read before the next is asked for")
+            chunk = next(chunks, None)
+            if chunk is None:
+                return
+            yield chunk
+
     def text(self) -> Iterator[str]:
         """The text in pieces of at most 1 Mi code points, cut anywhere. Can be gone through once.
 
@@ -175,7 +187,7 @@ class Opened:
         DataError
             For binary files and undecodable bytes, with the byte offset.
         """
-        head, chunks = _peek(self.chunks(), SAMPLE)
+        head, chunks = _peek(self._undrained(self.chunks()), SAMPLE)
         if packing_by_content(head):
             raise self.error("packed twice: unpack it once")
         kind = next((kind for magic, kind in _BINARY if head.startswith(magic)), None)
