@@ -59,7 +59,7 @@ class _Gzip:
 
     def feed(self, data: bytes) -> Iterator[bytes]:
         # What zlib holds back when its output is full comes with the next input; the checksum at the end is input too.
-        while data:
+        while data and not self._engine.eof:
             yield self._engine.decompress(data, STEP)
             data = self._engine.unconsumed_tail
 

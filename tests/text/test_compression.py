@@ -48,6 +48,16 @@ def test_members_follow_each_other(tmp_path: Path, extension: str) -> None:
     assert read_texts(path) == ["one two three"]
 
 
+@pytest.mark.parametrize("extension", PACKED)
+@pytest.mark.parametrize("beyond", [-1, 0, 1, 100_000])
+def test_members_larger_than_a_step_follow_each_other(tmp_path: Path, extension: str, beyond: int) -> None:
+    text = prose(6, compression.STEP)[: compression.STEP + beyond].encode()[: compression.STEP + beyond]
+    member = PACKERS[extension](text)
+    path = tmp_path / f"a.txt{extension}"
+    path.write_bytes(member * 3)
+    assert count_characters(path, ReadSettings(encoding="latin-1")) == 3 * len(text)
+
+
 def test_zero_bytes_after_a_member_are_padding(tmp_path: Path) -> None:
     # GNU gzip ignores them (tapes); the xz format, 2.2, has padding of 4 bytes each.
     for extension in (".gz", ".xz"):
