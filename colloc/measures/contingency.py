@@ -25,7 +25,7 @@ from colloc.errors import DataError, UsageError
 
 FloatArray = NDArray[np.float64]
 
-BLOCK_ROWS = 16384
+BLOCK_ROWS = 8192
 """Rows evaluated at a time: a handful of float64 columns of this length stays in the processor's cache."""
 
 
@@ -44,6 +44,13 @@ class Table:
         self.first_total = first_total
         self.second_total = second_total
         self.total = total
+        self._kept: dict[Rule, FloatArray] = {}
+
+    def once(self, rule: Rule) -> FloatArray:
+        """What the rule gives for this table, computed at most once; not to be changed in place."""
+        if rule not in self._kept:
+            self._kept[rule] = rule(self)
+        return self._kept[rule]
 
     @cached_property
     def margin_product(self) -> FloatArray:

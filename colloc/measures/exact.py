@@ -68,13 +68,13 @@ def fisher_log_p(
 @table_function
 def fisher_p(table: Table) -> FloatArray:
     """Two-sided p-value of Fisher's exact test; 0 below about 1e-308, where ``fisher_log10_p`` goes on."""
-    return np.exp(_log_p(table, "two-sided", mid=False))
+    return np.exp(table.once(_two_sided))
 
 
 @table_function
 def fisher_log10_p(table: Table) -> FloatArray:
     """log10 of ``fisher_p``, right where the p-value itself is too small for a float."""
-    return _log_p(table, "two-sided", mid=False) * LOG10_E
+    return table.once(_two_sided) * LOG10_E
 
 
 def association_log_p(
@@ -92,7 +92,7 @@ def association_log_p(
     """
 
     def rule(table: Table) -> FloatArray:
-        result = chi_square_log_p(2.0 * half_g2(table))
+        result = chi_square_log_p(2.0 * table.once(half_g2))
         small = table.expected < exact_below
         if small.any():
             columns = np.broadcast_arrays(table.joint, table.first_total, table.second_total, table.total)
@@ -100,6 +100,10 @@ def association_log_p(
         return result
 
     return evaluate([rule], joint, first_total, second_total, total)[0]
+
+
+def _two_sided(table: Table) -> FloatArray:
+    return _log_p(table, "two-sided", mid=False)
 
 
 def _log_p(table: Table, alternative: Alternative, mid: bool) -> FloatArray:

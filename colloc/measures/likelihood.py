@@ -43,37 +43,37 @@ def g2(table: Table) -> FloatArray:
     Its size is chi-square distributed with one degree of freedom where the words are independent. 0 ln 0 = 0; 0
     where a word is never or always there.
     """
-    return np.copysign(2.0 * half_g2(table), table.excess) + 0.0
+    return np.copysign(2.0 * table.once(half_g2), table.excess) + 0.0
 
 
 @table_function
 def chi2(table: Table) -> FloatArray:
     """Pearson's X2 = sum (O - E)^2 / E over the four cells, without continuity correction, with the sign of O - E."""
-    return np.copysign(x2(table), table.excess) + 0.0
+    return np.copysign(table.once(x2), table.excess) + 0.0
 
 
 @table_function
 def g2_p(table: Table) -> FloatArray:
     """Two-sided p-value of G2 by the chi-square distribution with one degree of freedom; 0 below about 1e-308."""
-    return _p(2.0 * half_g2(table))
+    return _p(2.0 * table.once(half_g2))
 
 
 @table_function
 def chi2_p(table: Table) -> FloatArray:
     """Two-sided p-value of X2 by the chi-square distribution with one degree of freedom; 0 below about 1e-308."""
-    return _p(x2(table))
+    return _p(table.once(x2))
 
 
 @table_function
 def g2_log10_p(table: Table) -> FloatArray:
     """log10 of ``g2_p``, exact where the p-value itself is too small for a float."""
-    return _log_p(2.0 * half_g2(table)) * LOG10_E
+    return _log_p(2.0 * table.once(half_g2)) * LOG10_E
 
 
 @table_function
 def chi2_log10_p(table: Table) -> FloatArray:
     """log10 of ``chi2_p``, exact where the p-value itself is too small for a float."""
-    return _log_p(x2(table)) * LOG10_E
+    return _log_p(table.once(x2)) * LOG10_E
 
 
 @table_function
