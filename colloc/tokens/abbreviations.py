@@ -71,6 +71,8 @@ def _spelled(points: Points, stops: Int64Array, words: int) -> tuple[list[UInt64
         found = points[np.maximum(stops - 1 - back, 0)].astype(np.uint64)
         going &= tables.spoken[tables.kind_of[found]] | (found == ord(".")) | (found == ord("-"))
         going &= stops > back
+        if not going.any():
+            break
         if back < words * _LETTERS_A_WORD:
             found[~going] = 0
             keys[back // _LETTERS_A_WORD] |= found << np.uint64(21 * (back % _LETTERS_A_WORD))
@@ -93,6 +95,8 @@ def after_abbreviation(points: Points, stops: Int64Array, numeric: Mask) -> Mask
     # Most words are ruled out by their last letters.
     key = _spelled(points, stops, 1)[0][0]
     likely = np.flatnonzero(endings[np.minimum(np.searchsorted(endings, key), len(endings) - 1)] == key)
+    if not len(likely):
+        return result
     keys, longer = _spelled(points, stops[likely], _WORDS)
     kinds = table.find(keys)
     result[likely] = ~longer & ((kinds == _ALWAYS) | ((kinds == _BEFORE_NUMBERS) & numeric[likely]))

@@ -16,9 +16,9 @@ import numpy as np
 
 from colloc.settings import SegmentSettings
 from colloc.tokens.classes import classes, code_points, kinds_of
+from colloc.tokens.patterns import LINE_ENDS
 from colloc.tokens.sentences import paragraph_ends
 
-_LINE_ENDS = "\n\r\x85\u2028\u2029"
 _FIRST_LOOK = 4096
 _SPACE = 0x20
 
@@ -33,10 +33,10 @@ def safe_cut(text: str, settings: SegmentSettings, at_least: int = 0) -> int:
     if _blank_lines(settings):
         hard = _widening(text, at_least, _last_blank_line)
     else:
-        hard = max(text.rfind(character, at_least) for character in _LINE_ENDS) + 1
+        hard = max(text.rfind(character, at_least) for character in LINE_ENDS) + 1
         # A line feed may follow and belong to this carriage return.
         if hard == len(text) and text.endswith("\r"):
-            hard = max(text.rfind(character, at_least, hard - 1) for character in _LINE_ENDS) + 1
+            hard = max(text.rfind(character, at_least, hard - 1) for character in LINE_ENDS) + 1
     if hard > at_least or settings.pattern is not None:
         return hard if hard > at_least else 0
     return _widening(text, at_least, lambda part: _last_soft_break(part, settings.max_token))
@@ -47,7 +47,7 @@ def is_hard_break(text: str, position: int, settings: SegmentSettings) -> bool:
 
     With ``line_ends="space"`` a blank line of more than a few thousand spaces is not recognised.
     """
-    if not 0 < position <= len(text) or text[position - 1] not in _LINE_ENDS:
+    if not 0 < position <= len(text) or text[position - 1] not in LINE_ENDS:
         return False
     if text[position - 1] == "\r" and text[position : position + 1] in ("", "\n"):
         return False

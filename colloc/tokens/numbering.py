@@ -125,12 +125,12 @@ class TypeNumberer:
             return [words[starts[tokens]], second]
 
         plain = _plain_tokens(points, starts, lengths, uncoded)
-        unknown = [
+        looked_up = [
             _look_up(self._short, np.flatnonzero(is_short), short_keys, numbers),
             _look_up(self._long, np.flatnonzero(is_long), long_keys, numbers),
             _look_up(self._plain, plain, lambda tokens: _plain_keys(points, starts, lengths, tokens), numbers),
         ]
-        self._number_new(segments, numbers, unknown)
+        self._number_new(segments, numbers, [unknown for unknown in looked_up if unknown is not None])
         self._measure()
         return numbers
 
@@ -141,23 +141,26 @@ class TypeNumberer:
             listed[part.tokens] = False
             listed[part.first] = True
         tokens = np.flatnonzero(listed)
+        if not len(tokens):
+            return
         spans = zip(segments.starts[tokens].tolist(), segments.ends[tokens].tolist(), strict=True)
-        numbers[tokens] = [self._type_number(segments.text[start:end]) for start, end in spans]
+        numbers[tokens] = self._type_numbers([segments.text[start:end] for start, end in spans])
         for part in unknown:
             values = numbers[part.first]
             part.table.add(part.keys, values)
             numbers[part.tokens] = values[part.inverse]
 
-    def _type_number(self, surface: str) -> int:
-        """The number of the type of a surface form; surfaces that are canonically equivalent share it."""
-        number = self._numbers.get(surface)
-        if number is None:
-            key = unicodedata.normalize("NFC", surface)
-            number = self._numbers.get(key)
-            if number is None:
-                number = self._numbers[key] = len(self._numbers)
+    def _type_numbers(self, surfaces: list[str]) -> list[int]:
+        """Numbers of the types of surface forms; those that are canonically equivalent share one."""
+        known, count, result = self._numbers, len(self._numbers), []
+        for surface in surfaces:
+            key = surface if surface.isascii() else unicodedata.normalize("NFC", surface)
+            number = known.setdefault(key, count)
+            if number == count:
+                count += 1
                 self._new.append(key)
-        return number
+            result.append(number)
+        return result
 
     def _measure(self) -> None:
         tables = self._short.nbytes + self._long.nbytes + self._plain.nbytes + self._alphabet.nbytes
@@ -167,6 +170,8 @@ class TypeNumberer:
 def _tokens_with_zeros(codes: Points, starts: Int64Array, ends: Int64Array) -> Int64Array:
     """Tokens that hold a character without a code, ascending."""
     zeros = np.flatnonzero(codes == 0)
+    if not len(zeros):
+        return zeros
     tokens = np.searchsorted(starts, zeros, "right") - 1
     inside = (tokens >= 0) & (zeros < ends[np.maximum(tokens, 0)])
     return distinct(tokens[inside])
@@ -175,6 +180,8 @@ def _tokens_with_zeros(codes: Points, starts: Int64Array, ends: Int64Array) -> I
 def _plain_tokens(points: Points, starts: Int64Array, lengths: Int64Array, tokens: Int64Array) -> Int64Array:
     """Those of `tokens` that two words of three code points can spell; U+0000 would pass for padding."""
     fitting = tokens[lengths[tokens] <= 2 * _PLAIN_WORD]
+    if not len(fitting):
+        return fitting
     return np.setdiff1d(fitting, _tokens_with_zeros(points, starts, starts + lengths), assume_unique=True)
 
 
@@ -189,13 +196,15 @@ def _plain_keys(points: Points, starts: Int64Array, lengths: Int64Array, tokens:
 
 def _look_up(
     table: KeyTable, tokens: Int64Array, keys_of: Callable[[Int64Array], list[UInt64Array]], numbers: UInt32Array
-) -> _Unknown:
-    """Write the numbers of the keys that the table knows; tell the others."""
+) -> _Unknown | None:
+    """Write the numbers of the keys that the table knows; tell the others, where there are any."""
     # In parts that stay in the processor's cache.
     for first in range(0, len(tokens), _PART):
         part = tokens[first : first + _PART]
         numbers[part] = table.find(keys_of(part))
     tokens = tokens[numbers[tokens] == ABSENT]
+    if not len(tokens):
+        return None
     keys = keys_of(tokens)
     combined = keys[0]
     if len(keys) == 2:

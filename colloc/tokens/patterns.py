@@ -14,6 +14,8 @@ from colloc.records import Int64Array
 if TYPE_CHECKING:
     import regex
 
+LINE_ENDS = "\n\r\x85\u2028\u2029"
+"""What ends a paragraph, or a line of one."""
 SECONDS = 10.0
 """Longest time that one stretch between paragraph ends may take."""
 
@@ -33,7 +35,10 @@ def compiled(pattern: str) -> regex.Pattern[str]:
 
 
 def pattern_tokens(text: str, pattern: str, paragraphs: Int64Array) -> tuple[Int64Array, Int64Array]:
-    """Matches in each paragraph of `text`, which the pattern sees by itself: no token crosses a paragraph end.
+    """Matches in each paragraph of `text`.
+
+    The pattern sees a paragraph by itself and without the line ends around it, so that no
+    token crosses a paragraph end and none is made of line ends.
 
     Parameters
     ----------
@@ -48,16 +53,20 @@ def pattern_tokens(text: str, pattern: str, paragraphs: Int64Array) -> tuple[Int
     finder = compiled(pattern)
     bounds = [0, *paragraphs.tolist(), len(text)]
     spans: list[tuple[int, int]] = []
-    for first, last in pairwise(bounds):
+    for begin, end in pairwise(bounds):
+        paragraph = text[begin:end].rstrip(LINE_ENDS)
+        first = begin + len(paragraph)
+        paragraph = paragraph.lstrip(LINE_ENDS)
+        first -= len(paragraph)
         try:
-            matches = finder.finditer(text[first:last], timeout=SECONDS)
+            matches = finder.finditer(paragraph, timeout=SECONDS)
             spans.extend(
                 (first + found.start(), first + found.end()) for found in matches if found.end() > found.start()
             )
         except TimeoutError as error:
             raise DataError(
-                f"the token pattern {pattern!r} took longer than {SECONDS:g} s on a paragraph of {last - first} "
-                f"characters that begins {text[first : first + 40]!r}; make it simpler, without nested repetition"
+                f"the token pattern {pattern!r} took longer than {SECONDS:g} s on a paragraph of {len(paragraph)} "
+                f"characters that begins {paragraph[:40]!r}; make it simpler, without nested repetition"
             ) from error
     found_spans = np.array(spans, np.int64).reshape(-1, 2)
     return found_spans[:, 0].copy(), found_spans[:, 1].copy()

@@ -186,10 +186,11 @@ def test_a_stretch_that_begins_inside_a_sentence() -> None:
 def test_pattern() -> None:
     text = "Ab-c 12 x_y\nend. Next"
     assert words(text, pattern=r"\p{L}+") == ["Ab", "c", "x", "y", "end", "Next"]
-    assert words(text, pattern=r"[^,]+") == ["Ab-c 12 x_y\n", "end. Next"]
+    assert words(text, pattern=r"[^,]+") == ["Ab-c 12 x_y", "end. Next"]
     assert words(text, pattern=r"\S+", numbers="drop") == ["Ab-c", "x_y", "end.", "Next"]
     assert [len(part) for part in sentences(text, pattern=r"\w+")] == [4, 1, 1]
     assert words(text, pattern=r"(?<=x)_?|y") == ["_", "y"]
+    assert words("\n\na b\nc\r\n\n\nd\n", pattern=r"[^,]+", line_ends="space") == ["a b\nc", "d"]
 
 
 def test_pattern_errors(monkeypatch: pytest.MonkeyPatch) -> None:
