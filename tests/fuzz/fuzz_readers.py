@@ -1,0 +1,45 @@
+"""Coverage-guided fuzzing of the readers, run by hand: ``python tests/fuzz/fuzz_readers.py [CORPUS_FOLDER] [-runs=N]``.
+
+Needs the library ``atheris``. Only an error of this program that is one line
+and names the file may come out of a reader; anything else stops the fuzzer.
+"""
+
+from __future__ import annotations
+
+import sys
+import tempfile
+from pathlib import Path
+
+import atheris
+
+sys.path.insert(0, str(Path(__file__).parents[1]))
+
+with atheris.instrument_imports(include=["colloc.text"]):
+    from text.hostile import ENCODINGS, NAMES, read_or_refuse
+    from text.samples import PACKERS
+
+    from colloc.settings import ReadSettings
+
+FOLDER = Path(tempfile.mkdtemp(prefix="colloc-fuzz-"))
+
+
+def read_input(data: bytes) -> None:
+    """The first four bytes choose format, packing, encoding and errors; the rest is the file."""
+    choice = data[:4].ljust(4, b"\0")
+    packed, pack = list(PACKERS.items())[choice[1] % len(PACKERS)]
+    path = FOLDER / (NAMES[choice[0] % len(NAMES)] + packed)
+    # Half of the packed inputs are packed soundly, so that the formats are reached through them too.
+    content = pack(data[4:]) if choice[3] & 2 else data[4:]
+    path.write_bytes(content or b"\n")
+    settings = ReadSettings(
+        max_record=2**16,
+        max_unpacked=2**24,
+        encoding=ENCODINGS[choice[2] % len(ENCODINGS)],
+        errors="replace" if choice[3] & 1 else "strict",
+    )
+    read_or_refuse(path, settings)
+
+
+if __name__ == "__main__":
+    atheris.Setup(sys.argv, read_input)
+    atheris.Fuzz()
