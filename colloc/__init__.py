@@ -12,8 +12,32 @@ Every verb is a command of the same name, with the same options; answers are
 
 from __future__ import annotations
 
-from importlib import import_module
-from typing import Any
+import importlib
+import sys
+import types
+import typing
+
+if typing.TYPE_CHECKING:
+    from colloc import errors as errors
+    from colloc.answers.columns import Columns as Columns
+    from colloc.settings import ReadSettings as ReadSettings
+    from colloc.settings import SegmentSettings as SegmentSettings
+    from colloc.settings import TallySpec as TallySpec
+    from colloc.verbs import add as add
+    from colloc.verbs import around as around
+    from colloc.verbs import build as build
+    from colloc.verbs import check as check
+    from colloc.verbs import documents as documents
+    from colloc.verbs import documents_by as documents_by
+    from colloc.verbs import info as info
+    from colloc.verbs import measure as measure
+    from colloc.verbs import merge as merge
+    from colloc.verbs import open_store as open_store
+    from colloc.verbs import pairs as pairs
+    from colloc.verbs import remove as remove
+    from colloc.verbs import tallies as tallies
+    from colloc.verbs import tally as tally
+    from colloc.verbs import words as words
 
 _HOMES = {
     "Columns": "colloc.answers.columns",
@@ -28,7 +52,6 @@ _HOMES = {
     "documents_by": "colloc.verbs",
     "errors": "colloc",
     "info": "colloc.verbs",
-    "matrix": "colloc.verbs",
     "measure": "colloc.verbs",
     "merge": "colloc.verbs",
     "open_store": "colloc.verbs",
@@ -43,14 +66,28 @@ _HOMES = {
 __all__ = sorted(_HOMES)
 
 
-def __getattr__(name: str) -> Any:
+def __getattr__(name: str) -> typing.Any:
     if name not in _HOMES:
         raise AttributeError(f"module 'colloc' has no attribute {name!r}")
     home = _HOMES[name]
-    value = import_module(f"colloc.{name}") if home == "colloc" else getattr(import_module(home), name)
+    value = (
+        importlib.import_module(f"colloc.{name}") if home == "colloc" else getattr(importlib.import_module(home), name)
+    )
     globals()[name] = value
     return value
 
 
 def __dir__() -> list[str]:
     return sorted([*globals(), *__all__])
+
+
+class _Front(types.ModuleType):
+    """Keeps a verb from being replaced by a package of the same name when that is imported (``colloc.build``)."""
+
+    def __setattr__(self, name: str, value: object) -> None:
+        if isinstance(value, types.ModuleType) and _HOMES.get(name) == "colloc.verbs":
+            return
+        super().__setattr__(name, value)
+
+
+sys.modules[__name__].__class__ = _Front

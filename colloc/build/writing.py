@@ -8,7 +8,7 @@ last committed document and counts nothing twice.
 from __future__ import annotations
 
 import json
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -55,6 +55,7 @@ class StreamWriter:
     store: Store
     registry: TypeRegistry
     totals: WriterTotals = field(default_factory=WriterTotals)
+    _saved: WriterTotals = field(default_factory=WriterTotals)
     last_source: int = -1
     """Source of the last document that was finished."""
     _maps: dict[int, list[UInt32Array]] = field(default_factory=dict)
@@ -113,13 +114,14 @@ class StreamWriter:
 
     def save_totals(self) -> None:
         """Add what this run counted to the store's own totals, inside the caller's transaction."""
-        for key, value in (
-            ("sentences", self.totals.sentences),
-            ("dropped_tokens", self.totals.dropped),
-            ("repeated_documents", self.totals.repeated),
+        for key, name in (
+            ("sentences", "sentences"),
+            ("dropped_tokens", "dropped"),
+            ("repeated_documents", "repeated"),
         ):
-            facts.put(self.store, key, str(int(facts.get(self.store, key, "0")) + value))
-        self.totals.sentences = self.totals.dropped = self.totals.repeated = 0
+            unsaved = getattr(self.totals, name) - getattr(self._saved, name)
+            facts.put(self.store, key, str(int(facts.get(self.store, key, "0")) + unsaved))
+        self._saved = replace(self.totals)
 
     def _mapping(self, segmented: SegmentedBatch) -> UInt32Array:
         known = self._maps.setdefault(segmented.worker, [])

@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import io
+import sqlite3
 import subprocess
 import sys
 from collections.abc import Callable
+from contextlib import closing
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -57,3 +59,9 @@ def process(*arguments: object, stdin: bytes = b"", folder: Path | None = None) 
         [*COLLOC, *map(str, arguments)], input=stdin, capture_output=True, cwd=folder, check=False, timeout=60
     )
     return Ran(done.returncode, done.stdout.decode(), done.stderr.decode())
+
+
+def contents(store: Path) -> list[str]:
+    """Everything a store holds, as SQL, but for who last wrote to it."""
+    with closing(sqlite3.connect(f"file:{store}?mode=ro", uri=True)) as connection:
+        return [line for line in connection.iterdump() if "INSERT INTO \"facts\" VALUES('writer'" not in line]

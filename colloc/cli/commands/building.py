@@ -240,7 +240,8 @@ def add(
 ) -> None:
     """Read more documents into a store and count only them.
 
-    What is not said about reading is as it was when the store was built.
+    What is not said about reading is as it was when the store was built; an empty
+    value, as in --meta-from-path '', switches a column, pattern or table off.
     """
     from colloc import verbs
 
@@ -256,7 +257,7 @@ def add(
         "max_record": None if max_record is None else size_in_bytes(max_record),
         "max_unpacked": None if max_unpacked is None else size_in_bytes(max_unpacked),
     }
-    changes: dict[str, Any] = {name: value for name, value in given.items() if value is not None}
+    changes: dict[str, Any] = {name: value or None for name, value in given.items() if value is not None}
     read = dataclasses.replace(verbs.reading_settings(store), **changes) if changes else None
     with ProgressLine(quiet=quiet) as progress:
         done = verbs.add(
