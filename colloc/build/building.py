@@ -6,19 +6,22 @@ import importlib.metadata
 import json
 import os
 import platform
+import shutil
 import sqlite3
 import time
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
 from colloc.build.counting import count_new_documents
 from colloc.build.reading import Progress, Read, Resources, read_into
-from colloc.errors import CannotCreateError, DataError
+from colloc.errors import CannotCreateError, CollocError, DataError, InputOutputError
 from colloc.settings import DEFAULT_MEMORY, SMALLEST_MEMORY, Margins, ReadSettings, SegmentSettings, TallySpec
-from colloc.store import documents, facts
+from colloc.store import documents, facts, visibility
 from colloc.store.opening import Store, create, open_for_writing
 from colloc.store.scratch import scratch_folder
+from colloc.store.vocabulary import ensure_layer
+from colloc.text.sources import open_sources
 
 NOTHING_READ = Read(0, 0, 0, 0, 0, 0)
 
@@ -87,18 +90,35 @@ def build(
         inputs, read or ReadSettings(), segment or SegmentSettings(), tally or TallySpec(), margins, keep_text
     )
     limits = resources(jobs, memory, temp)
-    with _open_or_create(Path(path), wanted) as store:
-        if facts.get(store, "state") == "complete":
-            return _report(store, NOTHING_READ, began, already_complete=True)
-        done = fill(store, inputs, limits, progress, read or ReadSettings())
-        with store.transaction():
-            facts.put(store, "state", "complete")
-        store.make_durable()
-        return _report(store, done, began)
+    path = Path(path)
+    new, useless = _is_new(path), False
+    if new:
+        check_space(
+            path, [(source.info.name, source.info.size) for source in open_sources(inputs, read or ReadSettings())]
+        )
+    try:
+        with _open_or_create(path, wanted) as store:
+            if facts.get(store, "state") == "complete":
+                return _report(store, NOTHING_READ, began, already_complete=True)
+            try:
+                done = fill(store, inputs, limits, progress, read or ReadSettings())
+            except CollocError:
+                # A store that got nothing is no use to anyone; one that got something is gone on with.
+                useless = new and not len(visibility.uncounted(store))
+                raise
+            with store.transaction():
+                facts.put(store, "state", "complete")
+            store.make_durable()
+            return _report(store, done, began)
+    except CollocError:
+        if useless:
+            path.unlink(missing_ok=True)
+        raise
 
 
 def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progress | None, read: ReadSettings) -> Read:
     """Read what is missing, count what is not counted, and make it durable."""
+    ensure_layer(store, TallySpec.from_json(facts.get(store, "default_tally")).layer)
     with scratch_folder(store.path, limits.temp) as folder:
         done = read_into(
             store,
@@ -160,8 +180,42 @@ def versions() -> dict[str, str]:
     return {**packages, "python": platform.python_version(), "sqlite": sqlite3.sqlite_version}
 
 
+DISK_FOR_TEXT = 3.5
+"""Bytes of store and temporary files for each byte of plain text, window 5, from above."""
+
+COMPRESSION = 4.0
+"""Bytes of text for each byte of a compressed input, where nothing better is known."""
+
+
+def check_space(path: Path, sizes: Iterable[tuple[str, int]]) -> None:
+    """Refuse a build for which the disk is plainly too small, before it starts.
+
+    Raises
+    ------
+    InputOutputError
+        Naming what is needed and what is free.
+    """
+    folder = path.absolute().parent
+    if not folder.is_dir():
+        raise CannotCreateError(f"{path}: the folder {folder} does not exist; create it first")
+    needed = 0.0
+    for name, size in sizes:
+        packed = name.lower().endswith((".gz", ".bz2", ".xz", ".zst"))
+        needed += max(size, 0) * DISK_FOR_TEXT * (COMPRESSION if packed else 1.0)
+    free = shutil.disk_usage(folder).free
+    if needed > free:
+        raise InputOutputError(
+            f"{path}: the disk has {free / 1e9:.1f} GB free, and this build may need {needed / 1e9:.1f} GB: "
+            "choose another place for the store, or --temp for the temporary files"
+        )
+
+
+def _is_new(path: Path) -> bool:
+    return not path.exists() or path.stat().st_size == 0
+
+
 def _open_or_create(path: Path, wanted: dict[str, str]) -> Store:
-    if not path.exists() or path.stat().st_size == 0:
+    if _is_new(path):
         more = {"state": "building", "versions": json.dumps(versions())}
         return create(path, {**wanted, **more})
     store = open_for_writing(path, "build")

@@ -6,13 +6,12 @@ import json
 import shutil
 import tempfile
 import time
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
 from colloc.build.batches import BATCH_CHARACTERS
 from colloc.build.building import build, resources
-from colloc.errors import InputOutputError
 from colloc.records import Document
 from colloc.settings import DEFAULT_MEMORY, ReadSettings, SegmentSettings, TallySpec
 from colloc.text.sources import open_sources
@@ -24,12 +23,6 @@ SECOND_CORE = 1.8
 
 PAIR_GROWTH = 0.8
 """Exponent by which distinct pairs grow with text, measured on English prose of 1 to 12 million tokens."""
-
-DISK_FOR_TEXT = 3.5
-"""Bytes of store and temporary files for each byte of plain text, window 5, from above."""
-
-COMPRESSION = 4.0
-"""Bytes of text for each byte of a compressed input, where nothing better is known."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,26 +105,6 @@ def estimate(
         store_bytes=round(store_bytes),
         free_bytes=shutil.disk_usage(folder).free,
     )
-
-
-def check_space(path: Path, sizes: Iterable[tuple[str, int]]) -> None:
-    """Refuse a build for which the disk is plainly too small, before it starts.
-
-    Raises
-    ------
-    InputOutputError
-        Naming what is needed and what is free.
-    """
-    needed = 0.0
-    for name, size in sizes:
-        packed = name.lower().endswith((".gz", ".bz2", ".xz", ".zst"))
-        needed += max(size, 0) * DISK_FOR_TEXT * (COMPRESSION if packed else 1.0)
-    free = shutil.disk_usage(path.absolute().parent).free
-    if needed > free:
-        raise InputOutputError(
-            f"{path}: the disk has {free / 1e9:.1f} GB free, and this build may need {needed / 1e9:.1f} GB: "
-            "choose another place for the store, or --temp for the temporary files"
-        )
 
 
 def _write_sample(folder: Path, inputs: Sequence[str], read: ReadSettings) -> tuple[Path, float]:

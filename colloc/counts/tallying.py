@@ -119,6 +119,9 @@ def count_change(
     finish : callable
         Changes the documents themselves, inside the same transaction: makes new ones visible, or removes old ones.
     """
+    for spec in specs:
+        # committed before the count begins: processes that count see what is committed
+        ensure_layer(store, spec.layer)
     with scratch_folder(store.path, temp) as folder, store.transaction():
         if sign > 0:
             # slices are chosen among the documents that readers see
@@ -130,7 +133,6 @@ def count_change(
             if spec.where:
                 chosen = documents_selection(store, np.intersect1d(numbers, select(store, spec.where)))
             if tallies.find(store, spec) is None:
-                ensure_layer(store, spec.layer)
                 counter.count(store, spec, chosen, kept=True)
             elif len(chosen):
                 counter.count(store, spec, chosen, kept=True, sign=sign, delta=True)
