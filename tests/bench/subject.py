@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import shutil
 import sys
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
@@ -29,9 +30,12 @@ class Task:
 
 
 def drop(store: Path) -> None:
-    """Remove a store and what SQLite and the writer lock leave beside it."""
+    """Remove a store and what SQLite, the writer lock and a killed run leave beside it."""
     for path in store.parent.glob(store.name + "*"):
-        path.unlink()
+        if path.is_dir():
+            shutil.rmtree(path)
+        else:
+            path.unlink()
 
 
 def build(store: Path, inputs: Sequence[Path], window: int, jobs: int) -> Run:
