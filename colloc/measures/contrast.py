@@ -29,7 +29,7 @@ def as_table(
 def relative_frequency_ratio(
     count_this: ArrayLike, total_this: ArrayLike, count_that: ArrayLike, total_that: ArrayLike
 ) -> FloatArray:
-    """(count_this / total_this) / (count_that / total_that) (Manning & Schuetze 1999, section 5.4.1).
+    """(count_this / total_this) / (count_that / total_that) (Manning & Schuetze 1999, section 5.3.4).
 
     inf where the word occurs in this only, nan where in neither.
     """
@@ -49,7 +49,7 @@ def log_ratio_interval(
     """log2 of the relative frequency ratio, and its asymptotic interval, in bits: one unit is a doubling.
 
     Variance of the natural log: 1/count_this - 1/total_this + 1/count_that - 1/total_that (Agresti 2013,
-    section 3.1.4). Where a count is 0, every cell gets 0.5 more, so the value stays finite.
+    chapter 3). Where a count is 0, every cell gets 0.5 more, so the value stays finite.
     """
     this, all_this, that, all_that = _floats(count_this, total_this, count_that, total_that)
     more = np.where((this == 0) | (that == 0), ZERO_CORRECTION, 0.0)

@@ -38,7 +38,7 @@ def x2(table: Table) -> FloatArray:
 
 @table_function
 def g2(table: Table) -> FloatArray:
-    """Log-likelihood ratio 2 sum O ln(O / E) with the sign of O - E (Dunning 1993, section 4; nats).
+    """Log-likelihood ratio 2 sum O ln(O / E) with the sign of O - E (Dunning 1993; nats).
 
     Its size is chi-square distributed with one degree of freedom where the words are independent. 0 ln 0 = 0; 0
     where a word is never or always there.

@@ -13,7 +13,7 @@ from colloc.measures.contingency import FloatArray
 
 
 def specific_correlation(joint: ArrayLike, totals: ArrayLike, total: ArrayLike) -> FloatArray:
-    """log2(p(x1..xn) / (p(x1) ... p(xn))) in bits, SI2 of Van de Cruys (2011, equation 9); PMI for two words.
+    """log2(p(x1..xn) / (p(x1) ... p(xn))) in bits, SI2 of Van de Cruys (2011); PMI for two words.
 
     Parameters
     ----------
@@ -32,7 +32,7 @@ def specific_correlation(joint: ArrayLike, totals: ArrayLike, total: ArrayLike) 
 def specific_interaction(subset_counts: ArrayLike, total: ArrayLike) -> FloatArray:
     """Sum over all non-empty subsets T of the n words of (-1)^|T| log2 p(T), in bits.
 
-    SI1 of Van de Cruys (2011, equation 7), for three words
+    SI1 of Van de Cruys (2011), for three words
     log2(p(xy) p(yz) p(xz) / (p(x) p(y) p(z) p(xyz))); PMI for two. What the words say together beyond their pairs has
     a negative sign for three words.
 

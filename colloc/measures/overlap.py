@@ -39,11 +39,11 @@ def p_first_given_second(table: Table) -> FloatArray:
 
 @table_function
 def delta_p_second_given_first(table: Table) -> FloatArray:
-    """p(y|x) - p(y|not x), from -1 to 1 (Gries 2013, section 3); nan where the first word is never or always there."""
+    """p(y|x) - p(y|not x), from -1 to 1 (Gries 2013); nan where the first word is never or always there."""
     return table.joint / table.first_total - table.only_second / (table.total - table.first_total)
 
 
 @table_function
 def delta_p_first_given_second(table: Table) -> FloatArray:
-    """p(x|y) - p(x|not y), from -1 to 1 (Gries 2013, section 3); nan where the second word is never or always there."""
+    """p(x|y) - p(x|not y), from -1 to 1 (Gries 2013); nan where the second word is never or always there."""
     return table.joint / table.second_total - table.only_first / (table.total - table.second_total)

@@ -11,7 +11,7 @@ from colloc.measures.contingency import FloatArray, Rule, Table, evaluate, table
 
 @table_function
 def pmi(table: Table) -> FloatArray:
-    """Pointwise mutual information, log2(O / E) (Church & Hanks 1990, section 2).
+    """Pointwise mutual information, log2(O / E) (Church & Hanks 1990).
 
     -inf where the words never meet, 0 at independence, at most the smaller of the two surprisals; nan where a word
     never occurs.
@@ -21,7 +21,7 @@ def pmi(table: Table) -> FloatArray:
 
 @table_function
 def npmi(table: Table) -> FloatArray:
-    """Normalised PMI, PMI / -log2 p(x, y), from -1 to 1 (Bouma 2009, equation 7).
+    """Normalised PMI, PMI / -log2 p(x, y), from -1 to 1 (Bouma 2009).
 
     The limits are filled in: -1 where the words never meet, 1 where neither occurs without the other (also where
     both are everywhere, p(x, y) = 1). nan where a word never occurs.
@@ -61,7 +61,7 @@ def shifted_ppmi(
 
 
 def smoothed_totals(totals: ArrayLike, alpha: float = 0.75) -> FloatArray:
-    """Context distribution smoothing: totals^alpha, brought back to the old sum (Levy et al. 2015, section 3.1).
+    """Context distribution smoothing: totals^alpha, brought back to the old sum (Levy et al. 2015, section 3.2).
 
     Parameters
     ----------

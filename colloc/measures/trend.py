@@ -72,7 +72,7 @@ def mann_kendall(values: ArrayLike) -> MonotoneTrend:
 
 
 def _score_variance(series: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Variance of S where there is no trend (Kendall 1975, equation 4.3), and the number of pairs of equal values."""
+    """Variance of S where there is no trend (Kendall 1975, chapter 4), and the number of pairs of equal values."""
     n = series.shape[-1]
     same = np.count_nonzero(series[..., :, np.newaxis] == series[..., np.newaxis, :], axis=-1)
     others = np.asarray(same, dtype=np.float64) - 1
@@ -129,7 +129,7 @@ def theil_sen(values: ArrayLike, times: ArrayLike, *, confidence: float = 0.95) 
 
 
 def weighted_slope(values: ArrayLike, variances: ArrayLike, times: ArrayLike, *, confidence: float = 0.95) -> Slope:
-    """Straight line through values of known variance, by weighted least squares (Agresti 2013, section 16.7).
+    """Straight line through values of known variance, by weighted least squares (Agresti 2013, chapter 16).
 
     Parameters
     ----------

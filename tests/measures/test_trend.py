@@ -34,7 +34,7 @@ def test_mann_kendall_agrees_with_kendalls_tau(n: int) -> None:
 
 def test_mann_kendall_with_ties() -> None:
     # Tau b by scipy. S and its variance by hand: 1 2 2 3 3 3 has S = 11 of 15 pairs (4 of them tied), and
-    # Var = (6*5*17 - 2*1*9 - 3*2*11) / 18 = 426 / 18 (Kendall 1975, equation 4.3).
+    # Var = (6*5*17 - 2*1*9 - 3*2*11) / 18 = 426 / 18 (Kendall 1975, chapter 4).
     values = [1, 2, 2, 3, 3, 3]
     result = mann_kendall(values)
     assert result.s == 11

@@ -83,7 +83,7 @@ ENTRIES = (
         under_rates="frequent words, whose ceiling -log2 p(x) is low",
         misleads="At small joint counts: O = 1 against E = 0.001 is 10 bits and may be chance. Set min_count and "
         "read the interval.",
-        source="Church & Hanks 1990, Computational Linguistics 16(1), section 2; ACL Anthology J90-1003",
+        source="Church & Hanks 1990, Computational Linguistics 16(1); ACL Anthology J90-1003",
         function=pmi.pmi,
     ),
     Measure(
@@ -98,7 +98,7 @@ ENTRIES = (
         under_rates="avoidance: moderate negative values are pressed together near 0",
         misleads="The bounds hold only where joint and margins count the same observations; with window pair counts "
         "1 is out of reach, since every word has other neighbours too.",
-        source="Bouma 2009, Proceedings of GSCL, equation 7",
+        source="Bouma 2009, Proceedings of GSCL",
         function=pmi.npmi,
     ),
     Measure(
@@ -170,7 +170,7 @@ ENTRIES = (
         under_rates="rare pairs, however exclusive",
         misleads="As a strength: doubling the corpus doubles it. As a test: windowed pair counts are not independent "
         "trials.",
-        source="Dunning 1993, Computational Linguistics 19(1), section 4; ACL Anthology J93-1003 (the sign is ours)",
+        source="Dunning 1993, Computational Linguistics 19(1); ACL Anthology J93-1003 (the sign is ours)",
         function=likelihood.g2,
     ),
     Measure(
@@ -198,7 +198,7 @@ ENTRIES = (
         over_rates="frequent pairs",
         under_rates="rare pairs",
         misleads=_CELL_P_MISLEADS,
-        source="Dunning 1993, section 4; Wilks 1938, doi:10.1214/aoms/1177732360",
+        source="Dunning 1993; Wilks 1938, doi:10.1214/aoms/1177732360",
         function=likelihood.g2_p,
         strongest="lowest",
     ),
@@ -360,7 +360,7 @@ ENTRIES = (
         over_rates="frequent second words beside rare first words",
         under_rates="rare second words: it cannot exceed O / R",
         misleads="From one direction nothing follows about the other. At small R the value is coarse.",
-        source="Gries 2013, Int. J. of Corpus Linguistics 18(1), section 3, doi:10.1075/ijcl.18.1.09gri",
+        source="Gries 2013, Int. J. of Corpus Linguistics 18(1), doi:10.1075/ijcl.18.1.09gri",
         function=overlap.delta_p_second_given_first,
     ),
     Measure(
@@ -374,7 +374,7 @@ ENTRIES = (
         over_rates="frequent first words beside rare second words",
         under_rates="rare first words: it cannot exceed O / C",
         misleads="From one direction nothing follows about the other. At small C the value is coarse.",
-        source="Gries 2013, Int. J. of Corpus Linguistics 18(1), section 3, doi:10.1075/ijcl.18.1.09gri",
+        source="Gries 2013, Int. J. of Corpus Linguistics 18(1), doi:10.1075/ijcl.18.1.09gri",
         function=overlap.delta_p_first_given_second,
     ),
     Measure(
@@ -388,7 +388,7 @@ ENTRIES = (
         over_rates="rare pairs",
         under_rates="nothing in particular: it does not depend on how frequent the words are",
         misleads="With a zero cell the value is made by the 0.5: read it only with its standard error.",
-        source="Agresti 2013, Categorical Data Analysis, sections 2.2.3 and 2.4.2; 0.5: Haldane 1956, "
+        source="Agresti 2013, Categorical Data Analysis, sections 2.2.3 and 3.1.1; 0.5: Haldane 1956, "
         "doi:10.1111/j.1469-1809.1955.tb01285.x",
         function=odds.log_odds,
     ),

@@ -55,7 +55,7 @@ _INTERVALS = """\
 | --- | --- | --- |
 | PMI, asymptotic | PMI -/+ z sqrt(V), V = (1/O - 1/R - 1/C + 2 O/(R C) - 1/N) / ln^2 2 (delta method) | independent observations; O not tiny |
 | log odds, asymptotic | ln(ad/bc) -/+ z sqrt(1/a + 1/b + 1/c + 1/d) (Woolf 1955) | as above |
-| log ratio, asymptotic | log2 ratio -/+ z sqrt(1/O1 - 1/N1 + 1/O2 - 1/N2) / ln 2 (Agresti 2013, 3.1.4) | two sub-corpora, independent tokens |
+| log ratio, asymptotic | log2 ratio -/+ z sqrt(1/O1 - 1/N1 + 1/O2 - 1/N2) / ln 2 (Agresti 2013, chapter 3) | two sub-corpora, independent tokens |
 | any measure, jackknife | value -/+ t(g - 1) sqrt((g - 1)/g sum (v_i - mean v)^2), v_i without document group i of g = 20 | running text: documents, not tokens, are the sample |
 
 The jackknife interval is unbounded where the value without some group is not finite: the association then hangs on a
