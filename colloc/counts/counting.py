@@ -27,6 +27,8 @@ AddPage = Callable[[Order, PageHead, bytes], None]
 _LARGEST_SHARE = 2**24
 """Tokens that one table of frequent pairs counts: more would make fewer runs, but progress would stand still."""
 _RANGES_PER_JOB = 4
+_LEAST_RANGE = 2**14
+"""Entries: fewer are not worth a task of their own."""
 _COUNTED, _MERGED = 0.6, 0.8
 """How far the whole has come when counting, and when merging, is done."""
 
@@ -136,7 +138,7 @@ def _merge(
     entries = sum(run.keys.n for run in runs)
     if not entries:
         return
-    keys, highs = choose_bounds(runs, min(budget.entries, max(2**14, -(-entries // (jobs * _RANGES_PER_JOB)))))
+    keys, highs = choose_bounds(runs, min(budget.entries, max(_LEAST_RANGE, -(-entries // (jobs * _RANGES_PER_JOB)))))
     save_runs(folder / RUNS, runs)
     write_column(folder / HIGHS, np.array(highs, np.int64))
     place = {"folder": str(folder)}

@@ -67,8 +67,8 @@ def run_of_keys(keys: UInt64Array) -> Run:
     if len(keys) == 0:
         return empty_run()
     keys.sort()
-    starts = _group_starts(keys)
-    return Run(keys[starts], np.diff(starts, append=len(keys)))
+    edges = _group_edges(keys)
+    return Run(keys[edges[:-1]], edges[1:] - edges[:-1])
 
 
 def sorted_run(keys: UInt64Array, counts: Int64Array) -> Run:
@@ -106,7 +106,7 @@ def merge(runs: Sequence[Run]) -> Run:
     order = np.argsort(keys, kind="stable")
     keys = keys[order]
     counts = np.concatenate([run.counts for run in filled])[order]
-    starts = _group_starts(keys)
+    starts = _group_edges(keys)[:-1]
     return Run(keys[starts], np.add.reduceat(counts, starts))
 
 
@@ -116,15 +116,15 @@ def pair_block(run: Run) -> PairBlock:
         nothing, none = np.empty(0, np.uint32), np.empty(0, np.int64)
         return PairBlock(nothing, nothing, none, none)
     unordered = run.keys >> _ONE
-    starts = _group_starts(unordered)
-    lengths = np.diff(starts, append=len(unordered))
-    backward_first = (run.keys[starts] & _ONE) == _ONE
-    # a pair has one key or two; its last key is the backward one unless the only key is forward
-    last = run.counts[starts + lengths - 1]
-    forward = np.where(backward_first, 0, run.counts[starts])
-    backward = np.where(backward_first | (lengths == 2), last, 0)
-    pairs = unordered[starts]
-    return PairBlock(low_terms(pairs << _ONE), high_terms(pairs << _ONE), forward, backward)
+    edges = _group_edges(unordered)
+    # a pair has one key or two: its first key is the forward one, its last the backward one, if they are there
+    first, last = edges[:-1], edges[1:] - 1
+    keys = run.keys[first]
+    forward = run.counts[first]
+    forward[backward(keys)] = 0
+    back = run.counts[last]
+    back[~backward(run.keys[last])] = 0
+    return PairBlock(low_terms(keys), high_terms(keys), forward, back)
 
 
 def low_terms(keys: UInt64Array) -> UInt32Array:
@@ -142,9 +142,9 @@ def backward(keys: UInt64Array) -> NDArray[np.bool_]:
     return (keys & _ONE).astype(np.bool_)
 
 
-def _group_starts(values: UInt64Array) -> Int64Array:
-    """Offsets where a new value begins in the sorted, non-empty ``values``."""
-    fresh = np.empty(len(values), np.bool_)
-    fresh[0] = True
-    np.not_equal(values[1:], values[:-1], out=fresh[1:])
+def _group_edges(values: UInt64Array) -> Int64Array:
+    """Offsets where a new value begins in the sorted, non-empty ``values``, and at the end their number."""
+    fresh = np.empty(len(values) + 1, np.bool_)
+    fresh[0] = fresh[-1] = True
+    np.not_equal(values[1:], values[:-1], out=fresh[1:-1])
     return np.flatnonzero(fresh)

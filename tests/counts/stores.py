@@ -34,7 +34,7 @@ class Text:
 
     def document_bounds(self) -> list[tuple[int, int]]:
         """First token and the one after the last, document by document."""
-        return list(zip(self.documents.tolist(), [*self.documents[1:].tolist(), len(self.types)], strict=True))
+        return list(zip(self.documents.tolist(), [*self.documents[1:].tolist(), len(self.types)], strict=False))
 
 
 def random_text(seed: int, tokens: int, types: int, n_documents: int, sentence: float = 12.0) -> Text:
