@@ -20,7 +20,7 @@ def corrected_cells(table: Table) -> tuple[FloatArray, FloatArray, FloatArray, F
 
 @table_function
 def log_odds(table: Table) -> FloatArray:
-    """ln(ad / bc), with 0.5 added to every cell where one is zero: always finite (Haldane 1956; Agresti 2013, section 3.1.1)."""
+    """ln(ad / bc), 0.5 more in every cell where one is zero: always finite (Haldane 1956; Agresti 2013, 3.1.1)."""
     joint, only_first, only_second, neither = corrected_cells(table)
     return np.log((joint * neither) / (only_first * only_second))
 
