@@ -8,7 +8,6 @@ import sys
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
 
 from .running import Run, run
 
@@ -45,20 +44,15 @@ def build(store: Path, inputs: Sequence[Path], window: int, jobs: int) -> Run:
     return run([COLLOC, "build", str(store), *names, "--window", str(window), "--jobs", str(jobs), "--quiet"])
 
 
-def info(store: Path) -> dict[str, Any]:
-    """What ``colloc info`` tells."""
-    command = [COLLOC, "info", str(store), "--format", "json", "--quiet"]
-    facts: dict[str, Any] = json.loads(run(command, watch_memory=False).output)
-    return facts
-
-
 def tokens_in(store: Path) -> int:
-    return int(info(store)["tokens"])
+    output = run([COLLOC, "info", str(store), "--format", "json", "--quiet"], watch_memory=False).output
+    return int(json.loads(output)["tokens"])
 
 
 def occurrences_in(store: Path) -> int:
-    """Pairs of tokens in the table that the store was built with."""
-    return int(info(store)["tallies"][0]["total"])
+    """Pairs of tokens in the table that the store was built with: the total of a directed answer."""
+    command = [COLLOC, "pairs", str(store), "--directed", "--limit", "1", "--format", "jsonl", "--quiet"]
+    return int(json.loads(run(command, watch_memory=False).output)["total"])
 
 
 def cold(command: Sequence[str]) -> Run:
