@@ -11,14 +11,17 @@ from __future__ import annotations
 import struct
 import sys
 import zlib
+from pathlib import Path
 
 import atheris
+import numpy as np
 
 with atheris.instrument_imports(include=["colloc"]):
     from colloc.errors import StoreDamagedError
+    from colloc.records import PairBlock
     from colloc.store.database import packing
-    from colloc.store.pages import ORDERS, decode_page, encode_page
-    from colloc.store.paging.directory import unpack_directory
+    from colloc.store.pages import ORDERS, PageHead, decode_page, encode_page
+    from colloc.store.paging.directory import pack_directory, unpack_directory
 
 
 def _page(data: bytes) -> None:
@@ -49,6 +52,25 @@ def one_input(data: bytes) -> None:
         _packed(data[:16] + struct.pack("<I", zlib.crc32(data[16:], zlib.crc32(data[:16]))) + data[16:])
 
 
+def write_seeds(folder: Path) -> None:
+    """Sound pages and packed arrays without their checksums: where the fuzzer begins."""
+    generator = np.random.default_rng(1)
+    for n, largest, counts in ((1, 9, 2), (40, 2**15, 300), (40, 2**20, 2**40), (9, 2**30, 2)):
+        low = np.sort(generator.choice(largest, n, replace=False)).astype(np.uint32)
+        forward, backward = generator.integers(0, counts, (2, n))
+        (folder / f"page-{largest}").write_bytes(encode_page(PairBlock(low, low + np.uint32(7), forward, backward))[8:])
+    numbers = np.arange(30, dtype=np.uint32)
+    for name, packed in (
+        ("plain", packing.pack(numbers)),
+        ("ascending", packing.pack(numbers, ascending=True)),
+        ("bytes", packing.pack_bytes(b"the lamp burns " * 9)),
+        ("directory", pack_directory([PageHead(7, 1, 2, 3), PageHead(8, 4, 5, 6)])),
+    ):
+        (folder / name).write_bytes(packed[:16] + packed[20:])
+
+
 if __name__ == "__main__":
+    if len(sys.argv) > 1 and Path(sys.argv[1]).is_dir():
+        write_seeds(Path(sys.argv[1]))
     atheris.Setup(sys.argv, one_input)
     atheris.Fuzz()

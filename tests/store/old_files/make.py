@@ -13,7 +13,6 @@ from collections import Counter
 from pathlib import Path
 
 from colloc.store.database import schema
-
 from store.making import DOCUMENTS, small_store, window_cells, words_of
 
 HERE = Path(__file__).parent
