@@ -11,7 +11,7 @@ from colloc.counts.words import slice_word_counts
 from colloc.errors import UsageError
 from colloc.store import documents, facts, slices, tallies, vocabulary
 from colloc.store.connection import Store
-from colloc.store.sources import source_list
+from colloc.store.inputs.sources import source_list
 
 
 def describe(store: Store) -> dict[str, Any]:

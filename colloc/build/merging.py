@@ -19,8 +19,8 @@ from colloc.records import NO_TERM, Anchors, UInt32Array
 from colloc.settings import DEFAULT_MEMORY
 from colloc.store import documents, facts, stream, texts, visibility, vocabulary
 from colloc.store.connection import Store
+from colloc.store.inputs.sources import copy_source, source_list
 from colloc.store.opening import open_for_reading, open_for_writing
-from colloc.store.sources import copy_source, source_list
 from colloc.store.vocabulary import TypeRegistry
 
 _MUST_AGREE = {

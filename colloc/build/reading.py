@@ -14,8 +14,8 @@ from colloc.errors import DataError, NoInputError
 from colloc.settings import ReadSettings, SegmentSettings
 from colloc.store import documents, facts, visibility
 from colloc.store.connection import Store
-from colloc.store.repeats import SeenHashes
-from colloc.store.sources import SourceRow, add_source, find_source, finish
+from colloc.store.inputs.repeats import SeenHashes
+from colloc.store.inputs.sources import SourceRow, add_source, find_source, finish
 from colloc.store.vocabulary import TypeRegistry
 from colloc.text.sources import Source, open_sources
 
@@ -87,12 +87,12 @@ def read_into(
             with store.transaction():
                 ended = _until_document_end(writer, segmented)
                 sources.save_finished(writer.last_source)
-                writer.save_totals()
                 if ended:
+                    # repeats behind the last document that was kept
+                    writer.note_met(repeats.take_new(), documents.next_document(store))
                     sources.save_all()
-                    _count(store, "repeated_documents", repeats.documents)
-                    _count(store, "repeated_paragraphs", repeats.paragraphs)
                     _count(store, "replaced_bytes", sources.replaced)
+                writer.save_totals()
             if progress is not None:
                 progress(sources.share, writer.totals.tokens, "reading")
     totals = writer.totals
@@ -103,8 +103,8 @@ def read_into(
         totals.tokens,
         totals.dropped,
         sources.replaced,
-        repeats.documents + totals.repeated,
-        repeats.paragraphs,
+        totals.repeated_documents,
+        totals.repeated_paragraphs,
     )
 
 

@@ -9,15 +9,25 @@ from __future__ import annotations
 
 import hashlib
 from collections.abc import Iterable, Iterator
+from dataclasses import dataclass
 from typing import Literal, Protocol
 
 from colloc.errors import DataError
-from colloc.store.repeats import SeenHashes
+from colloc.store.inputs.repeats import SeenHashes
 
 SHORTEST_PARAGRAPH = 80
 """Code points; shorter paragraphs ("Yes.", "Chapter I") repeat in honest text and are kept."""
 
 LONGEST_PARAGRAPH = 16 * 2**20
+
+
+@dataclass(frozen=True, slots=True)
+class Met:
+    """New hashes, and repeats dropped."""
+
+    digests: tuple[bytes, ...] = ()
+    documents: int = 0
+    paragraphs: int = 0
 
 
 class Fingerprint(Protocol):
@@ -58,6 +68,7 @@ class Repeats:
         self._mode = mode
         self._seen = seen
         self._new: list[bytes] = []
+        self._told = (0, 0)
         self.documents = 0
         self.paragraphs = 0
 
@@ -109,7 +120,8 @@ class Repeats:
         self._new.append(digest)
         return False
 
-    def take_new(self) -> list[bytes]:
-        """Hashes met since the last call, to be stored with the batch."""
-        new, self._new = self._new, []
-        return new
+    def take_new(self) -> Met:
+        """What was met since the last call, to be stored with the document that follows it."""
+        met = Met(tuple(self._new), self.documents - self._told[0], self.paragraphs - self._told[1])
+        self._new, self._told = [], (self.documents, self.paragraphs)
+        return met

@@ -13,12 +13,14 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from colloc.build.batches import Entry
+from colloc.build.repeats import Met
 from colloc.build.segmenting import SegmentedBatch
 from colloc.errors import DataError
 from colloc.records import Anchors, DocumentRow, UInt32Array
-from colloc.store import documents, facts, sources, stream, texts
+from colloc.store import documents, facts, stream, texts
+from colloc.store.inputs import sources
+from colloc.store.inputs.repeats import remember
 from colloc.store.opening import Store
-from colloc.store.repeats import remember
 from colloc.store.stream import Block
 from colloc.store.vocabulary import TypeRegistry
 
@@ -31,7 +33,8 @@ class WriterTotals:
     tokens: int = 0
     sentences: int = 0
     dropped: int = 0
-    repeated: int = 0
+    repeated_documents: int = 0
+    repeated_paragraphs: int = 0
 
 
 @dataclass(slots=True)
@@ -112,12 +115,19 @@ class StreamWriter:
         """Whether all that was appended belongs to finished documents: where a commit may be."""
         return self._open is None
 
+    def note_met(self, met: Met, document: int) -> None:
+        """Remember hashes with a document, and count the repeats dropped before it or in it."""
+        remember(self.store, document, met.digests)
+        self.totals.repeated_documents += met.documents
+        self.totals.repeated_paragraphs += met.paragraphs
+
     def save_totals(self) -> None:
         """Add what this run counted to the store's own totals, inside the caller's transaction."""
         for key, name in (
             ("sentences", "sentences"),
             ("dropped_tokens", "dropped"),
-            ("repeated_documents", "repeated"),
+            ("repeated_documents", "repeated_documents"),
+            ("repeated_paragraphs", "repeated_paragraphs"),
         ):
             unsaved = getattr(self.totals, name) - getattr(self._saved, name)
             facts.put(self.store, key, str(int(facts.get(self.store, key, "0")) + unsaved))
@@ -169,10 +179,10 @@ class StreamWriter:
         for row in finished:
             sources.note_records(self.store, row.source, row.record + 1)
         for entry, row in zip(entries, rows, strict=True):
-            remember(self.store, row.number, entry.digests)
+            self.note_met(entry.met, row.number)
             if entry.last and entry.repeat:
                 documents.remove_document(self.store, row.number)
-                self.totals.repeated += 1
+                self.totals.documents -= 1
         self.totals.documents += len(finished)
         if finished:
             self.last_source = finished[-1].source

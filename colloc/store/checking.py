@@ -12,7 +12,7 @@ from colloc.records import NO_TERM, Int64Array, UInt32Array
 from colloc.settings import TallySpec
 from colloc.store import documents, facts, stream, texts, visibility, vocabulary
 from colloc.store.connection import Store
-from colloc.store.findings import Finding, noting
+from colloc.store.database.findings import Finding, noting
 from colloc.store.paging.checking import check_tally
 
 __all__ = ["Finding", "check"]

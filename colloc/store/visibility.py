@@ -11,8 +11,9 @@ import json
 import numpy as np
 
 from colloc.records import Int64Array
-from colloc.store import documents, facts, sources, stream, texts, vocabulary
+from colloc.store import documents, facts, stream, texts, vocabulary
 from colloc.store.connection import Store
+from colloc.store.inputs import sources
 
 MARK = "counted"
 TOTALS = ("sentences", "dropped_tokens", "replaced_bytes", "repeated_documents", "repeated_paragraphs")

@@ -8,7 +8,8 @@ from pathlib import Path
 import numpy as np
 
 from colloc.records import Anchors, DocumentRow, SourceInfo
-from colloc.store import documents, sources, stream, visibility
+from colloc.store import documents, stream, visibility
+from colloc.store.inputs import sources
 from colloc.store.opening import create
 from colloc.store.vocabulary import TypeRegistry, ensure_layer
 

@@ -12,7 +12,8 @@ import numpy as np
 
 from colloc.records import Anchors, DocumentRow, PairBlock, SourceInfo
 from colloc.settings import TallySpec
-from colloc.store import documents, sources, stream, tallies, texts, visibility, vocabulary
+from colloc.store import documents, stream, tallies, texts, visibility, vocabulary
+from colloc.store.inputs import sources
 from colloc.store.opening import Store, create, open_for_writing
 from colloc.store.pages import ORDERS, Order, encode_page, head_of
 from colloc.store.tallies import TallyWriter

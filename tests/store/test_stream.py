@@ -12,7 +12,8 @@ from hypothesis import strategies as st
 
 from colloc.errors import DataError, NotSeenError, StoreDamagedError, UsageError
 from colloc.records import NO_TERM, Anchors, DocumentRow, SourceInfo
-from colloc.store import documents, sources, stream, texts
+from colloc.store import documents, stream, texts
+from colloc.store.inputs import sources
 from colloc.store.opening import open_for_reading
 
 from .making import DOCUMENTS, empty_store, small_store
