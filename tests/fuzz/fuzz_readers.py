@@ -1,6 +1,7 @@
-"""Coverage-guided fuzzing of the readers, run by hand: ``python tests/fuzz/fuzz_readers.py [CORPUS_FOLDER] [-runs=N]``.
+"""Coverage-guided fuzzing of the readers, run by hand: ``python tests/fuzz/fuzz_readers.py [-max_total_time=SECONDS]``.
 
-Needs the library ``atheris``. Only an error of this program that is one line
+Needs the library ``atheris`` (extra ``fuzz``). It starts from some hundred of
+the hostile inputs of the tests. Only an error of this program that is one line
 and names the file may come out of a reader; anything else stops the fuzzer.
 """
 
@@ -15,7 +16,7 @@ import atheris
 sys.path.insert(0, str(Path(__file__).parents[1]))
 
 with atheris.instrument_imports(include=["colloc.text"]):
-    from text.hostile import ENCODINGS, NAMES, read_or_refuse
+    from text.hostile import ENCODINGS, NAMES, hostile_case, read_or_refuse
     from text.samples import PACKERS
 
     from colloc.settings import ReadSettings
@@ -40,6 +41,23 @@ def read_input(data: bytes) -> None:
     read_or_refuse(path, settings)
 
 
+def write_seeds(folder: Path) -> None:
+    """Inputs to start from, in the form that `read_input` takes."""
+    folder.mkdir()
+    extensions = list(PACKERS)
+    for seed in range(300):
+        name, data, settings = hostile_case(seed)
+        stem, _, packing = name.removeprefix("a.").partition(".")
+        choice = (
+            NAMES.index(f"a.{stem}"),
+            extensions.index(f".{packing}" if packing else ""),
+            ENCODINGS.index(settings.encoding),
+            int(settings.errors == "replace"),
+        )
+        (folder / str(seed)).write_bytes(bytes(choice) + data)
+
+
 if __name__ == "__main__":
-    atheris.Setup(sys.argv, read_input)
+    write_seeds(FOLDER / "seeds")
+    atheris.Setup([*sys.argv, str(FOLDER / "seeds")], read_input)
     atheris.Fuzz()
