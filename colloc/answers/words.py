@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Literal
+from typing import Literal, get_args
 
 import numpy as np
 
@@ -92,16 +92,11 @@ def _ordered(
     limit: int,
 ) -> tuple[Int64Array, list[str]]:
     """Term numbers in the order asked for, ties by count and then by word, with their texts."""
-    keys = {
-        "count": lambda: -tokens[numbers],
-        "documents": lambda: -documents[numbers],
-        "dp_norm": lambda: dp_norm[numbers],
-        "word": lambda: np.zeros(len(numbers)),
-    }
-    if sort not in keys:
-        raise UsageError(f"sort must be one of {', '.join(keys)}, not {sort!r}")
-    key = keys[sort]()
-    by_count = -tokens[numbers] if sort != "word" else np.zeros(len(numbers))
+    if sort not in get_args(WordOrder):
+        raise UsageError(f"sort must be one of {', '.join(get_args(WordOrder))}, not {sort!r}")
+    level = np.zeros(len(numbers))
+    by_count = -tokens[numbers] if sort != "word" else level
+    key = {"documents": -documents[numbers], "dp_norm": dp_norm[numbers]}.get(sort, by_count)
     if limit and limit < len(numbers) and sort != "word":
         # Only what can reach the list needs its text: all ties of the last place included.
         order = np.lexsort((by_count, key))

@@ -13,7 +13,7 @@ import json
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 
-from colloc.build.repeats import Repeats
+from colloc.build.repeats import NOTHING_MET, Met, Repeats
 from colloc.records import Document
 from colloc.settings import SegmentSettings
 from colloc.tokens.cutting import is_hard_break, safe_cut
@@ -39,8 +39,8 @@ class Entry:
     """Whether the document begins here."""
     last: bool
     """Whether the document ends here."""
-    digests: tuple[bytes, ...] = ()
-    """Content hashes to remember once the document is stored."""
+    met: Met = NOTHING_MET
+    """Content hashes to remember with the document, and repeats dropped before it or in it."""
     repeat: bool = False
     """A long document that turned out, at its end, to be an exact repeat: to be taken out again."""
 
@@ -127,7 +127,7 @@ class Batcher:
                     length=length,
                     first=first,
                     last=last,
-                    digests=tuple(self._repeats.take_new()),
+                    met=self._repeats.take_new(),
                     repeat=repeat,
                 )
             )

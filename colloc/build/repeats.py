@@ -30,6 +30,9 @@ class Met:
     paragraphs: int = 0
 
 
+NOTHING_MET = Met()
+
+
 class Fingerprint(Protocol):
     """What a document's text is hashed with."""
 
