@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from colloc.records import Int64Array
-from colloc.tokens.classes import Mask
+from colloc.tokens.classes import Kinds, Mask
 
 
 def distinct(ascending: Int64Array) -> Int64Array:
@@ -17,12 +17,11 @@ def distinct(ascending: Int64Array) -> Int64Array:
     return ascending[fresh]
 
 
-def any_within(flags: Mask, starts: Int64Array, ends: Int64Array) -> Mask:
-    """Whether a flag is set within each of the disjoint, ascending, non-empty spans."""
+def any_within(kinds: Kinds, table: Mask, starts: Int64Array, ends: Int64Array) -> Mask:
+    """Whether each of the non-empty spans holds a kind of the table; takes time for what is in the spans only."""
     if not len(starts):
         return np.zeros(0, np.bool_)
-    bounds = np.empty(2 * len(starts), np.int64)
-    bounds[0::2], bounds[1::2] = starts, ends
-    if ends[-1] == len(flags):
-        bounds = bounds[:-1]
-    return np.logical_or.reduceat(flags, bounds)[::2]
+    lengths = ends - starts
+    first = np.cumsum(lengths) - lengths
+    places = np.repeat(starts - first, lengths) + np.arange(first[-1] + lengths[-1])
+    return np.logical_or.reduceat(table[kinds[places]], first)

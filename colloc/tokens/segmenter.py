@@ -23,7 +23,8 @@ class Segmenter:
     Without tailoring a token is a segment between word boundaries that holds a
     letter or a digit (general category L or N). See ``SegmentSettings`` for what
     is laid on top of that. A user's pattern replaces words, hyphens and
-    addresses; ``numbers``, ``max_token`` and sentences work as ever.
+    addresses; ``numbers``, ``max_token`` and sentences work as ever. A pattern and
+    ``max_token`` hold without tailoring, too.
     """
 
     def __init__(self, settings: SegmentSettings) -> None:
@@ -67,7 +68,10 @@ class Segmenter:
             starts, ends = self._words(points, kinds, addresses)
             starts, ends = _clipped(starts, ends, len(text))
         if settings.tailored and settings.numbers == "drop":
-            lettered = any_within(classes().letter[kinds], starts, ends)
+            letter = classes().letter
+            lettered = letter[kinds[starts]]
+            others = np.flatnonzero(~lettered)
+            lettered[others] = any_within(kinds, letter, starts[others], ends[others])
             starts, ends = starts[lettered], ends[lettered]
         lengths = ends - starts
         dropped = 0

@@ -14,8 +14,8 @@ import numpy as np
 from colloc.records import Int64Array
 from colloc.tokens.abbreviations import after_abbreviation
 from colloc.tokens.arrays import distinct
+from colloc.tokens.attaching import Attached, find_attached
 from colloc.tokens.classes import Kinds, Mask, Points, classes, code_points, kinds_of
-from colloc.tokens.words import absorbed
 
 _PARAGRAPH_SEPARATOR = 0x2029
 _FULL_STOP = 0x2E
@@ -76,7 +76,7 @@ def paragraph_ends(kinds: Kinds, points: Points, line_ends: Literal["paragraph",
     return ends, blank | (points[ends] == _PARAGRAPH_SEPARATOR)
 
 
-def _terminated(kinds: Kinds, points: Points, places: Int64Array | None, abbreviations: bool) -> Int64Array:
+def _terminated(kinds: Kinds, points: Points, attached: Attached | None, abbreviations: bool) -> Int64Array:
     """Rules SB6 to SB11: positions before which a sentence breaks after a terminator."""
     tables = classes()
     # Line ends that are mere spaces have been given another kind by now.
@@ -91,14 +91,14 @@ def _terminated(kinds: Kinds, points: Points, places: Int64Array | None, abbrevi
     stops, targets, next_kind = terminators[full_stop], after_spaces[full_stop], following[full_stop]
     direct = targets == stops + 1
     before = kinds[np.maximum(stops - 1, 0)]
-    cased = tables.sentences("Upper", "Lower")[before] & (stops > 0)
+    cased = tables.sentences("Upper", "Lower")[before]
     stays = direct & tables.sentence["Numeric"][next_kind]  # SB6
     stays |= direct & cased & tables.sentence["Upper"][next_kind]  # SB7
     neutral = ~tables.sentences("OLetter", "Upper", "Lower", "CR", "LF", "Sep", "STerm", "ATerm")
     stays |= tables.sentence["Lower"][_at(kinds, _skip(kinds, neutral, targets))]  # SB8
     if abbreviations:
         asked = np.flatnonzero(~stays)
-        dots = stops[asked] if places is None else places[stops[asked]]
+        dots = stops[asked] if attached is None else attached.outer(stops[asked])
         numeric = tables.sentence["Numeric"][next_kind[asked]]
         plain = points[dots] == _FULL_STOP
         stays[asked[plain]] = after_abbreviation(points, dots[plain], numeric[plain])
@@ -134,14 +134,12 @@ def sentence_breaks(
         returns = feeds[tables.sentence["CR"][kinds[feeds - 1]]] - 1
         kinds = kinds.copy()
         kinds[spaces] = kinds[returns] = tables.space_kind
-    places: Int64Array | None = None
-    if kinds.min() < tables.first_free:
-        attached = tables.sentences("Extend", "Format")
-        places = np.flatnonzero(~absorbed(kinds, attached, tables.sentences("CR", "LF", "Sep")))
-        kinds = kinds[places]
-    sentences = _terminated(kinds, points, places, abbreviations)
-    if places is not None:
-        sentences = np.append(places, len(points))[sentences]
+    attached = find_attached(kinds, tables.sentences("Extend", "Format"), tables.sentences("CR", "LF", "Sep"))
+    if attached is not None:
+        kinds = kinds[attached.kept]
+    sentences = _terminated(kinds, points, attached, abbreviations)
+    if attached is not None:
+        sentences = attached.outer(sentences)
     sentences = distinct(np.sort(np.concatenate((sentences, paragraphs))))
     return Breaks(sentences, paragraphs)
 

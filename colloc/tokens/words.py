@@ -15,6 +15,7 @@ import numpy as np
 
 from colloc.records import Int64Array
 from colloc.tokens.arrays import any_within
+from colloc.tokens.attaching import Attached, find_attached
 from colloc.tokens.classes import (
     BARE,
     LETTER,
@@ -37,8 +38,7 @@ from colloc.tokens.classes import (
 class _Joins:
     """Which kept characters hang together, and which belong to a word or may do so."""
 
-    kept: Int64Array | None
-    """Positions of the kept characters; None where all are kept."""
+    attached: Attached | None
     flags: Kinds
     joined: Mask
     tokenish: Mask
@@ -53,34 +53,26 @@ class _Joins:
         self.doubtful = True
 
 
-def absorbed(kinds: Kinds, attached: Mask, newline: Mask) -> Mask:
-    """Where a character attaches to the one before: rules WB4 and SB5, which spare the one after a line end."""
-    result = attached[kinds]
-    result[0] = False
-    result[1:] &= ~newline[kinds[:-1]]
-    return result
-
-
 def _join(kinds: Kinds, flags: Kinds, hyphens: Int64Array | None) -> _Joins:
     """Rules WB4 to WB13b and WB3c, and single hyphens between letters or digits where `hyphens` are given."""
     tables = classes()
+    attached: Attached | None = None
     uncommon = bool(np.bitwise_or.reduce(flags) & UNCOMMON)
-    kept: Int64Array | None = None
     if uncommon:
-        attached = absorbed(kinds, tables.words("Extend", "Format", "ZWJ"), tables.words("CR", "LF", "Newline"))
-        kept = np.flatnonzero(~attached)
-        flags = flags[kept]
+        attached = find_attached(kinds, tables.words("Extend", "Format", "ZWJ"), tables.words("CR", "LF", "Newline"))
+        if attached is not None:
+            flags = flags[attached.kept]
     wordish = (flags & WORDISH) != 0
     joined = wordish[1:] & wordish[:-1]
-    joins = _Joins(kept, flags, joined, (flags & (WORDISH | SOLO)) != 0)
+    joins = _Joins(attached, flags, joined, (flags & (WORDISH | SOLO)) != 0)
 
     middle = np.flatnonzero((flags[1:-1] & (MID_LETTER | MID_NUMBER)) != 0) + 1
     between = flags[middle - 1] & flags[middle + 1] & (flags[middle] >> 3) & (LETTER | NUMERIC)
     _bind(joins, middle[between != 0])
-    if kept is not None:
-        _join_uncommon(joins, kinds, kept)
+    if uncommon:
+        _join_uncommon(joins, kinds)
     if hyphens is not None and len(hyphens):
-        inner = hyphens if kept is None else np.searchsorted(kept, hyphens)
+        inner = hyphens if attached is None else attached.inner(hyphens)
         inner = inner[(inner > 0) & (inner < len(flags) - 1)]
         spoken = ((flags & (WORDISH | SOLO)) != 0) & ((flags & BARE) == 0)
         _bind(joins, inner[spoken[inner - 1] & spoken[inner + 1]])
@@ -94,29 +86,38 @@ def _bind(joins: _Joins, middle: Int64Array) -> None:
     joins.tokenish[middle] = True
 
 
-def _join_uncommon(joins: _Joins, kinds: Kinds, kept: Int64Array) -> None:
+def _occur(kinds: Kinds, table: Mask) -> bool:
+    """Whether a kind of the table occurs."""
+    content = kinds.tobytes()
+    return any(bytes([kind]) in content for kind in np.flatnonzero(table).tolist())
+
+
+def _join_uncommon(joins: _Joins, kinds: Kinds) -> None:
     """Hebrew quotes (WB7a-c), Katakana (WB13) and pictographs after a joiner (WB3c)."""
     tables = classes()
-    inner = kinds[kept]
-    hebrew = tables.word["Hebrew_Letter"][inner]
-    if hebrew.any():
+    attached = joins.attached
+    if _occur(kinds, tables.words("Hebrew_Letter", "Katakana")):
+        inner = kinds if attached is None else kinds[attached.kept]
+        hebrew = tables.word["Hebrew_Letter"][inner]
         after_hebrew = np.flatnonzero(hebrew[:-1] & tables.word["Single_Quote"][inner[1:]])
         joins.joined[after_hebrew] = True
         joins.tokenish[after_hebrew + 1] = True
         _bind(joins, np.flatnonzero(hebrew[:-2] & tables.word["Double_Quote"][inner[1:-1]] & hebrew[2:]) + 1)
-    katakana = tables.word["Katakana"][inner]
-    if katakana.any():
+        katakana = tables.word["Katakana"][inner]
         neither = ~(katakana | tables.word["ExtendNumLet"][inner])
         joins.joined &= ~((katakana[:-1] & neither[1:]) | (neither[:-1] & katakana[1:]))
-    joiners = np.flatnonzero(tables.word["ZWJ"][kinds[:-1]] & tables.pictographic[kinds[1:]])
-    places = np.searchsorted(kept, joiners + 1)
-    joins.joined[places - 1] = True
-    # A few attached marks are letters by category (halfwidth voicing marks): they make their segment a word.
-    letters = tables.spoken[kinds]
-    letters[kept] = False
-    marks = np.flatnonzero(letters)
-    joins.tokenish[np.searchsorted(kept, marks) - 1] = True
-    if len(places) or len(marks):
+    unequal = 0
+    if _occur(kinds, tables.word["ZWJ"]):
+        pictographs = np.flatnonzero(tables.word["ZWJ"][kinds[:-1]] & tables.pictographic[kinds[1:]]) + 1
+        places = pictographs if attached is None else attached.inner(pictographs)
+        joins.joined[places - 1] = True
+        unequal += len(places)
+    if attached is not None:
+        # A few attached marks are letters by category (halfwidth voicing marks): they make their segment a word.
+        marks = attached.positions[tables.spoken[kinds[attached.positions]]]
+        joins.tokenish[attached.inner(marks) - 1] = True
+        unequal += len(marks)
+    if unequal:
         joins.spread()
 
 
@@ -148,11 +149,10 @@ def word_tokens(kinds: Kinds, hyphens: Int64Array | None = None) -> tuple[Int64A
         bare = np.flatnonzero((joins.flags & BARE) != 0)
         places = np.searchsorted(starts, bare)
         suspects = places[np.append(starts, -1)[places] == bare]
-    if joins.kept is not None:
-        starts, ends = joins.kept[starts], np.append(joins.kept, len(kinds))[ends]
+    if joins.attached is not None:
+        starts, ends = joins.attached.outer(starts), joins.attached.outer(ends)
     if len(suspects):
-        spoken = classes().spoken[kinds]
-        silent = suspects[~any_within(spoken, starts[suspects], ends[suspects])]
+        silent = suspects[~any_within(kinds, classes().spoken, starts[suspects], ends[suspects])]
         starts, ends = np.delete(starts, silent), np.delete(ends, silent)
     return starts, ends
 
@@ -164,7 +164,7 @@ def word_boundaries(text: str) -> Int64Array:
     tables = classes()
     kinds = kinds_of(code_points(text))
     joins = _join(kinds, translated(kinds, tables.word_flags), None)
-    kept = np.arange(len(kinds)) if joins.kept is None else joins.kept
+    kept = np.arange(len(kinds)) if joins.attached is None else np.flatnonzero(joins.attached.kept)
     inner = kinds[kept]
     joined = joins.joined
     joined |= tables.word["CR"][inner[:-1]] & tables.word["LF"][inner[1:]]  # WB3

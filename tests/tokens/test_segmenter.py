@@ -87,6 +87,20 @@ def test_text_without_a_word(text: str) -> None:
     assert (len(found), len(found.sentences), len(found.paragraphs), found.closed) == (0, 0, 0, True)
 
 
+@pytest.mark.parametrize(
+    "text",
+    [
+        *["!\u200d\u2139", "x\u200d\u24c2", "\u200d\u2139 a", "\n\u200d\u2139", "a!\u200d\u2764\u200d\u2139 b"],
+        *["!\uff9e", "\uff9e", "\n\uff9e\u0301 x", "!\u0301\uff9e-a", "\u24c2 \u24c2\u24c2 _\u02d7", "_\u0301_a"],
+        *["カ-a", "a-\u0301b", "\u0301-a", "カ_a", "א'", 'א"', 'א"\u0301א', 'a"b', "א'-b", "..\u00ad.\u00ad"],
+    ],
+)
+def test_rare_meetings_of_rules(text: str) -> None:
+    """Joiners before letter-like pictographs, marks that are letters, segments of connectors alone."""
+    found = segment(text, addresses="split")
+    assert list(zip(found.starts.tolist(), found.ends.tolist(), strict=True)) == slow_rules.words(text, hyphens=True)
+
+
 def test_hyphens() -> None:
     text = "well-known x\u2010y a\u2011b 1914-1918 a--b -c d- e\u2013f re-\u00adtry"
     kept = ["well-known", "x\u2010y", "a\u2011b", "1914-1918", "a", "b", "c", "d", "e", "f", "re-\u00adtry"]
