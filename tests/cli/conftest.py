@@ -61,7 +61,12 @@ def process(*arguments: object, stdin: bytes = b"", folder: Path | None = None) 
     return Ran(done.returncode, done.stdout.decode(), done.stderr.decode())
 
 
+NOTES = ("writer", "pending_inputs", "pending_read")
+"""Facts that say who wrote last and what an interrupted change was about: no part of what a store holds."""
+
+
 def contents(store: Path) -> list[str]:
-    """Everything a store holds, as SQL, but for who last wrote to it."""
-    with closing(sqlite3.connect(f"file:{store}?mode=ro", uri=True)) as connection:
-        return [line for line in connection.iterdump() if "INSERT INTO \"facts\" VALUES('writer'" not in line]
+    """Everything a store holds, as SQL."""
+    notes = tuple(f"INSERT INTO \"facts\" VALUES('{name}'" for name in NOTES)
+    with closing(sqlite3.connect(f"{store.as_uri()}?mode=ro", uri=True)) as connection:
+        return [line for line in connection.iterdump() if not line.startswith(notes) and "sqlite_sequence" not in line]
