@@ -99,10 +99,12 @@ def filtered(question: Question, table: PairTable, min_count: int, min_word_coun
 
 
 def score(measure: str, table: PairTable) -> FloatArray:
-    """The ranking value of each row."""
+    """The ranking value of each row, highest first: p-values and errors are negated."""
     if measure == "joint":
         return table.joint.astype(np.float64)
-    return MEASURES[measure].compute(*table.arguments)
+    chosen = MEASURES[measure]
+    values = chosen.compute(*table.arguments)
+    return -values if chosen.strongest == "lowest" else values
 
 
 def text_ranks(question: Question) -> Int64Array:
