@@ -26,7 +26,7 @@ _CODED_WORD: Final = 8
 _PLAIN_WORD: Final = 3
 _PART: Final = 1 << 15
 _MASKS: Final = np.array([(1 << (8 * n)) - 1 for n in range(_CODED_WORD + 1)], np.uint64)
-_BYTES_A_STRING: Final = 120
+_BYTES_A_STRING: Final = 160
 """A short string, its number and its share of the dict, roughly."""
 
 

@@ -147,12 +147,12 @@ def test_no_sentence_ends_inside_an_address() -> None:
 def test_crafted_addresses_take_linear_time() -> None:
     pieces = [",www.", "a://", "://", "x@", "@", "a@b.", "(www.", "a.b-c@d", "http://)"]
     for piece in [*pieces, *(f"{left}{right}" for left in pieces for right in pieces)]:
-        text = piece * (40_000 // len(piece))
+        text = piece * (20_000 // len(piece))
         began = time.process_time()
         segment(text)
         segment(text + "://x")
         # Quadratic behaviour would take minutes.
-        assert time.process_time() - began < 3, piece
+        assert time.process_time() - began < 2, piece
 
 
 def test_abbreviations() -> None:
