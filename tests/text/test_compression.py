@@ -49,7 +49,7 @@ def test_members_follow_each_other(tmp_path: Path, extension: str) -> None:
 
 
 @pytest.mark.parametrize("extension", PACKED)
-@pytest.mark.parametrize("beyond", [-1, 0, 1, 100_000])
+@pytest.mark.parametrize("beyond", [0, 100_000])
 def test_members_larger_than_a_step_follow_each_other(tmp_path: Path, extension: str, beyond: int) -> None:
     text = prose(6, compression.STEP)[: compression.STEP + beyond].encode()[: compression.STEP + beyond]
     member = PACKERS[extension](text)
@@ -78,7 +78,7 @@ def test_zstd_skippable_frames_are_skipped(tmp_path: Path) -> None:
 def test_cut_off_anywhere_is_an_error_that_names_the_file(tmp_path: Path, extension: str) -> None:
     whole = PACKERS[extension](prose(2, 400).encode())
     path = tmp_path / f"cut.txt{extension}"
-    for length in range(1, len(whole)):
+    for length in range(1, len(whole), 3):
         path.write_bytes(whole[:length])
         with pytest.raises(DataError, match=r"cut\.txt\.\w+: .*(cut off before their end|holds something else)"):
             read_texts(path)
@@ -163,9 +163,9 @@ def _bomb(extension: str, size: int) -> bytes:
 
 @pytest.mark.parametrize("extension", [".gz", ".bz2", ".xz", ".zst"])
 def test_bombs_are_refused_in_little_memory(tmp_path: Path, extension: str, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(compression, "RATIO_APPLIES_FROM", 2**23)
+    monkeypatch.setattr(compression, "RATIO_APPLIES_FROM", 2**22)
     path = tmp_path / f"bomb.txt{extension}"
-    path.write_bytes(_bomb(extension, 2**26))
+    path.write_bytes(_bomb(extension, 2**25))
     tracemalloc.start()
     try:
         with pytest.raises(DataError, match=r"bomb\.txt\.\w+: .*more than 250 times their size, as a decompression"):
@@ -173,7 +173,7 @@ def test_bombs_are_refused_in_little_memory(tmp_path: Path, extension: str, monk
         peak = tracemalloc.get_traced_memory()[1]
     finally:
         tracemalloc.stop()
-    assert peak < 2**25
+    assert peak < 2**24
 
 
 def test_the_ratio_of_ordinary_repetition_is_allowed(tmp_path: Path) -> None:
