@@ -7,10 +7,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from colloc.counts.feeding import feed
+from colloc.counts.feeding import Fork, feed
+from colloc.counts.grouping import GroupedMargins, MarginSink, deal
 from colloc.counts.placing import DocumentPlaces, document_places
 from colloc.counts.selection import slice_selection
 from colloc.counts.sieving import Sieve, Wanted, wanted_pairs
+from colloc.counts.spans import apply_layer
 from colloc.records import Int64Array, UInt32Array, UInt64Array
 from colloc.settings import TallySpec
 from colloc.store.connection import Store
@@ -62,19 +64,62 @@ def occurrences(
         Each pair and document at most once over the whole iteration. The counts of a pair over all documents add up
         to its cell, or cells, of the tally.
     """
-    if not len(first):
-        return
-    wanted = wanted_pairs(first, second, term_count(store, spec.layer), directed=directed and spec.kind != "unit")
-    selection = slice_selection(store, spec.where)
-    documents = document_places(store, selection)
-    sieve = Sieve(wanted)
-    gathered = _Gathered()
-    labels = wanted.labels[layer_map(store, spec.layer)]
-    for document in feed(store, spec, selection, documents, labels, sieve):
-        found = gathered.add(sieve.take(), document)
-        if found is not None:
-            yield _given(found, wanted, documents)
-    yield _given(gathered.rest(), wanted, documents)
+    yield from CandidatePass(store, spec, first, second, directed=directed)
+
+
+class CandidatePass:
+    """One pass over the stream: iterate to get the occurrences; afterwards the margins of groups are there.
+
+    Parameters
+    ----------
+    groups : int
+        How many groups the documents are dealt into; 0: no margins are wanted.
+
+    Attributes
+    ----------
+    documents : DocumentPlaces
+        The documents of the slice.
+    group_of : int64 array, shape (n_documents,)
+    first, second : int64 arrays, shape (n,)
+        The columns of the margins that belong to the given pairs.
+    margins : GroupedMargins
+        Once the iteration has come to its end.
+    """
+
+    def __init__(
+        self,
+        store: Store,
+        spec: TallySpec,
+        first: UInt32Array,
+        second: UInt32Array,
+        *,
+        directed: bool,
+        groups: int = 0,
+    ) -> None:
+        self._store, self._spec, self._n_given = store, spec, len(first)
+        n_terms = term_count(store, spec.layer)
+        self._wanted = wanted_pairs(first, second, n_terms, directed=directed and spec.kind != "unit")
+        self._selection = slice_selection(store, spec.where)
+        self.documents = document_places(store, self._selection)
+        self.group_of = deal(len(self.documents), groups or 1)
+        self.first, self.second = (self._wanted.labels[terms].astype(np.int64) for terms in (first, second))
+        self.margins: GroupedMargins | None = None
+        self._with_margins = groups > 0
+
+    def __iter__(self) -> Iterator[Occurrences]:
+        if not self._n_given:
+            return
+        wanted, documents = self._wanted, self.documents
+        sieve, margins = Sieve(wanted), MarginSink(self._spec, self.group_of, wanted.n_labels)
+        sink = Fork([sieve, margins]) if self._with_margins else sieve
+        labels = apply_layer(wanted.labels, layer_map(self._store, self._spec.layer))
+        gathered = _Gathered()
+        for document in feed(self._store, self._spec, self._selection, documents, labels, sink):
+            found = gathered.add(sieve.take(), document)
+            if found is not None:
+                yield _given(found, wanted, documents)
+        self.margins = margins.finish()
+        yield _given(gathered.rest(), wanted, documents)
 
 
 class _Gathered:

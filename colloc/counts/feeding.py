@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from typing import Protocol
 
 import numpy as np
 
-from colloc.counts.accumulating import PairSink
+from colloc.counts.accumulating import BoolArray, PairSink, Places
 from colloc.counts.placing import DocumentPlaces
 from colloc.counts.positions import add_positions
 from colloc.counts.selection import Selection
@@ -24,8 +24,18 @@ from colloc.store.connection import Store
 class PlacedSink(PairSink, Protocol):
     """A sink that is told before each `load` which tokens they are."""
 
-    def place(self, documents: Int64Array, begin: int, stop: int) -> None:
-        """Index of the document of every token; those from ``begin`` up to ``stop`` are counted in this load."""
+    def place(self, documents: Int64Array, begin: int, stop: int, units: Int64Array) -> None:
+        """Say what is loaded next.
+
+        Parameters
+        ----------
+        documents : int64 array
+            Index of the document of every token.
+        begin, stop : int
+            The tokens that are counted in this load; those around them are there to be looked at.
+        units : int64 array
+            Where units are counted: the document of each unit. Tokens then stand for different terms of a unit.
+        """
 
 
 def feed(
@@ -60,20 +70,42 @@ def feed(
         stretches = read_stretches(store, labels, selection, spec.inside, 0, stop)
         for terms, starts, places in whole_units(stretches, 0, stop):
             units = documents.of(places)
-            sink.place(np.repeat(units, np.diff(starts, append=len(terms))), 0, len(terms))
+            sink.place(np.repeat(units, np.diff(starts, append=len(terms))), 0, len(terms), units)
             add_units(terms, starts, sink)
             yield int(units[-1]) if len(units) else 0
         return
     back, ahead = reach(spec)
     stretches = read_stretches(store, labels, selection, spec.inside, 0, stop)
-    place = 0
+    place, nothing = 0, np.empty(0, np.int64)
     for span in window_spans(stretches, 0, stop, back, ahead, PIECE):
         begin = place - span.context
         end = begin + len(span.terms)
-        sink.place(documents.of_stretch(begin, end), span.context, len(span.terms) - span.ahead)
+        sink.place(documents.of_stretch(begin, end), span.context, len(span.terms) - span.ahead, nothing)
         if spec.kind == "positions":
             add_positions(span, spec.left, spec.right, sink)
         else:
             add_windows(span, spec.left, spec.right, sink)
         place = end - span.ahead
         yield int(documents.of(np.array([place - 1]))[0])
+
+
+class Fork:
+    """Hands everything on to several sinks."""
+
+    def __init__(self, sinks: Sequence[PlacedSink]) -> None:
+        self._sinks = sinks
+
+    def place(self, documents: Int64Array, begin: int, stop: int, units: Int64Array) -> None:
+        """See `PlacedSink.place`."""
+        for sink in self._sinks:
+            sink.place(documents, begin, stop, units)
+
+    def load(self, terms: UInt32Array) -> None:
+        """See `PairSink.load`."""
+        for sink in self._sinks:
+            sink.load(terms)
+
+    def pair(self, first: Places, second: Places, valid: BoolArray | None = None) -> None:
+        """See `PairSink.pair`."""
+        for sink in self._sinks:
+            sink.pair(first, second, valid)

@@ -80,7 +80,7 @@ class Sieve:
         self._flags[(one * _SPREAD + wanted.keys.astype(np.uint32)) & self._mask] = True
         self._found: list[UInt64Array] = []
 
-    def place(self, documents: Int64Array, begin: int, stop: int) -> None:
+    def place(self, documents: Int64Array, begin: int, stop: int, units: Int64Array) -> None:
         """Say which document each of the tokens is in that `load` is given next."""
         self._documents = documents
 
