@@ -31,7 +31,9 @@ class Point:
 
 
 def exponent(sizes: Sequence[float], seconds: Sequence[float]) -> float:
-    """Slope of log seconds over log size by least squares: 1 is linear."""
+    """Slope of log seconds over log size by least squares: 1 is linear. ValueError where a time is not positive."""
+    if min(seconds) <= 0:
+        raise ValueError("a text that builds as fast as three words do is too small to measure growth with")
     slope: float = np.polyfit(np.log(sizes), np.log(seconds), 1)[0]
     return float(slope)
 

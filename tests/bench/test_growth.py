@@ -20,6 +20,11 @@ def test_exponent_of_a_power_law() -> None:
     assert exponent([p.tokens for p in POINTS], [p.seconds for p in POINTS]) == pytest.approx(1.1)
 
 
+def test_times_that_are_all_start_up_are_refused() -> None:
+    with pytest.raises(ValueError, match="too small"):
+        exponent([1, 2, 3], [0.1, -0.1, 0.2])
+
+
 def test_the_drawing_is_svg_and_always_the_same(tmp_path: Path) -> None:
     first, second = tmp_path / "a.svg", tmp_path / "b.svg"
     for path in (first, second):
