@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 import sqlite3
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from typing import Any
 
 import numpy as np
@@ -95,17 +95,23 @@ def document_count(store: Store) -> int:
     return int(store.value("SELECT count(*) FROM documents WHERE id < ?", (visible_end(store),)))
 
 
-def remove_document(store: Store, number: int) -> None:
-    """Delete a document: its row, its text and its tokens, overwritten on the disk as well.
+def remove_documents(store: Store, numbers: Sequence[int]) -> None:
+    """Delete documents: their rows, texts and tokens, overwritten on the disk as well.
 
     Tallies and word counts are the caller's to change first, while the tokens can still be read.
     """
-    row = document(store, number)
+    rows = [document(store, number) for number in numbers]
     with store.transaction():
-        stream.blank_document(store, number)
-        texts.blank_text(store, row.first_character, row.first_character + row.n_characters)
-        store.execute("DELETE FROM content_hashes WHERE document = ?", (number,))
-        store.execute("DELETE FROM documents WHERE id = ?", (number,))
+        stream.blank_documents(store, numbers)
+        texts.blank_texts(store, ((row.first_character, row.first_character + row.n_characters) for row in rows))
+        gone = [(number,) for number in numbers]
+        store.execute_many("DELETE FROM content_hashes WHERE document = ?", gone)
+        store.execute_many("DELETE FROM documents WHERE id = ?", gone)
+
+
+def remove_document(store: Store, number: int) -> None:
+    """Delete one document; see :func:`remove_documents`."""
+    remove_documents(store, [number])
 
 
 def _as_tuple(row: DocumentRow) -> tuple[Any, ...]:

@@ -7,6 +7,8 @@ before it ended. A removed document keeps its place, overwritten with NO_TERM.
 from __future__ import annotations
 
 import struct
+from bisect import bisect_left, bisect_right
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -164,31 +166,45 @@ def block_types(store: Store, number: int) -> UInt32Array:
     return packing.unpack_as(store.value("SELECT types FROM blocks WHERE id = ?", (number,)), np.uint32, what)
 
 
-def blank_document(store: Store, number: int) -> None:
-    """Overwrite the tokens of a document with NO_TERM, in every block that holds some."""
-    row = store.row("SELECT first_token, n_tokens FROM documents WHERE id = ?", (number,))
-    if row is None:
-        raise UsageError(f"{store.path}: no document {number}")
-    start, stop = row[0], row[0] + row[1]
-    sql = "SELECT id FROM blocks WHERE first_token <= ? AND first_token + n_tokens >= ? ORDER BY id"
-    for (block_number,) in store.rows(sql, (stop, start)):
-        block = read_block(store, block_number)
-        first = max(start - block.first_token, 0)
-        last = min(stop - block.first_token, len(block.tokens))
-        numbers = block.document_numbers.copy()
-        numbers[numbers == number] = -1
-        tokens = block.tokens.copy()
-        tokens[first : max(last, first)] = NO_TERM
-        store.execute(
-            "UPDATE blocks SET types = ?, document_numbers = ?, tokens = ? WHERE id = ?",
-            (
-                packing.pack(_present(tokens), ascending=True),
-                packing.pack(numbers, compress=True),
-                packing.pack(tokens),
-                block_number,
-            ),
-        )
-        _blank_columns(store, block_number, first, max(last, first))
+def blank_documents(store: Store, numbers: Sequence[int]) -> None:
+    """Overwrite the tokens of documents with NO_TERM; each block that holds some is rewritten once."""
+    places = {}
+    for number in numbers:
+        row = store.row("SELECT first_token, first_token + n_tokens FROM documents WHERE id = ?", (number,))
+        if row is None:
+            raise UsageError(f"{store.path}: no document {number}")
+        places[number] = row
+    by_start = sorted((start, stop, number) for number, (start, stop) in places.items())
+    starts = [start for start, _, _ in by_start]
+    stops = [stop for _, stop, _ in by_start]  # ascending as well: documents do not overlap
+    for head in block_heads(store):
+        # Borders belong to both sides: a document without tokens is listed in one of them.
+        here = slice(bisect_left(stops, head.first_token), bisect_right(starts, head.first_token + head.n_tokens))
+        if by_start[here]:
+            _blank_block(store, head.number, by_start[here])
+
+
+def _blank_block(store: Store, number: int, gone: Sequence[tuple[int, int, int]]) -> None:
+    """Blank documents, given as (start, stop, number), in one block."""
+    block = read_block(store, number)
+    blank = np.zeros(len(block.tokens), dtype=bool)
+    for start, stop, _ in gone:
+        blank[max(start - block.first_token, 0) : max(stop - block.first_token, 0)] = True
+    numbers = np.where(np.isin(block.document_numbers, [one for _, _, one in gone]), -1, block.document_numbers)
+    tokens = np.where(blank, NO_TERM, block.tokens)
+    store.execute(
+        "UPDATE blocks SET types = ?, document_numbers = ?, tokens = ? WHERE id = ?",
+        (
+            packing.pack(_present(tokens), ascending=True),
+            packing.pack(numbers, compress=True),
+            packing.pack(tokens),
+            number,
+        ),
+    )
+    for name in column_names(store, number):
+        values = read_column(store, number, name).copy()
+        values[blank] = 0
+        append_column(store, number, name, values)
 
 
 def append_column(store: Store, block: int, name: str, array: NDArray[Any]) -> None:
@@ -208,13 +224,6 @@ def read_column(store: Store, block: int, name: str) -> NDArray[Any]:
 def column_names(store: Store, block: int) -> list[str]:
     """Columns of annotation that a block has, sorted."""
     return [name for (name,) in store.rows("SELECT name FROM block_columns WHERE block = ? ORDER BY name", (block,))]
-
-
-def _blank_columns(store: Store, block: int, first: int, last: int) -> None:
-    for name in column_names(store, block):
-        values = read_column(store, block, name).copy()
-        values[first:last] = 0
-        append_column(store, block, name, values)
 
 
 def _packed_offsets(block: Block) -> tuple[bytes, ...]:

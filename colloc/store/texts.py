@@ -5,7 +5,7 @@ Characters are numbered through the whole store; block borders mean nothing.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from typing import Any
 
 from colloc.errors import StoreDamagedError, UsageError
@@ -14,11 +14,6 @@ from colloc.store.database import packing
 
 BLOCK_CHARACTERS = 131_072
 _BLANK = " "
-_IN_REACH = (
-    "SELECT first_character, n_characters, data FROM text_blocks WHERE first_character < ? AND first_character >= ?"
-)
-
-
 PackedText = list[tuple[int, int, bytes]]
 """Offset, length and packed bytes of the blocks of a stretch of text."""
 
@@ -93,22 +88,38 @@ def read_text(store: Store, start: int, stop: int) -> str:
     return "".join(pieces)
 
 
-def blank_text(store: Store, start: int, stop: int) -> None:
-    """Overwrite the characters start..stop-1 with spaces, so that all others keep their numbers."""
-    for first, length, data in _blocks(store, start, stop):
+def blank_texts(store: Store, spans: Iterable[tuple[int, int]]) -> None:
+    """Overwrite the characters start..stop-1 of each span with spaces, so that all others keep their numbers.
+
+    Each block is rewritten once.
+    """
+    by_block: dict[int, list[tuple[int, int]]] = {}
+    for start, stop in spans:
+        for first, _, _ in _blocks(store, start, stop, column="NULL"):
+            by_block.setdefault(first, []).append((start, stop))
+    for first, here in sorted(by_block.items()):
+        length, data = store.row("SELECT n_characters, data FROM text_blocks WHERE first_character = ?", (first,))
+        pieces = []
         text = _decoded(store, first, length, data)
-        begin, end = max(start - first, 0), min(stop - first, length)
-        blanked = text[:begin] + _BLANK * (end - begin) + text[end:]
-        packed = packing.pack_bytes(_encoded(blanked))
+        position = 0
+        for start, stop in sorted(here):
+            begin, end = max(start - first, position), min(stop - first, length)
+            pieces += [text[position:begin], _BLANK * (end - begin)]
+            position = end
+        packed = packing.pack_bytes(_encoded("".join([*pieces, text[position:]])))
         store.execute("UPDATE text_blocks SET data = ? WHERE first_character = ?", (packed, first))
 
 
-def _blocks(store: Store, start: int, stop: int) -> list[Any]:
-    """The blocks that hold any of the characters start..stop-1, in order."""
+def _blocks(store: Store, start: int, stop: int, column: str = "data") -> list[Any]:
+    """First character, length and a column of the blocks that hold any of the characters start..stop-1, in order."""
     if stop <= start:
         return []
     before = store.value("SELECT max(first_character) FROM text_blocks WHERE first_character <= ?", (start,))
-    rows = store.rows(f"{_IN_REACH} ORDER BY first_character", (stop, start if before is None else before))
+    sql = (
+        f"SELECT first_character, n_characters, {column} FROM text_blocks "
+        "WHERE first_character < ? AND first_character >= ? ORDER BY first_character"
+    )
+    rows = store.rows(sql, (stop, start if before is None else before))
     return [row for row in rows if row[0] + row[1] > start]
 
 

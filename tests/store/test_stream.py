@@ -79,7 +79,7 @@ def test_any_text_survives(tmp_path: Path, pieces: list[str], span: tuple[int, i
             assert texts.read_text(store, start, stop) == whole[start:stop]
             with pytest.raises(StoreDamagedError, match="is missing"):
                 texts.read_text(store, 0, len(whole) + 1)
-            texts.blank_text(store, start, stop)
+            texts.blank_texts(store, [(start, stop)])
             blanked = whole[:start] + " " * (stop - start) + whole[stop:]
             assert texts.read_text(store, 0, len(whole)) == blanked
         else:
@@ -180,7 +180,7 @@ def test_a_document_over_several_blocks_and_half_a_block(tmp_path: Path) -> None
             row = DocumentRow(number, f"d{number}", 0, number, first, stop - first, 0, 0)
             documents.append_documents(store, [row])
         documents_before = documents.next_document(store)
-        stream.blank_document(store, 1)
+        stream.blank_documents(store, [1])
         whole = np.concatenate([stream.read_block(store, block).tokens for block in range(3)])
         assert np.flatnonzero(whole == NO_TERM).tolist() == list(range(5, 29))
         column = np.concatenate([stream.read_column(store, block, "head") for block in range(3)])
@@ -204,3 +204,45 @@ def test_sources(tmp_path: Path) -> None:
         assert sources.find_source(store, "a.txt") == expected
         assert [row.number for row in sources.source_list(store)] == [0, 1]
         assert sources.find_source(store, "c.txt") is None
+
+
+@given(
+    lengths=st.lists(st.integers(0, 7), min_size=1, max_size=9),
+    size=st.integers(1, 9),
+    data=st.data(),
+)
+@settings(max_examples=25, suppress_health_check=[HealthCheck.function_scoped_fixture])
+def test_removing_many_at_once(tmp_path: Path, lengths: list[int], size: int, data: st.DataObject) -> None:
+    """Documents of any length, none included, over blocks of any size: what stays is what nobody removed."""
+    ends = np.cumsum(lengths)
+    begins = ends - lengths
+    gone = data.draw(st.lists(st.sampled_from(range(len(lengths))), unique=True))
+    text = "".join(chr(97 + number) * length for number, length in enumerate(lengths))
+    with empty_store(tmp_path) as store:
+        zero = np.zeros(0, dtype=np.int64)
+        for block, first in enumerate(range(0, int(ends[-1]), size)):
+            tokens = np.arange(first, min(first + size, int(ends[-1])), dtype=np.uint32)
+            numbers = np.flatnonzero((begins <= first + len(tokens)) & (ends >= first))
+            starts = np.clip(begins[numbers] - first, 0, len(tokens))
+            anchors = Anchors(zero, zero)
+            stream.append_block(store, stream.Block(block, first, tokens, zero, zero, starts, numbers, False, anchors))
+            texts.append_text(store, first, text[first : first + size])
+        rows = [
+            DocumentRow(number, f"d{number}", 0, number, begin, length, begin, length)
+            for number, (begin, length) in enumerate(zip(begins.tolist(), lengths, strict=True))
+        ]
+        documents.append_documents(store, rows)
+        documents.remove_documents(store, gone)
+        blanked = {place for number in gone for place in range(begins[number], ends[number])}
+        position = 0
+        for head in stream.block_heads(store):
+            block_read = stream.read_block(store, head.number)
+            assert not set(gone) & set(block_read.document_numbers.tolist())
+            for token in block_read.tokens.tolist():
+                assert token == (int(NO_TERM) if position in blanked else position)
+                position += 1
+        assert position == ends[-1]
+        if text:
+            expected = "".join(" " if place in blanked else letter for place, letter in enumerate(text))
+            assert texts.read_text(store, 0, len(text)) == expected
+        assert store.value("SELECT count(*) FROM documents") == len(lengths) - len(gone)
