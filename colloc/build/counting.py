@@ -26,8 +26,7 @@ def count_removed_documents(store: Store, numbers: Int64Array, limits: Resources
     """Count documents out of every table and take them out of the store, in one transaction."""
 
     def finish() -> None:
-        for number in numbers.tolist():
-            documents.remove_document(store, number)
+        documents.remove_documents(store, numbers.tolist())
         facts.next_generation(store)
 
     _count(store, numbers, -1, limits, progress, finish)
