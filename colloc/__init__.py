@@ -23,43 +23,43 @@ if typing.TYPE_CHECKING:
     from colloc.settings import ReadSettings as ReadSettings
     from colloc.settings import SegmentSettings as SegmentSettings
     from colloc.settings import TallySpec as TallySpec
-    from colloc.verbs import add as add
-    from colloc.verbs import around as around
-    from colloc.verbs import build as build
-    from colloc.verbs import check as check
-    from colloc.verbs import documents as documents
-    from colloc.verbs import documents_by as documents_by
-    from colloc.verbs import info as info
-    from colloc.verbs import measure as measure
-    from colloc.verbs import merge as merge
-    from colloc.verbs import open_store as open_store
-    from colloc.verbs import pairs as pairs
-    from colloc.verbs import remove as remove
-    from colloc.verbs import tallies as tallies
-    from colloc.verbs import tally as tally
-    from colloc.verbs import words as words
+    from colloc.verbs.asking import around as around
+    from colloc.verbs.asking import measure as measure
+    from colloc.verbs.asking import pairs as pairs
+    from colloc.verbs.asking import words as words
+    from colloc.verbs.keeping import check as check
+    from colloc.verbs.keeping import documents as documents
+    from colloc.verbs.keeping import documents_by as documents_by
+    from colloc.verbs.keeping import info as info
+    from colloc.verbs.keeping import tallies as tallies
+    from colloc.verbs.keeping import tally as tally
+    from colloc.verbs.making import add as add
+    from colloc.verbs.making import build as build
+    from colloc.verbs.making import merge as merge
+    from colloc.verbs.making import remove as remove
+    from colloc.verbs.opening import open_store as open_store
 
 _HOMES = {
     "Columns": "colloc.answers.columns",
     "ReadSettings": "colloc.settings",
     "SegmentSettings": "colloc.settings",
     "TallySpec": "colloc.settings",
-    "add": "colloc.verbs",
-    "around": "colloc.verbs",
-    "build": "colloc.verbs",
-    "check": "colloc.verbs",
-    "documents": "colloc.verbs",
-    "documents_by": "colloc.verbs",
+    "add": "colloc.verbs.making",
+    "around": "colloc.verbs.asking",
+    "build": "colloc.verbs.making",
+    "check": "colloc.verbs.keeping",
+    "documents": "colloc.verbs.keeping",
+    "documents_by": "colloc.verbs.keeping",
     "errors": "colloc",
-    "info": "colloc.verbs",
-    "measure": "colloc.verbs",
-    "merge": "colloc.verbs",
-    "open_store": "colloc.verbs",
-    "pairs": "colloc.verbs",
-    "remove": "colloc.verbs",
-    "tallies": "colloc.verbs",
-    "tally": "colloc.verbs",
-    "words": "colloc.verbs",
+    "info": "colloc.verbs.keeping",
+    "measure": "colloc.verbs.asking",
+    "merge": "colloc.verbs.making",
+    "open_store": "colloc.verbs.opening",
+    "pairs": "colloc.verbs.asking",
+    "remove": "colloc.verbs.making",
+    "tallies": "colloc.verbs.keeping",
+    "tally": "colloc.verbs.keeping",
+    "words": "colloc.verbs.asking",
 }
 """Where each public name lives; nothing is loaded before it is asked for."""
 
@@ -85,7 +85,7 @@ class _Front(types.ModuleType):
     """Keeps a verb from being replaced by a package of the same name when that is imported (``colloc.build``)."""
 
     def __setattr__(self, name: str, value: object) -> None:
-        if isinstance(value, types.ModuleType) and _HOMES.get(name) == "colloc.verbs":
+        if isinstance(value, types.ModuleType) and _HOMES.get(name, "").startswith("colloc.verbs."):
             return
         super().__setattr__(name, value)
 

@@ -117,9 +117,7 @@ def _numbers(values: NDArray[Any], name: str) -> FloatArray:
 
 def _number(value: Any) -> float:
     """The number a cell holds, or nan; ``float`` alone would take True and "1_000"."""
-    if isinstance(value, bool) or (isinstance(value, str) and "_" in value):
-        return math.nan
     try:
-        return float(value)
+        return math.nan if value is True or value is False or (type(value) is str and "_" in value) else float(value)
     except (TypeError, ValueError, OverflowError):
         return math.nan

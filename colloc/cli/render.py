@@ -5,13 +5,15 @@ from __future__ import annotations
 import json
 import math
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any, BinaryIO, Protocol
 
-from colloc.cli.spreadsheets import defuse
+from colloc.cli.spreadsheets import defuse, defuse_all
 from colloc.errors import MissingExtraError
 
 if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
     from colloc.answers.columns import Columns
 
 
@@ -54,17 +56,19 @@ class DelimitedWriter:
         self._begun = False
 
     def write(self, part: Columns) -> None:
-        lines = [] if self._begun else [self._line([defuse(name) for name in part.names])]
+        heading = [] if self._begun else [[defuse(name)] for name in part.names]
         self._begun = True
-        lines += map(self._line, zip(*[_cells(array.tolist()) for array in part.data.values()], strict=True))
-        self._stream.write("".join(lines).encode())
+        columns = [defuse_all(values) if text else values for values, text in map(_cells, part.data.values())]
+        if heading:
+            columns = [head + column for head, column in zip(heading, columns, strict=True)]
+        lines = map(self._delimiter.join, zip(*map(self._quoted, columns), strict=True))
+        self._stream.write("".join([f"{line}\n" if line else '""\n' for line in lines]).encode())
 
-    def _line(self, cells: Sequence[str]) -> str:
+    def _quoted(self, cells: list[str]) -> list[str]:
         # Not csv.writer: with line feeds as row ends it leaves a carriage return inside a cell unquoted.
-        line = self._delimiter.join(
-            [f'"{cell.replace(_QUOTE, _QUOTE * 2)}"' if self._special(cell) else cell for cell in cells]
-        )
-        return f"{line}\n" if line else '""\n'
+        if not self._special("\0".join(cells)):
+            return cells
+        return [f'"{cell.replace(_QUOTE, _QUOTE * 2)}"' if self._special(cell) else cell for cell in cells]
 
     def close(self) -> None:
         """Nothing is left to write."""
@@ -73,8 +77,18 @@ class DelimitedWriter:
 _QUOTE = '"'
 
 
-def _cells(values: list[Any]) -> list[str]:
-    return [defuse(value) if isinstance(value, str) else _cell(value) for value in values]
+def _cells(array: NDArray[Any]) -> tuple[list[str], bool]:
+    """A column's values as written, and whether they are text that might have to be defused."""
+    values = array.tolist()
+    kind = array.dtype.kind
+    if kind == "O":
+        if all(isinstance(value, str) for value in values):
+            return values, True
+        # A mixed column: only its texts are defused.
+        return [defuse(value) if isinstance(value, str) else _cell(value) for value in values], False
+    if kind == "f":
+        return ["" if text == "nan" else text for text in map(str, values)], False
+    return [_cell(value) for value in values] if kind == "b" else list(map(str, values)), False
 
 
 def _cell(value: Any) -> str:

@@ -12,6 +12,8 @@ import re
 
 _DANGEROUS = re.compile(r"'*[=+\-@\t\r]")
 _DEFUSED = re.compile(r"'+[=+\-@\t\r]")
+_ANY_DANGEROUS = re.compile(r"(?:\A|\0)'*[=+\-@\t\r]")
+_ANY_DEFUSED = re.compile(r"(?:\A|\0)'+[=+\-@\t\r]")
 _NUMBER = re.compile(r"[+-]?(?:\d+(?:\.\d*)?(?:[eE][+-]?\d+)?|\.\d+(?:[eE][+-]?\d+)?|inf|nan)")
 
 
@@ -33,3 +35,13 @@ def restore(cell: str) -> str:
     ['sea', '=A1', '-0.5', "'=A1", "'tis"]
     """
     return cell[1:] if _DEFUSED.match(cell) else cell
+
+
+def defuse_all(cells: list[str]) -> list[str]:
+    """:func:`defuse` for a column; one look at the whole column where nothing is to do, as nearly always."""
+    return [defuse(cell) for cell in cells] if _ANY_DANGEROUS.search("\0".join(cells)) else cells
+
+
+def restore_all(cells: list[str]) -> list[str]:
+    """:func:`restore` for a column."""
+    return [restore(cell) for cell in cells] if _ANY_DEFUSED.search("\0".join(cells)) else cells

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, BinaryIO, Literal
 
-from colloc.cli.spreadsheets import restore
+from colloc.cli.spreadsheets import restore, restore_all
 from colloc.errors import DataError, NoInputError
 
 TableFormat = Literal["auto", "csv", "tsv", "jsonl"]
@@ -150,7 +150,7 @@ def _delimited_rows(lines: _Lines, delimiter: str) -> Iterator[Rows]:
                     f"{lines.name}:{lines.number}: {len(row)} cells where the header has {len(names)}; "
                     f"quote cells that hold the separator"
                 )
-            rows.append([restore(cell) for cell in row])
+            rows.append(row)
             ends.append(lines.number)
             if len(rows) == ROWS_A_PART:
                 yield _transposed(lines.name, names, rows, ends)
@@ -168,7 +168,7 @@ def _check_names(names: list[str], lines: _Lines) -> None:
 
 def _transposed(name: str, names: list[str], rows: list[list[str]], ends: list[int]) -> Rows:
     columns = zip(*rows, strict=True) if rows else ((),) * len(names)
-    return Rows(name, {column: list(values) for column, values in zip(names, columns, strict=True)}, ends)
+    return Rows(name, {column: restore_all(list(values)) for column, values in zip(names, columns, strict=True)}, ends)
 
 
 def _json_rows(lines: _Lines) -> Iterator[Rows]:

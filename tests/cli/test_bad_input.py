@@ -16,6 +16,8 @@ from pathlib import Path
 
 import pytest
 
+from colloc.store.database.locking import WriterLock
+
 from .conftest import Run, contents, process
 
 TEXT = "Thick fog at dawn. The keeper trimmed the wick."
@@ -236,7 +238,8 @@ def test_a_store_cut_short_is_told(run: Run, store: Path) -> None:
     assert run("check", store).code in (1, 65)
 
 
-def test_a_locked_store_is_told(run: Run, store: Path, tmp_path: Path) -> None:
+def test_a_locked_store_is_told(run: Run, store: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    acquire = WriterLock.acquire
     code = (
         "import sys, time\nfrom colloc.store.opening import open_for_writing\n"
         "with open_for_writing(sys.argv[1], 'a long job'):\n    print('held', flush=True)\n    time.sleep(60)\n"
@@ -246,6 +249,7 @@ def test_a_locked_store_is_told(run: Run, store: Path, tmp_path: Path) -> None:
         assert holder.stdout is not None
         assert holder.stdout.readline() == b"held\n"
         assert run("words", store).code == 0, "readers work while a writer writes"
+        monkeypatch.setattr(WriterLock, "acquire", lambda lock, wait: acquire(lock, 0.2))
         ran = run("remove", store, "a.txt")
         assert ran.code == 75
         assert "a long job" in ran.err

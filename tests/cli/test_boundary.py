@@ -14,7 +14,8 @@ from pathlib import Path
 
 import pytest
 
-from colloc import errors, verbs
+from colloc import errors
+from colloc.verbs import asking
 
 from .conftest import COLLOC, Run, process
 
@@ -64,7 +65,7 @@ def test_errors_become_one_line_and_a_code(
     def failing(*_: object, **__: object) -> None:
         raise raised
 
-    monkeypatch.setattr(verbs, "words", failing)
+    monkeypatch.setattr(asking, "words", failing)
     ran = run("words", "store")
     assert ran.code == code
     assert ran.out == ""
@@ -80,7 +81,7 @@ def test_bugs_keep_their_traceback(run: Run, monkeypatch: pytest.MonkeyPatch, bu
     def failing(*_: object, **__: object) -> None:
         raise bug
 
-    monkeypatch.setattr(verbs, "words", failing)
+    monkeypatch.setattr(asking, "words", failing)
     with pytest.raises(type(bug)):
         run("words", "store")
 

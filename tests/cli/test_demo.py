@@ -9,6 +9,7 @@ import tomllib
 import zipfile
 from pathlib import Path
 
+import pytest
 import setuptools.build_meta
 
 from colloc.cli import reference
@@ -19,7 +20,8 @@ from .conftest import Run, process
 ROOT = Path(__file__).resolve().parents[2]
 
 
-def test_the_demo_runs_anywhere(tmp_path: Path) -> None:
+def test_the_demo_runs_anywhere(run: Run, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
     ran = process("demo", folder=tmp_path)
     assert ran.code == 0, ran.err
     lines = ran.out.splitlines()
@@ -32,7 +34,7 @@ def test_the_demo_runs_anywhere(tmp_path: Path) -> None:
     assert company[0] == ["fog", "thick"]
     for line in lines[lines.index("Next:") + 1 :]:
         command = [part.strip("'") for part in line.split()[1:]]
-        suggested = process(*command, folder=tmp_path)
+        suggested = run(*command)
         assert suggested.code == 0, (line, suggested.err)
         assert suggested.out.count("\n") > 2, line
 

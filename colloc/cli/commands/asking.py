@@ -34,10 +34,10 @@ def words(
     quiet: opt.QuietOption = False,
 ) -> None:
     """List words with their frequency, rate per million, documents and dispersion."""
-    from colloc import verbs
+    from colloc.verbs import asking
 
     target = Target(format, output, quiet, settings_beside)
-    answer = verbs.words(
+    answer = asking.words(
         store,
         layer=layer,
         where=where or (),
@@ -82,12 +82,12 @@ def pairs(
     What is not said about the counting is as the store was built; another window,
     layer or slice is counted from the store, and kept there for the next time.
     """
-    from colloc import verbs
+    from colloc.verbs import asking
 
     opt.check_ranking(measure)
     target = Target(format, output, quiet, settings_beside)
     with ProgressLine(quiet=quiet) as progress:
-        answer = verbs.pairs(
+        answer = asking.pairs(
             store,
             measure=measure,
             show=opt.shown_measures(show),
@@ -151,13 +151,13 @@ def around(
     quiet: opt.QuietOption = False,
 ) -> None:
     """List what stands around each word, strongest first; the word asked for is `first`."""
-    from colloc import verbs
+    from colloc.verbs import asking
 
     opt.check_ranking(measure)
     asked = opt.read_words(words or [], words_from)
     target = Target(format, output, quiet, settings_beside)
     with ProgressLine(quiet=quiet) as progress:
-        answer = verbs.around(
+        answer = asking.around(
             store,
             asked,
             side=side,

@@ -105,8 +105,8 @@ def build(
     A build that was stopped goes on with the same command. Without --window or
     --left and --right, words within 5 of each other are counted.
     """
-    from colloc import verbs
     from colloc.settings import ReadSettings, SegmentSettings
+    from colloc.verbs import making
 
     read = ReadSettings(
         format=input_format,
@@ -148,7 +148,7 @@ def build(
         print_lines(_estimate_lines(expected))
         return
     with ProgressLine(quiet=quiet) as progress:
-        done = verbs.build(
+        done = making.build(
             store,
             inputs,
             read=read,
@@ -243,7 +243,7 @@ def add(
     What is not said about reading is as it was when the store was built; an empty
     value, as in --meta-from-path '', switches a column, pattern or table off.
     """
-    from colloc import verbs
+    from colloc.verbs import making
 
     given = {
         "format": input_format,
@@ -258,9 +258,9 @@ def add(
         "max_unpacked": None if max_unpacked is None else size_in_bytes(max_unpacked),
     }
     changes: dict[str, Any] = {name: value or None for name, value in given.items() if value is not None}
-    read = dataclasses.replace(verbs.reading_settings(store), **changes) if changes else None
+    read = dataclasses.replace(making.reading_settings(store), **changes) if changes else None
     with ProgressLine(quiet=quiet) as progress:
-        done = verbs.add(
+        done = making.add(
             store,
             inputs,
             read=read,
@@ -284,10 +284,10 @@ def remove(
     quiet: opt.QuietOption = False,
 ) -> None:
     """Take documents out of a store, with their text, and count them out of its tables."""
-    from colloc import verbs
+    from colloc.verbs import making
 
     with ProgressLine(quiet=quiet) as progress:
-        done = verbs.remove(
+        done = making.remove(
             store,
             identifiers=identifiers or (),
             where=where or (),
@@ -308,10 +308,10 @@ def merge(
     quiet: opt.QuietOption = False,
 ) -> None:
     """Take the documents and counts of other stores into one."""
-    from colloc import verbs
+    from colloc.verbs import making
 
     with ProgressLine(quiet=quiet) as progress:
-        done = verbs.merge(store, others, jobs=jobs, memory=opt.memory_bytes(memory), temp=temp, progress=progress)
+        done = making.merge(store, others, jobs=jobs, memory=opt.memory_bytes(memory), temp=temp, progress=progress)
     _tell(done, quiet)
 
 

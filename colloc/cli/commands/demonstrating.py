@@ -30,7 +30,7 @@ def demo(
     The texts are invented: the logbooks of a lighthouse service and the notices of
     a ferry company, over several years.
     """
-    from colloc import verbs
+    from colloc.verbs import asking, making
 
     try:
         folder.mkdir(parents=True, exist_ok=True)
@@ -39,12 +39,12 @@ def demo(
     store = folder / STORE_NAME
     with as_file(files(CORPUS)) as corpus, ProgressLine(quiet=quiet) as progress:
         texts = sorted(str(path) for path in corpus.glob("*.jsonl"))
-        done = verbs.build(store, texts, progress=progress)
+        done = making.build(store, texts, progress=progress)
     target = Target(quiet=quiet)
     print_lines([f"{store}: {done.total_documents:,} documents, {done.pairs:,} pairs", "", "The strongest pairs:"])
-    deliver(verbs.pairs(store, limit=10), target, "pairs")
+    deliver(asking.pairs(store, limit=10), target, "pairs")
     print_lines(["", f"What stands around {WORD!r}:"])
-    deliver(verbs.around(store, [WORD], limit=10), target, "around")
+    deliver(asking.around(store, [WORD], limit=10), target, "around")
     print_lines(
         [
             "",

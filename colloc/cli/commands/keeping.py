@@ -26,24 +26,24 @@ def info(
     quiet: opt.QuietOption = False,
 ) -> None:
     """Tell what is inside a store: sizes, settings, layers, tables and sources."""
-    from colloc import verbs
+    from colloc.verbs import keeping
 
     target = Target(format, output, quiet, settings_beside)
     if by is not None and documents:
         raise UsageError("--by and --documents are two questions: ask one at a time")
     if by is not None:
-        deliver(verbs.documents_by(store, by), target, "info")
+        deliver(keeping.documents_by(store, by), target, "info")
     elif documents:
-        deliver_parts(verbs.documents(store), {"store": str(store)}, target, "info")
+        deliver_parts(keeping.documents(store), {"store": str(store)}, target, "info")
     elif format == "json":
         with opened(output) as stream:
-            stream.write((json.dumps(verbs.info(store), ensure_ascii=False, indent=2) + "\n").encode())
+            stream.write((json.dumps(keeping.info(store), ensure_ascii=False, indent=2) + "\n").encode())
         if settings_beside and output is not None:
             write_settings(output, {"store": str(store)}, "info")
     else:
         from colloc.answers.columns import Columns
 
-        rows = list(_flattened("", verbs.info(store)))
+        rows = list(_flattened("", keeping.info(store)))
         answer = Columns(
             {"item": [name for name, _ in rows], "value": [value for _, value in rows]}, {"store": str(store)}
         )
@@ -66,9 +66,9 @@ def _flattened(prefix: str, value: Any) -> Iterator[tuple[str, str]]:
 
 def check(store: opt.StoreArgument, quiet: opt.QuietOption = False) -> None:
     """Verify a store: pages, sums and sizes. The exit code is 1 where something is wrong."""
-    from colloc import verbs
+    from colloc.verbs import keeping
 
-    findings = verbs.check(store)
+    findings = keeping.check(store)
     if findings:
         print_lines(f"{store}: {finding}" for finding in findings)
         raise typer.Exit(1)
@@ -100,14 +100,14 @@ def tally(
 
     What is not said is as the store was built. The result is the list of tables kept.
     """
-    from colloc import verbs
+    from colloc.verbs import keeping
 
     target = Target(format, output, quiet, settings_beside)
     if listed and drop:
         raise UsageError("--list changes nothing: leave out --drop")
     if not listed:
         with ProgressLine(quiet=quiet) as progress:
-            verbs.tally(
+            keeping.tally(
                 store,
                 layer=layer,
                 window=window,
@@ -123,7 +123,7 @@ def tally(
                 memory=opt.memory_bytes(memory),
                 progress=progress,
             )
-    deliver(verbs.tallies(store), target, "tally")
+    deliver(keeping.tallies(store), target, "tally")
 
 
 def register(app: typer.Typer) -> None:
