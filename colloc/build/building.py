@@ -7,7 +7,6 @@ import json
 import os
 import platform
 import shutil
-import sqlite3
 import time
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
@@ -18,6 +17,7 @@ from colloc.build.reading import Progress, Read, Resources, read_into
 from colloc.errors import CannotCreateError, CollocError, DataError, InputOutputError
 from colloc.settings import DEFAULT_MEMORY, SMALLEST_MEMORY, Margins, ReadSettings, SegmentSettings, TallySpec
 from colloc.store import documents, facts, visibility
+from colloc.store.connection import sqlite_version
 from colloc.store.opening import Store, create, open_for_writing
 from colloc.store.scratch import scratch_folder
 from colloc.store.vocabulary import ensure_layer
@@ -177,7 +177,7 @@ def _description(
 def versions() -> dict[str, str]:
     """Versions of what made the numbers."""
     packages = {name: importlib.metadata.version(name) for name in ("colloc", "numpy", "regex")}
-    return {**packages, "python": platform.python_version(), "sqlite": sqlite3.sqlite_version}
+    return {**packages, "python": platform.python_version(), "sqlite": sqlite_version()}
 
 
 DISK_FOR_TEXT = 3.5

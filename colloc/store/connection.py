@@ -49,6 +49,11 @@ def translated(path: Path) -> Iterator[None]:
         raise ours from error
 
 
+def sqlite_version() -> str:
+    """Version of the SQLite library in use."""
+    return sqlite3.sqlite_version
+
+
 class Store:
     """An open store. All SQL of the package runs through these methods.
 

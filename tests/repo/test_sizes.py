@@ -7,7 +7,7 @@ from collections import Counter
 from .tree import package_modules, show, tracked_files
 
 LONGEST_MODULE = 450
-MOST_MODULES = 14
+MOST_MODULES = 24
 VAGUE = {"utils", "util", "helpers", "helper", "common", "core", "misc", "tools", "base"}
 LARGEST_FILE = 2 * 2**20
 
