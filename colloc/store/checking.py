@@ -104,24 +104,17 @@ class _WordCounter:
         terms = self._map[block.tokens[places]]
         places, terms = places[terms != NO_TERM], terms[terms != NO_TERM]
         self.tokens += np.bincount(terms, minlength=len(self.tokens))
-        starts = block.document_starts
-        if not len(starts) or not len(terms):
-            return
-        ordinals = np.searchsorted(starts, places, side="right") - 1
-        pairs = np.unique(ordinals.astype(np.uint64) << np.uint64(32) | terms)
-        seen, which = (pairs & np.uint64(0xFFFFFFFF)).astype(np.uint32), (pairs >> np.uint64(32)).astype(np.int64)
-        self.documents += np.bincount(seen, minlength=len(self.documents))
-        numbers = block.document_numbers[which]
-        # A document that began in the block before is counted once.
+        # Tokens before the first start go on in the document of the block before.
         number, earlier = self._last
-        if number >= 0 and numbers[0] == number:
-            again = np.intersect1d(seen[numbers == number], earlier)
-            self.documents[again] -= 1
-            earlier = np.union1d(seen[numbers == number], earlier)
-        else:
-            earlier = np.empty(0, dtype=np.uint32)
-        last = int(numbers[-1])
-        mine = seen[numbers == last]
+        listed = np.concatenate([[number], block.document_numbers])
+        whose = listed[np.searchsorted(block.document_starts, places, side="right")]
+        pairs = np.unique((whose + 1).astype(np.uint64) << np.uint64(32) | terms)
+        seen, whose = (pairs & np.uint64(0xFFFFFFFF)).astype(np.uint32), (pairs >> np.uint64(32)).astype(np.int64) - 1
+        self.documents += np.bincount(seen, minlength=len(self.documents))
+        # A word that stood in an earlier part of the same document is counted once.
+        self.documents[np.intersect1d(seen[whose == number], earlier)] -= 1
+        last = int(listed[-1])
+        mine = seen[whose == last]
         self._last = last, np.union1d(mine, earlier) if last == number else mine
 
 

@@ -11,14 +11,15 @@ import numpy as np
 import pytest
 
 from colloc.errors import StoreDamagedError
+from colloc.records import Anchors, DocumentRow
 from colloc.settings import TallySpec
-from colloc.store import documents, stream, tallies, texts, vocabulary
+from colloc.store import documents, stream, tallies, texts, visibility, vocabulary
 from colloc.store.checking import check
 from colloc.store.database import packing
 from colloc.store.opening import Store, open_for_reading
 from colloc.store.pages import ORDERS, PageHead, encode_page
 
-from .making import WINDOW, block_of, cells_of, margins_of, small_store, table_of, write_tally
+from .making import WINDOW, block_of, cells_of, margins_of, small_store, store_of_terms, table_of, write_tally
 
 BLOBS = {
     "layer_maps": ("data",),
@@ -292,3 +293,31 @@ def test_removed_documents_and_what_is_not_yet_counted_are_no_damage(tmp_path: P
     documents.remove_document(store, 2)
     assert {finding.place for finding in check(store)} == {"word counts of layer fold"}
     store.close()
+
+
+@pytest.mark.parametrize("size", [1, 3, 5, 8, 100])
+def test_frequencies_of_documents_over_several_blocks(tmp_path: Path, size: int) -> None:
+    """Three documents, cut into blocks anywhere, against frequencies by the definition."""
+    sequences = [[0, 1, 0, 2, 0, 1, 3], [], [1, 1, 4, 0], [2, 2, 2, 2, 2, 0]]
+    whole = [term for sequence in sequences for term in sequence]
+    begins = np.cumsum([0, *map(len, sequences)])
+    with store_of_terms(tmp_path, 5) as store:
+        none = np.zeros(0, dtype=np.int64)
+        for block, first in enumerate(range(0, len(whole), size)):
+            tokens = np.array(whole[first : first + size], dtype=np.uint32)
+            numbers = np.flatnonzero((begins[:-1] >= first) & (begins[:-1] < first + size))
+            starts = begins[numbers] - first
+            anchors = Anchors(none, none)
+            stream.append_block(store, stream.Block(block, first, tokens, none, none, starts, numbers, True, anchors))
+        rows = [
+            DocumentRow(number, f"d{number}", 0, number, int(begins[number]), len(sequence), 0, 0)
+            for number, sequence in enumerate(sequences)
+        ]
+        documents.append_documents(store, rows)
+        visibility.show_all(store)
+        tokens_of = np.array([whole.count(term) for term in range(5)])
+        documents_of = np.array([sum(term in sequence for sequence in sequences) for term in range(5)])
+        vocabulary.append_word_counts(store, "form", np.arange(5, dtype=np.uint32), tokens_of, documents_of)
+        assert check(store) == []
+        vocabulary.append_word_counts(store, "form", np.array([2], dtype=np.uint32), np.array([0]), np.array([1]))
+        assert [finding.problem for finding in check(store)] == ["documents of 1 words differ from the token stream"]
