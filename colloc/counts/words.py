@@ -15,6 +15,8 @@ from colloc.store.vocabulary import append_word_counts, has_word_counts, layer_m
 
 _TERM_BITS = np.uint64(32)
 _TERM_MASK = np.uint64(0xFFFFFFFF)
+_SPARSEST = 16
+"""Documents whose tokens are at least a sixteenth of all terms are counted in a table: sorting would take longer."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -97,9 +99,10 @@ def slice_dispersion(store: Store, layer: str, where: str = "") -> tuple[FloatAr
 def document_words(store: Store, layer: str, selection: Selection) -> Iterator[DocumentWords]:
     """The terms of every document of a selection, some whole documents at a time; empty documents are left out."""
     stretches = read_stretches(store, layer_map(store, layer), selection, "document")
+    n_terms = term_count(store, layer)
     pending: DocumentWords | None = None
     for stretch in stretches:
-        batch = _count_documents(stretch)
+        batch = _count_documents(stretch, n_terms)
         if pending is not None and not _begins_document(stretch):
             batch = _continued(pending, batch)
         elif pending is not None:
@@ -114,14 +117,34 @@ def _begins_document(stretch: Stretch) -> bool:
     return len(stretch.units) > 0 and int(stretch.units[0]) == stretch.first
 
 
-def _count_documents(stretch: Stretch) -> DocumentWords:
+def _count_documents(stretch: Stretch, n_terms: int) -> DocumentWords:
     """Documents of a stretch, numbered from 0; the first may go on from before, the last may go on."""
     inner = stretch.units[stretch.units > stretch.first] - stretch.first
     starts = np.concatenate([[0], inner])
-    lengths = np.diff(starts, append=len(stretch.terms))
+    if len(stretch.terms) * _SPARSEST >= len(starts) * n_terms:
+        return _by_tables(stretch.terms, starts, n_terms)
+    return _by_sorting(stretch.terms, starts)
+
+
+def _by_tables(terms: UInt32Array, starts: Int64Array, n_terms: int) -> DocumentWords:
+    """For long documents: a table of all terms for each."""
+    found, counts, sizes = [], [], []
+    for part in np.split(terms, starts[1:]):
+        table = np.bincount(part[part != NO_TERM], minlength=n_terms)
+        there = np.flatnonzero(table)
+        found.append(there.astype(np.uint32))
+        counts.append(table[there])
+        sizes.append(int(table.sum()))
+    documents = np.repeat(np.arange(len(starts)), [len(part) for part in found])
+    return DocumentWords(documents, np.concatenate(found), np.concatenate(counts), np.array(sizes, np.int64))
+
+
+def _by_sorting(terms: UInt32Array, starts: Int64Array) -> DocumentWords:
+    """For short documents: (document, term) sorted."""
+    lengths = np.diff(starts, append=len(terms))
     keys = np.repeat(np.arange(len(starts), dtype=np.uint64) << _TERM_BITS, lengths)
-    keys |= stretch.terms
-    keys = keys[stretch.terms != NO_TERM]
+    keys |= terms
+    keys = keys[terms != NO_TERM]
     keys.sort()
     fresh = np.flatnonzero(np.concatenate([[True], keys[1:] != keys[:-1]])) if len(keys) else np.empty(0, np.int64)
     counts = np.diff(fresh, append=len(keys))

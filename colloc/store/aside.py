@@ -35,3 +35,19 @@ def store_aside(store: Store, layer: str, temp: str | os.PathLike[str] | None = 
                 (layer, terms),
             )
         yield aside
+
+
+@contextmanager
+def stream_aside(store: Store, layer: str, temp: str | os.PathLike[str] | None = None) -> Iterator[Store]:
+    """An empty store, open for writing, for another stream of the terms of a layer: they are its types; gone afterwards.
+
+    Parameters
+    ----------
+    temp : path, optional
+        As for `store_aside`.
+    """
+    with store_aside(store, layer, temp) as aside:
+        with aside.transaction():
+            terms = term_count(store, layer)
+            aside.execute("UPDATE layers SET terms = ?, types = ? WHERE name = 'form'", (terms, terms))
+        yield aside

@@ -76,7 +76,7 @@ def table(tally: Tally) -> brute.Cells:
 def expected(text: stores.Text, spec: TallySpec, terms: list[int]) -> tuple[brute.Cells, list[int], list[int], int]:
     """Cells, margins and total by the definitions."""
     starts = text.starts(spec.inside)
-    n_terms = 120 if spec.layer == "form" else 60
+    n_terms = text.n_types if spec.layer == "form" else text.n_types // 2
     if spec.kind == "unit":
         cells = brute.units(terms, starts)
         cells |= {(y, x): count for (x, y), count in cells.items()}

@@ -8,13 +8,16 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from colloc.counts import words
 from colloc.counts.words import slice_dispersion, slice_word_counts
 from colloc.records import NO_TERM
 from tests.counts import stores
 
 
-def test_words_and_documents_are_plain_counts(tmp_path: Path) -> None:
+@pytest.mark.parametrize("sparsest", [0, 1000], ids=["sorted", "tables"])
+def test_words_and_documents_are_plain_counts(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, sparsest: int) -> None:
     """Oracle: Python's Counter over the documents; blocks cut inside documents, one word of a document in each."""
+    monkeypatch.setattr(words, "_SPARSEST", sparsest)
     text = stores.random_text(seed=21, tokens=2500, types=80, n_documents=9, sentence=9.0)
     chosen = {"": range(9), "half=a": range(0, 9, 2), "half=b": range(1, 9, 2)}
     for blocks in ([], [10, 11, 12, 1000, 1001, 2499], range(100, 2500, 100)):
