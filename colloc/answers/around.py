@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Any, Literal
+from typing import Any
 
 import numpy as np
 
@@ -12,14 +12,12 @@ from colloc.answers.pairs import as_columns, filtered, score, text_ranks
 from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
 from colloc.answers.spread import document_counts
-from colloc.answers.tables import PairTable, joined
+from colloc.answers.tables import PairTable, Side, joined
 from colloc.errors import NotSeenError, UsageError
 from colloc.records import Int64Array
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store import vocabulary
 from colloc.store.connection import Store
-
-Side = Literal["both", "left", "right"]
 
 
 def around(

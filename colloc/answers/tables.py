@@ -23,13 +23,17 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from typing import Literal, Protocol
 
 import numpy as np
 
 from colloc.errors import UsageError
 from colloc.records import FloatArray, Int64Array, PairBlock, UInt32Array, WordCounts
-from colloc.settings import Margins
+from colloc.settings import Margins, TallySpec
 from colloc.store.tallies import Tally
+
+Side = Literal["both", "left", "right"]
+"""Which side of the first word the second stands on."""
 
 TOKEN_MARGIN_MEASURES = ("pmi", "npmi", "ppmi", "pmi2", "pmi3")
 """The PMI family: all that the ``tokens`` convention can bear."""
@@ -116,7 +120,135 @@ class Convention:
                 )
 
 
-class TableReader:
+class Totals(Protocol):
+    """What a table is made with besides its joint count: a `Tally`, or `Sums` of some of the documents."""
+
+    @property
+    def spec(self) -> TallySpec: ...
+    @property
+    def total(self) -> int: ...
+    @property
+    def first(self) -> Int64Array: ...
+    @property
+    def second(self) -> Int64Array: ...
+
+
+@dataclass(frozen=True, slots=True)
+class Sums:
+    """Row and column sums by number of the word, and the sum of all; as a tally of ``spec`` has them."""
+
+    spec: TallySpec
+    total: int
+    first: Int64Array
+    second: Int64Array
+
+
+class TableMaker:
+    """Makes the tables of joint counts by one convention.
+
+    Parameters
+    ----------
+    totals : Totals
+    convention : Convention
+    words : WordCounts or None
+        Frequencies of the same words in the same documents; needed for ``tokens`` only.
+    """
+
+    def __init__(self, totals: Totals, convention: Convention, words: WordCounts | None = None) -> None:
+        self.spec = totals.spec
+        kind = self.spec.kind
+        convention.check(kind)
+        self.convention = convention
+        self._totals = totals
+        self._first: Int64Array | FloatArray
+        self._second: Int64Array | FloatArray
+        self.total: int
+        self.ordered = convention.directed or kind in ("positions", "span", "relation")
+        """Whether (x, y) and (y, x) are separate rows."""
+        if convention.margins == "tokens":
+            if words is None:
+                raise UsageError("margins tokens needs word frequencies")
+            self._set_token_margins(words)
+        elif kind == "unit" or self.ordered:
+            # A unit is one observation, so its margins are not row sums and nothing is doubled.
+            self._first, self._second, self.total = totals.first, totals.second, totals.total
+        else:
+            both = totals.first + totals.second
+            self._first, self._second, self.total = both, both, 2 * totals.total
+
+    def _set_token_margins(self, words: WordCounts) -> None:
+        tokens = int(words.tokens.sum())
+        cells = self._totals.total if self.ordered else 2 * self._totals.total
+        self.total = cells if self.convention.spanned else tokens
+        scaled = words.tokens.astype(np.float64) * (self.total / tokens if tokens else 0.0)
+        self._first, self._second = scaled, scaled
+
+    def counted(self, first: UInt32Array, second: UInt32Array, joint: Int64Array, side: Side = "both") -> PairTable:
+        """The tables of pairs whose joint counts are known.
+
+        Parameters
+        ----------
+        joint : int64 array, shape (n,)
+            Ordered: the cells [first, second]. With a side: the cells of the side of ``first`` that ``second``
+            stands on. Otherwise both cells of a pair together.
+        """
+        if self.spec.kind == "unit":
+            return self._plain(first, second, joint)
+        if self.ordered or side == "right":
+            return self._directed(first, second, joint)
+        return self._mirrored(first, second, joint) if side == "left" else self._symmetric(first, second, joint)
+
+    def first_totals(self) -> Int64Array | FloatArray:
+        """First margin of every term (before halving on the diagonal)."""
+        return self._first
+
+    def second_totals(self) -> Int64Array | FloatArray:
+        """Second margin of every term."""
+        return self._second
+
+    def _plain(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
+        total = np.full(len(first), self.total)
+        return PairTable(first, second, joint, self._first[first], self._second[second], total)
+
+    def _directed(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
+        return self._one_sided(first, second, joint, self._totals.first, self._totals.second)
+
+    def _mirrored(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
+        return self._one_sided(first, second, joint, self._totals.second, self._totals.first)
+
+    def _one_sided(
+        self, first: UInt32Array, second: UInt32Array, joint: Int64Array, rows: Int64Array, columns: Int64Array
+    ) -> PairTable:
+        """Cells of M (or of its transpose) with their own margins."""
+        if self.convention.margins == "tokens":
+            table = self._plain(first, second, joint)
+            if self.ordered or not self.convention.spanned:
+                return table
+            # The scale of T is halved with the table: M has half the sum of S.
+            halves = (table.first_total / 2, table.second_total / 2, table.total / 2)
+            return PairTable(first, second, joint, *halves)
+        total = np.full(len(first), self._totals.total)
+        return PairTable(first, second, joint, rows[first], columns[second], total)
+
+    def _symmetric(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
+        table = self._plain(first, second, joint)
+        same = first == second
+        if self.convention.margins == "tokens":
+            # S[x, x] is twice the number of pairs; p(x, y) = S / T holds on the diagonal as it stands.
+            table.joint[same] *= 2
+            return table
+        if same.any():
+            # Halved: S[x,x]/2 is the stored forward count, R(x)/2 = (row + column)/2, T/2.
+            first_total = table.first_total.astype(np.float64)
+            second_total = table.second_total.astype(np.float64)
+            total = table.total.astype(np.float64)
+            for margin in (first_total, second_total, total):
+                margin[same] /= 2
+            return PairTable(first, second, joint, first_total, second_total, total)
+        return table
+
+
+class TableReader(TableMaker):
     """Reads one tally by one convention.
 
     Parameters
@@ -128,40 +260,15 @@ class TableReader:
     """
 
     def __init__(self, tally: Tally, convention: Convention, words: WordCounts | None = None) -> None:
-        convention.check(tally.spec.kind)
+        super().__init__(tally, convention, words)
         self.tally = tally
-        self.convention = convention
-        self._first: Int64Array | FloatArray
-        self._second: Int64Array | FloatArray
-        self.ordered = convention.directed or tally.spec.kind in ("positions", "span", "relation")
-        """Whether (x, y) and (y, x) are separate rows."""
-        kind = tally.spec.kind
-        if convention.margins == "tokens":
-            if words is None:
-                raise UsageError("margins tokens needs word frequencies")
-            self._set_token_margins(words)
-        elif kind == "unit":
-            # A unit is one observation, so its margins are not row sums and nothing is doubled.
-            self._first, self._second, self.total = tally.first, tally.second, tally.total
-        elif self.ordered:
-            self._first, self._second, self.total = tally.first, tally.second, tally.total
-        else:
-            both = tally.first + tally.second
-            self._first, self._second, self.total = both, both, 2 * tally.total
-
-    def _set_token_margins(self, words: WordCounts) -> None:
-        tokens = int(words.tokens.sum())
-        cells = self.tally.total if self.ordered else 2 * self.tally.total
-        self.total = cells if self.convention.spanned else tokens
-        scaled = words.tokens.astype(np.float64) * (self.total / tokens if tokens else 0.0)
-        self._first, self._second = scaled, scaled
 
     def blocks(self) -> Iterator[PairTable]:
         """All pairs of the tally, a bounded stretch at a time."""
         for block in self.tally.blocks():
             yield self.table(block)
 
-    def around(self, term: int, side: str = "both") -> PairTable:
+    def around(self, term: int, side: Side = "both") -> PairTable:
         """Every pair with ``term``, which is put first.
 
         Parameters
@@ -214,52 +321,3 @@ class TableReader:
         if self.ordered:
             return self._directed(first, second, forward)
         return self._symmetric(first, second, block.forward + block.backward)
-
-    def first_totals(self) -> Int64Array | FloatArray:
-        """First margin of every term (before halving on the diagonal)."""
-        return self._first
-
-    def second_totals(self) -> Int64Array | FloatArray:
-        """Second margin of every term."""
-        return self._second
-
-    def _plain(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
-        total = np.full(len(first), self.total)
-        return PairTable(first, second, joint, self._first[first], self._second[second], total)
-
-    def _directed(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
-        return self._one_sided(first, second, joint, self.tally.first, self.tally.second)
-
-    def _mirrored(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
-        return self._one_sided(first, second, joint, self.tally.second, self.tally.first)
-
-    def _one_sided(
-        self, first: UInt32Array, second: UInt32Array, joint: Int64Array, rows: Int64Array, columns: Int64Array
-    ) -> PairTable:
-        """Cells of M (or of its transpose) with their own margins."""
-        if self.convention.margins == "tokens":
-            table = self._plain(first, second, joint)
-            if self.ordered or not self.convention.spanned:
-                return table
-            # The scale of T is halved with the table: M has half the sum of S.
-            halves = (table.first_total / 2, table.second_total / 2, table.total / 2)
-            return PairTable(first, second, joint, *halves)
-        total = np.full(len(first), self.tally.total)
-        return PairTable(first, second, joint, rows[first], columns[second], total)
-
-    def _symmetric(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
-        table = self._plain(first, second, joint)
-        same = first == second
-        if self.convention.margins == "tokens":
-            # S[x, x] is twice the number of pairs; p(x, y) = S / T holds on the diagonal as it stands.
-            table.joint[same] *= 2
-            return table
-        if same.any():
-            # Halved: S[x,x]/2 is the stored forward count, R(x)/2 = (row + column)/2, T/2.
-            first_total = table.first_total.astype(np.float64)
-            second_total = table.second_total.astype(np.float64)
-            total = table.total.astype(np.float64)
-            for margin in (first_total, second_total, total):
-                margin[same] /= 2
-            return PairTable(first, second, joint, first_total, second_total, total)
-        return table
