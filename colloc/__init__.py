@@ -24,6 +24,7 @@ if typing.TYPE_CHECKING:
     from colloc.settings import SegmentSettings as SegmentSettings
     from colloc.settings import TallySpec as TallySpec
     from colloc.verbs.asking import around as around
+    from colloc.verbs.asking import matrix as matrix
     from colloc.verbs.asking import measure as measure
     from colloc.verbs.asking import pairs as pairs
     from colloc.verbs.asking import words as words
@@ -52,6 +53,7 @@ _HOMES = {
     "documents_by": "colloc.verbs.keeping",
     "errors": "colloc",
     "info": "colloc.verbs.keeping",
+    "matrix": "colloc.verbs.asking",
     "measure": "colloc.verbs.asking",
     "merge": "colloc.verbs.making",
     "open_store": "colloc.verbs.opening",

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from pathlib import Path
 from typing import TYPE_CHECKING, Any, Literal
 
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT, Inside, Margins
@@ -10,6 +11,7 @@ from colloc.verbs.opening import ProgressCall, StorePath, as_list, pair_options,
 
 if TYPE_CHECKING:
     from colloc.answers.columns import Columns
+    from colloc.exports.matrix import Matrix
     from colloc.store.opening import Store
 
 DEFAULT_LIMIT = 50
@@ -166,3 +168,50 @@ def measure(table: Mapping[str, Any] | Columns, *, measures: Sequence[str] | Non
     from colloc.answers.measuring import measured
 
     return measured(table, measures)
+
+
+def matrix(
+    store: StorePath | Store,
+    stem: StorePath,
+    *,
+    shift: float = 1.0,
+    smoothing: float = 1.0,
+    layer: str | None = None,
+    window: int | None = None,
+    left: int | None = None,
+    right: int | None = None,
+    unit: bool = False,
+    inside: Inside | None = None,
+    margins: Margins | None = None,
+    directed: bool = False,
+    spanned: bool = True,
+    where: Sequence[str] | str = (),
+    relation: str | None = None,
+    min_count: int = 1,
+    min_word_count: int = 1,
+    jobs: int | None = None,
+    memory: int = DEFAULT_MEMORY,
+    progress: ProgressCall | None = None,
+) -> Matrix:
+    """Write the sparse positive PMI of every pair to ``stem``.npz and .mtx, with labels and settings beside them.
+
+    ``shift`` k takes log2 k off before the cut at 0; ``smoothing`` raises the totals of the
+    columns to a power (Levy, Goldberg & Dagan 2015). The matrix is also returned.
+    """
+    from colloc.exports.matrix import ppmi_matrix, write_matrix
+
+    options = pair_options(layer, window, left, right, unit, inside, margins, directed, spanned, where, relation)
+    with reading(store) as opened:
+        made = ppmi_matrix(
+            opened,
+            options=options,
+            shift=shift,
+            smoothing=smoothing,
+            min_count=min_count,
+            min_word_count=min_word_count,
+            jobs=jobs,
+            memory=memory,
+            progress=progress,
+        )
+    write_matrix(made, Path(stem))
+    return made

@@ -342,3 +342,13 @@ def test_python_build_add_remove_merge(tmp_path: Path) -> None:
     # thick-fog, fog-at, at-dawn (in both), heavy-swell, swell-at
     assert (record["kind"], record["right"], record["pairs"]) == ("window", 1, 5)
     assert colloc.tally(one, window=1, drop=True) == record
+
+
+def test_matrix(run: Run, built: Path, tmp_path: Path) -> None:
+    ran = run("matrix", built, tmp_path / "m", "--shift", 2, "--smoothing", 0.75)
+    assert ran.code == 0, ran.err
+    made = colloc.matrix(built, tmp_path / "again", shift=2, smoothing=0.75)
+    assert ran.out == f"{tmp_path}/m.npz, {tmp_path}/m.mtx: {len(made.labels)} words, {made.values.nnz} cells above 0\n"
+    assert (tmp_path / "m.mtx").read_bytes() == (tmp_path / "again.mtx").read_bytes()
+    assert "shift 2.0; smoothing 0.75" in ran.err
+    assert run("matrix", built, tmp_path / "m", "--shift", -1).code == 2

@@ -1,4 +1,4 @@
-"""``words``, ``pairs`` and ``around``: lists of what a store holds."""
+"""``words``, ``pairs``, ``around`` and ``matrix``: what a store holds, listed or handed on."""
 
 from __future__ import annotations
 
@@ -8,7 +8,7 @@ from typing import Annotated, Literal
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver
+from colloc.cli.output import Target, deliver, print_lines, remark, settings_line
 from colloc.cli.progress import ProgressLine
 from colloc.settings import DEFAULT_MIN_COUNT
 
@@ -186,7 +186,64 @@ def around(
     deliver(answer, target, "around")
 
 
+def matrix(
+    store: opt.StoreArgument,
+    stem: Annotated[Path, typer.Argument(metavar="STEM", help="Path and beginning of the names of the files.")],
+    shift: Annotated[
+        float, typer.Option("--shift", metavar="K", help="Take log2 K off before the cut at 0; 1 leaves PPMI.")
+    ] = 1.0,
+    smoothing: Annotated[
+        float, typer.Option("--smoothing", metavar="A", help="Raise the totals of the columns to this power, 0 to 1.")
+    ] = 1.0,
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    directed: opt.DirectedOption = False,
+    no_span: opt.NoSpanOption = False,
+    relation: opt.RelationOption = None,
+    where: opt.WhereOption = None,
+    min_count: Annotated[int, typer.Option("--min-count", metavar="N", min=0, help="Least joint count kept.")] = 1,
+    min_word_count: opt.MinWordCountOption = 1,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """Write the sparse matrix of positive PMI: STEM.npz, STEM.mtx, labels and settings."""
+    from colloc.verbs import asking
+
+    with ProgressLine(quiet=quiet) as progress:
+        made = asking.matrix(
+            store,
+            stem,
+            shift=shift,
+            smoothing=smoothing,
+            layer=layer,
+            window=window,
+            left=left,
+            right=right,
+            unit=unit,
+            inside=inside,
+            margins=margins,
+            directed=directed,
+            spanned=not no_span,
+            relation=relation,
+            where=where or (),
+            min_count=min_count,
+            min_word_count=min_word_count,
+            jobs=jobs,
+            memory=opt.memory_bytes(memory),
+            progress=progress,
+        )
+    remark(settings_line("matrix", made.settings), quiet=quiet)
+    if not quiet:
+        print_lines([f"{stem}.npz, {stem}.mtx: {len(made.labels):,} words, {made.values.nnz:,} cells above 0"])
+
+
 def register(app: typer.Typer) -> None:
     """Add the commands of this module."""
-    for command in (words, pairs, around):
+    for command in (words, pairs, around, matrix):
         app.command()(command)
