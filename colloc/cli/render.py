@@ -12,8 +12,6 @@ from colloc.cli.spreadsheets import defuse, defuse_all
 from colloc.errors import MissingExtraError
 
 if TYPE_CHECKING:
-    from numpy.typing import NDArray
-
     from colloc.answers.columns import Columns
 
 
@@ -77,8 +75,8 @@ class DelimitedWriter:
 _QUOTE = '"'
 
 
-def _cells(array: NDArray[Any]) -> tuple[list[str], bool]:
-    """A column's values as written, and whether they are text that might have to be defused."""
+def _cells(array: Any) -> tuple[list[str], bool]:
+    """A numpy column's values as written, and whether they are text that might have to be defused."""
     values = array.tolist()
     kind = array.dtype.kind
     if kind == "O":
