@@ -138,15 +138,33 @@ class Store:
                 self.connection.rollback()
             raise
 
+    def refresh(self) -> None:
+        """Let a reader see the last commit; between two calls everything it reads is of one moment.
+
+        A writer always sees its own last commit.
+        """
+        if self.writable:
+            return
+        if self.connection.in_transaction:
+            self.execute("COMMIT")
+        self.execute("BEGIN")
+        # SQLite fixes the moment at the first read.
+        self.rows("SELECT count(*) FROM sqlite_schema")
+
     def make_durable(self) -> None:
         """Move every commit into the main file and wait until the disk has it.
 
         Each commit is on the disk when it returns (synchronous FULL); this makes
         the one file complete without its ``-wal`` companion, so that it can be
-        copied. Readers at work may delay it: then the companion stays.
+        copied. Where a reader is at work for longer than half a second, the companion stays.
         """
         with translated(self.path):
-            self.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchall()
+            (patience,) = self.connection.execute("PRAGMA busy_timeout").fetchone()
+            self.connection.execute("PRAGMA busy_timeout = 500")
+            try:
+                self.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchall()
+            finally:
+                self.connection.execute(f"PRAGMA busy_timeout = {patience}")
 
     def close(self) -> None:
         """Close the connection and give the writer lock back."""

@@ -59,6 +59,8 @@ def create(path: str | os.PathLike[str], facts: Mapping[str, str], purpose: str 
 def open_for_reading(path: str | os.PathLike[str]) -> Store:
     """Open a store to read; works while another process writes, and where nothing can be written.
 
+    All that is read is of the moment of opening, or of the last :meth:`Store.refresh`.
+
     Raises
     ------
     NoInputError
@@ -77,7 +79,13 @@ def open_for_reading(path: str | os.PathLike[str]) -> Store:
         except BaseException:
             connection.close()
             raise
-    return Store(path, connection)
+    store = Store(path, connection)
+    try:
+        store.refresh()
+    except BaseException:
+        store.close()
+        raise
+    return store
 
 
 def open_for_writing(path: str | os.PathLike[str], purpose: str, wait: float = 10.0) -> Store:

@@ -25,11 +25,11 @@ from colloc.errors import (
     NoInputError,
     StoreDamagedError,
 )
-from colloc.store import checking, facts, scratch, texts
+from colloc.store import checking, facts, scratch, tallies, texts
 from colloc.store.database import schema
 from colloc.store.opening import Store, create, open_for_reading, open_for_writing
 
-from .making import WINDOW, small_store, table_of
+from .making import WINDOW, cells_of, small_store, table_of, write_tally
 
 
 @pytest.fixture
@@ -197,7 +197,23 @@ def test_reading_during_a_write(path: Path) -> None:
             assert table_of(reader, WINDOW) == before
             with open_for_reading(path) as second:
                 assert table_of(second, WINDOW) == before
+        assert facts.get(reader, "key", None) is None
+        reader.refresh()
         assert facts.get(reader, "key") == "value"
+
+
+def test_a_reader_keeps_its_moment_while_tables_are_replaced(path: Path) -> None:
+    """Pages that a writer deletes meanwhile are neither missed nor taken for damage."""
+    with open_for_writing(path, "test") as writer, open_for_reading(path) as reader:
+        before = table_of(reader, WINDOW)
+        tally = tallies.find(reader, WINDOW)
+        write_tally(writer, WINDOW, {(0, 1): 9})
+        writer.make_durable()
+        assert tally is not None
+        assert cells_of(tally.around(0)) == {pair: count for pair, count in before.items() if 0 in pair}
+        assert table_of(reader, WINDOW) == before
+        reader.refresh()
+        assert table_of(reader, WINDOW) == {(0, 1): 9}
 
 
 HOLD = """
