@@ -43,6 +43,7 @@ INITIALS = "ABCDEFGHJKLMNOPQRSTUVWXYZ"
 _WORDS = 4
 _LETTERS_A_WORD = 3
 _LONGEST = _WORDS * _LETTERS_A_WORD
+"""Abbreviations are shorter, so that no part of a longer word is taken for one."""
 _ALWAYS, _BEFORE_NUMBERS = 2, 1
 
 
@@ -53,30 +54,26 @@ def _table() -> tuple[UInt64Array, KeyTable]:
     kinds |= dict.fromkeys([*" ".join(ALWAYS.values()).split(), *INITIALS], _ALWAYS)
     points = code_points(" " * _LONGEST + " ".join(kinds) + " ")
     stops = np.cumsum([len(word) + 1 for word in kinds]) + _LONGEST - 1
-    keys, _ = _spelled(points, stops, _WORDS)
+    keys = _spelled(points, stops, _WORDS)
     table = KeyTable(_WORDS)
     table.add(keys, np.array(list(kinds.values()), np.uint32))
     return np.unique(keys[0]), table
 
 
-def _spelled(points: Points, stops: Int64Array, words: int) -> tuple[list[UInt64Array], Mask]:
-    """The run of letters, digits, full stops and hyphens before each place, three characters a word, last ones first.
-
-    Also tells which runs go on beyond what fits.
-    """
+def _spelled(points: Points, stops: Int64Array, words: int) -> list[UInt64Array]:
+    """The run of letters, digits, full stops and hyphens before each place: three characters a word, the last first."""
     tables = classes()
     keys = [np.zeros(len(stops), np.uint64) for _ in range(words)]
     going = np.ones(len(stops), np.bool_)
-    for back in range(words * _LETTERS_A_WORD + 1):
+    for back in range(words * _LETTERS_A_WORD):
         found = points[np.maximum(stops - 1 - back, 0)].astype(np.uint64)
         going &= tables.spoken[tables.kind_of[found]] | (found == ord(".")) | (found == ord("-"))
         going &= stops > back
         if not going.any():
             break
-        if back < words * _LETTERS_A_WORD:
-            found[~going] = 0
-            keys[back // _LETTERS_A_WORD] |= found << np.uint64(21 * (back % _LETTERS_A_WORD))
-    return keys, going
+        found[~going] = 0
+        keys[back // _LETTERS_A_WORD] |= found << np.uint64(21 * (back % _LETTERS_A_WORD))
+    return keys
 
 
 def after_abbreviation(points: Points, stops: Int64Array, numeric: Mask) -> Mask:
@@ -93,11 +90,10 @@ def after_abbreviation(points: Points, stops: Int64Array, numeric: Mask) -> Mask
     endings, table = _table()
     result = np.zeros(len(stops), np.bool_)
     # Most words are ruled out by their last letters.
-    key = _spelled(points, stops, 1)[0][0]
+    key = _spelled(points, stops, 1)[0]
     likely = np.flatnonzero(endings[np.minimum(np.searchsorted(endings, key), len(endings) - 1)] == key)
     if not len(likely):
         return result
-    keys, longer = _spelled(points, stops[likely], _WORDS)
-    kinds = table.find(keys)
-    result[likely] = ~longer & ((kinds == _ALWAYS) | ((kinds == _BEFORE_NUMBERS) & numeric[likely]))
+    kinds = table.find(_spelled(points, stops[likely], _WORDS))
+    result[likely] = (kinds == _ALWAYS) | ((kinds == _BEFORE_NUMBERS) & numeric[likely])
     return result

@@ -106,18 +106,14 @@ def _join_uncommon(joins: _Joins, kinds: Kinds) -> None:
         katakana = tables.word["Katakana"][inner]
         neither = ~(katakana | tables.word["ExtendNumLet"][inner])
         joins.joined &= ~((katakana[:-1] & neither[1:]) | (neither[:-1] & katakana[1:]))
-    unequal = 0
-    if _occur(kinds, tables.word["ZWJ"]):
-        pictographs = np.flatnonzero(tables.word["ZWJ"][kinds[:-1]] & tables.pictographic[kinds[1:]]) + 1
-        places = pictographs if attached is None else attached.inner(pictographs)
-        joins.joined[places - 1] = True
-        unequal += len(places)
     if attached is not None:
         # A few attached marks are letters by category (halfwidth voicing marks): they make their segment a word.
         marks = attached.positions[tables.spoken[kinds[attached.positions]]]
         joins.tokenish[attached.inner(marks) - 1] = True
-        unequal += len(marks)
-    if unequal:
+    if _occur(kinds, tables.word["ZWJ"]):
+        pictographs = np.flatnonzero(tables.word["ZWJ"][kinds[:-1]] & tables.pictographic[kinds[1:]]) + 1
+        places = pictographs if attached is None else attached.inner(pictographs)
+        joins.joined[places - 1] = True
         joins.spread()
 
 

@@ -87,6 +87,19 @@ def test_where_hard_breaks_are() -> None:
     assert [place for place in places if is_hard_break(text, place, wrapped)] == [7, 9]
 
 
+def test_one_line_end_after_a_paragraph_separator_is_no_blank_line() -> None:
+    text = "x\u2029y\nz"
+    wrapped = SegmentSettings(line_ends="space")
+    assert [place for place in range(len(text) + 1) if is_hard_break(text, place, wrapped)] == [2]
+
+
+def test_a_word_that_will_be_left_out_makes_no_safe_place() -> None:
+    """With "abcdef" left out, "gh" begins the second sentence but no paragraph."""
+    text = "One. abcdef gh"
+    assert safe_cut(text, SegmentSettings()) == 12
+    assert safe_cut(text, SegmentSettings(max_token=5)) == 0
+
+
 @pytest.mark.parametrize(
     ("text", "at_least", "cut"),
     [

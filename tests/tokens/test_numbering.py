@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import random
 import unicodedata
+from itertools import pairwise
 
 import numpy as np
 import pytest
@@ -62,6 +63,20 @@ token_lists = st.lists(st.lists(st.one_of(few, many), max_size=12), max_size=4)
 @given(token_lists)
 def test_like_a_dict(stretches: list[list[str]]) -> None:
     assert_like_a_dict(stretches)
+
+
+@settings(max_examples=200)
+@given(
+    st.lists(st.tuples(st.text(st.sampled_from("ab\0一二é"), max_size=40), st.lists(st.integers(1, 39))), max_size=3)
+)
+def test_tokens_side_by_side(drawn: list[tuple[str, list[int]]]) -> None:
+    """Nothing of the token that follows at once may get into a key."""
+    numberer, plain = TypeNumberer(), Plain()
+    for text, cuts in drawn:
+        edges = np.array(sorted({0, len(text), *(cut for cut in cuts if cut < len(text))}), np.int64)
+        nothing = np.zeros(0, np.int64)
+        numbers = numberer.number(Segments(text, edges[:-1], edges[1:], nothing, nothing))
+        assert numbers.tolist() == plain.number([text[start:end] for start, end in pairwise(edges.tolist())])
 
 
 def test_like_a_dict_on_prose_of_many_scripts() -> None:
@@ -142,14 +157,19 @@ def test_the_table_is_like_a_dict(words: int) -> None:
         ]
 
 
-def test_keys_in_one_corner_of_the_table() -> None:
-    """All keys in one slot: still exact, only slower."""
-    table = KeyTable(1)
-    table._multipliers[0] = np.uint64(1)  # the slot is then the key's highest bits
-    keys = np.arange(1, 1500, dtype=np.uint64)
-    table.add([keys], keys.astype(np.uint32))
-    assert table.find([keys]).tolist() == keys.tolist()
-    assert (table.find([keys + np.uint64(2000)]) == ABSENT).all()
+@pytest.mark.parametrize("words", [1, 2])
+def test_keys_in_one_corner_of_the_table(words: int) -> None:
+    """All keys in one slot: still exact, only slower. Of two words the first is always the same."""
+    table = KeyTable(words)
+    table._multipliers = [np.uint64(1)] * words  # the slot is then the highest bits of the sum
+
+    def keys(last: np.ndarray) -> list[np.ndarray]:
+        return [*[np.full(len(last), 5, np.uint64)] * (words - 1), last.astype(np.uint64)]
+
+    numbers = np.arange(1, 1500, dtype=np.uint32)
+    table.add(keys(numbers), numbers)
+    assert table.find(keys(numbers)).tolist() == numbers.tolist()
+    assert (table.find(keys(numbers + 2000)) == ABSENT).all()
 
 
 @given(st.text(max_size=12))

@@ -124,6 +124,8 @@ def test_numbers() -> None:
         ("ftp://x@y.org:21/z me@", ["ftp://x@y.org:21/z", "me"]),
         ("a@b 5@ @c ://x www. w3 awww.x", ["a", "b", "5", "c", "x", "www", "w3", "awww.x"]),
         ("see:http://a.b", ["see", "http://a.b"]),
+        ("at http://a.org/?u=http://b.org/www.c@d.org x", ["at", "http://a.org/?u=http://b.org/www.c@d.org", "x"]),
+        ("www.a.org:http://b.org", ["www.a.org", "http://b.org"]),
         ("x_www.a.org", ["x_www.a.org"]),
         ("пиши почта@пример.рф", ["пиши", "почта@пример.рф"]),
         ("one@a.org,two@a.org", ["one@a.org", "two@a.org"]),
@@ -163,6 +165,7 @@ def test_abbreviations() -> None:
 
 
 def test_every_listed_abbreviation_works_before_a_capital_and_a_number() -> None:
+    assert max(map(len, " ".join([*ALWAYS.values(), *BEFORE_NUMBERS.values()]).split())) < 12
     for word in [*INITIALS, *" ".join(ALWAYS.values()).split()]:
         assert len(sentences(f"so ({word}. Anna) here")) == 1, word
         assert len(sentences(f"so x{word}{word}. Anna here")) == 2, word
