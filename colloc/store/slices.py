@@ -9,6 +9,7 @@
     id=harbour-17               the document of this identifier
     title="A, B & C"            quotes keep `,`, `&`, `..` and spaces; `""` stands for a quote
     genre=press & year=1990..   all of them must hold
+    not (genre=press)           all documents for which the conditions in brackets do not all hold
 
 Nothing that a user writes becomes SQL: conditions are compared in Python, on
 the metadata that SQLite reads.
@@ -31,11 +32,13 @@ from colloc.store.connection import Store
 from colloc.store.documents import visible_end
 
 IDENTIFIER_KEY = "id"
-_PLAIN = re.compile(r'[^\s",&=]+')
+_PLAIN = re.compile(r'[^\s",&=()]+')
 _NUMBER = r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d+)?"
 _RANGE = re.compile(rf"({_NUMBER})?\.\.({_NUMBER})?")
 _PIECE = re.compile(r'\s*(?:"((?:[^"]|"")*)"|([^",&]*?))\s*(?=[,&]|$)')
 _KEY = re.compile(r'\s*(?:"((?:[^"]|"")+)"|([^"=&,]+?))\s*=')
+_NOT = re.compile(r"\s*not\s*\(")
+_BRACKET = re.compile(r'"(?:[^"]|"")*"|[()]')
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,6 +59,14 @@ class _Condition:
         return number is not None and any(low <= number <= high for low, high in self.ranges)
 
 
+@dataclass(frozen=True, slots=True)
+class _Exception:
+    """What must not hold all together."""
+
+    conditions: tuple[_Condition | _Exception, ...]
+    written: str
+
+
 def canonical(wheres: Sequence[str]) -> str:
     """Several conditions as one text that is the same however they were written; empty for no condition.
 
@@ -66,6 +77,19 @@ def canonical(wheres: Sequence[str]) -> str:
     """
     conditions = {condition.written for where in wheres for condition in _parsed(where)}
     return " & ".join(sorted(conditions))
+
+
+def complement(where: str, within: str = "") -> str:
+    """The slice of all other documents, or of the others of the slice ``within``; both in canonical form.
+
+    Raises
+    ------
+    UsageError
+        There are no others: ``where`` is empty.
+    """
+    if not where:
+        raise UsageError("all documents have no rest: name a slice, such as key=value")
+    return canonical([f"not ({where})", *([within] if within else [])])
 
 
 def quoted(value: str) -> str:
@@ -85,8 +109,17 @@ def select(store: Store, where: str) -> Int64Array:
     """
     conditions = _parsed(where)
     if not conditions:
-        rows = store.iterate("SELECT id FROM documents WHERE id < ? ORDER BY id", (visible_end(store),))
-        return np.fromiter((number for (number,) in rows), dtype=np.int64)
+        return _all_documents(store)
+    return _fulfilling(store, conditions)
+
+
+def _all_documents(store: Store) -> Int64Array:
+    rows = store.iterate("SELECT id FROM documents WHERE id < ? ORDER BY id", (visible_end(store),))
+    return np.fromiter((number for (number,) in rows), dtype=np.int64)
+
+
+def _fulfilling(store: Store, conditions: Sequence[_Condition | _Exception]) -> Int64Array:
+    """Documents for which all of at least one condition hold."""
     chosen: Int64Array | None = None
     for condition in conditions:
         fitting = _fitting(store, condition)
@@ -127,7 +160,9 @@ def _values(store: Store, key: str) -> list[tuple[int, MetaValue]]:
     return [(number, truths.get(kind, value)) for number, value, kind in store.rows(sql, (key, visible_end(store)))]
 
 
-def _fitting(store: Store, condition: _Condition) -> Int64Array:
+def _fitting(store: Store, condition: _Condition | _Exception) -> Int64Array:
+    if isinstance(condition, _Exception):
+        return np.setdiff1d(_all_documents(store), _fulfilling(store, condition.conditions))
     if condition.key == IDENTIFIER_KEY and not condition.ranges:
         numbers = []
         for text in condition.texts:
@@ -143,11 +178,19 @@ def _fitting(store: Store, condition: _Condition) -> Int64Array:
     return np.array([number for number, value in values if condition.holds(value)], dtype=np.int64)
 
 
-def _parsed(where: str) -> list[_Condition]:
+def _parsed(where: str) -> list[_Condition | _Exception]:
     """The conditions of one text."""
-    conditions: list[_Condition] = []
+    conditions: list[_Condition | _Exception] = []
     position = 0
     while position < len(where.rstrip()) or (conditions and position <= len(where)):
+        negated = _NOT.match(where, position)
+        if negated is not None:
+            exception, position = _exception(where, negated.end())
+            conditions.append(exception)
+            if position >= len(where):
+                break
+            position += 1  # behind the &
+            continue
         match = _KEY.match(where, position)
         if match is None:
             raise _nonsense(where)
@@ -158,6 +201,22 @@ def _parsed(where: str) -> list[_Condition]:
             break
         position += 1  # behind the &
     return conditions
+
+
+def _exception(where: str, position: int) -> tuple[_Exception, int]:
+    """What stands between the bracket before ``position`` and its partner, and where the next condition's & is."""
+    depth = 1
+    for match in _BRACKET.finditer(where, position):
+        depth += {"(": 1, ")": -1}.get(match[0], 0)
+        if depth == 0:
+            inner, rest = where[position : match.start()], where[match.end() :]
+            conditions = sorted(_parsed(inner), key=lambda condition: condition.written)
+            behind = len(where) - len(rest.lstrip())
+            if not conditions or (behind < len(where) and where[behind] != "&"):
+                break
+            written = " & ".join(dict.fromkeys(condition.written for condition in conditions))
+            return _Exception(tuple(conditions), f"not ({written})"), behind
+    raise _nonsense(where)
 
 
 def _pieces(where: str, position: int) -> tuple[list[tuple[str, bool]], int]:
@@ -221,5 +280,5 @@ def _sort_key(text: str) -> tuple[bool, float, str]:
 def _nonsense(where: str) -> UsageError:
     return UsageError(
         f"cannot read the slice {where!r}: write key=value, key=a,b or key=1990..1999, joined by & "
-        '(quote a value that holds one of these signs: key="a, b")'
+        '(quote a value that holds one of these signs: key="a, b"); not (...) for all others'
     )

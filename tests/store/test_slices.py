@@ -57,6 +57,11 @@ def _number(value: MetaValue) -> float:
         ("year=..1881,1884..", lambda d: _number(d["year"]) <= 1881 or _number(d["year"]) >= 1884),
         ("genre=log & year=1882..", lambda d: d["genre"] == "log" and _number(d["year"]) >= 1882),
         ("genre=log&year=1881&genre=notice", lambda d: False),
+        ("not (genre=log)", lambda d: d["genre"] != "log"),
+        ("not (genre=log & year=1881)", lambda d: not (d["genre"] == "log" and d["year"] == 1881)),
+        ("genre=log & not (year=1881)", lambda d: d["genre"] == "log" and d["year"] != 1881),
+        ('not (title="A, B & C") & year=1881..', lambda d: d["title"] != "A, B & C" and _number(d["year"]) >= 1881),
+        ("not(not (genre=log))", lambda d: d["genre"] == "log"),
         ('title="A, B & C"', lambda d: d["title"] == "A, B & C"),
         ('title="say ""fog"""', lambda d: d["title"] == 'say "fog"'),
         ('title="x..y","=x"', lambda d: d["title"] in ("x..y", "=x")),
@@ -159,3 +164,16 @@ def test_documents_that_are_not_yet_counted_are_not_chosen(tmp_path: Path) -> No
         assert list(slices.values_of(new, "part")) == ["0", "1"]
         visibility.show_all(new)
         assert slices.select(new, "part=0..9").tolist() == [0, 1, 2]
+
+
+def test_the_complement_of_a_slice() -> None:
+    assert slices.complement("b=2 & a=1") == "not (a=1 & b=2)"
+    assert slices.complement("a=1", "z=3") == "not (a=1) & z=3"
+    with pytest.raises(UsageError, match="all documents have no rest"):
+        slices.complement("")
+
+
+@pytest.mark.parametrize("where", ["not (a=1", "not ()", "not (a=1) b=2", "not (a=1) &", "not (a=1)) & b=2"])
+def test_exceptions_that_cannot_be_read(where: str) -> None:
+    with pytest.raises(UsageError, match="cannot read the slice"):
+        slices.canonical([where])
