@@ -15,7 +15,7 @@ from colloc.counts.counting import Progress, count_tally
 from colloc.counts.processes import crew
 from colloc.counts.selection import Selection, documents_selection, slice_selection
 from colloc.counts.words import change_word_counts
-from colloc.errors import LockedError
+from colloc.errors import LockedError, UsageError
 from colloc.records import Int64Array
 from colloc.settings import TallySpec
 from colloc.store import facts, tallies
@@ -77,6 +77,8 @@ def obtain_tally(
         weakref.finalize(tally, store.close)
         return tally
     store = store_or_path
+    if spec.kind == "relation":
+        raise UsageError(f"{store.path}: relations are counted in annotated text, and this store holds none")
     found = tallies.find(store, spec)
     if found is not None:
         if keep and store.writable:
@@ -192,12 +194,14 @@ def _count_aside(
     progress: Progress | None,
 ) -> Tally:
     for _ in range(_ATTEMPTS):
+        store.refresh()  # processes that count see the last commit, and so must this one
         generation = facts.generation(store)
         with ExitStack() as stack:
             aside = stack.enter_context(store_aside(store, spec.layer, temp))
             with scratch_folder(aside.path) as folder, aside.transaction():
                 counter = _Counter(store, jobs, memory, folder, progress)
                 counter.count(aside, spec, slice_selection(store, spec.where), kept=False)
+            store.refresh()
             if facts.generation(store) == generation:
                 tally = _found(aside, spec)
                 weakref.finalize(tally, stack.pop_all().close)
