@@ -28,6 +28,7 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.asking import measure as measure
     from colloc.verbs.asking import pairs as pairs
     from colloc.verbs.asking import words as words
+    from colloc.verbs.evidence import lines as lines
     from colloc.verbs.keeping import check as check
     from colloc.verbs.keeping import documents as documents
     from colloc.verbs.keeping import documents_by as documents_by
@@ -53,6 +54,7 @@ _HOMES = {
     "documents_by": "colloc.verbs.keeping",
     "errors": "colloc",
     "info": "colloc.verbs.keeping",
+    "lines": "colloc.verbs.evidence",
     "matrix": "colloc.verbs.asking",
     "measure": "colloc.verbs.asking",
     "merge": "colloc.verbs.making",

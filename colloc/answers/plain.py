@@ -58,6 +58,15 @@ def shown_text(text: str) -> str:
     return escaped
 
 
+def is_right_to_left(text: str) -> bool | None:
+    """Whether the first letter with a direction is written from right to left (UAX #9, P2); None without such a letter."""
+    for character in text:
+        direction = unicodedata.bidirectional(character)
+        if direction in ("L", "R", "AL"):
+            return direction != "L"
+    return None
+
+
 def _steers(character: str) -> bool:
     # Joiners and soft hyphens (also Cf) belong to words and stay; Cs would not encode.
     return unicodedata.category(character) in ("Cc", "Cs", "Zl", "Zp") or character in _BIDI_CONTROLS

@@ -92,6 +92,15 @@ def deliver_parts(parts: Iterable[Columns], settings: Mapping[str, Any], target:
         write_settings(target.path, settings, command)
 
 
+def deliver_bytes(data: bytes, settings: Mapping[str, Any], target: Target, command: str) -> None:
+    """Write an answer that is made already (a page, a card), its settings line on standard error first."""
+    remark(settings_line(command, settings), quiet=target.quiet)
+    with opened(target.path) as stream:
+        stream.write(data)
+    if target.settings_beside and target.path is not None:
+        write_settings(target.path, settings, command)
+
+
 def write_settings(path: Path, settings: Mapping[str, Any], command: str) -> None:
     """The settings of the result ``path`` as JSON in ``PATH.settings.json``."""
     from importlib.metadata import version

@@ -1,0 +1,162 @@
+"""Lines for reading in a terminal: the match in one column, what stands before and after beside it."""
+
+from __future__ import annotations
+
+import re
+import shutil
+import unicodedata
+from collections.abc import Callable, Sequence
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from colloc.answers.columns import Columns
+
+_SPACES = re.compile(r"\s+")
+_WIDEST_NAME = 22
+_WIDEST_MATCH = 24
+_ELLIPSIS = "…"
+
+
+def terminal_width() -> int:
+    """Columns of the terminal (or of ``COLUMNS``); 100 where the output goes elsewhere."""
+    return shutil.get_terminal_size((100, 24)).columns
+
+
+def kwic_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[str]:
+    """One line of text for each row of an answer of ``lines``.
+
+    Parameters
+    ----------
+    columns : int
+        Display columns of a whole line; at least 40 are used.
+    keys : sequence of str
+        Metadata shown beside the document.
+
+    Lines of right-to-left text have what is read first on the right, as their readers expect; every cell is an
+    isolate of its own, so that the match stands in the same columns as in all other lines.
+    """
+    from colloc.answers.plain import width
+
+    rows = answer.to_dicts()
+    if not rows:
+        return []
+    left = [[row["document"], *(row[key] for key in keys), row["token"]] for row in rows]
+    heads = [[_cut_end(_plain(value), _WIDEST_NAME) for value in cells] for cells in left]
+    head_widths = [max(map(width, cells)) for cells in zip(*heads, strict=True)]
+    match_width = min(max(width(_plain(row["match"])) for row in rows), _WIDEST_MATCH)
+    room = max(columns, 40) - sum(head_widths) - 2 * len(head_widths) - match_width - 2
+    side = max(room // 2, 8)
+    lines = []
+    for cells, row in zip(heads, rows, strict=True):
+        head = "  ".join(
+            _padded(cell, wide, left=place != len(cells) - 1)
+            for place, (cell, wide) in enumerate(zip(cells, head_widths, strict=True))
+        )
+        lines.append(f"{head}  {_body(row, side, match_width)}".rstrip())
+    return lines
+
+
+def sentence_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[str]:
+    """Whole sentences, wrapped and indented under their document, the words looked for in square brackets."""
+    from colloc.answers.plain import shown_text
+
+    lines = []
+    for row in answer.to_dicts():
+        heads = [row["document"], *(row[key] for key in keys), f"word {row['token'] + 1}"]
+        lines.append(", ".join(shown_text(_plain(value)) for value in heads))
+        lines += _wrapped(_plain(bracketed(row)), max(columns, 40) - 4)
+    return lines
+
+
+def bracketed(row: dict[str, Any]) -> str:
+    """The text of a row of ``lines`` with the match, and its partner, in square brackets."""
+    begin = row["character"] - len(row["before"])
+    whole = row["before"] + row["match"] + row["after"]
+    spans = [(row["character"] - begin, len(row["match"]))]
+    if "partner" in row:
+        spans.append((row["partner_character"] - begin, len(row["partner"])))
+    for start, length in sorted(spans, reverse=True):
+        whole = f"{whole[:start]}[{whole[start : start + length]}]{whole[start + length :]}"
+    return whole
+
+
+def _wrapped(text: str, columns: int) -> list[str]:
+    """A text in lines of so many columns, broken at spaces, or anywhere where there are none in reach."""
+    from colloc.answers.plain import shown_text, width
+
+    lines, rest = [], text
+    while rest:
+        kept, used = 0, 0
+        while kept < len(rest) and used + width(rest[kept]) <= columns:
+            used += width(rest[kept])
+            kept += 1
+        if kept < len(rest):
+            space = rest.rfind(" ", 1, kept + 1)
+            kept = space if space > 0 else kept
+        lines.append("    " + shown_text(rest[:kept]))
+        rest = rest[kept:].lstrip(" ")
+    return lines
+
+
+def _body(row: dict[str, Any], side: int, match_width: int) -> str:
+    from colloc.answers.plain import is_right_to_left
+
+    before, match, after = (_plain(row[name]) for name in ("before", "match", "after"))
+    before, after = _fit(before, side, _cut_start), _fit(after, side, _cut_end)
+    match = _fit(match, match_width, _cut_end)
+    if is_right_to_left(row["match"] + row["after"]):
+        return f"{_padded(after, side, left=False)} {_padded(match, match_width)} {_padded(before, side)}"
+    return f"{_padded(before, side, left=False)} {_padded(match, match_width)} {_padded(after, side)}"
+
+
+def _plain(value: Any) -> str:
+    return "" if value is None else _SPACES.sub(" ", str(value)).strip()
+
+
+def _padded(text: str, columns: int, *, left: bool = True) -> str:
+    """A cell of exactly so many columns, controls escaped and right-to-left text isolated."""
+    from colloc.answers.plain import shown_text, width
+
+    shown = shown_text(text)
+    space = " " * (columns - width(shown))
+    return shown + space if left else space + shown
+
+
+def _fit(text: str, columns: int, cut: Callable[[str, int], str]) -> str:
+    """The text cut so that it still fits when its controls are escaped."""
+    from colloc.answers.plain import shown_text, width
+
+    room = columns
+    fitted = cut(text, room)
+    while width(shown_text(fitted)) > columns and room > 0:
+        room -= width(shown_text(fitted)) - columns
+        fitted = cut(text, max(room, 0))
+    return fitted
+
+
+def _cut_end(text: str, columns: int) -> str:
+    """The beginning of a text in so many columns, an ellipsis where something is left out."""
+    from colloc.answers.plain import width
+
+    if width(text) <= columns:
+        return text
+    kept, used = 0, 1
+    while kept < len(text) and used + width(text[kept]) <= columns:
+        used += width(text[kept])
+        kept += 1
+    return text[:kept] + _ELLIPSIS if columns > 0 else ""
+
+
+def _cut_start(text: str, columns: int) -> str:
+    """The end of a text in so many columns; no combining mark is cut off from its letter."""
+    from colloc.answers.plain import width
+
+    if width(text) <= columns:
+        return text
+    first, used = len(text), 1
+    while first and used + width(text[first - 1]) <= columns:
+        first -= 1
+        used += width(text[first])
+    while first < len(text) and unicodedata.category(text[first]).startswith("M"):
+        first += 1
+    return _ELLIPSIS + text[first:] if columns > 0 else ""
