@@ -9,7 +9,7 @@ from typing import Any, cast, get_args
 from colloc.answers.tables import Convention, TableReader
 from colloc.counts.tallying import obtain_tally
 from colloc.counts.words import slice_word_counts
-from colloc.errors import UsageError
+from colloc.errors import DataError, UsageError
 from colloc.measures.catalogue import MEASURES
 from colloc.records import WordCounts
 from colloc.settings import DEFAULT_MEASURE, DEFAULT_MEMORY, Inside, Margins, TallySpec
@@ -78,7 +78,15 @@ class Question:
 
 
 def built_spec(store: Store) -> TallySpec:
-    """The tally the store was built with."""
+    """The tally the store was built with.
+
+    Raises
+    ------
+    DataError
+        While the first build is not finished: there is nothing to ask yet.
+    """
+    if facts.get(store, "state") == "building":
+        raise DataError(f"{store.path}: its build is not finished; run the same `colloc build` again to go on with it")
     return TallySpec.from_json(facts.get(store, "default_tally"))
 
 

@@ -299,10 +299,11 @@ class TableReader(TableMaker):
         if self.tally.spec.kind == "unit":
             return self._plain(block.low, block.high, block.forward)
         if self.ordered:
-            off = block.low != block.high
+            # What was met in one direction only is no row of the other.
+            on, off = block.forward != 0, (block.low != block.high) & (block.backward != 0)
             return joined(
                 [
-                    self._directed(block.low, block.high, block.forward),
+                    self._directed(block.low[on], block.high[on], block.forward[on]),
                     self._directed(block.high[off], block.low[off], block.backward[off]),
                 ]
             )
