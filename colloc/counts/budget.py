@@ -11,6 +11,8 @@ DEFAULT_MEMORY = 2 * 2**30
 
 _PROCESS = 48 * 2**20
 """What a process takes with its libraries and one block of the stream in hand (measured)."""
+_WORTHWHILE = 160 * 2**20
+"""With less, processes cut their work into so many parts that one with all the memory is faster (measured)."""
 _BYTES_PER_KEY = 40
 """Keys, flags, places and counts while a run is made of keys that are all different (measured)."""
 _BYTES_PER_CELL = 36
@@ -40,6 +42,11 @@ class Budget:
     entries: int
 
 
+def affordable_jobs(memory: int, jobs: int) -> int:
+    """As many of ``jobs`` processes as can have enough memory each to be worth having, beside the one that writes."""
+    return max(1, min(jobs, (memory - _PROCESS) // _WORTHWHILE))
+
+
 def plan_memory(memory: int, jobs: int, n_terms: int) -> Budget:
     """Sizes for each of ``jobs`` processes.
 
@@ -55,7 +62,8 @@ def plan_memory(memory: int, jobs: int, n_terms: int) -> Budget:
     """
     if memory < LEAST_MEMORY:
         raise UsageError(f"memory must be at least {LEAST_MEMORY // 2**20} MB, not {memory / 2**20:.0f} MB")
-    free = max(memory // jobs - _PROCESS, LEAST_MEMORY // 8)
+    shared = memory - _PROCESS if jobs > 1 else memory
+    free = max(shared // jobs - _PROCESS, LEAST_MEMORY // 8)
     table = free // 4
     # for very large vocabularies the plan itself would take what the table is to save
     fits = n_terms * _BYTES_PER_TERM <= free // 4

@@ -10,7 +10,7 @@ from pathlib import Path
 
 import numpy as np
 
-from colloc.counts.budget import DEFAULT_MEMORY, plan_memory
+from colloc.counts.budget import DEFAULT_MEMORY, affordable_jobs, plan_memory
 from colloc.counts.counting import Progress, count_tally
 from colloc.counts.processes import crew
 from colloc.counts.selection import Selection, documents_selection, slice_selection
@@ -160,7 +160,7 @@ class _Counter:
         self, target: Store, spec: TallySpec, selection: Selection, *, kept: bool, sign: int = 1, delta: bool = False
     ) -> None:
         """Write one run of a tally into ``target``, which has a transaction open."""
-        jobs = max(1, min(self._jobs, len(selection) // _WORTH_A_PROCESS))
+        jobs = affordable_jobs(self._memory, max(1, min(self._jobs, len(selection) // _WORTH_A_PROCESS)))
         n_terms = term_count(self._source, spec.layer)
         budget = plan_memory(self._memory, jobs, n_terms)
         place = self._folder / f"tally-{self._done}"

@@ -200,6 +200,8 @@ def test_unknown_slices_and_layers_are_refused(tmp_path: Path, text: stores.Text
             obtain_tally(store, TallySpec(where="nonsense=1"))
         with pytest.raises(UsageError, match="layer"):
             obtain_tally(store, TallySpec(layer="nonsense"))
+        with pytest.raises(UsageError, match="annotated text"):
+            obtain_tally(store, TallySpec(kind="relation", right=0))
         with pytest.raises(UsageError, match="memory must be at least 64 MB"):
             obtain_tally(store, TallySpec(), memory=1000)
         assert tallies.tally_list(store) == []
