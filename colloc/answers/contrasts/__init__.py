@@ -1,0 +1,1 @@
+"""Sub-corpora set against each other: words, pairs, near-synonyms, lists from elsewhere, many slices."""

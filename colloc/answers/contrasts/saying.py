@@ -1,0 +1,83 @@
+"""What a row of a contrast amounts to, in plain words."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from colloc.records import FloatArray, Int64Array
+
+SURE = float(np.log(0.05))
+"""Findings have q-values of at most 0.05."""
+CARRIES = 0.5
+"""From this share on one document is said to carry the difference."""
+
+HOLDS = "holds over documents"
+NO_FINDING = "no more than chance"
+UNEVEN = "not beyond the differences between documents"
+TOO_FEW = "too few documents to tell"
+
+
+def say(
+    log_q: FloatArray,
+    document_log_q: FloatArray,
+    counts: tuple[Int64Array, Int64Array],
+    largest: tuple[Int64Array, Int64Array],
+    more_in_this: np.ndarray,
+) -> list[str]:
+    """One short remark for each row.
+
+    Parameters
+    ----------
+    log_q : float64 array, shape (n,)
+        ln of the q-value that takes every occurrence for independent (G2).
+    document_log_q : float64 array
+        ln of the q-value of the test over documents; nan where there was none.
+    counts, largest : two int64 arrays each
+        Occurrences on either side, and the most that one document has.
+    more_in_this : bool array
+    """
+    remarks = []
+    for row in range(len(log_q)):
+        side = 0 if more_in_this[row] else 1
+        total, top = int(counts[side][row]), int(largest[side][row])
+        remark = _finding(float(log_q[row]), float(document_log_q[row]), top, total)
+        if not counts[1 - side][row]:
+            remark = f"{('this', 'that')[side]} only; {remark}"
+        remarks.append(remark)
+    return remarks
+
+
+def _finding(log_q: float, document_log_q: float, top: int, total: int) -> str:
+    if document_log_q <= SURE:
+        return HOLDS
+    if np.isnan(document_log_q):
+        return TOO_FEW
+    if log_q > SURE:
+        return NO_FINDING
+    if top >= CARRIES * total:
+        return f"one document carries it ({top} of {total})"
+    return UNEVEN
+
+
+def both_directions(score: FloatArray, ties: Sequence[FloatArray], more_in_this: np.ndarray, limit: int) -> Int64Array:
+    """Rows with the highest scores, half of them from either side: those of this first, then those of that.
+
+    Parameters
+    ----------
+    score : float64 array, shape (n,)
+        Higher comes first, nan last.
+    ties : sequence of float64 arrays
+        Decide among equal scores, likewise.
+    limit : int
+        Rows; 0 for all. Where one side has less than its half, the other may have more.
+    """
+    keys = [np.where(np.isnan(key), -np.inf, key) for key in (score, *ties)]
+    order = np.lexsort([np.arange(len(score)), *(-key for key in reversed(keys))])
+    this, that = order[more_in_this[order]], order[~more_in_this[order]]
+    if limit:
+        half = (limit + 1) // 2
+        of_that = min(len(that), max(limit - half, limit - len(this)))
+        this, that = this[: limit - of_that], that[:of_that]
+    return np.concatenate([this, that])
