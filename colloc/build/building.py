@@ -16,10 +16,11 @@ from colloc.build.counting import count_new_documents
 from colloc.build.reading import Progress, Read, Resources, read_into
 from colloc.errors import CannotCreateError, CollocError, DataError, InputOutputError
 from colloc.settings import DEFAULT_MEMORY, SMALLEST_MEMORY, Margins, ReadSettings, SegmentSettings, TallySpec
-from colloc.store import documents, facts, visibility
+from colloc.store import documents, facts
 from colloc.store.connection import sqlite_version
 from colloc.store.opening import Store, create, open_for_writing
 from colloc.store.scratch import scratch_folder
+from colloc.store.stream import token_count
 from colloc.store.vocabulary import ensure_layer
 from colloc.text.sources import open_sources
 
@@ -104,7 +105,7 @@ def build(
                 done = fill(store, inputs, limits, progress, read or ReadSettings())
             except CollocError:
                 # A store that got nothing is no use to anyone; one that got something is gone on with.
-                useless = new and not len(visibility.uncounted(store))
+                useless = new and not token_count(store)
                 raise
             with store.transaction():
                 facts.put(store, "state", "complete")

@@ -10,6 +10,7 @@ from colloc.records import Int64Array
 from colloc.settings import TallySpec
 from colloc.store import documents, facts, tallies, visibility
 from colloc.store.connection import Store
+from colloc.store.inputs.sources import forget_emptied
 
 
 def count_new_documents(store: Store, limits: Resources, progress: Progress | None) -> None:
@@ -27,6 +28,7 @@ def count_removed_documents(store: Store, numbers: Int64Array, limits: Resources
 
     def finish() -> None:
         documents.remove_documents(store, numbers.tolist())
+        forget_emptied(store)
         facts.next_generation(store)
 
     _count(store, numbers, -1, limits, progress, finish)

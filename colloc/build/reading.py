@@ -12,7 +12,7 @@ from colloc.build.segmenting import segment_batches
 from colloc.build.writing import StreamWriter
 from colloc.errors import DataError, NoInputError
 from colloc.settings import ReadSettings, SegmentSettings
-from colloc.store import documents, facts, visibility
+from colloc.store import documents, facts, stream
 from colloc.store.connection import Store
 from colloc.store.inputs.repeats import SeenHashes
 from colloc.store.inputs.sources import SourceRow, add_source, find_source, finish
@@ -96,8 +96,8 @@ def read_into(
             if progress is not None:
                 progress(sources.share, writer.totals.tokens, "reading")
     totals = writer.totals
-    if documents.document_count(store) == 0 and not len(visibility.uncounted(store)) and repeats.documents == 0:
-        raise NoInputError(f"{', '.join(inputs[:3])}: no document with text was found")
+    if totals.tokens == 0 and (totals.documents or not stream.token_count(store)):
+        raise NoInputError(f"{', '.join(inputs[:3])}: no words were found; give text, or another --text-column")
     return Read(
         totals.documents,
         totals.tokens,

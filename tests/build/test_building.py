@@ -210,6 +210,42 @@ def test_repeats_are_dropped_and_counted(tmp_path: Path, small_batches: None) ->
     assert sizes["longer"] == 0
 
 
+def test_removed_files_can_be_read_again(tmp_path: Path) -> None:
+    write_corpus(tmp_path / "a.jsonl", 1, 4)
+    write_corpus(tmp_path / "b.jsonl", 2, 4, prefix="e")
+    build(tmp_path / "s", [str(tmp_path / "a.jsonl"), str(tmp_path / "b.jsonl")])
+    before = content(tmp_path / "s", by_text=True)
+    remove(tmp_path / "s", identifiers=["e0", "e1", "e2", "e3"])
+    add(tmp_path / "s", [str(tmp_path / "b.jsonl")])
+    assert content(tmp_path / "s", by_text=True) == before
+
+
+def test_nothing_but_blanks_is_no_text(tmp_path: Path) -> None:
+    write_corpus(tmp_path / "a.jsonl", 1, 4)
+    build(tmp_path / "s", [str(tmp_path / "a.jsonl")])
+    before = content(tmp_path / "s")
+    (tmp_path / "blank.txt").write_text(" \n . \n", encoding="utf-8")
+    with pytest.raises(NoInputError, match="no words were found"):
+        build(tmp_path / "new", [str(tmp_path / "blank.txt")])
+    assert not (tmp_path / "new").exists()
+    with pytest.raises(NoInputError, match="no words were found"):
+        add(tmp_path / "s", [str(tmp_path / "blank.txt")])
+    assert content(tmp_path / "s") == before
+
+
+def test_identifiers_and_metadata_from_paths(tmp_path: Path) -> None:
+    for name in ("log/1871-a.txt", "log/1872-b.txt", "notice/1871-c.txt"):
+        (tmp_path / "in" / name).parent.mkdir(parents=True, exist_ok=True)
+        (tmp_path / "in" / name).write_text("The sea and the fog.", encoding="utf-8")
+    build(tmp_path / "s", [str(tmp_path / "in")], read=ReadSettings(meta_from_path="{genre}/{year}-{id}.txt"))
+    found = {name: metadata for name, _, _, metadata in content(tmp_path / "s")["documents"]}
+    assert found == {
+        "a": {"genre": "log", "year": 1871},
+        "b": {"genre": "log", "year": 1872},
+        "c": {"genre": "notice", "year": 1871},
+    }
+
+
 def test_without_text(tmp_path: Path) -> None:
     write_corpus(tmp_path / "a.jsonl", 1, 4)
     build(tmp_path / "s", [str(tmp_path / "a.jsonl")], keep_text=False)

@@ -62,6 +62,11 @@ def finish(store: Store, number: int, digest: str) -> None:
     store.execute("UPDATE sources SET digest = ?, finished = 1 WHERE id = ?", (digest, number))
 
 
+def forget_emptied(store: Store) -> None:
+    """Forget the sources of which no document is left, so that they can be read again."""
+    store.execute("DELETE FROM sources WHERE records > 0 AND id NOT IN (SELECT source FROM documents)")
+
+
 def find_source(store: Store, name: str) -> SourceRow | None:
     """A source by the name under which it was read."""
     row = store.row(f"SELECT {_COLUMNS} FROM sources WHERE name = ?", (name,))
