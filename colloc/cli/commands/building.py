@@ -33,7 +33,9 @@ _ID_COLUMN = typer.Option(
     "--id-column", metavar="NAME", help="Column that holds the identifier; id where there is one."
 )
 _META_FROM_PATH = typer.Option(
-    "--meta-from-path", metavar="PATTERN", help="Metadata from the path, such as '{genre}/{year}-{id}.txt'."
+    "--meta-from-path",
+    metavar="PATTERN",
+    help="Metadata from the path, such as '{genre}/{year}-{id}.txt'; {id} is the identifier.",
 )
 _META_TABLE = typer.Option("--meta-table", metavar="FILE", help="Table of metadata; its first column names the files.")
 _SKIP_DUPLICATES = typer.Option("--skip-duplicates", help="Leave out what has the same words as something read before.")
