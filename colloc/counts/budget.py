@@ -69,7 +69,7 @@ def plan_memory(memory: int, jobs: int, n_terms: int) -> Budget:
     fits = n_terms * _BYTES_PER_TERM <= free // 4
     cells = min(table // _BYTES_PER_CELL, 2**22) if fits else 0
     return Budget(
-        pending=max(2**12, min(free // 2 // _BYTES_PER_KEY, 2**24)),
+        pending=max(2**12, min(free // 2 // _BYTES_PER_KEY, 2**22)),
         cells=int(cells),
         entries=max(2**12, min(free // _BYTES_PER_ENTRY, 2**20)),
     )
