@@ -24,7 +24,7 @@ if typing.TYPE_CHECKING:
     from colloc.settings import SegmentSettings as SegmentSettings
     from colloc.settings import TallySpec as TallySpec
     from colloc.verbs.asking import around as around
-    from colloc.verbs.asking import matrix as matrix
+    from colloc.verbs.asking import floors as floors
     from colloc.verbs.asking import measure as measure
     from colloc.verbs.asking import pairs as pairs
     from colloc.verbs.asking import words as words
@@ -40,6 +40,7 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.making import merge as merge
     from colloc.verbs.making import remove as remove
     from colloc.verbs.opening import open_store as open_store
+    from colloc.verbs.spaces import matrix as matrix
 
 _HOMES = {
     "Columns": "colloc.answers.columns",
@@ -53,9 +54,10 @@ _HOMES = {
     "documents": "colloc.verbs.keeping",
     "documents_by": "colloc.verbs.keeping",
     "errors": "colloc",
+    "floors": "colloc.verbs.asking",
     "info": "colloc.verbs.keeping",
     "lines": "colloc.verbs.evidence",
-    "matrix": "colloc.verbs.asking",
+    "matrix": "colloc.verbs.spaces",
     "measure": "colloc.verbs.asking",
     "merge": "colloc.verbs.making",
     "open_store": "colloc.verbs.opening",

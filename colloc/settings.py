@@ -16,6 +16,8 @@ Margins = Literal["pairs", "positions", "tokens"]
 DEFAULT_WINDOW = 5
 DEFAULT_LAYER = "fold"
 DEFAULT_MIN_COUNT = 5
+DEFAULT_MIN_EXPECTED = 5.0
+"""Expected count from which an absence means something: chance alone leaves such a pair out once in 148 times."""
 DEFAULT_MEASURE = "npmi"
 LARGEST_WINDOW = 1000
 DEFAULT_MEMORY = 2 * 2**30

@@ -1,57 +1,77 @@
-"""What stands around a word."""
+"""What stands around a word, or is missing there."""
 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import Any
+from typing import Any, Literal, get_args
 
 import numpy as np
 
+from colloc.answers.avoidance import avoided_by, check_avoidance, shown_avoidance
 from colloc.answers.columns import Columns
 from colloc.answers.pairs import as_columns, filtered, score, text_ranks
 from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
-from colloc.answers.spread import document_counts
+from colloc.answers.sureness.hypotheses import Hypotheses, pairs_of_words
+from colloc.answers.sureness.judging import Judge
+from colloc.answers.sureness.wishes import Wishes, divided
 from colloc.answers.tables import PairTable, Side, joined
+from colloc.answers.wordclasses import in_classes, word_classes
 from colloc.errors import NotSeenError, UsageError
-from colloc.records import Int64Array
-from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
+from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT, DEFAULT_MIN_EXPECTED
 from colloc.store import vocabulary
 from colloc.store.connection import Store
+
+Sides = Literal["both", "left", "right", "each"]
 
 
 def around(
     store: Store,
     words: Sequence[str],
     *,
-    side: Side = "both",
+    side: Sides = "both",
+    upos: Sequence[str] = (),
     measure: str | None = None,
     show: Sequence[str] | None = None,
     options: PairOptions | None = None,
-    min_count: int = DEFAULT_MIN_COUNT,
+    min_count: int | None = None,
     min_word_count: int = 1,
-    min_docs: int = 1,
-    repulsion: bool = False,
+    wishes: Wishes | None = None,
+    avoid: bool = False,
+    min_expected: float = DEFAULT_MIN_EXPECTED,
     limit: int = 50,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
     progress: Any = None,
 ) -> Columns:
-    """The company of each word, strongest first; ``limit`` rows a word.
+    """The company of each word, strongest first; ``limit`` rows a word (and side, and word class).
 
     The word asked for is always ``first``; with ``side`` only what stands left
     (before) or right (after) of it is counted, with the margins of that side.
+
+    Parameters
+    ----------
+    side : {"both", "left", "right", "each"}
+        ``each``: both sides apart, with a column ``side``.
+    upos : sequence of str
+        Only companions of these word classes, each apart, with a column ``upos``; the layer must tell word classes.
+    avoid : bool
+        Only words that stand there much less often than expected, or never.
+
+    The other parameters are those of `colloc.answers.pairs.pairs`; the q-values are among all pairs of a word asked
+    for with any other word.
 
     Raises
     ------
     NotSeenError
         When none of the words is in the store.
     """
-    if side not in ("both", "left", "right"):
-        raise UsageError(f"side must be both, left or right, not {side!r}")
+    if side not in get_args(Sides):
+        raise UsageError(f"side must be one of {', '.join(get_args(Sides))}, not {side!r}")
     options = options or PairOptions()
     _, margins = resolve_spec(store, options)
-    ranking, names = measure_names(measure, show, margins)
+    show, wishes = divided(show, wishes)
+    ranking, names = measure_names(measure or ("g2" if avoid else None), show, margins)
     question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
     if side != "both" and question.reader.ordered:
         raise UsageError(
@@ -59,31 +79,62 @@ def around(
         )
     if side != "both" and question.spec.kind == "unit":
         raise UsageError("units that hold both words have no sides: leave out side")
+    if avoid:
+        check_avoidance(question, wishes, min_expected)
     terms = headwords(store, question.layer, words)
-    found: list[tuple[PairTable, list[str], list[str], Int64Array | None]] = []
-    for term in terms:
-        table = question.reader.around(term, side)
-        table = table.take(filtered(question, table, min_count, min_word_count, repulsion))
-        found.append(_ranked(question, table, ranking, min_docs, limit))
+    classes = word_classes(store, question.layer, upos)
+    least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
+    sides: tuple[Side, ...] = ("left", "right") if side == "each" else (side,)
+    parts: list[Columns] = []
+    for one_side in sides:
+        family: Hypotheses | None = None
+        if avoid:
+            found = avoided_by(question, terms, one_side, min_expected, min_word_count, wishes.max_q)
+            family, rows = found.family, found.table
+        else:
+            tables = [question.reader.around(term, one_side) for term in terms]
+            if wishes.tests(margins):
+                family = pairs_of_words(question, tables, min_word_count)
+            rows = joined(tables)
+            rows = rows.take(filtered(question, rows, least, min_word_count))
+        rows = rows.take(rows.joint >= least)
+        judge = Judge(
+            question,
+            wishes,
+            ranking,
+            min_word_count,
+            side=one_side,
+            family=family,
+            jobs=jobs,
+            memory=memory,
+            progress=progress,
+        )
+        rows = rows.take(judge.passing(rows))
+        if wishes.late:
+            evidence = judge.evidence(rows)
+            rows = rows.take(judge.late_passing(evidence)) if evidence is not None else rows
+        for upos_name, kept in in_classes(rows, classes):
+            table, first, second = _ranked(question, kept, terms, ranking, avoid, limit)
+            columns = as_columns(first, second, table, names, {})
+            if side == "each":
+                columns = Columns({"side": [one_side] * len(table), **columns.data})
+            if upos_name is not None:
+                columns = Columns({"upos": [upos_name] * len(table), **columns.data})
+            if avoid and family is not None:
+                columns = columns.adding(shown_avoidance(table, family))
+            parts.append(columns.adding(judge.shown(table, judge.evidence(table))))
     settings = question.settings(
         words=list(words),
         side=side,
+        upos=list(upos),
         measure=ranking,
-        min_count=min_count,
+        min_count=least,
         min_word_count=min_word_count,
-        min_docs=min_docs,
-        repulsion=repulsion,
+        **judge.settings(),
+        **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         limit=limit,
     )
-    documents = np.concatenate([part[3] for part in found if part[3] is not None]) if min_docs > 1 else None
-    return as_columns(
-        [text for part in found for text in part[1]],
-        [text for part in found for text in part[2]],
-        joined([part[0] for part in found]),
-        names,
-        settings,
-        documents,
-    )
+    return Columns({name: np.concatenate([part[name] for part in parts]) for name in parts[0].names}, settings)
 
 
 def headwords(store: Store, layer: str, words: Sequence[str]) -> list[int]:
@@ -103,14 +154,19 @@ def headwords(store: Store, layer: str, words: Sequence[str]) -> list[int]:
 
 
 def _ranked(
-    question: Question, table: PairTable, ranking: str, min_docs: int, limit: int
-) -> tuple[PairTable, list[str], list[str], Int64Array | None]:
-    top = TopRows(0 if min_docs > 1 else limit, lambda: text_ranks(question))
-    if len(table):
-        top.add(table, score(ranking, table))
-    best, _, first, second = top.best(lambda numbers: vocabulary.term_texts(question.store, question.layer, numbers))
-    if min_docs <= 1:
-        return best, first, second, None
-    documents = document_counts(question, best.first, best.second)
-    rows = np.flatnonzero(documents >= min_docs)[: limit or None]
-    return best.take(rows), [first[row] for row in rows], [second[row] for row in rows], documents[rows]
+    question: Question, rows: PairTable, terms: list[int], ranking: str, avoid: bool, limit: int
+) -> tuple[PairTable, list[str], list[str]]:
+    """The best rows of each word, in the order of the words."""
+    tables: list[PairTable] = []
+    first: list[str] = []
+    second: list[str] = []
+    for term in dict.fromkeys(terms):
+        own = rows.take(rows.first == term)
+        top = TopRows(limit, lambda: text_ranks(question))
+        if len(own):
+            top.add(own, score(ranking, own, avoid=avoid))
+        best, _, one, two = top.best(lambda numbers: vocabulary.term_texts(question.store, question.layer, numbers))
+        tables.append(best)
+        first += one
+        second += two
+    return joined(tables), first, second

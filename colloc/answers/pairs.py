@@ -1,4 +1,4 @@
-"""The strongest pairs of a store."""
+"""The strongest pairs of a store, or those that avoid each other most."""
 
 from __future__ import annotations
 
@@ -7,17 +7,22 @@ from typing import Any
 
 import numpy as np
 
+from colloc.answers.avoidance import avoiding_pairs, check_avoidance, shown_avoidance
 from colloc.answers.columns import Columns
 from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
-from colloc.answers.spread import document_counts
+from colloc.answers.sureness.judging import Judge
+from colloc.answers.sureness.wishes import Wishes, divided
 from colloc.answers.tables import PairTable
 from colloc.measures.catalogue import MEASURES
 from colloc.measures.contingency import expected
 from colloc.records import FloatArray, Int64Array
-from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
+from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT, DEFAULT_MIN_EXPECTED
 from colloc.store import vocabulary
 from colloc.store.connection import Store
+
+_FIRST_REACH = 20_000
+"""Rows that are looked up in the text at first where documents decide which rows are shown."""
 
 
 def pairs(
@@ -26,85 +31,114 @@ def pairs(
     measure: str | None = None,
     show: Sequence[str] | None = None,
     options: PairOptions | None = None,
-    min_count: int = DEFAULT_MIN_COUNT,
+    min_count: int | None = None,
     min_word_count: int = 1,
-    min_docs: int = 1,
-    repulsion: bool = False,
+    wishes: Wishes | None = None,
+    avoid: bool = False,
+    min_expected: float = DEFAULT_MIN_EXPECTED,
     limit: int = 50,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
     progress: Any = None,
 ) -> Columns:
-    """The pairs that rank highest by one measure.
+    """The pairs that rank highest by one measure; with ``avoid`` those that meet much less than chance.
 
     Parameters
     ----------
     measure : str
-        Ranks; a name of the catalogue or ``joint``. NPMI when not given.
+        Ranks; a name of the catalogue or ``joint``. NPMI when not given; for avoidance signed G2, lowest first.
     show : sequence of str
-        Measures shown besides.
-    min_count, min_word_count, min_docs : int
-        Least joint count, frequency of each word, and number of documents that
-        hold the pair. They act on what is shown, never on the margins.
-    repulsion : bool
-        Pairs that meet as often as expected or less are left out unless this is set.
+        Measures, and columns of sureness, shown besides.
+    min_count, min_word_count : int
+        Least joint count and frequency of each word. They act on what is shown, never on the margins.
+        ``min_count`` is 5 when not given, and 0 for avoidance.
+    wishes : Wishes
+        Columns of sureness, and what rows must reach in them.
+    avoid : bool
+        Only pairs, met or not, that meet less often than expected, with a q-value of at most 0.05 (or ``max_q``).
+        Without it, only pairs that meet more often.
+    min_expected : float
+        Avoidance is claimed for pairs with at least this expected count.
     limit : int
         Rows; 0 for all.
 
     Returns
     -------
     Columns
-        first, second, joint, first_total, second_total, total, expected and the
-        measures asked for; ties stand by joint count, then by word.
+        first, second, joint, first_total, second_total, total, expected, the measures asked for and the columns of
+        sureness (`colloc.answers.sureness.wishes`); for avoidance those of `colloc.answers.avoidance`. Ties stand
+        by joint count, then by word.
     """
     options = options or PairOptions()
     _, margins = resolve_spec(store, options)
-    ranking, names = measure_names(measure, show, margins)
+    show, wishes = divided(show, wishes)
+    ranking, names = measure_names(measure or ("g2" if avoid else None), show, margins)
     question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
-    top = TopRows(0 if min_docs > 1 else limit, lambda: text_ranks(question))
-    for table in question.reader.blocks():
-        chosen = table.take(filtered(question, table, min_count, min_word_count, repulsion))
-        if len(chosen):
-            top.add(chosen, score(ranking, chosen))
-    table, _, first, second = top.best(lambda terms: vocabulary.term_texts(store, question.layer, terms))
-    documents: Int64Array | None = None
-    if min_docs > 1:
-        documents = document_counts(question, table.first, table.second)
-        rows = np.flatnonzero(documents >= min_docs)[: limit or None]
-        table, documents = table.take(rows), documents[rows]
-        first, second = [first[row] for row in rows], [second[row] for row in rows]
+    least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
+    if avoid:
+        check_avoidance(question, wishes, min_expected)
+        found = avoiding_pairs(question, min_expected, min_word_count, wishes.max_q)
+        family, tables = found.family, [found.table.take(found.table.joint >= least)]
+    else:
+        family, tables = None, []
+    judge = Judge(question, wishes, ranking, min_word_count, family=family, jobs=jobs, memory=memory, progress=progress)
+    reach = max(_FIRST_REACH, limit) if wishes.late and limit else limit
+    while True:
+        top = TopRows(reach, lambda: text_ranks(question))
+        for table in tables or question.reader.blocks():
+            chosen = table if avoid else table.take(filtered(question, table, least, min_word_count))
+            chosen = chosen.take(judge.passing(chosen)) if len(chosen) else chosen
+            if len(chosen):
+                top.add(chosen, score(ranking, chosen, avoid=avoid))
+        table, _, first, second = top.best(lambda terms: vocabulary.term_texts(store, question.layer, terms))
+        evidence = judge.evidence(table)
+        if evidence is None or not wishes.late:
+            break
+        rows = np.flatnonzero(judge.late_passing(evidence))[: limit or None]
+        if not limit or len(rows) == limit or len(table) < reach:
+            table, evidence = table.take(rows), evidence.take(rows)
+            first, second = [first[row] for row in rows], [second[row] for row in rows]
+            break
+        reach *= 8
+    sureness = judge.shown(table, evidence)
     settings = question.settings(
         measure=ranking,
-        min_count=min_count,
+        min_count=least,
         min_word_count=min_word_count,
-        min_docs=min_docs,
-        repulsion=repulsion,
+        **judge.settings(),
+        **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         limit=limit,
     )
-    return as_columns(first, second, table, names, settings, documents)
+    columns = as_columns(first, second, table, names, settings)
+    if family is not None:
+        columns = columns.adding(shown_avoidance(table, family))
+    return columns.adding(sureness)
 
 
-def filtered(question: Question, table: PairTable, min_count: int, min_word_count: int, repulsion: bool) -> np.ndarray:
-    """Mask of the rows that pass the thresholds."""
+def filtered(question: Question, table: PairTable, min_count: int, min_word_count: int) -> np.ndarray:
+    """Mask of the rows that pass the thresholds and meet more often than expected."""
     keep = table.joint >= min_count
     if min_word_count > 1:
         tokens = question.words.tokens
         keep &= (tokens[table.first] >= min_word_count) & (tokens[table.second] >= min_word_count)
-    if not repulsion:
-        # Attraction: O > E without dividing, in float64 since products of margins overflow integers.
-        product = table.first_total.astype(np.float64) * table.second_total
-        keep &= table.joint * np.asarray(table.total, dtype=np.float64) > product
+    # Attraction: O > E without dividing, in float64 since products of margins overflow integers.
+    product = table.first_total.astype(np.float64) * table.second_total
+    keep &= table.joint * np.asarray(table.total, dtype=np.float64) > product
     mask: np.ndarray = keep
     return mask
 
 
-def score(measure: str, table: PairTable) -> FloatArray:
-    """The ranking value of each row, highest first: p-values and errors are negated."""
+def score(measure: str, table: PairTable, *, avoid: bool = False) -> FloatArray:
+    """The ranking value of each row, highest first: p-values and errors are negated.
+
+    With ``avoid`` the weakest association ranks highest; small p-values and errors remain the best.
+    """
+    turned = -1.0 if avoid else 1.0
     if measure == "joint":
-        return table.joint.astype(np.float64)
+        return turned * table.joint.astype(np.float64)
     chosen = MEASURES[measure]
     values = chosen.compute(*table.arguments)
-    return -values if chosen.strongest == "lowest" else values
+    return -values if chosen.strongest == "lowest" else turned * values
 
 
 def text_ranks(question: Question) -> Int64Array:
@@ -121,7 +155,6 @@ def as_columns(
     table: PairTable,
     names: Sequence[str],
     settings: dict[str, Any],
-    documents: Int64Array | None = None,
 ) -> Columns:
     """The columns every answer about pairs has, in their documented order."""
     columns: dict[str, Any] = {
@@ -133,8 +166,6 @@ def as_columns(
         "total": table.total,
         "expected": expected(*table.arguments),
     }
-    if documents is not None:
-        columns["documents"] = documents
     for name in names:
         columns[name] = MEASURES[name].compute(*table.arguments)
     return Columns(columns, settings)

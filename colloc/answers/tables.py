@@ -32,6 +32,8 @@ from colloc.records import FloatArray, Int64Array, PairBlock, UInt32Array, WordC
 from colloc.settings import Margins, TallySpec
 from colloc.store.tallies import Tally
 
+Counts = Int64Array | FloatArray
+
 Side = Literal["both", "left", "right"]
 """Which side of the first word the second stands on."""
 
@@ -47,14 +49,14 @@ class PairTable:
     ----------
     first, second : uint32 arrays, shape (n,)
         Terms.
-    joint : int64 array, shape (n,)
+    joint : int64 array, or float64 where counts are weighted, shape (n,)
     first_total, second_total, total : int64 or float64 arrays, shape (n,)
         The margins and the total of each pair's own table.
     """
 
     first: UInt32Array
     second: UInt32Array
-    joint: Int64Array
+    joint: Int64Array | FloatArray
     first_total: Int64Array | FloatArray
     second_total: Int64Array | FloatArray
     total: Int64Array | FloatArray
@@ -121,16 +123,16 @@ class Convention:
 
 
 class Totals(Protocol):
-    """What a table is made with besides its joint count: a `Tally`, or `Sums` of some of the documents."""
+    """What a table is made with besides its joint count: a `Tally`, `Sums` of some of the documents, or weighted sums."""
 
     @property
     def spec(self) -> TallySpec: ...
     @property
-    def total(self) -> int: ...
+    def total(self) -> int | float: ...
     @property
-    def first(self) -> Int64Array: ...
+    def first(self) -> Int64Array | FloatArray: ...
     @property
-    def second(self) -> Int64Array: ...
+    def second(self) -> Int64Array | FloatArray: ...
 
 
 @dataclass(frozen=True, slots=True)
@@ -138,9 +140,9 @@ class Sums:
     """Row and column sums by number of the word, and the sum of all; as a tally of ``spec`` has them."""
 
     spec: TallySpec
-    total: int
-    first: Int64Array
-    second: Int64Array
+    total: int | float
+    first: Int64Array | FloatArray
+    second: Int64Array | FloatArray
 
 
 class TableMaker:
@@ -162,7 +164,7 @@ class TableMaker:
         self._totals = totals
         self._first: Int64Array | FloatArray
         self._second: Int64Array | FloatArray
-        self.total: int
+        self.total: int | float
         self.ordered = convention.directed or kind in ("positions", "span", "relation")
         """Whether (x, y) and (y, x) are separate rows."""
         if convention.margins == "tokens":
@@ -183,7 +185,7 @@ class TableMaker:
         scaled = words.tokens.astype(np.float64) * (self.total / tokens if tokens else 0.0)
         self._first, self._second = scaled, scaled
 
-    def counted(self, first: UInt32Array, second: UInt32Array, joint: Int64Array, side: Side = "both") -> PairTable:
+    def counted(self, first: UInt32Array, second: UInt32Array, joint: Counts, side: Side = "both") -> PairTable:
         """The tables of pairs whose joint counts are known.
 
         Parameters
@@ -206,18 +208,23 @@ class TableMaker:
         """Second margin of every term."""
         return self._second
 
-    def _plain(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
+    def _plain(self, first: UInt32Array, second: UInt32Array, joint: Counts) -> PairTable:
         total = np.full(len(first), self.total)
         return PairTable(first, second, joint, self._first[first], self._second[second], total)
 
-    def _directed(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
+    def _directed(self, first: UInt32Array, second: UInt32Array, joint: Counts) -> PairTable:
         return self._one_sided(first, second, joint, self._totals.first, self._totals.second)
 
-    def _mirrored(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
+    def _mirrored(self, first: UInt32Array, second: UInt32Array, joint: Counts) -> PairTable:
         return self._one_sided(first, second, joint, self._totals.second, self._totals.first)
 
     def _one_sided(
-        self, first: UInt32Array, second: UInt32Array, joint: Int64Array, rows: Int64Array, columns: Int64Array
+        self,
+        first: UInt32Array,
+        second: UInt32Array,
+        joint: Int64Array,
+        rows: Int64Array | FloatArray,
+        columns: Int64Array | FloatArray,
     ) -> PairTable:
         """Cells of M (or of its transpose) with their own margins."""
         if self.convention.margins == "tokens":
@@ -230,7 +237,7 @@ class TableMaker:
         total = np.full(len(first), self._totals.total)
         return PairTable(first, second, joint, rows[first], columns[second], total)
 
-    def _symmetric(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
+    def _symmetric(self, first: UInt32Array, second: UInt32Array, joint: Counts) -> PairTable:
         table = self._plain(first, second, joint)
         same = first == second
         if self.convention.margins == "tokens":

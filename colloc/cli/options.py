@@ -52,6 +52,28 @@ def shown_measures(values: Iterable[str] | None) -> list[str] | None:
     return names
 
 
+def shown_columns(values: Iterable[str] | None) -> list[str] | None:
+    """Names given with ``--show`` where columns of sureness can be shown beside measures.
+
+    Raises
+    ------
+    UsageError
+        For an unknown name, with the nearest known one.
+    """
+    from colloc.answers.sureness.wishes import SURE_COLUMNS
+    from colloc.measures.catalogue import MEASURES
+
+    names = split_names(values)
+    if names is None:
+        return None
+    sure = [name for name in names if name in SURE_COLUMNS]
+    if "all" in names:
+        return [*MEASURES, *sure]
+    for name in names:
+        _check_known(name, [*MEASURES, *SURE_COLUMNS], "column")
+    return names
+
+
 def check_ranking(name: str | None) -> None:
     """Raise UsageError for a ``--measure`` that is neither ``joint`` nor in the catalogue."""
     from colloc.measures.catalogue import MEASURES
@@ -60,11 +82,11 @@ def check_ranking(name: str | None) -> None:
         _check_known(name, ["joint", *MEASURES])
 
 
-def _check_known(name: str, known: list[str]) -> None:
+def _check_known(name: str, known: list[str], kind: str = "measure") -> None:
     if name not in known:
         near = difflib.get_close_matches(name, known, n=1)
         meant = f"did you mean {near[0]!r}? " if near else ""
-        raise UsageError(f"unknown measure {name!r}; {meant}choose from {', '.join(known)}")
+        raise UsageError(f"unknown {kind} {name!r}; {meant}choose from {', '.join(known)}")
 
 
 def read_words(words: Sequence[str], listed: Path | None) -> list[str]:
@@ -169,8 +191,37 @@ MinWordCountOption = Annotated[
 MinDocsOption = Annotated[
     int, _option("--min-docs", metavar="N", min=0, help="Least number of documents that hold the row.")
 ]
+MinJointOption = Annotated[
+    int | None,
+    _option("--min-count", metavar="N", min=0, help="Least joint count shown: 5 when not given, 0 with --avoid."),
+]
+
+# Sureness
+SureOption = Annotated[
+    bool, _option("--sure", help="Show all columns of sureness: intervals, q-values, documents, chance floors.")
+]
+MaxQOption = Annotated[
+    float | None,
+    _option("--max-q", metavar="Q", help="Largest q-value shown: the share of false findings among those shown."),
+]
+AboveChanceOption = Annotated[
+    Literal["order", "corpus"] | None,
+    _option("--above-chance", help="Only rows above this chance floor; see colloc floors."),
+]
+IntervalAboveOption = Annotated[
+    float | None,
+    _option("--interval-above", metavar="BITS", help="Only rows whose interval of PMI lies above this."),
+]
 AvoidOption = Annotated[
-    bool, _option("--avoid", help="Also rows met as often as expected or less, not only attraction.")
+    bool, _option("--avoid", help="Instead of attraction: rows that meet much less often than chance, or never.")
+]
+MinExpectedOption = Annotated[
+    float,
+    _option(
+        "--min-expected",
+        metavar="E",
+        help="With --avoid: least expected count of a row that is shown.",
+    ),
 ]
 
 # Resources

@@ -22,12 +22,15 @@ class DocumentPlaces:
         Document numbers in the store.
     begins : int64 array, shape (n,)
         The place in the selection where each begins, ascending; an empty document begins where the next one does.
+    lengths : int64 array, shape (n,)
+        Tokens of each.
     stop : int
         The place after the last token of the last document.
     """
 
     numbers: Int64Array
     begins: Int64Array
+    lengths: Int64Array
     stop: int
 
     def __len__(self) -> int:
@@ -54,4 +57,4 @@ def document_places(store: Store, selection: Selection) -> DocumentPlaces:
     inside[inside] &= firsts[inside] + lengths[inside] <= selection.stops[stretch[inside]]
     numbers, firsts, lengths, stretch = numbers[inside], firsts[inside], lengths[inside], stretch[inside]
     begins = firsts - selection.begins[stretch] + selection.places[stretch]
-    return DocumentPlaces(numbers, begins, int(begins[-1] + lengths[-1]) if len(begins) else 0)
+    return DocumentPlaces(numbers, begins, lengths, int(begins[-1] + lengths[-1]) if len(begins) else 0)

@@ -3,15 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from pathlib import Path
 from typing import TYPE_CHECKING, Any, Literal
 
-from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT, Inside, Margins
-from colloc.verbs.opening import ProgressCall, StorePath, as_list, pair_options, reading
+from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_EXPECTED, Inside, Margins
+from colloc.verbs.opening import ProgressCall, StorePath, as_list, pair_options, reading, store_path
 
 if TYPE_CHECKING:
     from colloc.answers.columns import Columns
-    from colloc.exports.matrix import Matrix
+    from colloc.answers.sureness.wishes import Wishes
     from colloc.store.opening import Store
 
 DEFAULT_LIMIT = 50
@@ -60,10 +59,15 @@ def pairs(
     spanned: bool = True,
     where: Sequence[str] | str = (),
     relation: str | None = None,
-    min_count: int = DEFAULT_MIN_COUNT,
+    min_count: int | None = None,
     min_word_count: int = 1,
+    sure: bool = False,
     min_docs: int = 1,
+    max_q: float | None = None,
+    above_chance: Literal["order", "corpus"] | None = None,
+    interval_above: float | None = None,
     avoid: bool = False,
+    min_expected: float = DEFAULT_MIN_EXPECTED,
     limit: int = DEFAULT_LIMIT,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -71,8 +75,24 @@ def pairs(
 ) -> Columns:
     """The pairs that rank highest by one measure (NPMI when not given); ``limit=0`` gives all.
 
-    Only attraction is shown, unless ``avoid`` lets other pairs in. Thresholds act on
-    what is shown, never on the margins.
+    Thresholds act on what is shown, never on the margins.
+
+    Parameters
+    ----------
+    show : sequence of str
+        Measures, and columns of sureness: documents, dp_norm, pmi_low, pmi_high, sound, formula_low, formula_high,
+        q_value, corpus_floor, above_corpus, order_floor, above_order.
+    min_count : int
+        Least joint count: 5 when not given, 0 with ``avoid``.
+    sure : bool
+        All columns of sureness.
+    min_docs, max_q, above_chance, interval_above
+        What rows must reach: documents that hold the pair, the largest q-value, a chance floor, and what the lower
+        end of the interval of PMI must exceed.
+    avoid : bool
+        Pairs that meet much less often than chance, or never, instead of those that meet more often.
+    min_expected : float
+        Least expected count for which avoidance is claimed.
     """
     from colloc.answers.pairs import pairs as ask_pairs
 
@@ -85,8 +105,9 @@ def pairs(
             options=options,
             min_count=min_count,
             min_word_count=min_word_count,
-            min_docs=min_docs,
-            repulsion=avoid,
+            wishes=_wishes(sure, min_docs, max_q, above_chance, interval_above),
+            avoid=avoid,
+            min_expected=min_expected,
             limit=limit,
             jobs=jobs,
             memory=memory,
@@ -98,7 +119,8 @@ def around(
     store: StorePath | Store,
     words: Sequence[str] | str,
     *,
-    side: Literal["both", "left", "right"] = "both",
+    side: Literal["both", "left", "right", "each"] = "both",
+    upos: Sequence[str] | str = (),
     measure: str | None = None,
     show: Sequence[str] | None = None,
     layer: str | None = None,
@@ -112,16 +134,24 @@ def around(
     spanned: bool = True,
     where: Sequence[str] | str = (),
     relation: str | None = None,
-    min_count: int = DEFAULT_MIN_COUNT,
+    min_count: int | None = None,
     min_word_count: int = 1,
+    sure: bool = False,
     min_docs: int = 1,
+    max_q: float | None = None,
+    above_chance: Literal["order", "corpus"] | None = None,
+    interval_above: float | None = None,
     avoid: bool = False,
+    min_expected: float = DEFAULT_MIN_EXPECTED,
     limit: int = DEFAULT_LIMIT,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
     progress: ProgressCall | None = None,
 ) -> Columns:
     """The company of each word, strongest first, ``limit`` rows a word; the word asked for is ``first``.
+
+    ``side="each"`` lists both sides apart, ``upos`` lists companions of these word classes apart; the other
+    parameters are those of `pairs`.
 
     Raises
     ------
@@ -136,18 +166,57 @@ def around(
             opened,
             as_list(words),
             side=side,
+            upos=as_list(upos),
             measure=measure,
             show=show,
             options=options,
             min_count=min_count,
             min_word_count=min_word_count,
-            min_docs=min_docs,
-            repulsion=avoid,
+            wishes=_wishes(sure, min_docs, max_q, above_chance, interval_above),
+            avoid=avoid,
+            min_expected=min_expected,
             limit=limit,
             jobs=jobs,
             memory=memory,
             progress=progress,
         )
+
+
+def _wishes(sure: bool, min_docs: int, max_q: float | None, above_chance: Any, interval_above: float | None) -> Wishes:
+    from colloc.answers.sureness.wishes import Wishes
+
+    return Wishes(
+        everything=sure, min_docs=min_docs, max_q=max_q, above_chance=above_chance, interval_above=interval_above
+    )
+
+
+def floors(
+    store: StorePath | Store,
+    *,
+    layer: str | None = None,
+    window: int | None = None,
+    left: int | None = None,
+    right: int | None = None,
+    unit: bool = False,
+    inside: Inside | None = None,
+    margins: Margins | None = None,
+    directed: bool = False,
+    spanned: bool = True,
+    where: Sequence[str] | str = (),
+    jobs: int | None = None,
+    memory: int = DEFAULT_MEMORY,
+    progress: ProgressCall | None = None,
+) -> Columns:
+    """Make the chance floors of one way to count and keep them in the store; a row for each band of expected count.
+
+    Floors that the store has already are only read.
+    """
+    from colloc.answers.sureness.listing import listed_floors
+    from colloc.store.opening import open_for_writing
+
+    options = pair_options(layer, window, left, right, unit, inside, margins, directed, spanned, where, None)
+    with open_for_writing(store_path(store), "floors") as opened:
+        return listed_floors(opened, options, jobs=jobs, memory=memory, progress=progress)
 
 
 def measure(table: Mapping[str, Any] | Columns, *, measures: Sequence[str] | None = None) -> Columns:
@@ -168,50 +237,3 @@ def measure(table: Mapping[str, Any] | Columns, *, measures: Sequence[str] | Non
     from colloc.answers.measuring import measured
 
     return measured(table, measures)
-
-
-def matrix(
-    store: StorePath | Store,
-    stem: StorePath,
-    *,
-    shift: float = 1.0,
-    smoothing: float = 1.0,
-    layer: str | None = None,
-    window: int | None = None,
-    left: int | None = None,
-    right: int | None = None,
-    unit: bool = False,
-    inside: Inside | None = None,
-    margins: Margins | None = None,
-    directed: bool = False,
-    spanned: bool = True,
-    where: Sequence[str] | str = (),
-    relation: str | None = None,
-    min_count: int = 1,
-    min_word_count: int = 1,
-    jobs: int | None = None,
-    memory: int = DEFAULT_MEMORY,
-    progress: ProgressCall | None = None,
-) -> Matrix:
-    """Write the sparse positive PMI of every pair to ``stem``.npz and .mtx, with labels and settings beside them.
-
-    ``shift`` k takes log2 k off before the cut at 0; ``smoothing`` raises the totals of the
-    columns to a power (Levy, Goldberg & Dagan 2015). The matrix is also returned.
-    """
-    from colloc.exports.matrix import ppmi_matrix, write_matrix
-
-    options = pair_options(layer, window, left, right, unit, inside, margins, directed, spanned, where, relation)
-    with reading(store) as opened:
-        made = ppmi_matrix(
-            opened,
-            options=options,
-            shift=shift,
-            smoothing=smoothing,
-            min_count=min_count,
-            min_word_count=min_word_count,
-            jobs=jobs,
-            memory=memory,
-            progress=progress,
-        )
-    write_matrix(made, Path(stem))
-    return made

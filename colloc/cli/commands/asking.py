@@ -1,4 +1,4 @@
-"""``words``, ``pairs``, ``around`` and ``matrix``: what a store holds, listed or handed on."""
+"""``words``, ``pairs`` and ``around``: what a store holds, listed."""
 
 from __future__ import annotations
 
@@ -8,9 +8,9 @@ from typing import Annotated, Literal
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver, print_lines, remark, settings_line
+from colloc.cli.output import Target, deliver
 from colloc.cli.progress import ProgressLine
-from colloc.settings import DEFAULT_MIN_COUNT
+from colloc.settings import DEFAULT_MIN_EXPECTED
 
 LIMIT = 50
 
@@ -65,10 +65,15 @@ def pairs(
     no_span: opt.NoSpanOption = False,
     relation: opt.RelationOption = None,
     where: opt.WhereOption = None,
-    min_count: opt.MinCountOption = DEFAULT_MIN_COUNT,
+    min_count: opt.MinJointOption = None,
     min_word_count: opt.MinWordCountOption = 1,
+    sure: opt.SureOption = False,
     min_docs: opt.MinDocsOption = 1,
+    max_q: opt.MaxQOption = None,
+    above_chance: opt.AboveChanceOption = None,
+    interval_above: opt.IntervalAboveOption = None,
     avoid: opt.AvoidOption = False,
+    min_expected: opt.MinExpectedOption = DEFAULT_MIN_EXPECTED,
     limit: opt.LimitOption = LIMIT,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
@@ -77,7 +82,7 @@ def pairs(
     settings_beside: opt.BesideOption = False,
     quiet: opt.QuietOption = False,
 ) -> None:
-    """List the strongest pairs of words.
+    """List the strongest pairs of words, or with --avoid those that keep apart.
 
     What is not said about the counting is as the store was built; another window,
     layer or slice is counted from the store, and kept there for the next time.
@@ -90,7 +95,7 @@ def pairs(
         answer = asking.pairs(
             store,
             measure=measure,
-            show=opt.shown_measures(show),
+            show=opt.shown_columns(show),
             layer=layer,
             window=window,
             left=left,
@@ -104,8 +109,13 @@ def pairs(
             where=where or (),
             min_count=min_count,
             min_word_count=min_word_count,
+            sure=sure,
             min_docs=min_docs,
+            max_q=max_q,
+            above_chance=above_chance,
+            interval_above=interval_above,
             avoid=avoid,
+            min_expected=min_expected,
             limit=limit,
             jobs=jobs,
             memory=opt.memory_bytes(memory),
@@ -121,8 +131,17 @@ def around(
         Path | None, typer.Option("--words-from", metavar="FILE", help="Also the words of this file, one a line.")
     ] = None,
     side: Annotated[
-        Literal["both", "left", "right"], typer.Option("--side", help="Which side of the word the others stand on.")
+        Literal["both", "left", "right", "each"],
+        typer.Option("--side", help="Which side of the word the others stand on; each lists both sides apart."),
     ] = "both",
+    upos: Annotated[
+        list[str] | None,
+        typer.Option(
+            "--upos",
+            metavar="NAMES",
+            help="Only companions of these word classes, each listed apart; needs a layer with upos.",
+        ),
+    ] = None,
     measure: opt.MeasureOption = None,
     show: opt.ShowOption = None,
     layer: opt.LayerOption = None,
@@ -136,10 +155,15 @@ def around(
     no_span: opt.NoSpanOption = False,
     relation: opt.RelationOption = None,
     where: opt.WhereOption = None,
-    min_count: opt.MinCountOption = DEFAULT_MIN_COUNT,
+    min_count: opt.MinJointOption = None,
     min_word_count: opt.MinWordCountOption = 1,
+    sure: opt.SureOption = False,
     min_docs: opt.MinDocsOption = 1,
+    max_q: opt.MaxQOption = None,
+    above_chance: opt.AboveChanceOption = None,
+    interval_above: opt.IntervalAboveOption = None,
     avoid: opt.AvoidOption = False,
+    min_expected: opt.MinExpectedOption = DEFAULT_MIN_EXPECTED,
     limit: Annotated[
         int, typer.Option("--limit", "-n", metavar="N", min=0, help="Rows shown for each word; 0 for all.")
     ] = LIMIT,
@@ -161,8 +185,9 @@ def around(
             store,
             asked,
             side=side,
+            upos=opt.split_names(upos) or (),
             measure=measure,
-            show=opt.shown_measures(show),
+            show=opt.shown_columns(show),
             layer=layer,
             window=window,
             left=left,
@@ -176,8 +201,13 @@ def around(
             where=where or (),
             min_count=min_count,
             min_word_count=min_word_count,
+            sure=sure,
             min_docs=min_docs,
+            max_q=max_q,
+            above_chance=above_chance,
+            interval_above=interval_above,
             avoid=avoid,
+            min_expected=min_expected,
             limit=limit,
             jobs=jobs,
             memory=opt.memory_bytes(memory),
@@ -186,64 +216,7 @@ def around(
     deliver(answer, target, "around")
 
 
-def matrix(
-    store: opt.StoreArgument,
-    stem: Annotated[Path, typer.Argument(metavar="STEM", help="Path and beginning of the names of the files.")],
-    shift: Annotated[
-        float, typer.Option("--shift", metavar="K", help="Take log2 K off before the cut at 0; 1 leaves PPMI.")
-    ] = 1.0,
-    smoothing: Annotated[
-        float, typer.Option("--smoothing", metavar="A", help="Raise the totals of the columns to this power, 0 to 1.")
-    ] = 1.0,
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    no_span: opt.NoSpanOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
-    min_count: Annotated[int, typer.Option("--min-count", metavar="N", min=0, help="Least joint count kept.")] = 1,
-    min_word_count: opt.MinWordCountOption = 1,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
-    quiet: opt.QuietOption = False,
-) -> None:
-    """Write the sparse matrix of positive PMI: STEM.npz, STEM.mtx, labels and settings."""
-    from colloc.verbs import asking
-
-    with ProgressLine(quiet=quiet) as progress:
-        made = asking.matrix(
-            store,
-            stem,
-            shift=shift,
-            smoothing=smoothing,
-            layer=layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            spanned=not no_span,
-            relation=relation,
-            where=where or (),
-            min_count=min_count,
-            min_word_count=min_word_count,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
-            progress=progress,
-        )
-    remark(settings_line("matrix", made.settings), quiet=quiet)
-    if not quiet:
-        print_lines([f"{stem}.npz, {stem}.mtx: {len(made.labels):,} words, {made.values.nnz:,} cells above 0"])
-
-
 def register(app: typer.Typer) -> None:
     """Add the commands of this module."""
-    for command in (words, pairs, around, matrix):
+    for command in (words, pairs, around):
         app.command()(command)

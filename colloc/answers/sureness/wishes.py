@@ -1,0 +1,107 @@
+"""What of sureness a question asks for: columns to show, and what rows must reach."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+from colloc.answers.sureness.floors import SHUFFLES, Shuffle
+from colloc.errors import UsageError
+
+DOCUMENT_COLUMNS = ("documents", "dp_norm")
+INTERVAL_COLUMNS = ("pmi_low", "pmi_high", "sound")
+FORMULA_COLUMNS = ("formula_low", "formula_high")
+Q_COLUMNS = ("q_value",)
+FLOOR_COLUMNS = ("corpus_floor", "above_corpus", "order_floor", "above_order")
+SURE_COLUMNS = (*DOCUMENT_COLUMNS, *INTERVAL_COLUMNS, *FORMULA_COLUMNS, *Q_COLUMNS, *FLOOR_COLUMNS)
+"""All columns of sureness, in the order in which they are shown."""
+CELL_COLUMNS = (*FORMULA_COLUMNS, *Q_COLUMNS)
+"""Those that need the cells of a table, which margins of tokens do not have."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Wishes:
+    """Sureness asked for.
+
+    Parameters
+    ----------
+    columns : sequence of str
+        Names of `SURE_COLUMNS`.
+    everything : bool
+        All columns that the margins can bear.
+    min_docs : int
+        Least number of documents that hold the pair.
+    max_q : float
+        Largest q-value.
+    above_chance : "order" or "corpus"
+        The floor that the measure must exceed.
+    interval_above : float
+        What the lower end of the document-resampled interval of PMI must exceed, in bits.
+    """
+
+    columns: Sequence[str] = ()
+    everything: bool = False
+    min_docs: int = 1
+    max_q: float | None = None
+    above_chance: Shuffle | None = None
+    interval_above: float | None = None
+
+    def __post_init__(self) -> None:
+        unknown = [name for name in self.columns if name not in SURE_COLUMNS]
+        if unknown:
+            raise UsageError(f"unknown column {unknown[0]!r}: choose from {', '.join(SURE_COLUMNS)}")
+        if self.max_q is not None and not 0 < self.max_q <= 1:
+            raise UsageError(f"max_q must be above 0 and at most 1, not {self.max_q}")
+        if self.above_chance is not None and self.above_chance not in SHUFFLES:
+            raise UsageError(f"above_chance must be one of {', '.join(SHUFFLES)}, not {self.above_chance!r}")
+        if self.interval_above is not None and math.isnan(self.interval_above):
+            raise UsageError("interval_above must be a number of bits")
+
+    @property
+    def late(self) -> bool:
+        """Whether rows must reach something that only a pass over the text can tell."""
+        return self.min_docs > 1 or self.interval_above is not None
+
+    def tests(self, margins: str) -> bool:
+        """Whether q-values are needed."""
+        return "q_value" in self.shown(margins)
+
+    def shown(self, margins: str) -> tuple[str, ...]:
+        """Columns to show, in their fixed order: those asked for, and those that rows must reach.
+
+        Raises
+        ------
+        UsageError
+            Where one was asked for that these margins cannot bear.
+        """
+        if self.everything:
+            wanted = {name for name in SURE_COLUMNS if margins != "tokens" or name not in CELL_COLUMNS}
+        else:
+            wanted = set()
+        wanted |= set(self.columns)
+        if self.min_docs > 1:
+            wanted.add("documents")
+        if self.max_q is not None:
+            wanted |= set(Q_COLUMNS)
+        if self.above_chance is not None:
+            wanted |= {f"{self.above_chance}_floor", f"above_{self.above_chance}"}
+        if self.interval_above is not None:
+            wanted |= set(INTERVAL_COLUMNS)
+        if margins == "tokens" and wanted & set(CELL_COLUMNS):
+            name = next(name for name in CELL_COLUMNS if name in wanted)
+            raise UsageError(
+                f"{name} needs the cells of a table, which margins tokens does not have: use margins pairs"
+            )
+        return tuple(name for name in SURE_COLUMNS if name in wanted)
+
+
+def divided(show: Sequence[str] | None, wishes: Wishes | None) -> tuple[Sequence[str] | None, Wishes]:
+    """Names to show as names of measures, and as wishes that hold the columns of sureness among them."""
+    wishes = wishes or Wishes()
+    if show is None:
+        return None, wishes
+    sure = [name for name in show if name in SURE_COLUMNS]
+    measures = [name for name in show if name not in SURE_COLUMNS]
+    # columns of sureness alone are shown beside the usual measures
+    return measures if measures or not sure else None, replace(wishes, columns=(*wishes.columns, *sure))
