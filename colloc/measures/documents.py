@@ -255,11 +255,12 @@ def _welch(rates: DocumentRates) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Welch's t, difference of the means, ln p."""
     sides = []
     chosen = rates.in_this[rates.documents]
-    for inside, n in ((chosen, rates.in_this.sum()), (~chosen, (~rates.in_this).sum())):
+    n_this = float(np.count_nonzero(rates.in_this))
+    for inside, n in ((chosen, n_this), (~chosen, len(rates.in_this) - n_this)):
         part = rates.rates[inside]
         items = rates.items[inside]
-        sums = np.bincount(items, weights=part, minlength=rates.n_items)
-        squares = np.bincount(items, weights=part**2, minlength=rates.n_items)
-        sides.append((sums / n, _sample_variance(sums, squares, float(n)), n))
+        sums = np.bincount(items, weights=part, minlength=rates.n_items).astype(np.float64)
+        squares = np.bincount(items, weights=part**2, minlength=rates.n_items).astype(np.float64)
+        sides.append((sums / n, _sample_variance(sums, squares, n), n))
     gap, _ = welch_test(*sides[0], *sides[1])
     return gap.z, gap.difference, np.where(gap.difference == 0, 0.0, gap.log_p)

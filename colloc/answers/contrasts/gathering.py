@@ -6,13 +6,14 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colloc.answers.questions import Question
 from colloc.counts.candidates import CandidatePass
 from colloc.counts.selection import slice_selection
 from colloc.counts.words import document_words
 from colloc.measures.documents import DocumentRates
-from colloc.records import FloatArray, Int64Array, UInt32Array
+from colloc.records import Int64Array, UInt32Array
 from colloc.store.connection import Store
 
 BYTES_AN_ENTRY = 120
@@ -60,8 +61,8 @@ class DocumentCounts:
         np.maximum.at(largest, self.items[chosen], self.counts[chosen])
         return largest
 
-    def _on(self, this: bool) -> np.ndarray:
-        return (self.documents < self.n_this) == this
+    def _on(self, this: bool) -> NDArray[np.bool_]:
+        return np.equal(self.documents < self.n_this, this)
 
 
 def word_counts_by_document(
@@ -133,11 +134,3 @@ def pair_counts_by_document(questions: Sequence[Question], first: UInt32Array, s
     empty = np.empty(0, np.int64)
     items, documents, counts = (np.concatenate([empty, *(part[column] for part in parts)]) for column in range(3))
     return DocumentCounts(items, documents, counts, np.concatenate(sizes), n_this, len(first))
-
-
-def mean_rate_per_million(counts: DocumentCounts, this: bool) -> FloatArray:
-    """Mean over the documents of one side of an item's relative frequency, by item."""
-    chosen = (counts.documents < counts.n_this) == this
-    n = counts.n_this if this else len(counts.sizes) - counts.n_this
-    rates = counts.counts[chosen] / counts.sizes[counts.documents[chosen]]
-    return np.bincount(counts.items[chosen], weights=rates, minlength=counts.n_items) * (1e6 / max(n, 1))

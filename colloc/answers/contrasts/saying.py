@@ -49,6 +49,24 @@ def say(
     return remarks
 
 
+def say_of_association(log_q: FloatArray, differs: np.ndarray, counts: tuple[Int64Array, Int64Array]) -> list[str]:
+    """One short remark on a difference of association for each row.
+
+    Parameters
+    ----------
+    log_q : float64 array, shape (n,)
+        ln of the q-value of Woolf's test.
+    differs : bool array
+        Whether the jackknife interval over documents of the PMI difference leaves 0 out.
+    """
+    remarks = []
+    for row in range(len(log_q)):
+        remark = NO_FINDING if log_q[row] > SURE else HOLDS if differs[row] else UNEVEN
+        alone = [name for name, other in (("this", counts[1]), ("that", counts[0])) if not other[row]]
+        remarks.append(f"{alone[0]} only; {remark}" if alone else remark)
+    return remarks
+
+
 def _finding(log_q: float, document_log_q: float, top: int, total: int) -> str:
     if document_log_q <= SURE:
         return HOLDS

@@ -45,13 +45,14 @@ def resolve_sides(store: Store, this: Sequence[str], that: Sequence[str], where:
     within = slices.canonical(where)
     one = slices.canonical([*this, *where])
     other = slices.canonical([*that, *where]) if that else slices.complement(slices.canonical(this), within)
-    numbers = [slices.select(store, side) for side in (one, other)]
-    for side, found in zip((one, other), numbers, strict=True):
+    numbers, other_numbers = slices.select(store, one), slices.select(store, other)
+    for side, found in ((one, numbers), (other, other_numbers)):
         if not len(found):
             raise UsageError(f"{store.path}: no document fits {side!r}; `colloc info STORE --by KEY` lists values")
-    shared = np.intersect1d(*numbers)
+    shared = np.intersect1d(numbers, other_numbers)
     if len(shared):
         raise UsageError(
-            f"{store.path}: {len(shared)} documents fit both {one!r} and {other!r}: a contrast needs sides that share none"
+            f"{store.path}: {len(shared)} documents fit both {one!r} and {other!r}: "
+            "a contrast needs sides that share none"
         )
     return Sides(one, other)
