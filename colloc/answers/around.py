@@ -37,6 +37,7 @@ def around(
     min_count: int | None = None,
     min_word_count: int = 1,
     wishes: Wishes | None = None,
+    any_strength: bool = False,
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
     limit: int = 50,
@@ -80,7 +81,7 @@ def around(
     if side != "both" and question.spec.kind == "unit":
         raise UsageError("units that hold both words have no sides: leave out side")
     if avoid:
-        check_avoidance(question, wishes, min_expected)
+        check_avoidance(question, wishes, min_expected, any_strength)
     terms = headwords(store, question.layer, words)
     classes = word_classes(store, question.layer, upos)
     least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
@@ -96,7 +97,7 @@ def around(
             if wishes.tests(margins):
                 family = pairs_of_words(question, tables, min_word_count)
             rows = joined(tables)
-            rows = rows.take(filtered(question, rows, least, min_word_count))
+            rows = rows.take(filtered(question, rows, least, min_word_count, any_strength))
         rows = rows.take(rows.joint >= least)
         judge = Judge(
             question,
@@ -130,6 +131,7 @@ def around(
         measure=ranking,
         min_count=least,
         min_word_count=min_word_count,
+        any_strength=any_strength,
         **judge.settings(),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         limit=limit,

@@ -48,11 +48,13 @@ def lower_tail(table: PairTable) -> FloatArray:
     return fisher_log_p(*table.arguments, alternative="less")
 
 
-def check_avoidance(question: Question, wishes: Wishes, min_expected: float) -> None:
+def check_avoidance(question: Question, wishes: Wishes, min_expected: float, any_strength: bool) -> None:
     """Raise UsageError for what avoidance cannot be asked with."""
     require_cells(question, "avoidance")
     if min_expected < 1:
         raise UsageError(f"min_expected must be at least 1, not {min_expected}: rarer pairs are missing by chance")
+    if any_strength:
+        raise UsageError("any_strength and avoid contradict each other: give one of them")
     if wishes.above_chance is not None:
         raise UsageError("above_chance asks for attraction: leave it out with avoid")
 

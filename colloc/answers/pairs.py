@@ -34,6 +34,7 @@ def pairs(
     min_count: int | None = None,
     min_word_count: int = 1,
     wishes: Wishes | None = None,
+    any_strength: bool = False,
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
     limit: int = 50,
@@ -54,9 +55,10 @@ def pairs(
         ``min_count`` is 5 when not given, and 0 for avoidance.
     wishes : Wishes
         Columns of sureness, and what rows must reach in them.
+    any_strength : bool
+        Also pairs that meet as often as expected or less; otherwise only those that meet more often.
     avoid : bool
         Only pairs, met or not, that meet less often than expected, with a q-value of at most 0.05 (or ``max_q``).
-        Without it, only pairs that meet more often.
     min_expected : float
         Avoidance is claimed for pairs with at least this expected count.
     limit : int
@@ -76,7 +78,7 @@ def pairs(
     question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
     least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
     if avoid:
-        check_avoidance(question, wishes, min_expected)
+        check_avoidance(question, wishes, min_expected, any_strength)
         found = avoiding_pairs(question, min_expected, min_word_count, wishes.max_q)
         family, tables = found.family, [found.table.take(found.table.joint >= least)]
     else:
@@ -86,7 +88,7 @@ def pairs(
     while True:
         top = TopRows(reach, lambda: text_ranks(question))
         for table in tables or question.reader.blocks():
-            chosen = table if avoid else table.take(filtered(question, table, least, min_word_count))
+            chosen = table if avoid else table.take(filtered(question, table, least, min_word_count, any_strength))
             chosen = chosen.take(judge.passing(chosen)) if len(chosen) else chosen
             if len(chosen):
                 top.add(chosen, score(ranking, chosen, avoid=avoid))
@@ -105,6 +107,7 @@ def pairs(
         measure=ranking,
         min_count=least,
         min_word_count=min_word_count,
+        any_strength=any_strength,
         **judge.settings(),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         limit=limit,
@@ -115,15 +118,18 @@ def pairs(
     return columns.adding(sureness)
 
 
-def filtered(question: Question, table: PairTable, min_count: int, min_word_count: int) -> np.ndarray:
-    """Mask of the rows that pass the thresholds and meet more often than expected."""
+def filtered(
+    question: Question, table: PairTable, min_count: int, min_word_count: int, any_strength: bool
+) -> np.ndarray:
+    """Mask of the rows that pass the thresholds and, unless any strength will do, meet more often than expected."""
     keep = table.joint >= min_count
     if min_word_count > 1:
         tokens = question.words.tokens
         keep &= (tokens[table.first] >= min_word_count) & (tokens[table.second] >= min_word_count)
-    # Attraction: O > E without dividing, in float64 since products of margins overflow integers.
-    product = table.first_total.astype(np.float64) * table.second_total
-    keep &= table.joint * np.asarray(table.total, dtype=np.float64) > product
+    if not any_strength:
+        # Attraction: O > E without dividing, in float64 since products of margins overflow integers.
+        product = table.first_total.astype(np.float64) * table.second_total
+        keep &= table.joint * np.asarray(table.total, dtype=np.float64) > product
     mask: np.ndarray = keep
     return mask
 

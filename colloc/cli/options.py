@@ -70,7 +70,7 @@ def shown_columns(values: Iterable[str] | None) -> list[str] | None:
     if "all" in names:
         return [*MEASURES, *sure]
     for name in names:
-        _check_known(name, [*MEASURES, *SURE_COLUMNS], "column")
+        _check_known(name, [*MEASURES, *SURE_COLUMNS])
     return names
 
 
@@ -82,11 +82,11 @@ def check_ranking(name: str | None) -> None:
         _check_known(name, ["joint", *MEASURES])
 
 
-def _check_known(name: str, known: list[str], kind: str = "measure") -> None:
+def _check_known(name: str, known: list[str]) -> None:
     if name not in known:
         near = difflib.get_close_matches(name, known, n=1)
         meant = f"did you mean {near[0]!r}? " if near else ""
-        raise UsageError(f"unknown {kind} {name!r}; {meant}choose from {', '.join(known)}")
+        raise UsageError(f"unknown measure {name!r}; {meant}choose from {', '.join(known)}")
 
 
 def read_words(words: Sequence[str], listed: Path | None) -> list[str]:
@@ -211,6 +211,9 @@ AboveChanceOption = Annotated[
 IntervalAboveOption = Annotated[
     float | None,
     _option("--interval-above", metavar="BITS", help="Only rows whose interval of PMI lies above this."),
+]
+AnyStrengthOption = Annotated[
+    bool, _option("--any-strength", help="Also rows that meet as often as expected or less, not only attraction.")
 ]
 AvoidOption = Annotated[
     bool, _option("--avoid", help="Instead of attraction: rows that meet much less often than chance, or never.")

@@ -66,6 +66,7 @@ def pairs(
     max_q: float | None = None,
     above_chance: Literal["order", "corpus"] | None = None,
     interval_above: float | None = None,
+    any_strength: bool = False,
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
     limit: int = DEFAULT_LIMIT,
@@ -89,6 +90,8 @@ def pairs(
     min_docs, max_q, above_chance, interval_above
         What rows must reach: documents that hold the pair, the largest q-value, a chance floor, and what the lower
         end of the interval of PMI must exceed.
+    any_strength : bool
+        Also pairs that meet as often as expected or less; otherwise only those that meet more often.
     avoid : bool
         Pairs that meet much less often than chance, or never, instead of those that meet more often.
     min_expected : float
@@ -106,6 +109,7 @@ def pairs(
             min_count=min_count,
             min_word_count=min_word_count,
             wishes=_wishes(sure, min_docs, max_q, above_chance, interval_above),
+            any_strength=any_strength,
             avoid=avoid,
             min_expected=min_expected,
             limit=limit,
@@ -141,6 +145,7 @@ def around(
     max_q: float | None = None,
     above_chance: Literal["order", "corpus"] | None = None,
     interval_above: float | None = None,
+    any_strength: bool = False,
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
     limit: int = DEFAULT_LIMIT,
@@ -173,6 +178,7 @@ def around(
             min_count=min_count,
             min_word_count=min_word_count,
             wishes=_wishes(sure, min_docs, max_q, above_chance, interval_above),
+            any_strength=any_strength,
             avoid=avoid,
             min_expected=min_expected,
             limit=limit,

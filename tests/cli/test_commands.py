@@ -90,7 +90,7 @@ def test_pairs_are_the_brute_force_ones(run: Run, built: Path) -> None:
         margins[first] += count
         margins[second] += count
     total = 2 * counts.total()
-    ran = run("pairs", built, "--min-count", 1, "--limit", 0, "--avoid", "--format", "csv", "--measure", "pmi")
+    ran = run("pairs", built, "--min-count", 1, "--limit", 0, "--any-strength", "--format", "csv", "--measure", "pmi")
     assert ran.code == 0
     rows = rows_of(ran.out)
     assert {frozenset((row["first"], row["second"])): int(row["joint"]) for row in rows} == dict(both)
@@ -125,7 +125,7 @@ def test_pairs_pipe_into_measure(built: Path) -> None:
 
 def test_directed_another_window_and_a_slice(run: Run, store: Path) -> None:
     counts = follower_counts(3)
-    ran = run("pairs", store, "--window", 3, "--directed", "--min-count", 1, "-n", 0, "--avoid", "-f", "jsonl")
+    ran = run("pairs", store, "--window", 3, "--directed", "--min-count", 1, "-n", 0, "--any-strength", "-f", "jsonl")
     assert {(row["first"], row["second"]): row["joint"] for row in map(json.loads, ran.out.splitlines())} == counts
     assert "window 3" in ran.err
     assert "directed" in ran.err
@@ -137,7 +137,7 @@ def test_directed_another_window_and_a_slice(run: Run, store: Path) -> None:
 
 
 def test_thresholds_and_limits(run: Run, built: Path) -> None:
-    rows = rows_of(run("pairs", built, "--min-count", 2, "-f", "csv", "-n", 0, "--avoid").out)
+    rows = rows_of(run("pairs", built, "--min-count", 2, "-f", "csv", "-n", 0, "--any-strength").out)
     assert min(int(row["joint"]) for row in rows) == 2
     rows = rows_of(run("pairs", built, "--min-count", 1, "--min-word-count", 3, "-f", "csv", "-n", 0).out)
     frequent = {word for word, n in Counter(word for words in SENTENCES for word in words).items() if n >= 3}
@@ -153,13 +153,13 @@ def test_thresholds_and_limits(run: Run, built: Path) -> None:
 def test_around_words_and_a_file_of_words(run: Run, built: Path, tmp_path: Path) -> None:
     listed = tmp_path / "words.txt"
     listed.write_text("dawn\n\n  Fog \n", encoding="utf-8")
-    rows = rows_of(run("around", built, "thick", "--words-from", listed, "--min-count", 1, "-f", "csv", "--avoid").out)
+    rows = rows_of(run("around", built, "thick", "--words-from", listed, "--min-count", 1, "-f", "csv", "--any-strength").out)
     assert list(dict.fromkeys(row["first"] for row in rows)) == ["thick", "dawn", "fog"]
     counts = follower_counts()
     for row in rows:
         pair = (row["first"], row["second"])
         assert int(row["joint"]) == counts[pair] + (counts[pair[::-1]] if pair[0] != pair[1] else 0)
-    left = rows_of(run("around", built, "fog", "--side", "left", "--min-count", 1, "-f", "csv", "--avoid").out)
+    left = rows_of(run("around", built, "fog", "--side", "left", "--min-count", 1, "-f", "csv", "--any-strength").out)
     assert {row["second"]: int(row["joint"]) for row in left} == {
         first: count for (first, second), count in counts.items() if second == "fog"
     }
@@ -176,10 +176,10 @@ def test_words(run: Run, built: Path) -> None:
 
 
 def test_other_conventions_are_passed_on(run: Run, store: Path) -> None:
-    unit = rows_of(run("pairs", store, "--unit", "--min-count", 1, "-n", 0, "-f", "csv", "--avoid").out)
+    unit = rows_of(run("pairs", store, "--unit", "--min-count", 1, "-n", 0, "-f", "csv", "--any-strength").out)
     both = [row for row in unit if {row["first"], row["second"]} == {"at", "dawn"}]
     assert [(int(row["joint"]), int(row["total"])) for row in both] == [(3, len(SENTENCES))]
-    positions = run("pairs", store, "--margins", "positions", "--min-count", 1, "-n", 0, "-f", "csv", "--avoid")
+    positions = run("pairs", store, "--margins", "positions", "--min-count", 1, "-n", 0, "-f", "csv", "--any-strength")
     row = next(row for row in rows_of(positions.out) if (row["first"], row["second"]) == ("fog", "thick"))
     # fog stands 4 times, 3 of them with thick within 2 words; 38 tokens in all.
     assert (row["joint"], row["first_total"], row["total"]) == ("3", "4", "38")
@@ -345,10 +345,11 @@ def test_python_build_add_remove_merge(tmp_path: Path) -> None:
 
 
 def test_matrix(run: Run, built: Path, tmp_path: Path) -> None:
-    ran = run("matrix", built, tmp_path / "m", "--shift", 2, "--smoothing", 0.75)
+    ran = run("matrix", built, "-o", tmp_path / "m", "--shift", 2, "--smoothing", 0.75)
     assert ran.code == 0, ran.err
     made = colloc.matrix(built, tmp_path / "again", shift=2, smoothing=0.75)
-    assert ran.out == f"{tmp_path}/m.npz, {tmp_path}/m.mtx: {len(made.labels)} words, {made.values.nnz} cells above 0\n"
+    n = len(made.rows)
+    assert ran.out == f"{tmp_path}/m: {n} rows, {n} columns, {made.values.nnz} cells\n"
     assert (tmp_path / "m.mtx").read_bytes() == (tmp_path / "again.mtx").read_bytes()
     assert "shift 2.0; smoothing 0.75" in ran.err
-    assert run("matrix", built, tmp_path / "m", "--shift", -1).code == 2
+    assert run("matrix", built, "-o", tmp_path / "m", "--shift", -1).code == 2
