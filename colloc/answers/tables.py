@@ -23,7 +23,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from typing import Literal, Protocol
+from typing import Literal, Protocol, cast
 
 import numpy as np
 
@@ -49,14 +49,14 @@ class PairTable:
     ----------
     first, second : uint32 arrays, shape (n,)
         Terms.
-    joint : int64 array, or float64 where counts are weighted, shape (n,)
+    joint : int64 array, shape (n,); float64 where counts are weighted
     first_total, second_total, total : int64 or float64 arrays, shape (n,)
         The margins and the total of each pair's own table.
     """
 
     first: UInt32Array
     second: UInt32Array
-    joint: Int64Array | FloatArray
+    joint: Int64Array
     first_total: Int64Array | FloatArray
     second_total: Int64Array | FloatArray
     total: Int64Array | FloatArray
@@ -123,7 +123,7 @@ class Convention:
 
 
 class Totals(Protocol):
-    """What a table is made with besides its joint count: a `Tally`, `Sums` of some of the documents, or weighted sums."""
+    """What a table is made with besides its joint count: a `Tally`, `Sums` of some documents, or weighted sums."""
 
     @property
     def spec(self) -> TallySpec: ...
@@ -194,11 +194,12 @@ class TableMaker:
             Ordered: the cells [first, second]. With a side: the cells of the side of ``first`` that ``second``
             stands on. Otherwise both cells of a pair together.
         """
+        counts = cast(Int64Array, joint)
         if self.spec.kind == "unit":
-            return self._plain(first, second, joint)
+            return self._plain(first, second, counts)
         if self.ordered or side == "right":
-            return self._directed(first, second, joint)
-        return self._mirrored(first, second, joint) if side == "left" else self._symmetric(first, second, joint)
+            return self._directed(first, second, counts)
+        return self._mirrored(first, second, counts) if side == "left" else self._symmetric(first, second, counts)
 
     def first_totals(self) -> Int64Array | FloatArray:
         """First margin of every term (before halving on the diagonal)."""
@@ -208,14 +209,14 @@ class TableMaker:
         """Second margin of every term."""
         return self._second
 
-    def _plain(self, first: UInt32Array, second: UInt32Array, joint: Counts) -> PairTable:
+    def _plain(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
         total = np.full(len(first), self.total)
         return PairTable(first, second, joint, self._first[first], self._second[second], total)
 
-    def _directed(self, first: UInt32Array, second: UInt32Array, joint: Counts) -> PairTable:
+    def _directed(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
         return self._one_sided(first, second, joint, self._totals.first, self._totals.second)
 
-    def _mirrored(self, first: UInt32Array, second: UInt32Array, joint: Counts) -> PairTable:
+    def _mirrored(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
         return self._one_sided(first, second, joint, self._totals.second, self._totals.first)
 
     def _one_sided(
@@ -237,7 +238,7 @@ class TableMaker:
         total = np.full(len(first), self._totals.total)
         return PairTable(first, second, joint, rows[first], columns[second], total)
 
-    def _symmetric(self, first: UInt32Array, second: UInt32Array, joint: Counts) -> PairTable:
+    def _symmetric(self, first: UInt32Array, second: UInt32Array, joint: Int64Array) -> PairTable:
         table = self._plain(first, second, joint)
         same = first == second
         if self.convention.margins == "tokens":

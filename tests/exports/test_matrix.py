@@ -60,7 +60,7 @@ def test_matrix_is_the_dense_one(store: Path, tmp_path: Path, directed: bool, sh
     expected = dense(directed, shift, smoothing)
     cells = made.values.tocoo()
     found = {
-        (made.labels[row], made.labels[column]): value
+        (made.rows[row], made.columns[column]): value
         for row, column, value in zip(*cells.coords, cells.data, strict=True)
     }
     assert found.keys() == expected.keys()
@@ -80,7 +80,7 @@ def test_the_files_are_read_back_equal(store: Path, tmp_path: Path) -> None:
     np.testing.assert_array_equal(loaded.toarray(), made.values.toarray())
     np.testing.assert_array_equal(scipy.io.mmread(tmp_path / "m.x.mtx").toarray(), made.values.toarray())
     labels = json.loads((tmp_path / "m.x.labels.json").read_text())
-    assert labels == {"rows": made.labels, "columns": made.labels}
+    assert labels == {"rows": made.rows, "columns": made.columns}
     settings = json.loads((tmp_path / "m.x.settings.json").read_text())["settings"]
     assert (settings["shift"], settings["right"], settings["layer"]) == (1.5, 2, "fold")
 
@@ -89,12 +89,13 @@ def test_thresholds_leave_the_margins(store: Path, tmp_path: Path) -> None:
     whole = colloc.matrix(store, tmp_path / "a")
     some = colloc.matrix(store, tmp_path / "b", min_count=2)
     assert 0 < some.values.nnz < whole.values.nnz
-    places = [whole.labels.index(word) for word in some.labels]
+    places = [whole.rows.index(word) for word in some.rows]
     part = whole.values.toarray()[np.ix_(places, places)]
     kept = some.values.toarray()
     np.testing.assert_array_equal(kept[kept > 0], part[kept > 0])
-    frequent = colloc.matrix(store, tmp_path / "c", min_word_count=3)
-    assert set(frequent.labels) <= {"fog", "at", "dawn", "heavy", "and", "the"}
+    frequent = colloc.matrix(store, tmp_path / "c", min_row_count=3, min_context_count=3)
+    assert frequent.rows
+    assert set(frequent.rows) <= {"fog", "at", "dawn", "heavy", "and", "the"}
     nothing = colloc.matrix(store, tmp_path / "d", min_count=1000)
     assert nothing.values.shape == (0, 0)
 

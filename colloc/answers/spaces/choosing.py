@@ -1,0 +1,114 @@
+"""Which words are the rows or the contexts of a matrix: by frequency, or by a list."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colloc.answers.questions import Question
+from colloc.errors import UsageError
+from colloc.records import Int64Array
+from colloc.store import vocabulary
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Choice:
+    """A choice of words; the conditions hold together.
+
+    Parameters
+    ----------
+    words : tuple of str, optional
+        These words, in this order; a word that the store does not know has an empty row or column.
+    min_count : int
+        Words seen at least so often (in the slice asked for).
+    most : int, optional
+        So many words, the most frequent; ties by number, which is the order of first appearance.
+    """
+
+    words: tuple[str, ...] | None = None
+    min_count: int = 1
+    most: int | None = None
+
+    def __post_init__(self) -> None:
+        if self.words is not None and (self.min_count > 1 or self.most is not None):
+            raise UsageError("words are chosen by a list or by frequency: give one of them")
+        if self.words is not None and len(set(self.words)) < len(self.words):
+            twice = sorted({word for word in self.words if self.words.count(word) > 1})
+            raise UsageError(f"the list names {', '.join(map(repr, twice[:5]))} twice; leave the repeats out")
+        if self.most is not None and self.most < 1:
+            raise UsageError(f"at least 1 word must be chosen, not {self.most}")
+
+    def described(self) -> str:
+        """In words, for the settings; empty where all words are taken."""
+        if self.words is not None:
+            return f"{len(self.words)} listed"
+        parts = [f"seen {self.min_count} times or more"] if self.min_count > 1 else []
+        return ", ".join([*parts, *([f"{self.most} most frequent"] if self.most is not None else [])])
+
+
+EVERY_WORD = Choice()
+"""No condition."""
+
+
+@dataclass(frozen=True, slots=True)
+class Chosen:
+    """A choice resolved for one store.
+
+    Attributes
+    ----------
+    terms : int64 array or None
+        Terms of a list in its order, -1 for unknown words; None where those with cells are taken.
+    mask : bool array or None
+        By term: whether it may have cells; None where all may.
+    words : tuple of str or None
+        The words of the list.
+    """
+
+    terms: Int64Array | None
+    mask: NDArray[np.bool] | None
+    words: tuple[str, ...] | None
+
+    def texts(self, question: Question, terms: Int64Array) -> list[str]:
+        """What the rows or columns are called."""
+        if self.words is not None:
+            return list(self.words)
+        return vocabulary.term_texts(question.store, question.layer, terms)
+
+
+def choose(question: Question, choice: Choice, what: str) -> Chosen:
+    """The terms that a choice means.
+
+    Raises
+    ------
+    UsageError
+        Where two words of a list are one term of the layer.
+    """
+    if choice.words is not None:
+        return _listed(question, choice.words, what)
+    tokens = question.words.tokens
+    mask: NDArray[np.bool] | None = None
+    if choice.min_count > 1:
+        mask = tokens >= choice.min_count
+    if choice.most is not None:
+        first = np.argsort(-tokens, kind="stable")[: choice.most]
+        frequent = np.zeros(len(tokens), bool)
+        frequent[first] = True
+        mask = frequent if mask is None else mask & frequent
+    return Chosen(None, mask, None)
+
+
+def _listed(question: Question, words: Sequence[str], what: str) -> Chosen:
+    terms = vocabulary.term_numbers(question.store, question.layer, words)
+    known = terms[terms >= 0]
+    numbers, counts = np.unique(known, return_counts=True)
+    if (counts > 1).any():
+        same = [word for word, term in zip(words, terms.tolist(), strict=True) if term == numbers[counts > 1][0]]
+        raise UsageError(
+            f"{what}: {' and '.join(map(repr, same[:2]))} are one word in the layer {question.layer!r}; leave one out"
+        )
+    mask = np.zeros(len(question.words.tokens), bool)
+    mask[known] = True
+    return Chosen(terms, mask, tuple(words))

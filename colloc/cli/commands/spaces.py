@@ -1,0 +1,137 @@
+"""``matrix``: words as rows of numbers, for other programs."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Annotated, Literal
+
+import typer
+
+from colloc.cli import options as opt
+from colloc.cli.output import print_lines, remark, settings_line
+from colloc.cli.progress import ProgressLine
+
+OutputFile = Annotated[
+    Path,
+    typer.Option(
+        "--output",
+        "-o",
+        metavar="FILE",
+        help="Written to: .npz (scipy), .mtx (Matrix Market) or .arrow; without an ending .npz and .mtx.",
+    ),
+]
+ShiftOption = Annotated[
+    float, typer.Option("--shift", metavar="K", help="Take log2 K off before the cut at 0; 1 leaves PPMI.")
+]
+SmoothingOption = Annotated[
+    float, typer.Option("--smoothing", metavar="A", help="Raise the totals of the contexts to this power, 0 to 1.")
+]
+WeightingOption = Annotated[
+    Literal["flat", "harmonic", "linear"],
+    typer.Option("--weighting", help="What a pair at distance d of a window of w counts: 1, 1/d, or (w+1-d)/w."),
+]
+RowsFromOption = Annotated[
+    Path | None, typer.Option("--rows-from", metavar="FILE", help="Rows are the words of this file, one a line.")
+]
+ContextsFromOption = Annotated[
+    Path | None,
+    typer.Option("--contexts-from", metavar="FILE", help="Contexts are the words of this file, one a line."),
+]
+MinRowOption = Annotated[
+    int, typer.Option("--min-row-count", metavar="N", min=1, help="Rows are words seen at least so often.")
+]
+MinContextOption = Annotated[
+    int, typer.Option("--min-context-count", metavar="N", min=1, help="Contexts are words seen at least so often.")
+]
+MostRowsOption = Annotated[
+    int | None, typer.Option("--most-rows", metavar="N", min=1, help="Rows are the N most frequent words.")
+]
+MostContextsOption = Annotated[
+    int | None, typer.Option("--most-contexts", metavar="N", min=1, help="Contexts are the N most frequent words.")
+]
+
+
+def listed(path: Path | None) -> list[str] | None:
+    """The words of a file, or None without one."""
+    return None if path is None else opt.read_words((), path)
+
+
+def matrix(
+    store: opt.StoreArgument,
+    output: OutputFile,
+    value: Annotated[
+        Literal["ppmi", "npmi", "g2", "count"], typer.Option("--value", help="What the cells hold.")
+    ] = "ppmi",
+    shift: ShiftOption = 1.0,
+    smoothing: SmoothingOption = 1.0,
+    weighting: WeightingOption = "flat",
+    rows_from: RowsFromOption = None,
+    contexts_from: ContextsFromOption = None,
+    min_row_count: MinRowOption = 1,
+    min_context_count: MinContextOption = 1,
+    most_rows: MostRowsOption = None,
+    most_contexts: MostContextsOption = None,
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    directed: opt.DirectedOption = False,
+    no_span: opt.NoSpanOption = False,
+    relation: opt.RelationOption = None,
+    where: opt.WhereOption = None,
+    min_count: Annotated[float, typer.Option("--min-count", metavar="N", min=0, help="Least joint count kept.")] = 1,
+    min_value: Annotated[
+        float | None, typer.Option("--min-value", metavar="V", help="Least value of a cell kept.")
+    ] = None,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """Write the sparse matrix of a table: words as rows, their company as columns.
+
+    Labels and settings stand beside it as FILE.labels.json and FILE.settings.json (without its ending).
+    """
+    from colloc.verbs import spaces
+
+    with ProgressLine(quiet=quiet) as progress:
+        made = spaces.matrix(
+            store,
+            output,
+            value=value,
+            shift=shift,
+            smoothing=smoothing,
+            weighting=weighting,
+            rows=listed(rows_from),
+            contexts=listed(contexts_from),
+            min_row_count=min_row_count,
+            min_context_count=min_context_count,
+            most_rows=most_rows,
+            most_contexts=most_contexts,
+            layer=layer,
+            window=window,
+            left=left,
+            right=right,
+            unit=unit,
+            inside=inside,
+            margins=margins,
+            directed=directed,
+            spanned=not no_span,
+            relation=relation,
+            where=where or (),
+            min_count=min_count,
+            min_value=min_value,
+            jobs=jobs,
+            memory=opt.memory_bytes(memory),
+            progress=progress,
+        )
+    remark(settings_line("matrix", made.settings), quiet=quiet)
+    if not quiet:
+        print_lines([f"{output}: {len(made.rows)} rows, {len(made.columns)} columns, {made.values.nnz} cells"])
+
+
+def register(app: typer.Typer) -> None:
+    """Add the commands of this module."""
+    app.command()(matrix)
