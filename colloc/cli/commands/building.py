@@ -12,6 +12,7 @@ from colloc.cli import options as opt
 from colloc.cli.output import print_lines, remark
 from colloc.cli.progress import ProgressLine
 from colloc.cli.sizes import size_in_bytes, written_size
+from colloc.processor import prefer_fast_sorting
 from colloc.settings import DEFAULT_LAYER, DEFAULT_WINDOW, Inside, Margins
 
 if TYPE_CHECKING:
@@ -108,6 +109,8 @@ def build(
     --left and --right, words within 5 of each other are counted.
     """
     from colloc.settings import ReadSettings, SegmentSettings
+
+    prefer_fast_sorting()
     from colloc.verbs import making
 
     read = ReadSettings(
@@ -245,6 +248,7 @@ def add(
     What is not said about reading is as it was when the store was built; an empty
     value, as in --meta-from-path '', switches a column, pattern or table off.
     """
+    prefer_fast_sorting()
     from colloc.verbs import making
 
     given = {
@@ -286,6 +290,7 @@ def remove(
     quiet: opt.QuietOption = False,
 ) -> None:
     """Take documents out of a store, with their text, and count them out of its tables."""
+    prefer_fast_sorting()
     from colloc.verbs import making
 
     with ProgressLine(quiet=quiet) as progress:
@@ -310,6 +315,7 @@ def merge(
     quiet: opt.QuietOption = False,
 ) -> None:
     """Take the documents and counts of other stores into one."""
+    prefer_fast_sorting()
     from colloc.verbs import making
 
     with ProgressLine(quiet=quiet) as progress:

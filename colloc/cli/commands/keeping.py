@@ -12,6 +12,7 @@ from colloc.cli import options as opt
 from colloc.cli.output import Target, deliver, deliver_parts, opened, print_lines, write_settings
 from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
+from colloc.processor import prefer_fast_sorting
 
 
 def info(
@@ -100,6 +101,7 @@ def tally(
 
     What is not said is as the store was built. The result is the list of tables kept.
     """
+    prefer_fast_sorting()
     from colloc.verbs import keeping
 
     target = Target(format, output, quiet, settings_beside)
