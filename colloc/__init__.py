@@ -28,6 +28,8 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.asking import measure as measure
     from colloc.verbs.asking import pairs as pairs
     from colloc.verbs.asking import words as words
+    from colloc.verbs.contrasting import contrast as contrast
+    from colloc.verbs.evidence import explain as explain
     from colloc.verbs.evidence import lines as lines
     from colloc.verbs.keeping import check as check
     from colloc.verbs.keeping import documents as documents
@@ -51,10 +53,12 @@ _HOMES = {
     "around": "colloc.verbs.asking",
     "build": "colloc.verbs.making",
     "check": "colloc.verbs.keeping",
+    "contrast": "colloc.verbs.contrasting",
     "documents": "colloc.verbs.keeping",
     "documents_by": "colloc.verbs.keeping",
     "errors": "colloc",
     "floors": "colloc.verbs.asking",
+    "explain": "colloc.verbs.evidence",
     "info": "colloc.verbs.keeping",
     "lines": "colloc.verbs.evidence",
     "matrix": "colloc.verbs.spaces",

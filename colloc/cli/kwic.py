@@ -58,43 +58,14 @@ def kwic_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[
 
 def sentence_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[str]:
     """Whole sentences, wrapped and indented under their document, the words looked for in square brackets."""
+    from colloc.answers.evidence.text import bracketed, folded
     from colloc.answers.plain import shown_text
 
     lines = []
     for row in answer.to_dicts():
         heads = [row["document"], *(row[key] for key in keys), f"word {row['token'] + 1}"]
         lines.append(", ".join(shown_text(_plain(value)) for value in heads))
-        lines += _wrapped(_plain(bracketed(row)), max(columns, 40) - 4)
-    return lines
-
-
-def bracketed(row: dict[str, Any]) -> str:
-    """The text of a row of ``lines`` with the match, and its partner, in square brackets."""
-    begin = row["character"] - len(row["before"])
-    whole = row["before"] + row["match"] + row["after"]
-    spans = [(row["character"] - begin, len(row["match"]))]
-    if "partner" in row:
-        spans.append((row["partner_character"] - begin, len(row["partner"])))
-    for start, length in sorted(spans, reverse=True):
-        whole = f"{whole[:start]}[{whole[start : start + length]}]{whole[start + length :]}"
-    return whole
-
-
-def _wrapped(text: str, columns: int) -> list[str]:
-    """A text in lines of so many columns, broken at spaces, or anywhere where there are none in reach."""
-    from colloc.answers.plain import shown_text, width
-
-    lines, rest = [], text
-    while rest:
-        kept, used = 0, 0
-        while kept < len(rest) and used + width(rest[kept]) <= columns:
-            used += width(rest[kept])
-            kept += 1
-        if kept < len(rest):
-            space = rest.rfind(" ", 1, kept + 1)
-            kept = space if space > 0 else kept
-        lines.append("    " + shown_text(rest[:kept]))
-        rest = rest[kept:].lstrip(" ")
+        lines += folded(_plain(bracketed(row)), max(columns, 40) - 4, "    ", "    ")
     return lines
 
 

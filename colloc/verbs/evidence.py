@@ -5,15 +5,17 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, Literal
 
-from colloc.settings import Inside
-from colloc.verbs.opening import StorePath, as_list, pair_options, reading
+from colloc.settings import DEFAULT_MEMORY, Inside, Margins
+from colloc.verbs.opening import ProgressCall, StorePath, pair_options, reading
 
 if TYPE_CHECKING:
     from colloc.answers.columns import Columns
+    from colloc.answers.evidence.card import Evidence
     from colloc.store.opening import Store
 
 DEFAULT_CONTEXT = 20
 DEFAULT_LINES = 50
+DEFAULT_EXAMPLES = 4
 
 
 def lines(
@@ -63,4 +65,49 @@ def lines(
             context=context,
             sentences=sentences,
             limit=limit,
+        )
+
+
+def explain(
+    store: StorePath | Store,
+    first: str,
+    second: str,
+    *,
+    layer: str | None = None,
+    window: int | None = None,
+    left: int | None = None,
+    right: int | None = None,
+    unit: bool = False,
+    inside: Inside | None = None,
+    margins: Margins | None = None,
+    directed: bool = False,
+    spanned: bool = True,
+    where: Sequence[str] | str = (),
+    examples: int = DEFAULT_EXAMPLES,
+    seed: int = 0,
+    jobs: int | None = None,
+    memory: int = DEFAULT_MEMORY,
+    progress: ProgressCall | None = None,
+) -> Evidence:
+    """The evidence card of a pair: table, probabilities, measures, intervals, spread, positions, forms, lines.
+
+    Raises
+    ------
+    NotSeenError
+        When one of the words never occurs.
+    """
+    from colloc.answers.evidence.explaining import explain as ask_explain
+
+    options = pair_options(layer, window, left, right, unit, inside, margins, directed, spanned, where, None)
+    with reading(store) as opened:
+        return ask_explain(
+            opened,
+            first,
+            second,
+            options=options,
+            examples=examples,
+            seed=seed,
+            jobs=jobs,
+            memory=memory,
+            progress=progress,
         )

@@ -106,9 +106,7 @@ def _text_points(passage: Passage) -> float:
 
 
 def _words(passage: Passage) -> list[str]:
-    return [
-        passage.text[start:end] for start, end in zip(passage.starts.tolist(), passage.ends.tolist(), strict=True)
-    ]
+    return [passage.text[start:end] for start, end in zip(passage.starts.tolist(), passage.ends.tolist(), strict=True)]
 
 
 def _different(passages: list[Passage], documents: Int64Array, best: list[int], wanted: int) -> list[int]:

@@ -34,11 +34,49 @@ _PAIRS = {"(": ")", "[": "]", "{": "}", "“": "”", "«": "»", "「": "」", 
 _STRAIGHT = '"'
 
 POINTING = frozenset(
-    "he she it they him her them his hers its their theirs this that these those such here there".split()
+    (
+        "he",
+        "she",
+        "it",
+        "they",
+        "him",
+        "her",
+        "them",
+        "his",
+        "hers",
+        "its",
+        "their",
+        "theirs",
+        "this",
+        "that",
+        "these",
+        "those",
+        "such",
+        "here",
+        "there",
+    )
 )
 """English words that mostly stand for something said before."""
 BACKWARD = POINTING | frozenset(
-    "and but or nor so then thus therefore hence however moreover besides otherwise also yet still too".split()
+    (
+        "and",
+        "but",
+        "or",
+        "nor",
+        "so",
+        "then",
+        "thus",
+        "therefore",
+        "hence",
+        "however",
+        "moreover",
+        "besides",
+        "otherwise",
+        "also",
+        "yet",
+        "still",
+        "too",
+    )
 )
 """English words that join a sentence to the one before when it begins with them."""
 
@@ -111,7 +149,6 @@ def _balanced(text: str) -> bool:
     for character in text:
         if character in _PAIRS:
             closing.append(_PAIRS[character])
-        elif character in _PAIRS.values():
-            if not closing or closing.pop() != character:
-                return False
+        elif character in _PAIRS.values() and (not closing or closing.pop() != character):
+            return False
     return not closing

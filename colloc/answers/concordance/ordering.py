@@ -7,7 +7,7 @@ from typing import Literal, get_args
 import numpy as np
 
 from colloc.answers.concordance.finding import Hits
-from colloc.answers.concordance.passages import PassageReader
+from colloc.answers.concordance.passages import StreamReader
 from colloc.counts.spans import apply_layer
 from colloc.errors import UsageError
 from colloc.records import NO_TERM, Int64Array
@@ -20,7 +20,7 @@ NEIGHBOURS = 5
 """Words that decide the order by what stands before or after, the nearest first."""
 
 
-def ordered(store: Store, reader: PassageReader, hits: Hits, order: LineOrder, layer: str, seed: int) -> Int64Array:
+def ordered(store: Store, reader: StreamReader, hits: Hits, order: LineOrder, layer: str, seed: int) -> Int64Array:
     """Row numbers of the hits in the order asked; ties stand as in the text.
 
     Raises
@@ -51,7 +51,7 @@ def ordered(store: Store, reader: PassageReader, hits: Hits, order: LineOrder, l
     return np.lexsort(ranks_of.T[::-1])
 
 
-def document_bounds(reader: PassageReader, numbers: Int64Array) -> tuple[Int64Array, Int64Array]:
+def document_bounds(reader: StreamReader, numbers: Int64Array) -> tuple[Int64Array, Int64Array]:
     """First token and the one after the last of the document of each hit."""
     distinct, place = np.unique(numbers, return_inverse=True)
     rows = [reader.document(number) for number in distinct.tolist()]

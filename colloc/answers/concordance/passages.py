@@ -69,23 +69,14 @@ class _Stretch:
     begin: int
 
 
-class PassageReader:
-    """Reads passages of one store; places that are near each other share the work.
-
-    Raises
-    ------
-    UsageError
-        Where the store keeps no text.
-    """
+class StreamReader:
+    """Reads tokens of one store by place; a few blocks are held, so places should come in order."""
 
     def __init__(self, store: Store) -> None:
         self._store = store
-        read_text(store, 0, 0)  # raises where there is none
-        self._segmenter = Segmenter(segment_settings(store))
         self._heads = stream.block_heads(store)
         self._firsts = np.array([head.first_token for head in self._heads], np.int64)
         self._blocks: dict[int, Block] = {}
-        self._stretches: dict[tuple[int, int], _Stretch] = {}
         self._documents: dict[int, DocumentRow] = {}
         self._forms: dict[int, str] = {}
         self._form_terms = vocabulary.layer_map(store, "form")
@@ -122,6 +113,64 @@ class PassageReader:
             found[rows] = block.tokens[places[rows] - block.first_token]
         return found
 
+    def forms(self, types: UInt32Array) -> list[str]:
+        """Surface forms (NFC) of types."""
+        unknown = [number for number in np.unique(types).tolist() if number not in self._forms]
+        if unknown:
+            texts = vocabulary.term_texts(self._store, "form", self._form_terms[unknown].tolist())
+            self._forms.update(zip(unknown, texts, strict=True))
+        return [self._forms[number] for number in types.tolist()]
+
+    def _sentence_start(self, place: int, row: DocumentRow) -> int:
+        number = self._block_of(place)
+        while True:
+            block = self._block(number)
+            index = int(np.searchsorted(block.sentences, place - block.first_token, side="right")) - 1
+            if index >= 0:
+                return max(block.first_token + int(block.sentences[index]), row.first_token)
+            if block.first_token <= row.first_token or not block.continues:
+                return max(block.first_token, row.first_token)
+            number -= 1
+
+    def _sentence_end(self, place: int, row: DocumentRow) -> int:
+        end = row.first_token + row.n_tokens
+        number = self._block_of(place)
+        while number < len(self._heads) and self._heads[number].first_token < end:
+            block = self._block(number)
+            index = int(np.searchsorted(block.sentences, place - block.first_token, side="right"))
+            if index < len(block.sentences):
+                return min(block.first_token + int(block.sentences[index]), end)
+            number += 1
+            if number < len(self._heads) and not self._heads[number].continues:
+                return min(self._heads[number].first_token, end)
+        return end
+
+    def _block_of(self, place: int) -> int:
+        return int(np.searchsorted(self._firsts, place, side="right")) - 1
+
+    def _block(self, number: int) -> Block:
+        if number not in self._blocks:
+            if len(self._blocks) >= _BLOCKS_HELD:
+                self._blocks.pop(next(iter(self._blocks)))
+            self._blocks[number] = stream.read_block(self._store, number)
+        return self._blocks[number]
+
+
+class PassageReader(StreamReader):
+    """Reads passages of one store; places that are near each other share the work.
+
+    Raises
+    ------
+    UsageError
+        Where the store keeps no text.
+    """
+
+    def __init__(self, store: Store) -> None:
+        super().__init__(store)
+        read_text(store, 0, 0)  # raises where there is none
+        self._segmenter = Segmenter(segment_settings(store))
+        self._stretches: dict[tuple[int, int], _Stretch] = {}
+
     def read(self, first: int, stop: int, document: int) -> Passage:
         """The tokens ``first`` to ``stop`` - 1, cut to their document.
 
@@ -142,14 +191,6 @@ class PassageReader:
         text = stretch.text[begin - stretch.begin : end - stretch.begin]
         return Passage(row, first, text, begin - row.first_character, starts - begin, ends - begin, types)
 
-    def forms(self, types: UInt32Array) -> list[str]:
-        """Surface forms (NFC) of types."""
-        unknown = [number for number in np.unique(types).tolist() if number not in self._forms]
-        if unknown:
-            texts = vocabulary.term_texts(self._store, "form", self._form_terms[unknown].tolist())
-            self._forms.update(zip(unknown, texts, strict=True))
-        return [self._forms[number] for number in types.tolist()]
-
     def _aligned(self, stretch: _Stretch, first: int, types: UInt32Array, row: DocumentRow) -> Int64Array:
         """Tokens of the stretch that are the stored ones."""
         if (types == NO_TERM).any():
@@ -161,8 +202,8 @@ class PassageReader:
         made_by = versions(self._store)
         if made_by.get("colloc") == version("colloc") and made_by.get("regex") == version("regex"):
             raise StoreDamagedError(
-                f"{self._store.path}: the text of document {row.identifier!r} does not hold the tokens counted from it; "
-                "build the store again"
+                f"{self._store.path}: the text of document {row.identifier!r} does not hold the tokens "
+                "counted from it; build the store again"
             )
         return self._matched(stretch, offset, wanted, row)
 
@@ -227,40 +268,6 @@ class PassageReader:
                 break
             number += 1
         return end, row.first_character + row.n_characters
-
-    def _sentence_start(self, place: int, row: DocumentRow) -> int:
-        number = self._block_of(place)
-        while True:
-            block = self._block(number)
-            index = int(np.searchsorted(block.sentences, place - block.first_token, side="right")) - 1
-            if index >= 0:
-                return max(block.first_token + int(block.sentences[index]), row.first_token)
-            if block.first_token <= row.first_token or not block.continues:
-                return max(block.first_token, row.first_token)
-            number -= 1
-
-    def _sentence_end(self, place: int, row: DocumentRow) -> int:
-        end = row.first_token + row.n_tokens
-        number = self._block_of(place)
-        while number < len(self._heads) and self._heads[number].first_token < end:
-            block = self._block(number)
-            index = int(np.searchsorted(block.sentences, place - block.first_token, side="right"))
-            if index < len(block.sentences):
-                return min(block.first_token + int(block.sentences[index]), end)
-            number += 1
-            if number < len(self._heads) and not self._heads[number].continues:
-                return min(self._heads[number].first_token, end)
-        return end
-
-    def _block_of(self, place: int) -> int:
-        return int(np.searchsorted(self._firsts, place, side="right")) - 1
-
-    def _block(self, number: int) -> Block:
-        if number not in self._blocks:
-            if len(self._blocks) >= _BLOCKS_HELD:
-                self._blocks.pop(next(iter(self._blocks)))
-            self._blocks[number] = stream.read_block(self._store, number)
-        return self._blocks[number]
 
 
 def _nfc(text: str) -> str:

@@ -8,6 +8,7 @@ import typer
 
 from colloc.cli import options as opt
 from colloc.cli.output import Target, deliver, deliver_bytes
+from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
 LinesFormat = Annotated[
@@ -38,10 +39,10 @@ def lines(
     one_per_document: Annotated[
         bool, typer.Option("--one-per-document", help="Only the first line of each document.")
     ] = False,
-    context: Annotated[
-        int, typer.Option("--context", metavar="N", min=0, help="Words on either side.")
-    ] = 20,
-    sentences: Annotated[bool, typer.Option("--sentences", help="Whole sentences instead of a number of words.")] = False,
+    context: Annotated[int, typer.Option("--context", metavar="N", min=0, help="Words on either side.")] = 20,
+    sentences: Annotated[
+        bool, typer.Option("--sentences", help="Whole sentences instead of a number of words.")
+    ] = False,
     keys: Annotated[
         list[str] | None,
         typer.Option("--keys", metavar="NAMES", help="Metadata shown beside the document in a table."),
@@ -60,7 +61,9 @@ def lines(
     from colloc.verbs import evidence
 
     if best and (one_per_document or sort != "text"):
-        raise UsageError("--best has an order and a choice of documents of its own: leave out --sort, --one-per-document")
+        raise UsageError(
+            "--best has an order and a choice of documents of its own: leave out --sort, --one-per-document"
+        )
     target = Target(format, output, quiet, settings_beside)
     answer = evidence.lines(
         store,
@@ -102,6 +105,73 @@ def lines(
         deliver(answer, target, "lines")
 
 
+def explain(
+    store: opt.StoreArgument,
+    first: Annotated[str, typer.Argument(metavar="X", help="A word.")],
+    second: Annotated[str, typer.Argument(metavar="Y", help="Another one, or the same.")],
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    directed: opt.DirectedOption = False,
+    no_span: opt.NoSpanOption = False,
+    where: opt.WhereOption = None,
+    examples: Annotated[int, typer.Option("--examples", metavar="N", min=0, help="Example lines shown.")] = 4,
+    seed: Annotated[
+        int, typer.Option("--seed", metavar="N", min=0, help="Of the sample that examples are chosen from.")
+    ] = 0,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    format: Annotated[
+        Literal["text", "json", "html"], typer.Option("--format", "-f", help="How the card is written.")
+    ] = "text",
+    output: opt.OutputOption = None,
+    settings_beside: opt.BesideOption = False,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """Show the evidence for one pair of words, and what the text can and cannot bear.
+
+    One card with the table, probabilities and surprisal, all measures, intervals, spread
+    over documents, positions, slices, forms and example lines.
+    """
+    from colloc.verbs import evidence
+
+    target = Target(format, output, quiet, settings_beside)
+    with ProgressLine(quiet=quiet) as progress:
+        card = evidence.explain(
+            store,
+            first,
+            second,
+            layer=layer,
+            window=window,
+            left=left,
+            right=right,
+            unit=unit,
+            inside=inside,
+            margins=margins,
+            directed=directed,
+            spanned=not no_span,
+            where=where or (),
+            examples=examples,
+            seed=seed,
+            jobs=jobs,
+            memory=opt.memory_bytes(memory),
+            progress=progress,
+        )
+    if format == "json":
+        data = f"{card.to_json()}\n".encode()
+    else:
+        from colloc.answers.evidence.text import card_lines
+        from colloc.cli.kwic import terminal_width
+
+        data = "".join(f"{line}\n" for line in card_lines(card, terminal_width())).encode()
+    deliver_bytes(data, card.settings, target, "explain")
+
+
 def register(app: typer.Typer) -> None:
     """Add the commands of this module."""
-    app.command()(lines)
+    for command in (lines, explain):
+        app.command()(command)

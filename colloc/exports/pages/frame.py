@@ -50,10 +50,7 @@ def _visible(character: str) -> str:
 
 def number(value: Any, decimals: int = 3) -> Markup:
     """A number as a page shows it: whole ones with thin spaces between thousands, a true minus sign."""
-    if isinstance(value, int):
-        shown = f"{value:,}".replace(",", "\u202f")
-    else:
-        shown = number_text(float(value), decimals)
+    shown = f"{value:,}".replace(",", "\u202f") if isinstance(value, int) else number_text(float(value), decimals)
     return text(shown.replace("-", "\u2212") if "e" not in shown else shown)
 
 

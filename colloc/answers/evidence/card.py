@@ -1,0 +1,130 @@
+"""The evidence card: everything that bears on one pair, as plain values and columns."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from colloc.answers.columns import Columns
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Evidence:
+    """What the store says of the pair (``first``, ``second``).
+
+    Attributes
+    ----------
+    first, second : str
+    settings : mapping
+        Everything that decided the numbers.
+    table : mapping
+        joint, first_total, second_total, total, expected.
+    cells : Columns
+        The 2x2 table: cell (``first`` and ``second`` as yes or no), observed, expected.
+    cases : mapping
+        cases (tokens of ``first``), with_second, left, right: "second stands near first in m of n cases".
+    information : Columns
+        given, of, prior, posterior, ratio, bits, surprisal_before, surprisal_after; a row for each direction.
+    mutual_information : mapping or None
+        pair_bits, table_bits, share; None where the table is no distribution of pairs.
+    measures : Columns
+        measure, title, value, unit, rank, compared; rank 1 is the strongest.
+    compared : mapping
+        low, high (joint counts of the pairs compared), pairs (of the table), compared.
+    intervals : Columns
+        measure, method, value, low, high, trusted.
+    tests : mapping
+        p, log10_p, q, q_is (``exact`` or ``at most``), hypotheses; empty where margins have no cells.
+    floors : Columns
+        shuffle, measure, value, floor, above; no rows where the store keeps none.
+    spread : mapping
+        documents, of_documents, dp, dp_norm, largest_share, largest_document.
+    by_document : Columns
+        document, joint, tokens, for every document that holds the pair, most first.
+    positions : Columns
+        offset (of ``second`` from ``first``), count.
+    slices : mapping of str to Columns
+        By metadata key: value, documents, joint, expected, per_million, pmi, pmi_low, pmi_high.
+    forms : Columns
+        first_form, second_form, order, count.
+    examples : Columns
+        As ``lines`` gives them; no rows where the store keeps no text.
+    statements : tuple of str
+        In plain words: what the sample can bear, and what it cannot.
+    """
+
+    first: str
+    second: str
+    settings: Mapping[str, Any]
+    table: Mapping[str, int | float]
+    cells: Columns
+    cases: Mapping[str, int]
+    information: Columns
+    mutual_information: Mapping[str, float] | None
+    measures: Columns
+    compared: Mapping[str, int]
+    intervals: Columns
+    tests: Mapping[str, Any]
+    floors: Columns
+    spread: Mapping[str, Any]
+    by_document: Columns
+    positions: Columns
+    slices: Mapping[str, Columns]
+    forms: Columns
+    examples: Columns
+    statements: tuple[str, ...]
+
+    def value(self, measure: str) -> float:
+        """The value of a measure."""
+        rows = self.measures["measure"].tolist()
+        return float(self.measures["value"][rows.index(measure)])
+
+    def sentence(self) -> str:
+        """The sentence of a dictionary maker: in how many cases the second word stands near the first."""
+        left, right = self.cases["left"], self.cases["right"]
+        if left == right:
+            where = f"within {left} word{'s' if left != 1 else ''} of"
+        elif not left:
+            where = f"within {right} word{'s' if right != 1 else ''} after"
+        elif not right:
+            where = f"within {left} word{'s' if left != 1 else ''} before"
+        else:
+            where = f"within {left} words before or {right} after"
+        with_second, cases = self.cases["with_second"], self.cases["cases"]
+        return f"‘{self.second}’ stands {where} ‘{self.first}’ in {with_second:,} of {cases:,} cases."
+
+    def to_dict(self) -> dict[str, Any]:
+        """Plain values for JSON: columns as lists of rows; what is not a number is None, infinities are "inf"."""
+        return {
+            "first": self.first,
+            "second": self.second,
+            "sentence": self.sentence(),
+            **{
+                name: _plain(getattr(self, name))
+                for name in self.__dataclass_fields__
+                if name not in ("first", "second")
+            },
+        }
+
+    def to_json(self) -> str:
+        """The card as JSON, indented."""
+        return json.dumps(self.to_dict(), ensure_ascii=False, indent=2, allow_nan=False)
+
+    def __repr__(self) -> str:
+        return f"Evidence({self.first!r}, {self.second!r}): {self.sentence()}"
+
+
+def _plain(value: Any) -> Any:
+    if isinstance(value, Columns):
+        return [_plain(row) for row in value]
+    if isinstance(value, Mapping):
+        return {key: _plain(one) for key, one in value.items()}
+    if isinstance(value, tuple | list):
+        return [_plain(one) for one in value]
+    if isinstance(value, float) and value != value:
+        return None
+    if isinstance(value, float) and value in (float("inf"), float("-inf")):
+        return "inf" if value > 0 else "-inf"
+    return value
