@@ -1,0 +1,138 @@
+"""``contrast``: sub-corpora, near-synonyms and lists set against each other."""
+
+from __future__ import annotations
+
+from typing import Annotated, Literal
+
+import typer
+
+from colloc.cli import options as opt
+from colloc.cli.output import Target, deliver, print_lines
+from colloc.cli.progress import ProgressLine
+from colloc.settings import DEFAULT_MIN_COUNT
+
+LIMIT = 50
+NARROW = (
+    "word",
+    "first",
+    "second",
+    "log_ratio",
+    "low",
+    "high",
+    "count_this",
+    "count_that",
+    "joint_this",
+    "joint_that",
+    "documents_this",
+    "documents_that",
+    "g2",
+    "document_q",
+    "document_p",
+    "says",
+)
+"""Columns of a table for the eye; files and ``--wide`` have all."""
+
+
+def contrast(
+    store: opt.StoreArgument,
+    first: Annotated[str | None, typer.Argument(metavar="X", help="With Y: this one pair, side by side.")] = None,
+    second: Annotated[str | None, typer.Argument(metavar="Y")] = None,
+    this: Annotated[
+        list[str] | None, typer.Option("--this", metavar="SLICE", help="One side: key=value. Repeats join.")
+    ] = None,
+    that: Annotated[
+        list[str] | None,
+        typer.Option("--that", metavar="SLICE", help="The other side; all other documents when not given."),
+    ] = None,
+    pairs: Annotated[bool, typer.Option("--pairs", help="Compare pairs of words instead of words.")] = False,
+    pattern: Annotated[
+        str | None, typer.Option("--pattern", metavar="PATTERN", help="Only words like this; * is any characters.")
+    ] = None,
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    directed: opt.DirectedOption = False,
+    relation: opt.RelationOption = None,
+    where: opt.WhereOption = None,
+    min_count: Annotated[
+        int, typer.Option("--min-count", metavar="N", min=0, help="Least count, both sides together.")
+    ] = DEFAULT_MIN_COUNT,
+    min_word_count: opt.MinWordCountOption = 1,
+    min_docs: opt.MinDocsOption = 1,
+    sort: Annotated[
+        Literal["documents", "bound", "log_ratio", "g2", "association"],
+        typer.Option(
+            "--sort",
+            help="documents: by the test over documents; bound: by the end of the interval nearer to 0; association "
+            "(pairs): by strength, not frequency.",
+        ),
+    ] = "documents",
+    permutations: Annotated[
+        int,
+        typer.Option(
+            "--permutations", metavar="N", min=0, help="p-values from N exchanges of document labels (max-T)."
+        ),
+    ] = 0,
+    seed: Annotated[int, typer.Option("--seed", metavar="N", min=0, help="Of the exchanges.")] = 1,
+    limit: opt.LimitOption = LIMIT,
+    wide: Annotated[bool, typer.Option("--wide", help="All columns in the table, as files have them.")] = False,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    format: opt.FormatOption = "table",
+    output: opt.OutputOption = None,
+    settings_beside: opt.BesideOption = False,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """Compare two sub-corpora: words or pairs, effect size first, with a test that one document cannot carry.
+
+    Rows of this come first, then rows of that. `q` takes every occurrence for independent
+    evidence (G2); `document_q` counts documents, and `says` tells what the two amount to.
+    """
+    from colloc.verbs import contrasting
+
+    target = Target(format, output, quiet, settings_beside)
+    with ProgressLine(quiet=quiet) as progress:
+        answer = contrasting.contrast(
+            store,
+            first,
+            second,
+            this=this or (),
+            that=that or (),
+            pairs=pairs,
+            where=where or (),
+            pattern=pattern,
+            layer=layer,
+            window=window,
+            left=left,
+            right=right,
+            unit=unit,
+            inside=inside,
+            margins=margins,
+            directed=directed,
+            relation=relation,
+            min_count=min_count,
+            min_word_count=min_word_count,
+            min_docs=min_docs,
+            sort=sort,
+            limit=limit,
+            permutations=permutations,
+            seed=seed,
+            jobs=jobs,
+            memory=opt.memory_bytes(memory),
+            progress=progress,
+        )
+    verdict = answer.settings.get("says")
+    if format == "table" and not wide and first is None:
+        answer = answer.select(name for name in NARROW if name in answer)
+    deliver(answer, target, "contrast")
+    if verdict and format == "table" and not target.to_file:
+        print_lines(["", str(verdict)])
+
+
+def register(app: typer.Typer) -> None:
+    """Add the command of this module."""
+    app.command()(contrast)
