@@ -7,7 +7,7 @@ from dataclasses import asdict, dataclass
 from typing import Any, cast, get_args
 
 from colloc.answers.tables import Convention, TableReader
-from colloc.counts.tallying import obtain_tally
+from colloc.counts.tallying import cached_tally
 from colloc.counts.words import slice_word_counts
 from colloc.errors import DataError, UsageError
 from colloc.measures.catalogue import MEASURES
@@ -167,7 +167,7 @@ def ask(
     convention = Convention(margins=margins, directed=options.directed, spanned=options.spanned)
     convention.check(spec.kind)
     convention.check_measures(tuple(measures))
-    tally = obtain_tally(store, spec, jobs=jobs, memory=memory, progress=progress)
+    tally = cached_tally(store, spec, jobs=jobs, memory=memory, progress=progress)
     words = slice_word_counts(store, spec.layer, spec.where)
     return Question(store, spec, convention, TableReader(tally, convention, words), words)
 

@@ -15,13 +15,13 @@ from colloc.counts.counting import Progress, count_tally
 from colloc.counts.processes import crew
 from colloc.counts.selection import Selection, documents_selection, slice_selection
 from colloc.counts.words import change_word_counts
-from colloc.errors import LockedError, UsageError
+from colloc.errors import CannotCreateError, LockedError, UsageError
 from colloc.records import Int64Array
 from colloc.settings import TallySpec
 from colloc.store import facts, tallies
 from colloc.store.aside import store_aside
 from colloc.store.connection import Store
-from colloc.store.opening import open_for_reading
+from colloc.store.opening import open_for_reading, open_for_writing
 from colloc.store.scratch import scratch_folder
 from colloc.store.slices import select
 from colloc.store.tallies import Tally, TallyWriter
@@ -30,6 +30,8 @@ from colloc.store.vocabulary import ensure_layer, term_count
 _WORTH_A_PROCESS = 2**18
 """Tokens for which a worker is started: it takes as long to start as these take to count."""
 _ATTEMPTS = 3
+CACHE_BYTES = 2**30
+"""What tallies take at most that were counted to answer a question, before the next one is added."""
 
 
 def obtain_tally(
@@ -91,6 +93,38 @@ def obtain_tally(
         counter = _Counter(store, jobs, memory, folder, progress)
         counter.count(store, spec, slice_selection(store, spec.where), kept=keep)
     return _found(store, spec)
+
+
+def cached_tally(
+    store: Store,
+    spec: TallySpec,
+    *,
+    jobs: int | None = None,
+    memory: int = DEFAULT_MEMORY,
+    progress: Progress | None = None,
+) -> Tally:
+    """The tally of a spec for a question: found, or counted and left in the store as a cache for the next one.
+
+    A store that cannot be written, or that another process is writing, is not waited for: the tally is then counted
+    aside and goes when the question is answered. Before a tally is added, those that nobody asked to keep make room
+    until they take at most `CACHE_BYTES`, the ones longest unused first.
+
+    Raises
+    ------
+    UsageError, InputOutputError, LockedError
+        As :func:`obtain_tally`.
+    """
+    if store.writable or tallies.find(store, spec) is not None or not os.access(store.path, os.W_OK):
+        return obtain_tally(store, spec, jobs=jobs, memory=memory, keep=False, progress=progress)
+    try:
+        writer = open_for_writing(store.path, "cache", wait=0.0)
+    except (LockedError, CannotCreateError):
+        return obtain_tally(store, spec, jobs=jobs, memory=memory, progress=progress)
+    with writer:
+        tallies.limit_cache(writer, CACHE_BYTES)
+        obtain_tally(writer, spec, jobs=jobs, memory=memory, keep=False, progress=progress)
+    store.refresh()
+    return obtain_tally(store, spec, jobs=jobs, memory=memory, progress=progress)
 
 
 def count_change(
