@@ -74,7 +74,7 @@ def open_for_reading(path: str | os.PathLike[str]) -> Store:
         connection = _connect(path, _reading_mode(path))
         try:
             connection.execute("PRAGMA query_only = ON")
-            if not _check_ours(connection, path):
+            if not _check_ours(connection, path).readable:
                 raise DataError(f"{path}: made by an older colloc; a command that writes, such as add, renews it")
         except BaseException:
             connection.close()
@@ -126,7 +126,7 @@ def _writing(path: Path, lock: WriterLock, purpose: str) -> Store:
     with translated(path):
         connection = _connect(path, "mode=rw")
         try:
-            complete = _check_ours(connection, path)
+            complete = _check_ours(connection, path).complete
             connection.execute(f"PRAGMA synchronous = {SYNCHRONOUS}")
             connection.execute("PRAGMA secure_delete = ON")
             # Whole blocks and pages go through the write-ahead log: a checkpoint each 64 MB instead of each 16.
@@ -155,8 +155,8 @@ def _check_header(path: Path) -> None:
         raise DataError(f"{path}: not a colloc store (not an SQLite file)")
 
 
-def _check_ours(connection: sqlite3.Connection, path: Path) -> bool:
-    """Whether the schema is complete; DataError where the file is not ours or newer."""
+def _check_ours(connection: sqlite3.Connection, path: Path) -> migrations.Applied:
+    """How far the schema has come; DataError where the file is not ours or newer."""
     if connection.execute("PRAGMA application_id").fetchone()[0] != schema.APPLICATION_ID:
         raise DataError(f"{path}: an SQLite file, but not a colloc store")
     return migrations.check_applied(connection, str(path))

@@ -24,12 +24,13 @@ from colloc.store.lexicon.layers import (
     term_count,
     type_keys,
 )
-from colloc.store.lexicon.terms import term_numbers, term_texts, terms_matching
+from colloc.store.lexicon.terms import brought_to, term_numbers, term_texts, terms_matching
 
 __all__ = [
     "TypeKey",
     "TypeRegistry",
     "append_word_counts",
+    "brought_to",
     "ensure_layer",
     "has_word_counts",
     "index_words",

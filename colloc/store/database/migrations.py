@@ -9,6 +9,8 @@ never imports sqlite-utils (it takes a third of a second where pandas is there).
 from __future__ import annotations
 
 import sqlite3
+from collections.abc import Callable
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from colloc.errors import DataError, StoreDamagedError
@@ -25,23 +27,46 @@ def _initial(database: Database) -> None:
         database.conn.execute(statement)
 
 
-STEPS = (("0001_initial", _initial),)
+def _decisions(database: Database) -> None:
+    for statement in schema.DECISIONS:
+        database.conn.execute(statement)
+
+
+@dataclass(frozen=True, slots=True)
+class Step:
+    """One step; readers can do without those that only add a table which they take as empty while it is missing."""
+
+    name: str
+    apply: Callable[[Database], None]
+    needed_to_read: bool = True
+
+
+STEPS = (Step("0001_initial", _initial), Step("0002_decisions", _decisions, needed_to_read=False))
 """In order; a step, once released, is never changed."""
 
 
-def check_applied(connection: sqlite3.Connection, name: str) -> bool:
-    """Whether a store has every step; raises DataError where a newer colloc made it."""
+@dataclass(frozen=True, slots=True)
+class Applied:
+    """How far a store has come: whether nothing is missing, and whether nothing is that readers need."""
+
+    complete: bool
+    readable: bool
+
+
+def check_applied(connection: sqlite3.Connection, name: str) -> Applied:
+    """How far a store has come; raises DataError where a newer colloc made it."""
     version = connection.execute("PRAGMA user_version").fetchone()[0]
-    known = [step for step, _ in STEPS]
+    known = {step.name for step in STEPS}
     try:
         rows = connection.execute("SELECT name FROM _sqlite_migrations WHERE migration_set = ?", (MIGRATION_SET,))
         applied = {row[0] for row in rows}
     except sqlite3.OperationalError as error:
         raise StoreDamagedError(f"{name}: its record of schema steps is missing ({error})") from error
-    if version > schema.SCHEMA_VERSION or not applied <= set(known):
-        newer = ", ".join(sorted(map(str, applied - set(known)))) or f"schema {version}"
+    if version > schema.SCHEMA_VERSION or not applied <= known:
+        newer = ", ".join(sorted(map(str, applied - known))) or f"schema {version}"
         raise DataError(f"{name}: made by a newer colloc ({newer}); install the newer version to use it")
-    return applied == set(known)
+    missing = [step for step in STEPS if step.name not in applied]
+    return Applied(not missing, not any(step.needed_to_read for step in missing))
 
 
 def migrate(connection: sqlite3.Connection) -> None:
@@ -50,6 +75,6 @@ def migrate(connection: sqlite3.Connection) -> None:
     from sqlite_utils.migrations import Migrations
 
     migrations = Migrations(MIGRATION_SET)
-    for step, function in STEPS:
-        migrations(name=step)(function)
+    for step in STEPS:
+        migrations(name=step.name)(step.apply)
     migrations.apply(Database(connection))

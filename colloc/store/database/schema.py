@@ -10,7 +10,7 @@ from __future__ import annotations
 APPLICATION_ID = 0x434F4C43
 """``COLC``: what SQLite keeps in bytes 68..71 of the file."""
 
-SCHEMA_VERSION = 1
+SCHEMA_VERSION = 2
 """Kept as ``user_version``; raised by each migration step."""
 
 PAGE_SIZE = 16384
@@ -181,3 +181,23 @@ VOCABULARY_INDEXES = (
     "CREATE INDEX IF NOT EXISTS terms_by_text ON terms (layer, text)",
 )
 """Made when a first build has finished its vocabulary: sorting once is faster than keeping order all along."""
+
+DECISIONS = (
+    """
+    CREATE TABLE decisions (
+        id INTEGER PRIMARY KEY AUTOINCREMENT,   -- in the order in which they came into this store
+        layer TEXT NOT NULL,
+        kind TEXT NOT NULL,         -- pair, directed or expression
+        words TEXT NOT NULL,        -- a JSON array of the words' texts
+        verdict TEXT NOT NULL,      -- accept, reject, unsure or withdrawn
+        sense TEXT NOT NULL,
+        note TEXT NOT NULL,
+        labels TEXT NOT NULL,       -- a JSON array of texts
+        examples TEXT NOT NULL,     -- a JSON array of objects: document, start, text, marks
+        judge TEXT NOT NULL,
+        decided TEXT NOT NULL       -- ISO 8601, UTC
+    )
+    """,
+    "PRAGMA user_version = 2",
+)
+"""Rows are only ever added; the newest of a judge on the same words counts."""

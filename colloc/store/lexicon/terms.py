@@ -20,7 +20,7 @@ _EVERYTHING = 0.2
 """Share of a layer's terms above which one pass over all texts is quicker than asking one by one."""
 
 
-def _brought_to(layer: str, text: str) -> str:
+def brought_to(layer: str, text: str) -> str:
     """A word as the layer writes it: NFC, and folded where the layer is; ``a/NOUN`` part by part."""
     names = layer.split("/")
     # A word may hold a slash itself: the last parts belong to the last names.
@@ -40,7 +40,7 @@ def term_numbers(store: Store, layer: str, texts: Sequence[str]) -> Int64Array:
     sql, fixed = _by_text(row.same, row.number)
     numbers = np.full(len(texts), -1, dtype=np.int64)
     for position, text in enumerate(texts):
-        wanted = _brought_to(layer, text)
+        wanted = brought_to(layer, text)
         if _has_half_pair(wanted):
             continue
         found = store.value(f"{sql} = ?", (*fixed, wanted))
@@ -71,7 +71,7 @@ def term_texts(store: Store, layer: str, numbers: NDArray[Any] | Sequence[int] |
 def terms_matching(store: Store, layer: str, pattern: str) -> Int64Array:
     """Terms, ascending, whose text fits the pattern; ``*`` stands for any characters, even none."""
     row = find_layer(store, layer)
-    wanted = "*".join(_brought_to(layer, part) if part else "" for part in pattern.split("*"))
+    wanted = "*".join(brought_to(layer, part) if part else "" for part in pattern.split("*"))
     if _has_half_pair(wanted):
         return np.empty(0, dtype=np.int64)
     # Only * keeps its meaning for GLOB.
