@@ -153,7 +153,8 @@ def test_thresholds_and_limits(run: Run, built: Path) -> None:
 def test_around_words_and_a_file_of_words(run: Run, built: Path, tmp_path: Path) -> None:
     listed = tmp_path / "words.txt"
     listed.write_text("dawn\n\n  Fog \n", encoding="utf-8")
-    rows = rows_of(run("around", built, "thick", "--words-from", listed, "--min-count", 1, "-f", "csv", "--any-strength").out)
+    asked = ("around", built, "thick", "--words-from", listed, "--min-count", 1, "-f", "csv", "--any-strength")
+    rows = rows_of(run(*asked).out)
     assert list(dict.fromkeys(row["first"] for row in rows)) == ["thick", "dawn", "fog"]
     counts = follower_counts()
     for row in rows:
