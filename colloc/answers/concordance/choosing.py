@@ -21,7 +21,7 @@ MOST_CANDIDATES = 1500
 READ_FOR_EACH = 6
 """Sentences whose text is read for each example wanted, at least ``LEAST_READ``."""
 LEAST_READ = 40
-LIKE = 0.6
+LIKE = 0.5
 """Sentences that share more than this part of their words (Jaccard) are taken for the same."""
 _FEWEST_WORDS = 3
 

@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from difflib import SequenceMatcher
 from importlib.metadata import version
+from itertools import pairwise
 
 import numpy as np
 
@@ -107,7 +108,7 @@ class StreamReader:
         numbers = np.searchsorted(self._firsts, places[order], side="right") - 1
         found = np.empty(len(places), np.uint32)
         edges = np.flatnonzero(np.diff(numbers, prepend=-1))
-        for start, end in zip(edges.tolist(), [*edges[1:].tolist(), len(places)], strict=True):
+        for start, end in pairwise([*edges.tolist(), len(places)]):
             block = self._block(int(numbers[start]))
             rows = order[start:end]
             found[rows] = block.tokens[places[rows] - block.first_token]

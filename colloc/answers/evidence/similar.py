@@ -43,7 +43,12 @@ class Similar:
     information: float | None
 
     def places(self, names: Sequence[str], own: PairTable) -> Int64Array:
-        """The place of a pair among those compared, 1 for the strongest, by each measure; ties share the best place."""
+        """The place of a pair among those compared, 1 for the strongest, by each measure; ties share the best place.
+
+        0 where nothing is compared.
+        """
+        if not len(self.table):
+            return np.zeros(len(names), np.int64)
         values = compute_all(names, *self.table.arguments)
         of_pair = compute_all(names, *own.arguments)
         places = np.empty(len(names), np.int64)
@@ -58,19 +63,20 @@ class Similar:
 def similar_pairs(question: Question, joint: int) -> Similar:
     """Look through the whole table once."""
     reader = question.reader
-    low, high = max(-(-joint // FACTOR), 1), max(joint * FACTOR, 1)
+    # A pair that never met has no like: no table lists those.
+    low, high = -(-joint // FACTOR), joint * FACTOR
     found: list[PairBlock] = []
     n_found = 0
     cells = _CellSum() if question.convention.margins == "pairs" and question.spec.kind != "unit" else None
     for block in reader.tally.blocks():
         if cells is not None:
             cells.add(block, ordered=reader.ordered)
-        keep = _fitting(block, low, high, ordered=reader.ordered)
+        keep = _fitting(block, max(low, 1), high, ordered=reader.ordered)
         n_found += len(keep)
         found.append(take(block, keep))
     tables = [reader.table(block) for block in found if len(block)]
     table = joined(tables) if tables else reader.given(np.empty(0, np.uint32), np.empty(0, np.uint32))
-    inside = (table.joint >= low) & (table.joint <= high)
+    inside = (table.joint >= max(low, 1)) & (table.joint <= high)
     rows = np.flatnonzero(inside)
     step = -(-len(rows) // MOST) if len(rows) else 1
     information = None if cells is None else cells.information(question)

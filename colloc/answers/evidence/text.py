@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import textwrap
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 from colloc.answers.columns import Columns
@@ -85,11 +85,10 @@ def _information(card: Evidence) -> list[str]:
 
 def _measures(card: Evidence, columns: int) -> list[str]:
     compared = card.compared
-    rows = [
-        (row["measure"], measure_text(row["value"]), row["unit"], f"{row['rank']:,} of {row['compared']:,}")
-        for row in card.measures
-    ]
+    rows = [(row["measure"], measure_text(row["value"]), row["unit"], rank_text(row)) for row in card.measures]
     lines = _grid(("measure", "value", "unit", "rank"), rows, (False, True, False, True))
+    if not compared["compared"]:
+        return lines
     note = (
         f"Rank among {compared['compared']:,} of the {compared['pairs']:,} pairs "
         f"met {compared['low']:,} to {compared['high']:,} times; 1 is the strongest."
@@ -113,7 +112,7 @@ def _chance(card: Evidence, columns: int) -> list[str]:
     if card.tests:
         at_most = "at most " if card.tests["q_is"] == "at most" else ""
         lines += _wrapped(
-            f"p {_probability(card.tests['p'])}, q {at_most}{_probability(card.tests['q'])} "
+            f"p {p_text(card.tests)}, q {at_most}{_probability(card.tests['q'])} "
             f"among {card.tests['hypotheses']:,} pairs of words",
             columns - 2,
         )
@@ -160,7 +159,7 @@ def _slice(table: Columns) -> list[str]:
             _count(row["expected"]),
             _number(row["per_million"], 1),
             _number(row["pmi"], 2),
-            f"{_number(row['pmi_low'], 2)} .. {_number(row['pmi_high'], 2)}",
+            f"{_number(row['pmi_low'], 2)} .. {_number(row['pmi_high'], 2)}" if row["joint"] else "-",
         )
         for row in table
     ]
@@ -226,6 +225,16 @@ def _number(value: float, decimals: int = 4) -> str:
 def measure_text(value: float) -> str:
     """The value of a measure: four decimals, and four digits where those would be zeros."""
     return f"{value:.4g}" if 0 < abs(value) < 0.1 else _number(value)
+
+
+def rank_text(row: dict[str, Any]) -> str:
+    """The rank of a measure as a row of ``measures`` has it."""
+    return f"{row['rank']:,} of {row['compared']:,}" if row["rank"] else "-"
+
+
+def p_text(tests: Mapping[str, Any]) -> str:
+    """A p-value, also one too small for a float."""
+    return _probability(tests["p"]) if tests["p"] > 0 else f"10^{tests['log10_p']:.0f}"
 
 
 def _probability(value: float) -> str:

@@ -163,6 +163,10 @@ def explain(
         )
     if format == "json":
         data = f"{card.to_json()}\n".encode()
+    elif format == "html":
+        from colloc.exports.pages.card import card_page
+
+        data = card_page(card)
     else:
         from colloc.answers.evidence.text import card_lines
         from colloc.cli.kwic import terminal_width

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from html import escape
 from importlib.resources import files
 from typing import Any
@@ -77,3 +77,11 @@ def table(
         cells = "".join(f'<td{style} dir="auto">{cell}</td>' for cell, style in zip(row, styles, strict=True))
         lines.append(f"<tr>{cells}</tr>")
     return "\n".join([*lines, "</tbody></table></div>"])
+
+
+def settings_footer(settings: Mapping[str, Any]) -> Markup:
+    """What decided the numbers, in small print."""
+    shown = [
+        f"{key.replace('_', ' ')} {value}" for key, value in settings.items() if value not in (None, "", False, ())
+    ]
+    return f"<footer>{text('; '.join(shown))}</footer>"

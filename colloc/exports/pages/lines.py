@@ -6,39 +6,39 @@ from typing import Any
 
 from colloc.answers.columns import Columns
 from colloc.answers.plain import is_right_to_left
-from colloc.exports.pages.frame import Markup, number, page, table, text
+from colloc.exports.pages.frame import Markup, number, page, settings_footer, text
 
 
 def lines_page(answer: Columns) -> bytes:
     """A page with the lines of an answer of ``lines``, the matches under each other."""
     settings = answer.settings
     asked = settings["first"] if settings["second"] is None else f"{settings['first']} … {settings['second']}"
+    documents = settings["in_documents"]
     found = (
-        f"{number(settings['found'])} found in {number(settings['in_documents'])} documents, "
+        f"{number(settings['found'])} found in {number(documents)} document{'s' if documents != 1 else ''}, "
         f"{number(len(answer))} shown"
     )
+    items = [_item(row) for row in answer.to_dicts()]
     body = [
-        f"<h1>{text(asked)}</h1>",
+        f"<h1><bdi>{text(asked)}</bdi></h1>",
         f'<p class="lead">{found}</p>',
-        table(
-            ("document", "before", "match", "after"),
-            [_row(row) for row in answer.to_dicts()],
-            classes=("where", "before", "match", "after"),
-            label="Lines of text",
-            kind="lines",
-        ),
-        f"<footer>{text(_described(settings))}</footer>",
+        f'<ol class="lines">{"".join(items)}</ol>',
+        settings_footer(settings),
     ]
     return page(f"Lines: {asked}", body)
 
 
-def _row(row: dict[str, Any]) -> tuple[Markup, Markup, Markup, Markup]:
+def _item(row: dict[str, Any]) -> Markup:
     before, match, after = marked(row)
-    place = f"{text(row['document'])}, word {number(row['token'] + 1)}"
-    if is_right_to_left(row["match"] + row["after"]):
-        # What is read first stands on the right.
-        before, after = after, before
-    return place, before, match, after
+    # In right-to-left text what is read first stands on the right of the match.
+    turned = ' class="turned" dir="rtl"' if is_right_to_left(row["match"] + row["after"]) else ""
+    return (
+        f"<li{turned}>"
+        f'<span class="where" dir="auto">{text(row["document"])}, {number(row["token"] + 1)}</span> '
+        f'<span class="before" dir="auto">{before}</span> '
+        f'<span class="match" dir="auto">{match}</span> '
+        f'<span class="after" dir="auto">{after}</span></li>\n'
+    )
 
 
 def marked(row: dict[str, Any]) -> tuple[Markup, Markup, Markup]:
@@ -59,7 +59,3 @@ def marked(row: dict[str, Any]) -> tuple[Markup, Markup, Markup]:
 def _underlined(whole: str, offset: int, length: int) -> Markup:
     inner = f'<span class="partner">{text(whole[offset : offset + length])}</span>'
     return text(whole[:offset]) + inner + text(whole[offset + length :])
-
-
-def _described(settings: Any) -> str:
-    return "; ".join(f"{key.replace('_', ' ')} {value}" for key, value in settings.items() if value not in (None, ""))
