@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 MetaValue = str | int | float | bool | None
 """What a metadata key may hold."""
 
+UInt8Array = NDArray[np.uint8]
 UInt32Array = NDArray[np.uint32]
 Int64Array = NDArray[np.int64]
 UInt64Array = NDArray[np.uint64]
@@ -30,12 +31,38 @@ class SourceInfo:
 
 
 @dataclass(frozen=True, slots=True)
+class Annotation:
+    """Says that a document's pieces are words already: a line a word, its columns divided by tabs.
+
+    Blank lines end sentences; a line that begins with ``#`` is a comment (where
+    the first column is not ``id``: unless it has as many columns as a word).
+    Each piece holds whole sentences, every line ended by LF and every sentence
+    by a blank line.
+
+    Attributes
+    ----------
+    columns : tuple of str
+        What the columns hold: ``form`` at least; ``id``, ``lemma``, ``upos``,
+        ``xpos``, ``feats``, ``head``, ``deprel`` and ``misc`` are understood
+        as CoNLL-U has them, all others are kept as they are.
+    source : str
+        The input, as messages name it.
+    line : int
+        Number of the document's first line there.
+    """
+
+    columns: tuple[str, ...]
+    source: str
+    line: int = 1
+
+
+@dataclass(frozen=True, slots=True)
 class Document:
     """One document as its reader gives it: streamed, never held whole.
 
     ``pieces`` are the text in order, each of bounded size; they may be cut
-    anywhere, even inside a word. They must be consumed before the next
-    document is asked for.
+    anywhere, even inside a word (annotated ones: between sentences only). They
+    must be consumed before the next document is asked for.
     """
 
     identifier: str
@@ -43,6 +70,8 @@ class Document:
     pieces: Iterable[str]
     record: int
     """0-based ordinal of the document in its source: where a resumed build goes on."""
+    annotation: Annotation | None = None
+    """None for plain text."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -17,6 +17,7 @@ from colloc.counts.merging import Dealt, merge_range, transpose_range
 from colloc.counts.positions import add_positions
 from colloc.counts.runs import Column, RunFile, load_runs, write_column, write_run
 from colloc.counts.selection import Selection, selection_of
+from colloc.counts.sequences.sharing import count_joins, lay_out, merge_joins, number_joins, spread_sequences
 from colloc.counts.spans import Stretch, read_stretches, whole_units, window_spans
 from colloc.counts.units import add_units
 from colloc.counts.windows import add_windows
@@ -123,9 +124,16 @@ def transpose(names: str, parts: int, group: int, folder: str, name: str) -> Fac
     return {"pages": dataclasses.asdict(transpose_range(dealt, group, Path(folder), name))}
 
 
-STORE_TASKS: dict[str, Callable[..., Facts]] = {"count": count_share}
+STORE_TASKS: dict[str, Callable[..., Facts]] = {"count": count_share, "lay_out": lay_out}
 """Tasks that read the store, which is their first argument."""
-FILE_TASKS: dict[str, Callable[..., Facts]] = {"merge": merge_runs, "transpose": transpose}
+FILE_TASKS: dict[str, Callable[..., Facts]] = {
+    "merge": merge_runs,
+    "transpose": transpose,
+    "count_joins": count_joins,
+    "merge_joins": merge_joins,
+    "number_joins": number_joins,
+    "spread_sequences": spread_sequences,
+}
 """Tasks on temporary files alone."""
 
 

@@ -1,0 +1,1 @@
+"""Sequences of words grown from frequent shorter ones, with or without open slots."""

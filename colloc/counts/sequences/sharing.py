@@ -1,0 +1,208 @@
+"""Growing cut into tasks: shares of the stream are read, joined, counted and numbered, key ranges merged."""
+
+from __future__ import annotations
+
+import dataclasses
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+
+from colloc.counts.keys import Run, merge, run_of_keys
+from colloc.counts.runs import Column, load_runs, write_column, write_run
+from colloc.counts.selection import selection_of
+from colloc.counts.sequences.places import NONE, fill, left_of, padded, pair_keys, right_of
+from colloc.counts.spans import apply_layer, read_stretches
+from colloc.records import Int64Array, UInt8Array, UInt32Array, UInt64Array
+from colloc.settings import Inside
+from colloc.store.connection import Store
+from colloc.store.vocabulary import layer_map
+
+Facts = dict[str, Any]
+
+MOST_WORDS = 12
+"""Places that a sequence can reach over, open slots included: further ahead the end of a unit is not looked for."""
+NO_MARK, SMALL, CAPITAL = 0, 1, 2
+"""Marks of a token: says nothing about capitals (it begins a unit, or its word has one letter), or says which."""
+
+
+def lay_out(
+    store: Store,
+    layer: str,
+    inside: Inside,
+    selection: Facts,
+    begin: int,
+    stop: int,
+    frequent: Facts,
+    capitals: Facts,
+    into: Facts,
+) -> Facts:
+    """Write the columns that growing goes by, for the places ``begin`` to ``stop`` of a selection.
+
+    Parameters
+    ----------
+    frequent, capitals : Column facts
+        For each term whether it is frequent (bool), for each type its mark.
+    into : dict of Column facts
+        ``ids``: terms, NONE where infrequent. ``room``: tokens up to the end of the unit, at most MOST_WORDS.
+        ``marks``: see `NO_MARK`.
+    """
+    chosen = selection_of(Column(**selection["begins"]).read(), Column(**selection["stops"]).read())
+    terms_of = layer_map(store, layer)
+    ahead = min(stop + MOST_WORDS, len(chosen))
+    types = np.full(ahead - begin, NONE)
+    begins_unit = np.zeros(ahead - begin + 1, bool)
+    same = np.arange(len(terms_of), dtype=np.uint32)
+    for stretch in read_stretches(store, same, chosen, inside, begin, ahead):
+        types[stretch.first - begin : stretch.stop - begin] = stretch.terms
+        begins_unit[stretch.units - begin] = True
+    begins_unit[-1] = True  # the end of the selection, or too far ahead to matter
+    n = stop - begin
+    terms = apply_layer(terms_of, types[:n])
+    known = terms != NONE
+    terms[known] = np.where(Column(**frequent).read()[terms[known]], terms[known], NONE)
+    marks = np.zeros(n, np.uint8)
+    there = types[:n] != NONE
+    marks[there] = Column(**capitals).read()[types[:n][there]]
+    marks[begins_unit[:n]] = NO_MARK
+    starts = np.flatnonzero(begins_unit)
+    following = starts[np.searchsorted(starts, np.arange(n), side="right")]
+    fill(Column(**into["ids"]), begin, terms)
+    fill(Column(**into["room"]), begin, np.minimum(following - np.arange(n), MOST_WORDS).astype(np.uint8))
+    fill(Column(**into["marks"]), begin, marks)
+    return {}
+
+
+def _joined(
+    left: Facts, right: Facts, offset: int, span: int, room: Facts, begin: int, stop: int
+) -> tuple[Int64Array, UInt64Array]:
+    """Places (less ``begin``) where a frequent left part has a frequent right part at its offset, and their keys."""
+    first: UInt32Array = Column(**left).read(begin, stop)
+    second: UInt32Array = padded(Column(**right), begin + offset, stop + offset, int(NONE))
+    space: UInt8Array = Column(**room).read(begin, stop)
+    places = np.flatnonzero((first != NONE) & (second != NONE) & (space >= span))
+    return places, pair_keys(first[places], second[places])
+
+
+def count_joins(
+    left: Facts, right: Facts, offset: int, span: int, room: Facts, begin: int, stop: int, folder: str, name: str
+) -> Facts:
+    """Count the pairs of a left and a right part in a share, into a run."""
+    _, keys = _joined(left, right, offset, span, room, begin, stop)
+    return dataclasses.asdict(write_run(Path(folder), name, run_of_keys(keys)))
+
+
+def merge_joins(first: int, last: int, least: int, runs: str, folder: str, name: str) -> Facts:
+    """The pairs with first <= key < last that occur ``least`` times in all runs together."""
+    run = _merged(runs, first, last)
+    enough = run.counts >= least
+    place = Path(folder)
+    return {
+        "keys": dataclasses.asdict(write_column(place / f"{name}.keys", run.keys[enough])),
+        "counts": dataclasses.asdict(write_column(place / f"{name}.counts", run.counts[enough])),
+    }
+
+
+def number_joins(
+    left: Facts,
+    right: Facts,
+    offset: int,
+    words: list[int],
+    room: Facts,
+    marks: Facts,
+    keys: Facts,
+    documents: Facts,
+    ids: Facts,
+    begin: int,
+    stop: int,
+    folder: str,
+    name: str,
+) -> Facts:
+    """Write which frequent sequence begins at each place of a share, and count them by document.
+
+    Parameters
+    ----------
+    words : list of int
+        Offsets of the words of the sequence, from 0; places between them are open slots.
+    keys : Column facts
+        The frequent keys, sorted: a sequence's number is its place here.
+    documents : Column facts
+        Place where each document begins, ascending.
+
+    Returns
+    -------
+    dict
+        ``run``: number << 32 | document, with counts. ``capitals``, ``marked``: for each sequence how many of its
+        words are written with a capital, and how many can tell.
+    """
+    places, pairs = _joined(left, right, offset, words[-1] + 1, room, begin, stop)
+    table: UInt64Array = Column(**keys).read()
+    numbers = np.full(stop - begin, NONE)
+    found, there = _look_up(table, pairs)
+    places = places[there]
+    numbers[places] = found
+    fill(Column(**ids), begin, numbers)
+    starts: Int64Array = Column(**documents).read()
+    document = np.searchsorted(starts, places + begin, side="right") - 1
+    run = run_of_keys(pair_keys(found, document.astype(np.uint32)))
+    seen = padded(Column(**marks), begin, stop + words[-1], NO_MARK)
+    capitals, marked = np.zeros(len(table), np.int64), np.zeros(len(table), np.int64)
+    for word in words:
+        mark = seen[places + word]
+        capitals += np.bincount(found[mark == CAPITAL], minlength=len(table))
+        marked += np.bincount(found[mark != NO_MARK], minlength=len(table))
+    place = Path(folder)
+    return {
+        "run": dataclasses.asdict(write_run(place, name, run)),
+        "capitals": dataclasses.asdict(write_column(place / f"{name}.capitals", capitals)),
+        "marked": dataclasses.asdict(write_column(place / f"{name}.marked", marked)),
+    }
+
+
+def _look_up(table: UInt64Array, keys: UInt64Array) -> tuple[UInt32Array, np.ndarray]:
+    """Places in the sorted table of those keys that are in it, and which of the keys these are."""
+    if not len(table):
+        return np.empty(0, np.uint32), np.zeros(len(keys), bool)
+    place = np.searchsorted(table, keys)
+    place[place == len(table)] = 0
+    there = table[place] == keys
+    return place[there].astype(np.uint32), there
+
+
+def spread_sequences(first: int, last: int, runs: str, sizes: Facts, folder: str, name: str) -> Facts:
+    """How the sequences number ``first`` to ``last`` are spread over documents.
+
+    Parameters
+    ----------
+    sizes : Column facts
+        Tokens of each document.
+
+    Returns
+    -------
+    dict of Column facts
+        ``documents`` that hold the sequence, ``largest`` count in one of them, ``distance``: the sum over documents of
+        abs(share of the sequence - share of all tokens).
+    """
+    run = _merged(runs, first << 32, last << 32)
+    number, document = left_of(run.keys).astype(np.int64) - first, right_of(run.keys)
+    n = last - first
+    documents = np.bincount(number, minlength=n)
+    frequency = np.bincount(number, weights=run.counts, minlength=n)
+    largest = np.zeros(n, np.int64)
+    np.maximum.at(largest, number, run.counts)
+    tokens: Int64Array = Column(**sizes).read()
+    share = (tokens / max(int(tokens.sum()), 1))[document]
+    # documents without the sequence add their share: begin with 1 and correct where it occurs
+    distance = 1.0 + np.bincount(
+        number, weights=np.abs(run.counts / frequency[number] - share) - share, minlength=n
+    )
+    place = Path(folder)
+    columns = {"documents": documents, "largest": largest, "distance": np.maximum(distance, 0.0)}
+    return {
+        what: dataclasses.asdict(write_column(place / f"{name}.{what}", values)) for what, values in columns.items()
+    }
+
+
+def _merged(runs: str, first: int, last: int) -> Run:
+    parts = [run.between(first, last) for run in load_runs(Path(runs))]
+    return merge([Run(part.keys, part.counts.astype(np.int64)) for part in parts])
