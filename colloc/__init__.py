@@ -31,6 +31,7 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.contrasting import contrast as contrast
     from colloc.verbs.evidence import explain as explain
     from colloc.verbs.evidence import lines as lines
+    from colloc.verbs.evidence import picture as picture
     from colloc.verbs.keeping import check as check
     from colloc.verbs.keeping import documents as documents
     from colloc.verbs.keeping import documents_by as documents_by
@@ -42,7 +43,10 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.making import merge as merge
     from colloc.verbs.making import remove as remove
     from colloc.verbs.opening import open_store as open_store
+    from colloc.verbs.spaces import agreement as agreement
     from colloc.verbs.spaces import matrix as matrix
+    from colloc.verbs.spaces import similar as similar
+    from colloc.verbs.spaces import vectors as vectors
 
 _HOMES = {
     "Columns": "colloc.answers.columns",
@@ -50,6 +54,7 @@ _HOMES = {
     "SegmentSettings": "colloc.settings",
     "TallySpec": "colloc.settings",
     "add": "colloc.verbs.making",
+    "agreement": "colloc.verbs.spaces",
     "around": "colloc.verbs.asking",
     "build": "colloc.verbs.making",
     "check": "colloc.verbs.keeping",
@@ -57,8 +62,8 @@ _HOMES = {
     "documents": "colloc.verbs.keeping",
     "documents_by": "colloc.verbs.keeping",
     "errors": "colloc",
-    "floors": "colloc.verbs.asking",
     "explain": "colloc.verbs.evidence",
+    "floors": "colloc.verbs.asking",
     "info": "colloc.verbs.keeping",
     "lines": "colloc.verbs.evidence",
     "matrix": "colloc.verbs.spaces",
@@ -66,9 +71,12 @@ _HOMES = {
     "merge": "colloc.verbs.making",
     "open_store": "colloc.verbs.opening",
     "pairs": "colloc.verbs.asking",
+    "picture": "colloc.verbs.evidence",
     "remove": "colloc.verbs.making",
+    "similar": "colloc.verbs.spaces",
     "tallies": "colloc.verbs.keeping",
     "tally": "colloc.verbs.keeping",
+    "vectors": "colloc.verbs.spaces",
     "words": "colloc.verbs.asking",
 }
 """Where each public name lives; nothing is loaded before it is asked for."""

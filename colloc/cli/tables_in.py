@@ -76,6 +76,21 @@ def read_lines(path: Path) -> list[str]:
         return [line for line in stripped if line]
 
 
+def judged_rows(path: Path) -> list[tuple[str, str, float]]:
+    """Word pairs with people's judgements: two words and a number a line.
+
+    Raises
+    ------
+    NoInputError, DataError
+        Where the file is missing, or a line is not of this form.
+    """
+    from colloc.answers.spaces.judged import judged_pairs
+
+    with _opened_text(path) as stream:
+        judged = judged_pairs(str(path), _Lines(stream, str(path)))
+    return [(*pair, score) for pair, score in zip(judged.pairs, judged.scores.tolist(), strict=True)]
+
+
 @contextmanager
 def _opened_text(path: Path) -> Iterator[BinaryIO]:
     if str(path) == "-":

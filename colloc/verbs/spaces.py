@@ -2,16 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Literal
 
-from colloc.settings import DEFAULT_MEMORY, Inside, Margins
-from colloc.verbs.opening import ProgressCall, StorePath, pair_options, reading
+from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT, Inside, Margins
+from colloc.verbs.opening import ProgressCall, StorePath, as_list, pair_options, reading
 
 if TYPE_CHECKING:
+    from colloc.answers.columns import Columns
     from colloc.answers.spaces.choosing import Choice
     from colloc.answers.spaces.matrix import Matrix
+    from colloc.answers.spaces.vectors import Vectors
     from colloc.store.opening import Store
 
 
@@ -85,6 +87,166 @@ def matrix(
     if output is not None:
         write_matrix(made, Path(output))
     return made
+
+
+def vectors(
+    store: StorePath | Store,
+    output: StorePath | None = None,
+    *,
+    dimensions: int = 300,
+    power: float = 0.5,
+    join_contexts: bool = False,
+    seed: int = 0,
+    shift: float = 1.0,
+    smoothing: float = 0.75,
+    weighting: Literal["flat", "harmonic", "linear"] = "flat",
+    rows: Sequence[str] | None = None,
+    contexts: Sequence[str] | None = None,
+    min_row_count: int = DEFAULT_MIN_COUNT,
+    min_context_count: int = DEFAULT_MIN_COUNT,
+    most_rows: int | None = None,
+    most_contexts: int | None = None,
+    layer: str | None = None,
+    window: int | None = None,
+    left: int | None = None,
+    right: int | None = None,
+    unit: bool = False,
+    inside: Inside | None = None,
+    margins: Margins | None = None,
+    directed: bool = False,
+    where: Sequence[str] | str = (),
+    relation: str | None = None,
+    min_count: float = 1,
+    jobs: int | None = None,
+    memory: int = DEFAULT_MEMORY,
+    progress: ProgressCall | None = None,
+) -> Vectors:
+    """Word vectors: the leading singular vectors of the PPMI matrix (Levy, Goldberg & Dagan 2015).
+
+    Parameters
+    ----------
+    output : path, optional
+        Also written there: ``.npy`` or ``.txt`` (a word and its numbers a line); without an ending both. Labels and
+        settings stand beside it as JSON.
+    power : float
+        Power of the singular values: 1, 0.5 or 0.
+    join_contexts : bool
+        Add to each word's vector the vector of the same word as a context.
+    seed : int
+        Equal seeds give equal vectors.
+
+    The other options are those of :func:`matrix`.
+    """
+    from colloc.answers.spaces.matrix import MatrixOptions
+    from colloc.answers.spaces.vectors import VectorOptions
+    from colloc.answers.spaces.vectors import vectors as make_vectors
+    from colloc.exports.vectors import write_vectors
+
+    options = pair_options(layer, window, left, right, unit, inside, margins, directed, True, where, relation)
+    chosen = MatrixOptions(
+        shift=shift,
+        smoothing=smoothing,
+        weighting=weighting,
+        rows=_choice(rows, min_row_count, most_rows),
+        contexts=_choice(contexts, min_context_count, most_contexts),
+        min_count=min_count,
+    )
+    shape = VectorOptions(dimensions=dimensions, power=power, join_contexts=join_contexts, seed=seed)
+    with reading(store) as opened:
+        made = make_vectors(
+            opened, options=options, chosen=chosen, shape=shape, jobs=jobs, memory=memory, progress=progress
+        )
+    if output is not None:
+        write_vectors(made, Path(output))
+    return made
+
+
+def similar(
+    store: StorePath | Store,
+    words: Sequence[str] | str,
+    *,
+    vectors: StorePath | Vectors | None = None,
+    shift: float = 1.0,
+    smoothing: float = 0.75,
+    weighting: Literal["flat", "harmonic", "linear"] = "flat",
+    min_row_count: int = DEFAULT_MIN_COUNT,
+    min_context_count: int = DEFAULT_MIN_COUNT,
+    layer: str | None = None,
+    window: int | None = None,
+    left: int | None = None,
+    right: int | None = None,
+    unit: bool = False,
+    inside: Inside | None = None,
+    margins: Margins | None = None,
+    directed: bool = False,
+    where: Sequence[str] | str = (),
+    relation: str | None = None,
+    limit: int = 20,
+    jobs: int | None = None,
+    memory: int = DEFAULT_MEMORY,
+    progress: ProgressCall | None = None,
+) -> Columns:
+    """The nearest words of each word by the cosine of their PPMI rows, and the contexts that they share.
+
+    Parameters
+    ----------
+    vectors : path or Vectors, optional
+        Take the cosines of these vectors instead; the shared contexts are still those of the PPMI matrix.
+
+    Raises
+    ------
+    NotSeenError
+        When one of the words has no row.
+    """
+    from colloc.answers.spaces.likeness import Space
+    from colloc.answers.spaces.likeness import similar as nearest
+    from colloc.answers.spaces.matrix import MatrixOptions
+    from colloc.answers.spaces.matrix import matrix as make_matrix
+    from colloc.answers.spaces.vectors import Vectors
+    from colloc.exports.vectors import read_vectors
+
+    options = pair_options(layer, window, left, right, unit, inside, margins, directed, True, where, relation)
+    chosen = MatrixOptions(
+        shift=shift,
+        smoothing=smoothing,
+        weighting=weighting,
+        rows=_choice(None, min_row_count, None),
+        contexts=_choice(None, min_context_count, None),
+    )
+    given = vectors if vectors is None or isinstance(vectors, Vectors) else read_vectors(Path(vectors))
+    with reading(store) as opened:
+        made = make_matrix(opened, options=options, chosen=chosen, jobs=jobs, memory=memory, progress=progress)
+    return nearest(Space(made if given is None else given), as_list(words), limit=limit, contexts=made)
+
+
+def agreement(
+    space: Matrix | Vectors | StorePath,
+    lists: Mapping[str, Sequence[tuple[str, str, float]]],
+    *,
+    seed: int = 0,
+) -> Columns:
+    """Spearman's correlation of cosines with people's judgements, with a bootstrap interval and coverage.
+
+    Parameters
+    ----------
+    space : Matrix, Vectors or path of written vectors
+    lists : mapping of name to sequence of (word, word, score)
+    """
+    import numpy as np
+
+    from colloc.answers.spaces.agreement import JudgedPairs
+    from colloc.answers.spaces.agreement import agreement as correlate
+    from colloc.answers.spaces.likeness import Space
+    from colloc.answers.spaces.matrix import Matrix
+    from colloc.answers.spaces.vectors import Vectors
+    from colloc.exports.vectors import read_vectors
+
+    known = space if isinstance(space, Matrix | Vectors) else read_vectors(Path(space))
+    judged = [
+        JudgedPairs(name, [(one, other) for one, other, _ in rows], np.array([float(row[2]) for row in rows]))
+        for name, rows in lists.items()
+    ]
+    return correlate(Space(known), judged, seed=seed)
 
 
 def _choice(words: Sequence[str] | None, min_count: int, most: int | None) -> Choice:

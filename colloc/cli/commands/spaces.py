@@ -1,4 +1,4 @@
-"""``matrix``: words as rows of numbers, for other programs."""
+"""``matrix``, ``vectors`` and ``similar``: words as rows of numbers."""
 
 from __future__ import annotations
 
@@ -8,8 +8,9 @@ from typing import Annotated, Literal
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import print_lines, remark, settings_line
+from colloc.cli.output import Target, deliver, print_lines, remark, settings_line
 from colloc.cli.progress import ProgressLine
+from colloc.settings import DEFAULT_MIN_COUNT
 
 OutputFile = Annotated[
     Path,
@@ -132,6 +133,181 @@ def matrix(
         print_lines([f"{output}: {len(made.rows)} rows, {len(made.columns)} columns, {made.values.nnz} cells"])
 
 
+VECTOR_SMOOTHING = 0.75
+
+
+def vectors(
+    store: opt.StoreArgument,
+    output: Annotated[
+        Path | None,
+        typer.Option(
+            "--output", "-o", metavar="FILE", help="Written to: .npy or .txt; without an ending both. Labels beside it."
+        ),
+    ] = None,
+    evaluate: Annotated[
+        list[Path] | None,
+        typer.Option(
+            "--evaluate",
+            metavar="FILE",
+            help="Correlate cosines with judged pairs: two words and a number a line. Repeatable.",
+        ),
+    ] = None,
+    dimensions: Annotated[
+        int, typer.Option("--dimensions", "-d", metavar="N", min=1, help="Numbers in a vector.")
+    ] = 300,
+    power: Annotated[
+        float, typer.Option("--power", metavar="P", help="Power of the singular values: 1, 0.5 or 0.")
+    ] = 0.5,
+    join_contexts: Annotated[
+        bool, typer.Option("--join-contexts", help="Add the vector of the same word as a context.")
+    ] = False,
+    seed: Annotated[int, typer.Option("--seed", metavar="N", min=0, help="Equal seeds give equal vectors.")] = 0,
+    shift: ShiftOption = 1.0,
+    smoothing: SmoothingOption = VECTOR_SMOOTHING,
+    weighting: WeightingOption = "flat",
+    rows_from: RowsFromOption = None,
+    contexts_from: ContextsFromOption = None,
+    min_row_count: MinRowOption = DEFAULT_MIN_COUNT,
+    min_context_count: MinContextOption = DEFAULT_MIN_COUNT,
+    most_rows: MostRowsOption = None,
+    most_contexts: MostContextsOption = None,
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    directed: opt.DirectedOption = False,
+    relation: opt.RelationOption = None,
+    where: opt.WhereOption = None,
+    min_count: Annotated[float, typer.Option("--min-count", metavar="N", min=0, help="Least joint count used.")] = 1,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    format: opt.FormatOption = "table",
+    quiet: opt.QuietOption = False,
+) -> None:
+    """Write word vectors: the leading dimensions of the matrix of positive PMI.
+
+    With --evaluate, how they agree with people is printed: Spearman's correlation, its interval and coverage.
+    """
+    from colloc.cli.tables_in import judged_rows
+    from colloc.errors import UsageError
+    from colloc.verbs import spaces
+
+    if output is None and not evaluate:
+        raise UsageError("name a file with -o, or lists of judged pairs with --evaluate")
+    lists = {str(path): judged_rows(path) for path in evaluate or ()}
+    chosen_rows, chosen_contexts = listed(rows_from), listed(contexts_from)
+    with ProgressLine(quiet=quiet) as progress:
+        made = spaces.vectors(
+            store,
+            output,
+            dimensions=dimensions,
+            power=power,
+            join_contexts=join_contexts,
+            seed=seed,
+            shift=shift,
+            smoothing=smoothing,
+            weighting=weighting,
+            rows=chosen_rows,
+            contexts=chosen_contexts,
+            min_row_count=1 if chosen_rows else min_row_count,
+            min_context_count=1 if chosen_contexts else min_context_count,
+            most_rows=most_rows,
+            most_contexts=most_contexts,
+            layer=layer,
+            window=window,
+            left=left,
+            right=right,
+            unit=unit,
+            inside=inside,
+            margins=margins,
+            directed=directed,
+            relation=relation,
+            where=where or (),
+            min_count=min_count,
+            jobs=jobs,
+            memory=opt.memory_bytes(memory),
+            progress=progress,
+        )
+    if lists:
+        deliver(spaces.agreement(made, lists), Target(format, None, quiet), "vectors")
+        return
+    remark(settings_line("vectors", made.settings), quiet=quiet)
+    if not quiet:
+        print_lines([f"{output}: {len(made)} words, {dimensions} dimensions"])
+
+
+def similar(
+    store: opt.StoreArgument,
+    words: Annotated[list[str] | None, typer.Argument(metavar="WORD", help="Words asked for.")] = None,
+    words_from: Annotated[
+        Path | None, typer.Option("--words-from", metavar="FILE", help="Also the words of this file, one a line.")
+    ] = None,
+    vectors: Annotated[
+        Path | None,
+        typer.Option("--vectors", metavar="FILE", help="Compare these vectors (.npy) instead of PPMI rows."),
+    ] = None,
+    shift: ShiftOption = 1.0,
+    smoothing: SmoothingOption = VECTOR_SMOOTHING,
+    weighting: WeightingOption = "flat",
+    min_row_count: MinRowOption = DEFAULT_MIN_COUNT,
+    min_context_count: MinContextOption = DEFAULT_MIN_COUNT,
+    layer: opt.LayerOption = None,
+    window: opt.WindowOption = None,
+    left: opt.LeftOption = None,
+    right: opt.RightOption = None,
+    unit: opt.UnitOption = False,
+    inside: opt.InsideOption = None,
+    margins: opt.MarginsOption = None,
+    directed: opt.DirectedOption = False,
+    relation: opt.RelationOption = None,
+    where: opt.WhereOption = None,
+    limit: Annotated[
+        int, typer.Option("--limit", "-n", metavar="N", min=0, help="Rows shown for each word; 0 for all.")
+    ] = 20,
+    jobs: opt.JobsOption = None,
+    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    format: opt.FormatOption = "table",
+    output: opt.OutputOption = None,
+    settings_beside: opt.BesideOption = False,
+    quiet: opt.QuietOption = False,
+) -> None:
+    """List the words that keep the same company as a word, with the contexts that they share."""
+    from colloc.verbs import spaces
+
+    asked = opt.read_words(words or [], words_from)
+    target = Target(format, output, quiet, settings_beside)
+    with ProgressLine(quiet=quiet) as progress:
+        answer = spaces.similar(
+            store,
+            asked,
+            vectors=vectors,
+            shift=shift,
+            smoothing=smoothing,
+            weighting=weighting,
+            min_row_count=min_row_count,
+            min_context_count=min_context_count,
+            layer=layer,
+            window=window,
+            left=left,
+            right=right,
+            unit=unit,
+            inside=inside,
+            margins=margins,
+            directed=directed,
+            relation=relation,
+            where=where or (),
+            limit=limit,
+            jobs=jobs,
+            memory=opt.memory_bytes(memory),
+            progress=progress,
+        )
+    deliver(answer, target, "similar")
+
+
 def register(app: typer.Typer) -> None:
     """Add the commands of this module."""
-    app.command()(matrix)
+    for command in (matrix, vectors, similar):
+        app.command()(command)
