@@ -22,7 +22,7 @@ DEFAULT_MEASURE = "npmi"
 LARGEST_WINDOW = 1000
 DEFAULT_MEMORY = 2 * 2**30
 """Bytes that all processes of a command together stay below, unless told otherwise."""
-SMALLEST_MEMORY = 256 * 2**20
+SMALLEST_MEMORY = 384 * 2**20
 """Less than this is refused, or taken as this: the libraries alone need about half of it."""
 
 

@@ -12,13 +12,15 @@ from __future__ import annotations
 import json
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
+from typing import Protocol
 
 from colloc.build.repeats import NOTHING_MET, Met, Repeats
-from colloc.records import Document
+from colloc.errors import UsageError
+from colloc.records import Annotation, Document
 from colloc.settings import SegmentSettings
 from colloc.tokens.cutting import is_hard_break, safe_cut
 
-BATCH_CHARACTERS = 4 * 2**20
+BATCH_CHARACTERS = 2 * 2**20
 SEPARATOR = "\n\n"
 """Stands between documents: a hard break in every setting."""
 
@@ -43,6 +45,8 @@ class Entry:
     """Content hashes to remember with the document, and repeats dropped before it or in it."""
     repeat: bool = False
     """A long document that turned out, at its end, to be an exact repeat: to be taken out again."""
+    line: int = 1
+    """Number of its first line in its source, where it is annotated."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,12 +55,15 @@ class Batch:
 
     ``opening``: whether a sentence begins at its start for certain; where not,
     the stretch before says so. ``following``: the code point after its end.
+    ``annotation``: what the columns of the lines hold where the text is
+    annotated; such text is whole sentences of documents of one source.
     """
 
     text: str
     entries: tuple[Entry, ...]
     opening: bool = True
     following: str = ""
+    annotation: Annotation | None = None
 
 
 @dataclass(slots=True)
@@ -67,6 +74,7 @@ class _Growing:
     entries: list[Entry] = field(default_factory=list)
     length: int = 0
     opening: bool = True
+    annotation: Annotation | None = None
 
     def append(self, text: str) -> tuple[int, int]:
         """Where the text begins in the batch, and its length."""
@@ -76,9 +84,13 @@ class _Growing:
         return start, len(text)
 
     def close(self, following: str = "") -> Batch:
-        batch = Batch("".join(self.parts), tuple(self.entries), self.opening, following)
+        batch = Batch("".join(self.parts), tuple(self.entries), self.opening, following, self.annotation)
         self.parts, self.entries, self.length, self.opening = [], [], 0, True
         return batch
+
+
+class _Enter(Protocol):
+    def __call__(self, text: str, *, first: bool, last: bool, repeat: bool = False, line: int = 1) -> None: ...
 
 
 Numbered = tuple[int, Document]
@@ -103,19 +115,71 @@ class Batcher:
         """Batches in the order of the documents."""
         growing = _Growing()
         for source, document in documents:
-            yield from self._document(growing, source, document)
+            if growing.entries and not _alike(growing.annotation, document.annotation):
+                yield growing.close()
+            growing.annotation = document.annotation
+            fill = self._document if document.annotation is None else self._annotated
+            yield from fill(growing, source, document)
             if growing.length >= BATCH_CHARACTERS:
                 yield growing.close()
         if growing.entries:
             yield growing.close()
 
+    def _annotated(self, growing: _Growing, source: int, document: Document) -> Iterator[Batch]:
+        """Pieces of annotated text hold whole sentences: a batch ends behind one of them."""
+        if self._repeats.mode == "paragraph":
+            raise UsageError("--skip-duplicates paragraph is for plain text: annotated text has no paragraphs to drop")
+        assert document.annotation is not None
+        enter = self._entering(growing, source, document)
+        line = document.annotation.line
+        fingerprint = self._repeats.fingerprint()
+        first, waiting = True, ""
+        for piece in document.pieces:
+            fingerprint.update(piece)
+            if waiting and growing.length + len(waiting) + len(piece) > BATCH_CHARACTERS:
+                if first and growing.entries:
+                    # A long document begins a batch of its own, so that what precedes it can be committed.
+                    yield growing.close()
+                if not first or len(waiting) + len(piece) > BATCH_CHARACTERS:
+                    enter(waiting, first=first, last=False, line=line)
+                    yield growing.close()
+                    line += waiting.count("\n")
+                    first, waiting = False, ""
+            waiting += piece
+        repeat = self._repeats.is_repeat(fingerprint)
+        if not (repeat and first):
+            enter(waiting, first=first, last=True, repeat=repeat, line=line)
+
     def _document(self, growing: _Growing, source: int, document: Document) -> Iterator[Batch]:
-        metadata = json.dumps(dict(document.metadata), ensure_ascii=False)
         first = True
         waiting = ""
         fingerprint = self._repeats.fingerprint()
 
-        def enter(text: str, last: bool, repeat: bool = False) -> None:
+        enter = self._entering(growing, source, document)
+        for piece in self._repeats.without_paragraphs(document.pieces):
+            fingerprint.update(piece)
+            waiting += piece
+            while len(waiting) > BATCH_CHARACTERS:
+                if first and growing.entries:
+                    # A long document begins a batch of its own, so that what precedes it can be committed.
+                    yield growing.close()
+                cut = safe_cut(waiting[:BATCH_CHARACTERS], self._settings, BATCH_CHARACTERS // 2) or BATCH_CHARACTERS
+                enter(waiting[:cut], first=first, last=False)
+                hard = is_hard_break(waiting[: cut + 1], cut, self._settings)
+                yield growing.close(following=waiting[cut : cut + 1])
+                growing.opening = hard
+                waiting, first = waiting[cut:], False
+        repeat = self._repeats.is_repeat(fingerprint)
+        if repeat and first:
+            return
+        enter(waiting, first=first, last=True, repeat=repeat)
+        growing.append(SEPARATOR)
+
+    def _entering(self, growing: _Growing, source: int, document: Document) -> _Enter:
+        """What puts a part of the document into the growing batch."""
+        metadata = json.dumps(dict(document.metadata), ensure_ascii=False)
+
+        def enter(text: str, *, first: bool, last: bool, repeat: bool = False, line: int = 1) -> None:
             start, length = growing.append(text)
             growing.entries.append(
                 Entry(
@@ -129,24 +193,15 @@ class Batcher:
                     last=last,
                     met=self._repeats.take_new(),
                     repeat=repeat,
+                    line=line,
                 )
             )
 
-        for piece in self._repeats.without_paragraphs(document.pieces):
-            fingerprint.update(piece)
-            waiting += piece
-            while len(waiting) > BATCH_CHARACTERS:
-                if first and growing.entries:
-                    # A long document begins a batch of its own, so that what precedes it can be committed.
-                    yield growing.close()
-                cut = safe_cut(waiting[:BATCH_CHARACTERS], self._settings, BATCH_CHARACTERS // 2) or BATCH_CHARACTERS
-                enter(waiting[:cut], last=False)
-                hard = is_hard_break(waiting[: cut + 1], cut, self._settings)
-                yield growing.close(following=waiting[cut : cut + 1])
-                growing.opening = hard
-                waiting, first = waiting[cut:], False
-        repeat = self._repeats.is_repeat(fingerprint)
-        if repeat and first:
-            return
-        enter(waiting, last=True, repeat=repeat)
-        growing.append(SEPARATOR)
+        return enter
+
+
+def _alike(one: Annotation | None, other: Annotation | None) -> bool:
+    """Whether documents can stand in one batch."""
+    if one is None or other is None:
+        return one is other
+    return one.columns == other.columns and one.source == other.source

@@ -24,6 +24,10 @@ from colloc.store.stream import token_count
 from colloc.store.vocabulary import ensure_layer
 from colloc.text.sources import open_sources
 
+_WRITER_BYTES = 128 * 2**20
+_WORKER_BYTES = 128 * 2**20
+"""What the writing process and each segmenting one take at most with batches of the usual size, measured."""
+
 NOTHING_READ = Read(0, 0, 0, 0, 0, 0)
 
 
@@ -53,10 +57,13 @@ class BuildReport:
 
 
 def resources(jobs: int | None, memory: int, temp: str | None) -> Resources:
-    """Checked resources: all cores unless told otherwise."""
+    """Checked resources: all cores unless told otherwise, and no more processes than the memory can hold."""
+    memory = max(memory, SMALLEST_MEMORY)
+    cores = len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
+    affordable = (memory - _WRITER_BYTES) // _WORKER_BYTES
     return Resources(
-        jobs=max(jobs or len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1, 1),
-        memory=max(memory, SMALLEST_MEMORY),
+        jobs=max(min(jobs or cores, affordable), 1),
+        memory=memory,
         temp=Path(temp) if temp else None,
     )
 

@@ -101,7 +101,7 @@ def test_bugs_keep_their_traceback(run: Run, monkeypatch: pytest.MonkeyPatch, bu
         (["pairs", "store", "--measure", "gg2"], "did you mean 'g2'?"),
         (["pairs", "store", "--show", "pmi,nothing_like_it"], "unknown measure 'nothing_like_it'; choose from pmi"),
         (["pairs", "store", "--memory", "lots"], "not 'lots'"),
-        (["pairs", "store", "--memory", "1MB"], "at least 256 MB, not 1MB"),
+        (["pairs", "store", "--memory", "1MB"], "at least 384 MB, not 1MB"),
         (["info", "store", "--by", "year", "--documents"], "one at a time"),
         (["build", "store", "x", "--max-record", "12"], "max_record must be at least 1024 bytes, not 12"),
         (["build", "store", "x", "--max-token", "0"], "max_token must be at least 1, not 0"),
