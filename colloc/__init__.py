@@ -43,6 +43,8 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.making import merge as merge
     from colloc.verbs.making import remove as remove
     from colloc.verbs.opening import open_store as open_store
+    from colloc.verbs.scoring import score as score
+    from colloc.verbs.scoring import scorer as scorer
     from colloc.verbs.spaces import agreement as agreement
     from colloc.verbs.spaces import matrix as matrix
     from colloc.verbs.spaces import similar as similar
@@ -73,6 +75,8 @@ _HOMES = {
     "pairs": "colloc.verbs.asking",
     "picture": "colloc.verbs.evidence",
     "remove": "colloc.verbs.making",
+    "score": "colloc.verbs.scoring",
+    "scorer": "colloc.verbs.scoring",
     "similar": "colloc.verbs.spaces",
     "tallies": "colloc.verbs.keeping",
     "tally": "colloc.verbs.keeping",

@@ -107,6 +107,14 @@ def read_words(words: Sequence[str], listed: Path | None) -> list[str]:
     return found
 
 
+def check_plot(path: Path | None) -> None:
+    """Raise UsageError for a picture that could not be written, before anything is counted."""
+    if path is not None:
+        from colloc.exports.pictures.canvas import picture_format
+
+        picture_format(path)
+
+
 def _option(*names: str, help: str, **more: Any) -> Any:
     return typer.Option(*names, help=help, **more)
 
@@ -125,6 +133,16 @@ OutputOption = Annotated[
 QuietOption = Annotated[bool, _option("--quiet", "-q", help="No settings line, progress or remarks.")]
 BesideOption = Annotated[
     bool, _option("--settings-beside", help="Also write the settings as JSON to FILE.settings.json; needs -o.")
+]
+PlotOption = Annotated[
+    Path | None, _option("--plot", metavar="FILE", help="Also draw the answer into this file, .svg or .png.")
+]
+PlotListOption = Annotated[
+    Literal["frequency", "network"] | None,
+    _option(
+        "--plot-as",
+        help="Measure against expected count with the chance floors, or one word and its company as a network.",
+    ),
 ]
 LimitOption = Annotated[int, _option("--limit", "-n", metavar="N", min=0, help="Rows shown; 0 for all.")]
 

@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Sequence
+from pathlib import Path
 from typing import TYPE_CHECKING, Literal
 
-from colloc.settings import DEFAULT_MEMORY, Inside, Margins
+from colloc.errors import UsageError
+from colloc.settings import DEFAULT_MEASURE, DEFAULT_MEMORY, DEFAULT_MIN_COUNT, Inside, Margins
 from colloc.verbs.opening import ProgressCall, StorePath, pair_options, reading
 
 if TYPE_CHECKING:
@@ -16,6 +19,8 @@ if TYPE_CHECKING:
 DEFAULT_CONTEXT = 20
 DEFAULT_LINES = 50
 DEFAULT_EXAMPLES = 4
+
+PictureKind = Literal["positions", "spread", "both", "frequency", "network"]
 
 
 def lines(
@@ -111,3 +116,68 @@ def explain(
             memory=memory,
             progress=progress,
         )
+
+
+def picture(
+    answer: Evidence | Columns,
+    path: str | os.PathLike[str],
+    kind: PictureKind | None = None,
+    *,
+    store: StorePath | Store,
+) -> None:
+    """Draw an answer into an SVG or PNG file; needs matplotlib (``colloc[plots]``).
+
+    Parameters
+    ----------
+    answer : Evidence or Columns
+        What ``explain``, ``pairs`` or ``around`` gave.
+    kind : str
+        ``positions``, ``spread`` or ``both`` for a card (both when not given); ``frequency`` (a measure against the
+        expected count, with the chance floors that the store keeps) or ``network`` (one word and its company) for a
+        list; when not given the network where there is one first word.
+    store : path or Store
+        Where the answer came from.
+
+    Raises
+    ------
+    UsageError
+        For a kind that does not fit the answer, or a file that is neither SVG nor PNG.
+    MissingExtraError
+        Where matplotlib is not installed.
+    """
+    from colloc.answers.evidence.card import Evidence
+
+    target = Path(path)
+    if isinstance(answer, Evidence):
+        from colloc.exports.pictures import evidence as cards
+
+        drawn = {"positions": cards.draw_positions, "spread": cards.draw_spread, "both": cards.draw_evidence}
+        if (kind or "both") not in drawn:
+            raise UsageError(f"a card is drawn as {', '.join(drawn)}, not as {kind!r}")
+        drawn[kind or "both"](answer, target)
+        return
+    _draw_list(answer, target, kind, store)
+
+
+def _draw_list(answer: Columns, target: Path, kind: PictureKind | None, store: StorePath | Store) -> None:
+    from colloc.answers.evidence.linking import kept_floors, partner_links, question_of
+    from colloc.exports.pictures import frequency, network
+
+    if "first" not in answer or kind in ("positions", "spread", "both"):
+        raise UsageError(f"a list of pairs is drawn as frequency or network, not as {kind!r}")
+    if not len(answer):
+        raise UsageError("there is nothing to draw: the answer has no rows")
+    words = set(answer["first"].tolist())
+    kind = kind or ("network" if len(words) == 1 else "frequency")
+    measure = answer.settings["measure"]
+    # Frequency itself is no strength; pairs ranked by it are drawn by the default measure.
+    measure = measure if measure != "joint" else next(name for name in (DEFAULT_MEASURE, "pmi") if name in answer)
+    if kind == "network" and len(words) > 1:
+        raise UsageError("a network is drawn around one word: ask for one, or draw the frequency")
+    with reading(store) as opened:
+        question = question_of(opened, answer.settings)
+        if kind == "frequency":
+            frequency.draw_frequency(answer, measure, kept_floors(question), target)
+            return
+        links = partner_links(question, answer, measure, network.MOST, DEFAULT_MIN_COUNT)
+    network.draw_network(answer, measure, links, target)

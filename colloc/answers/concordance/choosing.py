@@ -62,7 +62,7 @@ def choose(store: Store, reader: PassageReader, hits: Hits, layer: str, limit: i
 
 def _weighed(store: Store, reader: PassageReader, hits: Hits, layer: str, rows: Int64Array) -> _Candidates:
     counts = slice_word_counts(store, layer).tokens
-    common = merits.commonness(counts * (1e6 / max(int(counts.sum()), 1)))
+    common = merits.commonness((counts * (1e6 / max(int(counts.sum()), 1))).astype(np.float64))
     of_type = vocabulary.layer_map(store, layer)
     spans, kept, points = [], [], []
     for row in rows.tolist():

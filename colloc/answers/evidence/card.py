@@ -40,7 +40,7 @@ class Evidence:
     floors : Columns
         shuffle, measure, value, floor, above; no rows where the store keeps none.
     spread : mapping
-        documents, of_documents, dp, dp_norm, largest_share, largest_document.
+        documents, of_documents, tokens (of all), dp, dp_norm, largest_share, largest_document.
     by_document : Columns
         document, joint, tokens, for every document that holds the pair, most first.
     positions : Columns

@@ -235,6 +235,7 @@ def _spread(question: Question, seen: PairOccurrences) -> tuple[dict[str, Any], 
     spread: dict[str, Any] = {
         "documents": len(there),
         "of_documents": len(seen.documents),
+        "tokens": int(sizes.sum()),
         "dp": float("nan"),
         "dp_norm": float("nan"),
         "largest_share": float("nan"),

@@ -237,7 +237,8 @@ class _Tokens:
 
     def core_places(self, label: int) -> Int64Array:
         """Offsets of the tokens of the core with a label."""
-        return np.flatnonzero(self.labels[self.core] == label) + self.core.start
+        places: Int64Array = np.flatnonzero(self.labels[self.core] == label) + self.core.start
+        return places
 
     def bounds(self, here: Int64Array) -> tuple[Int64Array, Int64Array]:
         """Where the unit of each token begins, and where it ends."""
@@ -252,7 +253,8 @@ class _Tokens:
         else:
             stop = self.bounds(here)[1]
         stop = np.minimum(here + reach + 1, stop)
-        return self._words(here + 1, stop) * self.present[here]
+        found: Int64Array = self._words(here + 1, stop) * self.present[here]
+        return found
 
     def preceding(self, here: Int64Array, reach: int) -> Int64Array:
         """Words within reach before the tokens ``here``."""

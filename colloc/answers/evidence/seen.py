@@ -41,8 +41,10 @@ def examples_and_forms(
     else:
         passages = PassageReader(store)
         reader = passages
-        chosen = choose(store, passages, hits, question.layer, examples, seed) if examples and len(hits) else []
-        shown = read_lines(passages, hits.take(np.asarray(chosen, np.int64)), 0, True)
+        chosen = np.empty(0, np.int64)
+        if examples and len(hits):
+            chosen = choose(store, passages, hits, question.layer, examples, seed)
+        shown = read_lines(passages, hits.take(chosen), 0, True)
     lines = as_columns(store, shown, {"found": len(hits), "best": True}, paired=True)
     if "lemma" in vocabulary.layer_names(store) and question.layer not in ("lemma", "lemma_fold"):
         one, two = (_same_lemma(question, of_type == term) for term in (first, second))

@@ -68,7 +68,8 @@ def tests_of(question: Question, table: PairTable, progress: Any) -> dict[str, A
     """Two-sided p-value (mid-p of Fisher's exact test where the expected count is below 5, else G2) and q-value."""
     if question.convention.margins == "tokens":
         return {}
-    log_p = float(association_log_p(*table.arguments)[0])
+    joint, first, second, total = table.arguments
+    log_p = float(association_log_p(joint, first, second, total)[0])
     exact = question.reader.tally.n_pairs <= EXACT_UP_TO
     if exact:
         family = all_pairs(question, 1, progress)

@@ -78,6 +78,8 @@ def pairs(
     limit: opt.LimitOption = LIMIT,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    plot: opt.PlotOption = None,
+    plot_as: opt.PlotListOption = None,
     format: opt.FormatOption = "table",
     output: opt.OutputOption = None,
     settings_beside: opt.BesideOption = False,
@@ -89,8 +91,10 @@ def pairs(
     layer or slice is counted from the store, and kept there for the next time.
     """
     from colloc.verbs import asking
+    from colloc.verbs.evidence import picture
 
     opt.check_ranking(measure)
+    opt.check_plot(plot)
     target = Target(format, output, quiet, settings_beside)
     with ProgressLine(quiet=quiet) as progress:
         answer = asking.pairs(
@@ -124,6 +128,8 @@ def pairs(
             progress=progress,
         )
     deliver(answer, target, "pairs")
+    if plot is not None:
+        picture(answer, plot, plot_as, store=store)
 
 
 def around(
@@ -172,6 +178,8 @@ def around(
     ] = LIMIT,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    plot: opt.PlotOption = None,
+    plot_as: opt.PlotListOption = None,
     format: opt.FormatOption = "table",
     output: opt.OutputOption = None,
     settings_beside: opt.BesideOption = False,
@@ -179,8 +187,10 @@ def around(
 ) -> None:
     """List what stands around each word, strongest first; the word asked for is `first`."""
     from colloc.verbs import asking
+    from colloc.verbs.evidence import picture
 
     opt.check_ranking(measure)
+    opt.check_plot(plot)
     asked = opt.read_words(words or [], words_from)
     target = Target(format, output, quiet, settings_beside)
     with ProgressLine(quiet=quiet) as progress:
@@ -218,6 +228,8 @@ def around(
             progress=progress,
         )
     deliver(answer, target, "around")
+    if plot is not None:
+        picture(answer, plot, plot_as, store=store)
 
 
 def register(app: typer.Typer) -> None:

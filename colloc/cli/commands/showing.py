@@ -125,6 +125,11 @@ def explain(
     ] = 0,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    plot: opt.PlotOption = None,
+    plot_as: Annotated[
+        Literal["positions", "spread", "both"],
+        typer.Option("--plot-as", help="Positions of the second word, spread over documents, or both."),
+    ] = "both",
     format: Annotated[
         Literal["text", "json", "html"], typer.Option("--format", "-f", help="How the card is written.")
     ] = "text",
@@ -139,6 +144,7 @@ def explain(
     """
     from colloc.verbs import evidence
 
+    opt.check_plot(plot)
     target = Target(format, output, quiet, settings_beside)
     with ProgressLine(quiet=quiet) as progress:
         card = evidence.explain(
@@ -173,6 +179,8 @@ def explain(
 
         data = "".join(f"{line}\n" for line in card_lines(card, terminal_width())).encode()
     deliver_bytes(data, card.settings, target, "explain")
+    if plot is not None:
+        evidence.picture(card, plot, plot_as, store=store)
 
 
 def register(app: typer.Typer) -> None:
