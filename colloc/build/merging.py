@@ -10,6 +10,7 @@ from pathlib import Path
 
 import numpy as np
 
+from colloc.build.annotating import narrow
 from colloc.build.building import BuildReport, report, resources
 from colloc.build.changing import require_complete
 from colloc.build.counting import count_new_documents
@@ -17,7 +18,7 @@ from colloc.build.reading import Progress, Read, registry_limit
 from colloc.errors import CollocError, UsageError
 from colloc.records import NO_TERM, Anchors, UInt32Array
 from colloc.settings import DEFAULT_MEMORY
-from colloc.store import documents, facts, stream, texts, visibility, vocabulary
+from colloc.store import annotation, documents, facts, stream, texts, visibility, vocabulary
 from colloc.store.connection import Store
 from colloc.store.inputs.sources import copy_source, source_list
 from colloc.store.opening import open_for_reading, open_for_writing
@@ -116,8 +117,12 @@ def _copy(store: Store, other: Store, limit: int) -> None:
     with store.transaction():
         documents.append_documents(store, rows)
     mapping = _type_map(store, other, registry)
+    with store.transaction():
+        values = {
+            name: annotation.number_values(store, name, annotation.values_of(other, name)) for name in annotation.VALUED
+        }
     for head in stream.block_heads(other):
-        _copy_block(store, other, head.number, mapping, numbers, character_shift)
+        _copy_block(store, other, head.number, mapping, values, numbers, character_shift)
     with store.transaction():
         texts.append_packed(store, character_shift, list(texts.packed_blocks(other)))
 
@@ -136,7 +141,13 @@ def _type_map(store: Store, other: Store, registry: TypeRegistry) -> UInt32Array
 
 
 def _copy_block(
-    store: Store, other: Store, number: int, mapping: UInt32Array, numbers: dict[int, int], character_shift: int
+    store: Store,
+    other: Store,
+    number: int,
+    mapping: UInt32Array,
+    values: dict[str, UInt32Array],
+    numbers: dict[int, int],
+    character_shift: int,
 ) -> None:
     block = stream.read_block(other, number)
     tokens = np.full(len(block.tokens), NO_TERM, dtype=np.uint32)
@@ -154,4 +165,8 @@ def _copy_block(
     with store.transaction():
         stream.append_block(store, copied, np.sort(mapping[stream.block_types(other, number)]))
         for name in stream.column_names(other, number):
-            stream.append_column(store, next_block, name, stream.read_column(other, number, name))
+            column = stream.read_column(other, number, name)
+            if name in values:
+                column = narrow(values[name][column])
+            stream.append_column(store, next_block, name, column)
+        annotation.copy_rests(store, other, number, next_block, numbers)

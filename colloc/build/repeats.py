@@ -68,7 +68,7 @@ class Repeats:
     """
 
     def __init__(self, mode: Literal["none", "document", "paragraph"], seen: SeenHashes | None = None) -> None:
-        self._mode = mode
+        self.mode = mode
         self._seen = seen
         self._new: list[bytes] = []
         self._told = (0, 0)
@@ -77,7 +77,7 @@ class Repeats:
 
     def fingerprint(self) -> Fingerprint:
         """A hash to be fed the whole text of a document."""
-        return _TextFingerprint() if self._mode == "document" else _NoFingerprint()
+        return _TextFingerprint() if self.mode == "document" else _NoFingerprint()
 
     def is_repeat(self, fingerprint: Fingerprint) -> bool:
         """Whether a document with this text was met before; remembers it."""
@@ -89,7 +89,7 @@ class Repeats:
 
     def without_paragraphs(self, pieces: Iterable[str]) -> Iterator[str]:
         """The pieces, in paragraph mode cut at line ends and without the repeated ones."""
-        if self._mode != "paragraph":
+        if self.mode != "paragraph":
             yield from pieces
             return
         waiting = ""

@@ -10,8 +10,9 @@ from __future__ import annotations
 import json
 import multiprocessing
 from collections import deque
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 from multiprocessing.connection import Connection, wait
 from pathlib import Path
 from typing import Any
@@ -19,11 +20,16 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.build.annotating import Annotations, annotations_of, sentence_anchors
 from colloc.build.batches import Batch
 from colloc.errors import CollocError, InputOutputError
-from colloc.records import Anchors, Int64Array, UInt32Array
+from colloc.records import Anchors, Annotation, Int64Array, UInt32Array
 from colloc.settings import SegmentSettings
 from colloc.store.texts import PackedText, pack_text
+from colloc.store.vocabulary import TypeKey
+from colloc.tokens.annotated.lines import Part
+from colloc.tokens.annotated.reading import read_words
+from colloc.tokens.annotated.values import TripleNumberer
 from colloc.tokens.numbering import TypeNumberer
 from colloc.tokens.segmenter import Segmenter
 
@@ -52,6 +58,12 @@ class SegmentedBatch:
         First token of each entry.
     texts : PackedText
         The text, where it is kept.
+    entry_characters, entry_lengths : int64 arrays
+        Where the text of each entry stands in the text that is kept.
+    n_characters : int
+        Length of the text that is kept.
+    annotations : Annotations
+        Columns of annotation and the like; nothing for plain text.
     """
 
     batch: Batch
@@ -62,15 +74,21 @@ class SegmentedBatch:
     paragraphs: Int64Array
     entry_tokens: Int64Array
     anchors: Anchors
-    new_types: list[str]
+    new_types: Sequence[TypeKey]
     restarted: bool
     closed: bool
     dropped: int
     texts: PackedText
+    entry_characters: Int64Array
+    entry_lengths: Int64Array
+    n_characters: int
+    annotations: Annotations
 
 
 Arrays = dict[str, NDArray[Any]]
-_ARRAYS = ("tokens", "present", "sentences", "paragraphs", "entry_tokens")
+_ARRAYS = ("tokens", "present", "sentences", "paragraphs", "entry_tokens", "entry_characters", "entry_lengths")
+_COLUMN = "column "
+"""Before the names of columns of annotation among the arrays."""
 
 
 class _Worker:
@@ -79,18 +97,28 @@ class _Worker:
     def __init__(self, settings: SegmentSettings, keep_text: bool, memory: int) -> None:
         self._segmenter = Segmenter(settings)
         self._numberer = TypeNumberer()
+        self._triples = TripleNumberer()
         self._keep_text = keep_text
         self._memory = memory
 
     def segment(self, batch: Batch) -> tuple[Arrays, dict[str, Any]]:
         """Arrays and small facts of one batch."""
-        restarted = self._numberer.nbytes > self._memory
+        restarted = self._numberer.nbytes + self._triples.nbytes > self._memory
         if restarted:
             self._numberer.reset()
+            self._triples.reset()
+        if batch.annotation is not None:
+            arrays, facts = self._read(batch, batch.annotation)
+        else:
+            arrays, facts = self._segment(batch)
+        return arrays, {**facts, "restarted": restarted}
+
+    def _segment(self, batch: Batch) -> tuple[Arrays, dict[str, Any]]:
         segments = self._segmenter.segment(batch.text, batch.following, batch.opening)
         tokens = self._numberer.number(segments)
         new_types = self._numberer.take_new()
         starts = np.fromiter((entry.start for entry in batch.entries), dtype=np.int64, count=len(batch.entries))
+        lengths = np.fromiter((entry.length for entry in batch.entries), dtype=np.int64, count=len(batch.entries))
         anchor_tokens = _spaced(segments.sentences, ANCHOR_EVERY)
         arrays: Arrays = {
             "tokens": tokens,
@@ -98,15 +126,45 @@ class _Worker:
             "sentences": segments.sentences,
             "paragraphs": segments.paragraphs,
             "entry_tokens": np.searchsorted(segments.starts, starts).astype(np.int64),
+            "entry_characters": starts,
+            "entry_lengths": lengths,
             "anchor_tokens": anchor_tokens,
             "anchor_characters": segments.starts[anchor_tokens],
         }
         facts: dict[str, Any] = {
             "new_types": new_types,
-            "restarted": restarted,
             "closed": segments.closed,
             "dropped": segments.dropped,
             "texts": pack_text(batch.text) if self._keep_text else [],
+            "n_characters": len(batch.text),
+            "annotations": Annotations(),
+        }
+        return arrays, facts
+
+    def _read(self, batch: Batch, annotation: Annotation) -> tuple[Arrays, dict[str, Any]]:
+        """Annotated text: it is words already."""
+        parts = [Part(entry.start, entry.line, entry.last) for entry in batch.entries]
+        words = read_words(batch.text, parts, annotation, self._triples)
+        annotations = annotations_of(words, annotation, self._keep_text)
+        anchor_tokens = sentence_anchors(words, ANCHOR_EVERY)
+        arrays: Arrays = {
+            "tokens": words.tokens,
+            "present": _present(words.tokens),
+            "sentences": words.sentences,
+            "paragraphs": words.paragraphs,
+            "entry_tokens": words.part_words,
+            "entry_characters": words.part_characters,
+            "entry_lengths": words.part_lengths,
+            "anchor_tokens": anchor_tokens,
+            "anchor_characters": words.starts[anchor_tokens],
+        }
+        facts: dict[str, Any] = {
+            "new_types": self._triples.take_new(),
+            "closed": True,
+            "dropped": 0,
+            "texts": pack_text(words.text) if self._keep_text else [],
+            "n_characters": len(words.text),
+            "annotations": annotations,
         }
         return arrays, facts
 
@@ -230,8 +288,10 @@ class _Pool:
                 raise answer
             number, path, lengths, facts = answer
             arrays = _read_arrays(path, lengths)
-            facts["new_types"] = json.loads(arrays.pop("types").tobytes())
+            new_types, values = json.loads(arrays.pop("types").tobytes())
+            facts["new_types"] = [key if isinstance(key, str) else tuple(key) for key in new_types]
             facts["texts"] = _divided(arrays.pop("texts"), facts.pop("text_sizes"))
+            facts["annotations"] = _annotations(arrays, values)
             self._given[worker].remove(number)
             done[number] = _segmented(waiting.pop(number), worker, arrays, facts)
 
@@ -275,7 +335,11 @@ def _serve(
                 pipe.send(error)
                 return
             path = folder / f"segments-{number}-{ordinal}"
-            arrays["types"] = _as_bytes(json.dumps(facts.pop("new_types")).encode())
+            annotations = facts.pop("annotations")
+            arrays["types"] = _as_bytes(json.dumps([facts.pop("new_types"), annotations.values]).encode())
+            arrays |= {f"{_COLUMN}{name}": column for name, column in annotations.columns.items()}
+            arrays["rests"] = _as_bytes(b"".join(annotations.rests))
+            arrays["rest_ends"] = np.cumsum([len(rest) for rest in annotations.rests], dtype=np.int64)
             texts = facts.pop("texts")
             arrays["texts"] = _as_bytes(b"".join(data for _, _, data in texts))
             facts["text_sizes"] = [(start, length, len(data)) for start, length, data in texts]
@@ -297,6 +361,13 @@ def _divided(data: NDArray[Any], sizes: list[tuple[int, int, int]]) -> PackedTex
         blocks.append((start, length, data[end : end + size].tobytes()))
         end += size
     return blocks
+
+
+def _annotations(arrays: Arrays, values: dict[str, list[str]]) -> Annotations:
+    """What was handed back of an annotated batch."""
+    rests, ends = arrays.pop("rests"), arrays.pop("rest_ends").tolist()
+    columns = {name.removeprefix(_COLUMN): array for name, array in arrays.items() if name.startswith(_COLUMN)}
+    return Annotations(columns, values, [rests[start:end].tobytes() for start, end in pairwise([0, *ends])])
 
 
 def _write_arrays(path: Path, arrays: Arrays) -> list[tuple[str, str, int]]:

@@ -12,12 +12,13 @@ from dataclasses import dataclass, field, replace
 
 import numpy as np
 
+from colloc.build.annotating import Annotations, narrow
 from colloc.build.batches import Entry
 from colloc.build.repeats import Met
 from colloc.build.segmenting import SegmentedBatch
 from colloc.errors import DataError
 from colloc.records import Anchors, DocumentRow, UInt32Array
-from colloc.store import documents, facts, stream, texts
+from colloc.store import annotation, documents, facts, stream, texts
 from colloc.store.inputs import sources
 from colloc.store.inputs.repeats import remember
 from colloc.store.opening import Store
@@ -61,7 +62,7 @@ class StreamWriter:
     _saved: WriterTotals = field(default_factory=WriterTotals)
     last_source: int = -1
     """Source of the last document that was finished."""
-    _maps: dict[int, list[UInt32Array]] = field(default_factory=dict)
+    _maps: dict[tuple[int, bool], list[UInt32Array]] = field(default_factory=dict)
     _open: _OpenDocument | None = None
     _closed: bool = True
     _next_token: int = -1
@@ -101,9 +102,10 @@ class StreamWriter:
         )
         stream.append_block(self.store, block, present)
         texts.append_packed(self.store, self._next_character, segmented.texts)
+        self._annotate(segmented.annotations, [row.number for row in rows])
         self._finish(batch.entries, rows)
         self._next_token += len(tokens)
-        self._next_character += len(batch.text)
+        self._next_character += segmented.n_characters
         self._next_block += 1
         self._closed = segmented.closed
         self.totals.tokens += len(tokens)
@@ -134,9 +136,12 @@ class StreamWriter:
         self._saved = replace(self.totals)
 
     def _mapping(self, segmented: SegmentedBatch) -> UInt32Array:
-        known = self._maps.setdefault(segmented.worker, [])
+        # A worker numbers annotated types apart from plain ones, and forgets both at once.
+        annotated = segmented.batch.annotation is not None
         if segmented.restarted:
-            known.clear()
+            self._maps.pop((segmented.worker, not annotated), None)
+            self._maps.pop((segmented.worker, annotated), None)
+        known = self._maps.setdefault((segmented.worker, annotated), [])
         if segmented.new_types:
             known.append(self.registry.number(segmented.new_types))
         if len(known) > 1:
@@ -147,14 +152,22 @@ class StreamWriter:
         """One row an entry, with its place in the whole stream; parts of a document share a number."""
         bounds = np.append(segmented.entry_tokens, n_tokens)
         rows = []
-        for entry, start, end in zip(segmented.batch.entries, bounds[:-1].tolist(), bounds[1:].tolist(), strict=True):
+        places = zip(
+            segmented.batch.entries,
+            bounds[:-1].tolist(),
+            bounds[1:].tolist(),
+            segmented.entry_characters.tolist(),
+            segmented.entry_lengths.tolist(),
+            strict=True,
+        )
+        for entry, start, end, character, length in places:
             if entry.first:
-                self._open = _OpenDocument(self._next_token + start, self._next_character + entry.start)
+                self._open = _OpenDocument(self._next_token + start, self._next_character + character)
             if self._open is None:
                 raise DataError(f"document {entry.identifier!r}: a part came without its beginning")
             opened = self._open
             opened.n_tokens += end - start
-            opened.n_characters += entry.length
+            opened.n_characters += length
             rows.append(
                 DocumentRow(
                     number=self._next_document,
@@ -172,6 +185,18 @@ class StreamWriter:
                 self._open = None
                 self._next_document += 1
         return rows
+
+    def _annotate(self, found: Annotations, documents: list[int]) -> None:
+        """Columns of annotation and rests of the block that is being written; ``documents``: one an entry."""
+        for name, column in found.columns.items():
+            numbers = column
+            if name in found.values:
+                known = annotation.number_values(self.store, name, found.values[name])
+                numbers = narrow(known[column])
+            stream.append_column(self.store, self._next_block, name, numbers)
+        if found.rests:
+            rows = [(number, self._next_block, rest) for number, rest in zip(documents, found.rests, strict=True)]
+            annotation.append_rests(self.store, rows)
 
     def _finish(self, entries: tuple[Entry, ...], rows: list[DocumentRow]) -> None:
         finished = [row for entry, row in zip(entries, rows, strict=True) if entry.last]

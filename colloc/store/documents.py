@@ -11,7 +11,7 @@ import numpy as np
 
 from colloc.errors import DataError, NotSeenError, StoreDamagedError
 from colloc.records import DocumentRow, Int64Array
-from colloc.store import facts, stream, texts
+from colloc.store import annotation, facts, stream, texts
 from colloc.store.connection import Store
 
 _BATCH = 500
@@ -106,6 +106,7 @@ def remove_documents(store: Store, numbers: Sequence[int]) -> None:
         texts.blank_texts(store, ((row.first_character, row.first_character + row.n_characters) for row in rows))
         gone = [(number,) for number in numbers]
         store.execute_many("DELETE FROM content_hashes WHERE document = ?", gone)
+        annotation.remove_rests(store, numbers)
         store.execute_many("DELETE FROM documents WHERE id = ?", gone)
 
 

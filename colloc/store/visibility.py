@@ -53,6 +53,7 @@ def drop_uncounted(store: Store) -> None:
     store.execute("DELETE FROM content_hashes WHERE document >= ?", (first,))
     store.execute("DELETE FROM blocks WHERE id >= ?", (mark.get("blocks", 0),))
     store.execute("DELETE FROM block_columns WHERE block >= ?", (mark.get("blocks", 0),))
+    store.execute("DELETE FROM annotation_rests WHERE block >= ?", (mark.get("blocks", 0),))
     store.execute("DELETE FROM text_blocks WHERE first_character >= ?", (mark.get("characters", 0),))
     store.execute("DELETE FROM sources WHERE id >= ?", (mark.get("sources", 0),))
     for key, value in mark.get("totals", {}).items():

@@ -43,6 +43,8 @@ FORMATS = {
         Format("jsonl", (".jsonl", ".ndjson"), "colloc.text.jsonlines"),
         Format("csv", (".csv",), "colloc.text.delimited"),
         Format("tsv", (".tsv",), "colloc.text.delimited"),
+        Format("conllu", (".conllu", ".conllup", ".cupt"), "colloc.text.conllu"),
+        Format("tokens", (".tokens",), "colloc.text.conllu"),
     )
 }
 

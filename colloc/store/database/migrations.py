@@ -32,6 +32,11 @@ def _decisions(database: Database) -> None:
         database.conn.execute(statement)
 
 
+def _annotations(database: Database) -> None:
+    for statement in schema.ANNOTATIONS:
+        database.conn.execute(statement)
+
+
 @dataclass(frozen=True, slots=True)
 class Step:
     """One step; readers can do without those that only add a table which they take as empty while it is missing."""
@@ -41,7 +46,11 @@ class Step:
     needed_to_read: bool = True
 
 
-STEPS = (Step("0001_initial", _initial), Step("0002_decisions", _decisions, needed_to_read=False))
+STEPS = (
+    Step("0001_initial", _initial),
+    Step("0002_decisions", _decisions, needed_to_read=False),
+    Step("0003_annotations", _annotations, needed_to_read=False),
+)
 """In order; a step, once released, is never changed."""
 
 

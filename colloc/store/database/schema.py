@@ -10,7 +10,7 @@ from __future__ import annotations
 APPLICATION_ID = 0x434F4C43
 """``COLC``: what SQLite keeps in bytes 68..71 of the file."""
 
-SCHEMA_VERSION = 2
+SCHEMA_VERSION = 3
 """Kept as ``user_version``; raised by each migration step."""
 
 PAGE_SIZE = 16384
@@ -174,6 +174,26 @@ INITIAL = (
     "INSERT INTO layers (id, name, terms, types, same) VALUES (0, 'form', 0, 0, 1)",
     f"PRAGMA application_id = {APPLICATION_ID}",
     "PRAGMA user_version = 1",
+)
+
+ANNOTATIONS = (
+    """
+    CREATE TABLE annotation_values (
+        name TEXT NOT NULL,         -- column of block_columns
+        id INTEGER NOT NULL,        -- what the column holds
+        value TEXT NOT NULL,        -- what it stands for
+        PRIMARY KEY (name, id)
+    ) WITHOUT ROWID
+    """,
+    """
+    CREATE TABLE annotation_rests (
+        document INTEGER NOT NULL,
+        block INTEGER NOT NULL,
+        data BLOB NOT NULL,         -- packed UTF-8: a JSON object
+        PRIMARY KEY (document, block)
+    )
+    """,
+    "PRAGMA user_version = 3",
 )
 
 VOCABULARY_INDEXES = (

@@ -1,0 +1,135 @@
+"""Annotation that is no number of a word: values of columns, and what of a document fits in no column.
+
+Columns of blocks (:func:`colloc.store.stream.append_column`) hold numbers;
+what they stand for is listed here, once for the whole store. The rest of a
+document (comments, multiword tokens, empty nodes, columns of free text) is kept
+by block, so that the document can be written out as it was read.
+"""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Iterator, Sequence
+from dataclasses import asdict, dataclass, field
+from typing import Any
+
+import numpy as np
+
+from colloc.errors import StoreDamagedError
+from colloc.records import UInt32Array
+from colloc.store.connection import Store
+from colloc.store.database import packing
+
+HEAD, RELATION = "head", "relation"
+"""Columns of a block: words from each word to its head (0: none), and the number of its relation."""
+STEP, WIDTH = "step", "width"
+"""Columns of a block: code points from the start of the word before to the word's own, and its length."""
+VALUED = (RELATION, "xpos", "feats")
+"""Columns whose numbers stand for values."""
+NOTHING = "_"
+"""Stands for a field that is not specified."""
+
+
+@dataclass(frozen=True, slots=True)
+class Rest:
+    """What a document, or the part of it in one block, holds besides types and columns.
+
+    Words are counted from the part's first.
+
+    Attributes
+    ----------
+    columns : tuple of str
+        Columns of the lines as they were read, in order.
+    texts : dict of list of str
+        Fields of columns that are kept as text, a field a word; columns without any are left out.
+    before, after : list of (int, str)
+        Whole lines that are not words, with the word before or after which they stand.
+    changed : list of (int, str, str)
+        Word, column and field, where types and columns of numbers do not give the field back.
+    """
+
+    columns: tuple[str, ...]
+    texts: dict[str, list[str]] = field(default_factory=dict)
+    before: list[tuple[int, str]] = field(default_factory=list)
+    after: list[tuple[int, str]] = field(default_factory=list)
+    changed: list[tuple[int, str, str]] = field(default_factory=list)
+
+
+def pack_rest(rest: Rest) -> bytes:
+    """A rest as it is stored: what worker processes do."""
+    values = asdict(rest)
+    # One string a column: half the time of a list of strings. A field holds no line feed.
+    values["texts"] = {name: "\n".join(fields) for name, fields in rest.texts.items()}
+    return packing.pack_bytes(json.dumps(values, ensure_ascii=False).encode("utf-8", "surrogatepass"))
+
+
+def append_rests(store: Store, rows: Sequence[tuple[int, int, bytes]]) -> None:
+    """Keep packed rests: document, block, bytes."""
+    store.execute_many("INSERT INTO annotation_rests VALUES (?, ?, ?)", rows)
+
+
+def read_rests(store: Store, document: int) -> Iterator[tuple[int, Rest]]:
+    """Blocks of a document with what is kept of it there, in order; nothing for plain text.
+
+    Raises
+    ------
+    StoreDamagedError
+        What is kept does not verify.
+    """
+    if not _is_there(store, "annotation_rests"):
+        return
+    sql = "SELECT block, data FROM annotation_rests WHERE document = ? ORDER BY block"
+    for block, data in store.rows(sql, (document,)):
+        what = f"{store.path}: annotation of document {document} in block {block}"
+        try:
+            values: dict[str, Any] = json.loads(packing.unpack_bytes(data, what).decode("utf-8", "surrogatepass"))
+            yield block, _as_rest(values)
+        except (ValueError, TypeError, KeyError, AttributeError) as error:
+            raise StoreDamagedError(f"{what}: cannot be read ({error})") from error
+
+
+def _as_rest(values: dict[str, Any]) -> Rest:
+    return Rest(
+        tuple(values["columns"]),
+        {name: text.split("\n") for name, text in values["texts"].items()},
+        [(word, line) for word, line in values["before"]],
+        [(word, line) for word, line in values["after"]],
+        [(word, column, text) for word, column, text in values["changed"]],
+    )
+
+
+def copy_rests(store: Store, other: Store, block: int, new_block: int, documents: dict[int, int]) -> None:
+    """Carry the rests of a block over from another store, under the documents' new numbers."""
+    if _is_there(other, "annotation_rests"):
+        rows = other.rows("SELECT document, data FROM annotation_rests WHERE block = ?", (block,))
+        append_rests(store, [(documents[number], new_block, data) for number, data in rows if number in documents])
+
+
+def remove_rests(store: Store, documents: Sequence[int]) -> None:
+    """Delete what is kept of documents."""
+    store.execute_many("DELETE FROM annotation_rests WHERE document = ?", [(number,) for number in documents])
+
+
+def number_values(store: Store, column: str, texts: Sequence[str]) -> UInt32Array:
+    """Numbers of the values of a column, looked up or added, inside the caller's transaction."""
+    known = {text: number for number, text in enumerate(values_of(store, column))}
+    fresh = [text for text in dict.fromkeys(texts) if text not in known]
+    rows = [(column, len(known) + number, text) for number, text in enumerate(fresh)]
+    store.execute_many("INSERT INTO annotation_values VALUES (?, ?, ?)", rows)
+    known.update((text, number) for _, number, text in rows)
+    return np.array([known[text] for text in texts], np.uint32)
+
+
+def values_of(store: Store, column: str) -> list[str]:
+    """What the numbers of a column stand for, in order; none where the store holds no annotated text."""
+    if not _is_there(store, "annotation_values"):
+        return []
+    rows = store.rows("SELECT id, value FROM annotation_values WHERE name = ? ORDER BY id", (column,))
+    if [number for number, _ in rows] != [*range(len(rows))]:
+        raise StoreDamagedError(f"{store.path}: values of column {column} are missing")
+    return [text for _, text in rows]
+
+
+def _is_there(store: Store, table: str) -> bool:
+    """Stores of older versions do not have these tables."""
+    return store.value("SELECT 1 FROM sqlite_master WHERE type = 'table' AND name = ?", (table,)) is not None

@@ -1,0 +1,216 @@
+"""CoNLL-U, CoNLL-U Plus and tables of words: documents of annotated sentences.
+
+CoNLL-U has ten columns; in CoNLL-U Plus a first line ``# global.columns = ID
+FORM ...`` names them; a table of words (format ``tokens``) names them in a
+header line, as tab-separated values do. Sentences end with a blank line. A
+document begins at the sentence whose comments hold ``# newdoc``; what comes
+before the first is a document too, and so is a file without any. Comments
+``# meta::KEY = VALUE`` of a document's first sentence become metadata.
+
+Only whole sentences are handed on, as text: what their lines say is read by
+:mod:`colloc.tokens.annotated`, in the processes that segment.
+Source: universaldependencies.org, "CoNLL-U Format" and "CoNLL-U Plus Format".
+"""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+from dataclasses import dataclass
+from itertools import chain, pairwise
+
+from colloc.records import Annotation, Document, MetaValue
+from colloc.text.lines import byte_length, too_long
+from colloc.text.metadata import typed
+from colloc.text.opening import Opened
+
+COLUMNS = ("id", "form", "lemma", "upos", "xpos", "feats", "head", "deprel", "deps", "misc")
+"""Those of CoNLL-U."""
+TABLE = "tokens"
+"""The format whose first line is a header."""
+MOST_COLUMNS = 64
+LONGEST_HEADER = 4096
+
+_GLOBAL_COLUMNS = re.compile(r"#[ \t]*global\.columns[ \t]*=[ \t]*(.*)")
+_NEW_DOCUMENT = re.compile(r"^#[ \t]*newdoc\b(?:[ \t]+id[ \t]*=[ \t]*(.*))?", re.MULTILINE)
+_META = re.compile(r"^#[ \t]*meta::([^\s=]+)[ \t]*=[ \t]*(.*)$", re.MULTILINE)
+
+
+@dataclass(frozen=True, slots=True)
+class _Stretch:
+    """Whole sentences of one document."""
+
+    text: str
+    line: int
+    opens: bool
+    """Whether the document begins here."""
+
+
+def read(opened: Opened, skip: int) -> Iterator[Document]:
+    """The documents of a file from record ``skip`` on.
+
+    Raises
+    ------
+    DataError
+        ``file:line: ...`` for a wrong header, or a sentence larger than ``max_record``.
+    """
+    pieces = _line_feeds(opened.text())
+    first, pieces = _first_line(opened, pieces)
+    columns, header = _columns(opened, first)
+    documents = _Documents(_by_document(_whole_sentences(opened, pieces, header)))
+    yield from documents.read(opened, columns, skip)
+
+
+class _Documents:
+    """Stretches grouped into documents, one stretch read ahead."""
+
+    def __init__(self, stretches: Iterator[_Stretch]) -> None:
+        self._stretches = stretches
+        self._next = next(stretches, None)
+
+    def read(self, opened: Opened, columns: tuple[str, ...], skip: int) -> Iterator[Document]:
+        record = 0
+        while (first := self._next) is not None:
+            pieces = self._pieces()
+            if record < skip:
+                for _ in pieces:
+                    pass
+            else:
+                yield _document(opened, columns, record, first, pieces)
+            record += 1
+
+    def _pieces(self) -> Iterator[str]:
+        opening = True
+        while (stretch := self._next) is not None and (opening or not stretch.opens):
+            opening = False
+            yield stretch.text
+            self._next = next(self._stretches, None)
+
+
+def _document(
+    opened: Opened, columns: tuple[str, ...], record: int, first: _Stretch, pieces: Iterator[str]
+) -> Document:
+    comments = first.text[: _end_of_comments(first.text)]
+    found = _NEW_DOCUMENT.search(comments)
+    metadata: dict[str, MetaValue] = dict(opened.metadata)
+    metadata.update((key, typed(value.strip())) for key, value in _META.findall(comments))
+    given = metadata.pop("id", None)
+    if found is not None:
+        name = (found[1] or "").strip() or f"{opened.identifier}:{record + 1}"
+    elif record == 0 and given is not None:
+        name = str(given)
+    else:
+        name = opened.identifier if record == 0 else f"{opened.identifier}:{record + 1}"
+    return Document(name, metadata, pieces, record, Annotation(columns, opened.name, first.line))
+
+
+def _end_of_comments(text: str) -> int:
+    """Where the first line stands that is neither a comment nor blank."""
+    end = 0
+    while end < len(text) and text[end] in "#\n":
+        stop = text.find("\n", end)
+        end = len(text) if stop < 0 else stop + 1
+    return end
+
+
+def _line_feeds(pieces: Iterator[str]) -> Iterator[str]:
+    """The text with CR LF as LF."""
+    held = ""
+    for piece in pieces:
+        text = held + piece
+        held = "\r" if text.endswith("\r") else ""
+        yield text.removesuffix("\r").replace("\r\n", "\n")
+    if held:
+        yield held
+
+
+def _first_line(opened: Opened, pieces: Iterator[str]) -> tuple[str, Iterator[str]]:
+    """The beginning of the first line, and the whole text again."""
+    taken: list[str] = []
+    size = 0
+    for piece in pieces:
+        taken.append(piece)
+        size += len(piece)
+        if "\n" in piece or size > LONGEST_HEADER:
+            break
+    text = "".join(taken)
+    return text.partition("\n")[0], chain([text], pieces)
+
+
+def _columns(opened: Opened, first: str) -> tuple[tuple[str, ...], int]:
+    """Names of the columns, and how many lines at the beginning say so."""
+    if opened.format == TABLE:
+        given = first.split("\t", MOST_COLUMNS)
+    elif match := _GLOBAL_COLUMNS.fullmatch(first.rstrip()):
+        given = match[1].split()
+    else:
+        return COLUMNS, 0
+    names = tuple(name.strip().lower() for name in given)
+    if len(names) > MOST_COLUMNS or len(first) > LONGEST_HEADER:
+        raise opened.error(f"more than {MOST_COLUMNS} columns, or their names too long: leave some out", 1)
+    for name in names:
+        if not name:
+            raise opened.error("a column has no name in the first line; name it", 1)
+        if names.count(name) > 1:
+            raise opened.error(f"column {name!r} occurs {names.count(name)} times in the first line; rename one", 1)
+    if "form" not in names:
+        raise opened.error(
+            f"no column 'form' (columns: {', '.join(names[:10])}): the first line names the columns, "
+            "such as form, lemma, upos",
+            1,
+        )
+    return names, 1
+
+
+def _whole_sentences(opened: Opened, pieces: Iterator[str], header: int) -> Iterator[tuple[str, int]]:
+    """The text in stretches that end with a sentence, each with the number of its first line."""
+    held: list[str] = []
+    size = 0
+    line = 1
+    for piece in pieces:
+        split = "\n\n" in piece or (piece.startswith("\n") and bool(held) and held[-1].endswith("\n"))
+        held.append(piece)
+        size += byte_length(piece)
+        if split:
+            text = "".join(held)
+            end = text.rindex("\n\n") + 2
+            held = [text[end:]] if end < len(text) else []
+            size = byte_length("".join(held))
+            yield from _without_header(text[:end], line, header)
+            line += text.count("\n", 0, end)
+        if size > opened.settings.max_record:
+            raise too_long(opened, line)
+    if held:
+        text = "".join(held)
+        yield from _without_header(text.rstrip("\n") + "\n\n", line, header)
+
+
+def _without_header(text: str, line: int, header: int) -> Iterator[tuple[str, int]]:
+    if header and line == 1:
+        text, line = text.partition("\n")[2], 2
+    if text:
+        yield text, line
+
+
+def _by_document(stretches: Iterator[tuple[str, int]]) -> Iterator[_Stretch]:
+    """The same stretches, cut where documents begin."""
+    opens = True
+    for text, line in stretches:
+        begins = _document_starts(text)
+        if opens and begins and _end_of_comments(text) >= begins[0]:
+            # comments above the first document belong to it
+            del begins[0]
+        edges = [0, *begins, len(text)]
+        for begin, stop in pairwise(edges):
+            if begin < stop:
+                yield _Stretch(text[begin:stop], line, opens or begin in begins)
+                line += text.count("\n", begin, stop)
+                opens = False
+
+
+def _document_starts(text: str) -> list[int]:
+    """Where the sentences begin whose comments say that a document does."""
+    if "newdoc" not in text:
+        return []
+    found = (text.rfind("\n\n", 0, match.start()) for match in _NEW_DOCUMENT.finditer(text))
+    return sorted({0 if end < 0 else end + 2 for end in found})

@@ -1,0 +1,1 @@
+"""Annotated text: lines of columns into arrays; :mod:`colloc.tokens.annotated.reading` is the front."""
