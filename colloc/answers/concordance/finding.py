@@ -81,8 +81,8 @@ def find(store: Store, search: Search, *, left: int, right: int, inside: Inside,
     places, partners, distances = [], [], []
     for first, span in _spans(store, search, selection, inside, back, ahead):
         found, partner, distance = _in_span(span, search.lengths, left, right)
-        places.append(_stream_places(selection, found + first))
-        partners.append(_stream_places(selection, partner + first) if len(search.lengths) > 1 else partner)
+        places.append(stream_places(selection, found + first))
+        partners.append(stream_places(selection, partner + first) if len(search.lengths) > 1 else partner)
         distances.append(distance)
     empty = np.empty(0, np.int64)
     at = np.concatenate([*places, empty])
@@ -198,7 +198,8 @@ def _bounds(span: TokenSpan, offsets: Int64Array) -> tuple[Int64Array, Int64Arra
     return edges[unit], edges[unit + 1]
 
 
-def _stream_places(selection: Selection, places: Int64Array) -> Int64Array:
+def stream_places(selection: Selection, places: Int64Array) -> Int64Array:
+    """Tokens of the stream that stand at some places of a selection."""
     stretch = np.searchsorted(selection.places, places, side="right") - 1
     if not len(selection.begins):
         return places

@@ -20,7 +20,8 @@ from colloc.store.stream import Block
 from colloc.store.texts import read_text
 from colloc.tokens.segmenter import Segmenter
 
-_BLOCKS_HELD = 2
+_BYTES_HELD = 96 * 2**20
+"""Blocks of the stream that are kept at hand: those of some twenty million tokens."""
 _STRETCHES_HELD = 32
 _OPENERS = frozenset(("Ps", "Pi"))
 
@@ -71,13 +72,14 @@ class _Stretch:
 
 
 class StreamReader:
-    """Reads tokens of one store by place; a few blocks are held, so places should come in order."""
+    """Reads tokens of one store by place; blocks are held up to a bound, so places should come in order."""
 
     def __init__(self, store: Store) -> None:
         self._store = store
         self._heads = stream.block_heads(store)
         self._firsts = np.array([head.first_token for head in self._heads], np.int64)
         self._blocks: dict[int, Block] = {}
+        self._held = 0
         self._documents: dict[int, DocumentRow] = {}
         self._forms: dict[int, str] = {}
         self._form_terms = vocabulary.layer_map(store, "form")
@@ -151,9 +153,11 @@ class StreamReader:
 
     def _block(self, number: int) -> Block:
         if number not in self._blocks:
-            if len(self._blocks) >= _BLOCKS_HELD:
-                self._blocks.pop(next(iter(self._blocks)))
-            self._blocks[number] = stream.read_block(self._store, number)
+            block = stream.read_block(self._store, number)
+            self._held += _size(block)
+            while self._blocks and self._held > _BYTES_HELD:
+                self._held -= _size(self._blocks.pop(next(iter(self._blocks))))
+            self._blocks[number] = block
         return self._blocks[number]
 
 
@@ -269,6 +273,10 @@ class PassageReader(StreamReader):
                 break
             number += 1
         return end, row.first_character + row.n_characters
+
+
+def _size(block: Block) -> int:
+    return block.tokens.nbytes + block.sentences.nbytes + block.paragraphs.nbytes
 
 
 def _nfc(text: str) -> str:

@@ -73,7 +73,7 @@ def explain(
     places = similar.places(names, table)
     texts = vocabulary.term_texts(store, question.layer, [one, two])
     spread, by_document = _spread(question, seen)
-    lines, forms = examples_and_forms(question, one, two, examples, seed)
+    lines, forms = examples_and_forms(seen, one, two, examples, seed)
     parts: dict[str, Any] = {
         "first": texts[0],
         "second": texts[1],
@@ -83,8 +83,8 @@ def explain(
         "cases": {
             "cases": int(seen.cases.sum()),
             "with_second": int(seen.with_second.sum()),
-            "left": -int(seen.offsets[0]) if seen.offsets[0] < 0 else 0,
-            "right": int(seen.offsets[-1]) if seen.offsets[-1] > 0 else 0,
+            "left": seen.left,
+            "right": seen.right,
         },
         "information": _information(texts, table),
         "mutual_information": _mutual(question, table, similar.information),

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.answers.concordance.finding import Hits, stream_places
 from colloc.answers.questions import Question
 from colloc.answers.tables import PairTable, Sums, TableMaker
 from colloc.counts.placing import DocumentPlaces, document_places
@@ -39,6 +40,10 @@ class PairOccurrences:
         Sum of the table.
     cases, with_second : int64 arrays, shape (n,)
         Tokens of the first word, and those with the second in reach.
+    left, right : int
+        The reach.
+    hits : Hits
+        Each of those tokens with the nearest second word, as ``lines`` finds them.
     offsets : int64 array, shape (m,)
         Places of the second word relative to the first, 0 left out.
     profile : int64 array, shape (m,)
@@ -56,6 +61,9 @@ class PairOccurrences:
     total: Int64Array
     cases: Int64Array
     with_second: Int64Array
+    left: int
+    right: int
+    hits: Hits
     offsets: Int64Array
     profile: Int64Array
     same: bool
@@ -113,6 +121,9 @@ def occurrences_of(question: Question, first: int, second: int) -> PairOccurrenc
         counter.total,
         counter.cases,
         counter.with_second,
+        counter.reach_left,
+        counter.right,
+        counter.hits(selection, places),
         counter.offsets,
         counter.profile,
         first == second,
@@ -129,8 +140,10 @@ class _Counter:
         self.second_label = FIRST if same else SECOND
         reach = {"window": (spec.right, spec.right), "unit": (UNIT_REACH, UNIT_REACH)}
         self.left, self.right = reach.get(spec.kind, (spec.left, spec.right))
+        self.reach_left = 0 if ordered and spec.kind == "window" else self.left
         steps = np.arange(-self.left, self.right + 1)
         self.offsets = steps[steps != 0]
+        self._near: list[tuple[Int64Array, Int64Array]] = [(np.empty(0, np.int64), np.empty(0, np.int64))]
         self.profile = np.zeros(len(self.offsets), np.int64)
         self.joint, self.total, self.cases, self.with_second = (np.zeros(n_documents, np.int64) for _ in range(4))
         self.first, self.second, self.words = (np.zeros((n_documents, 3), np.int64) for _ in range(3))
@@ -142,7 +155,7 @@ class _Counter:
             return
         tokens = _Tokens.of(span, begin, places)
         here = {label: tokens.core_places(label) for label in {FIRST, self.second_label}}
-        joint = self._profile(tokens, here[FIRST])
+        joint = self._profile(tokens, here[FIRST], begin)
         if self._kind == "unit":
             return
         tokens.add(self.words[:, OTHER], tokens.present[tokens.core])
@@ -172,21 +185,38 @@ class _Counter:
             self.joint[:] = self.with_second
             self.total[:] = self.words.sum(axis=1)
 
-    def _profile(self, tokens: _Tokens, first: Int64Array) -> Int64Array:
+    def hits(self, selection: Selection, places: DocumentPlaces) -> Hits:
+        """The cases with the second word in reach."""
+        first, distance = (np.concatenate(arrays) for arrays in zip(*self._near, strict=True))
+        return Hits(
+            stream_places(selection, first),
+            places.numbers[places.of(first)],
+            1,
+            stream_places(selection, first + distance),
+            distance,
+            1,
+        )
+
+    def _profile(self, tokens: _Tokens, first: Int64Array, begin: int) -> Int64Array:
         """Count pairs by offset, and cases; gives the joint count of each case."""
         unit_begin, unit_end = tokens.bounds(first)
-        near = np.zeros(len(first), np.int64)
+        nearest = np.zeros(len(first), np.int64)
         counted = np.zeros(len(first), np.int64)
-        for row, offset in enumerate(self.offsets.tolist()):
+        # From far to near, before to after: what comes last is the nearest, the one after where both are as near.
+        for row in np.lexsort((self.offsets, -np.abs(self.offsets))).tolist():
+            offset = int(self.offsets[row])
             other = first + offset
             met = (other >= unit_begin) & (other < unit_end)
             met[met] = tokens.labels[other[met]] == self.second_label
             self.profile[row] += np.count_nonzero(met)
-            near += met
+            if offset >= -self.reach_left:
+                nearest[met] = offset
             if self._counts(offset):
                 counted += met
+        near = nearest != 0
         tokens.add_at(self.cases, first, 1)
-        tokens.add_at(self.with_second, first, near > 0)
+        tokens.add_at(self.with_second, first, near)
+        self._near.append((first[near] + begin, nearest[near]))
         return counted
 
     def _counts(self, offset: int) -> bool:

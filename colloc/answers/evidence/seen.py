@@ -13,7 +13,7 @@ from colloc.answers.concordance.finding import Hits
 from colloc.answers.concordance.lines import as_columns, read_lines
 from colloc.answers.concordance.matching import Search
 from colloc.answers.concordance.passages import PassageReader, StreamReader
-from colloc.answers.evidence.occurring import UNIT_REACH
+from colloc.answers.evidence.occurring import PairOccurrences
 from colloc.answers.questions import Question
 from colloc.records import NO_TERM, UInt32Array
 from colloc.store import vocabulary
@@ -23,18 +23,15 @@ MOST_FORMS = 12
 
 
 def examples_and_forms(
-    question: Question, first: int, second: int, examples: int, seed: int
+    seen: PairOccurrences, first: int, second: int, examples: int, seed: int
 ) -> tuple[Columns, Columns]:
     """The best lines with the pair (none where no text is kept), and the forms and order in which it is met.
 
     Forms are counted over occurrences of the first word, each with the nearest second word. Where the store has
     lemmas, all forms of the two lemmas count.
     """
+    question, hits = seen.question, seen.hits
     store, spec = question.store, question.spec
-    left, right = _reach(question)
-    of_type = vocabulary.layer_map(store, question.layer)
-    search = _search(of_type == first, of_type == second)
-    hits = finding.find(store, search, left=left, right=right, inside=spec.inside, where=spec.where)
     if not has_text(store):
         reader = StreamReader(store)
         shown = []
@@ -47,19 +44,11 @@ def examples_and_forms(
         shown = read_lines(passages, hits.take(chosen), 0, True)
     lines = as_columns(store, shown, {"found": len(hits), "best": True}, paired=True)
     if "lemma" in vocabulary.layer_names(store) and question.layer not in ("lemma", "lemma_fold"):
+        of_type = vocabulary.layer_map(store, question.layer)
         one, two = (_same_lemma(question, of_type == term) for term in (first, second))
         search = _search(one, two)
-        hits = finding.find(store, search, left=left, right=right, inside=spec.inside, where=spec.where)
+        hits = finding.find(store, search, left=seen.left, right=seen.right, inside=spec.inside, where=spec.where)
     return lines, _forms(reader, hits)
-
-
-def _reach(question: Question) -> tuple[int, int]:
-    spec = question.spec
-    if spec.kind == "unit":
-        return UNIT_REACH, UNIT_REACH
-    if spec.kind == "window":
-        return (0 if question.reader.ordered else spec.right), spec.right
-    return spec.left, spec.right
 
 
 def _search(first: np.ndarray, second: np.ndarray) -> Search:
