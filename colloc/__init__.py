@@ -32,6 +32,7 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.evidence import explain as explain
     from colloc.verbs.evidence import lines as lines
     from colloc.verbs.evidence import picture as picture
+    from colloc.verbs.expressions import expressions as expressions
     from colloc.verbs.keeping import check as check
     from colloc.verbs.keeping import documents as documents
     from colloc.verbs.keeping import documents_by as documents_by
@@ -65,6 +66,7 @@ _HOMES = {
     "documents_by": "colloc.verbs.keeping",
     "errors": "colloc",
     "explain": "colloc.verbs.evidence",
+    "expressions": "colloc.verbs.expressions",
     "floors": "colloc.verbs.asking",
     "info": "colloc.verbs.keeping",
     "lines": "colloc.verbs.evidence",

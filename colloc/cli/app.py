@@ -22,7 +22,20 @@ from typer.main import get_command
 from colloc.cli.output import ReaderGone, remark
 from colloc.errors import CollocError, InputOutputError, LockedError, StoreDamagedError
 
-COMMAND_MODULES = ("demonstrating", "building", "keeping", "asking", "shuffling", "showing", "contrasting", "measuring", "spaces")
+COMMAND_MODULES = (
+    "demonstrating",
+    "building",
+    "keeping",
+    "asking",
+    "expressions",
+    "shuffling",
+    "showing",
+    "contrasting",
+    "measuring",
+    "spaces",
+    "scoring",
+    "judging",
+)
 """Modules of ``colloc.cli.commands``, in the order of the help page."""
 
 CONTEXT = {"help_option_names": ["-h", "--help"], "max_content_width": 110}

@@ -26,7 +26,7 @@ from colloc.counts.processes import Crew, Task, crew
 from colloc.counts.runs import Column, RunFile, save_runs, write_column
 from colloc.counts.selection import Selection, documents_selection
 from colloc.counts.sequences.levels import Level, Spread
-from colloc.counts.sequences.places import NONE, reserve
+from colloc.counts.sequences.places import reserve
 from colloc.counts.sequences.sharing import CAPITAL, MOST_WORDS, NO_MARK, SMALL, Facts
 from colloc.counts.words import slice_word_counts
 from colloc.errors import LockedError, UsageError
@@ -96,7 +96,10 @@ class Grower:
         shared: Facts = {
             "layer": layer,
             "inside": inside,
-            "selection": {"begins": self._keep("begins", selection.begins), "stops": self._keep("stops", selection.stops)},
+            "selection": {
+                "begins": self._keep("begins", selection.begins),
+                "stops": self._keep("stops", selection.stops),
+            },
             "frequent": self._keep("frequent", self.words.tokens >= self._least),
             "capitals": self._keep("capitals", capital_marks(store)),
             "into": places,
@@ -151,7 +154,13 @@ class Grower:
         tasks: list[Task] = [
             (
                 "spread_sequences",
-                {"first": first, "last": last, "sizes": self._sizes, "name": f"{name}-spread-{i}", "folder": str(self._folder)},
+                {
+                    "first": first,
+                    "last": last,
+                    "sizes": self._sizes,
+                    "name": f"{name}-spread-{i}",
+                    "folder": str(self._folder),
+                },
             )
             for i, (first, last) in enumerate(pairwise(edges))
         ]
@@ -162,9 +171,9 @@ class Grower:
         )
         dp = np.concatenate([np.empty(0), *(_taken(part["distance"]) for part in parts)]) / 2
         with np.errstate(invalid="ignore", divide="ignore"):
-            share = np.where(marked > 0, capitals / marked, np.nan)
+            written = np.where(marked > 0, capitals / marked, np.nan)
         evenest = 1 - self._least_share
-        return Spread(documents, largest, dp, dp / evenest if evenest > 0 else np.full(n, np.nan), share)
+        return Spread(documents, largest, dp, dp / evenest if evenest > 0 else np.full(n, np.nan), written)
 
     def _shares(self, task: str, arguments: Facts, name: str | None = None) -> list[Facts]:
         """Do a task for every share of the selection."""

@@ -193,9 +193,7 @@ def spread_sequences(first: int, last: int, runs: str, sizes: Facts, folder: str
     tokens: Int64Array = Column(**sizes).read()
     share = (tokens / max(int(tokens.sum()), 1))[document]
     # documents without the sequence add their share: begin with 1 and correct where it occurs
-    distance = 1.0 + np.bincount(
-        number, weights=np.abs(run.counts / frequency[number] - share) - share, minlength=n
-    )
+    distance = 1.0 + np.bincount(number, weights=np.abs(run.counts / frequency[number] - share) - share, minlength=n)
     place = Path(folder)
     columns = {"documents": documents, "largest": largest, "distance": np.maximum(distance, 0.0)}
     return {

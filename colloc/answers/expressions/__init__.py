@@ -1,0 +1,1 @@
+"""Expressions: sequences of words that hold together, complete and not too long."""
