@@ -20,11 +20,11 @@ from colloc.errors import NotSeenError
 from colloc.measures.catalogue import MEASURES
 from colloc.measures.contingency import expected
 from colloc.measures.contrast import as_table, difference, keyness_g2, keyness_g2_two_cells, log_ratio_interval
-from colloc.measures.documents import document_test
 from colloc.measures.exact import association_log_p
 from colloc.measures.intervals import normal_quantile
 from colloc.measures.odds import log_odds, log_odds_se
-from colloc.records import FloatArray
+from colloc.measures.subcorpora.documents import document_test
+from colloc.records import FloatArray, UInt32Array
 from colloc.settings import DEFAULT_MEMORY
 from colloc.store import vocabulary
 from colloc.store.connection import Store
@@ -71,7 +71,7 @@ def contrast_pair(
     options = options or PairOptions()
     sides = resolve_sides(store, this, that, options.where)
     questions = ask_both(store, sides, options, jobs=jobs, memory=memory, progress=progress)
-    terms = [np.array([number], np.uint32) for number in _numbers(store, questions[0].layer, (first, second))]
+    terms = term_numbers_of(store, questions[0].layer, (first, second))
     tables = tuple(question.reader.given(*terms) for question in questions)
     joint = tuple(table.joint.astype(np.int64) for table in tables)
     if not joint[0][0] + joint[1][0]:
@@ -116,14 +116,21 @@ def contrast_pair(
     )
 
 
-def _numbers(store: Store, layer: str, words: tuple[str, str]) -> list[int]:
+def term_numbers_of(store: Store, layer: str, words: Sequence[str]) -> list[UInt32Array]:
+    """Each word as an array of its one term number.
+
+    Raises
+    ------
+    NotSeenError
+        A word never occurs.
+    """
     numbers = vocabulary.term_numbers(store, layer, list(words))
     for word, number in zip(words, numbers, strict=True):
         if number < 0:
             raise NotSeenError(
                 f"{store.path}: {word!r} never occurs in layer {layer!r}; `colloc words` lists what does"
             )
-    return [int(number) for number in numbers]
+    return [np.array([number], np.uint32) for number in numbers]
 
 
 def _counts(

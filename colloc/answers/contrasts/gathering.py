@@ -1,4 +1,4 @@
-"""How often words, or pairs, occur in each document of two sides: what the test over documents is made from."""
+"""How often words, or pairs, occur in each document of two or more sides: what the test over documents is made from."""
 
 from __future__ import annotations
 
@@ -12,7 +12,7 @@ from colloc.answers.questions import Question
 from colloc.counts.candidates import CandidatePass
 from colloc.counts.selection import slice_selection
 from colloc.counts.words import document_words
-from colloc.measures.documents import DocumentRates
+from colloc.measures.subcorpora.documents import DocumentRates
 from colloc.records import Int64Array, UInt32Array
 from colloc.store.connection import Store
 
@@ -22,16 +22,16 @@ BYTES_AN_ENTRY = 120
 
 @dataclass(frozen=True, slots=True)
 class DocumentCounts:
-    """Counts of items in the documents of two sides.
+    """Counts of items in the documents of two or more sides.
 
     Attributes
     ----------
     items, documents, counts : int64 arrays, shape (m,)
-        ``documents`` are numbered from 0 over both sides, the first side first; empty ones are left out.
+        ``documents`` are numbered from 0 over all sides, the first side first; empty ones are left out.
     sizes : int64 array, shape (n_documents,)
         Tokens.
-    n_this : int
-        Documents of the first side.
+    side : int64 array, shape (n_documents,)
+        0 for the documents of the first side, 1 for those of the second, and so on; ascending.
     n_items : int
     """
 
@@ -39,16 +39,14 @@ class DocumentCounts:
     documents: Int64Array
     counts: Int64Array
     sizes: Int64Array
-    n_this: int
+    side: Int64Array
     n_items: int
 
     @property
     def rates(self) -> DocumentRates:
-        """Relative frequencies."""
-        in_this = np.arange(len(self.sizes)) < self.n_this
-        return DocumentRates(
-            self.items, self.documents, self.counts / self.sizes[self.documents], self.n_items, in_this
-        )
+        """Relative frequencies; the first group are the documents of the first side."""
+        rates = self.counts / self.sizes[self.documents]
+        return DocumentRates(self.items, self.documents, rates, self.n_items, self.side == 0)
 
     def documents_on(self, this: bool) -> Int64Array:
         """How many documents of one side hold each item."""
@@ -62,7 +60,8 @@ class DocumentCounts:
         return largest
 
     def _on(self, this: bool) -> NDArray[np.bool_]:
-        return np.equal(self.documents < self.n_this, this)
+        chosen: NDArray[np.bool_] = (self.side[self.documents] == 0) == this
+        return chosen
 
 
 def word_counts_by_document(
@@ -75,7 +74,7 @@ def word_counts_by_document(
     terms : int64 array, shape (n,)
         Ascending.
     held : int64 array, shape (n,)
-        Documents of both sides that hold the word.
+        Documents of all sides that hold the word.
 
     Yields
     ------
@@ -83,20 +82,49 @@ def word_counts_by_document(
         Which of the words, and their counts.
     """
     for lot in _lots(held, memory // BYTES_AN_ENTRY):
-        parts: list[tuple[Int64Array, Int64Array, Int64Array]] = []
-        sizes: list[Int64Array] = []
-        n_this = seen = 0
-        for place, where in enumerate(sides):
+        gathered = _Gathered()
+        for where in sides:
             for batch in document_words(store, layer, slice_selection(store, where)):
                 item = np.searchsorted(terms[lot], batch.terms)
                 item[item == lot.stop - lot.start] = 0
                 wanted = terms[lot][item] == batch.terms
-                parts.append((item[wanted], batch.documents[wanted] + seen, batch.counts[wanted]))
-                sizes.append(batch.sizes)
-                seen += len(batch.sizes)
-            n_this = seen if place == 0 else n_this
-        items, documents, counts = (np.concatenate(column) for column in zip(*parts, strict=True))
-        yield lot, DocumentCounts(items, documents, counts, np.concatenate(sizes), n_this, lot.stop - lot.start)
+                gathered.add(item[wanted], batch.documents[wanted], batch.counts[wanted])
+                gathered.pass_documents(batch.sizes)
+            gathered.next_side()
+        yield lot, gathered.finish(lot.stop - lot.start)
+
+
+class _Gathered:
+    """Counts on their way, side after side, some documents at a time."""
+
+    def __init__(self) -> None:
+        self._parts: list[tuple[Int64Array, Int64Array, Int64Array]] = []
+        self._sizes: list[Int64Array] = []
+        self._sides: list[Int64Array] = []
+        self._side = self._seen = 0
+
+    def add(self, items: Int64Array, documents: Int64Array, counts: Int64Array) -> None:
+        """Take counts in documents that are numbered from the last one passed on."""
+        self._parts.append((items, documents + self._seen, counts))
+
+    def pass_documents(self, sizes: Int64Array) -> None:
+        """Go on behind documents of these sizes."""
+        self._sizes.append(sizes)
+        self._sides.append(np.full(len(sizes), self._side))
+        self._seen += len(sizes)
+
+    def next_side(self) -> None:
+        """Go on with the documents of the next side."""
+        self._side += 1
+
+    def finish(self, n_items: int) -> DocumentCounts:
+        """Everything that was added."""
+        empty = np.empty(0, np.int64)
+        items, documents, counts = (
+            np.concatenate([empty, *(part[column] for part in self._parts)]) for column in range(3)
+        )
+        sizes, side = np.concatenate([empty, *self._sizes]), np.concatenate([empty, *self._sides])
+        return DocumentCounts(items, documents, counts, sizes, side, n_items)
 
 
 def _lots(held: Int64Array, most: int) -> Iterator[slice]:
@@ -118,19 +146,14 @@ def pair_counts_by_document(questions: Sequence[Question], first: UInt32Array, s
     questions : two Questions
         The same question about either side.
     """
-    parts: list[tuple[Int64Array, Int64Array, Int64Array]] = []
-    sizes: list[Int64Array] = []
-    n_this = seen = 0
-    for place, question in enumerate(questions):
+    gathered = _Gathered()
+    for question in questions:
         found = CandidatePass(question.store, question.spec, first, second, directed=question.reader.ordered)
         filled = found.documents.lengths > 0
-        number = np.cumsum(filled) - 1 + seen
+        number = np.cumsum(filled) - 1
         for part in found:
             index = np.searchsorted(found.documents.numbers, part.document)
-            parts.append((part.pair, number[index], part.count))
-        sizes.append(found.documents.lengths[filled])
-        seen += int(filled.sum())
-        n_this = seen if place == 0 else n_this
-    empty = np.empty(0, np.int64)
-    items, documents, counts = (np.concatenate([empty, *(part[column] for part in parts)]) for column in range(3))
-    return DocumentCounts(items, documents, counts, np.concatenate(sizes), n_this, len(first))
+            gathered.add(part.pair, number[index], part.count)
+        gathered.pass_documents(found.documents.lengths[filled])
+        gathered.next_side()
+    return gathered.finish(len(first))

@@ -20,11 +20,11 @@ from colloc.answers.tables import PairTable
 from colloc.errors import NotSeenError, UsageError
 from colloc.measures.contrast import Difference, as_table, difference, keyness_g2, log_ratio_interval
 from colloc.measures.discoveries import log_q_values
-from colloc.measures.documents import document_test, permuted_p
 from colloc.measures.exact import association_log_p
 from colloc.measures.intervals import Interval, jackknife_difference
 from colloc.measures.odds import log_odds, log_odds_se
 from colloc.measures.pmi import pmi
+from colloc.measures.subcorpora.documents import document_test, permuted_p
 from colloc.records import FloatArray, Int64Array
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store import vocabulary
@@ -154,11 +154,16 @@ def ask_both(
     this, that = (
         ask(store, replace(options, where=[side]), jobs=jobs, memory=memory, progress=progress) for side in sides.both
     )
-    if this.convention.margins == "tokens":
+    require_cells(this)
+    return this, that
+
+
+def require_cells(question: Question) -> None:
+    """Raise UsageError where the margins are those of tokens: their tables have no cells to compare."""
+    if question.convention.margins == "tokens":
         raise UsageError(
             "a contrast of pairs compares cells, which margins tokens does not have: use margins pairs or positions"
         )
-    return this, that
 
 
 def _tested(questions: tuple[Question, Question], min_count: int, min_word_count: int) -> PairsSet:

@@ -16,8 +16,8 @@ from colloc.counts.words import slice_word_counts
 from colloc.errors import NotSeenError, UsageError
 from colloc.measures.contrast import as_table, keyness_g2, keyness_g2_two_cells, log_ratio_interval
 from colloc.measures.discoveries import log_q_values
-from colloc.measures.documents import document_test, permuted_p
 from colloc.measures.exact import association_log_p
+from colloc.measures.subcorpora.documents import document_test, permuted_p
 from colloc.records import FloatArray
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store import vocabulary
@@ -64,8 +64,7 @@ def contrast_words(
         documents_this, documents_that, g2, g2_two_cells, q, document_z, document_q (or document_p), says. Words of
         this come first (log_ratio above 0), then words of that.
     """
-    if sort not in get_args(ContrastOrder):
-        raise UsageError(f"sort must be one of {', '.join(get_args(ContrastOrder))}, not {sort!r}")
+    check_order(sort)
     sides = resolve_sides(store, this, that, where)
     layer = layer or built_spec(store).layer
     frequencies = [slice_word_counts(store, layer, side) for side in sides.both]
@@ -143,6 +142,12 @@ def contrast_words(
         **({"permutations": permutations, "seed": seed} if permutations else {}),
     }
     return Columns(columns, settings)
+
+
+def check_order(sort: str) -> None:
+    """Raise UsageError for an order that contrasts of words do not have."""
+    if sort not in get_args(ContrastOrder):
+        raise UsageError(f"a contrast of words is sorted by one of {', '.join(get_args(ContrastOrder))}, not {sort!r}")
 
 
 def ranking_score(

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import Annotated, Literal
 
 import typer
 
 from colloc.cli import options as opt
+from colloc.cli.frequency_lists import read_counts
 from colloc.cli.output import Target, deliver, print_lines
 from colloc.cli.progress import ProgressLine
 from colloc.settings import DEFAULT_MIN_COUNT
@@ -31,11 +33,14 @@ NARROW = (
     "says",
 )
 """Columns of a table for the eye; files and ``--wide`` have all."""
+STRENGTH = ("first", "second", "joint_this", "joint_that", "pmi_this", "pmi_that")
+STRENGTH_DIFFERENCE = ("pmi_difference", "pmi_low", "pmi_high", "log_odds_q", "says")
+"""The same where association ranks."""
 
 
 def contrast(
     store: opt.StoreArgument,
-    first: Annotated[str | None, typer.Argument(metavar="X", help="With Y: this one pair, side by side.")] = None,
+    first: Annotated[str | None, typer.Argument(metavar="X", help="With Y, and --this or --by: this one pair.")] = None,
     second: Annotated[str | None, typer.Argument(metavar="Y")] = None,
     this: Annotated[
         list[str] | None, typer.Option("--this", metavar="SLICE", help="One side: key=value. Repeats join.")
@@ -44,7 +49,29 @@ def contrast(
         list[str] | None,
         typer.Option("--that", metavar="SLICE", help="The other side; all other documents when not given."),
     ] = None,
+    by: Annotated[
+        str | None, typer.Option("--by", metavar="KEY", help="Compare the documents of all values of this key.")
+    ] = None,
+    word: Annotated[
+        list[str] | None,
+        typer.Option("--word", metavar="WORD", help="Compare the company of two words: give it twice."),
+    ] = None,
+    listed: Annotated[
+        Path | None,
+        typer.Option("--list", metavar="FILE", help="Compare with a frequency list: columns word and count."),
+    ] = None,
+    list_total: Annotated[
+        int | None,
+        typer.Option("--list-total", metavar="N", min=1, help="Words that the whole list was counted in."),
+    ] = None,
+    reference: Annotated[
+        str | None,
+        typer.Option("--reference", metavar="LANG", help="Compare with general word frequencies of a language: en."),
+    ] = None,
     pairs: Annotated[bool, typer.Option("--pairs", help="Compare pairs of words instead of words.")] = False,
+    side: Annotated[
+        Literal["both", "left", "right"], typer.Option("--side", help="With --word: on which side of it.")
+    ] = "both",
     pattern: Annotated[
         str | None, typer.Option("--pattern", metavar="PATTERN", help="Only words like this; * is any characters.")
     ] = None,
@@ -64,13 +91,13 @@ def contrast(
     min_word_count: opt.MinWordCountOption = 1,
     min_docs: opt.MinDocsOption = 1,
     sort: Annotated[
-        Literal["documents", "bound", "log_ratio", "g2", "association"],
+        Literal["documents", "bound", "log_ratio", "g2", "association", "bits", "t", "log_odds"] | None,
         typer.Option(
             "--sort",
-            help="documents: by the test over documents; bound: by the end of the interval nearer to 0; association "
-            "(pairs): by strength, not frequency.",
+            help="documents: the test over documents; bound: the end of the interval nearer to 0; association: of "
+            "--pairs, strength instead of frequency; bits: of --by; t, log_odds: of --word.",
         ),
-    ] = "documents",
+    ] = None,
     permutations: Annotated[
         int,
         typer.Option(
@@ -87,10 +114,11 @@ def contrast(
     settings_beside: opt.BesideOption = False,
     quiet: opt.QuietOption = False,
 ) -> None:
-    """Compare two sub-corpora: words or pairs, effect size first, with a test that one document cannot carry.
+    """Compare sub-corpora, near-synonyms, or the store with a frequency list; effect size first.
 
-    Rows of this come first, then rows of that. `q` takes every occurrence for independent
-    evidence (G2); `document_q` counts documents, and `says` tells what the two amount to.
+    With --this, rows of this come first, then rows of that. `q` takes every occurrence for
+    independent evidence (G2); `document_q` is of a test over documents, which no single document
+    can carry, and `says` tells what the two amount to.
     """
     from colloc.verbs import contrasting
 
@@ -102,7 +130,14 @@ def contrast(
             second,
             this=this or (),
             that=that or (),
+            by=by,
+            words=word or (),
+            listed=read_counts(listed) if listed is not None else None,
+            listed_total=list_total,
+            listed_name=str(listed),
+            reference=reference,
             pairs=pairs,
+            side=side,
             where=where or (),
             pattern=pattern,
             layer=layer,
@@ -126,8 +161,9 @@ def contrast(
             progress=progress,
         )
     verdict = answer.settings.get("says")
-    if format == "table" and not wide and first is None:
-        answer = answer.select(name for name in NARROW if name in answer)
+    if format == "table" and not wide and this and first is None:
+        shown = (*STRENGTH, *STRENGTH_DIFFERENCE) if sort == "association" else NARROW
+        answer = answer.select(name for name in shown if name in answer)
     deliver(answer, target, "contrast")
     if verdict and format == "table" and not target.to_file:
         print_lines(["", str(verdict)])

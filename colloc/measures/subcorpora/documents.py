@@ -55,6 +55,37 @@ class DocumentRates:
 
 
 @dataclass(frozen=True, slots=True)
+class GroupsTest:
+    """Kruskal-Wallis over any number of groups, arrays of shape (n_items,): H, and ln of its p-value."""
+
+    h: FloatArray
+    log_p: FloatArray
+
+
+def groups_test(rates: DocumentRates, group: Int64Array) -> GroupsTest:
+    """Whether the relative frequencies of items rank alike in all groups of documents (Kruskal & Wallis 1952).
+
+    H with the correction for ties, chi-square distributed with one degree of freedom less than there are groups.
+
+    Parameters
+    ----------
+    rates : DocumentRates
+        ``in_this`` is not looked at.
+    group : int64 array, shape (n_documents,)
+        0 .. n_groups - 1, each with a document.
+    """
+    from scipy.special import gammaincc
+
+    n_groups = int(group.max()) + 1
+    members = group[:, np.newaxis] == np.arange(n_groups)
+    scores = _Scores(rates)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        h = scores.between(members)
+        log_p = np.log(np.asarray(gammaincc((n_groups - 1) / 2.0, h / 2.0), dtype=np.float64))
+    return GroupsTest(h, log_p)
+
+
+@dataclass(frozen=True, slots=True)
 class DocumentTest:
     """Arrays of shape (n_items,).
 
@@ -187,6 +218,14 @@ class _Scores:
         shape = (-1,) + (1,) * (sums.ndim - 1)
         gap, se = sums - (self.n_this * self._mean).reshape(shape), self._standard_error.reshape(shape)
         return np.where(se > 0, gap / se, 0.0)
+
+    def between(self, members: BoolArray) -> FloatArray:
+        """Kruskal-Wallis H of the groups in the columns of ``members``; 0 where all scores are equal."""
+        n, sizes = float(self.n_documents), members.sum(axis=0)
+        gaps = self.sums_over(members) - np.outer(self._mean, sizes)
+        # The ranks' variance has the divisor n - 1, which brings the correction for ties with it.
+        spread = self._spread * n / (n - 1.0)
+        return np.where(spread > 0, (gaps**2 / sizes).sum(axis=1) / spread, 0.0)
 
     def judge(self, sums: FloatArray) -> tuple[FloatArray, FloatArray]:
         """z, and ln of the two-sided p-value from the Pearson type III curve."""

@@ -1,0 +1,1 @@
+"""Measures over sub-corpora: tests over documents, information about slices, rates known from elsewhere."""
