@@ -33,6 +33,13 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.evidence import lines as lines
     from colloc.verbs.evidence import picture as picture
     from colloc.verbs.expressions import expressions as expressions
+    from colloc.verbs.judging import agreement as agreement
+    from colloc.verbs.judging import candidates as candidates
+    from colloc.verbs.judging import decisions as decisions
+    from colloc.verbs.judging import judge as judge
+    from colloc.verbs.judging import sheet as sheet
+    from colloc.verbs.judging import take_decisions as take_decisions
+    from colloc.verbs.judging import take_sheet as take_sheet
     from colloc.verbs.keeping import check as check
     from colloc.verbs.keeping import documents as documents
     from colloc.verbs.keeping import documents_by as documents_by
@@ -57,11 +64,14 @@ _HOMES = {
     "SegmentSettings": "colloc.settings",
     "TallySpec": "colloc.settings",
     "add": "colloc.verbs.making",
+    "agreement": "colloc.verbs.judging",
     "agreement": "colloc.verbs.spaces",
     "around": "colloc.verbs.asking",
     "build": "colloc.verbs.making",
+    "candidates": "colloc.verbs.judging",
     "check": "colloc.verbs.keeping",
     "contrast": "colloc.verbs.contrasting",
+    "decisions": "colloc.verbs.judging",
     "documents": "colloc.verbs.keeping",
     "documents_by": "colloc.verbs.keeping",
     "errors": "colloc",
@@ -69,6 +79,7 @@ _HOMES = {
     "expressions": "colloc.verbs.expressions",
     "floors": "colloc.verbs.asking",
     "info": "colloc.verbs.keeping",
+    "judge": "colloc.verbs.judging",
     "lines": "colloc.verbs.evidence",
     "matrix": "colloc.verbs.spaces",
     "measure": "colloc.verbs.asking",
@@ -79,7 +90,10 @@ _HOMES = {
     "remove": "colloc.verbs.making",
     "score": "colloc.verbs.scoring",
     "scorer": "colloc.verbs.scoring",
+    "sheet": "colloc.verbs.judging",
     "similar": "colloc.verbs.spaces",
+    "take_decisions": "colloc.verbs.judging",
+    "take_sheet": "colloc.verbs.judging",
     "tallies": "colloc.verbs.keeping",
     "tally": "colloc.verbs.keeping",
     "vectors": "colloc.verbs.spaces",

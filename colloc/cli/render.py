@@ -8,8 +8,8 @@ import re
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any, BinaryIO, Protocol
 
-from colloc.cli.spreadsheets import defuse, defuse_all
 from colloc.errors import MissingExtraError
+from colloc.exports.spreadsheets import defuse, defuse_all
 
 if TYPE_CHECKING:
     from colloc.answers.columns import Columns

@@ -11,8 +11,8 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, BinaryIO, Literal
 
-from colloc.cli.spreadsheets import restore, restore_all
 from colloc.errors import DataError, NoInputError
+from colloc.exports.spreadsheets import restore, restore_all
 
 TableFormat = Literal["auto", "csv", "tsv", "jsonl"]
 ROWS_A_PART = 1 << 16
@@ -66,7 +66,7 @@ def read_rows(path: Path, file_format: TableFormat = "auto") -> Iterator[Rows]:
         if chosen == "jsonl":
             yield from _json_rows(lines)
         else:
-            yield from _delimited_rows(lines, "\t" if chosen == "tsv" else ",")
+            yield from _delimited_rows(lines, "\t" if chosen == "tsv" else _separator(first))
 
 
 def read_lines(path: Path) -> list[str]:
@@ -146,6 +146,11 @@ def _format_of(path: Path, first_line: str) -> TableFormat:
     if first_line.lstrip().startswith("{"):
         return "jsonl"
     return "tsv" if "\t" in first_line else "csv"
+
+
+def _separator(first_line: str) -> str:
+    """Spreadsheets write semicolons where the comma is the decimal sign."""
+    return ";" if ";" in first_line and "," not in first_line else ","
 
 
 def _delimited_rows(lines: _Lines, delimiter: str) -> Iterator[Rows]:

@@ -208,7 +208,7 @@ def _row(decision: Decision) -> tuple[str, ...]:
 
 
 def iterate(store: Store) -> Iterator[tuple[int, Decision]]:
-    """The whole history with the number of each decision, oldest first; empty for a store made before there were any."""
+    """The whole history with the number of each decision, oldest first; empty for a store of schema 1."""
     if not store.value("SELECT count(*) FROM sqlite_schema WHERE name = 'decisions'"):
         return
     for number, *row in store.iterate(f"SELECT id, {_COLUMNS} FROM decisions ORDER BY id"):

@@ -20,7 +20,7 @@ from colloc.cli.output import Target, deliver, settings_line
 from colloc.cli.progress import ProgressLine, clock, progress_text
 from colloc.cli.render import make_writer
 from colloc.cli.sizes import size_in_bytes, written_size
-from colloc.cli.spreadsheets import defuse, restore
+from colloc.exports.spreadsheets import defuse, restore
 from colloc.errors import UsageError
 
 TEXT = st.text(st.characters(exclude_categories=("Cs",)), max_size=8)

@@ -1,0 +1,1 @@
+"""Decisions about pairs and expressions: what can be judged, what stands behind it, and what was decided."""
