@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import json
 import random
+import subprocess
+import sys
 from pathlib import Path
 from typing import Any
 
@@ -54,6 +56,44 @@ def test_batches_do_not_change_the_counts(tmp_path: Path, monkeypatch: pytest.Mo
     with open_for_reading(tmp_path / "cut") as store:
         row = next(iterate_documents(store))
         assert read_text(store, row.first_character, row.first_character + row.n_characters) == long
+
+
+def test_vocabularies_that_spill_change_nothing(
+    tmp_path: Path, small_batches: None, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Workers that must forget what they numbered, and a registry that must look types up in the store."""
+    from colloc.build import reading, segmenting
+
+    write_corpus(tmp_path / "c.jsonl", 12, 40)
+    build(tmp_path / "roomy", [str(tmp_path / "c.jsonl")], jobs=1)
+    forgotten = []
+    reset, real = segmenting.TypeNumberer.reset, reading.segment_batches
+
+    def forgetful(batches_: Any, settings: SegmentSettings, **options: Any) -> Any:
+        return real(batches_, settings, **{**options, "memory": 0})
+
+    monkeypatch.setattr(reading, "segment_batches", forgetful)
+    monkeypatch.setattr(segmenting.TypeNumberer, "reset", lambda self: (forgotten.append(1), reset(self)))
+    monkeypatch.setattr(reading, "registry_limit", lambda memory: 3)
+    build(tmp_path / "tight", [str(tmp_path / "c.jsonl")], jobs=1)
+    assert len(forgotten) > 5
+    assert content(tmp_path / "tight") == content(tmp_path / "roomy")
+
+
+def test_one_huge_line_in_bounded_memory(tmp_path: Path) -> None:
+    """A line of 24 MB: what it takes beyond a line of 1 MB is no more than a few batches."""
+    peaks = []
+    for megabytes in (1, 24):
+        (tmp_path / f"{megabytes}.txt").write_text("the sea and the fog " * (megabytes * 50_000), encoding="ascii")
+        script = (
+            "import resource, sys; from colloc.build.building import build; "
+            "build(sys.argv[1], [sys.argv[2]], jobs=1); "
+            "print(resource.getrusage(resource.RUSAGE_SELF).ru_maxrss)"
+        )
+        arguments = [str(tmp_path / f"s{megabytes}"), str(tmp_path / f"{megabytes}.txt")]
+        done = subprocess.run([sys.executable, "-c", script, *arguments], capture_output=True, text=True, check=True)
+        peaks.append(int(done.stdout) / 1024)
+    assert peaks[1] < peaks[0] + 160
 
 
 def test_add_equals_one_build(tmp_path: Path, small_batches: None) -> None:
