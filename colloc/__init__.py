@@ -33,10 +33,10 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.evidence import lines as lines
     from colloc.verbs.evidence import picture as picture
     from colloc.verbs.expressions import expressions as expressions
-    from colloc.verbs.judging import agreement as agreement
     from colloc.verbs.judging import candidates as candidates
     from colloc.verbs.judging import decisions as decisions
     from colloc.verbs.judging import judge as judge
+    from colloc.verbs.judging import judge_agreement as judge_agreement
     from colloc.verbs.judging import sheet as sheet
     from colloc.verbs.judging import take_decisions as take_decisions
     from colloc.verbs.judging import take_sheet as take_sheet
@@ -64,7 +64,6 @@ _HOMES = {
     "SegmentSettings": "colloc.settings",
     "TallySpec": "colloc.settings",
     "add": "colloc.verbs.making",
-    "agreement": "colloc.verbs.judging",
     "agreement": "colloc.verbs.spaces",
     "around": "colloc.verbs.asking",
     "build": "colloc.verbs.making",
@@ -80,6 +79,7 @@ _HOMES = {
     "floors": "colloc.verbs.asking",
     "info": "colloc.verbs.keeping",
     "judge": "colloc.verbs.judging",
+    "judge_agreement": "colloc.verbs.judging",
     "lines": "colloc.verbs.evidence",
     "matrix": "colloc.verbs.spaces",
     "measure": "colloc.verbs.asking",

@@ -98,7 +98,7 @@ def decisions(
         return listing.listed(opened, judge=by, history=history)
 
 
-def agreement(store: StorePath | Store) -> Columns:
+def judge_agreement(store: StorePath | Store) -> Columns:
     """Cohen's kappa of each two judges, over what both decided."""
     from colloc.answers.judging import listing
 

@@ -252,7 +252,7 @@ def decisions(
         raise UsageError("give one of --history, --agreement and --disagreements")
     target = Target(format, output, quiet)
     if agreement:
-        answer = judging.agreement(store)
+        answer = judging.judge_agreement(store)
     else:
         answer = judging.decisions(store, by=by, history=history, disagreements=disagreements)
     if format in ("table", "parquet") and not agreement:
