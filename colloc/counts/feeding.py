@@ -10,12 +10,12 @@ import numpy as np
 from colloc.counts.accumulating import BoolArray, PairSink, Places
 from colloc.counts.placing import DocumentPlaces
 from colloc.counts.positions import add_positions
+from colloc.counts.relations import read_dependents
 from colloc.counts.selection import Selection
 from colloc.counts.spans import PIECE, read_stretches, whole_units, window_spans
 from colloc.counts.tasks import reach
 from colloc.counts.units import add_units
 from colloc.counts.windows import add_windows
-from colloc.errors import UsageError
 from colloc.records import Int64Array, UInt32Array
 from colloc.settings import TallySpec
 from colloc.store.connection import Store
@@ -57,15 +57,17 @@ def feed(
     ------
     int
         After each load the index of a document: those before it will bring nothing more.
-
-    Raises
-    ------
-    UsageError
-        The spec counts dependents, not places.
     """
-    if spec.kind == "relation":
-        raise UsageError("pairs of head and dependent cannot be followed through documents: ask with a window")
     stop = documents.stop
+    nothing = np.empty(0, np.int64)
+    if spec.kind == "relation":
+        for found in read_dependents(store, labels, selection, spec.relation, 0, stop):
+            end = min(found.first + len(found.terms), stop)
+            sink.place(documents.of_stretch(found.first, end), 0, end - found.first, nothing)
+            sink.load(found.terms[: end - found.first])
+            sink.pair(found.heads, found.dependents)
+            yield int(documents.of(np.array([end - 1]))[0])
+        return
     if spec.kind == "unit":
         stretches = read_stretches(store, labels, selection, spec.inside, 0, stop)
         for terms, starts, places in whole_units(stretches, 0, stop):
@@ -76,7 +78,7 @@ def feed(
         return
     back, ahead = reach(spec)
     stretches = read_stretches(store, labels, selection, spec.inside, 0, stop)
-    place, nothing = 0, np.empty(0, np.int64)
+    place = 0
     for span in window_spans(stretches, 0, stop, back, ahead, PIECE):
         begin = place - span.context
         end = begin + len(span.terms)

@@ -94,9 +94,12 @@ class MarginSink:
         if self._present is not None:
             both = self._present[first] & self._present[second]
             valid = both if valid is None else valid & both
-        # places of one call are all different
-        self._follow[first] += 1 if valid is None else valid
-        self._precede[second] += 1 if valid is None else valid
+        for counts, places in ((self._follow, first), (self._precede, second)):
+            if isinstance(places, slice):
+                counts[places] += 1 if valid is None else valid
+            else:
+                # a head has several dependents
+                counts += np.bincount(places if valid is None else places[valid], minlength=len(counts))
 
     def _flush(self) -> None:
         if len(self._cell) and self._kind != "unit":

@@ -101,15 +101,25 @@ def _ranges_in(selection: Selection, head: BlockHead) -> slice:
     return slice(int(begin), max(int(begin), int(stop)))
 
 
-def _stretch(block: Block, layer: UInt32Array, selection: Selection, ranges: slice, inside: Inside) -> Stretch:
-    begins, stops, places = selection.begins[ranges], selection.stops[ranges], selection.places[ranges]
-    first = int(places[0] + max(0, block.first_token - begins[0]))
+def slices_in(selection: Selection, head: BlockHead) -> tuple[int, list[slice]]:
+    """Offsets of a block's tokens that are selected, and the place in the selection of the first of them."""
+    ranges = _ranges_in(selection, head)
+    begins, stops = selection.begins[ranges], selection.stops[ranges]
+    if not len(begins):
+        return 0, []
     inner = zip(
-        np.maximum(begins - block.first_token, 0).tolist(),
-        np.minimum(stops - block.first_token, len(block.tokens)).tolist(),
+        np.maximum(begins - head.first_token, 0).tolist(),
+        np.minimum(stops - head.first_token, head.n_tokens).tolist(),
         strict=True,
     )
-    types = [block.tokens[low:high] for low, high in inner]
+    first = int(selection.places[ranges.start] + max(0, head.first_token - begins[0]))
+    return first, [slice(low, high) for low, high in inner]
+
+
+def _stretch(block: Block, layer: UInt32Array, selection: Selection, ranges: slice, inside: Inside) -> Stretch:
+    begins, stops, places = selection.begins[ranges], selection.stops[ranges], selection.places[ranges]
+    first, inner = slices_in(selection, block.head)
+    types = [block.tokens[part] for part in inner]
     starts = unit_starts(block, inside) + block.first_token
     range_of = np.searchsorted(begins, starts, side="right") - 1
     chosen = range_of >= 0

@@ -13,6 +13,7 @@ import numpy as np
 from colloc.counts.budget import DEFAULT_MEMORY, affordable_jobs, plan_memory
 from colloc.counts.counting import Progress, count_tally
 from colloc.counts.processes import crew
+from colloc.counts.relations import chosen_relations
 from colloc.counts.selection import Selection, documents_selection, slice_selection
 from colloc.counts.words import change_word_counts
 from colloc.errors import CannotCreateError, LockedError, UsageError
@@ -63,7 +64,9 @@ def obtain_tally(
     Raises
     ------
     UsageError
-        The layer or the slice is not there.
+        The layer or the slice is not there, or relations are asked of plain text.
+    NotSeenError
+        No relation is called so.
     InputOutputError
         The disk is full, or a process was ended from outside.
     LockedError
@@ -80,7 +83,7 @@ def obtain_tally(
         return tally
     store = store_or_path
     if spec.kind == "relation":
-        raise UsageError(f"{store.path}: relations are counted in annotated text, and this store holds none")
+        chosen_relations(store, spec.relation)  # raises where there is none
     found = tallies.find(store, spec)
     if found is not None:
         if keep and store.writable:

@@ -15,6 +15,7 @@ from colloc.counts.dense import plan_cells
 from colloc.counts.keys import Run
 from colloc.counts.merging import Dealt, merge_range, transpose_range
 from colloc.counts.positions import add_positions
+from colloc.counts.relations import read_dependents
 from colloc.counts.runs import Column, RunFile, load_runs, write_column, write_run
 from colloc.counts.selection import Selection, selection_of
 from colloc.counts.sequences.sharing import count_joins, lay_out, merge_joins, number_joins, spread_sequences
@@ -61,7 +62,11 @@ def count_share(
     plan = plan_cells(_sample(store, layer, chosen, what, begin, stop, n_terms), cells) if cells else None
     into = Accumulator(plan, pending, spill)
     stretches = read_stretches(store, layer, chosen, what.inside, max(0, begin - back), last)
-    if what.kind == "unit":
+    if what.kind == "relation":
+        for found in read_dependents(store, layer, chosen, what.relation, begin, stop):
+            into.load(found.terms)
+            into.pair(found.heads, found.dependents)
+    elif what.kind == "unit":
         for terms, starts, _places in whole_units(stretches, begin, stop):
             add_units(terms, starts, into)
             margin += np.bincount(terms, minlength=n_terms)
@@ -88,7 +93,7 @@ def reach(spec: TallySpec) -> tuple[int, int]:
     """How many tokens before and after those that are counted a window of this kind looks at."""
     if spec.kind == "positions":
         return spec.left, spec.right
-    return (0, 0) if spec.kind == "unit" else (max(spec.left, spec.right), 0)
+    return (0, 0) if spec.kind in ("unit", "relation") else (max(spec.left, spec.right), 0)
 
 
 def _own_terms(span: TokenSpan) -> UInt32Array:

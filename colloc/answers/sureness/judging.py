@@ -69,7 +69,7 @@ class Judge:
         self._jobs, self._memory = jobs, memory
         self._progress = progress
         self._floors: dict[Shuffle, Floors] = {}
-        self.columns = wishes.shown(question.convention.margins)
+        self.columns = wishes.shown(question.convention.margins, question.spec.kind)
         self.floor_measure = ranking if ranking in floor_measures(question) else "pmi"
 
     def settings(self) -> dict[str, Any]:

@@ -67,13 +67,13 @@ class Wishes:
         """Whether q-values are needed."""
         return "q_value" in self.shown(margins)
 
-    def shown(self, margins: str) -> tuple[str, ...]:
+    def shown(self, margins: str, kind: str = "window") -> tuple[str, ...]:
         """Columns to show, in their fixed order: those asked for, and those that rows must reach.
 
         Raises
         ------
         UsageError
-            Where one was asked for that these margins cannot bear.
+            Where one was asked for that these margins, or a tally of this kind, cannot bear.
         """
         if self.everything:
             wanted = {name for name in SURE_COLUMNS if margins != "tokens" or name not in CELL_COLUMNS}
@@ -88,6 +88,10 @@ class Wishes:
             wanted |= {f"{self.above_chance}_floor", f"above_{self.above_chance}"}
         if self.interval_above is not None:
             wanted |= set(INTERVAL_COLUMNS)
+        if kind == "relation" and self.everything:
+            wanted -= set(FLOOR_COLUMNS)
+        if kind == "relation" and (wanted & set(FLOOR_COLUMNS) or self.above_chance is not None):
+            raise UsageError("chance floors come from shuffled text, which has no relations: ask without them")
         if margins == "tokens" and wanted & set(CELL_COLUMNS):
             name = next(name for name in CELL_COLUMNS if name in wanted)
             raise UsageError(
