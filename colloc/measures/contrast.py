@@ -148,12 +148,12 @@ def welch_test(
         se = np.sqrt(share_this + share_that)
         df = (share_this + share_that) ** 2 / (share_this**2 / (n_this - 1.0) + share_that**2 / (n_that - 1.0))
         t = gap / se
-        log_p = np.where(np.minimum(n_this, n_that) < 2, np.nan, _t_log_p(t, df))
+        log_p = np.where(np.minimum(n_this, n_that) < 2, np.nan, t_log_p(t, df))
     return Difference(gap, se, t, log_p), df
 
 
-def _t_log_p(t: FloatArray, df: FloatArray) -> FloatArray:
-    """ln P(|T| > |t|) for the t distribution."""
+def t_log_p(t: FloatArray, df: FloatArray) -> FloatArray:
+    """ln P(|T| > abs(t)) for the t distribution with ``df`` degrees of freedom."""
     from scipy.special import betainc
 
     # The tail as an incomplete beta function of df / (df + t^2), which is small where the p-value is.

@@ -81,13 +81,13 @@ def contrast_pair(
     totals = tuple(question.reader.tally.total for question in questions)
     arguments = (joint[0], totals[0], joint[1], totals[1])
     log_p = association_log_p(*as_table(*arguments))
-    over_documents = document_test(counts.rates)
+    over_documents = document_test(counts.rates, counts.in_this)
     lines = [
         *_counts(questions, (tables[0], tables[1]), terms),
         _Line("documents with the pair", *(float(counts.documents_on(side)[0]) for side in (True, False))),
         _Line("most in one document", *(float(counts.largest_on(side)[0]) for side in (True, False))),
         *_rates(arguments, float(np.exp(log_p[0]))),
-        _over_documents(counts.rates.in_this, over_documents.log_p, over_documents.difference, counts),
+        _over_documents(counts.in_this, over_documents.log_p, over_documents.difference, counts),
         *_strengths(questions, cells),
     ]
     verdict = say(

@@ -44,9 +44,15 @@ class DocumentCounts:
 
     @property
     def rates(self) -> DocumentRates:
-        """Relative frequencies; the first group are the documents of the first side."""
+        """Relative frequencies."""
         rates = self.counts / self.sizes[self.documents]
-        return DocumentRates(self.items, self.documents, rates, self.n_items, self.side == 0)
+        return DocumentRates(self.items, self.documents, rates, self.n_items, len(self.sizes))
+
+    @property
+    def in_this(self) -> NDArray[np.bool_]:
+        """Which documents are of the first side, shape (n_documents,)."""
+        chosen: NDArray[np.bool_] = self.side == 0
+        return chosen
 
     def documents_on(self, this: bool) -> Int64Array:
         """How many documents of one side hold each item."""

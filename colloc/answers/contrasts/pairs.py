@@ -107,9 +107,9 @@ def contrast_pairs(
     size = np.abs(found.odds.z if by_association else found.g2)
     candidates = np.sort(both_directions(size, [], more_in_this, 2 * (JUDGED if by_association else CANDIDATES)))
     counts = pair_counts_by_document(questions, found.cells[0][candidates], found.cells[1][candidates])
-    tested = document_test(counts.rates)
+    tested = document_test(counts.rates, counts.in_this)
     if permutations:
-        document_log_q = np.log(permuted_p(counts.rates, permutations, seed))
+        document_log_q = np.log(permuted_p(counts.rates, counts.in_this, permutations, seed))
     else:
         document_log_q = log_q_values(tested.log_p, len(found))
     held = counts.documents_on(True) + counts.documents_on(False)

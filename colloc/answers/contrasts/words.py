@@ -92,11 +92,11 @@ def contrast_words(
             raise UsageError(
                 "the words do not fit into memory together, which permutations need: raise --memory or --min-count"
             )
-        result = document_test(found.rates)
+        result = document_test(found.rates, found.in_this)
         z[lot], document_log_p[lot] = result.rank_z, result.log_p
         largest[0][lot], largest[1][lot] = found.largest_on(True), found.largest_on(False)
         if permutations:
-            permuted = permuted_p(found.rates, permutations, seed)
+            permuted = permuted_p(found.rates, found.in_this, permutations, seed)
     document_log_q = np.log(permuted) if permutations else log_q_values(document_log_p)
     more_in_this = log_ratio >= 0
     score = ranking_score(sort, document_log_p, log_ratio, interval.low, interval.high, g2)

@@ -20,11 +20,11 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 from colloc.errors import UsageError
 from colloc.measures.contingency import FloatArray
-from colloc.measures.contrast import welch_test
+from colloc.measures.contrast import t_log_p, welch_test
 
 Int64Array = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
@@ -42,16 +42,14 @@ class DocumentRates:
         Each combination at most once.
     rates : float64 array, shape (m,)
         Above 0.
-    n_items : int
-    in_this : bool array, shape (n_documents,)
-        Whether a document belongs to the first group; else to the second.
+    n_items, n_documents : int
     """
 
     items: Int64Array
     documents: Int64Array
     rates: FloatArray
     n_items: int
-    in_this: BoolArray
+    n_documents: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,8 +67,6 @@ def groups_test(rates: DocumentRates, group: Int64Array) -> GroupsTest:
 
     Parameters
     ----------
-    rates : DocumentRates
-        ``in_this`` is not looked at.
     group : int64 array, shape (n_documents,)
         0 .. n_groups - 1, each with a document.
     """
@@ -107,21 +103,97 @@ class DocumentTest:
     log_p: FloatArray
 
 
-def document_test(rates: DocumentRates) -> DocumentTest:
-    """The test of the module docstring for every item."""
+def document_test(rates: DocumentRates, in_this: BoolArray) -> DocumentTest:
+    """The test of the module docstring for every item.
+
+    Parameters
+    ----------
+    in_this : bool array, shape (n_documents,)
+        Whether a document belongs to the first group; else to the second.
+    """
     scores = _Scores(rates)
     with np.errstate(divide="ignore", invalid="ignore"):
-        rank_sum = scores.sum_over(rates.in_this)
-        rank_z, rank_log_p = scores.judge(rank_sum)
-        welch, difference, welch_log_p = _welch(rates)
-        agree = np.sign(rank_z) == np.sign(difference)
-        log_p = np.where(agree, np.maximum(rank_log_p, welch_log_p), 0.0)
-    if min(scores.n_this, scores.n_that) < 2:
+        rank_z, rank_log_p = scores.judge(in_this.astype(np.float64))
+        welch, difference, welch_log_p = _welch(rates, in_this)
+    log_p = _both(rank_z, rank_log_p, difference, welch_log_p)
+    n_this = np.count_nonzero(in_this)
+    if min(n_this, rates.n_documents - n_this) < 2:
         log_p = np.full(rates.n_items, np.nan)
-    return DocumentTest(difference, rank_z, welch, np.minimum(log_p, 0.0))
+    return DocumentTest(difference, rank_z, welch, log_p)
 
 
-def permuted_p(rates: DocumentRates, permutations: int, seed: int = 1) -> FloatArray:
+@dataclass(frozen=True, slots=True)
+class TrendTest:
+    """Arrays of shape (n_items,).
+
+    Attributes
+    ----------
+    slope : float64
+        Least squares slope of relative frequency over time.
+    rank_z : float64
+        Standardised sum of ranks times time, above 0 where later documents have higher ranks.
+    slope_t : float64
+    log_p : float64
+        ln of the larger of the two p-values; 0 where the tests point different ways, nan below four documents.
+    """
+
+    slope: FloatArray
+    rank_z: FloatArray
+    slope_t: FloatArray
+    log_p: FloatArray
+
+
+def trend_test(rates: DocumentRates, times: ArrayLike) -> TrendTest:
+    """Whether items become more or less frequent, document by document: the same two kinds of test over time.
+
+    The rank test takes the sum of ranks times the documents' times; with the times 0 and 1 it is the rank sum test. In
+    the place of Welch's test stands the slope of the relative frequency with a standard error that does not take the
+    documents' variances for equal (HC3: MacKinnon & White 1985), t with two degrees of freedom less than documents.
+
+    Parameters
+    ----------
+    times : array, shape (n_documents,)
+        In any unit and order.
+    """
+    moments = np.asarray(times, dtype=np.float64)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        rank_z, rank_log_p = _Scores(rates).judge(moments)
+        slope, slope_t, slope_log_p = _robust_slope(rates, moments)
+    log_p = _both(rank_z, rank_log_p, slope, slope_log_p)
+    if rates.n_documents < 4 or not np.ptp(moments):
+        log_p = np.full(rates.n_items, np.nan)
+    return TrendTest(slope, rank_z, slope_t, log_p)
+
+
+def _both(z: FloatArray, rank_log_p: FloatArray, mean: FloatArray, mean_log_p: FloatArray) -> FloatArray:
+    """ln of the p-value of two tests that must agree."""
+    agree = np.sign(z) == np.sign(mean)
+    return np.minimum(np.where(agree, np.maximum(rank_log_p, mean_log_p), 0.0), 0.0)
+
+
+def _robust_slope(rates: DocumentRates, times: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Slope, t and ln p; documents without an item count as 0 and are never written out."""
+    n = rates.n_documents
+    centred = times - times.mean()
+    squares = float((centred**2).sum())
+    leverage = 1.0 / n + centred**2 / squares
+    weight = centred**2 / (1.0 - leverage) ** 2
+
+    def total(values: FloatArray) -> FloatArray:
+        return np.bincount(rates.items, weights=values, minlength=rates.n_items).astype(np.float64)
+
+    at, own = centred[rates.documents], weight[rates.documents]
+    mean, slope = total(rates.rates) / n, total(at * rates.rates) / squares
+    fitted = mean[rates.items] + slope[rates.items] * at
+    # Squared residuals as if no document had the item, then put right where one has.
+    none = mean**2 * weight.sum() + 2 * mean * slope * (weight * centred).sum()
+    none = none + slope**2 * (weight * centred**2).sum()
+    spread = none + total(own * ((rates.rates - fitted) ** 2 - fitted**2))
+    t = slope / (np.sqrt(np.maximum(spread, 0.0)) / squares)
+    return slope, t, np.where(slope == 0, 0.0, t_log_p(t, np.full(len(t), n - 2.0)))
+
+
+def permuted_p(rates: DocumentRates, in_this: BoolArray, permutations: int, seed: int = 1) -> FloatArray:
     """Adjusted p-values by exchanging the labels of documents: Westfall & Young's (1993) max-T.
 
     The statistic of an item is the smaller of the sizes of its standardised rank sum and of Welch's t, 0 where they
@@ -143,9 +215,9 @@ def permuted_p(rates: DocumentRates, permutations: int, seed: int = 1) -> FloatA
         raise UsageError(f"permutations must be at least 19, or no p-value can reach 0.05, not {permutations}")
     scores = _Scores(rates)
     moments = _Moments(rates)
-    actual = _smaller(scores, moments, rates.in_this[:, np.newaxis])[:, 0]
+    actual = _smaller(scores, moments, in_this[:, np.newaxis])[:, 0]
     reached = np.ones(rates.n_items)
-    for labels in _exchanged(rates.in_this, permutations, seed):
+    for labels in _exchanged(in_this, permutations, seed):
         largest = _smaller(scores, moments, labels).max(axis=0, initial=0.0)
         # The tolerance takes equal values for equal: sums in another order differ in the last digits.
         reached += (largest[np.newaxis, :] >= actual[:, np.newaxis] * (1 - 1e-9)).sum(axis=1)
@@ -163,7 +235,7 @@ def _exchanged(in_this: BoolArray, permutations: int, seed: int) -> Iterator[Boo
 def _smaller(scores: _Scores, moments: _Moments, labels: BoolArray) -> FloatArray:
     """The smaller of the sizes of the two statistics, by item and labelling."""
     with np.errstate(divide="ignore", invalid="ignore"):
-        z = scores.standardised(scores.sums_over(labels))
+        z = scores.standardised(labels.astype(np.float64))
         t = moments.welch_t(labels)
         same = np.sign(z) == np.sign(t)
         return np.nan_to_num(np.where(same, np.minimum(np.abs(z), np.abs(t)), 0.0), nan=0.0)
@@ -174,9 +246,6 @@ class _Scores:
 
     def __init__(self, rates: DocumentRates) -> None:
         self._rates = rates
-        self.n_documents = len(rates.in_this)
-        self.n_this = int(np.count_nonzero(rates.in_this))
-        self.n_that = self.n_documents - self.n_this
         order = np.lexsort((rates.rates, rates.items))
         items, values = rates.items[order], rates.rates[order]
         held = np.bincount(rates.items, minlength=rates.n_items)
@@ -187,11 +256,11 @@ class _Scores:
         run = np.cumsum(fresh) - 1
         lengths = np.bincount(run, minlength=1)
         midplace = (place[fresh] + (lengths - 1) / 2.0)[run] if len(items) else place
-        absent = self.n_documents - held
+        absent = rates.n_documents - held
         # Ranks of the absent are 1 .. absent, their midrank (absent + 1) / 2.
         self._score = np.empty(len(items))
         self._score[order] = midplace + (absent[items] - 1) / 2.0
-        n = float(self.n_documents)
+        n = float(rates.n_documents)
         first, second, third = (self._total(self._score**power) / n for power in (1, 2, 3))
         self._mean = first
         self._spread = np.maximum(second - first**2, 0.0)
@@ -200,39 +269,40 @@ class _Scores:
     def _total(self, values: FloatArray) -> FloatArray:
         return np.bincount(self._rates.items, weights=values, minlength=self._rates.n_items).astype(np.float64)
 
-    def sum_over(self, labels: BoolArray) -> FloatArray:
-        """Sum of the scores of the documents chosen, by item."""
-        return self._total(np.where(labels[self._rates.documents], self._score, 0.0))
+    def standardised(self, weights: FloatArray) -> FloatArray:
+        """z of the sum of scores times weights, over all ways to deal the weights out; 0 where all scores are equal.
 
-    def sums_over(self, labels: BoolArray) -> FloatArray:
-        """:meth:`sum_over` for each column of ``labels``."""
-        return _by_documents(self._rates, self._score, labels)
+        Parameters
+        ----------
+        weights : float64 array, shape (n_documents, n)
 
-    @property
-    def _standard_error(self) -> FloatArray:
-        """Of the sum over a random choice of n_this documents."""
-        return np.sqrt(self.n_this * self.n_that / (self.n_documents - 1.0) * self._spread)
-
-    def standardised(self, sums: FloatArray) -> FloatArray:
-        """z of sums with the items along the first axis; 0 where all scores are equal."""
-        shape = (-1,) + (1,) * (sums.ndim - 1)
-        gap, se = sums - (self.n_this * self._mean).reshape(shape), self._standard_error.reshape(shape)
-        return np.where(se > 0, gap / se, 0.0)
+        Returns
+        -------
+        float64 array, shape (n_items, n)
+        """
+        n = float(self._rates.n_documents)
+        centred = weights - weights.mean(axis=0)
+        sums = _by_documents(self._rates, self._score, centred)
+        se = n * np.sqrt(np.outer(self._spread, (centred**2).mean(axis=0)) / (n - 1.0))
+        return np.where(se > 0, sums / se, 0.0)
 
     def between(self, members: BoolArray) -> FloatArray:
         """Kruskal-Wallis H of the groups in the columns of ``members``; 0 where all scores are equal."""
-        n, sizes = float(self.n_documents), members.sum(axis=0)
-        gaps = self.sums_over(members) - np.outer(self._mean, sizes)
+        n, sizes = float(self._rates.n_documents), members.sum(axis=0)
+        sums = _by_documents(self._rates, self._score, members.astype(np.float64))
+        gaps = sums - np.outer(self._mean, sizes)
         # The ranks' variance has the divisor n - 1, which brings the correction for ties with it.
         spread = self._spread * n / (n - 1.0)
         return np.where(spread > 0, (gaps**2 / sizes).sum(axis=1) / spread, 0.0)
 
-    def judge(self, sums: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """z, and ln of the two-sided p-value from the Pearson type III curve."""
-        n, a, b = float(self.n_documents), float(self.n_this), float(self.n_that)
-        z = self.standardised(sums)
-        third = a * b * (b - a) / ((n - 1.0) * (n - 2.0)) * self._lean
-        skewness = np.where(self._standard_error > 0, third / self._standard_error**3, 0.0)
+    def judge(self, weights: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """z, and ln of the two-sided p-value from the Pearson type III curve; weights of shape (n_documents,)."""
+        n = float(self._rates.n_documents)
+        z = self.standardised(weights[:, np.newaxis])[:, 0]
+        centred = weights - weights.mean()
+        se = n * np.sqrt(self._spread * (centred**2).mean() / (n - 1.0))
+        third = n**3 * self._lean * (centred**3).mean() / ((n - 1.0) * (n - 2.0))
+        skewness = np.where(se > 0, third / se**3, 0.0)
         # Twice the smaller tail: a skewed curve has no natural other tail.
         tail = np.minimum(_upper_tail(z, skewness), _upper_tail(-z, -skewness))
         return z, np.minimum(np.log(2.0) + tail, 0.0)
@@ -258,18 +328,17 @@ class _Moments:
     def __init__(self, rates: DocumentRates) -> None:
         self._rates = rates
         self._squares = rates.rates**2
-        everything = np.ones((len(rates.in_this), 1), dtype=np.bool_)
+        everything = np.ones((rates.n_documents, 1))
         self._sum = _by_documents(rates, rates.rates, everything)
         self._square_sum = _by_documents(rates, self._squares, everything)
 
     def welch_t(self, labels: BoolArray) -> FloatArray:
         """Welch's t by item and column of ``labels``."""
-        n_this = labels.sum(axis=0).astype(np.float64)
+        chosen = labels.astype(np.float64)
+        n_this = chosen.sum(axis=0)
         n_that = len(labels) - n_this
-        this, squares = (
-            _by_documents(self._rates, self._rates.rates, labels),
-            _by_documents(self._rates, self._squares, labels),
-        )
+        this = _by_documents(self._rates, self._rates.rates, chosen)
+        squares = _by_documents(self._rates, self._squares, chosen)
         that, other_squares = self._sum - this, self._square_sum - squares
         share = (
             _sample_variance(this, squares, n_this) / n_this + _sample_variance(that, other_squares, n_that) / n_that
@@ -281,21 +350,20 @@ def _sample_variance(sums: FloatArray, squares: FloatArray, n: FloatArray | floa
     return np.maximum(squares - sums**2 / n, 0.0) / (n - 1.0)
 
 
-def _by_documents(rates: DocumentRates, values: FloatArray, labels: BoolArray) -> FloatArray:
-    """Values added over the documents chosen by each column of ``labels``; shape (n_items, n_labellings)."""
+def _by_documents(rates: DocumentRates, values: FloatArray, weights: FloatArray) -> FloatArray:
+    """Values of the items in documents times each column of document weights, added up; shape (n_items, n)."""
     from scipy.sparse import csr_array
 
-    shape = (rates.n_items, len(labels))
-    table = csr_array((values, (rates.items, rates.documents)), shape=shape)
-    return np.asarray(table @ labels.astype(np.float64), dtype=np.float64)
+    table = csr_array((values, (rates.items, rates.documents)), shape=(rates.n_items, rates.n_documents))
+    return np.asarray(table @ weights, dtype=np.float64)
 
 
-def _welch(rates: DocumentRates) -> tuple[FloatArray, FloatArray, FloatArray]:
+def _welch(rates: DocumentRates, in_this: BoolArray) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Welch's t, difference of the means, ln p."""
     sides = []
-    chosen = rates.in_this[rates.documents]
-    n_this = float(np.count_nonzero(rates.in_this))
-    for inside, n in ((chosen, n_this), (~chosen, len(rates.in_this) - n_this)):
+    chosen = in_this[rates.documents]
+    n_this = float(np.count_nonzero(in_this))
+    for inside, n in ((chosen, n_this), (~chosen, rates.n_documents - n_this)):
         part = rates.rates[inside]
         items = rates.items[inside]
         sums = np.bincount(items, weights=part, minlength=rates.n_items).astype(np.float64)
