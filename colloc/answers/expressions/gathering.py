@@ -6,10 +6,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass, fields
 
 import numpy as np
-from numpy.typing import NDArray
 
 from colloc.counts.sequences.levels import Level, Spread
-from colloc.records import FloatArray, Int64Array
+from colloc.records import Int64Array
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -27,6 +26,8 @@ class Gathered:
         Of the sequences of two words and more: row ``edges[1]`` comes first.
     total : int
         Tokens.
+    units : int
+        Units (sentences), which no sequence reaches beyond.
     """
 
     edges: tuple[int, ...]
@@ -35,6 +36,7 @@ class Gathered:
     counts: Int64Array
     spread: Spread
     total: int
+    units: int
 
     @property
     def longest(self) -> int:
@@ -70,13 +72,8 @@ class Gathered:
         right = np.stack([self.counts[self.part(rows, words, cut, words)] for cut in cuts])
         return left, right
 
-    def of_rows(self, values: NDArray[np.float64] | Int64Array, rows: Int64Array) -> NDArray[np.float64]:
-        """Values of an array of `spread` for rows of two words and more."""
-        chosen: FloatArray = np.asarray(values[rows - self.edges[1]])
-        return chosen
 
-
-def gather(levels: Sequence[Level], total: int) -> Gathered:
+def gather(levels: Sequence[Level], total: int, units: int) -> Gathered:
     """The table of single words and contiguous levels of two words, three, ..."""
     edges = (0, *np.cumsum([len(level) for level in levels]).tolist())
     nothing = np.full(edges[1], -1)
@@ -90,4 +87,4 @@ def gather(levels: Sequence[Level], total: int) -> Gathered:
         )
     )
     counts = np.concatenate([level.counts for level in levels])
-    return Gathered(edges, np.concatenate(left), np.concatenate(right), counts, spread, total)
+    return Gathered(edges, np.concatenate(left), np.concatenate(right), counts, spread, total, units)

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colloc.answers.columns import Columns
-from colloc.answers.expressions.folding import folded_into, wholes
+from colloc.answers.expressions.folding import completeness, folded_into, wholes
 from colloc.answers.expressions.gathering import Gathered, gather
 from colloc.answers.expressions.scoring import Bonds, bonds, c_values, nesting
 from colloc.answers.expressions.settings import COMMON_SHARE, NAME_SHARE, Asked, ExpressionOptions, resolve
@@ -23,7 +23,18 @@ from colloc.store.vocabulary import term_texts
 Progress = Callable[[float, int, str], None]
 
 COLUMNS = (
-    *("expression", "words", "count", "documents", "dp_norm", "capitals", "strength", "weakest_split", "cut"),
+    *(
+        "expression",
+        "words",
+        "count",
+        "documents",
+        "dp_norm",
+        "capitals",
+        "strength",
+        "completeness",
+        "weakest_split",
+        "cut",
+    ),
     *("specific_correlation", "best_split_g2", "c_value", "c_value_length", "fragment", "fragment_count", "fragments"),
 )
 SHOWN = (
@@ -99,7 +110,7 @@ def _grown(grower: Grower, longest: int, progress: Progress | None) -> Gathered:
         tell((words - 2) / (longest - 1), grower.total, f"sequences of {words} words")
         levels.append(grower.join(levels[-1], levels[-1], 1))
     tell(1.0, grower.total, "ranking")
-    return gather(levels, grower.total)
+    return gather(levels, grower.total, grower.units)
 
 
 def strength(table: Gathered, weakest: FloatArray) -> FloatArray:
@@ -120,11 +131,12 @@ def _ranked(store: Store, asked: Asked, table: Gathered, limit: int) -> Columns:
     held = bonds(table)
     fit = table.spread.documents >= asked.min_docs
     if options.names == "drop":
-        # NaN, where no word can tell, compares as false
-        fit &= ~(table.spread.capitals >= NAME_SHARE)
+        # NaN, where every word begins a sentence or is a single letter (headings), compares as false
+        fit &= table.spread.capitals < NAME_SHARE
     whole = wholes(table, fit) if options.fragments == "fold" else np.arange(first, table.edges[-1])
-    own_strength = strength(table, held.weakest)
-    fragment, best, fragments = folded_into(whole, np.where(fit, own_strength, -np.inf), first)
+    holding = np.where(fit, strength(table, held.weakest), -np.inf)
+    fragment, best, fragments = folded_into(whole, holding, first)
+    complete = completeness(table)
     by_log, by_length = c_values(table, nesting(table, fit))
     lengths = table.lengths[first:]
     shown = fit & (whole == np.arange(first, table.edges[-1]))
@@ -132,7 +144,7 @@ def _ranked(store: Store, asked: Asked, table: Gathered, limit: int) -> Columns:
     if options.common == "drop":
         shown &= ~only_common(table)
     scores: dict[str, NDArray[Any]] = {
-        "strength": best,
+        "strength": np.where(best > 0, best * complete, best),
         "weakest_split": held.weakest,
         "specific_correlation": held.correlation,
         "best_split_g2": held.g2,
@@ -140,6 +152,7 @@ def _ranked(store: Store, asked: Asked, table: Gathered, limit: int) -> Columns:
         "c_value_length": by_length,
         "count": table.counts[first:],
         "documents": table.spread.documents,
+        "completeness": complete,
     }
     chosen, texts = _in_order(store, asked.layer, table, np.flatnonzero(shown), scores[options.rank], limit)
     return _columns(store, asked, table, chosen, texts, held, scores, fragment, fragments)
@@ -212,6 +225,7 @@ def _columns(
             "dp_norm": table.spread.dp_norm[rows],
             "capitals": table.spread.capitals[rows],
             "strength": scores["strength"][rows],
+            "completeness": scores["completeness"][rows],
             "weakest_split": held.weakest[rows],
             "cut": held.cut[rows],
             "specific_correlation": held.correlation[rows],

@@ -60,6 +60,8 @@ class Grower:
         Frequencies of the terms in the selection.
     total : int
         Tokens of the selection that are in the layer.
+    units : int
+        Units of the selection.
     single : Level
         The words themselves.
     """
@@ -104,7 +106,7 @@ class Grower:
             "capitals": self._keep("capitals", capital_marks(store)),
             "into": places,
         }
-        self._shares("lay_out", shared)
+        self.units = sum(share["units"] for share in self._shares("lay_out", shared))
         nothing = np.empty(0, np.uint64)
         self.single = Level((0,), None, None, 0, nothing, self.words.tokens, Column(**places["ids"]), None)
 
@@ -143,25 +145,17 @@ class Grower:
 
     def _spread(self, numbered: list[Facts], counts: Int64Array, name: str) -> Spread:
         n = len(counts)
-        capitals, marked = np.zeros(n, np.int64), np.zeros(n, np.int64)
+        sums = {what: np.zeros(n, np.int64) for what in ("capitals", "marked", "opening", "closing")}
         for share in numbered:
-            capitals += _taken(share["capitals"])
-            marked += _taken(share["marked"])
+            for what, so_far in sums.items():
+                so_far += _taken(share[what])
         runs = [_run_file(share["run"]) for share in numbered]
         entries = sum(run.keys.n for run in runs)
         ranges = min(max(n, 1), self._range_count(entries))
         edges = sorted({n * part // ranges for part in range(ranges + 1)})
+        same = {"sizes": self._sizes, "folder": str(self._folder)}
         tasks: list[Task] = [
-            (
-                "spread_sequences",
-                {
-                    "first": first,
-                    "last": last,
-                    "sizes": self._sizes,
-                    "name": f"{name}-spread-{i}",
-                    "folder": str(self._folder),
-                },
-            )
+            ("spread_sequences", {"first": first, "last": last, "name": f"{name}-spread-{i}", **same})
             for i, (first, last) in enumerate(pairwise(edges))
         ]
         parts = self._merge(tasks, runs, f"{name}-spread")
@@ -171,9 +165,9 @@ class Grower:
         )
         dp = np.concatenate([np.empty(0), *(_taken(part["distance"]) for part in parts)]) / 2
         with np.errstate(invalid="ignore", divide="ignore"):
-            written = np.where(marked > 0, capitals / marked, np.nan)
-        evenest = 1 - self._least_share
-        return Spread(documents, largest, dp, dp / evenest if evenest > 0 else np.full(n, np.nan), written)
+            written = np.where(sums["marked"] > 0, sums["capitals"] / sums["marked"], np.nan)
+            dp_norm = dp / (1 - self._least_share) if self._least_share < 1 else np.full(n, np.nan)
+        return Spread(documents, largest, dp, dp_norm, written, sums["opening"], sums["closing"])
 
     def _shares(self, task: str, arguments: Facts, name: str | None = None) -> list[Facts]:
         """Do a task for every share of the selection."""
@@ -261,7 +255,7 @@ def growing(
 
 
 def capital_marks(store: Store) -> UInt8Array:
-    """Whether the form of each type begins with a capital; words of one letter (with or without more) say nothing."""
+    """The mark of each type: whether its form begins with a capital; words that are one letter say nothing."""
     n = type_count(store)
     marks = np.empty(n, np.uint8)
     for first in range(0, n, _TYPES_AT_A_TIME):
@@ -272,7 +266,9 @@ def capital_marks(store: Store) -> UInt8Array:
 
 
 def _mark(form: str) -> int:
-    if not form[:2].isalpha() or len(form) < 2:
+    if form[0].lower() == form[0].upper():
+        return SMALL
+    if not form[1:2].isalpha():
         # "I", "I'm": one letter that is always or never a capital tells nothing of names
         return NO_MARK
     return CAPITAL if form[0].isupper() or form[0].istitle() else SMALL

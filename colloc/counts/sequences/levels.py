@@ -26,6 +26,8 @@ class Spread:
     capitals : float64 array
         Share of its words that are written with a capital, of those that can tell: not the first of a sentence, and
         longer than one letter. NaN where none can tell.
+    opening, closing : int64 arrays
+        How often the sequence begins a unit, and how often it ends one.
     """
 
     documents: Int64Array
@@ -33,6 +35,8 @@ class Spread:
     dp: FloatArray
     dp_norm: FloatArray
     capitals: FloatArray
+    opening: Int64Array
+    closing: Int64Array
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -46,6 +46,11 @@ def lay_out(
     into : dict of Column facts
         ``ids``: terms, NONE where infrequent. ``room``: tokens up to the end of the unit, at most MOST_WORDS.
         ``marks``: see `NO_MARK`.
+
+    Returns
+    -------
+    dict
+        ``units`` that begin in the share.
     """
     chosen = selection_of(Column(**selection["begins"]).read(), Column(**selection["stops"]).read())
     terms_of = layer_map(store, layer)
@@ -70,7 +75,7 @@ def lay_out(
     fill(Column(**into["ids"]), begin, terms)
     fill(Column(**into["room"]), begin, np.minimum(following - np.arange(n), MOST_WORDS).astype(np.uint8))
     fill(Column(**into["marks"]), begin, marks)
-    return {}
+    return {"units": int(np.count_nonzero(begins_unit[:n]))}
 
 
 def _joined(
@@ -132,8 +137,9 @@ def number_joins(
     Returns
     -------
     dict
-        ``run``: number << 32 | document, with counts. ``capitals``, ``marked``: for each sequence how many of its
-        words are written with a capital, and how many can tell.
+        ``run``: number << 32 | document, with counts. Columns by number: ``capitals`` and ``marked``, how many of the
+        words are written with a capital, and how many can tell; ``opening`` and ``closing``, how often the sequence
+        begins and ends a unit.
     """
     places, pairs = _joined(left, right, offset, words[-1] + 1, room, begin, stop)
     table: UInt64Array = Column(**keys).read()
@@ -146,17 +152,23 @@ def number_joins(
     document = np.searchsorted(starts, places + begin, side="right") - 1
     run = run_of_keys(pair_keys(found, document.astype(np.uint32)))
     seen = padded(Column(**marks), begin, stop + words[-1], NO_MARK)
-    capitals, marked = np.zeros(len(table), np.int64), np.zeros(len(table), np.int64)
+    space = padded(Column(**room), max(begin - 1, 0), stop, 0)
+    # the place before is the last of its unit; before the first place of all there is none
+    begins_unit = np.concatenate([[True], space == 1])[-(stop - begin) - 1 : -1]
+    n = len(table)
+    columns = {
+        "capitals": np.zeros(n, np.int64),
+        "marked": np.zeros(n, np.int64),
+        "opening": np.bincount(found[begins_unit[places]], minlength=n),
+        "closing": np.bincount(found[space[-(stop - begin) :][places] == words[-1] + 1], minlength=n),
+    }
     for word in words:
         mark = seen[places + word]
-        capitals += np.bincount(found[mark == CAPITAL], minlength=len(table))
-        marked += np.bincount(found[mark != NO_MARK], minlength=len(table))
+        columns["capitals"] += np.bincount(found[mark == CAPITAL], minlength=n)
+        columns["marked"] += np.bincount(found[mark != NO_MARK], minlength=n)
     place = Path(folder)
-    return {
-        "run": dataclasses.asdict(write_run(place, name, run)),
-        "capitals": dataclasses.asdict(write_column(place / f"{name}.capitals", capitals)),
-        "marked": dataclasses.asdict(write_column(place / f"{name}.marked", marked)),
-    }
+    kept = {what: dataclasses.asdict(write_column(place / f"{name}.{what}", of)) for what, of in columns.items()}
+    return {"run": dataclasses.asdict(write_run(place, name, run)), **kept}
 
 
 def _look_up(table: UInt64Array, keys: UInt64Array) -> tuple[UInt32Array, np.ndarray]:
