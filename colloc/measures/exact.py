@@ -219,7 +219,9 @@ def _log_far_tail(
     while np.any(enough - too_near > 1):
         middle = np.floor(0.5 * (too_near + enough))
         low = point_at(middle, rows) <= bound[rows]
-        enough, too_near = np.where(low, middle, enough), np.where(low, too_near, middle)
+        # Rows that are done must not move on while others go: at step 0 the table itself would count as far.
+        open_rows = enough - too_near > 1
+        enough, too_near = np.where(open_rows & low, middle, enough), np.where(open_rows & ~low, middle, too_near)
     if rows.size:
         first = point_at(enough, rows)
         tied = first >= point[rows] - _TIE
