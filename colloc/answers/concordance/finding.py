@@ -108,15 +108,18 @@ def _needed(store: Store, search: Search, selection: Selection, reach: int) -> S
     for head in heads:
         types = block_types(store, head.number)
         there[head.number] = [_share_some(part, types) for part in parts]
-    begins, ends = [], []
+    needed: list[int] = []
     for number in np.flatnonzero(there.any(axis=1)).tolist():
         near = slice(
             int(np.searchsorted(stops, firsts[number] - reach, side="right")),
             int(np.searchsorted(firsts, stops[number] + reach)),
         )
         if there[near].any(axis=0).all():
-            begins.append(np.maximum(selection.begins, firsts[number]))
-            ends.append(np.minimum(selection.stops, stops[number]))
+            # What lies between two of them within reach is needed as well: it parts them, and may end a unit.
+            between = needed and firsts[number] - stops[needed[-1]] <= reach
+            needed += range(needed[-1] + 1 if between else number, number + 1)
+    begins = [np.maximum(selection.begins, firsts[number]) for number in needed]
+    ends = [np.minimum(selection.stops, stops[number]) for number in needed]
     if not begins:
         return selection_of([], [])
     first, last = np.concatenate(begins), np.concatenate(ends)

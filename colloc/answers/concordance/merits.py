@@ -11,7 +11,8 @@ backward looks   1.0 where it begins with a word that points back (*he*, *this*,
                  times the share of such pronouns within; the list is English, other languages lose nothing
 fragment         1.5 where it does not begin with a capital (or a letter without case), 1.5 where it does not
                  end with terminal punctuation
-open marks       0.7 where a bracket or quote is opened and not closed, or closed and not opened
+open marks       0.7 where a bracket or quotation mark is opened and not closed, or closed and not opened
+speech           0.5 where it begins or ends with a quotation mark: a reply needs what it replies to
 names            2.0 times the share of words with a capital inside the sentence (all-capital lines lose all)
 numbers          1.5 times the share of words that hold a digit
 lists            4.0 times the share of commas and semicolons above one for eight words
@@ -30,6 +31,7 @@ SHORTEST, LONGEST = 8, 20
 TERMINALS = frozenset(".!?…。！？．｡؟۔։।॥။።")
 """Marks that end a sentence in scripts in wide use (a selection of Unicode's Sentence_Terminal)."""
 _CLOSERS = frozenset("\"'”’»›)]}」』】〉》）」*_")
+_QUOTES = frozenset(("'", '"', "‘", "’", "“", "”", "«", "»", "„", "‚", "「", "」", "『", "』", "‹", "›"))
 _PAIRS = {"(": ")", "[": "]", "{": "}", "“": "”", "«": "»", "「": "」", "『": "』", "（": "）"}
 _STRAIGHT = '"'
 
@@ -124,7 +126,9 @@ def text_points(text: str, words: Sequence[str]) -> float:
         last -= 1
     if not last or stripped[last - 1] not in TERMINALS:
         points -= 1.5
-    if not _balanced(stripped):
+    opened, closed = stripped[:1] in _QUOTES, stripped[-1:] in _QUOTES
+    points -= 0.5 * (opened or closed)
+    if not _balanced(stripped) or opened != closed:
         points -= 0.7
     inner = words[1:]
     if inner:
