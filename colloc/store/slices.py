@@ -27,7 +27,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from colloc.errors import UsageError
-from colloc.records import Int64Array, MetaValue
+from colloc.records import FloatArray, Int64Array, MetaValue
 from colloc.store.connection import Store
 from colloc.store.documents import visible_end
 
@@ -140,6 +140,15 @@ def values_of(store: Store, key: str) -> dict[str, int]:
         if value is not None:
             counts[as_text(value)] += 1
     return {text: counts[text] for text in sorted(counts, key=_sort_key)}
+
+
+def numbers_of(store: Store, key: str) -> tuple[Int64Array, FloatArray]:
+    """Documents whose value of a key is a number (or a text that reads as one), by document number, with it."""
+    found = [
+        (number, as_number) for number, value in _values(store, key) if (as_number := _as_number(value)) is not None
+    ]
+    numbers = np.array([number for number, _ in found], np.int64)
+    return numbers, np.array([value for _, value in found], np.float64)
 
 
 def as_text(value: MetaValue) -> str:

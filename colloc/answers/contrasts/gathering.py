@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.answers.contrasts.grouped import Groups
 from colloc.answers.questions import Question
 from colloc.counts.candidates import CandidatePass
 from colloc.counts.selection import slice_selection
@@ -27,11 +28,11 @@ class DocumentCounts:
     Attributes
     ----------
     items, documents, counts : int64 arrays, shape (m,)
-        ``documents`` are numbered from 0 over all sides, the first side first; empty ones are left out.
+        ``documents`` are numbered from 0 over all sides; empty ones are left out.
     sizes : int64 array, shape (n_documents,)
         Tokens.
     side : int64 array, shape (n_documents,)
-        0 for the documents of the first side, 1 for those of the second, and so on; ascending.
+        0 for the documents of the first side, 1 for those of the second, and so on.
     n_items : int
     """
 
@@ -163,3 +164,19 @@ def pair_counts_by_document(questions: Sequence[Question], first: UInt32Array, s
         gathered.pass_documents(found.documents.lengths[filled])
         gathered.next_side()
     return gathered.finish(len(first))
+
+
+def pair_counts_by_group(question: Question, first: UInt32Array, second: UInt32Array, groups: Groups) -> DocumentCounts:
+    """Counts of given pairs in each document of some groups; the groups are the sides. One pass for all of them."""
+    found = CandidatePass(question.store, question.spec, first, second, directed=question.reader.ordered)
+    group = groups.of(found.documents.numbers)
+    taken = (found.documents.lengths > 0) & (group < len(groups))
+    number = np.cumsum(taken) - 1
+    gathered = _Gathered()
+    for part in found:
+        index = np.searchsorted(found.documents.numbers, part.document)
+        inside = taken[index]
+        gathered.add(part.pair[inside], number[index[inside]], part.count[inside])
+    gathered.pass_documents(found.documents.lengths[taken])
+    counts = gathered.finish(len(first))
+    return replace(counts, side=group[taken])

@@ -1,0 +1,1 @@
+"""Change over time: words and pairs by period, and what changed most."""
