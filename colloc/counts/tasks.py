@@ -18,7 +18,15 @@ from colloc.counts.positions import add_positions
 from colloc.counts.relations import read_dependents
 from colloc.counts.runs import Column, RunFile, load_runs, write_column, write_run
 from colloc.counts.selection import Selection, selection_of
-from colloc.counts.sequences.sharing import count_joins, lay_out, merge_joins, number_joins, spread_sequences
+from colloc.counts.sequences.sharing import (
+    count_fillers,
+    count_joins,
+    lay_out,
+    merge_joins,
+    number_joins,
+    spread_sequences,
+    survey_sequences,
+)
 from colloc.counts.spans import Stretch, read_stretches, whole_units, window_spans
 from colloc.counts.units import add_units
 from colloc.counts.windows import add_windows
@@ -137,6 +145,8 @@ FILE_TASKS: dict[str, Callable[..., Facts]] = {
     "count_joins": count_joins,
     "merge_joins": merge_joins,
     "number_joins": number_joins,
+    "survey_sequences": survey_sequences,
+    "count_fillers": count_fillers,
     "spread_sequences": spread_sequences,
 }
 """Tasks on temporary files alone."""

@@ -22,15 +22,16 @@ from typing import Any
 import numpy as np
 
 from colloc.counts.budget import DEFAULT_MEMORY, affordable_jobs, plan_memory
+from colloc.counts.keys import merge
 from colloc.counts.processes import Crew, Task, crew
 from colloc.counts.runs import Column, RunFile, save_runs, write_column
 from colloc.counts.selection import Selection, documents_selection
 from colloc.counts.sequences.levels import Level, Spread
-from colloc.counts.sequences.places import reserve
+from colloc.counts.sequences.places import NONE, left_of, reserve, right_of
 from colloc.counts.sequences.sharing import CAPITAL, MOST_WORDS, NO_MARK, SMALL, Facts
 from colloc.counts.words import slice_word_counts
 from colloc.errors import LockedError, UsageError
-from colloc.records import Int64Array, UInt8Array, WordCounts
+from colloc.records import Int64Array, UInt8Array, UInt64Array, WordCounts
 from colloc.settings import Inside
 from colloc.store import facts
 from colloc.store.connection import Store
@@ -102,7 +103,6 @@ class Grower:
                 "begins": self._keep("begins", selection.begins),
                 "stops": self._keep("stops", selection.stops),
             },
-            "frequent": self._keep("frequent", self.words.tokens >= self._least),
             "capitals": self._keep("capitals", capital_marks(store)),
             "into": places,
         }
@@ -113,43 +113,85 @@ class Grower:
     def join(self, left: Level, right: Level, offset: int) -> Level:
         """The frequent sequences of a left part and a right part that begins ``offset`` places later.
 
-        Parts may overlap where the words they share are the same ones by the way in which the levels were made.
+        Parts may overlap; what they share stands at the same places of the text.
 
         Raises
         ------
         UsageError
-            The sequence would be longer than `MOST_WORDS`.
+            The sequence would reach over more than `MOST_WORDS` places.
         """
+        name, words, parts = self._begun(left, right, offset)
+        counted = self._shares("count_joins", parts, f"{name}-count")
+        runs = [_run_file(run) for run in counted]
+        least = {"least": self._least, "folder": str(self._folder)}
+        tasks: list[Task] = [
+            ("merge_joins", {"first": first, "last": last, "name": f"{name}-merge-{i}", **least})
+            for i, (first, last) in enumerate(pairwise(self._ranges(runs)))
+        ]
+        merged = self._merge(tasks, runs, name)
+        keys = np.concatenate([np.empty(0, np.uint64), *(_taken(part) for part in merged)])
+        counts, ids = self._numbered(name, parts, keys)
+        return Level(words, left, right, offset, keys, counts, ids, self._spread(ids, words, len(keys), name))
+
+    def known(self, left: Level, right: Level, offset: int, keys: UInt64Array) -> Level:
+        """As `join`, but of given keys (ascending, each once), however often they occur, and without their spread."""
+        name, words, parts = self._begun(left, right, offset)
+        counts, ids = self._numbered(name, parts, keys)
+        return Level(words, left, right, offset, keys, counts, ids, None)
+
+    def fillers(self, level: Level, numbers: Int64Array, slot: int) -> tuple[Int64Array, Int64Array, Int64Array]:
+        """What stands in an open slot of some sequences of a level.
+
+        Parameters
+        ----------
+        numbers : int64 array
+            The sequences, each once.
+        slot : int
+            Offset of the slot.
+
+        Returns
+        -------
+        index, term, count : int64 arrays
+            Sorted by index (into ``numbers``), then by term.
+        """
+        self._made += 1
+        name = f"fillers-{self._made}"
+        rows = np.full(len(level), NONE)
+        rows[numbers] = np.arange(len(numbers))
+        asked = {"ids": asdict(level.ids), "terms": asdict(self.single.ids), "slot": slot, "folder": str(self._folder)}
+        counted = self._shares("count_fillers", {**asked, "rows": self._keep(name, rows)}, name)
+        runs = [_run_file(run) for run in counted]
+        everything = merge([run.between(0, _END) for run in runs])
+        index, term = left_of(everything.keys).astype(np.int64), right_of(everything.keys).astype(np.int64)
+        counts = everything.counts.astype(np.int64)
+        _remove(runs)
+        return index, term, counts
+
+    def _begun(self, left: Level, right: Level, offset: int) -> tuple[str, tuple[int, ...], Facts]:
         words = tuple(sorted({*left.words, *(offset + word for word in right.words)}))
         if words[-1] >= MOST_WORDS:
             raise UsageError(f"a sequence reaches over at most {MOST_WORDS} places, not {words[-1] + 1}")
         self._made += 1
-        name = f"level-{self._made}"
-        parts = {"left": asdict(left.ids), "right": asdict(right.ids), "offset": offset, "room": self._room}
-        folder = {"folder": str(self._folder)}
-        counted = self._shares("count_joins", {**parts, **folder, "span": words[-1] + 1}, f"{name}-count")
-        runs = [_run_file(run) for run in counted]
-        tasks: list[Task] = [
-            ("merge_joins", {"first": first, "last": last, "least": self._least, "name": f"{name}-merge-{i}", **folder})
-            for i, (first, last) in enumerate(pairwise(self._ranges(runs)))
-        ]
-        merged = self._merge(tasks, runs, name)
-        keys = np.concatenate([np.empty(0, np.uint64), *(Column(**part["keys"]).read() for part in merged)])
-        counts = np.concatenate([np.empty(0, np.int64), *(Column(**part["counts"]).read() for part in merged)])
-        ids = self._reserve(f"{name}.ids", "<u4")
-        numbering = {**parts, **folder, "words": list(words), "marks": self._marks, "documents": self._documents}
-        numbering |= {"keys": self._keep(f"{name}.keys", keys), "ids": ids}
-        numbered = self._shares("number_joins", numbering, f"{name}-number")
-        spread = self._spread(numbered, counts, name)
-        return Level(words, left, right, offset, keys, counts, Column(**ids), spread)
+        parts = {"left": asdict(left.ids), "right": asdict(right.ids), "offset": offset, "span": words[-1] + 1}
+        return f"level-{self._made}", words, {**parts, "room": self._room, "folder": str(self._folder)}
 
-    def _spread(self, numbered: list[Facts], counts: Int64Array, name: str) -> Spread:
-        n = len(counts)
+    def _numbered(self, name: str, parts: Facts, keys: UInt64Array) -> tuple[Int64Array, Column]:
+        ids = self._reserve(f"{name}.ids", "<u4")
+        numbering = {**parts, "keys": self._keep(f"{name}.keys", keys), "ids": ids}
+        counts = np.zeros(len(keys), np.int64)
+        for share in self._shares("number_joins", numbering, f"{name}-number"):
+            counts += _taken(share)
+        return counts, Column(**ids)
+
+    def _spread(self, ids: Column, words: tuple[int, ...], n: int, name: str) -> Spread:
+        where = {"room": self._room, "marks": self._marks, "documents": self._documents, "folder": str(self._folder)}
+        survey = {"ids": asdict(ids), "n": n, "words": list(words), **where}
         sums = {what: np.zeros(n, np.int64) for what in ("capitals", "marked", "opening", "closing")}
-        for share in numbered:
+        surveyed = self._shares("survey_sequences", survey, f"{name}-survey")
+        for share in surveyed:
             for what, so_far in sums.items():
                 so_far += _taken(share[what])
-        runs = [_run_file(share["run"]) for share in numbered]
+        runs = [_run_file(share["run"]) for share in surveyed]
         entries = sum(run.keys.n for run in runs)
         ranges = min(max(n, 1), self._range_count(entries))
         edges = sorted({n * part // ranges for part in range(ranges + 1)})
@@ -182,9 +224,7 @@ class Grower:
         listed = self._folder / f"{name}.runs"
         save_runs(listed, runs)
         done = list(self._workers.results([(task, {**arguments, "runs": str(listed)}) for task, arguments in tasks]))
-        for run in runs:
-            Path(run.keys.path).unlink()
-            Path(run.counts.path).unlink()
+        _remove(runs)
         return done
 
     def _range_count(self, entries: int) -> int:
@@ -289,6 +329,12 @@ def _places(selection: Selection, begins: Int64Array) -> Int64Array:
 
 def _run_file(run: Facts) -> RunFile:
     return RunFile(Column(**run["keys"]), Column(**run["counts"]))
+
+
+def _remove(runs: Sequence[RunFile]) -> None:
+    for run in runs:
+        Path(run.keys.path).unlink()
+        Path(run.counts.path).unlink()
 
 
 def _taken(column: Facts) -> Any:

@@ -33,7 +33,6 @@ def lay_out(
     selection: Facts,
     begin: int,
     stop: int,
-    frequent: Facts,
     capitals: Facts,
     into: Facts,
 ) -> Facts:
@@ -41,10 +40,10 @@ def lay_out(
 
     Parameters
     ----------
-    frequent, capitals : Column facts
-        For each term whether it is frequent (bool), for each type its mark.
+    capitals : Column facts
+        The mark of each type.
     into : dict of Column facts
-        ``ids``: terms, NONE where infrequent. ``room``: tokens up to the end of the unit, at most MOST_WORDS.
+        ``ids``: terms. ``room``: tokens up to the end of the unit, at most MOST_WORDS.
         ``marks``: see `NO_MARK`.
 
     Returns
@@ -63,16 +62,13 @@ def lay_out(
         begins_unit[stretch.units - begin] = True
     begins_unit[-1] = True  # the end of the selection, or too far ahead to matter
     n = stop - begin
-    terms = apply_layer(terms_of, types[:n])
-    known = terms != NONE
-    terms[known] = np.where(Column(**frequent).read()[terms[known]], terms[known], NONE)
     marks = np.zeros(n, np.uint8)
     there = types[:n] != NONE
     marks[there] = Column(**capitals).read()[types[:n][there]]
     marks[begins_unit[:n]] = NO_MARK
     starts = np.flatnonzero(begins_unit)
     following = starts[np.searchsorted(starts, np.arange(n), side="right")]
-    fill(Column(**into["ids"]), begin, terms)
+    fill(Column(**into["ids"]), begin, apply_layer(terms_of, types[:n]))
     fill(Column(**into["room"]), begin, np.minimum(following - np.arange(n), MOST_WORDS).astype(np.uint8))
     fill(Column(**into["marks"]), begin, marks)
     return {"units": int(np.count_nonzero(begins_unit[:n]))}
@@ -98,39 +94,64 @@ def count_joins(
 
 
 def merge_joins(first: int, last: int, least: int, runs: str, folder: str, name: str) -> Facts:
-    """The pairs with first <= key < last that occur ``least`` times in all runs together."""
+    """The column of keys with first <= key < last that occur ``least`` times in all runs together, ascending."""
     run = _merged(runs, first, last)
-    enough = run.counts >= least
-    place = Path(folder)
-    return {
-        "keys": dataclasses.asdict(write_column(place / f"{name}.keys", run.keys[enough])),
-        "counts": dataclasses.asdict(write_column(place / f"{name}.counts", run.counts[enough])),
-    }
+    return dataclasses.asdict(write_column(Path(folder) / f"{name}.keys", run.keys[run.counts >= least]))
 
 
 def number_joins(
     left: Facts,
     right: Facts,
     offset: int,
-    words: list[int],
+    span: int,
     room: Facts,
-    marks: Facts,
     keys: Facts,
-    documents: Facts,
     ids: Facts,
     begin: int,
     stop: int,
     folder: str,
     name: str,
 ) -> Facts:
-    """Write which frequent sequence begins at each place of a share, and count them by document.
+    """Write which sequence begins at each place of a share, of those whose keys are given, and count them.
+
+    Parameters
+    ----------
+    keys : Column facts
+        Sorted: a sequence's number is its place here.
+
+    Returns
+    -------
+    dict
+        The column of counts by number.
+    """
+    places, pairs = _joined(left, right, offset, span, room, begin, stop)
+    table: UInt64Array = Column(**keys).read()
+    numbers = np.full(stop - begin, NONE)
+    found, there = _look_up(table, pairs)
+    numbers[places[there]] = found
+    fill(Column(**ids), begin, numbers)
+    counts = np.bincount(found, minlength=len(table))
+    return dataclasses.asdict(write_column(Path(folder) / f"{name}.counts", counts))
+
+
+def survey_sequences(
+    ids: Facts,
+    n: int,
+    words: list[int],
+    room: Facts,
+    marks: Facts,
+    documents: Facts,
+    begin: int,
+    stop: int,
+    folder: str,
+    name: str,
+) -> Facts:
+    """See where ``n`` sequences stand in a share, and how they are written.
 
     Parameters
     ----------
     words : list of int
-        Offsets of the words of the sequence, from 0; places between them are open slots.
-    keys : Column facts
-        The frequent keys, sorted: a sequence's number is its place here.
+        Offsets of the words of the sequences, from 0; places between them are open slots.
     documents : Column facts
         Place where each document begins, ascending.
 
@@ -141,26 +162,20 @@ def number_joins(
         words are written with a capital, and how many can tell; ``opening`` and ``closing``, how often the sequence
         begins and ends a unit.
     """
-    places, pairs = _joined(left, right, offset, words[-1] + 1, room, begin, stop)
-    table: UInt64Array = Column(**keys).read()
-    numbers = np.full(stop - begin, NONE)
-    found, there = _look_up(table, pairs)
-    places = places[there]
-    numbers[places] = found
-    fill(Column(**ids), begin, numbers)
+    numbers: UInt32Array = Column(**ids).read(begin, stop)
+    places = np.flatnonzero(numbers != NONE)
+    found = numbers[places]
     starts: Int64Array = Column(**documents).read()
     document = np.searchsorted(starts, places + begin, side="right") - 1
     run = run_of_keys(pair_keys(found, document.astype(np.uint32)))
     seen = padded(Column(**marks), begin, stop + words[-1], NO_MARK)
-    space = padded(Column(**room), max(begin - 1, 0), stop, 0)
-    # the place before is the last of its unit; before the first place of all there is none
-    begins_unit = np.concatenate([[True], space == 1])[-(stop - begin) - 1 : -1]
-    n = len(table)
+    before, space = _room_around(room, begin, stop)
     columns = {
         "capitals": np.zeros(n, np.int64),
         "marked": np.zeros(n, np.int64),
-        "opening": np.bincount(found[begins_unit[places]], minlength=n),
-        "closing": np.bincount(found[space[-(stop - begin) :][places] == words[-1] + 1], minlength=n),
+        # the place before is the last of its unit
+        "opening": np.bincount(found[before[places] == 1], minlength=n),
+        "closing": np.bincount(found[space[places] == words[-1] + 1], minlength=n),
     }
     for word in words:
         mark = seen[places + word]
@@ -169,6 +184,40 @@ def number_joins(
     place = Path(folder)
     kept = {what: dataclasses.asdict(write_column(place / f"{name}.{what}", of)) for what, of in columns.items()}
     return {"run": dataclasses.asdict(write_run(place, name, run)), **kept}
+
+
+def _room_around(room: Facts, begin: int, stop: int) -> tuple[UInt8Array, UInt8Array]:
+    """Room at the place before each place of a share, and at the place; the first of all counts as after a unit."""
+    space: UInt8Array = Column(**room).read(begin, stop)
+    last = Column(**room).read(begin - 1, begin) if begin else np.ones(1, np.uint8)
+    return np.concatenate([last, space[:-1]]), space
+
+
+def count_fillers(
+    ids: Facts, rows: Facts, terms: Facts, slot: int, begin: int, stop: int, folder: str, name: str
+) -> Facts:
+    """Count the words in an open slot of some frames in a share, into a run.
+
+    Parameters
+    ----------
+    rows : Column facts
+        For each number of the level the row of the frame, NONE for those not asked about.
+    slot : int
+        Offset of the slot.
+
+    Returns
+    -------
+    dict
+        The run: row << 32 | term.
+    """
+    numbers: UInt32Array = Column(**ids).read(begin, stop)
+    row: UInt32Array = Column(**rows).read()
+    places = np.flatnonzero(numbers != NONE)
+    wanted = row[numbers[places]]
+    places, wanted = places[wanted != NONE], wanted[wanted != NONE]
+    fillers: UInt32Array = padded(Column(**terms), begin + slot, stop + slot, int(NONE))[places]
+    there = fillers != NONE
+    return dataclasses.asdict(write_run(Path(folder), name, run_of_keys(pair_keys(wanted[there], fillers[there]))))
 
 
 def _look_up(table: UInt64Array, keys: UInt64Array) -> tuple[UInt32Array, np.ndarray]:
