@@ -109,7 +109,7 @@ def test_no_pairs(store_path: Path) -> None:
         assert list(occurrences(store, SPECS[0], nothing, nothing, directed=False)) == []
 
 
-def test_dependents_have_no_place_to_look_at(store_path: Path) -> None:
+def test_relations_need_annotated_text(store_path: Path) -> None:
     pair = np.array([1], np.uint32)
-    with open_for_reading(store_path) as store, pytest.raises(UsageError, match="head and dependent"):
+    with open_for_reading(store_path) as store, pytest.raises(UsageError, match="annotated text"):
         list(occurrences(store, TallySpec(kind="relation", right=0), pair, pair, directed=True))
