@@ -32,7 +32,11 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.evidence import explain as explain
     from colloc.verbs.evidence import lines as lines
     from colloc.verbs.evidence import picture as picture
+    from colloc.verbs.exporting import entries as entries
+    from colloc.verbs.exporting import export as export
     from colloc.verbs.expressions import expressions as expressions
+    from colloc.verbs.joining import join as join
+    from colloc.verbs.joining import make_joiner as make_joiner
     from colloc.verbs.judging import candidates as candidates
     from colloc.verbs.judging import decisions as decisions
     from colloc.verbs.judging import judge as judge
@@ -73,14 +77,18 @@ _HOMES = {
     "decisions": "colloc.verbs.judging",
     "documents": "colloc.verbs.keeping",
     "documents_by": "colloc.verbs.keeping",
+    "entries": "colloc.verbs.exporting",
     "errors": "colloc",
     "explain": "colloc.verbs.evidence",
+    "export": "colloc.verbs.exporting",
     "expressions": "colloc.verbs.expressions",
     "floors": "colloc.verbs.asking",
     "info": "colloc.verbs.keeping",
+    "join": "colloc.verbs.joining",
     "judge": "colloc.verbs.judging",
     "judge_agreement": "colloc.verbs.judging",
     "lines": "colloc.verbs.evidence",
+    "make_joiner": "colloc.verbs.joining",
     "matrix": "colloc.verbs.spaces",
     "measure": "colloc.verbs.asking",
     "merge": "colloc.verbs.making",

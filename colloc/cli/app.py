@@ -33,8 +33,10 @@ COMMAND_MODULES = (
     "contrasting",
     "measuring",
     "spaces",
+    "joining",
     "scoring",
     "judging",
+    "exporting",
 )
 """Modules of ``colloc.cli.commands``, in the order of the help page."""
 

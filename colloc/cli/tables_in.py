@@ -9,10 +9,13 @@ from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, BinaryIO, Literal
+from typing import TYPE_CHECKING, Any, BinaryIO, Literal
 
 from colloc.errors import DataError, NoInputError
 from colloc.exports.spreadsheets import restore, restore_all
+
+if TYPE_CHECKING:
+    from colloc.answers.joining.listed import Expression
 
 TableFormat = Literal["auto", "csv", "tsv", "jsonl"]
 ROWS_A_PART = 1 << 16
@@ -56,7 +59,7 @@ def read_rows(path: Path, file_format: TableFormat = "auto") -> Iterator[Rows]:
     DataError
         Where a line cannot be read; the message names file and line.
     """
-    with _opened_text(path) as stream:
+    with opened_input(path) as stream:
         name = "standard input" if str(path) == "-" else str(path)
         lines = _Lines(stream, name)
         first = lines.peek()
@@ -71,7 +74,7 @@ def read_rows(path: Path, file_format: TableFormat = "auto") -> Iterator[Rows]:
 
 def read_lines(path: Path) -> list[str]:
     """Lines of a UTF-8 text file without their ends, blank ones left out."""
-    with _opened_text(path) as stream:
+    with opened_input(path) as stream:
         stripped = (line.strip() for line in _Lines(stream, str(path)))
         return [line for line in stripped if line]
 
@@ -86,13 +89,28 @@ def judged_rows(path: Path) -> list[tuple[str, str, float]]:
     """
     from colloc.answers.spaces.judged import judged_pairs
 
-    with _opened_text(path) as stream:
+    with opened_input(path) as stream:
         judged = judged_pairs(str(path), _Lines(stream, str(path)))
     return [(*pair, score) for pair, score in zip(judged.pairs, judged.scores.tolist(), strict=True)]
 
 
+def listed_expressions(path: Path) -> list[Expression]:
+    """Expressions of a file, one a line; a score may follow after a tab.
+
+    Raises
+    ------
+    NoInputError, DataError
+        Where the file is missing, or a line is not of this form.
+    """
+    from colloc.answers.joining.listed import expressions_of
+
+    with opened_input(path) as stream:
+        return expressions_of(str(path), _Lines(stream, str(path)))
+
+
 @contextmanager
-def _opened_text(path: Path) -> Iterator[BinaryIO]:
+def opened_input(path: Path) -> Iterator[BinaryIO]:
+    """The bytes of a file, or of standard input for ``-``; NoInputError where it cannot be read."""
     if str(path) == "-":
         yield sys.stdin.buffer
         return

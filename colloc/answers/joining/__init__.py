@@ -1,0 +1,1 @@
+"""Expressions joined in running text."""
