@@ -50,14 +50,21 @@ def choose(store: Store, reader: PassageReader, hits: Hits, layer: str, limit: i
         rows = np.sort(np.random.default_rng(seed).choice(len(hits), MOST_CANDIDATES, replace=False))
     candidates = _weighed(store, reader, hits, layer, rows)
     wanted = limit or len(candidates.rows)
-    order = _varied(candidates, hits.documents)[: max(LEAST_READ, READ_FOR_EACH * wanted)]
-    passages = read_many(reader, [candidates.spans[row] for row in order.tolist()])
-    points = np.array(
-        [candidates.points[row] + _text_points(passage) for row, passage in zip(order.tolist(), passages, strict=True)]
-    )
-    best = np.lexsort((order, -points))
-    picked = _different(passages, hits.documents[candidates.rows[order]], best.tolist(), wanted)
-    return candidates.rows[order[picked]]
+    order = _varied(candidates, hits.documents)
+    read = max(LEAST_READ, READ_FOR_EACH * wanted)
+    passages: list[Passage] = []
+    points: list[float] = []
+    while True:
+        rest = order[len(passages) : read].tolist()
+        fresh = read_many(reader, [candidates.spans[row] for row in rest])
+        passages += fresh
+        points += [candidates.points[row] + _text_points(one) for row, one in zip(rest, fresh, strict=True)]
+        best = np.lexsort((order[: len(points)], -np.array(points)))
+        picked = _different(passages, hits.documents[candidates.rows[order]], best.tolist(), wanted)
+        if len(picked) == wanted or len(passages) == len(order):
+            return candidates.rows[order[picked]]
+        # Much of what was read is alike: read on.
+        read *= 4
 
 
 def _weighed(store: Store, reader: PassageReader, hits: Hits, layer: str, rows: Int64Array) -> _Candidates:
