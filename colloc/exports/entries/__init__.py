@@ -1,0 +1,1 @@
+"""Accepted entries in open formats, one module a format; ``formats`` lists them."""
