@@ -16,7 +16,7 @@ from colloc.counts.processes import crew
 from colloc.counts.relations import chosen_relations
 from colloc.counts.selection import Selection, documents_selection, slice_selection
 from colloc.counts.words import change_word_counts
-from colloc.errors import CannotCreateError, LockedError, UsageError
+from colloc.errors import CannotCreateError, LockedError
 from colloc.records import Int64Array
 from colloc.settings import TallySpec
 from colloc.store import facts, tallies

@@ -16,9 +16,10 @@ from typing import Any
 import numpy as np
 
 from colloc.errors import StoreDamagedError
-from colloc.records import UInt32Array
+from colloc.records import Int64Array, UInt32Array
 from colloc.store.connection import Store
 from colloc.store.database import packing
+from colloc.store.stream import Block, column_names, read_column
 
 HEAD, RELATION = "head", "relation"
 """Columns of a block: words from each word to its head (0: none), and the number of its relation."""
@@ -128,6 +129,32 @@ def values_of(store: Store, column: str) -> list[str]:
     if [number for number, _ in rows] != [*range(len(rows))]:
         raise StoreDamagedError(f"{store.path}: values of column {column} are missing")
     return [text for _, text in rows]
+
+
+def word_places(store: Store, block: Block, first: int, stop: int, character: int) -> tuple[Int64Array, Int64Array]:
+    """Where annotated words stand in the text.
+
+    Parameters
+    ----------
+    first, stop : int
+        Offsets of words in the block, of one document.
+    character : int
+        Where the first of them stands in the text of the store.
+
+    Returns
+    -------
+    starts, ends : int64 arrays, shape (stop - first,)
+        Code points in the text of the store.
+    """
+    steps = read_column(store, block.number, STEP)[first:stop].astype(np.int64)
+    widths = read_column(store, block.number, WIDTH)[first:stop].astype(np.int64)
+    starts: Int64Array = character + np.cumsum(steps) - steps[:1].sum()
+    return starts, starts + widths
+
+
+def tells_places(store: Store, block: int) -> bool:
+    """Whether a block's words were read as words, and have their places in the text beside them."""
+    return STEP in column_names(store, block)
 
 
 def _is_there(store: Store, table: str) -> bool:

@@ -52,7 +52,7 @@ def versions(store: Store) -> dict[str, str]:
 
 
 def parts_of(store: Store, layer: str, expression: str) -> list[str]:
-    """The words of an expression, as the store's segmenter divides it; those with ``*`` stand as they are.
+    """The words of an expression, as the store's segmenter divides it; those with ``*``, and known words, stay whole.
 
     Raises
     ------
@@ -62,7 +62,9 @@ def parts_of(store: Store, layer: str, expression: str) -> list[str]:
     segmenter = Segmenter(segment_settings(store))
     parts: list[str] = []
     for piece in expression.split():
-        if "*" in piece or layer not in _PLAIN_LAYERS:
+        # words of annotated text ('s, n't, a comma) are what their annotation says, not what a segmenter makes of them
+        as_it_stands = "*" in piece or layer not in _PLAIN_LAYERS
+        if as_it_stands or vocabulary.term_numbers(store, layer, [piece])[0] >= 0:
             parts.append(piece)
             continue
         found = segmenter.segment(piece)

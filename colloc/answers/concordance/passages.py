@@ -1,4 +1,8 @@
-"""From token places to the text: a short stretch around each is segmented again and compared with the stream."""
+"""From token places to the text.
+
+A short stretch of plain text around each is segmented again and compared with
+the stream; words of annotated text have their places beside them.
+"""
 
 from __future__ import annotations
 
@@ -15,6 +19,7 @@ from colloc.answers.concordance.matching import segment_settings, versions
 from colloc.errors import DataError, StoreDamagedError
 from colloc.records import NO_TERM, DocumentRow, Int64Array, UInt32Array
 from colloc.store import documents, stream, vocabulary
+from colloc.store.annotation import tells_places, word_places
 from colloc.store.connection import Store
 from colloc.store.stream import Block
 from colloc.store.texts import read_text
@@ -233,18 +238,39 @@ class PassageReader(StreamReader):
         end, end_character = self._anchor_after(stop, row)
         key = (begin, end)
         if key not in self._stretches:
-            last = row.first_character + row.n_characters
-            text = read_text(self._store, character, min(end_character + 1, last))
-            length = end_character - character
-            segments = self._segmenter.segment(text[:length], text[length:], opening=True)
-            spans = zip(segments.starts.tolist(), segments.ends.tolist(), strict=True)
-            forms = [_nfc(text[start:stop]) for start, stop in spans]
             if len(self._stretches) >= _STRETCHES_HELD:
                 self._stretches.pop(next(iter(self._stretches)))
-            self._stretches[key] = _Stretch(
-                begin, segments.starts + character, segments.ends + character, forms, text[:length], character
-            )
+            annotated = tells_places(self._store, self._block_of(begin))
+            make = self._written if annotated else self._segmented
+            self._stretches[key] = make(begin, end, character, end_character, row)
         return self._stretches[key]
+
+    def _segmented(self, begin: int, end: int, character: int, end_character: int, row: DocumentRow) -> _Stretch:
+        """Plain text: segmented again."""
+        last = row.first_character + row.n_characters
+        text = read_text(self._store, character, min(end_character + 1, last))
+        length = end_character - character
+        segments = self._segmenter.segment(text[:length], text[length:], opening=True)
+        spans = zip(segments.starts.tolist(), segments.ends.tolist(), strict=True)
+        forms = [_nfc(text[start:stop]) for start, stop in spans]
+        return _Stretch(begin, segments.starts + character, segments.ends + character, forms, text[:length], character)
+
+    def _written(self, begin: int, end: int, character: int, end_character: int, row: DocumentRow) -> _Stretch:
+        """Annotated text: its words have their places beside them."""
+        starts, ends, first, at = [], [], begin, character
+        while first < end:
+            block = self._block(self._block_of(first))
+            stop = min(end, block.first_token + len(block.tokens))
+            own = word_places(self._store, block, first - block.first_token, stop - block.first_token, at)
+            starts.append(own[0])
+            ends.append(own[1])
+            first = stop
+            if first < end:
+                # each block begins with a sentence, which is an anchor
+                at = int(self._block(self._block_of(first)).anchors.characters[0])
+        forms = self.forms(self.types(begin, end))
+        text = read_text(self._store, character, end_character)
+        return _Stretch(begin, np.concatenate(starts), np.concatenate(ends), forms, text, character)
 
     def _anchor_before(self, place: int, row: DocumentRow) -> tuple[int, int]:
         number = self._block_of(place)
