@@ -12,9 +12,6 @@ from colloc.cli.output import remark, settings_line
 from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
-_ENDINGS = {".xlsx": "xlsx", ".jsonl": "jsonl", ".json": "dmlex-json", ".xml": "dmlex-xml"}
-_ENDINGS |= {".tei": "tei", ".ttl": "turtle", ".jsonld": "jsonld", ".graphml": "graphml", "": "csv"}
-
 
 def export(
     store: opt.StoreArgument,
@@ -55,9 +52,11 @@ def export(
     rejected. Formats: CSV with a Data Package description, XLSX, JSON Lines, OASIS
     DMLex 1.0 (JSON, XML), TEI Lex-0, OntoLex-Lemon with FrAC (Turtle, JSON-LD), GraphML.
     """
+    from colloc.exports.entries.formats import FORMATS
     from colloc.verbs import exporting
 
-    chosen = format or _ENDINGS.get(output.suffix.lower())
+    endings = {made.ending: name for name, made in FORMATS.items()}
+    chosen = format or endings.get(output.suffix.lower())
     if chosen is None:
         raise UsageError(f"{output}: say in which format with --format")
     with ProgressLine(quiet=quiet) as progress:

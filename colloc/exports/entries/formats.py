@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
 from colloc.answers.judging.entries import Entries
 from colloc.errors import CannotCreateError, UsageError
-from colloc.exports.entries import dmlex, jsonlines, tabular
+from colloc.exports.entries import dmlex, jsonlines, network, ontolex, rdf, tabular, tei
 from colloc.exports.replacing import replacing
 
 
@@ -52,7 +52,19 @@ FORMATS: Mapping[str, Format] = {
     "dmlex-xml": Format(
         "OASIS DMLex 1.0, XML", ".xml", lambda entries, wish: dmlex.dmlex_xml(entries, wish.language, wish.title)
     ),
+    "tei": Format("TEI Lex-0", ".tei", lambda entries, wish: tei.tei_lex(entries, wish.language, wish.title)),
+    "turtle": Format(
+        "OntoLex-Lemon with FrAC, Turtle", ".ttl", lambda entries, wish: rdf.turtle(_triples(entries, wish))
+    ),
+    "jsonld": Format(
+        "OntoLex-Lemon with FrAC, JSON-LD", ".jsonld", lambda entries, wish: rdf.json_ld(_triples(entries, wish))
+    ),
+    "graphml": Format("the network of words, GraphML", ".graphml", lambda entries, _: network.graphml(entries)),
 }
+
+
+def _triples(entries: Entries, wishes: Wishes) -> Iterator[ontolex.Triple]:
+    return ontolex.triples(entries, wishes.language, wishes.title, wishes.base_iri)
 
 
 def find_format(name: str) -> Format:
