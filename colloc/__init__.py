@@ -29,12 +29,14 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.asking import pairs as pairs
     from colloc.verbs.asking import words as words
     from colloc.verbs.contrasting import contrast as contrast
+    from colloc.verbs.drifting import drift as drift
     from colloc.verbs.evidence import explain as explain
     from colloc.verbs.evidence import lines as lines
     from colloc.verbs.evidence import picture as picture
     from colloc.verbs.exporting import entries as entries
     from colloc.verbs.exporting import export as export
     from colloc.verbs.expressions import expressions as expressions
+    from colloc.verbs.features import features as features
     from colloc.verbs.joining import join as join
     from colloc.verbs.joining import make_joiner as make_joiner
     from colloc.verbs.judging import candidates as candidates
@@ -77,11 +79,13 @@ _HOMES = {
     "decisions": "colloc.verbs.judging",
     "documents": "colloc.verbs.keeping",
     "documents_by": "colloc.verbs.keeping",
+    "drift": "colloc.verbs.drifting",
     "entries": "colloc.verbs.exporting",
     "errors": "colloc",
     "explain": "colloc.verbs.evidence",
     "export": "colloc.verbs.exporting",
     "expressions": "colloc.verbs.expressions",
+    "features": "colloc.verbs.features",
     "floors": "colloc.verbs.asking",
     "info": "colloc.verbs.keeping",
     "join": "colloc.verbs.joining",
