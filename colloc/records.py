@@ -30,6 +30,10 @@ class SourceInfo:
     """Modification time, seconds since the epoch; 0 where unknown."""
 
 
+CONLLU_COLUMNS = ("id", "form", "lemma", "upos", "xpos", "feats", "head", "deprel", "deps", "misc")
+"""Columns of CoNLL-U, where nothing else is said."""
+
+
 @dataclass(frozen=True, slots=True)
 class Annotation:
     """Says that a document's pieces are words already: a line a word, its columns divided by tabs.

@@ -19,13 +19,11 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from itertools import chain, pairwise
 
-from colloc.records import Annotation, Document, MetaValue
+from colloc.records import CONLLU_COLUMNS, Annotation, Document, MetaValue
 from colloc.text.lines import byte_length, too_long
 from colloc.text.metadata import typed
 from colloc.text.opening import Opened
 
-COLUMNS = ("id", "form", "lemma", "upos", "xpos", "feats", "head", "deprel", "deps", "misc")
-"""Those of CoNLL-U."""
 TABLE = "tokens"
 """The format whose first line is a header."""
 MOST_COLUMNS = 64
@@ -144,7 +142,7 @@ def _columns(opened: Opened, first: str) -> tuple[tuple[str, ...], int]:
     elif match := _GLOBAL_COLUMNS.fullmatch(first.rstrip()):
         given = match[1].split()
     else:
-        return COLUMNS, 0
+        return CONLLU_COLUMNS, 0
     names = tuple(name.strip().lower() for name in given)
     if len(names) > MOST_COLUMNS or len(first) > LONGEST_HEADER:
         raise opened.error(f"more than {MOST_COLUMNS} columns, or their names too long: leave some out", 1)
