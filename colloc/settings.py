@@ -31,11 +31,21 @@ def _choice(name: str, value: str, allowed: tuple[str, ...]) -> None:
         raise UsageError(f"{name} must be one of {', '.join(allowed)}, not {value!r}")
 
 
+def _later(default: Any) -> Any:
+    """A field that stores made before it do not have."""
+    return dataclasses.field(default=default, metadata={"later": True})
+
+
 class _Jsonable:
     """Settings go into the store and beside results as plain JSON objects."""
 
     def to_json(self) -> str:
-        return json.dumps(dataclasses.asdict(self), sort_keys=True)  # type: ignore[call-overload]
+        values: dict[str, Any] = dataclasses.asdict(self)  # type: ignore[call-overload]
+        for field in dataclasses.fields(self):  # type: ignore[arg-type]
+            # What came later is written where it was chosen only, so that older stores are as they were.
+            if field.metadata.get("later") and values[field.name] == field.default:
+                del values[field.name]
+        return json.dumps(values, sort_keys=True)
 
     @classmethod
     def from_json(cls, text: str) -> Self:
@@ -102,6 +112,8 @@ class ReadSettings(_Jsonable):
     max_unpacked: int = 64 * 2**30
     """Largest unpacked size in bytes of one compressed file."""
     skip_duplicates: Literal["none", "document", "paragraph"] = "none"
+    meta_xpath: tuple[str, ...] = _later(())
+    """``name=XPath``: metadata from the headers of TEI documents."""
 
     def __post_init__(self) -> None:
         _choice("errors", self.errors, ("strict", "replace"))

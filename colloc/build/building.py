@@ -22,11 +22,14 @@ from colloc.store.opening import Store, create, open_for_writing
 from colloc.store.scratch import scratch_folder
 from colloc.store.stream import token_count
 from colloc.store.vocabulary import ensure_layer
+from colloc.text.iterables import PythonDocuments, cannot_be_resumed
 from colloc.text.sources import open_sources
 
 _WRITER_BYTES = 128 * 2**20
 _WORKER_BYTES = 128 * 2**20
 """What the writing process and each segmenting one take at most with batches of the usual size, measured."""
+
+__all__ = ["BuildReport", "PythonDocuments", "build", "check_space", "fill", "report", "resources", "versions"]
 
 NOTHING_READ = Read(0, 0, 0, 0, 0, 0)
 
@@ -100,6 +103,9 @@ def build(
     limits = resources(jobs, memory, temp)
     path = Path(path)
     new, useless = _is_new(path), False
+    once = cannot_be_resumed(inputs)
+    if once and not new:
+        raise CannotCreateError(f"{path} exists already: use `add` for more documents, or another name")
     if new:
         check_space(
             path, [(source.info.name, source.info.size) for source in open_sources(inputs, read or ReadSettings())]
@@ -110,15 +116,15 @@ def build(
                 return _report(store, NOTHING_READ, began, already_complete=True)
             try:
                 done = fill(store, inputs, limits, progress, read or ReadSettings())
-            except CollocError:
-                # A store that got nothing is no use to anyone; one that got something is gone on with.
-                useless = new and not token_count(store)
+            except BaseException as error:
+                # A store that got nothing is no use to anyone; one that got something is gone on with, if it can be.
+                useless = new and (once or (isinstance(error, CollocError) and not token_count(store)))
                 raise
             with store.transaction():
                 facts.put(store, "state", "complete")
             store.make_durable()
             return _report(store, done, began)
-    except CollocError:
+    except BaseException:
         if useless:
             path.unlink(missing_ok=True)
         raise

@@ -16,7 +16,9 @@ from colloc.errors import CollocError, DataError, NotSeenError, UsageError
 from colloc.settings import DEFAULT_MEMORY, ReadSettings
 from colloc.store import documents, facts, slices, visibility
 from colloc.store.connection import Store
+from colloc.store.inputs.sources import source_list
 from colloc.store.opening import open_for_writing
+from colloc.text.iterables import PythonDocuments, cannot_be_resumed
 
 
 def add(
@@ -44,14 +46,18 @@ def add(
     began = time.perf_counter()
     limits = resources(jobs, memory, temp)
     with open_for_writing(Path(path), "add") as store:
+        _drop_unresumable(store)
+        if isinstance(inputs, PythonDocuments):
+            inputs = inputs.named_apart(source.info.name for source in source_list(store))
         wanted = (read or ReadSettings.from_json(facts.get(store, "read_settings"))).to_json()
         _begin(store, {"state": "adding", "pending_inputs": json.dumps(list(inputs)), "pending_read": wanted})
         try:
             done = fill(store, inputs, limits, progress, ReadSettings.from_json(wanted))
-        except (CollocError, UnicodeError):
-            with store.transaction():
-                visibility.drop_uncounted(store)
-                _end(store)
+        except BaseException as error:
+            if isinstance(error, CollocError | UnicodeError) or cannot_be_resumed(inputs):
+                with store.transaction():
+                    visibility.drop_uncounted(store)
+                    _end(store)
             raise
         with store.transaction():
             _end(store)
@@ -102,6 +108,14 @@ def require_complete(store: Store) -> None:
     raise DataError(
         f"{store.path}: `colloc {command}` of {inputs} was interrupted; run it again to finish it before another change"
     )
+
+
+def _drop_unresumable(store: Store) -> None:
+    """Take back what an ``add`` from an iterable left that was killed: nobody can go on with it."""
+    if facts.get(store, "state") == "adding" and cannot_be_resumed(json.loads(facts.get(store, "pending_inputs"))):
+        with store.transaction():
+            visibility.drop_uncounted(store)
+            _end(store)
 
 
 def _begin(store: Store, pending: dict[str, str]) -> None:

@@ -17,6 +17,7 @@ from colloc.store.connection import Store
 from colloc.store.inputs.repeats import SeenHashes
 from colloc.store.inputs.sources import SourceRow, add_source, find_source, finish
 from colloc.store.vocabulary import TypeRegistry
+from colloc.text.iterables import IterableSource
 from colloc.text.sources import Source, open_sources
 
 Progress = Callable[[float, int, str], None]
@@ -129,7 +130,7 @@ def _count(store: Store, key: str, value: int) -> None:
 class _Sources:
     """The sources of a run beside what the store knows of them."""
 
-    def __init__(self, store: Store, sources: list[Source]) -> None:
+    def __init__(self, store: Store, sources: list[Source | IterableSource]) -> None:
         self._store = store
         self._sources = sources
         self._rows: list[SourceRow] = []

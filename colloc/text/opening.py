@@ -8,11 +8,11 @@ import itertools
 import os
 import stat
 import sys
-from collections.abc import Generator, Iterator, Mapping
+from collections.abc import Callable, Generator, Iterator, Mapping
 from contextlib import contextmanager
 from typing import BinaryIO
 
-from colloc.errors import DataError, InputOutputError, NoInputError
+from colloc.errors import DataError, InputOutputError, NoInputError, UsageError
 from colloc.records import MetaValue
 from colloc.settings import ReadSettings
 from colloc.text.compression import DamagedError, packing_by_content, packing_by_name, unpack
@@ -99,6 +99,7 @@ class Opened:
         self._hash = hashlib.blake2b(digest_size=16)
         self._consumed = 0
         self._size = -1
+        self._share = 0.0
         self._exhausted = False
         self._drained = False
         self._decoder: Decoder | None = None
@@ -114,7 +115,16 @@ class Opened:
         """Share of the raw bytes read so far; 0 until the end where the size is unknown."""
         if self._exhausted:
             return 1.0
-        return min(self._consumed / self._size, 1.0) if self._size > 0 else 0.0
+        return max(min(self._consumed / self._size, 1.0) if self._size > 0 else 0.0, self._share)
+
+    def say_share(self, share: float) -> None:
+        """Note how much has been read (0..1), where a reader opens the file itself."""
+        self._share = share
+
+    @property
+    def is_packed_by_name(self) -> bool:
+        """Whether the file's name promises packed data."""
+        return packing_by_name(self.name) is not None
 
     def digest(self) -> str:
         """BLAKE2b-128 of the raw bytes, in hexadecimal; only once all have been read."""
@@ -179,8 +189,14 @@ class Opened:
                 return
             yield chunk
 
-    def text(self) -> Iterator[str]:
+    def text(self, declared: Callable[[bytes], str | None] | None = None) -> Iterator[str]:
         """The text in pieces of at most 1 Mi code points, cut anywhere. Can be gone through once.
+
+        Parameters
+        ----------
+        declared : function or None
+            Tells from the first bytes which encoding the file itself declares, if it does. It counts where the
+            settings name none (``utf-8`` is what they say by themselves), but not against a byte order mark.
 
         Raises
         ------
@@ -194,7 +210,7 @@ class Opened:
         if kind:
             raise self.error(f"{kind}, not text: convert it to text first")
         try:
-            codec, mark = choose_encoding(head, checked_encoding(self.settings.encoding))
+            codec, mark = choose_encoding(head, self._encoding(head, declared))
         except UnknownEncodingError as error:
             raise self.error(str(error)) from error
         if seems_binary(head, codec):
@@ -211,6 +227,17 @@ class Opened:
                 f"byte {error.offset}{unpacked} (0x{error.found[:4].hex()}) is not {error.codec}: "
                 "name the file's encoding (or 'detect'), or choose errors 'replace'"
             ) from error
+
+    def _encoding(self, head: bytes, declared: Callable[[bytes], str | None] | None) -> str:
+        """The encoding that the settings name, or else the file itself."""
+        named = checked_encoding(self.settings.encoding)
+        own = declared(head) if declared is not None and named in ("utf-8", "detect") else None
+        if own is None or choose_encoding(head, "utf-8")[1]:
+            return named
+        try:
+            return checked_encoding(own)
+        except UsageError as error:
+            raise self.error(f"it declares the encoding {own!r}, which is unknown: name its encoding") from error
 
 
 @contextmanager

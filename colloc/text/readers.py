@@ -45,6 +45,11 @@ FORMATS = {
         Format("tsv", (".tsv",), "colloc.text.delimited"),
         Format("conllu", (".conllu", ".conllup", ".cupt"), "colloc.text.conllu"),
         Format("tokens", (".tokens",), "colloc.text.conllu"),
+        Format("tei", (".xml", ".tei"), "colloc.text.markup.tei"),
+        Format("html", (".html", ".htm", ".xhtml"), "colloc.text.markup.html"),
+        Format("epub", (".epub",), "colloc.text.markup.epub"),
+        Format("parquet", (".parquet", ".pq"), "colloc.text.columnar"),
+        Format("arrow", (".arrow", ".feather", ".ipc", ".arrows"), "colloc.text.columnar"),
     )
 }
 

@@ -7,6 +7,7 @@ from collections.abc import Iterator, Mapping, Sequence
 from colloc.records import Document, MetaValue, SourceInfo
 from colloc.settings import ReadSettings
 from colloc.text.decoding import checked_encoding
+from colloc.text.iterables import IterableSource, PythonDocuments
 from colloc.text.listing import InputFile, list_inputs
 from colloc.text.metadata import FileMetadata
 from colloc.text.opening import Opened
@@ -64,8 +65,10 @@ class Source:
             opened.close()
 
 
-def open_sources(inputs: Sequence[str], settings: ReadSettings) -> Iterator[Source]:
+def open_sources(inputs: Sequence[str], settings: ReadSettings) -> Iterator[Source | IterableSource]:
     """The sources that ``inputs`` mean: as given, folders walked in sorted order, each file once.
+
+    `PythonDocuments` in their place are one source.
 
     Everything that can be known without opening the inputs is checked first.
 
@@ -78,6 +81,8 @@ def open_sources(inputs: Sequence[str], settings: ReadSettings) -> Iterator[Sour
     DataError
         For a link loop, a wrong metadata table, or a path that does not match the pattern.
     """
+    if isinstance(inputs, PythonDocuments):
+        return iter([IterableSource(inputs, settings)])
     checked_encoding(settings.encoding)
     files = list_inputs(inputs, settings.format, apart=settings.meta_table).files
     metadata = FileMetadata(settings, files)

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
+from colloc.errors import UsageError
 from colloc.settings import DEFAULT_MEMORY, Margins, ReadSettings, SegmentSettings, TallySpec
 from colloc.verbs.opening import ProgressCall, StorePath, as_list, reading, store_path
 
@@ -16,8 +17,9 @@ if TYPE_CHECKING:
 
 def build(
     store: StorePath | Store,
-    inputs: Sequence[str] | str,
+    inputs: Sequence[str] | str = (),
     *,
+    documents: Iterable[Any] | None = None,
     read: ReadSettings | None = None,
     segment: SegmentSettings | None = None,
     tally: TallySpec | None = None,
@@ -32,8 +34,17 @@ def build(
 
     A build that was stopped goes on with the same call; on a complete store it does nothing.
 
+    Parameters
+    ----------
+    documents : iterable, instead of inputs
+        Each document is a text; ``(identifier, text)`` or ``(identifier, text, metadata)``; or a mapping with the
+        key ``text`` (``read.text_column``), perhaps ``id`` (``read.id_column``), and metadata. It is read once, as
+        it comes; a build that is stopped leaves nothing.
+
     Raises
     ------
+    UsageError
+        Both inputs and documents, or neither.
     NoInputError, DataError
         Input that is missing, holds no text, or is not what it claims to be.
     CannotCreateError
@@ -43,7 +54,7 @@ def build(
 
     return building.build(
         store_path(store),
-        as_list(inputs),
+        _inputs(inputs, documents),
         read=read,
         segment=segment,
         tally=tally,
@@ -58,20 +69,38 @@ def build(
 
 def add(
     store: StorePath | Store,
-    inputs: Sequence[str] | str,
+    inputs: Sequence[str] | str = (),
     *,
+    documents: Iterable[Any] | None = None,
     read: ReadSettings | None = None,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
     temp: str | None = None,
     progress: ProgressCall | None = None,
 ) -> BuildReport:
-    """Read more documents into a store and count only them."""
+    """Read more documents into a store and count only them; ``documents`` as for `build`."""
     from colloc.build import changing
 
     return changing.add(
-        store_path(store), as_list(inputs), read=read, jobs=jobs, memory=memory, temp=temp, progress=progress
+        store_path(store),
+        _inputs(inputs, documents),
+        read=read,
+        jobs=jobs,
+        memory=memory,
+        temp=temp,
+        progress=progress,
     )
+
+
+def _inputs(inputs: Sequence[str] | str, documents: Iterable[Any] | None) -> Sequence[str]:
+    """What is to be read: names of files, or documents from Python."""
+    if documents is None:
+        return as_list(inputs)
+    if inputs:
+        raise UsageError("give inputs or documents, not both")
+    from colloc.build.building import PythonDocuments
+
+    return PythonDocuments(documents)
 
 
 def remove(

@@ -1,0 +1,1 @@
+"""Readers of marked-up text: HTML, EPUB and TEI."""
