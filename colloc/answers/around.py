@@ -12,6 +12,7 @@ from colloc.answers.columns import Columns
 from colloc.answers.pairs import as_columns, filtered, score, text_ranks
 from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
+from colloc.answers.sureness.floors import Floors, Shuffle
 from colloc.answers.sureness.hypotheses import Hypotheses, pairs_of_words
 from colloc.answers.sureness.judging import Judge
 from colloc.answers.sureness.wishes import Wishes, divided
@@ -23,6 +24,10 @@ from colloc.store import vocabulary
 from colloc.store.connection import Store
 
 Sides = Literal["both", "left", "right", "each"]
+ROLES: dict[Side, str] = {"right": "head", "left": "dependent"}
+"""What the word asked for is in a relation, by the side that its company stands on in the table."""
+ALL_RELATIONS = "all"
+"""Asks for every relation apart."""
 
 
 def around(
@@ -53,7 +58,8 @@ def around(
     Parameters
     ----------
     side : {"both", "left", "right", "each"}
-        ``each``: both sides apart, with a column ``side``.
+        ``each``: both sides apart, with a column ``side``. Of relations: ``right`` are the words that depend on the
+        word asked for, ``left`` those it depends on; the column ``role`` says what the word asked for is.
     upos : sequence of str
         Only companions of these word classes, each apart, with a column ``upos``; the layer must tell word classes.
     avoid : bool
@@ -70,23 +76,20 @@ def around(
     if side not in get_args(Sides):
         raise UsageError(f"side must be one of {', '.join(get_args(Sides))}, not {side!r}")
     options = options or PairOptions()
+    if options.relation == ALL_RELATIONS:
+        raise UsageError("all relations apart are asked for with around_relations")
     _, margins = resolve_spec(store, options)
     show, wishes = divided(show, wishes)
     ranking, names = measure_names(measure or ("g2" if avoid else None), show, margins)
     question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
-    if side != "both" and question.reader.ordered:
-        raise UsageError(
-            "side divides a symmetric window: leave it out with directed, left/right, positions or relation"
-        )
-    if side != "both" and question.spec.kind == "unit":
-        raise UsageError("units that hold both words have no sides: leave out side")
+    sides = _sides(question, side, avoid)
     if avoid:
         check_avoidance(question, wishes, min_expected, any_strength)
     terms = headwords(store, question.layer, words)
     classes = word_classes(store, question.layer, upos)
     least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
-    sides: tuple[Side, ...] = ("left", "right") if side == "each" else (side,)
     parts: list[Columns] = []
+    floors: dict[Shuffle, Floors] = {}
     for one_side in sides:
         family: Hypotheses | None = None
         if avoid:
@@ -106,6 +109,7 @@ def around(
             min_word_count,
             side=one_side,
             family=family,
+            floors=floors,
             jobs=jobs,
             memory=memory,
             progress=progress,
@@ -117,7 +121,9 @@ def around(
         for upos_name, kept in in_classes(rows, classes):
             table, first, second = _ranked(question, kept, terms, ranking, avoid, limit)
             columns = as_columns(first, second, table, names, {})
-            if side == "each":
+            if question.spec.kind == "relation":
+                columns = Columns({"role": [ROLES[one_side]] * len(table), **columns.data})
+            elif side == "each":
                 columns = Columns({"side": [one_side] * len(table), **columns.data})
             if upos_name is not None:
                 columns = Columns({"upos": [upos_name] * len(table), **columns.data})
@@ -137,6 +143,20 @@ def around(
         limit=limit,
     )
     return Columns({name: np.concatenate([part[name] for part in parts]) for name in parts[0].names}, settings)
+
+
+def _sides(question: Question, side: Sides, avoid: bool) -> tuple[Side, ...]:
+    """The sides that are asked one after the other."""
+    kind = question.spec.kind
+    if kind == "relation":
+        if avoid and side != "right":
+            raise UsageError("what a word avoids in a relation is asked of heads only: add side right")
+        return ("right", "left") if side in ("both", "each") else (side,)
+    if side != "both" and question.reader.ordered:
+        raise UsageError("side divides a symmetric window: leave it out with directed, left/right or positions")
+    if side != "both" and kind == "unit":
+        raise UsageError("units that hold both words have no sides: leave out side")
+    return ("left", "right") if side == "each" else (side,)
 
 
 def headwords(store: Store, layer: str, words: Sequence[str]) -> list[int]:

@@ -76,7 +76,8 @@ def shuffled_stretches(
         cuts = np.clip(edges[first : last + 2], stretch.first, stretch.stop) - stretch.first
         part = np.repeat(np.arange(first, last + 1), np.diff(cuts))
         terms = _shuffled_within(stretch.terms, part, random)
-        for number in {int(first), int(last)}:
+        # the part that goes on from before comes first, so that its urn is used before the next one takes its place
+        for number in range(int(first), int(last) + 1, max(int(last - first), 1)):
             begin, stop = int(edges[number]), int(edges[number + 1])
             if begin >= stretch.first and stop <= stretch.stop:
                 continue

@@ -2,16 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
 
 from colloc.records import Anchors, DocumentRow, SourceInfo
+from colloc.settings import TallySpec
 from colloc.store import documents, stream, visibility
 from colloc.store.inputs import sources
 from colloc.store.opening import create
-from colloc.store.vocabulary import TypeRegistry, ensure_layer
+from colloc.store.vocabulary import TypeKey, TypeRegistry, ensure_layer
 
 
 @dataclass(frozen=True)
@@ -35,15 +37,27 @@ def random_documents(seed: int, n: int, n_terms: int, longest: int) -> list[Plac
     return made
 
 
-def write_store(path: Path, made: list[Placed], n_terms: int, block: int, removed: tuple[int, ...] = ()) -> None:
-    """Keep documents in blocks of ``block`` tokens, cut anywhere; then remove some."""
+def write_store(
+    path: Path,
+    made: list[Placed],
+    n_terms: int,
+    block: int,
+    removed: tuple[int, ...] = (),
+    types: Sequence[TypeKey] | None = None,
+    layer: str = "fold",
+) -> None:
+    """Keep documents in blocks of ``block`` tokens, cut anywhere; then remove some.
+
+    ``types`` are what the terms stand for, w000, w001, ... when not given.
+    """
     firsts = np.cumsum([0, *[len(document.terms) for document in made]])
     tokens = np.array([term for document in made for term in document.terms], np.uint32)
     starts = [first + s for first, document in zip(firsts, made, strict=False) for s in document.sentences]
     sentences = np.array(starts, np.int64)
-    with create(path, {}) as store, store.transaction():
-        TypeRegistry(store).number([f"w{term:03}" for term in range(n_terms)])
-        ensure_layer(store, "fold")
+    asked = {"default_tally": TallySpec(layer=layer).to_json(), "default_margins": "pairs", "state": "complete"}
+    with create(path, asked) as store, store.transaction():
+        TypeRegistry(store).number(types or [f"w{term:03}" for term in range(n_terms)])
+        ensure_layer(store, layer)
         source = sources.add_source(store, SourceInfo("made", 0, 0.0))
         rows = [
             DocumentRow(i, f"d{i}", source, i, int(firsts[i]), len(d.terms), 0, 0, {"genre": d.genre})

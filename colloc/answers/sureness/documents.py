@@ -8,12 +8,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colloc.answers.questions import Question
-from colloc.answers.tables import PairTable, Side, Sums, TableMaker
+from colloc.answers.tables import Convention, PairTable, Side, Sums, TableMaker
 from colloc.counts.candidates import CandidatePass
 from colloc.counts.grouping import GROUPS, GroupedMargins
 from colloc.measures.intervals import Interval, jackknife
 from colloc.measures.pmi import pmi
 from colloc.records import FloatArray, Int64Array, WordCounts
+from colloc.settings import TallySpec
 
 SOUND_JOINT, SOUND_DOCUMENTS = 20, 10
 """Meetings, and documents with one, from which on the interval was found to hold what it promises."""
@@ -82,8 +83,12 @@ def document_evidence(
     sound = np.zeros(n, np.bool_)
     if intervals:
         columns = (found.second, found.first) if side == "left" else (found.first, found.second)
-        replicates = _replicates(question, joint, by_group, found.margins, *columns, side)
-        interval = _interval(pmi(*table.arguments), replicates)
+        replicates = np.full(by_group.shape, -np.inf)
+        if found.margins is not None:
+            replicates = without_each_group(
+                question.spec, question.convention, joint, by_group, found.margins, *columns, side
+            )
+        interval = document_interval(pmi(*table.arguments), replicates)
         sound = (table.joint >= SOUND_JOINT) & (documents >= SOUND_DOCUMENTS) & (n_groups == GROUPS)
     return DocumentEvidence(documents, dp_norm, largest, interval, sound)
 
@@ -128,36 +133,44 @@ class _Spread:
         return self._documents, np.where(never, np.nan, dp_norm), np.where(never, np.nan, self._largest)
 
 
-def _replicates(
-    question: Question,
+def without_each_group(
+    spec: TallySpec,
+    convention: Convention,
     joint: Int64Array,
     by_group: Int64Array,
-    margins: GroupedMargins | None,
+    margins: GroupedMargins,
     first: Int64Array,
     second: Int64Array,
-    side: Side,
+    side: Side = "both",
 ) -> FloatArray:
-    """PMI without each group, shape (n_groups, n)."""
-    result = np.full(by_group.shape, -np.inf)
-    if margins is None:
-        return result
+    """PMI of everything but one group of documents, for each group.
+
+    Parameters
+    ----------
+    joint : int64 array, shape (n,)
+    by_group : int64 array, shape (n_groups, n)
+        The joint counts of each group.
+    first, second : int64 arrays, shape (n,)
+        The columns of ``margins`` that belong to the words of each pair.
+
+    Returns
+    -------
+    float64 array, shape (n_groups, n)
+    """
+    result = np.empty(by_group.shape)
     tables = (margins.first, margins.second, margins.words)
     sums = [table.sum(axis=0) for table in tables]
     one, two = first.astype(np.uint32), second.astype(np.uint32)
     for group in range(len(by_group)):
-        rows, columns, words = (
-            whole - table[group]
-            for whole, table in zip(sums, (margins.first, margins.second, margins.words), strict=True)
-        )
+        rows, columns, words = (whole - table[group] for whole, table in zip(sums, tables, strict=True))
         total = int(margins.total.sum() - margins.total[group])
-        maker = TableMaker(
-            Sums(question.spec, total, rows, columns), question.convention, WordCounts(words, np.zeros_like(words))
-        )
+        maker = TableMaker(Sums(spec, total, rows, columns), convention, WordCounts(words, np.zeros_like(words)))
         result[group] = pmi(*maker.counted(one, two, joint - by_group[group], side).arguments)
     return result
 
 
-def _interval(value: FloatArray, replicates: FloatArray) -> Interval:
+def document_interval(value: FloatArray, replicates: FloatArray) -> Interval:
+    """The jackknife interval; without bounds where there are not two groups to leave out."""
     if len(replicates) < 2:
         unknown = np.full(len(value), np.inf)
         return Interval(-unknown, unknown, unknown)

@@ -44,7 +44,8 @@ LEAST_PAIRS = 1000
 """Bands with fewer pairs are joined with the one below: a percentile of fewer says little."""
 _SAMPLE = 2**17
 """Pairs of a band that are measured; of larger bands a random sample."""
-_ENOUGH_TOKENS, _MOST_ROUNDS = 2_000_000, 20
+ENOUGH_TOKENS, MOST_ROUNDS = 1_000_000, 10
+"""A text is shuffled again until so many words have been, but not more often."""
 
 Progress = Callable[[float, int, str], None]
 
@@ -146,7 +147,7 @@ def make_floors(
     """
     tokens = int(question.words.tokens.sum())
     if rounds is None:
-        rounds = int(np.clip(-(-_ENOUGH_TOKENS // max(tokens, 1)), 1, _MOST_ROUNDS))
+        rounds = int(np.clip(-(-ENOUGH_TOKENS // max(tokens, 1)), 1, MOST_ROUNDS))
     generation = facts.generation(question.store)
     gathered = _Bands(floor_measures(question), rounds)
     random = np.random.default_rng([seed, SHUFFLES.index(shuffle)])

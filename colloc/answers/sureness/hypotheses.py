@@ -101,8 +101,8 @@ def _may_be_below(table: PairTable, log_p: float) -> np.ndarray:
     """Which rows may have a p-value below exp(log_p): cheap, and never wrong about the others.
 
     The mid-p value is at least half the probability of the table itself, whose logarithm is (see
-    `colloc.measures.exact`) at least -G2/2 - ln(2 pi a)/2 - 1/6 + ln(1 - C/N)/2; and for attraction, since
-    ln x <= x - 1, G2/2 is at most a ln(a/E) + (a - E) (d/Ed - b/Eb - c/Ec).
+    `colloc.measures.exact`) at least -G2/2 - ln(2 pi a)/2 - 1/6 + ln(1 - C/N)/2; and since ln x <= x - 1, G2/2 is
+    at most a ln(a/E) + (a - E) (d/Ed - b/Eb - c/Ec).
     """
     a, first, second, total = (column.astype(np.float64) for column in table.arguments)
     with np.errstate(divide="ignore", invalid="ignore"):
@@ -110,6 +110,6 @@ def _may_be_below(table: PairTable, log_p: float) -> np.ndarray:
         b, c, d = first - a, second - a, total - first - second + a
         most = a * np.log(a / e) + (a - e) * (d / (d - a + e) - b / (first - e) - c / (second - e))
         least_log_p = -most - 0.5 * np.log(2 * np.pi * a) - 1 / 6 + 0.5 * np.log1p(-second / total) - np.log(2)
-    # repulsion, and tables with an empty margin, are tested in any case
-    likely: np.ndarray = ~((a > e) & (least_log_p > log_p))
+    # tables with an empty cell of expected counts are tested in any case
+    likely: np.ndarray = ~(least_log_p > log_p)
     return likely

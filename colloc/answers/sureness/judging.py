@@ -48,6 +48,8 @@ class Judge:
         The word threshold, which decides which pairs are tested.
     family : Hypotheses or None
         The tests that q-values are among; all pairs of the store when not given.
+    floors : dict or None
+        Where floors are kept once they are there; judges of the two sides of a word share one.
     """
 
     def __init__(
@@ -59,6 +61,7 @@ class Judge:
         *,
         side: Side = "both",
         family: Hypotheses | None = None,
+        floors: dict[Shuffle, Floors] | None = None,
         jobs: int | None = None,
         memory: int = DEFAULT_MEMORY,
         progress: Progress | None = None,
@@ -68,7 +71,7 @@ class Judge:
         self._given_family = family
         self._jobs, self._memory = jobs, memory
         self._progress = progress
-        self._floors: dict[Shuffle, Floors] = {}
+        self._floors: dict[Shuffle, Floors] = {} if floors is None else floors
         self.columns = wishes.shown(question.convention.margins, question.spec.kind)
         self.floor_measure = ranking if ranking in floor_measures(question) else "pmi"
 
