@@ -23,6 +23,7 @@ if typing.TYPE_CHECKING:
     from colloc.settings import ReadSettings as ReadSettings
     from colloc.settings import SegmentSettings as SegmentSettings
     from colloc.settings import TallySpec as TallySpec
+    from colloc.verbs.appraising import appraise as appraise
     from colloc.verbs.asking import around as around
     from colloc.verbs.asking import floors as floors
     from colloc.verbs.asking import measure as measure
@@ -71,6 +72,7 @@ _HOMES = {
     "TallySpec": "colloc.settings",
     "add": "colloc.verbs.making",
     "agreement": "colloc.verbs.spaces",
+    "appraise": "colloc.verbs.appraising",
     "around": "colloc.verbs.asking",
     "build": "colloc.verbs.making",
     "candidates": "colloc.verbs.judging",

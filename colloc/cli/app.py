@@ -38,6 +38,7 @@ COMMAND_MODULES = (
     "joining",
     "scoring",
     "judging",
+    "appraising",
     "exporting",
 )
 """Modules of ``colloc.cli.commands``, in the order of the help page."""

@@ -1,0 +1,1 @@
+"""Which measure finds what a person, or a list, calls right."""

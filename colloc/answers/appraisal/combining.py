@@ -1,0 +1,189 @@
+"""A ranking learnt from labels: regularised logistic regression over the measures, with honest cross-validation.
+
+Pairs that share their first word are never divided between training and test. The
+strength of the regularisation is chosen inside each training part, and so is the
+single measure that the combination is compared with.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colloc.answers.appraisal.labelled import Labelled, pair_codes, ranking_values
+from colloc.answers.columns import Columns
+from colloc.answers.pairs import text_ranks
+from colloc.answers.ranking import TopRows
+from colloc.errors import MissingExtraError, UsageError
+from colloc.measures.retrieval import average_precision, steps
+from colloc.records import FloatArray
+from colloc.store import vocabulary
+
+FOLDS, INNER_FOLDS = 5, 3
+STRENGTHS = (0.01, 0.1, 1.0, 10.0)
+"""Inverse strengths of the regularisation that are tried."""
+LEAST = 20
+"""Wanted candidates, and others, from which on something can be learnt."""
+MOST_TRAINED = 20_000
+"""Candidates a model learns from: all wanted ones and a seeded choice of the others."""
+
+
+@dataclass(frozen=True, slots=True)
+class Combination:
+    """What was learnt.
+
+    Attributes
+    ----------
+    out_of_fold : float64 array, shape (n,)
+        For each candidate the log odds by a model that has not seen it.
+    folds : Columns
+        fold, candidates, wanted, combined (average precision of the combination), single (of the measure that was
+        best in training), measure (its name), strength (chosen).
+    weights : Columns
+        measure and weight of the model learnt from everything, on scores brought to a normal distribution.
+    model : object
+        That model, for :func:`ranked`.
+    measures : tuple of str
+    """
+
+    out_of_fold: FloatArray
+    folds: Columns
+    weights: Columns
+    model: Any
+    measures: tuple[str, ...]
+
+
+def combine(labelled: Labelled, scores: dict[str, FloatArray], *, seed: int = 0) -> Combination:
+    """Learn a combined ranking.
+
+    Parameters
+    ----------
+    scores : dict of str to float64 array
+        Ranking values by measure.
+
+    Raises
+    ------
+    MissingExtraError
+        Where scikit-learn is not installed.
+    UsageError
+        For too few wanted candidates, others or first words.
+    """
+    try:
+        from sklearn.model_selection import StratifiedGroupKFold
+    except ImportError as error:
+        raise MissingExtraError("a combined ranking needs scikit-learn: pip install 'colloc[judging]'") from error
+    features, wanted = _features(scores), labelled.wanted
+    groups = labelled.table.first.astype(np.int64)
+    few = min(int(wanted.sum()), int((~wanted).sum()))
+    of_wanted = min(len(np.unique(groups[wanted])), len(np.unique(groups[~wanted]))) if few else 0
+    if few < LEAST or of_wanted < FOLDS:
+        raise UsageError(
+            f"{int(wanted.sum())} wanted and {int((~wanted).sum())} other pairs are too few to learn from: "
+            f"{LEAST} of each are needed, with at least {FOLDS} different first words"
+        )
+    generator = np.random.default_rng(seed)
+    out = np.full(len(wanted), np.nan)
+    rows: list[dict[str, Any]] = []
+    folds = StratifiedGroupKFold(FOLDS, shuffle=True, random_state=seed)
+    for number, (train, test) in enumerate(folds.split(features, wanted, groups), 1):
+        train = _thinned(train, wanted, generator)
+        strength, model = _learnt(features[train], wanted[train], groups[train], seed)
+        out[test] = model.decision_function(features[test])
+        best = max(scores, key=lambda name: average_precision(steps(wanted[train], scores[name][train])))
+        rows.append(
+            {
+                "fold": number,
+                "candidates": len(test),
+                "wanted": int(wanted[test].sum()),
+                "combined": average_precision(steps(wanted[test], out[test])),
+                "single": average_precision(steps(wanted[test], scores[best][test])),
+                "measure": best,
+                "strength": strength,
+            }
+        )
+    everything = _thinned(np.arange(len(wanted)), wanted, generator)
+    _, model = _learnt(features[everything], wanted[everything], groups[everything], seed)
+    weights = {"measure": list(scores), "weight": model[-1].coef_[0]}
+    order = np.argsort(-np.abs(model[-1].coef_[0]), kind="stable")
+    settings = {"seed": seed, "groups": "first word", "folds": FOLDS}
+    columns = {name: [row[name] for row in rows] for name in rows[0]}
+    fold_columns = {name: values if name == "measure" else np.array(values) for name, values in columns.items()}
+    return Combination(
+        out, Columns(fold_columns, settings), Columns(weights, settings).take(order), model, tuple(scores)
+    )
+
+
+def ranked(combination: Combination, labelled: Labelled, min_count: int, limit: int) -> Columns:
+    """The pairs of the store that the model learnt from everything puts first.
+
+    Returns
+    -------
+    Columns
+        first, second, joint, combined (log odds of being wanted) and wanted (1 where the label says so).
+    """
+    question = labelled.question
+    top = TopRows(limit, lambda: text_ranks(question))
+    for table in question.reader.blocks():
+        chosen = table.take(table.joint >= max(min_count, 1))
+        if len(chosen):
+            scores = ranking_values(chosen, combination.measures)
+            top.add(chosen, combination.model.decision_function(_features(scores)))
+    table, odds, first, second = top.best(lambda terms: vocabulary.term_texts(question.store, question.layer, terms))
+    accepted = pair_codes(question, labelled.table.first, labelled.table.second)[labelled.wanted]
+    columns = {
+        "first": first,
+        "second": second,
+        "joint": table.joint,
+        "combined": odds,
+        "wanted": np.isin(pair_codes(question, table.first, table.second), accepted).astype(np.int64),
+    }
+    return Columns(columns, question.settings(min_count=min_count, limit=limit))
+
+
+def _features(scores: dict[str, FloatArray]) -> FloatArray:
+    """Infinities and what is no number at the ends of what is there: only the order matters to what follows."""
+    columns = []
+    for values in scores.values():
+        finite = values[np.isfinite(values)]
+        low, high = (float(finite.min()), float(finite.max())) if len(finite) else (0.0, 0.0)
+        columns.append(np.nan_to_num(values, nan=low, posinf=high, neginf=low))
+    return np.stack(columns, axis=1)
+
+
+def _thinned(rows: NDArray[np.int64], wanted: NDArray[np.bool_], generator: np.random.Generator) -> NDArray[np.int64]:
+    """All wanted rows and as many others as a model learns from; fewer others move the odds, not the order."""
+    if len(rows) <= MOST_TRAINED:
+        return rows
+    hits, others = rows[wanted[rows]], rows[~wanted[rows]]
+    kept = generator.choice(others, min(len(others), max(MOST_TRAINED - len(hits), len(hits))), replace=False)
+    return np.sort(np.concatenate([hits, kept]))
+
+
+def _learnt(features: FloatArray, wanted: NDArray[np.bool_], groups: NDArray[np.int64], seed: int) -> tuple[float, Any]:
+    """The strength with the least log loss in an inner cross-validation, and the model learnt with it."""
+    from sklearn.metrics import log_loss
+    from sklearn.model_selection import StratifiedGroupKFold
+
+    losses = dict.fromkeys(STRENGTHS, 0.0)
+    inner = StratifiedGroupKFold(INNER_FOLDS, shuffle=True, random_state=seed)
+    for train, test in inner.split(features, wanted, groups):
+        if len(np.unique(wanted[train])) < 2:
+            continue
+        for strength in STRENGTHS:
+            odds = _model(strength, len(train)).fit(features[train], wanted[train]).predict_proba(features[test])
+            losses[strength] += float(log_loss(wanted[test], odds, labels=[False, True])) * len(test)
+    strength = min(losses, key=lambda one: (losses[one], one))
+    return strength, _model(strength, len(wanted)).fit(features, wanted)
+
+
+def _model(strength: float, n: int) -> Any:
+    """Scores brought to a normal distribution by their ranks in training, then regression with an L2 penalty."""
+    from sklearn.linear_model import LogisticRegression
+    from sklearn.pipeline import make_pipeline
+    from sklearn.preprocessing import QuantileTransformer
+
+    ranks = QuantileTransformer(n_quantiles=min(200, n), output_distribution="normal", random_state=0)
+    return make_pipeline(ranks, LogisticRegression(C=strength, max_iter=2000))
