@@ -19,6 +19,7 @@ from colloc.counts.relations import read_dependents
 from colloc.counts.runs import Column, RunFile, load_runs, write_column, write_run
 from colloc.counts.selection import Selection, selection_of
 from colloc.counts.sequences.sharing import (
+    count_bags,
     count_fillers,
     count_joins,
     lay_out,
@@ -147,6 +148,7 @@ FILE_TASKS: dict[str, Callable[..., Facts]] = {
     "number_joins": number_joins,
     "survey_sequences": survey_sequences,
     "count_fillers": count_fillers,
+    "count_bags": count_bags,
     "spread_sequences": spread_sequences,
 }
 """Tasks on temporary files alone."""

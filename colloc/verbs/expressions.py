@@ -26,6 +26,7 @@ def expressions(
     names: Literal["drop", "keep"] = "drop",
     common: Literal["drop", "keep"] = "drop",
     fragments: Literal["fold", "keep"] = "fold",
+    slots: int = 0,
     rank: str = "strength",
     show: Sequence[str] | str | None = None,
     limit: int = 50,
@@ -37,9 +38,14 @@ def expressions(
 
     Parameters
     ----------
+    names, common, fragments : str
+        Whether to drop sequences that look like names or are made of the most frequent words only, and to fold
+        those that live inside a longer one into it.
+    slots : int
+        0: words side by side. Else frames with 1 to so many open slots, with what fills them.
     rank : str
-        ``strength``, ``weakest_split``, ``specific_correlation``, ``best_split_g2``, ``c_value``,
-        ``c_value_length``, ``count`` or ``documents``.
+        ``strength``, ``weakest_split``, ``specific_correlation``, ``specific_interaction``, ``best_split_g2``,
+        ``c_value``, ``c_value_length``, ``count`` or ``documents``.
     show : sequence of str
         Columns shown beside the expression; ``all`` for every one.
     limit : int
@@ -64,6 +70,7 @@ def expressions(
         names=names,
         common=common,
         fragments=fragments,
+        slots=slots,
         rank=rank,
     )
     with reading(store) as opened:

@@ -1,4 +1,4 @@
-"""Frequent sequences of all lengths in one table, each with its parts and its whole."""
+"""Frequent sequences of all lengths in one table, each with its parts."""
 
 from __future__ import annotations
 
@@ -13,10 +13,14 @@ from colloc.records import Int64Array
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Gathered:
-    """Contiguous sequences: single words first (their row is their term), then those of two words, three, ...
+    """Sequences by number of words: single words first (their row is their term), then those of two, three, ...
 
     Attributes
     ----------
+    levels : tuple of Level
+        By number of words; several of one number where there are open slots.
+    begins : int64 array
+        Row where each level begins.
     edges : tuple of int
         Row where the sequences of n + 1 words begin, and at the end the number of rows.
     left, right : int64 arrays, shape (rows,)
@@ -30,6 +34,8 @@ class Gathered:
         Units (sentences), which no sequence reaches beyond.
     """
 
+    levels: tuple[Level, ...]
+    begins: Int64Array
     edges: tuple[int, ...]
     left: Int64Array
     right: Int64Array
@@ -51,6 +57,10 @@ class Gathered:
     def lengths(self) -> Int64Array:
         """Words of each row."""
         return np.repeat(np.arange(1, len(self.edges)), np.diff(self.edges))
+
+    def level_of(self, rows: Int64Array) -> Int64Array:
+        """Place in ``levels`` of each row."""
+        return np.asarray(np.searchsorted(self.begins, rows, side="right") - 1, np.int64)
 
     def part(self, rows: Int64Array, words: int, begin: int, stop: int) -> Int64Array:
         """Row of the words ``begin`` to ``stop`` of each of some sequences of ``words`` words."""
@@ -74,17 +84,28 @@ class Gathered:
 
 
 def gather(levels: Sequence[Level], total: int, units: int) -> Gathered:
-    """The table of single words and contiguous levels of two words, three, ..."""
-    edges = (0, *np.cumsum([len(level) for level in levels]).tolist())
-    nothing = np.full(edges[1], -1)
-    left = [nothing, *(level.lefts + begin for level, begin in zip(levels[1:], edges, strict=False))]
-    right = [nothing, *(level.rights + begin for level, begin in zip(levels[1:], edges, strict=False))]
-    spreads = [level.spread for level in levels if level.spread is not None]
-    spread = Spread(
-        *(
-            np.concatenate([np.empty(0, np.int64), *(getattr(one, field.name) for one in spreads)])
-            for field in fields(Spread)
-        )
+    """The table of levels that hold, with each level of two words and more, its left and its right one too."""
+    ordered = tuple(sorted(levels, key=lambda level: (len(level.words), level.words)))
+    sizes = [len(level) for level in ordered]
+    begins = np.cumsum([0, *sizes[:-1]])
+    place = {id(level): int(begin) for level, begin in zip(ordered, begins, strict=True)}
+    longest = max(len(level.words) for level in ordered)
+    by_length = [sum(len(level) for level in ordered if len(level.words) == words) for words in range(1, longest + 1)]
+    nothing = np.full(by_length[0], -1)
+    left, right = [nothing], [nothing]
+    for level in ordered:
+        if level.left is not None and level.right is not None:
+            left.append(level.lefts + place[id(level.left)])
+            right.append(level.rights + place[id(level.right)])
+    spreads = [level.spread for level in ordered if level.spread is not None]
+    return Gathered(
+        ordered,
+        begins,
+        (0, *np.cumsum(by_length).tolist()),
+        np.concatenate(left),
+        np.concatenate(right),
+        np.concatenate([level.counts for level in ordered]),
+        Spread(*(np.concatenate([getattr(one, field.name) for one in spreads]) for field in fields(Spread))),
+        total,
+        units,
     )
-    counts = np.concatenate([level.counts for level in levels])
-    return Gathered(edges, np.concatenate(left), np.concatenate(right), counts, spread, total, units)

@@ -9,39 +9,19 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colloc.answers.columns import Columns
-from colloc.answers.expressions.folding import completeness, folded_into, wholes
+from colloc.answers.expressions.frames import frame_shapes, grown_frames, with_fillers
 from colloc.answers.expressions.gathering import Gathered, gather
-from colloc.answers.expressions.scoring import Bonds, bonds, c_values, nesting
-from colloc.answers.expressions.settings import COMMON_SHARE, NAME_SHARE, Asked, ExpressionOptions, resolve
+from colloc.answers.expressions.interaction import interactions
+from colloc.answers.expressions.judging import Judged, in_order, judge, texts
+from colloc.answers.expressions.orders import in_any_order
+from colloc.answers.expressions.scoring import c_values, nesting
+from colloc.answers.expressions.settings import Asked, ExpressionOptions, resolve, shown_columns
 from colloc.counts.sequences.growing import Grower, growing
-from colloc.errors import UsageError
-from colloc.records import FloatArray, Int64Array
+from colloc.records import Int64Array
 from colloc.settings import DEFAULT_MEMORY
 from colloc.store.connection import Store
-from colloc.store.vocabulary import term_texts
 
 Progress = Callable[[float, int, str], None]
-
-COLUMNS = (
-    *(
-        "expression",
-        "words",
-        "count",
-        "documents",
-        "dp_norm",
-        "capitals",
-        "strength",
-        "completeness",
-        "weakest_split",
-        "cut",
-    ),
-    *("specific_correlation", "best_split_g2", "c_value", "c_value_length", "fragment", "fragment_count", "fragments"),
-)
-SHOWN = (
-    *("expression", "count", "documents", "dp_norm", "strength", "weakest_split", "c_value"),
-    *("fragment", "fragment_count"),
-)
-"""What is shown when nothing else is asked for."""
 
 
 def expressions(
@@ -59,20 +39,18 @@ def expressions(
     Parameters
     ----------
     show : sequence of str
-        Columns beside the expression; ``all`` for every one. `SHOWN` and what ranks when not given.
+        Columns beside the expression; ``all`` for every one. A choice and what ranks when not given.
     limit : int
         Rows; 0 for all.
 
     Returns
     -------
     Columns
-        Of these, in this order, those that are shown:
-        expression, words, count, documents, dp_norm, capitals, strength, weakest_split, cut (words left of it),
-        specific_correlation, best_split_g2, c_value, c_value_length, fragment (the strongest folded into this one),
-        fragment_count, fragments (how many).
+        Those of `colloc.answers.expressions.settings.COLUMNS` that are shown, in this order.
     """
     asked = resolve(store, options)
-    shown = shown_columns(show, options.rank)
+    shown = shown_columns(show, options)
+    tell = progress if progress is not None else _silent
     with growing(
         store,
         layer=asked.layer,
@@ -82,159 +60,89 @@ def expressions(
         jobs=jobs,
         memory=memory,
     ) as grower:
-        table = _grown(grower, options.max_words + 1, progress)
-    return _ranked(store, asked, table, limit).select(shown)
+        table = _grown(grower, options, tell)
+        tell(1.0, grower.total, "ranking")
+        answer = _ranked(store, asked, grower, table, limit, shown)
+    return answer.select(shown)
 
 
-def shown_columns(show: Sequence[str] | None, rank: str) -> list[str]:
-    """The columns of an answer, in their order.
-
-    Raises
-    ------
-    UsageError
-        A name that is no column.
-    """
-    if show is not None and "all" in show:
-        return list(COLUMNS)
-    for name in show or ():
-        if name not in COLUMNS:
-            raise UsageError(f"no column {name!r}: choose from all, {', '.join(COLUMNS)}")
-    chosen = {"expression", rank, *(SHOWN if show is None else show)}
-    return [name for name in COLUMNS if name in chosen]
-
-
-def _grown(grower: Grower, longest: int, progress: Progress | None) -> Gathered:
-    tell = progress if progress is not None else _silent
+def _grown(grower: Grower, options: ExpressionOptions, tell: Progress) -> Gathered:
+    if options.slots:
+        shapes = frame_shapes(options.min_words, options.max_words, options.slots)
+        return gather(grown_frames(grower, shapes, tell), grower.total, grower.units)
     levels = [grower.single]
-    for words in range(2, longest + 1):
-        tell((words - 2) / (longest - 1), grower.total, f"sequences of {words} words")
+    # one word more than is asked for, to see which are only fragments
+    for words in range(2, options.max_words + 2):
+        tell((words - 2) / options.max_words, grower.total, f"sequences of {words} words")
         levels.append(grower.join(levels[-1], levels[-1], 1))
-    tell(1.0, grower.total, "ranking")
     return gather(levels, grower.total, grower.units)
 
 
-def strength(table: Gathered, weakest: FloatArray) -> FloatArray:
-    """What expressions are ranked by: weakest split in bits, times log2 of 1 + the occurrences elsewhere.
-
-    Elsewhere is outside the document that holds most of them, so that one document's repeats and names carry no
-    weight; where all tokens are in one document, all occurrences count. (Own definition.)
-    """
-    counts = table.counts[table.edges[1] :]
-    alone = table.spread.documents.max(initial=0) < 2
-    elsewhere = counts if alone else counts - table.spread.largest
-    result: FloatArray = weakest * np.log2(1.0 + elsewhere)
-    return result
-
-
-def _ranked(store: Store, asked: Asked, table: Gathered, limit: int) -> Columns:
-    options, first = asked.options, table.edges[1]
-    held = bonds(table)
-    fit = table.spread.documents >= asked.min_docs
-    if options.names == "drop":
-        # NaN, where every word begins a sentence or is a single letter (headings), compares as false
-        fit &= table.spread.capitals < NAME_SHARE
-    whole = wholes(table, fit) if options.fragments == "fold" else np.arange(first, table.edges[-1])
-    holding = np.where(fit, strength(table, held.weakest), -np.inf)
-    fragment, best, fragments = folded_into(whole, holding, first)
-    complete = completeness(table)
-    by_log, by_length = c_values(table, nesting(table, fit))
-    lengths = table.lengths[first:]
-    shown = fit & (whole == np.arange(first, table.edges[-1]))
-    shown &= (lengths >= options.min_words) & (lengths <= options.max_words)
-    if options.common == "drop":
-        shown &= ~only_common(table)
-    scores: dict[str, NDArray[Any]] = {
-        "strength": np.where(best > 0, best * complete, best),
-        "weakest_split": held.weakest,
-        "specific_correlation": held.correlation,
-        "best_split_g2": held.g2,
-        "c_value": by_log,
-        "c_value_length": by_length,
-        "count": table.counts[first:],
-        "documents": table.spread.documents,
-        "completeness": complete,
-    }
-    chosen, texts = _in_order(store, asked.layer, table, np.flatnonzero(shown), scores[options.rank], limit)
-    return _columns(store, asked, table, chosen, texts, held, scores, fragment, fragments)
-
-
-def only_common(table: Gathered) -> NDArray[np.bool_]:
-    """Which sequences are made only of the words that make up the first half of the running text."""
-    counts = table.counts[: table.edges[1]]
-    order = np.argsort(-counts, kind="stable")
-    before = np.cumsum(counts[order]) - counts[order]
-    common = np.zeros(table.edges[-1], bool)
-    common[order[before < COMMON_SHARE * table.total]] = True
-    for words in range(2, table.longest + 1):
-        rows = table.rows(words)
-        common[rows] = common[table.left[rows]] & common[table.right[rows]]
-    return common[table.edges[1] :]
-
-
-def _in_order(
-    store: Store, layer: str, table: Gathered, rows: Int64Array, score: NDArray[Any], limit: int
-) -> tuple[Int64Array, list[str]]:
-    """Rows by score, count and text, with the texts; text is made only for what can reach the list."""
-    count = table.counts[table.edges[1] :]
-    order = np.lexsort((-count[rows], -score[rows]))
-    rows = rows[order]
-    if limit and len(rows) > limit:
-        last = rows[limit - 1]
-        reach = (score[rows] > score[last]) | ((score[rows] == score[last]) & (count[rows] >= count[last]))
-        rows = rows[reach]
-    texts = _texts(store, layer, table, rows)
-    ordered = sorted(range(len(rows)), key=lambda place: (-score[rows[place]], -count[rows[place]], texts[place]))
-    ordered = ordered[: limit or None]
-    return rows[ordered], [texts[place] for place in ordered]
-
-
-def _texts(store: Store, layer: str, table: Gathered, rows: Int64Array) -> list[str]:
-    """Words of rows (counted from the first of two words), joined by spaces; empty for -1."""
+def _ranked(store: Store, asked: Asked, grower: Grower, table: Gathered, limit: int, shown: Sequence[str]) -> Columns:
+    judged = judge(table, asked)
     first = table.edges[1]
-    lengths = table.lengths
-    texts = np.full(len(rows), "", dtype=object)
-    for words in range(2, table.longest + 1):
-        here = np.flatnonzero((rows >= 0) & (lengths[rows + first] == words))
-        terms = table.terms(rows[here] + first, words)
-        distinct, place = np.unique(terms, return_inverse=True)
-        names = np.array(term_texts(store, layer, distinct), dtype=object)[place.reshape(terms.shape)]
-        texts[here] = [" ".join(row) for row in names.tolist()]
-    return list(texts)
+    rows = np.flatnonzero(judged.listed) + first
+    scores = _scores(table, judged)
+    rank = asked.options.rank
+    if rank == "specific_interaction":
+        values = np.full(len(judged.listed), np.nan)
+        values[rows - first] = interactions(grower, table, rows)
+        scores[rank] = values
+    if asked.options.slots:
+        rows = rows[~np.array([level.contiguous for level in table.levels])[table.level_of(rows)]]
+        rows, fillers = with_fillers(store, asked, grower, table, rows, scores[rank], limit)
+    else:
+        fillers = {}
+    rows, found = in_order(store, asked.layer, table, rows, scores[rank], limit)
+    answer = _columns(store, asked, table, judged, scores, rows, found)
+    more: dict[str, Any] = {name: [column[int(row)] for row in rows] for name, column in fillers.items()}
+    more = {name: values if name == "fillers" else np.array(values) for name, values in more.items()}
+    if "specific_interaction" in shown and rank != "specific_interaction":
+        more["specific_interaction"] = interactions(grower, table, rows)
+    if "any_order" in shown and not asked.options.slots:
+        more["any_order"] = in_any_order(grower, table, rows)
+    return answer.adding(more)
+
+
+def _scores(table: Gathered, judged: Judged) -> dict[str, NDArray[Any]]:
+    """By name, for all sequences of two words and more."""
+    scores: dict[str, NDArray[Any]] = {
+        "count": table.counts[table.edges[1] :],
+        "documents": table.spread.documents,
+        "strength": judged.strength,
+        "weakest_split": judged.held.weakest,
+        "specific_correlation": judged.held.correlation,
+        "best_split_g2": judged.held.g2,
+    }
+    if all(level.contiguous for level in table.levels):
+        scores["c_value"], scores["c_value_length"] = c_values(table, nesting(table, judged.fit))
+    return scores
 
 
 def _columns(
     store: Store,
     asked: Asked,
     table: Gathered,
-    rows: Int64Array,
-    texts: list[str],
-    held: Bonds,
+    judged: Judged,
     scores: dict[str, NDArray[Any]],
-    fragment: Int64Array,
-    fragments: Int64Array,
+    rows: Int64Array,
+    found: list[str],
 ) -> Columns:
     first = table.edges[1]
-    core = np.where(fragment[rows] >= 0, fragment[rows] - first, -1)
-    counts = table.counts[first:]
+    here = rows - first
+    fragment = judged.fragment[here]
     return Columns(
         {
-            "expression": texts,
-            "words": table.lengths[first:][rows],
-            "count": counts[rows],
-            "documents": table.spread.documents[rows],
-            "dp_norm": table.spread.dp_norm[rows],
-            "capitals": table.spread.capitals[rows],
-            "strength": scores["strength"][rows],
-            "completeness": scores["completeness"][rows],
-            "weakest_split": held.weakest[rows],
-            "cut": held.cut[rows],
-            "specific_correlation": held.correlation[rows],
-            "best_split_g2": held.g2[rows],
-            "c_value": scores["c_value"][rows],
-            "c_value_length": scores["c_value_length"][rows],
-            "fragment": _texts(store, asked.layer, table, core),
-            "fragment_count": np.where(core >= 0, counts[core], 0),
-            "fragments": fragments[rows],
+            "expression": found,
+            "words": table.lengths[rows],
+            **{name: values[here] for name, values in scores.items()},
+            "dp_norm": table.spread.dp_norm[here],
+            "capitals": table.spread.capitals[here],
+            "completeness": judged.completeness[here],
+            "cut": judged.held.cut[here],
+            "fragment": texts(store, asked.layer, table, fragment),
+            "fragment_count": np.where(fragment >= 0, table.counts[fragment], 0),
+            "fragments": judged.fragments[here],
         },
         {**asked.settings(store), "tokens": table.total},
     )

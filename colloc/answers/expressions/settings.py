@@ -19,6 +19,7 @@ Rank = Literal[
     "strength",
     "weakest_split",
     "specific_correlation",
+    "specific_interaction",
     "best_split_g2",
     "c_value",
     "c_value_length",
@@ -26,6 +27,43 @@ Rank = Literal[
     "documents",
 ]
 RANKS: tuple[str, ...] = get_args(Rank)
+CONTIGUOUS_ONLY = ("c_value", "c_value_length", "any_order")
+"""Columns that frames with open slots do not have."""
+FRAMES_ONLY = ("fillers", "filler_kinds", "filler_entropy")
+COLUMNS = (
+    *("expression", "words", "count", "documents", "dp_norm", "capitals", "strength", "completeness", "weakest_split"),
+    *("cut", "specific_correlation", "specific_interaction", "best_split_g2", "c_value", "c_value_length", "any_order"),
+    *("fragment", "fragment_count", "fragments", "filler_kinds", "filler_entropy", "fillers"),
+)
+"""All columns of an answer, in their order:
+
+``expression``, ``words``
+    The words, ``_`` for an open slot, and how many words there are.
+``count``, ``documents``, ``dp_norm``
+    Occurrences, documents that hold it, and its dispersion over them.
+``capitals``
+    Share of its words written with a capital inside sentences.
+``strength``, ``completeness``
+    See `colloc.answers.expressions.judging` and `colloc.answers.expressions.folding`.
+``weakest_split``, ``cut``
+    PMI in bits across the cut where its halves cling least, and the number of words left of that cut.
+``specific_correlation``, ``specific_interaction``
+    Van de Cruys 2011, bits.
+``best_split_g2``
+    The largest G2 across any cut.
+``c_value``, ``c_value_length``
+    C-value weighted by log2 of the length, and by the length - 1.
+``any_order``
+    Times the same words stand side by side in any order.
+``fragment``, ``fragment_count``, ``fragments``
+    The strongest fragment folded into it, with its occurrences, and how many fragments there are.
+``filler_kinds``, ``filler_entropy``, ``fillers``
+    Different words in an open slot, their entropy in bits (where there are several slots: of the one where it is
+    smallest), and the most frequent with their counts, slots divided by ``|``.
+"""
+_SHOWN = ("count", "documents", "dp_norm", "strength", "weakest_split")
+SHOWN = (*_SHOWN, "c_value", "fragment", "fragment_count")
+SHOWN_OF_FRAMES = (*_SHOWN, "filler_kinds", "filler_entropy", "fillers")
 LONGEST = 8
 """Words of the longest expressions that can be asked for."""
 FEWEST_DOCUMENTS = 3
@@ -53,7 +91,10 @@ class ExpressionOptions:
     common : "drop" or "keep"
         Sequences made only of the most frequent words, those that make up half of the running text.
     fragments : "fold" or "keep"
-        Whether sequences that live inside a longer one are folded into it.
+        Whether sequences that live inside a longer one are folded into it (and frames of which one filler takes up
+        most are left out).
+    slots : int
+        0: words side by side. Else frames with 1 to so many open slots, each of one word.
     """
 
     layer: str | None = None
@@ -66,6 +107,7 @@ class ExpressionOptions:
     names: Treatment = "drop"
     common: Treatment = "drop"
     fragments: Literal["fold", "keep"] = "fold"
+    slots: int = 0
     rank: str = "strength"
 
     def __post_init__(self) -> None:
@@ -73,6 +115,10 @@ class ExpressionOptions:
             raise UsageError(
                 f"expressions have 2 to {LONGEST} words, the least first: not {self.min_words} to {self.max_words}"
             )
+        if not 0 <= self.slots <= MOST_WORDS - LONGEST:
+            raise UsageError(f"an expression has 0 to {MOST_WORDS - LONGEST} open slots, not {self.slots}")
+        if self.slots and self.rank in CONTIGUOUS_ONLY:
+            raise UsageError(f"{self.rank} is not defined for expressions with open slots: rank by another column")
         if self.min_count < 2:
             raise UsageError(f"min_count must be at least 2, not {self.min_count}: what occurs once does not recur")
         for name, value, allowed in (
@@ -110,6 +156,7 @@ class Asked:
             "names": chosen.names,
             "common": chosen.common,
             "fragments": chosen.fragments,
+            "slots": chosen.slots or None,
             "rank": chosen.rank,
         }
 
@@ -121,3 +168,23 @@ def resolve(store: Store, options: ExpressionOptions) -> Asked:
     documents = len(slices.select(store, where)) if where else document_count(store)
     fewest = min(FEWEST_DOCUMENTS, documents) if options.min_docs is None else options.min_docs
     return Asked(options, options.layer or built.layer, options.inside or built.inside, where, fewest)
+
+
+def shown_columns(show: Sequence[str] | None, options: ExpressionOptions) -> list[str]:
+    """The columns of an answer, in their order.
+
+    Raises
+    ------
+    UsageError
+        A name that is no column, or none of this kind of expression.
+    """
+    without = CONTIGUOUS_ONLY if options.slots else FRAMES_ONLY
+    known = [name for name in COLUMNS if name not in without]
+    if show is not None and "all" in show:
+        return known
+    for name in show or ():
+        if name not in known:
+            raise UsageError(f"no column {name!r} here: choose from all, {', '.join(known)}")
+    usual = SHOWN_OF_FRAMES if options.slots else SHOWN
+    chosen = {"expression", options.rank, *(usual if show is None else show)}
+    return [name for name in known if name in chosen]

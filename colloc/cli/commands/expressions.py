@@ -23,6 +23,7 @@ def expressions(
             "strength",
             "weakest_split",
             "specific_correlation",
+            "specific_interaction",
             "best_split_g2",
             "c_value",
             "c_value_length",
@@ -62,6 +63,12 @@ def expressions(
         Literal["fold", "keep"],
         typer.Option("--fragments", help="Fold sequences that live inside a longer one into it, or list them too."),
     ] = "fold",
+    slots: Annotated[
+        int,
+        typer.Option(
+            "--slots", metavar="N", min=0, help="Instead: frames with 1 to N open slots, and the words that fill them."
+        ),
+    ] = 0,
     limit: opt.LimitOption = LIMIT,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
@@ -90,6 +97,7 @@ def expressions(
             names=names,
             common=common,
             fragments=fragments,
+            slots=slots,
             rank=rank,
             show=opt.split_names(show),
             limit=limit,

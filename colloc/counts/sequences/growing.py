@@ -167,6 +167,28 @@ class Grower:
         _remove(runs)
         return index, term, counts
 
+    def bags(self, terms: Int64Array) -> Int64Array:
+        """How often some words stand side by side, in whatever order.
+
+        Parameters
+        ----------
+        terms : int64 array, shape (n, words)
+            Each row ascending; rows ascending, each once.
+        """
+        self._made += 1
+        name = f"bags-{self._made}"
+        chain = []
+        before = np.zeros(len(terms), np.int64)
+        for word in range(terms.shape[1]):
+            keys = before.astype(np.uint64) << np.uint64(32) | terms[:, word].astype(np.uint64)
+            distinct, before = np.unique(keys, return_inverse=True)
+            chain.append(self._keep(f"{name}-{word}", distinct))
+        asked = {"terms": asdict(self.single.ids), "room": self._room, "chain": chain, "folder": str(self._folder)}
+        counts = np.zeros(len(terms), np.int64)
+        for share in self._shares("count_bags", asked, name):
+            counts += _taken(share)
+        return counts
+
     def _begun(self, left: Level, right: Level, offset: int) -> tuple[str, tuple[int, ...], Facts]:
         words = tuple(sorted({*left.words, *(offset + word for word in right.words)}))
         if words[-1] >= MOST_WORDS:
