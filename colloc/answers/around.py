@@ -26,8 +26,6 @@ from colloc.store.connection import Store
 Sides = Literal["both", "left", "right", "each"]
 ROLES: dict[Side, str] = {"right": "head", "left": "dependent"}
 """What the word asked for is in a relation, by the side that its company stands on in the table."""
-ALL_RELATIONS = "all"
-"""Asks for every relation apart."""
 
 
 def around(
@@ -76,8 +74,6 @@ def around(
     if side not in get_args(Sides):
         raise UsageError(f"side must be one of {', '.join(get_args(Sides))}, not {side!r}")
     options = options or PairOptions()
-    if options.relation == ALL_RELATIONS:
-        raise UsageError("all relations apart are asked for with around_relations")
     _, margins = resolve_spec(store, options)
     show, wishes = divided(show, wishes)
     ranking, names = measure_names(measure or ("g2" if avoid else None), show, margins)
@@ -151,7 +147,7 @@ def _sides(question: Question, side: Sides, avoid: bool) -> tuple[Side, ...]:
     if kind == "relation":
         if avoid and side != "right":
             raise UsageError("what a word avoids in a relation is asked of heads only: add side right")
-        return ("right", "left") if side in ("both", "each") else (side,)
+        return ("right", "left") if side == "both" or side == "each" else (side,)
     if side != "both" and question.reader.ordered:
         raise UsageError("side divides a symmetric window: leave it out with directed, left/right or positions")
     if side != "both" and kind == "unit":

@@ -197,7 +197,7 @@ RelationOption = Annotated[
     _option(
         "--relation",
         metavar="NAME",
-        help="Pairs of head and dependent in this relation; an empty name takes all relations.",
+        help="Pairs of head and dependent in this relation; nmod:* with subtypes, an empty name all together.",
     ),
 ]
 

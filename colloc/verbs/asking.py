@@ -155,17 +155,21 @@ def around(
 ) -> Columns:
     """The company of each word, strongest first, ``limit`` rows a word; the word asked for is ``first``.
 
-    ``side="each"`` lists both sides apart, ``upos`` lists companions of these word classes apart; the other
-    parameters are those of `pairs`.
+    ``side="each"`` lists both sides apart, ``upos`` lists companions of these word classes apart; with a
+    ``relation`` the column ``role`` says whether the word asked for is head or dependent (``side="right"``: head only,
+    ``side="left"``: dependent only), and ``relation="all"`` lists every relation apart, in one table with the column
+    ``relation``. The other parameters are those of `pairs`.
 
     Raises
     ------
     NotSeenError
         When none of the words is in the store.
     """
-    from colloc.answers.around import around as ask_around
+    from colloc.answers.around import around as ask_one
+    from colloc.answers.relations import ALL_RELATIONS, around_relations
 
     options = pair_options(layer, window, left, right, unit, inside, margins, directed, spanned, where, relation)
+    ask_around = around_relations if relation == ALL_RELATIONS else ask_one
     with reading(store) as opened:
         return ask_around(
             opened,

@@ -140,7 +140,10 @@ def around(
     ] = None,
     side: Annotated[
         Literal["both", "left", "right", "each"],
-        typer.Option("--side", help="Which side of the word the others stand on; each lists both sides apart."),
+        typer.Option(
+            "--side",
+            help="Which side of the word the others stand on; each lists both apart. Relations: right are dependents.",
+        ),
     ] = "both",
     upos: Annotated[
         list[str] | None,
@@ -161,7 +164,14 @@ def around(
     margins: opt.MarginsOption = None,
     directed: opt.DirectedOption = False,
     no_span: opt.NoSpanOption = False,
-    relation: opt.RelationOption = None,
+    relation: Annotated[
+        str | None,
+        typer.Option(
+            "--relation",
+            metavar="NAME",
+            help="Heads and dependents in this relation; all lists every relation apart, in one table.",
+        ),
+    ] = None,
     where: opt.WhereOption = None,
     min_count: opt.MinJointOption = None,
     min_word_count: opt.MinWordCountOption = 1,
