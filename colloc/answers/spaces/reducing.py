@@ -97,3 +97,9 @@ def _orthonormal(block: NDArray[Any]) -> tuple[NDArray[Any], FloatArray, FloatAr
     squares, turn = np.linalg.eigh(gram)
     lengths = np.sqrt(np.maximum(squares, squares[-1] * 1e-14))
     return block @ (turn / lengths).astype(block.dtype), lengths, turn
+
+
+def powers(singular: FloatArray, power: float) -> FloatArray:
+    """Singular values to a power; those that are 0 but for rounding stay 0, also to the power 0."""
+    there = singular > (singular[0] * 1e-12 if len(singular) else 0.0)
+    return np.where(there, np.where(there, singular, 1.0) ** power, 0.0)

@@ -9,7 +9,7 @@ import numpy as np
 
 from colloc.answers.questions import PairOptions
 from colloc.answers.spaces.matrix import Matrix, MatrixOptions, matrix
-from colloc.answers.spaces.reducing import leading_vectors
+from colloc.answers.spaces.reducing import leading_vectors, powers
 from colloc.errors import UsageError
 from colloc.records import FloatArray
 from colloc.settings import DEFAULT_MEMORY
@@ -114,9 +114,7 @@ def reduced(made: Matrix, shape: VectorOptions) -> Vectors:
         More dimensions than rows or columns; ``join_contexts`` where a row is not among the contexts.
     """
     left, singular, right = leading_vectors(made.values, shape.dimensions, seed=shape.seed)
-    # A dimension that the matrix does not have has length 0, also to the power 0.
-    weights = np.where(singular > singular[0] * 1e-12, singular, 0.0) if len(singular) else singular
-    weights = np.where(weights > 0, weights**shape.power, 0.0)
+    weights = powers(singular, shape.power)
     values: FloatArray = left * weights
     if shape.join_contexts:
         values = values + (right.T * weights)[_context_places(made)]
