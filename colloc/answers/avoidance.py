@@ -181,12 +181,16 @@ def shown_avoidance(table: PairTable, family: Hypotheses) -> dict[str, FloatArra
         The PMI that such a count speaks against at 95 %: with the exact upper limit of a Poisson mean
         (Garwood 1936) in place of the joint count.
     """
+    return {"q_value": family.q_values(table), **sample_limits(table)}
+
+
+def sample_limits(table: PairTable) -> dict[str, FloatArray]:
+    """What counts so small can show at all: ``pmi_if_one`` and ``pmi_at_most`` of :func:`shown_avoidance`."""
     from scipy.special import gammaincinv
 
     joint = table.joint.astype(np.float64)
     often = expected(*table.arguments)
     return {
-        "q_value": family.q_values(table),
         "pmi_if_one": pmi(np.ones(len(table)), *table.arguments[1:]),
         "pmi_at_most": np.log2(gammaincinv(joint + 1.0, 0.95) / often),
     }

@@ -203,6 +203,13 @@ def test_a_pair_that_never_met(demo: Demo) -> None:
     assert len(card.examples) == len(card.forms) == len(card.by_document) == 0
     assert not card.measures["rank"].any()
     assert json.loads(card.to_json())["information"][0]["bits"] == "-inf"
+    assert card.avoidance is not None
+    # Rule of three (Hanley & Lippman-Hand 1983): nothing met, so at most -ln 0.05 = 3.0 expected at 95 %.
+    assert card.avoidance["pmi_at_most"] == pytest.approx(math.log2(-math.log(0.05) / card.table["expected"]))
+    assert card.avoidance["pmi_if_one"] == pytest.approx(math.log2(1 / card.table["expected"]))
+    seldom = colloc.explain(demo.store, "dogs", "puffins", examples=0)
+    assert seldom.table["expected"] < 5
+    assert any("cannot bear a claim that they avoid" in statement for statement in seldom.statements)
 
 
 def test_one_document_is_named(demo: Demo) -> None:

@@ -37,6 +37,9 @@ class Evidence:
         measure, method, value, low, high, trusted.
     tests : mapping
         p, log10_p, q, q_is (``exact`` or ``at most``), hypotheses; empty where margins have no cells.
+    avoidance : mapping or None
+        For pairs met less often than expected: pmi_if_one (PMI of a single meeting, the smallest association that
+        the sample could have shown) and pmi_at_most (what such a count speaks against at 95 %).
     floors : Columns
         shuffle, measure, value, floor, above; no rows where the store keeps none.
     spread : mapping
@@ -67,6 +70,7 @@ class Evidence:
     compared: Mapping[str, int]
     intervals: Columns
     tests: Mapping[str, Any]
+    avoidance: Mapping[str, float] | None
     floors: Columns
     spread: Mapping[str, Any]
     by_document: Columns

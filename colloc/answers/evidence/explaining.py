@@ -7,6 +7,7 @@ from typing import Any
 
 import numpy as np
 
+from colloc.answers.avoidance import sample_limits
 from colloc.answers.columns import Columns
 from colloc.answers.evidence import wording
 from colloc.answers.evidence.byslice import slice_tables
@@ -106,6 +107,7 @@ def explain(
         },
         "intervals": interval_rows(seen, table),
         "tests": tests_of(question, table, progress),
+        "avoidance": _avoidance(question, table),
         "floors": _floors(question, table),
         "spread": spread,
         "by_document": by_document,
@@ -197,6 +199,13 @@ def _mutual(question: Question, table: PairTable, information: float | None) -> 
         "table_bits": information,
         "share": float(bits / information) if information > 0 else float("nan"),
     }
+
+
+def _avoidance(question: Question, table: PairTable) -> dict[str, float] | None:
+    """What the sample could have shown of a pair that is met less often than expected."""
+    if question.convention.margins == "tokens" or table.joint[0] >= expected(*table.arguments)[0]:
+        return None
+    return {name: float(values[0]) for name, values in sample_limits(table).items()}
 
 
 def _floors(question: Question, table: PairTable) -> Columns:

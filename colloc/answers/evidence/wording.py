@@ -36,19 +36,18 @@ def _chance(parts: dict[str, Any], joint: float, often: float) -> list[str]:
     tests = parts["tests"]
     if not tests:
         return ["Margins of tokens make no table of cells, so nothing is tested."]
+    if joint < often < FEW:
+        return [
+            f"With an expected count of {_count(often)} even a complete absence would say nothing: "
+            "the sample cannot bear a claim that they avoid each other."
+        ]
     found = []
-    attraction = joint > often
     if tests["q"] <= 0.05:
         q = "below 0.0001" if tests["q"] < 0.0001 else f"{tests['q']:.2g}"
         bound = "at most " if tests["q_is"] == "at most" and tests["q"] >= 0.0001 else ""
         found.append(
             f"Chance is an unlikely explanation: among all {tests['hypotheses']:,} pairs of words the q-value "
             f"is {bound}{q}. Words of running text are not independent trials, so hold this against the documents."
-        )
-    elif not attraction and often < FEW:
-        found.append(
-            f"With an expected count of {_count(often)} even a complete absence would say nothing: "
-            "the sample cannot bear a claim that they avoid each other."
         )
     elif tests["q_is"] == "at most":
         found.append(
@@ -59,7 +58,15 @@ def _chance(parts: dict[str, Any], joint: float, often: float) -> list[str]:
             f"Among {tests['hypotheses']:,} pairs of words chance would bring forth some like this one "
             f"(q-value {tests['q']:.2g}): the sample cannot bear the claim."
         )
-    return found + _floors(parts["floors"])
+    if joint > often:
+        return found + _floors(parts["floors"])
+    limits = parts["avoidance"]
+    if limits is not None:
+        found.append(
+            f"Such a count speaks against any PMI above {limits['pmi_at_most']:.2f} bits; the smallest association "
+            f"that this sample could have shown, a single meeting, has PMI {limits['pmi_if_one']:.2f}."
+        )
+    return found
 
 
 def _floors(floors: Columns) -> list[str]:
