@@ -24,6 +24,8 @@ if typing.TYPE_CHECKING:
     from colloc.settings import SegmentSettings as SegmentSettings
     from colloc.settings import TallySpec as TallySpec
     from colloc.verbs.appraising import appraise as appraise
+    from colloc.verbs.annotated import conllu as conllu
+    from colloc.verbs.annotated import sequences as sequences
     from colloc.verbs.asking import around as around
     from colloc.verbs.asking import floors as floors
     from colloc.verbs.asking import measure as measure
@@ -77,6 +79,7 @@ _HOMES = {
     "build": "colloc.verbs.making",
     "candidates": "colloc.verbs.judging",
     "check": "colloc.verbs.keeping",
+    "conllu": "colloc.verbs.annotated",
     "contrast": "colloc.verbs.contrasting",
     "decisions": "colloc.verbs.judging",
     "documents": "colloc.verbs.keeping",
@@ -104,6 +107,7 @@ _HOMES = {
     "remove": "colloc.verbs.making",
     "score": "colloc.verbs.scoring",
     "scorer": "colloc.verbs.scoring",
+    "sequences": "colloc.verbs.annotated",
     "sheet": "colloc.verbs.judging",
     "similar": "colloc.verbs.spaces",
     "take_decisions": "colloc.verbs.judging",

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -14,6 +15,8 @@ from colloc.answers.ranking import TopRows
 from colloc.answers.sureness.judging import Judge
 from colloc.answers.sureness.wishes import Wishes, divided
 from colloc.answers.tables import PairTable
+from colloc.answers.wordclasses import TwoWords
+from colloc.errors import UsageError
 from colloc.measures.catalogue import MEASURES
 from colloc.measures.contingency import expected
 from colloc.records import FloatArray, Int64Array
@@ -37,6 +40,7 @@ def pairs(
     any_strength: bool = False,
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
+    upos: str | None = None,
     limit: int = 50,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -61,6 +65,10 @@ def pairs(
         Only pairs, met or not, that meet less often than expected, with a q-value of at most 0.05 (or ``max_q``).
     min_expected : float
         Avoidance is claimed for pairs with at least this expected count.
+    upos : str
+        A pattern of word classes (`colloc.answers.tagpatterns`) that the two words follow: directed, next to each
+        other unless a window is given, and in the layer ``lemma/upos`` unless another is given that tells word
+        classes. It acts on what is shown, never on the margins.
     limit : int
         Rows; 0 for all.
 
@@ -72,11 +80,14 @@ def pairs(
         by joint count, then by word.
     """
     options = options or PairOptions()
+    if upos is not None:
+        options = following(options)
     _, margins = resolve_spec(store, options)
     show, wishes = divided(show, wishes)
     ranking, names = measure_names(measure or ("g2" if avoid else None), show, margins)
     question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
     least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
+    pattern = TwoWords(store, question.layer, upos) if upos is not None else None
     if avoid:
         check_avoidance(question, wishes, min_expected, any_strength)
         found = avoiding_pairs(question, min_expected, min_word_count, wishes.max_q)
@@ -89,6 +100,7 @@ def pairs(
         top = TopRows(reach, lambda: text_ranks(question))
         for table in tables or question.reader.blocks():
             chosen = table if avoid else table.take(filtered(question, table, least, min_word_count, any_strength))
+            chosen = chosen if pattern is None else chosen.take(pattern.mask(chosen))
             chosen = chosen.take(judge.passing(chosen)) if len(chosen) else chosen
             if len(chosen):
                 top.add(chosen, score(ranking, chosen, avoid=avoid))
@@ -110,12 +122,26 @@ def pairs(
         any_strength=any_strength,
         **judge.settings(),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
+        **({"upos": upos} if upos is not None else {}),
         limit=limit,
     )
     columns = as_columns(first, second, table, names, settings)
     if family is not None:
         columns = columns.adding(shown_avoidance(table, family))
     return columns.adding(sureness)
+
+
+def following(options: PairOptions) -> PairOptions:
+    """Options for words that follow each other in a pattern: what they leave open is filled in."""
+    reaches = options.window is not None or options.left is not None or options.relation is not None
+    if options.unit:
+        raise UsageError("upos is a pattern of words that follow each other, which unit does not count: leave one out")
+    return replace(
+        options,
+        layer=options.layer or "lemma/upos",
+        window=options.window if reaches else 1,
+        directed=True,
+    )
 
 
 def filtered(

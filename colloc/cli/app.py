@@ -28,6 +28,7 @@ COMMAND_MODULES = (
     "keeping",
     "asking",
     "expressions",
+    "annotated",
     "shuffling",
     "showing",
     "contrasting",

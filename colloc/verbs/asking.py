@@ -69,6 +69,7 @@ def pairs(
     any_strength: bool = False,
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
+    upos: str | None = None,
     limit: int = DEFAULT_LIMIT,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -96,6 +97,9 @@ def pairs(
         Pairs that meet much less often than chance, or never, instead of those that meet more often.
     min_expected : float
         Least expected count for which avoidance is claimed.
+    upos : str
+        A pattern of word classes that the two words follow, next to each other unless a window is given: ``ADJ NOUN``
+        or ``ADJ|NOUN NOUN``. The layer is ``lemma/upos`` where none is given.
     """
     from colloc.answers.pairs import pairs as ask_pairs
 
@@ -112,6 +116,7 @@ def pairs(
             any_strength=any_strength,
             avoid=avoid,
             min_expected=min_expected,
+            upos=upos,
             limit=limit,
             jobs=jobs,
             memory=memory,

@@ -75,6 +75,14 @@ def pairs(
     any_strength: opt.AnyStrengthOption = False,
     avoid: opt.AvoidOption = False,
     min_expected: opt.MinExpectedOption = DEFAULT_MIN_EXPECTED,
+    upos: Annotated[
+        str | None,
+        typer.Option(
+            "--upos",
+            metavar="PATTERN",
+            help="Only neighbours of these word classes, as in 'ADJ NOUN' or 'ADJ|NOUN NOUN'; annotated text.",
+        ),
+    ] = None,
     limit: opt.LimitOption = LIMIT,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
@@ -122,6 +130,7 @@ def pairs(
             any_strength=any_strength,
             avoid=avoid,
             min_expected=min_expected,
+            upos=upos,
             limit=limit,
             jobs=jobs,
             memory=opt.memory_bytes(memory),
