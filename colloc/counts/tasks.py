@@ -22,6 +22,7 @@ from colloc.counts.sequences.sharing import (
     count_bags,
     count_fillers,
     count_joins,
+    count_matches,
     lay_out,
     merge_joins,
     number_joins,
@@ -149,6 +150,7 @@ FILE_TASKS: dict[str, Callable[..., Facts]] = {
     "survey_sequences": survey_sequences,
     "count_fillers": count_fillers,
     "count_bags": count_bags,
+    "count_matches": count_matches,
     "spread_sequences": spread_sequences,
 }
 """Tasks on temporary files alone."""

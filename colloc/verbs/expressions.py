@@ -27,6 +27,7 @@ def expressions(
     common: Literal["drop", "keep"] = "drop",
     fragments: Literal["fold", "keep"] = "fold",
     slots: int = 0,
+    pattern: str | None = None,
     rank: str = "strength",
     show: Sequence[str] | str | None = None,
     limit: int = 50,
@@ -43,6 +44,8 @@ def expressions(
         those that live inside a longer one into it.
     slots : int
         0: words side by side. Else frames with 1 to so many open slots, with what fills them.
+    pattern : str
+        Only sequences of word classes such as ``ADJ NOUN``, in annotated text.
     rank : str
         ``strength``, ``weakest_split``, ``specific_correlation``, ``specific_interaction``, ``best_split_g2``,
         ``c_value``, ``c_value_length``, ``count`` or ``documents``.
@@ -71,6 +74,7 @@ def expressions(
         common=common,
         fragments=fragments,
         slots=slots,
+        pattern=pattern,
         rank=rank,
     )
     with reading(store) as opened:

@@ -32,7 +32,7 @@ class Judged:
         What expressions are ranked by: `holding` of the sequence or of the strongest of its fragments, times its
         completeness.
     fit : bool array
-        Whether the sequence passes what was asked of documents and names.
+        Whether the sequence passes what was asked of documents, names and word classes.
     listed : bool array
         Whether it is also no fragment, not too long or short, and not made of common words only.
     fragment : int64 array
@@ -50,8 +50,14 @@ class Judged:
     fragments: Int64Array
 
 
-def judge(table: Gathered, asked: Asked) -> Judged:
-    """All that the table itself says of its sequences."""
+def judge(table: Gathered, asked: Asked, matched: Int64Array | None = None) -> Judged:
+    """All that the table itself says of its sequences.
+
+    Parameters
+    ----------
+    matched : int64 array, optional
+        Occurrences that follow the pattern asked for, of all sequences of two words and more.
+    """
     options, first = asked.options, table.edges[1]
     own = np.arange(first, table.edges[-1])
     held = bonds(table)
@@ -59,6 +65,8 @@ def judge(table: Gathered, asked: Asked) -> Judged:
     if options.names == "drop":
         # NaN, where every word begins a sentence or is a single letter (headings), compares as false
         fit &= table.spread.capitals < NAME_SHARE
+    if matched is not None:
+        fit &= 2 * matched >= table.counts[first:]
     whole = wholes(table, fit) if options.fragments == "fold" else own
     fragment, best, fragments = folded_into(whole, np.where(fit, holding(table, held.weakest), -np.inf), first)
     complete = completeness(table)

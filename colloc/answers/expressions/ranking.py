@@ -16,6 +16,8 @@ from colloc.answers.expressions.judging import Judged, in_order, judge, texts
 from colloc.answers.expressions.orders import in_any_order
 from colloc.answers.expressions.scoring import c_values, nesting
 from colloc.answers.expressions.settings import Asked, ExpressionOptions, resolve, shown_columns
+from colloc.answers.patterns import matches
+from colloc.counts.runs import Column
 from colloc.counts.sequences.growing import Grower, growing
 from colloc.records import Int64Array
 from colloc.settings import DEFAULT_MEMORY
@@ -60,9 +62,13 @@ def expressions(
         jobs=jobs,
         memory=memory,
     ) as grower:
+        pattern = options.pattern
+        # before the long work: the store may not tell word classes
+        places = None if pattern is None else grower.keep_matches(matches(store, pattern, asked.where))
         table = _grown(grower, options, tell)
+        matched = None if places is None else _matched(grower, table, places)
         tell(1.0, grower.total, "ranking")
-        answer = _ranked(store, asked, grower, table, limit, shown)
+        answer = _ranked(store, asked, grower, table, matched, limit, shown)
     return answer.select(shown)
 
 
@@ -78,8 +84,21 @@ def _grown(grower: Grower, options: ExpressionOptions, tell: Progress) -> Gather
     return gather(levels, grower.total, grower.units)
 
 
-def _ranked(store: Store, asked: Asked, grower: Grower, table: Gathered, limit: int, shown: Sequence[str]) -> Columns:
-    judged = judge(table, asked)
+def _matched(grower: Grower, table: Gathered, places: Column) -> Int64Array:
+    """Occurrences of all sequences of two words and more that stand where as long a match begins."""
+    return np.concatenate([grower.matching(level, places) for level in table.levels[1:]])
+
+
+def _ranked(
+    store: Store,
+    asked: Asked,
+    grower: Grower,
+    table: Gathered,
+    matched: Int64Array | None,
+    limit: int,
+    shown: Sequence[str],
+) -> Columns:
+    judged = judge(table, asked, matched)
     first = table.edges[1]
     rows = np.flatnonzero(judged.listed) + first
     scores = _scores(table, judged)
@@ -101,6 +120,8 @@ def _ranked(store: Store, asked: Asked, grower: Grower, table: Gathered, limit: 
         more["specific_interaction"] = interactions(grower, table, rows)
     if "any_order" in shown and not asked.options.slots:
         more["any_order"] = in_any_order(grower, table, rows)
+    if matched is not None:
+        more["pattern_count"] = matched[rows - first]
     return answer.adding(more)
 
 

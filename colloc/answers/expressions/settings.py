@@ -29,11 +29,12 @@ Rank = Literal[
 RANKS: tuple[str, ...] = get_args(Rank)
 CONTIGUOUS_ONLY = ("c_value", "c_value_length", "any_order")
 """Columns that frames with open slots do not have."""
+PATTERNS_ONLY = ("pattern_count",)
 FRAMES_ONLY = ("fillers", "filler_kinds", "filler_entropy")
 COLUMNS = (
     *("expression", "words", "count", "documents", "dp_norm", "capitals", "strength", "completeness", "weakest_split"),
     *("cut", "specific_correlation", "specific_interaction", "best_split_g2", "c_value", "c_value_length", "any_order"),
-    *("fragment", "fragment_count", "fragments", "filler_kinds", "filler_entropy", "fillers"),
+    *("pattern_count", "fragment", "fragment_count", "fragments", "filler_kinds", "filler_entropy", "fillers"),
 )
 """All columns of an answer, in their order:
 
@@ -55,6 +56,8 @@ COLUMNS = (
     C-value weighted by log2 of the length, and by the length - 1.
 ``any_order``
     Times the same words stand side by side in any order.
+``pattern_count``
+    Occurrences that follow the pattern of word classes asked for.
 ``fragment``, ``fragment_count``, ``fragments``
     The strongest fragment folded into it, with its occurrences, and how many fragments there are.
 ``filler_kinds``, ``filler_entropy``, ``fillers``
@@ -95,6 +98,9 @@ class ExpressionOptions:
         most are left out).
     slots : int
         0: words side by side. Else frames with 1 to so many open slots, each of one word.
+    pattern : str
+        Only sequences of which at least half of the occurrences follow this pattern of word classes from end to end;
+        see `colloc.answers.tagpatterns`.
     """
 
     layer: str | None = None
@@ -108,6 +114,7 @@ class ExpressionOptions:
     common: Treatment = "drop"
     fragments: Literal["fold", "keep"] = "fold"
     slots: int = 0
+    pattern: str | None = None
     rank: str = "strength"
 
     def __post_init__(self) -> None:
@@ -119,6 +126,8 @@ class ExpressionOptions:
             raise UsageError(f"an expression has 0 to {MOST_WORDS - LONGEST} open slots, not {self.slots}")
         if self.slots and self.rank in CONTIGUOUS_ONLY:
             raise UsageError(f"{self.rank} is not defined for expressions with open slots: rank by another column")
+        if self.slots and self.pattern is not None:
+            raise UsageError("a pattern of word classes leaves no slot open: give either a pattern or slots")
         if self.min_count < 2:
             raise UsageError(f"min_count must be at least 2, not {self.min_count}: what occurs once does not recur")
         for name, value, allowed in (
@@ -157,6 +166,7 @@ class Asked:
             "common": chosen.common,
             "fragments": chosen.fragments,
             "slots": chosen.slots or None,
+            "pattern": chosen.pattern,
             "rank": chosen.rank,
         }
 
@@ -178,13 +188,17 @@ def shown_columns(show: Sequence[str] | None, options: ExpressionOptions) -> lis
     UsageError
         A name that is no column, or none of this kind of expression.
     """
-    without = CONTIGUOUS_ONLY if options.slots else FRAMES_ONLY
+    without: tuple[str, ...] = CONTIGUOUS_ONLY if options.slots else FRAMES_ONLY
+    if options.pattern is None:
+        without += PATTERNS_ONLY
     known = [name for name in COLUMNS if name not in without]
     if show is not None and "all" in show:
         return known
     for name in show or ():
         if name not in known:
             raise UsageError(f"no column {name!r} here: choose from all, {', '.join(known)}")
-    usual = SHOWN_OF_FRAMES if options.slots else SHOWN
+    usual: tuple[str, ...] = SHOWN_OF_FRAMES if options.slots else SHOWN
+    if options.pattern is not None:
+        usual += PATTERNS_ONLY
     chosen = {"expression", options.rank, *(usual if show is None else show)}
     return [name for name in known if name in chosen]

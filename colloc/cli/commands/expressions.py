@@ -69,6 +69,10 @@ def expressions(
             "--slots", metavar="N", min=0, help="Instead: frames with 1 to N open slots, and the words that fill them."
         ),
     ] = 0,
+    pattern: Annotated[
+        str | None,
+        typer.Option("--pattern", metavar="CLASSES", help="Only sequences of these word classes, such as 'ADJ NOUN'."),
+    ] = None,
     limit: opt.LimitOption = LIMIT,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
@@ -98,6 +102,7 @@ def expressions(
             common=common,
             fragments=fragments,
             slots=slots,
+            pattern=pattern,
             rank=rank,
             show=opt.split_names(show),
             limit=limit,

@@ -12,7 +12,7 @@ Places, runs and tables of numbers lie in temporary files; in memory are only th
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import asdict
 from itertools import pairwise
@@ -27,7 +27,7 @@ from colloc.counts.processes import Crew, Task, crew
 from colloc.counts.runs import Column, RunFile, save_runs, write_column
 from colloc.counts.selection import Selection, documents_selection
 from colloc.counts.sequences.levels import Level, Spread
-from colloc.counts.sequences.places import NONE, left_of, reserve, right_of
+from colloc.counts.sequences.places import NONE, fill, left_of, reserve, right_of
 from colloc.counts.sequences.sharing import CAPITAL, MOST_WORDS, NO_MARK, SMALL, Facts
 from colloc.counts.words import slice_word_counts
 from colloc.errors import LockedError, UsageError
@@ -86,7 +86,7 @@ class Grower:
         selection = documents_selection(store, numbers)
         begins, sizes = token_places(store, numbers)
         begins, sizes = _in_order(begins, sizes)
-        self._size = len(selection)
+        self._selection, self._size = selection, len(selection)
         self._documents = self._keep("documents", _places(selection, begins))
         self._sizes = self._keep("sizes", sizes)
         shares = jobs * -(-self._size // (jobs * _LARGEST_SHARE)) if self._size else 0
@@ -166,6 +166,36 @@ class Grower:
         counts = everything.counts.astype(np.int64)
         _remove(runs)
         return index, term, counts
+
+    def keep_matches(self, matches: Iterable[tuple[Int64Array, Int64Array]]) -> Column:
+        """Keep where something begins, for `matching`.
+
+        Parameters
+        ----------
+        matches : iterable of (starts, lengths)
+            Places of the stream and numbers of words; each part behind the one before. Those of more than `MOST_WORDS`
+            words are left out.
+        """
+        self._made += 1
+        column = self._reserve(f"matches-{self._made}", "<u2")
+        for starts, lengths in matches:
+            fits = lengths <= MOST_WORDS
+            places = _places(self._selection, starts[fits])
+            if len(places):
+                begin = int(places[0])
+                bits = np.zeros(int(places[-1]) - begin + 1, np.uint16)
+                np.bitwise_or.at(bits, places - begin, np.uint16(1) << lengths[fits].astype(np.uint16))
+                fill(Column(**column), begin, bits)
+        return Column(**column)
+
+    def matching(self, level: Level, matches: Column) -> Int64Array:
+        """How many occurrences of each sequence of a level are where something of as many words begins."""
+        self._made += 1
+        asked = {"ids": asdict(level.ids), "n": len(level), "words": len(level.words), "matches": asdict(matches)}
+        counts = np.zeros(len(level), np.int64)
+        for share in self._shares("count_matches", {**asked, "folder": str(self._folder)}, f"matching-{self._made}"):
+            counts += _taken(share)
+        return counts
 
     def bags(self, terms: Int64Array) -> Int64Array:
         """How often some words stand side by side, in whatever order.

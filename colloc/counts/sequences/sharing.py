@@ -220,6 +220,23 @@ def count_fillers(
     return dataclasses.asdict(write_run(Path(folder), name, run_of_keys(pair_keys(wanted[there], fillers[there]))))
 
 
+def count_matches(
+    ids: Facts, n: int, words: int, matches: Facts, begin: int, stop: int, folder: str, name: str
+) -> Facts:
+    """Count sequences where something that is as long begins: the column of counts by number.
+
+    Parameters
+    ----------
+    matches : Column facts
+        For each place, bit i is set where something of i words begins.
+    """
+    numbers: UInt32Array = Column(**ids).read(begin, stop)
+    long_enough = Column(**matches).read(begin, stop) >> np.uint16(words) & np.uint16(1)
+    found = numbers[(numbers != NONE) & (long_enough == 1)]
+    counts = np.bincount(found, minlength=n)
+    return dataclasses.asdict(write_column(Path(folder) / f"{name}.counts", counts))
+
+
 def count_bags(terms: Facts, room: Facts, chain: list[Facts], begin: int, stop: int, folder: str, name: str) -> Facts:
     """Count sequences by their words in ascending order, of those that are given.
 
