@@ -27,7 +27,7 @@ STRENGTHS = (0.01, 0.1, 1.0, 10.0)
 """Inverse strengths of the regularisation that are tried."""
 LEAST = 20
 """Wanted candidates, and others, from which on something can be learnt."""
-MOST_TRAINED = 20_000
+MOST_TRAINED = 10_000
 """Candidates a model learns from: all wanted ones and a seeded choice of the others."""
 
 
@@ -52,7 +52,7 @@ class Combination:
     out_of_fold: FloatArray
     folds: Columns
     weights: Columns
-    model: Any
+    model: _Model
     measures: tuple[str, ...]
 
 
@@ -91,7 +91,7 @@ def combine(labelled: Labelled, scores: dict[str, FloatArray], *, seed: int = 0)
     for number, (train, test) in enumerate(folds.split(features, wanted, groups), 1):
         train = _thinned(train, wanted, generator)
         strength, model = _learnt(features[train], wanted[train], groups[train], seed)
-        out[test] = model.decision_function(features[test])
+        out[test] = model.odds(features[test])
         best = max(scores, key=lambda name: average_precision(steps(wanted[train], scores[name][train])))
         rows.append(
             {
@@ -106,8 +106,8 @@ def combine(labelled: Labelled, scores: dict[str, FloatArray], *, seed: int = 0)
         )
     everything = _thinned(np.arange(len(wanted)), wanted, generator)
     _, model = _learnt(features[everything], wanted[everything], groups[everything], seed)
-    weights = {"measure": list(scores), "weight": model[-1].coef_[0]}
-    order = np.argsort(-np.abs(model[-1].coef_[0]), kind="stable")
+    weights = {"measure": list(scores), "weight": model.weights}
+    order = np.argsort(-np.abs(model.weights), kind="stable")
     settings = {"seed": seed, "groups": "first word", "folds": FOLDS}
     columns = {name: [row[name] for row in rows] for name in rows[0]}
     fold_columns = {name: values if name == "measure" else np.array(values) for name, values in columns.items()}
@@ -130,7 +130,7 @@ def ranked(combination: Combination, labelled: Labelled, min_count: int, limit: 
         chosen = table.take(table.joint >= max(min_count, 1))
         if len(chosen):
             scores = ranking_values(chosen, combination.measures)
-            top.add(chosen, combination.model.decision_function(_features(scores)))
+            top.add(chosen, combination.model.odds(_features(scores)))
     table, odds, first, second = top.best(lambda terms: vocabulary.term_texts(question.store, question.layer, terms))
     accepted = pair_codes(question, labelled.table.first, labelled.table.second)[labelled.wanted]
     columns = {
@@ -162,9 +162,10 @@ def _thinned(rows: NDArray[np.int64], wanted: NDArray[np.bool_], generator: np.r
     return np.sort(np.concatenate([hits, kept]))
 
 
-def _learnt(features: FloatArray, wanted: NDArray[np.bool_], groups: NDArray[np.int64], seed: int) -> tuple[float, Any]:
+def _learnt(
+    features: FloatArray, wanted: NDArray[np.bool_], groups: NDArray[np.int64], seed: int
+) -> tuple[float, _Model]:
     """The strength with the least log loss in an inner cross-validation, and the model learnt with it."""
-    from sklearn.metrics import log_loss
     from sklearn.model_selection import StratifiedGroupKFold
 
     losses = dict.fromkeys(STRENGTHS, 0.0)
@@ -173,17 +174,46 @@ def _learnt(features: FloatArray, wanted: NDArray[np.bool_], groups: NDArray[np.
         if len(np.unique(wanted[train])) < 2:
             continue
         for strength in STRENGTHS:
-            odds = _model(strength, len(train)).fit(features[train], wanted[train]).predict_proba(features[test])
-            losses[strength] += float(log_loss(wanted[test], odds, labels=[False, True])) * len(test)
+            odds = _Model(strength).fit(features[train], wanted[train]).odds(features[test])
+            losses[strength] += float(np.logaddexp(0.0, np.where(wanted[test], -odds, odds)).sum())
     strength = min(losses, key=lambda one: (losses[one], one))
-    return strength, _model(strength, len(wanted)).fit(features, wanted)
+    return strength, _Model(strength).fit(features, wanted)
 
 
-def _model(strength: float, n: int) -> Any:
-    """Scores brought to a normal distribution by their ranks in training, then regression with an L2 penalty."""
-    from sklearn.linear_model import LogisticRegression
-    from sklearn.pipeline import make_pipeline
-    from sklearn.preprocessing import QuantileTransformer
+class _Model:
+    """Scores brought to a normal distribution by their places among those of the training, then logistic regression."""
 
-    ranks = QuantileTransformer(n_quantiles=min(200, n), output_distribution="normal", random_state=0)
-    return make_pipeline(ranks, LogisticRegression(C=strength, max_iter=2000))
+    def __init__(self, strength: float) -> None:
+        from sklearn.linear_model import LogisticRegression
+
+        self._regression = LogisticRegression(C=strength, max_iter=2000)
+        self._sorted: FloatArray = np.zeros((0, 0))
+
+    def fit(self, features: FloatArray, wanted: NDArray[np.bool_]) -> _Model:
+        self._sorted = np.sort(features, axis=0)
+        self._regression.fit(self._placed(features), wanted)
+        return self
+
+    def odds(self, features: FloatArray) -> FloatArray:
+        """Log odds of being wanted."""
+        found: FloatArray = self._regression.decision_function(self._placed(features))
+        return found
+
+    @property
+    def weights(self) -> FloatArray:
+        """One a feature."""
+        found: FloatArray = self._regression.coef_[0]
+        return found
+
+    def _placed(self, features: FloatArray) -> FloatArray:
+        """Normal scores of the mid-ranks (Blom 1958: (rank - 3/8) / (n + 1/4)); equal values have equal scores."""
+        from scipy.special import ndtri
+
+        n, columns = len(self._sorted), range(features.shape[1])
+        below = np.stack([np.searchsorted(self._sorted[:, one], features[:, one], "left") for one in columns], axis=1)
+        through = np.stack(
+            [np.searchsorted(self._sorted[:, one], features[:, one], "right") for one in columns], axis=1
+        )
+        rank = (below + through + 1) / 2
+        found: FloatArray = ndtri(np.clip((rank - 0.375) / (n + 0.25), 0.25 / n, 1 - 0.25 / n))
+        return found

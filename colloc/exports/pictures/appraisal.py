@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colloc.exports.pictures.canvas import FILL, INK, SOFT, drawing
-from colloc.measures.retrieval import average_precision, steps
+from colloc.measures.retrieval import Steps, average_precision, steps
 from colloc.records import FloatArray
 
 MOST_LINES = 6
@@ -31,7 +31,7 @@ def precision_recall_picture(
     scores : dict of str to float64 array
         Ranking values, highest first.
     names : sequence of str
-        Which of them, best first; at most `MOST_LINES` are drawn.
+        Which of them, best first; at most `MOST_LINES` are drawn, and of several with the same order only the first.
 
     Raises
     ------
@@ -39,8 +39,7 @@ def precision_recall_picture(
         Where matplotlib is not installed.
     """
     with drawing(path, wide=6.5, high=4.5) as (_, (axes,)):
-        for place, name in enumerate(names[:MOST_LINES]):
-            ranking = steps(wanted, scores[name])
+        for place, (name, ranking) in enumerate(_different(wanted, scores, names)):
             kept = np.flatnonzero(ranking.wanted)
             kept = kept[:: max(len(kept) // _POINTS, 1)]
             axes.plot(
@@ -55,9 +54,10 @@ def precision_recall_picture(
         axes.annotate(
             "any order",
             (1.0, float(wanted.mean())),
-            xytext=(0, 3),
+            xytext=(0, -3),
             textcoords="offset points",
             ha="right",
+            va="top",
             color=SOFT,
         )
         axes.set_xlabel("recall: share of all wanted pairs")
@@ -65,3 +65,16 @@ def precision_recall_picture(
         axes.set_xlim(0, 1)
         axes.set_ylim(bottom=0)
         axes.legend(title="average precision", frameon=False, alignment="left")
+
+
+def _different(
+    wanted: NDArray[np.bool_], scores: dict[str, FloatArray], names: Sequence[str]
+) -> list[tuple[str, Steps]]:
+    found: list[tuple[str, Steps]] = []
+    for name in names:
+        ranking = steps(wanted, scores[name])
+        if not any(np.array_equal(ranking.precision, other.precision) for _, other in found):
+            found.append((name, ranking))
+        if len(found) == MOST_LINES:
+            break
+    return found
