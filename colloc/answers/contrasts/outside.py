@@ -26,6 +26,8 @@ from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store import slices, vocabulary
 from colloc.store.connection import Store
 
+ABSENT = "that only; no document here has it"
+
 
 @dataclass(frozen=True, slots=True)
 class Frequencies:
@@ -147,6 +149,15 @@ def contrast_frequencies(
     rows = shown[both_directions(score[shown], [np.abs(g2[shown])], more_here[shown], limit)]
     from_store = rows[rows < len(terms)]
     names = dict(zip(from_store.tolist(), vocabulary.term_texts(store, layer, terms[from_store]), strict=True))
+    remarks = say(
+        log_q[rows],
+        document_log_q[rows],
+        (count[rows], other[rows]),
+        (largest[rows], np.zeros(len(rows), np.int64)),
+        more_here[rows],
+    )
+    # What no document has leaves the test over documents nothing to work with.
+    remarks = [ABSENT if count[row] == 0 else remark for row, remark in zip(rows, remarks, strict=True)]
     columns: dict[str, Any] = {
         "word": [names[row] if row < len(terms) else texts[row - len(terms)] for row in rows.tolist()],
         "log_ratio": log_ratio[rows],
@@ -160,13 +171,7 @@ def contrast_frequencies(
         "g2": g2[rows],
         "q": np.exp(log_q[rows]),
         "document_q": np.exp(document_log_q[rows]),
-        "says": say(
-            log_q[rows],
-            document_log_q[rows],
-            (count[rows], other[rows]),
-            (largest[rows], np.zeros(len(rows), np.int64)),
-            more_here[rows],
-        ),
+        "says": remarks,
     }
     settings = {
         "store": str(store.path),
@@ -187,17 +192,25 @@ def contrast_frequencies(
 
 def _in_layer(store: Store, layer: str, frequencies: Frequencies) -> tuple[FloatArray, dict[str, float]]:
     """The frequencies by term number, and those of words that the store does not know, by text."""
-    texts = list(frequencies.values)
-    numbers = vocabulary.term_numbers(store, layer, texts)
-    values = np.array([frequencies.values[text] for text in texts], np.float64)
+    brought: dict[str, float] = {}
+    for text, value in frequencies.values.items():
+        form = vocabulary.brought_to(store, layer, text)
+        brought[form] = brought.get(form, 0.0) + float(value)
+    numbers = _term_numbers(store, layer, list(brought))
+    values = np.array(list(brought.values()), np.float64)
     known = np.zeros(vocabulary.term_count(store, layer))
     there = numbers >= 0
-    np.add.at(known, numbers[there], values[there])
-    lacking: dict[str, float] = {}
-    for row in np.flatnonzero(~there).tolist():
-        text = vocabulary.brought_to(layer, texts[row])
-        lacking[text] = lacking.get(text, 0.0) + float(values[row])
+    known[numbers[there]] = values[there]
+    lacking = {form: value for (form, value), here in zip(brought.items(), there.tolist(), strict=True) if not here}
     return known, lacking
+
+
+def _term_numbers(store: Store, layer: str, forms: list[str]) -> Int64Array:
+    """As :func:`vocabulary.term_numbers`; a long list is looked up in all terms at once, a short one word by word."""
+    if vocabulary.term_count(store, layer) > 10 * len(forms):
+        return vocabulary.term_numbers(store, layer, forms)
+    number_of = {text: number for number, text in enumerate(vocabulary.term_texts(store, layer))}
+    return np.array([number_of.get(form, -1) for form in forms], np.int64)
 
 
 def _often_enough(

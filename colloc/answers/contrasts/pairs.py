@@ -32,7 +32,7 @@ from colloc.store.connection import Store
 
 CANDIDATES = 10_000
 """So many pairs of either direction, those with the largest G2, take the test over documents; the rest count as
-p = 1 in its q-values, which can only make them larger."""
+p = 1 in its q-values, which can only make them larger. All take it where all rows are shown."""
 JUDGED = 1_000
 """So many pairs of either direction, those with the largest difference of log odds, have their PMI jackknifed when
 association ranks."""
@@ -105,7 +105,8 @@ def contrast_pairs(
     by_association = sort == "association"
     more_in_this = (found.odds.difference if by_association else found.log_ratio) >= 0
     size = np.abs(found.odds.z if by_association else found.g2)
-    candidates = np.sort(both_directions(size, [], more_in_this, 2 * (JUDGED if by_association else CANDIDATES)))
+    most = 2 * max(JUDGED if by_association else CANDIDATES, limit) if limit else 0
+    candidates = np.sort(both_directions(size, [], more_in_this, most))
     counts = pair_counts_by_document(questions, found.cells[0][candidates], found.cells[1][candidates])
     tested = document_test(counts.rates, counts.in_this)
     if permutations:
