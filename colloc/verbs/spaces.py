@@ -232,20 +232,15 @@ def agreement(
     space : Matrix, Vectors or path of written vectors
     lists : mapping of name to sequence of (word, word, score)
     """
-    import numpy as np
-
-    from colloc.answers.spaces.agreement import JudgedPairs
     from colloc.answers.spaces.agreement import agreement as correlate
+    from colloc.answers.spaces.judged import from_rows
     from colloc.answers.spaces.likeness import Space
     from colloc.answers.spaces.matrix import Matrix
     from colloc.answers.spaces.vectors import Vectors
     from colloc.exports.vectors import read_vectors
 
     known = space if isinstance(space, Matrix | Vectors) else read_vectors(Path(space))
-    judged = [
-        JudgedPairs(name, [(one, other) for one, other, _ in rows], np.array([float(row[2]) for row in rows]))
-        for name, rows in lists.items()
-    ]
+    judged = [from_rows(name, rows) for name, rows in lists.items()]
     return correlate(Space(known), judged, seed=seed)
 
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 
 import numpy as np
 
@@ -41,6 +41,11 @@ def judged_pairs(name: str, lines: Iterable[str]) -> JudgedPairs:
     if not pairs:
         raise DataError(f"{name}: no line with two words and a number")
     return JudgedPairs(name, pairs, np.array(scores))
+
+
+def from_rows(name: str, rows: Sequence[tuple[str, str, float]]) -> JudgedPairs:
+    """Judged pairs from rows of word, word, score."""
+    return JudgedPairs(name, [(one, other) for one, other, _ in rows], np.array([float(row[2]) for row in rows]))
 
 
 def _number(text: str) -> float | None:
