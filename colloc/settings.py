@@ -81,12 +81,25 @@ class SegmentSettings(_Jsonable):
     """Longer tokens (in code points) are left out and reported."""
     pattern: str | None = None
     """A `regex` pattern of the user's for tokens, instead of UAX #29 words."""
+    scripts: Literal["unicode", "dictionary"] = _later("unicode")
+    """Scripts without spaces (Chinese, Japanese, Thai, Lao, Khmer, Burmese): UAX #29, or words by dictionary (ICU)."""
+    hashtags: Literal["split", "keep"] = _later("split")
+    """``#tag`` and ``@name``: the word without its sign, or one word with it."""
+    punctuation: Literal["drop", "keep"] = _later("drop")
+    """Marks and symbols that are no part of a word: no tokens, or tokens."""
+    folding: tuple[str, ...] = _later(())
+    """Additions to case folding, by the names of ``colloc.tokens.folding.additions``."""
+    lemma: str | None = _later(None)
+    """Language whose dictionary gives lemmas to words that carry none."""
 
     def __post_init__(self) -> None:
         _choice("hyphens", self.hyphens, ("keep", "split"))
         _choice("numbers", self.numbers, ("keep", "drop"))
         _choice("addresses", self.addresses, ("keep", "drop", "split"))
         _choice("line_ends", self.line_ends, ("paragraph", "space"))
+        _choice("scripts", self.scripts, ("unicode", "dictionary"))
+        _choice("hashtags", self.hashtags, ("split", "keep"))
+        _choice("punctuation", self.punctuation, ("drop", "keep"))
         if self.max_token < 1:
             raise UsageError(f"max_token must be at least 1, not {self.max_token}")
 

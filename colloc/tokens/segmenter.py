@@ -9,8 +9,10 @@ from colloc.settings import SegmentSettings
 from colloc.tokens.addresses import find_addresses
 from colloc.tokens.arrays import any_within, distinct
 from colloc.tokens.classes import Kinds, Points, classes, code_points, kinds_of
+from colloc.tokens.dictionaries import check_library, dictionary_words, find_runs
 from colloc.tokens.patterns import compiled, pattern_tokens
 from colloc.tokens.sentences import sentence_breaks
+from colloc.tokens.signs import find_marks, find_tags
 from colloc.tokens.words import word_tokens
 
 _HYPHENS = (0x2D, 0x2010, 0x2011)
@@ -28,10 +30,12 @@ class Segmenter:
     """
 
     def __init__(self, settings: SegmentSettings) -> None:
-        """Raises ``UsageError`` where the token pattern is not valid."""
+        """Raises ``UsageError`` for a wrong token pattern, ``MissingExtraError`` where ICU is needed and not there."""
         self.settings = settings
         if settings.pattern is not None:
             compiled(settings.pattern)
+        if settings.scripts == "dictionary":
+            check_library()
 
     def segment(self, text: str, following: str = "", opening: bool = True) -> Segments:
         """Tokens, sentences and paragraphs of one stretch.
@@ -65,7 +69,7 @@ class Segmenter:
             if settings.tailored and settings.addresses != "split":
                 addresses = find_addresses(text, points)
                 sentence_starts = _outside(sentence_starts, addresses)
-            starts, ends = self._words(points, kinds, addresses)
+            starts, ends = self._words(text, points, kinds, addresses)
             starts, ends = _clipped(starts, ends, len(text))
         if settings.tailored and settings.numbers == "drop":
             letter = classes().letter
@@ -93,7 +97,7 @@ class Segmenter:
             dropped=dropped,
         )
 
-    def _words(self, points: Points, kinds: Kinds, addresses: _Spans) -> _Spans:
+    def _words(self, text: str, points: Points, kinds: Kinds, addresses: _Spans) -> _Spans:
         settings = self.settings
         hyphens: Int64Array | None = None
         if settings.tailored and settings.hyphens == "keep":
@@ -101,10 +105,29 @@ class Segmenter:
             if points.dtype != np.uint8:
                 found |= (points == _HYPHENS[1]) | (points == _HYPHENS[2])
             hyphens = np.flatnonzero(found)
-        starts, ends = word_tokens(kinds, hyphens)
-        if not len(addresses[0]):
-            return starts, ends
-        return _with_addresses(kinds, hyphens, (starts, ends), addresses, settings.addresses == "keep")
+        words = word_tokens(kinds, hyphens)
+        if settings.tailored and settings.scripts == "dictionary":
+            runs = find_runs(points[: len(text)])
+            if len(runs[0]):
+                between = _with_addresses(kinds, hyphens, words, runs, False)
+                words = _merged(between, dictionary_words(text, kinds, *runs))
+        if settings.tailored and settings.hashtags == "keep":
+            tags = find_tags(points)
+            outside = _outside(tags[0], addresses)
+            apart = np.isin(tags[0], outside)
+            words = _with_addresses(kinds, hyphens, words, (tags[0][apart], tags[1][apart]), True)
+        if len(addresses[0]):
+            words = _with_addresses(kinds, hyphens, words, addresses, settings.addresses == "keep")
+        if settings.tailored and settings.punctuation == "keep":
+            words = _merged(words, find_marks(points[: len(text)], *words))
+        return words
+
+
+def _merged(some: _Spans, others: _Spans) -> _Spans:
+    """Spans of both, ascending; none may overlap another."""
+    starts = np.concatenate((some[0], others[0]))
+    order = np.argsort(starts, kind="stable")
+    return starts[order], np.concatenate((some[1], others[1]))[order]
 
 
 def _no_spans() -> _Spans:

@@ -74,7 +74,7 @@ def make_matter(
     kind = kind or ("pair" if len(parts) == 2 else "expression")
     if kind != "expression" and len(parts) != 2:
         raise UsageError(f"a {kind} has two words, not {len(parts)}")
-    parts = [word if word == OPEN else vocabulary.brought_to(layer, word) for word in parts]
+    parts = [word if word == OPEN else vocabulary.brought_to(store, layer, word) for word in parts]
     if kind != "expression" and OPEN in parts:
         raise UsageError("* is an open place of an expression; a pair has two words")
     closed = [word for word in parts if word != OPEN]

@@ -20,7 +20,7 @@ from colloc.errors import StoreDamagedError, UsageError
 from colloc.records import NO_TERM, UInt32Array
 from colloc.store.connection import Store
 from colloc.store.database import packing
-from colloc.tokens.folding import fold
+from colloc.store.lexicon.forms import Forms, store_forms
 
 TypeKey = str | tuple[str, str, str]
 """A form, or (form, lemma, upos); texts are NFC already."""
@@ -33,12 +33,12 @@ _BATCH = 65_536
 Columns = tuple[Sequence[str], Sequence[str], Sequence[str]]
 """Forms, lemmas and word classes of a stretch of types."""
 
-_COMPONENTS: dict[str, Callable[[Columns], list[str]]] = {
-    "form": lambda columns: list(columns[0]),
-    "fold": lambda columns: [*map(fold, columns[0])],
-    "lemma": lambda columns: list(columns[1]),
-    "lemma_fold": lambda columns: [*map(fold, columns[1])],
-    "upos": lambda columns: list(columns[2]),
+_COMPONENTS: dict[str, Callable[[Columns, Forms], list[str]]] = {
+    "form": lambda columns, forms: list(columns[0]),
+    "fold": lambda columns, forms: [*map(forms.fold, columns[0])],
+    "lemma": lambda columns, forms: forms.lemmas(columns[0], columns[1]),
+    "lemma_fold": lambda columns, forms: [*map(forms.fold, forms.lemmas(columns[0], columns[1]))],
+    "upos": lambda columns, forms: list(columns[2]),
 }
 
 
@@ -53,7 +53,7 @@ class Layer:
     same: bool
 
 
-def layer_function(name: str) -> Callable[[Columns], list[str]]:
+def layer_function(name: str, forms: Forms) -> Callable[[Columns], list[str]]:
     """What a layer calls types; empty where a type has no such thing.
 
     Parameters
@@ -61,6 +61,8 @@ def layer_function(name: str) -> Callable[[Columns], list[str]]:
     name : str
         ``form``, ``fold``, ``lemma``, ``lemma_fold``, ``upos``, or several of
         them joined by ``/``, as in ``lemma/upos``.
+    forms : Forms
+        How the store folds, and where it has lemmas from.
     """
     parts = name.split("/")
     unknown = [part for part in parts if part not in _COMPONENTS]
@@ -70,10 +72,10 @@ def layer_function(name: str) -> Callable[[Columns], list[str]]:
         )
     functions = [_COMPONENTS[part] for part in parts]
     if len(functions) == 1:
-        return functions[0]
+        return lambda columns: functions[0](columns, forms)
 
     def joined(columns: Columns) -> list[str]:
-        parts = zip(*(function(columns) for function in functions), strict=True)
+        parts = zip(*(function(columns, forms) for function in functions), strict=True)
         return ["/".join(texts) if all(texts) else "" for texts in parts]
 
     return joined
@@ -88,7 +90,7 @@ def find_layer(store: Store, name: str) -> Layer:
     """The layer's row; UsageError where the store does not have it."""
     row = store.row("SELECT id, name, terms, types, same FROM layers WHERE name = ?", (name,))
     if row is None:
-        layer_function(name)
+        layer_function(name, store_forms(store))
         raise UsageError(f"{store.path}: has no layer {name!r} yet, only {', '.join(layer_names(store))}")
     return Layer(row[0], row[1], row[2], row[3], bool(row[4]))
 
@@ -153,7 +155,7 @@ class LayerWriter:
         self._limit = limit
         self._known: dict[str, int] = {}
         self._complete = layer.terms == 0
-        self._function = layer_function(layer.name)
+        self._function = layer_function(layer.name, store_forms(store))
         self.layer = layer
 
     def extend(self, columns: Columns) -> None:
@@ -227,7 +229,7 @@ def ensure_layer(store: Store, name: str, limit: int = 2_000_000) -> None:
     UsageError
         No such layer, or no type of the store has what it needs.
     """
-    layer_function(name)
+    layer_function(name, store_forms(store))
     if name in layer_names(store):
         return
     types = find_layer(store, "form").types
@@ -239,6 +241,7 @@ def ensure_layer(store: Store, name: str, limit: int = 2_000_000) -> None:
         if types and writer.layer.terms == 0:
             raise UsageError(
                 f"{store.path}: its words carry nothing for the layer {name!r}; build it from annotated text"
+                + (", or with --lemma" if "lemma" in name else "")
             )
 
 

@@ -12,21 +12,22 @@ from numpy.typing import NDArray
 from colloc.errors import StoreDamagedError
 from colloc.records import Int64Array
 from colloc.store.connection import Store
+from colloc.store.lexicon.forms import store_forms
 from colloc.store.lexicon.layers import find_layer
-from colloc.tokens.folding import fold
 
 _FOLDED = {"fold", "lemma_fold"}
 _EVERYTHING = 0.2
 """Share of a layer's terms above which one pass over all texts is quicker than asking one by one."""
 
 
-def brought_to(layer: str, text: str) -> str:
+def brought_to(store: Store, layer: str, text: str) -> str:
     """A word as the layer writes it: NFC, and folded where the layer is; ``a/NOUN`` part by part."""
     names = layer.split("/")
     # A word may hold a slash itself: the last parts belong to the last names.
     parts = text.rsplit("/", len(names) - 1)
     if len(parts) != len(names):
         return unicodedata.normalize("NFC", text)
+    fold = store_forms(store).fold
     pairs = zip(names, parts, strict=True)
     return "/".join(fold(part) if name in _FOLDED else unicodedata.normalize("NFC", part) for name, part in pairs)
 
@@ -40,7 +41,7 @@ def term_numbers(store: Store, layer: str, texts: Sequence[str]) -> Int64Array:
     sql, fixed = _by_text(row.same, row.number)
     numbers = np.full(len(texts), -1, dtype=np.int64)
     for position, text in enumerate(texts):
-        wanted = brought_to(layer, text)
+        wanted = brought_to(store, layer, text)
         if _has_half_pair(wanted):
             continue
         found = store.value(f"{sql} = ?", (*fixed, wanted))
@@ -71,7 +72,7 @@ def term_texts(store: Store, layer: str, numbers: NDArray[Any] | Sequence[int] |
 def terms_matching(store: Store, layer: str, pattern: str) -> Int64Array:
     """Terms, ascending, whose text fits the pattern; ``*`` stands for any characters, even none."""
     row = find_layer(store, layer)
-    wanted = "*".join(brought_to(layer, part) if part else "" for part in pattern.split("*"))
+    wanted = "*".join(brought_to(store, layer, part) if part else "" for part in pattern.split("*"))
     if _has_half_pair(wanted):
         return np.empty(0, dtype=np.int64)
     # Only * keeps its meaning for GLOB.

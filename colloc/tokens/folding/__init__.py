@@ -1,0 +1,45 @@
+"""Folded forms and lemmas: what counts as the same word."""
+
+from __future__ import annotations
+
+import unicodedata
+from collections.abc import Callable
+from functools import cache
+
+
+def fold(text: str) -> str:
+    """Full Unicode case folding, then NFC (folding can take characters apart)."""
+    if text.isascii():
+        return text.lower()
+    # Folding after NFD as well makes the result the same for canonically equivalent
+    # texts: The Unicode Standard, section 3.13, D145.
+    decomposed = unicodedata.normalize("NFD", text)
+    return unicodedata.normalize("NFC", unicodedata.normalize("NFD", decomposed.casefold()))
+
+
+@cache
+def folder(names: tuple[str, ...]) -> Callable[[str], str]:
+    """Folding with additions (see :mod:`colloc.tokens.folding.additions`), by name; `fold` itself without any.
+
+    What an addition changes before case folding comes first, then case
+    folding, then the other changes, in the order of their names; the result is
+    NFC.
+    """
+    if not names:
+        return fold
+    from colloc.tokens.folding.additions import ADDITIONS
+
+    chosen = [ADDITIONS[name] for name in sorted(set(names))]
+    before = [addition.before for addition in chosen if addition.before is not None]
+    after = [addition.after for addition in chosen if addition.after is not None]
+
+    def folded(text: str) -> str:
+        text = unicodedata.normalize("NFC", text)
+        for change in before:
+            text = change(text)
+        text = fold(text)
+        for change in after:
+            text = unicodedata.normalize("NFC", change(text))
+        return text
+
+    return folded
