@@ -7,11 +7,11 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from colloc.counts.feeding import Fork, feed
 from colloc.counts.grouping import GroupedMargins, MarginSink, deal
 from colloc.counts.placing import DocumentPlaces, document_places
+from colloc.counts.scanning.feeding import Fork, feed
+from colloc.counts.scanning.sieving import Sieve, Wanted, wanted_pairs
 from colloc.counts.selection import slice_selection
-from colloc.counts.sieving import Sieve, Wanted, wanted_pairs
 from colloc.counts.spans import apply_layer
 from colloc.records import Int64Array, UInt32Array, UInt64Array
 from colloc.settings import TallySpec

@@ -50,7 +50,7 @@ class GroupedMargins:
 
 
 class MarginSink:
-    """Takes every pair (`colloc.counts.feeding.PlacedSink`) and keeps sums only.
+    """Takes every pair (`colloc.counts.scanning.feeding.PlacedSink`) and keeps sums only.
 
     Parameters
     ----------
@@ -69,7 +69,7 @@ class MarginSink:
         self._cell: Int64Array = np.empty(0, np.int64)
 
     def place(self, documents: Int64Array, begin: int, stop: int, units: Int64Array) -> None:
-        """See `colloc.counts.feeding.PlacedSink.place`."""
+        """See `colloc.counts.scanning.feeding.PlacedSink.place`."""
         self._flush()
         self._rows = self._groups[documents]
         self._counted = slice(begin, stop)

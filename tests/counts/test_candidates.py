@@ -9,8 +9,9 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from colloc.counts import candidates, feeding
+from colloc.counts import candidates
 from colloc.counts.candidates import occurrences
+from colloc.counts.scanning import feeding
 from colloc.errors import UsageError
 from colloc.settings import TallySpec
 from colloc.store.opening import open_for_reading

@@ -12,11 +12,11 @@ import numpy as np
 from colloc.answers.questions import Question
 from colloc.answers.sureness.documents import document_interval, without_each_group
 from colloc.answers.tables import Convention, PairTable, Sums, TableMaker, TableReader
-from colloc.counts.feeding import Fork
 from colloc.counts.grouping import MarginSink, deal
 from colloc.counts.keys import pair_block
 from colloc.counts.positions import count_positions
-from colloc.counts.sieving import Sieve, wanted_pairs
+from colloc.counts.scanning.feeding import Fork
+from colloc.counts.scanning.sieving import Sieve, wanted_pairs
 from colloc.counts.units import count_units, unit_terms
 from colloc.counts.windows import add_windows, count_windows
 from colloc.measures.intervals import Interval, pmi_interval

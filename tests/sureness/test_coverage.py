@@ -92,9 +92,15 @@ class Coverage:
 
 @pytest.mark.parametrize("bursty", [False, True])
 def test_demo_corpora(bursty: bool) -> None:
-    jackknife, _ = Coverage(demo_estimates(15, bursty=bursty), demo_pairs()[1]).sound()
+    coverage = Coverage(demo_estimates(15, bursty=bursty), demo_pairs()[1])
     # some 360 intervals; those of one corpus are nearly independent: standard error 0.012
-    assert 0.91 < jackknife < 0.99
+    assert 0.91 < coverage.sound()[0] < 0.99
+    if bursty:
+        # one document makes this pair: the formula is sure of it and wrong, leaving out documents is not
+        talkative = demo_pairs()[0].index(planted.BURST_WORDS)
+        assert (coverage.joint[:, talkative] >= 20).all()
+        assert coverage.formula[:, talkative].mean() < 0.1
+        assert coverage.jackknife[:, talkative].mean() > 0.8
 
 
 def test_clustered_text() -> None:

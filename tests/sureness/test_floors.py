@@ -26,10 +26,10 @@ from colloc.answers.sureness.floors import (
     shuffled_readers,
 )
 from colloc.answers.sureness.judging import sided
-from colloc.counts import shuffling
 from colloc.counts.placing import document_places
+from colloc.counts.scanning import shuffling
+from colloc.counts.scanning.shuffling import Urn, shuffled_stretches
 from colloc.counts.selection import slice_selection
-from colloc.counts.shuffling import Urn, shuffled_stretches
 from colloc.counts.spans import Stretch, read_stretches
 from colloc.errors import UsageError
 from colloc.measures.catalogue import MEASURES

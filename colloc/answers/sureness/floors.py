@@ -22,8 +22,8 @@ from colloc.answers.questions import Question
 from colloc.answers.sureness.bands import EDGES, band_of, count_pairs
 from colloc.answers.tables import PairTable, TableReader, joined
 from colloc.counts.placing import document_places
+from colloc.counts.scanning.shuffling import keep_stretches, shuffled_stretches
 from colloc.counts.selection import slice_selection
-from colloc.counts.shuffling import keep_stretches, shuffled_stretches
 from colloc.counts.tallying import obtain_tally
 from colloc.measures.catalogue import MEASURES
 from colloc.measures.contingency import expected

@@ -59,15 +59,19 @@ class Hypotheses:
         return q
 
 
+def family_size(question: Question, min_word_count: int) -> int:
+    """All pairs of words that pass the word threshold, met or not: how many hypotheses there are."""
+    words = int(np.count_nonzero(question.words.tokens >= max(min_word_count, 1)))
+    if question.reader.ordered:
+        return words * words
+    return words * (words - 1) // 2 if question.spec.kind == "unit" else words * (words + 1) // 2
+
+
 def all_pairs(question: Question, min_word_count: int, progress: Progress | None = None) -> Hypotheses:
     """The family of a whole store: one pass over its table."""
     require_cells(question, "a q-value")
     passing = question.words.tokens >= max(min_word_count, 1)
-    words = int(np.count_nonzero(passing))
-    if question.reader.ordered:
-        number = words * words
-    else:
-        number = words * (words - 1) // 2 if question.spec.kind == "unit" else words * (words + 1) // 2
+    number = family_size(question, min_word_count)
     seen = max(question.reader.tally.n_pairs * (2 if question.reader.ordered else 1), 1)
     # a p-value above seen / number has a q-value of 1 and changes no other one
     matters = min(np.log(seen) - np.log(max(number, 1)), 0.0)

@@ -1,0 +1,1 @@
+"""Passes over the stored stream: fed to sinks of pairs, sifted for given pairs, shuffled."""
