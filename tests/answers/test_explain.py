@@ -267,3 +267,35 @@ def only_in_logs(demo: Demo) -> Iterable[str]:
         return {word for text in texts for line in scan(text) for word, _ in line}
 
     return sorted(of("log") - of("notice"))[0], "the"
+
+
+CONLLU = """# newdoc id = one
+1\tShe\tshe\tPRON\t_\t_\t2\tnsubj\t_\t_
+2\tsells\tsell\tVERB\t_\t_\t0\troot\t_\t_
+3\tshells\tshell\tNOUN\t_\t_\t2\tobj\t_\tSpaceAfter=No
+4\t.\t.\tPUNCT\t_\t_\t2\tpunct\t_\t_
+
+1\tThey\tthey\tPRON\t_\t_\t2\tnsubj\t_\t_
+2\tsold\tsell\tVERB\t_\t_\t0\troot\t_\t_
+3\ta\ta\tDET\t_\t_\t4\tdet\t_\t_
+4\tshell\tshell\tNOUN\t_\t_\t2\tobj\t_\tSpaceAfter=No
+5\t.\t.\tPUNCT\t_\t_\t2\tpunct\t_\t_
+
+"""
+"""An invented sample in CoNLL-U (https://universaldependencies.org/format.html)."""
+
+
+def test_inflected_forms_where_there_are_lemmas(tmp_path: Path) -> None:
+    (tmp_path / "a.conllu").write_text(CONLLU, encoding="utf-8")
+    path = tmp_path / "a.colloc"
+    colloc.build(path, [str(tmp_path / "a.conllu")], jobs=1)
+
+    def forms() -> list[tuple[str, str]]:
+        card = colloc.explain(path, "sells", "shells")
+        return [(row["first_form"], row["second_form"]) for row in card.forms]
+
+    assert forms() == [("sells", "shells")]
+    colloc.tally(path, layer="lemma")
+    assert forms() == [("sells", "shells"), ("sold", "shell")]
+    lines = colloc.lines(path, "sell", "shell", layer="lemma", sentences=True)
+    assert (lines["before"] + lines["match"] + lines["after"]).tolist() == ["She sells shells.", "They sold a shell."]

@@ -11,10 +11,9 @@ from colloc.answers.columns import Columns
 from colloc.answers.evidence.occurring import PairOccurrences
 from colloc.answers.questions import Question
 from colloc.answers.sureness.documents import SOUND_DOCUMENTS, SOUND_JOINT
-from colloc.answers.sureness.hypotheses import all_pairs
+from colloc.answers.sureness.hypotheses import all_pairs, family_size, two_sided
 from colloc.answers.tables import PairTable
 from colloc.counts.grouping import GROUPS, deal
-from colloc.measures.exact import association_log_p
 from colloc.measures.intervals import Interval, jackknife, log_odds_interval, pmi_interval
 from colloc.measures.odds import log_odds
 from colloc.measures.pmi import pmi
@@ -68,15 +67,14 @@ def tests_of(question: Question, table: PairTable, progress: Any) -> dict[str, A
     """Two-sided p-value (mid-p of Fisher's exact test where the expected count is below 5, else G2) and q-value."""
     if question.convention.margins == "tokens":
         return {}
-    joint, first, second, total = table.arguments
-    log_p = float(association_log_p(joint, first, second, total)[0])
+    log_p = float(two_sided(table)[0])
     exact = question.reader.tally.n_pairs <= EXACT_UP_TO
     if exact:
         family = all_pairs(question, 1, progress)
         hypotheses = family.number
         q = float(family.q_of(np.array([log_p]))[0])
     else:
-        hypotheses = hypotheses_of(question)
+        hypotheses = family_size(question, 1)
         q = math.exp(min(log_p + math.log(hypotheses), 0.0))
     return {
         "p": math.exp(log_p),
@@ -85,11 +83,3 @@ def tests_of(question: Question, table: PairTable, progress: Any) -> dict[str, A
         "q_is": "exact" if exact else "at most",
         "hypotheses": hypotheses,
     }
-
-
-def hypotheses_of(question: Question) -> int:
-    """All pairs of words that occur, met or not."""
-    words = int(np.count_nonzero(question.words.tokens))
-    if question.reader.ordered:
-        return words * words
-    return words * (words - 1) // 2 if question.spec.kind == "unit" else words * (words + 1) // 2
