@@ -12,6 +12,7 @@ from colloc.answers.columns import Columns
 from colloc.answers.pairs import as_columns, filtered, score, text_ranks
 from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
+from colloc.answers.stopping import StopWords
 from colloc.answers.sureness.floors import Floors, Shuffle
 from colloc.answers.sureness.hypotheses import Hypotheses, pairs_of_words
 from colloc.answers.sureness.judging import Judge
@@ -43,6 +44,7 @@ def around(
     any_strength: bool = False,
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
+    stop: Sequence[str] = (),
     limit: int = 50,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -63,6 +65,9 @@ def around(
     avoid : bool
         Only words that stand there much less often than expected, or never.
 
+    stop : sequence of str
+        Companions that are not shown: `colloc.answers.stopping.StopWords`.
+
     The other parameters are those of `colloc.answers.pairs.pairs`; the q-values are among all pairs of a word asked
     for with any other word.
 
@@ -81,9 +86,10 @@ def around(
     sides = _sides(question, side, avoid)
     if avoid:
         check_avoidance(question, wishes, min_expected, any_strength)
-    terms = headwords(store, question.layer, words)
+    terms = list(dict.fromkeys(headwords(store, question.layer, words)))
     classes = word_classes(store, question.layer, upos)
     least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
+    stopped = StopWords(question, stop) if stop else None
     parts: list[Columns] = []
     floors: dict[Shuffle, Floors] = {}
     for one_side in sides:
@@ -98,6 +104,7 @@ def around(
             rows = joined(tables)
             rows = rows.take(filtered(question, rows, least, min_word_count, any_strength))
         rows = rows.take(rows.joint >= least)
+        rows = rows if stopped is None else rows.take(stopped.shown(rows, first=False))
         judge = Judge(
             question,
             wishes,
@@ -136,6 +143,7 @@ def around(
         any_strength=any_strength,
         **judge.settings(),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
+        **({"stop": list(stop)} if stop else {}),
         limit=limit,
     )
     return Columns({name: np.concatenate([part[name] for part in parts]) for name in parts[0].names}, settings)
@@ -178,7 +186,7 @@ def _ranked(
     tables: list[PairTable] = []
     first: list[str] = []
     second: list[str] = []
-    for term in dict.fromkeys(terms):
+    for term in terms:
         own = rows.take(rows.first == term)
         top = TopRows(limit, lambda: text_ranks(question))
         if len(own):

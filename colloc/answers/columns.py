@@ -10,6 +10,8 @@ Column names are stable; the command line, the files and the Python calls use th
     Joint count expected if the words were independent: first_total * second_total / total.
 ``pmi``, ``npmi``, ``ppmi``, ``g2``, ...
     Measures, by their names in ``colloc.measures.catalogue``.
+``pmi_low``, ``pmi_high``, ``q_value``, ``above_order``, ...
+    Sureness: ``colloc.answers.sureness.wishes`` has the names, ``docs/sureness.md`` what they mean.
 ``count``, ``per_million``, ``documents``, ``dp``, ``dp_norm``
     Frequency and dispersion of a word; ``documents`` also of a pair where it is asked for.
 """

@@ -15,6 +15,7 @@ import pytest
 from scipy import stats
 
 from colloc.answers.questions import PairOptions, ask
+from colloc.answers.sureness import documents
 from colloc.answers.sureness.documents import document_evidence
 from colloc.answers.tables import Side
 from colloc.counts.grouping import deal
@@ -143,6 +144,28 @@ def test_spread_over_documents(made_store: Path, made: list[Placed]) -> None:
     assert np.array_equal(quick.dp_norm, evidence.dp_norm, equal_nan=True)
     assert quick.interval is None
     assert not quick.sound.any()
+
+
+def test_many_rows_take_several_passes(made_store: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    first, second = np.array(PAIRS, np.uint32).T
+    with open_for_reading(made_store) as store:
+        question = ask(store, PairOptions())
+        table = question.reader.given(first, second)
+        for intervals in (True, False):
+            whole = document_evidence(question, table, intervals=intervals)
+            monkeypatch.setattr(documents, "ROWS", 13)
+            parts = document_evidence(question, table, intervals=intervals)
+            monkeypatch.undo()
+            assert parts.documents.tolist() == whole.documents.tolist()
+            assert np.array_equal(parts.dp_norm, whole.dp_norm, equal_nan=True)
+            assert parts.sound.tolist() == whole.sound.tolist()
+            if whole.interval is None or parts.interval is None:
+                assert not intervals
+            else:
+                assert parts.interval.low.tolist() == whole.interval.low.tolist()
+                assert parts.interval.high.tolist() == whole.interval.high.tolist()
+        nothing = document_evidence(question, table.take(np.arange(0)))
+        assert len(nothing.documents) == 0
 
 
 def test_few_documents(tmp_path: Path, made: list[Placed]) -> None:

@@ -141,10 +141,10 @@ def avoids(text: CountedText, reader: TableReader) -> bool:
 
 @pytest.mark.parametrize(("n_tokens", "n_terms", "window", "directed"), TEXTS)
 def test_false_findings_are_rare(n_tokens: int, n_terms: int, window: int, directed: bool) -> None:
-    found, avoided = false_findings(n_tokens, n_terms, window, 20, directed=directed)
-    # with a true rate of 0.05 more than 4 of 20 come once in 400 times; the seeds are fixed
-    assert found <= 0.2
-    assert avoided <= 0.2
+    found, avoided = false_findings(n_tokens, n_terms, window, 12, directed=directed)
+    # with a true rate of 0.05 more than 3 of 12 come once in 450 times; the seeds are fixed
+    assert found <= 0.25
+    assert avoided <= 0.25
 
 
 @pytest.mark.long

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -18,6 +19,10 @@ from colloc.settings import TallySpec
 
 SOUND_JOINT, SOUND_DOCUMENTS = 20, 10
 """Meetings, and documents with one, from which on the interval was found to hold what it promises."""
+
+
+ROWS = 2**17
+"""Rows that one pass follows: 20 groups of so many take 50 MB."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,7 +63,28 @@ class DocumentEvidence:
 def document_evidence(
     question: Question, table: PairTable, side: Side = "both", *, intervals: bool = True
 ) -> DocumentEvidence:
-    """One pass over the stream for all rows of a table, in memory for the rows and what belongs to 20 groups."""
+    """One pass over the stream for all rows of a table; for more than `ROWS` of them one pass for each so many."""
+    parts = [
+        _of_rows(question, table.take(np.arange(begin, min(begin + ROWS, len(table)))), side, intervals)
+        for begin in range(0, max(len(table), 1), ROWS)
+    ]
+    return parts[0] if len(parts) == 1 else _joined(parts)
+
+
+def _joined(parts: Sequence[DocumentEvidence]) -> DocumentEvidence:
+    intervals = [part.interval for part in parts if part.interval is not None]
+    return DocumentEvidence(
+        np.concatenate([part.documents for part in parts]),
+        np.concatenate([part.dp_norm for part in parts]),
+        np.concatenate([part.largest_share for part in parts]),
+        Interval(*(np.concatenate([getattr(part, name) for part in intervals]) for name in ("low", "high", "se")))
+        if intervals
+        else None,
+        np.concatenate([part.sound for part in parts]),
+    )
+
+
+def _of_rows(question: Question, table: PairTable, side: Side, intervals: bool) -> DocumentEvidence:
     n = len(table)
     joint = _counted(question, table)
     first, second = (table.second, table.first) if side == "left" else (table.first, table.second)
