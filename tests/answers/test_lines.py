@@ -191,6 +191,13 @@ def test_order_by_neighbours(demo: Demo, sort: str) -> None:
             words = [match[0].lower() for match in WORD.finditer(text[row["character"] + len(row["match"]) :])]
         keys.append([*words, ""][:5])
     assert keys == sorted(keys)
+    for limit in (1, 7, 40):
+        assert colloc.lines(demo.store, "fog", sort=sort, where=YEARS, limit=limit) == answer_of(answer, limit)
+
+
+def answer_of(answer: colloc.Columns, limit: int) -> colloc.Columns:
+    """The first lines of an answer, as if no more had been asked for."""
+    return colloc.Columns(answer[:limit].data, {**answer.settings, "shown": limit})
 
 
 def test_one_line_per_document_and_slices(demo: Demo) -> None:

@@ -125,7 +125,7 @@ def lines(
     if best:
         chosen = choose(store, reader, hits, spec.layer, limit, seed)
     else:
-        chosen = ordered(store, reader, hits, sort, spec.layer, seed)
+        chosen = ordered(store, reader, hits, sort, spec.layer, seed, 0 if one_per_document else limit)
         if one_per_document:
             chosen = chosen[first_of_each_document(hits.documents[chosen])]
     shown = read_lines(reader, hits.take(chosen[: limit or None]), context, sentences or best)

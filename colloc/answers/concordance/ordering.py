@@ -10,7 +10,7 @@ from colloc.answers.concordance.finding import Hits
 from colloc.answers.concordance.passages import StreamReader
 from colloc.counts.spans import apply_layer
 from colloc.errors import UsageError
-from colloc.records import NO_TERM, Int64Array
+from colloc.records import NO_TERM, Int64Array, UInt32Array
 from colloc.store import documents, vocabulary
 from colloc.store.connection import Store
 
@@ -20,8 +20,15 @@ NEIGHBOURS = 5
 """Words that decide the order by what stands before or after, the nearest first."""
 
 
-def ordered(store: Store, reader: StreamReader, hits: Hits, order: LineOrder, layer: str, seed: int) -> Int64Array:
+def ordered(
+    store: Store, reader: StreamReader, hits: Hits, order: LineOrder, layer: str, seed: int, limit: int = 0
+) -> Int64Array:
     """Row numbers of the hits in the order asked; ties stand as in the text.
+
+    Parameters
+    ----------
+    limit : int
+        How many are wanted; more may be given. 0 for all.
 
     Raises
     ------
@@ -37,18 +44,26 @@ def ordered(store: Store, reader: StreamReader, hits: Hits, order: LineOrder, la
         present = np.unique(hits.documents)
         ranks = {number: rank for rank, number in enumerate(sorted(present.tolist(), key=names.__getitem__))}
         return np.argsort([ranks[number] for number in hits.documents.tolist()], kind="stable")
+    rows = np.arange(len(hits))
     if order == "text" or not len(hits):
-        return np.arange(len(hits))
-    steps = np.arange(NEIGHBOURS)
-    offsets = -1 - steps if order == "before" else hits.length + steps
-    places = hits.places[:, None] + offsets
+        return rows
+    steps = -1 - np.arange(NEIGHBOURS) if order == "before" else hits.length + np.arange(NEIGHBOURS)
+    of_type = vocabulary.layer_map(store, layer)
+    if 0 < limit < len(hits):
+        # The nearest word alone tells which lines can be among the first.
+        nearest = _text_ranks(store, layer, _neighbours(reader, hits, steps[:1], of_type))[:, 0]
+        rows = np.flatnonzero(nearest <= np.partition(nearest, limit - 1)[limit - 1])
+    ranks_of = _text_ranks(store, layer, _neighbours(reader, hits.take(rows), steps, of_type))
+    return rows[np.lexsort(ranks_of.T[::-1])]
+
+
+def _neighbours(reader: StreamReader, hits: Hits, steps: Int64Array, of_type: UInt32Array) -> UInt32Array:
+    """Terms at some steps from each hit, shape (n_hits, n_steps); NO_TERM outside its document."""
+    places = hits.places[:, None] + steps
     begins, stops = document_bounds(reader, hits.documents)
     outside = (places < begins[:, None]) | (places >= stops[:, None])
     types = reader.types_at(np.where(outside, hits.places[:, None], places).reshape(-1))
-    terms = apply_layer(vocabulary.layer_map(store, layer), types).reshape(places.shape)
-    terms = np.where(outside, NO_TERM, terms)
-    ranks_of = _text_ranks(store, layer, terms)
-    return np.lexsort(ranks_of.T[::-1])
+    return np.where(outside, NO_TERM, apply_layer(of_type, types).reshape(places.shape))
 
 
 def document_bounds(reader: StreamReader, numbers: Int64Array) -> tuple[Int64Array, Int64Array]:
@@ -65,7 +80,7 @@ def first_of_each_document(documents_of_rows: Int64Array) -> Int64Array:
     return np.sort(np.unique(documents_of_rows, return_index=True)[1])
 
 
-def _text_ranks(store: Store, layer: str, terms: np.ndarray) -> Int64Array:
+def _text_ranks(store: Store, layer: str, terms: UInt32Array) -> Int64Array:
     """The place of each term among those given, by text; what is no term comes first."""
     distinct, place = np.unique(terms, return_inverse=True)
     known = distinct[distinct != NO_TERM]
