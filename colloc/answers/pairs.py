@@ -12,6 +12,7 @@ from colloc.answers.avoidance import avoiding_pairs, check_avoidance, shown_avoi
 from colloc.answers.columns import Columns
 from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
+from colloc.answers.stopping import StopWords
 from colloc.answers.sureness.judging import Judge
 from colloc.answers.sureness.wishes import Wishes, divided
 from colloc.answers.tables import PairTable
@@ -41,6 +42,7 @@ def pairs(
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
     upos: str | None = None,
+    stop: Sequence[str] = (),
     limit: int = 50,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -69,6 +71,8 @@ def pairs(
         A pattern of word classes (`colloc.answers.tagpatterns`) that the two words follow: directed, next to each
         other unless a window is given, and in the layer ``lemma/upos`` unless another is given that tells word
         classes. It acts on what is shown, never on the margins.
+    stop : sequence of str
+        Pairs with these words are not shown: `colloc.answers.stopping.StopWords`.
     limit : int
         Rows; 0 for all.
 
@@ -88,6 +92,7 @@ def pairs(
     question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
     least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
     pattern = TwoWords(store, question.layer, upos) if upos is not None else None
+    stopped = StopWords(question, stop) if stop else None
     if avoid:
         check_avoidance(question, wishes, min_expected, any_strength)
         found = avoiding_pairs(question, min_expected, min_word_count, wishes.max_q)
@@ -101,6 +106,7 @@ def pairs(
         for table in tables or question.reader.blocks():
             chosen = table if avoid else table.take(filtered(question, table, least, min_word_count, any_strength))
             chosen = chosen if pattern is None else chosen.take(pattern.mask(chosen))
+            chosen = chosen if stopped is None else chosen.take(stopped.shown(chosen))
             chosen = chosen.take(judge.passing(chosen)) if len(chosen) else chosen
             if len(chosen):
                 top.add(chosen, score(ranking, chosen, avoid=avoid))
@@ -123,6 +129,7 @@ def pairs(
         **judge.settings(),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         **({"upos": upos} if upos is not None else {}),
+        **({"stop": list(stop)} if stop else {}),
         limit=limit,
     )
     columns = as_columns(first, second, table, names, settings)

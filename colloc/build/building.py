@@ -24,6 +24,9 @@ from colloc.store.stream import token_count
 from colloc.store.vocabulary import ensure_layer
 from colloc.text.iterables import PythonDocuments, cannot_be_resumed
 from colloc.text.sources import open_sources
+from colloc.tokens.folding import folder
+from colloc.tokens.folding.lemmas import lemmatizer
+from colloc.tokens.segmenter import Segmenter
 
 _WRITER_BYTES = 128 * 2**20
 _WORKER_BYTES = 128 * 2**20
@@ -100,6 +103,7 @@ def build(
     wanted = _description(
         inputs, read or ReadSettings(), segment or SegmentSettings(), tally or TallySpec(), margins, keep_text
     )
+    check_segmenting(segment or SegmentSettings())
     limits = resources(jobs, memory, temp)
     path = Path(path)
     new, useless = _is_new(path), False
@@ -128,6 +132,14 @@ def build(
         if useless:
             path.unlink(missing_ok=True)
         raise
+
+
+def check_segmenting(settings: SegmentSettings) -> None:
+    """Raise UsageError or MissingExtraError, before anything is read, for what cannot be done with words."""
+    Segmenter(settings)
+    folder(settings.folding)
+    if settings.lemma is not None:
+        lemmatizer(settings.lemma)
 
 
 def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progress | None, read: ReadSettings) -> Read:

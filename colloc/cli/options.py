@@ -236,6 +236,14 @@ AnyStrengthOption = Annotated[
 AvoidOption = Annotated[
     bool, _option("--avoid", help="Instead of attraction: rows that meet much less often than chance, or never.")
 ]
+StopOption = Annotated[
+    list[str] | None,
+    typer.Option(
+        "--stop",
+        metavar="LANG|FILE|top:N",
+        help="Leave these words out of the list: of a language, of a file (one a line), or the N most frequent.",
+    ),
+]
 MinExpectedOption = Annotated[
     float,
     _option(

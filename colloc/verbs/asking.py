@@ -70,6 +70,7 @@ def pairs(
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
     upos: str | None = None,
+    stop: Sequence[str] | str = (),
     limit: int = DEFAULT_LIMIT,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -100,6 +101,8 @@ def pairs(
     upos : str
         A pattern of word classes that the two words follow, next to each other unless a window is given: ``ADJ NOUN``
         or ``ADJ|NOUN NOUN``. The layer is ``lemma/upos`` where none is given.
+    stop : sequence of str
+        Words that are not shown: languages (``en``), files of words, or ``top:N``, the N most frequent.
     """
     from colloc.answers.pairs import pairs as ask_pairs
 
@@ -117,6 +120,7 @@ def pairs(
             avoid=avoid,
             min_expected=min_expected,
             upos=upos,
+            stop=as_list(stop),
             limit=limit,
             jobs=jobs,
             memory=memory,
@@ -153,6 +157,7 @@ def around(
     any_strength: bool = False,
     avoid: bool = False,
     min_expected: float = DEFAULT_MIN_EXPECTED,
+    stop: Sequence[str] | str = (),
     limit: int = DEFAULT_LIMIT,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -190,6 +195,7 @@ def around(
             any_strength=any_strength,
             avoid=avoid,
             min_expected=min_expected,
+            stop=as_list(stop),
             limit=limit,
             jobs=jobs,
             memory=memory,

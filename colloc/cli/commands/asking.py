@@ -83,6 +83,7 @@ def pairs(
             help="Only neighbours of these word classes, as in 'ADJ NOUN' or 'ADJ|NOUN NOUN'; annotated text.",
         ),
     ] = None,
+    stop: opt.StopOption = None,
     limit: opt.LimitOption = LIMIT,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
@@ -131,6 +132,7 @@ def pairs(
             avoid=avoid,
             min_expected=min_expected,
             upos=upos,
+            stop=stop or (),
             limit=limit,
             jobs=jobs,
             memory=opt.memory_bytes(memory),
@@ -192,6 +194,7 @@ def around(
     any_strength: opt.AnyStrengthOption = False,
     avoid: opt.AvoidOption = False,
     min_expected: opt.MinExpectedOption = DEFAULT_MIN_EXPECTED,
+    stop: opt.StopOption = None,
     limit: Annotated[
         int, typer.Option("--limit", "-n", metavar="N", min=0, help="Rows shown for each word; 0 for all.")
     ] = LIMIT,
@@ -241,6 +244,7 @@ def around(
             any_strength=any_strength,
             avoid=avoid,
             min_expected=min_expected,
+            stop=stop or (),
             limit=limit,
             jobs=jobs,
             memory=opt.memory_bytes(memory),

@@ -39,6 +39,11 @@ _META_FROM_PATH = typer.Option(
     help="Metadata from the path, such as '{genre}/{year}-{id}.txt'; {id} is the identifier.",
 )
 _META_TABLE = typer.Option("--meta-table", metavar="FILE", help="Table of metadata; its first column names the files.")
+_META_XPATH = typer.Option(
+    "--meta-xpath",
+    metavar="NAME=XPATH",
+    help="Metadata from TEI headers, as in 'year=//date/@when'; repeatable.",
+)
 _SKIP_DUPLICATES = typer.Option("--skip-duplicates", help="Leave out what has the same words as something read before.")
 _MAX_RECORD = typer.Option("--max-record", metavar="SIZE", help="Largest record of a JSON, CSV or TSV file.")
 _MAX_UNPACKED = typer.Option("--max-unpacked", metavar="SIZE", help="Largest unpacked size of one compressed file.")
@@ -68,6 +73,7 @@ def build(
     id_column: Annotated[str | None, _ID_COLUMN] = None,
     meta_from_path: Annotated[str | None, _META_FROM_PATH] = None,
     meta_table: Annotated[str | None, _META_TABLE] = None,
+    meta_xpath: Annotated[list[str] | None, _META_XPATH] = None,
     skip_duplicates: Annotated[Duplicates, _SKIP_DUPLICATES] = "none",
     max_record: Annotated[str, _MAX_RECORD] = "64MB",
     max_unpacked: Annotated[str, _MAX_UNPACKED] = "64GB",
@@ -91,6 +97,23 @@ def build(
     pattern: Annotated[
         str | None,
         typer.Option("--pattern", metavar="REGEX", help="A regular expression for tokens, instead of Unicode's words."),
+    ] = None,
+    scripts: Annotated[
+        Literal["unicode", "dictionary"],
+        typer.Option("--scripts", help="Words of Chinese, Japanese, Thai, ...: Unicode's rules, or by dictionary."),
+    ] = "unicode",
+    hashtags: Annotated[
+        Literal["split", "keep"], typer.Option("--hashtags", help="#tag and @name: without the sign, or whole.")
+    ] = "split",
+    punctuation: Annotated[
+        Literal["drop", "keep"], typer.Option("--punctuation", help="Marks outside of words: no tokens, or tokens.")
+    ] = "drop",
+    folding: Annotated[
+        list[str] | None,
+        typer.Option("--fold", metavar="NAMES", help="What folds besides case: arabic, turkish, sharp-s, width, ..."),
+    ] = None,
+    lemma: Annotated[
+        str | None, typer.Option("--lemma", metavar="LANG", help="Dictionary that gives lemmas to words without.")
     ] = None,
     text: Annotated[
         bool, typer.Option("--text/--no-text", help="Keep the text in the store; lines can only be shown from it.")
@@ -124,6 +147,7 @@ def build(
         max_record=size_in_bytes(max_record),
         max_unpacked=size_in_bytes(max_unpacked),
         skip_duplicates=skip_duplicates,
+        meta_xpath=tuple(meta_xpath or ()),
     )
     segment = SegmentSettings(
         hyphens=hyphens,
@@ -133,6 +157,11 @@ def build(
         abbreviations=abbreviations,
         max_token=max_token,
         pattern=pattern,
+        scripts=scripts,
+        hashtags=hashtags,
+        punctuation=punctuation,
+        folding=tuple(opt.split_names(folding) or ()),
+        lemma=lemma,
     )
     tally = _first_tally(layer, window, left, right, unit, inside, margins, relation)
     size = opt.memory_bytes(memory)
@@ -235,6 +264,7 @@ def add(
     id_column: Annotated[str | None, _ID_COLUMN] = None,
     meta_from_path: Annotated[str | None, _META_FROM_PATH] = None,
     meta_table: Annotated[str | None, _META_TABLE] = None,
+    meta_xpath: Annotated[list[str] | None, _META_XPATH] = None,
     skip_duplicates: Annotated[Duplicates | None, _SKIP_DUPLICATES] = None,
     max_record: Annotated[str | None, _MAX_RECORD] = None,
     max_unpacked: Annotated[str | None, _MAX_UNPACKED] = None,
@@ -259,6 +289,7 @@ def add(
         "id_column": id_column,
         "meta_from_path": meta_from_path,
         "meta_table": meta_table,
+        "meta_xpath": tuple(meta_xpath) if meta_xpath else None,
         "skip_duplicates": skip_duplicates,
         "max_record": None if max_record is None else size_in_bytes(max_record),
         "max_unpacked": None if max_unpacked is None else size_in_bytes(max_unpacked),

@@ -6,6 +6,8 @@ import unicodedata
 from collections.abc import Callable
 from functools import cache
 
+from colloc.errors import UsageError
+
 
 def fold(text: str) -> str:
     """Full Unicode case folding, then NFC (folding can take characters apart)."""
@@ -24,11 +26,19 @@ def folder(names: tuple[str, ...]) -> Callable[[str], str]:
     What an addition changes before case folding comes first, then case
     folding, then the other changes, in the order of their names; the result is
     NFC.
+
+    Raises
+    ------
+    UsageError
+        For an unknown name.
     """
     if not names:
         return fold
     from colloc.tokens.folding.additions import ADDITIONS
 
+    for name in names:
+        if name not in ADDITIONS:
+            raise UsageError(f"unknown folding {name!r}: choose from {', '.join(ADDITIONS)}")
     chosen = [ADDITIONS[name] for name in sorted(set(names))]
     before = [addition.before for addition in chosen if addition.before is not None]
     after = [addition.after for addition in chosen if addition.after is not None]
