@@ -110,6 +110,9 @@ def _dominated(count: Int64Array) -> bool:
 
 
 def _named(store: Store, layer: str, term: Int64Array, count: Int64Array) -> str:
-    best = np.lexsort((term, -count))[:_LISTED]
-    names = term_texts(store, layer, term[best])
-    return ", ".join(f"{name} {n}" for name, n in zip(names, count[best].tolist(), strict=True))
+    # ties go by the word, so all that tie with the last place need their text
+    least = np.sort(count)[-_LISTED:][0]
+    reach = count >= least
+    names = term_texts(store, layer, term[reach])
+    best = sorted(zip(-count[reach], names, strict=True))[:_LISTED]
+    return ", ".join(f"{name} {-n}" for n, name in best)
