@@ -18,7 +18,7 @@ from colloc.build.reading import Progress, Read, registry_limit
 from colloc.errors import CollocError, UsageError
 from colloc.records import NO_TERM, Anchors, UInt32Array
 from colloc.settings import DEFAULT_MEMORY
-from colloc.store import annotation, documents, facts, stream, texts, visibility, vocabulary
+from colloc.store import annotation, decisions, documents, facts, stream, texts, visibility, vocabulary
 from colloc.store.connection import Store
 from colloc.store.inputs.sources import copy_source, source_list
 from colloc.store.opening import open_for_reading, open_for_writing
@@ -125,6 +125,8 @@ def _copy(store: Store, other: Store, limit: int) -> None:
         _copy_block(store, other, head.number, mapping, values, numbers, character_shift)
     with store.transaction():
         texts.append_packed(store, character_shift, list(texts.packed_blocks(other)))
+        # A merge that begins again finds those that it has copied already, and leaves them out.
+        decisions.append(store, (decision for _, decision in decisions.iterate(other)))
 
 
 _TYPES_AT_ONCE = 65_536

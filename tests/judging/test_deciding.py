@@ -1,0 +1,246 @@
+"""One decision at a time, by command, by keys and from Python; several judges."""
+
+from __future__ import annotations
+
+import json
+import os
+import re
+import shutil
+import sys
+from collections.abc import Sequence
+from pathlib import Path
+
+import pexpect
+import pytest
+from sklearn.metrics import cohen_kappa_score
+
+import colloc
+from colloc.cli.app import main
+from colloc.cli.judging_keys import Draft, Surroundings, session
+from colloc.cli.keys import END, Keys
+from colloc.errors import NotSeenError, UsageError
+
+from .conftest import harbour_lines
+
+
+def test_a_decision_by_command_keeps_everything(store: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    line = colloc.lines(store, "thick", "fog", limit=1).to_dicts()[0]
+    place = f"{line['document']}:{line['character']}"
+    arguments = ["judge", str(store), "Thick", "FOG", "--accept", "--by", " Anna ", "--sense", "dense", "--note", "-x"]
+    arguments += ["--label", "weather", "--label", "sea", "--example", place]
+    assert main(arguments) == 0
+    assert capsys.readouterr().err == "thick fog: accept, by Anna\n"
+    row = colloc.decisions(store).to_dicts()[0]
+    assert {name: row[name] for name in ("words", "layer", "kind", "judge", "sense", "note", "labels")} == {
+        "words": ["thick", "fog"],
+        "layer": "fold",
+        "kind": "pair",
+        "judge": "Anna",
+        "sense": "dense",
+        "note": "-x",
+        "labels": ["weather", "sea"],
+    }
+    (example,) = row["examples"]
+    texts = {text["id"]: text["text"] for text in map(json.loads, harbour_lines())}
+    whole = texts[example["document"]]
+    assert whole[example["start"] : example["start"] + len(example["text"])] == example["text"]
+    assert [example["text"][begin:end].casefold() for begin, end in example["marks"]] == ["thick", "fog"]
+
+
+@pytest.mark.parametrize(
+    ("arguments", "code", "message"),
+    [
+        (["thick", "fog", "--accept"], 2, "say who decides: --by NAME"),
+        (["thick", "fog", "--by", "A"], 2, "give one of --accept, --reject, --unsure and --withdraw"),
+        (["thick", "fog", "--by", "A", "--accept", "--reject"], 2, "give one of"),
+        (["fog", "--by", "A", "--accept"], 2, "two words or an expression"),
+        (["thick", "zebra", "--by", "A", "--accept"], 1, "'zebra' never occurs"),
+        (["thick", "fog", "--by", "A", "--accept", "--layer", "colour"], 2, "no layer 'colour'"),
+        (["a", "b", "c", "--by", "A", "--accept", "--kind", "pair"], 2, "a pair has two words, not 3"),
+        (["thick", "fog", "--by", "A", "--accept", "--example", "log 00"], 65, "DOCUMENT:OFFSET"),
+        (["thick", "fog", "--by", "A", "--accept", "--example", "nowhere:5"], 1, "does not stand in that document"),
+        (["--by", "A", "--accept"], 2, "say what is decided"),
+        (["--by", "A"], 2, "needs a terminal"),
+        (["thick", "fog", "--from", "x.csv"], 2, "leave out words and verdicts"),
+    ],
+)
+def test_what_cannot_be_recorded(
+    store: Path, arguments: Sequence[str], code: int, message: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["judge", str(store), *arguments]) == code
+    error = capsys.readouterr().err
+    assert message in error
+    assert error.count("\n") == 1
+    assert len(colloc.decisions(store, history=True)) == 0
+
+
+def test_expressions_and_open_places(store: Path) -> None:
+    made = colloc.judge(store, "By and Large", "accept", by="Anna")
+    assert (made.kind, made.words) == ("expression", ("by", "and", "large"))
+    frame = colloc.judge(store, ["took", "the", "*", "into", "account"], "accept", by="Anna")
+    assert frame.words == ("took", "the", "*", "into", "account")
+    with pytest.raises(UsageError, match="not \\*"):
+        colloc.judge(store, ["*", "*"], "accept", by="Anna", kind="expression")
+    entries = {entry.matter.text: entry.figures for entry in colloc.entries(store).entries}
+    texts = [text["text"].casefold() for text in map(json.loads, harbour_lines())]
+    assert entries["by and large"].joint == sum(text.count("by and large") for text in texts)
+    assert entries["by and large"].documents == sum("by and large" in text for text in texts)
+    assert entries["took the * into account"].joint == sum(
+        len(re.findall(r"took the \w+ into account", text)) for text in texts
+    )
+
+
+def test_decisions_survive_add_remove_merge_and_a_new_store(store: Path, tmp_path: Path) -> None:
+    colloc.judge(store, ["thick", "fog"], "accept", by="Anna", examples=[_place(store)])
+    colloc.judge(store, ["strong", "wind"], "reject", by="Ben")
+    before = colloc.decisions(store, history=True).to_dicts()
+    more = tmp_path / "more.jsonl"
+    more.write_text(json.dumps({"id": "new", "text": "A zephyr and thick fog.", "author": "B", "year": 1890}))
+    colloc.add(store, [str(more)], jobs=1)
+    colloc.remove(store, identifiers=[before[0]["examples"][0]["document"]], jobs=1)
+    assert colloc.decisions(store, history=True).to_dicts() == before
+    (entry,) = colloc.entries(store).entries
+    assert entry.senses[0].lines[0].example.text == before[0]["examples"][0]["text"], "the line outlives its document"
+    assert entry.senses[0].lines[0].metadata == {}
+    source = tmp_path / "again.jsonl"
+    source.write_text("\n".join(reversed(harbour_lines())), encoding="utf-8")
+    again = tmp_path / "again.colloc"
+    colloc.build(again, [str(source)], jobs=1)
+    records = [("row", row) for row in before]
+    assert colloc.take_decisions(again, records) == 2
+    assert colloc.take_decisions(again, records) == 0
+    assert colloc.decisions(again, history=True).to_dicts() == before
+    other = tmp_path / "other.colloc"
+    colloc.build(other, [str(more)], jobs=1)
+    colloc.merge(other, [again], jobs=1)
+    assert colloc.decisions(other, history=True).to_dicts() == before
+
+
+def _place(store: Path) -> str:
+    line = colloc.lines(store, "thick", "fog", limit=1).to_dicts()[0]
+    return f"{line['document']}:{line['character']}"
+
+
+def test_withdrawn_decisions_do_not_count(store: Path) -> None:
+    colloc.judge(store, ["thick", "fog"], "accept", by="Anna")
+    colloc.judge(store, ["fog", "thick"], "withdrawn", by="Anna")
+    assert len(colloc.decisions(store)) == 0
+    assert len(colloc.decisions(store, history=True)) == 2
+    assert colloc.entries(store).entries == ()
+
+
+PAIRS = ("thick fog", "strong wind", "clean oil", "one mind", "the boat", "the reef", "keeper wrote", "at dawn")
+BY_ANNA = ("accept", "accept", "accept", "reject", "reject", "unsure", "accept", "reject")
+BY_BEN = ("accept", "accept", "reject", "reject", "unsure", "unsure", "accept", "accept")
+
+
+def test_agreement_is_cohens_kappa(store: Path) -> None:
+    for words, ours, theirs in zip(PAIRS, BY_ANNA, BY_BEN, strict=True):
+        colloc.judge(store, words.split(), ours, by="Anna")  # type: ignore[arg-type]
+        colloc.judge(store, words.split()[::-1], theirs, by="Ben")  # type: ignore[arg-type]
+    colloc.judge(store, ["the", "lamp"], "accept", by="Cora")
+    rows = colloc.judge_agreement(store).to_dicts()
+    assert [(row["judge"], row["other"], row["both"], row["same"]) for row in rows] == [
+        ("Anna", "Ben", 8, 5),
+        ("Anna", "Cora", 0, 0),
+        ("Ben", "Cora", 0, 0),
+    ]
+    assert rows[0]["kappa"] == pytest.approx(cohen_kappa_score(BY_ANNA, BY_BEN))
+    assert rows[0]["kappa_low"] < rows[0]["kappa"] < rows[0]["kappa_high"]
+    assert str(rows[1]["kappa"]) == "nan"
+    differing = colloc.decisions(store, disagreements=True).to_dicts()
+    found = {" ".join(sorted(row["words"])) for row in differing}
+    wanted = zip(PAIRS, BY_ANNA, BY_BEN, strict=True)
+    assert found == {" ".join(sorted(words.split())) for words, ours, theirs in wanted if ours != theirs}
+    # Accepted by one and rejected by the other is left out; unsure beside accept is not a dispute.
+    entries = colloc.entries(store)
+    assert entries.disputed == 2
+    texts = {entry.matter.text for entry in entries.entries}
+    assert texts == {"thick fog", "strong wind", "keeper wrote", "the lamp"}
+    assert {entry.matter.text for entry in colloc.entries(store, by="Ben").entries} == {
+        *("fog thick", "wind strong", "wrote keeper", "dawn at"),
+    }
+
+
+def test_a_session_by_keys(store: Path) -> None:
+    rows, measures = colloc.candidates(store, limit=4)
+    pressed = iter(["1", "n", "a", "r", "b", "x", "u", "s", "a", "a"])
+    texts = iter(["a note"])
+    screens: list[Sequence[str]] = []
+    recorded: list[tuple[str, str, set[int], dict[str, str]]] = []
+
+    def record(row: object, verdict: str, draft: Draft, lines: object) -> None:
+        recorded.append((row.matter.text, verdict, set(draft.lines), dict(draft.texts)))  # type: ignore[attr-defined]
+
+    from colloc.answers.judging.examples import best_examples
+    from colloc.verbs.opening import open_store
+
+    with open_store(store) as opened:
+        outside = Surroundings(
+            lambda: next(pressed, END),
+            lambda question: next(texts),
+            screens.append,
+            lambda row: best_examples(opened, row.matter, 5),
+            record,
+        )
+        decided = session(rows, measures, outside)
+    names = [row.matter.text for row in rows]
+    assert recorded == [
+        (names[0], "accept", {0}, {"note": "a note"}),
+        (names[1], "reject", set(), {}),
+        (names[1], "unsure", set(), {}),
+        (names[3], "accept", set(), {}),
+    ]
+    assert decided == {"accept": 2, "reject": 0, "unsure": 1}
+    assert any(line == "'x' does nothing here" for screen in screens for line in screen)
+    assert any("  decided: reject" in screen for screen in screens)
+    assert any(line.startswith("* 1 ") for line in screens[1])
+
+
+def test_keys_pass_over_arrows(monkeypatch: pytest.MonkeyPatch) -> None:
+    pressed = iter(["\x1b[A\x1bOB\x1b[1;5Ca", "é", "\x1b", "r\x04", ""])
+    monkeypatch.setattr("colloc.cli.keys._pressed", lambda: next(pressed))
+    keys = Keys()
+    assert [keys.read() for _ in range(5)] == ["a", "é", "r", END, END]
+
+
+def test_keys_in_a_terminal(store: Path) -> None:
+    """A real pseudo-terminal: one key decides, text is asked for, what was decided is in the store at once."""
+    environment = os.environ | {"TERM": "xterm", "COLUMNS": "90"}
+    command = ["-m", "colloc", "judge", str(store), "--by", "Cora", "-n", "3"]
+    child = pexpect.spawn(sys.executable, command, env=environment, dimensions=(40, 90), encoding="utf-8", timeout=60)
+    try:
+        child.expect("1 of 3")
+        child.expect("q quit.*labels")
+        child.send("e")
+        child.expect("sense: ")
+        child.sendline("=Sinn ü")
+        child.expect("sense: =Sinn ü.*labels")
+        child.send("a")
+        child.expect("2 of 3.*labels")
+        assert [row["sense"] for row in colloc.decisions(store).to_dicts()] == ["=Sinn ü"]
+        child.send("q")
+        child.expect("1 decided by Cora: 1 accept, 0 reject, 0 unsure")
+        child.expect(pexpect.EOF)
+    finally:
+        child.close()
+    assert child.exitstatus == 0
+    left, _ = colloc.candidates(store, limit=3, by="Cora", again=False)
+    assert len(left) == 2
+
+
+def test_candidates_of_words_and_unknown_words(store: Path, tmp_path: Path) -> None:
+    rows, _ = colloc.candidates(store, words=["fog"], limit=3)
+    assert all("fog" in row.matter.words for row in rows)
+    with pytest.raises(NotSeenError):
+        colloc.candidates(store, given=[["fog", "zebra"]])
+    given = tmp_path / "one.txt"
+    given.write_text("fog\n", encoding="utf-8")
+    assert main(["sheet", str(store), "--given", str(given)]) == 65
+
+
+def test_a_store_that_cannot_be_written_keeps_its_decisions(store: Path, tmp_path: Path) -> None:
+    colloc.judge(store, ["thick", "fog"], "accept", by="Anna")
+    copy = Path(shutil.copy(store, tmp_path / "copy"))
+    copy.chmod(0o444)
+    assert len(colloc.decisions(copy)) == 1
