@@ -53,6 +53,7 @@ if typing.TYPE_CHECKING:
     from colloc.verbs.keeping import documents as documents
     from colloc.verbs.keeping import documents_by as documents_by
     from colloc.verbs.keeping import info as info
+    from colloc.verbs.keeping import methods as methods
     from colloc.verbs.keeping import tallies as tallies
     from colloc.verbs.keeping import tally as tally
     from colloc.verbs.making import add as add
@@ -101,6 +102,7 @@ _HOMES = {
     "matrix": "colloc.verbs.spaces",
     "measure": "colloc.verbs.asking",
     "merge": "colloc.verbs.making",
+    "methods": "colloc.verbs.keeping",
     "open_store": "colloc.verbs.opening",
     "pairs": "colloc.verbs.asking",
     "picture": "colloc.verbs.evidence",

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
 from colloc.errors import NotSeenError, UsageError
@@ -11,6 +11,7 @@ from colloc.verbs.opening import ProgressCall, StorePath, pair_options, reading,
 
 if TYPE_CHECKING:
     from colloc.answers.columns import Columns
+    from colloc.answers.methods.paragraph import Methods
     from colloc.store.checking import Finding
     from colloc.store.opening import Store
 
@@ -95,6 +96,25 @@ def info(store: StorePath | Store) -> dict[str, Any]:
 
     with reading(store) as opened:
         return describe(opened)
+
+
+def methods(
+    store: StorePath | Store, *, measures: Sequence[str] | None = None, result: Mapping[str, Any] | None = None
+) -> Methods:
+    """What was done, as a paragraph and as BibTeX, exact enough to repeat it.
+
+    Parameters
+    ----------
+    measures : sequence of str
+        Names of the catalogue; those shown by default when not given.
+    result : mapping
+        The settings that were written beside a result (``--settings-beside``): its thresholds, slices and seeds.
+    """
+    from colloc.answers.methods.paragraph import methods as describe_methods
+    from colloc.answers.questions import DEFAULT_SHOWN
+
+    with reading(store) as opened:
+        return describe_methods(opened, measures=measures or DEFAULT_SHOWN, result=result)
 
 
 def documents(store: StorePath | Store) -> Iterator[Columns]:

@@ -93,7 +93,7 @@ def tell_apart(
         "least_ratio": ratio[least, row],
         "says": [
             HOLDS if document <= SURE else NO_FINDING if pooled > SURE else UNEVEN
-            for document, pooled in zip(document_log_q[order], log_q[order], strict=True)
+            for document, pooled in zip(np.exp(document_log_q[order]), np.exp(log_q[order]), strict=True)
         ],
     }
     settings = {

@@ -91,8 +91,8 @@ def contrast_pair(
         *_strengths(questions, cells),
     ]
     verdict = say(
-        log_p,
-        over_documents.log_p,
+        np.exp(log_p),
+        np.exp(over_documents.log_p),
         (joint[0], joint[1]),
         (counts.largest_on(True), counts.largest_on(False)),
         over_documents.difference >= 0,

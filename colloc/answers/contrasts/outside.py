@@ -150,8 +150,8 @@ def contrast_frequencies(
     from_store = rows[rows < len(terms)]
     names = dict(zip(from_store.tolist(), vocabulary.term_texts(store, layer, terms[from_store]), strict=True))
     remarks = say(
-        log_q[rows],
-        document_log_q[rows],
+        np.exp(log_q[rows]),
+        np.exp(document_log_q[rows]),
         (count[rows], other[rows]),
         (largest[rows], np.zeros(len(rows), np.int64)),
         more_here[rows],

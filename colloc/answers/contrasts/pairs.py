@@ -110,9 +110,9 @@ def contrast_pairs(
     counts = pair_counts_by_document(questions, found.cells[0][candidates], found.cells[1][candidates])
     tested = document_test(counts.rates, counts.in_this)
     if permutations:
-        document_log_q = np.log(permuted_p(counts.rates, counts.in_this, permutations, seed))
+        document_q = permuted_p(counts.rates, counts.in_this, permutations, seed)
     else:
-        document_log_q = log_q_values(tested.log_p, len(found))
+        document_q = np.exp(log_q_values(tested.log_p, len(found)))
     held = counts.documents_on(True) + counts.documents_on(False)
     if sort == "association":
         score = _association_score(questions, found, candidates)
@@ -137,9 +137,9 @@ def contrast_pairs(
     }
     document = {
         "document_z": tested.rank_z[rows],
-        "document_p" if permutations else "document_q": np.exp(document_log_q[rows]),
+        "document_p" if permutations else "document_q": document_q[rows],
     }
-    return _columns(questions, found, candidates[rows], counts, rows, document, document_log_q[rows], settings)
+    return _columns(questions, found, candidates[rows], counts, rows, document, document_q[rows], settings)
 
 
 def ask_both(
@@ -260,7 +260,7 @@ def _columns(
     counts: DocumentCounts,
     rows: Int64Array,
     document: dict[str, FloatArray],
-    document_log_q: FloatArray,
+    document_q: FloatArray,
     settings: dict[str, Any],
 ) -> Columns:
     """The answer's columns for some of the pairs (``pairs`` among all, ``rows`` among the candidates)."""
@@ -271,11 +271,11 @@ def _columns(
     if settings["sort"] == "association":
         interval = compared.pmi_interval
         differs = (interval.low > 0) | (interval.high < 0)
-        remarks = say_of_association(found.odds_log_q[pairs], differs, (joint, other_joint))
+        remarks = say_of_association(np.exp(found.odds_log_q[pairs]), differs, (joint, other_joint))
     else:
         largest = (counts.largest_on(True)[rows], counts.largest_on(False)[rows])
         more_in_this = found.log_ratio[pairs] >= 0
-        remarks = say(found.log_q[pairs], document_log_q, (joint, other_joint), largest, more_in_this)
+        remarks = say(np.exp(found.log_q[pairs]), document_q, (joint, other_joint), largest, more_in_this)
     columns: dict[str, Any] = {
         "first": vocabulary.term_texts(store, layer, first),
         "second": vocabulary.term_texts(store, layer, second),

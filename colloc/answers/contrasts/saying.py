@@ -8,7 +8,7 @@ import numpy as np
 
 from colloc.records import FloatArray, Int64Array
 
-SURE = float(np.log(0.05))
+SURE = 0.05
 """Findings have q-values of at most 0.05."""
 CARRIES = 0.5
 """From this share on one document is said to carry the difference."""
@@ -20,8 +20,8 @@ TOO_FEW = "too few documents to tell"
 
 
 def say(
-    log_q: FloatArray,
-    document_log_q: FloatArray,
+    q: FloatArray,
+    document_q: FloatArray,
     counts: tuple[Int64Array, Int64Array],
     largest: tuple[Int64Array, Int64Array],
     more_in_this: np.ndarray,
@@ -30,49 +30,49 @@ def say(
 
     Parameters
     ----------
-    log_q : float64 array, shape (n,)
-        ln of the q-value that takes every occurrence for independent (G2).
-    document_log_q : float64 array
-        ln of the q-value of the test over documents; nan where there was none.
+    q : float64 array, shape (n,)
+        The q-value that takes every occurrence for independent (G2).
+    document_q : float64 array
+        The q-value of the test over documents; nan where there was none.
     counts, largest : two int64 arrays each
         Occurrences on either side, and the most that one document has.
     more_in_this : bool array
     """
     remarks = []
-    for row in range(len(log_q)):
+    for row in range(len(q)):
         side = 0 if more_in_this[row] else 1
         total, top = int(counts[side][row]), int(largest[side][row])
-        remark = _finding(float(log_q[row]), float(document_log_q[row]), top, total)
+        remark = _finding(float(q[row]), float(document_q[row]), top, total)
         if not counts[1 - side][row]:
             remark = f"{('this', 'that')[side]} only; {remark}"
         remarks.append(remark)
     return remarks
 
 
-def say_of_association(log_q: FloatArray, differs: np.ndarray, counts: tuple[Int64Array, Int64Array]) -> list[str]:
+def say_of_association(q: FloatArray, differs: np.ndarray, counts: tuple[Int64Array, Int64Array]) -> list[str]:
     """One short remark on a difference of association for each row.
 
     Parameters
     ----------
-    log_q : float64 array, shape (n,)
-        ln of the q-value of Woolf's test.
+    q : float64 array, shape (n,)
+        The q-value of Woolf's test.
     differs : bool array
         Whether the jackknife interval over documents of the PMI difference leaves 0 out.
     """
     remarks = []
-    for row in range(len(log_q)):
-        remark = NO_FINDING if log_q[row] > SURE else HOLDS if differs[row] else UNEVEN
+    for row in range(len(q)):
+        remark = NO_FINDING if q[row] > SURE else HOLDS if differs[row] else UNEVEN
         alone = [name for name, other in (("this", counts[1]), ("that", counts[0])) if not other[row]]
         remarks.append(f"{alone[0]} only; {remark}" if alone else remark)
     return remarks
 
 
-def _finding(log_q: float, document_log_q: float, top: int, total: int) -> str:
-    if document_log_q <= SURE:
+def _finding(q: float, document_q: float, top: int, total: int) -> str:
+    if document_q <= SURE:
         return HOLDS
-    if np.isnan(document_log_q):
+    if np.isnan(document_q):
         return TOO_FEW
-    if log_q > SURE:
+    if q > SURE:
         return NO_FINDING
     if top >= CARRIES * total:
         return f"one document carries it ({top} of {total})"

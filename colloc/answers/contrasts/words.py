@@ -97,7 +97,7 @@ def contrast_words(
         largest[0][lot], largest[1][lot] = found.largest_on(True), found.largest_on(False)
         if permutations:
             permuted = permuted_p(found.rates, found.in_this, permutations, seed)
-    document_log_q = np.log(permuted) if permutations else log_q_values(document_log_p)
+    document_q = permuted if permutations else np.exp(log_q_values(document_log_p))
     more_in_this = log_ratio >= 0
     score = ranking_score(sort, document_log_p, log_ratio, interval.low, interval.high, g2)
     shown = np.flatnonzero(held[0] + held[1] >= min_docs)
@@ -117,10 +117,10 @@ def contrast_words(
         "g2_two_cells": keyness_g2_two_cells(*(np.asarray(a)[rows] if np.ndim(a) else a for a in arguments)),
         "q": np.exp(log_q[rows]),
         "document_z": z[rows],
-        "document_p" if permutations else "document_q": np.exp(document_log_q[rows]),
+        "document_p" if permutations else "document_q": document_q[rows],
         "says": say(
-            log_q[rows],
-            document_log_q[rows],
+            np.exp(log_q[rows]),
+            document_q[rows],
             (count[0][rows], count[1][rows]),
             (largest[0][rows], largest[1][rows]),
             more_in_this[rows],

@@ -209,7 +209,7 @@ class _Trends:
 
     def columns(self, rows: Int64Array) -> dict[str, Any]:
         """What is told of some rows."""
-        document_log_q, log_q = self._document_log_q[rows], self._log_q[rows]
+        document_q, q = np.exp(self._document_log_q[rows]), np.exp(self._log_q[rows])
         return {
             "shape": [bars(rate) for rate in self._rate[rows]],
             "count": self._count[rows].sum(axis=1),
@@ -220,20 +220,20 @@ class _Trends:
             "slope_low": self._slope.interval.low[rows],
             "slope_high": self._slope.interval.high[rows],
             "g2": self._g2[rows],
-            "q": np.exp(log_q),
+            "q": q,
             "document_z": self._z[rows],
-            "document_q": np.exp(document_log_q),
+            "document_q": document_q,
             "says": [
                 _direction(z, over_documents, pooled)
-                for z, over_documents, pooled in zip(self._z[rows], document_log_q, log_q, strict=True)
+                for z, over_documents, pooled in zip(self._z[rows], document_q, q, strict=True)
             ],
         }
 
 
-def _direction(z: float, document_log_q: float, log_q: float) -> str:
-    if document_log_q <= SURE:
+def _direction(z: float, document_q: float, q: float) -> str:
+    if document_q <= SURE:
         return f"{'rises' if z > 0 else 'falls'} over documents"
-    return NO_FINDING if log_q > SURE else UNEVEN
+    return NO_FINDING if q > SURE else UNEVEN
 
 
 def _frequent(question: Question, min_count: int) -> tuple[UInt32Array, UInt32Array]:
@@ -258,7 +258,7 @@ def _association(
     slope = weighted_slope(*_where_possible(found.arguments, value, se), periods.times)
     with np.errstate(divide="ignore", invalid="ignore"):
         z = slope.slope / slope.interval.se
-        log_q = log_q_values(np.log(slope.p))
+        q = np.exp(log_q_values(np.log(slope.p)))
     held = found.documents.sum(axis=0)
     enough = np.flatnonzero((held >= min_docs) & np.isfinite(z))
     judged = enough[both_directions(np.abs(z[enough]), [], z[enough] >= 0, 2 * JUDGED)]
@@ -275,13 +275,11 @@ def _association(
         "odds_slope": slope.slope[rows],
         "odds_low": low,
         "odds_high": high,
-        "odds_q": np.exp(log_q[rows]),
+        "odds_q": q[rows],
         "first_odds": value[rows, 0],
         "last_odds": value[rows, -1],
         "says": [
-            _direction(z[row], float(SURE) if below > 0 or above < 0 else 0.0, float(log_q[row]))
-            if log_q[row] <= SURE
-            else NO_FINDING
+            NO_FINDING if q[row] > SURE else _direction(z[row], 0.0 if below > 0 or above < 0 else 1.0, q[row])
             for row, below, above in zip(rows.tolist(), low, high, strict=True)
         ],
     }

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from collections.abc import Iterator, Mapping
+from pathlib import Path
 from typing import Annotated, Any
 
 import typer
@@ -11,7 +12,7 @@ import typer
 from colloc.cli import options as opt
 from colloc.cli.output import Target, deliver, deliver_parts, opened, print_lines, write_settings
 from colloc.cli.progress import ProgressLine
-from colloc.errors import UsageError
+from colloc.errors import DataError, NoInputError, UsageError
 from colloc.processor import prefer_fast_sorting
 
 
@@ -21,6 +22,16 @@ def info(
         str | None, typer.Option("--by", metavar="KEY", help="Documents, tokens and types for each value of this key.")
     ] = None,
     documents: Annotated[bool, typer.Option("--documents", help="List the documents with their metadata.")] = False,
+    methods: Annotated[
+        bool, typer.Option("--methods", help="Tell what was done, as a paragraph and as BibTeX, to be repeated.")
+    ] = False,
+    show: Annotated[
+        list[str] | None, typer.Option("--show", metavar="NAMES", help="With --methods: the measures that were used.")
+    ] = None,
+    result: Annotated[
+        Path | None,
+        typer.Option("--result", metavar="FILE", help="With --methods: what --settings-beside wrote for a result."),
+    ] = None,
     format: opt.FormatOption = "table",
     output: opt.OutputOption = None,
     settings_beside: opt.BesideOption = False,
@@ -32,7 +43,13 @@ def info(
     target = Target(format, output, quiet, settings_beside)
     if by is not None and documents:
         raise UsageError("--by and --documents are two questions: ask one at a time")
-    if by is not None:
+    if methods and (by is not None or documents):
+        raise UsageError("--methods is a question of its own: leave out --by and --documents")
+    if not methods and (show or result is not None):
+        raise UsageError("--show and --result go with --methods")
+    if methods:
+        _deliver_methods(store, opt.shown_measures(show), result, target)
+    elif by is not None:
         deliver(keeping.documents_by(store, by), target, "info")
     elif documents:
         deliver_parts(keeping.documents(store), {"store": str(store)}, target, "info")
@@ -49,6 +66,36 @@ def info(
             {"item": [name for name, _ in rows], "value": [value for _, value in rows]}, {"store": str(store)}
         )
         deliver(answer, target, "info")
+
+
+def _deliver_methods(store: Path, measures: list[str] | None, result: Path | None, target: Target) -> None:
+    """The paragraph and the BibTeX under each other, or as JSON."""
+    from colloc.verbs import keeping
+
+    if target.format not in ("table", "json"):
+        raise UsageError("--methods is text, or JSON with --format json")
+    settings = _read_settings(result) if result is not None else None
+    told = keeping.methods(store, measures=measures, result=settings)
+    text = f"{told.paragraph}\n\n{told.bibtex}\n"
+    if target.format == "json":
+        text = json.dumps({"paragraph": told.paragraph, "bibtex": told.bibtex}, ensure_ascii=False, indent=2) + "\n"
+    with opened(target.path) as stream:
+        stream.write(text.encode())
+    if target.settings_beside and target.path is not None:
+        write_settings(target.path, {"store": str(store), "measures": measures, "result": str(result)}, "info")
+
+
+def _read_settings(path: Path) -> dict[str, Any]:
+    """What ``--settings-beside`` wrote."""
+    try:
+        found = json.loads(path.read_text(encoding="utf-8"))
+    except FileNotFoundError as error:
+        raise NoInputError(f"{path}: no such file; write it with --settings-beside") from error
+    except (OSError, ValueError) as error:
+        raise DataError(f"{path}: not the settings of a result: {error}") from error
+    if not isinstance(found, dict) or not isinstance(found.get("settings"), dict):
+        raise DataError(f"{path}: not the settings of a result: it needs the keys command and settings")
+    return found
 
 
 def _flattened(prefix: str, value: Any) -> Iterator[tuple[str, str]]:
