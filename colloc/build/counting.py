@@ -11,6 +11,7 @@ from colloc.settings import TallySpec
 from colloc.store import documents, facts, tallies, visibility
 from colloc.store.connection import Store
 from colloc.store.inputs.sources import forget_emptied
+from colloc.store.vocabulary import ensure_annotated_layers
 
 
 def count_new_documents(store: Store, limits: Resources, progress: Progress | None) -> None:
@@ -20,6 +21,7 @@ def count_new_documents(store: Store, limits: Resources, progress: Progress | No
     tally``) is brought up to date in one transaction with the word frequencies
     and the mark of how far documents are counted; cached tables are dropped.
     """
+    ensure_annotated_layers(store)
     _count(store, visibility.uncounted(store), 1, limits, progress, lambda: visibility.show_all(store))
 
 

@@ -15,6 +15,8 @@ from numpy.typing import NDArray
 from colloc.errors import DataError
 from colloc.records import Annotation, Int64Array
 
+COMMENT, RANGE, EMPTY = "comment", "range", "empty node"
+"""Kinds of lines that are not words."""
 _SMALL = 2**10
 NUMBERS = {str(number): number for number in range(1, _SMALL)}
 """Numbers as they are written, without zeros in front; those of longer sentences are read one by one."""
@@ -120,51 +122,61 @@ def split_lines(text: str, parts: Sequence[Part], annotation: Annotation, line: 
     DataError
         ``source:line: ...`` for a wrong number of columns, or identifiers that are out of order.
     """
-    names = annotation.columns
     places = Places(annotation, text, parts, line)
     lines = text.split("\n")
     if not lines[-1]:
         lines.pop()
-    width = len(names)
-    fields = np.fromiter(map(str.count, lines, repeat("\t")), np.int64, len(lines)) + 1
-    blank = np.array([not line for line in lines], bool)
-    hashes = np.array([line.startswith("#") for line in lines], bool)
-    if names[0] != "id" and width > 1:
-        hashes &= fields != width
-    words = ~(blank | hashes)
-    _check_widths(places, fields, words, names, lines)
+    words, blank, others = _kinds(places, lines, annotation.columns)
     places.words = np.flatnonzero(words)
-    columns = _by_column(lines, words, names)
-    others: dict[int, str] = {}
+    columns = _by_column(lines, words, annotation.columns)
+    ids = None
     if "id" in columns:
-        numbers = [*map(NUMBERS.get, columns["id"])]
-        if None in numbers:
-            others = _not_words(places, columns["id"], numbers)
-            plain = np.ones(len(numbers), bool)
-            plain[[*others]] = False
-            at = places.words
-            words[at[~plain]] = False
-            places.words = at[plain]
-            others = {int(at[offset]): kind for offset, kind in others.items()}
-            columns = _by_column(lines, words, names)
-            numbers = [number for number in numbers if number is not None]
-        ids = np.array(numbers, np.int64)
+        ids, columns, more = _numbered(places, columns)
+        words[[*more]] = False
+        others |= more
     # The sentence a line is in: how many blank lines stand before it.
     sentence = np.cumsum(blank)[places.words]
     begins = np.flatnonzero(np.diff(sentence, prepend=-1))
     positions = np.arange(len(sentence)) - np.repeat(begins, np.diff(begins, append=len(sentence))) + 1
-    if "id" in columns:
-        wrong = np.flatnonzero(ids != positions)
-        if len(wrong):
-            word = int(wrong[0])
-            places.fail(f"ID {ids[word]} where {positions[word]} comes next: number words from 1", word=word)
+    if ids is not None and (ids != positions).any():
+        word = int(np.flatnonzero(ids != positions)[0])
+        places.fail(f"ID {ids[word]} where {positions[word]} comes next: number words from 1", word=word)
     next_words = np.concatenate([[0], np.cumsum(words)])
     result = Lines(
         columns, begins, positions, next_words[places.part_lines], [], [], [], places, places.number(len(lines))
     )
-    for number in np.flatnonzero(~(words | blank)).tolist():
-        _keep(result, lines[number], others.get(number, ""), number, int(next_words[number]))
+    numbers = sorted(others)
+    for number, word in zip(numbers, next_words[numbers].tolist(), strict=True):
+        if others[number] == COMMENT:
+            result.before.append((word, lines[number]))
+        else:
+            _keep(result, lines[number], others[number], number, word)
     return result
+
+
+def _kinds(
+    places: Places, lines: list[str], names: tuple[str, ...]
+) -> tuple[NDArray[np.bool_], NDArray[np.bool_], dict[int, str]]:
+    """Which lines are words, which are blank, and what the others are."""
+    width = len(names)
+    fields = np.fromiter(map(str.count, lines, repeat("\t")), np.int64, len(lines)) + 1
+    words = fields == width
+    if width == 1:
+        words &= np.array([line != "" and not line.startswith("#") for line in lines], bool)
+    blank = np.zeros(len(lines), bool)
+    others = {}
+    for number in np.flatnonzero(~words).tolist():
+        line = lines[number]
+        if not line:
+            blank[number] = True
+        elif line[0] == "#":
+            others[number] = COMMENT
+        elif line.isspace() and "\t" not in line:
+            places.fail("a line of spaces: sentences end with an empty line", line=number)
+        else:
+            found = f"{fields[number]:,} column{'' if fields[number] == 1 else 's'}"
+            places.fail(f"{found} where {width} belong, divided by tabs ({', '.join(names)})", line=number)
+    return words, blank, others
 
 
 def _by_column(lines: list[str], words: NDArray[np.bool_], names: tuple[str, ...]) -> dict[str, list[str]]:
@@ -174,44 +186,44 @@ def _by_column(lines: list[str], words: NDArray[np.bool_], names: tuple[str, ...
     return {name: fields[at :: len(names)] for at, name in enumerate(names)}
 
 
-def _check_widths(
-    places: Places,
-    fields: Int64Array,
-    words: NDArray[np.bool_],
-    names: tuple[str, ...],
-    lines: list[str],
-) -> None:
-    wrong = np.flatnonzero(words & (fields != len(names)))
-    if not len(wrong):
-        return
-    line = int(wrong[0])
-    if fields[line] == 1 and not lines[line].strip():
-        places.fail("a line of spaces: sentences end with an empty line", line=line)
-    found = f"{fields[line]:,} column{'' if fields[line] == 1 else 's'}"
-    places.fail(f"{found} where {len(names)} belong, divided by tabs ({', '.join(names)})", line=line)
+def _numbered(places: Places, columns: dict[str, list[str]]) -> tuple[Int64Array, dict[str, list[str]], dict[int, str]]:
+    """Numbers of the words, their columns without the rows that are no words, and what those are, by line."""
+    numbers = [*map(NUMBERS.get, columns["id"])]
+    more: dict[int, str] = {}
+    if None in numbers:
+        found = _not_words(places, columns["id"], numbers)
+        more = {int(places.words[offset]): kind for offset, kind in found.items()}
+        if found:
+            plain = [number is not None for number in numbers]
+            columns = {name: [*compress(column, plain)] for name, column in columns.items()}
+            numbers = [number for number in numbers if number is not None]
+            places.words = places.words[plain]
+    return np.array(numbers, np.int64), columns, more
 
 
 def _not_words(places: Places, ids: Sequence[str], numbers: list[int | None]) -> dict[int, str]:
-    """Kinds of the rows that are ranges or empty nodes, by offset; large numbers are put into ``numbers``."""
+    """Kinds of the rows that are no words, by offset; large numbers are put into ``numbers``."""
     found = {}
     for offset in [offset for offset, number in enumerate(numbers) if number is None]:
         text = ids[offset]
         if _INTEGER.fullmatch(text):
             numbers[offset] = int(text)
         elif _RANGE.fullmatch(text):
-            found[offset] = "range"
+            found[offset] = RANGE
         elif _EMPTY_NODE.fullmatch(text):
-            found[offset] = "empty"
+            found[offset] = EMPTY
+        elif text.startswith("#"):
+            found[offset] = COMMENT  # that happens to hold as many tabs as a word
         else:
             places.fail(f"ID {text[:40]!r} is neither a number, a range such as 3-4, nor 5.1", word=offset)
     return found
 
 
 def _keep(lines: Lines, text: str, kind: str, line: int, word: int) -> None:
-    """File a line that is not a word."""
-    if kind == "range":
+    """File a range or an empty node."""
+    if kind == RANGE:
         lines.ranges.append(_range(lines, text.split("\t"), line, word))
-    if kind == "empty":
+    if kind == EMPTY:
         name = text.partition("\t")[0]
         node = _EMPTY_NODE.fullmatch(name)
         assert node is not None

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from itertools import chain
 
@@ -11,6 +12,7 @@ from numpy.typing import NDArray
 from colloc.records import Int64Array
 from colloc.tokens.annotated.lines import Lines, comments
 
+_BEGINS = re.compile(r"#[ \t]*new(?:par|doc)\b")
 PARAGRAPH_END = "\n\n"
 """Stands between paragraphs and between documents."""
 
@@ -40,7 +42,7 @@ def paragraph_starts(lines: Lines) -> Int64Array:
     marked = {word for word, line in comments(lines) if line[1:].split(maxsplit=1)[:1] in (["newpar"], ["newdoc"])} - {
         len(lines)
     }
-    misc = lines.columns.get("misc", ())
+    misc = lines.columns.get("misc", [])
     found = {value for value in set(misc) if "NewPar=Yes" in value.split("|")}
     if found:
         marked.update(offset for offset, value in enumerate(misc) if value in found)
