@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from colloc.answers.questions import Question
 from colloc.answers.sureness.documents import DocumentEvidence, document_evidence
-from colloc.answers.sureness.floors import Floors, Shuffle, floor_measures, obtain_floors
+from colloc.answers.sureness.floors import Floors, Shuffle, find_floors, floor_measures, obtain_floors
 from colloc.answers.sureness.hypotheses import Hypotheses, all_pairs
 from colloc.answers.sureness.wishes import DOCUMENT_COLUMNS, INTERVAL_COLUMNS, Q_COLUMNS, Wishes
 from colloc.answers.tables import PairTable, Side, TableReader
@@ -72,6 +72,7 @@ class Judge:
         self._jobs, self._memory = jobs, memory
         self._progress = progress
         self._floors: dict[Shuffle, Floors] = {} if floors is None else floors
+        self._made: set[Shuffle] = set()
         self.columns = wishes.shown(question.convention.margins, question.spec.kind)
         self.floor_measure = ranking if ranking in floor_measures(question) else "pmi"
 
@@ -89,7 +90,8 @@ class Judge:
         if any(name in self.columns for name in INTERVAL_COLUMNS):
             found["groups_of_documents"] = GROUPS
         for shuffle, floors in self._floors.items():
-            found[f"{shuffle}_floor"] = f"99th percentile of {self.floor_measure}, seed {floors.seed}"
+            kept = " (made for this answer; colloc floors keeps it)" if shuffle in self._made else ""
+            found[f"{shuffle}_floor"] = f"99th percentile of {self.floor_measure}, seed {floors.seed}{kept}"
         return {name: value for name, value in found.items() if value is not None}
 
     @cached_property
@@ -99,8 +101,11 @@ class Judge:
     def floors(self, shuffle: Shuffle) -> Floors:
         """One of the chance floors, made when it is first asked for."""
         if shuffle not in self._floors:
+            question = sided(self._question, self._side)
+            if find_floors(question, shuffle) is None and not question.store.writable:
+                self._made.add(shuffle)
             self._floors[shuffle] = obtain_floors(
-                sided(self._question, self._side),
+                question,
                 shuffle,
                 progress=self._progress,
                 jobs=self._jobs,
