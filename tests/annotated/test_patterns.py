@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import re
 import time
+import unicodedata
+from collections import Counter
 from pathlib import Path
 
 import numpy as np
@@ -111,28 +113,15 @@ def test_unknown_classes_and_plain_text(store: Store, tmp_path: Path) -> None:
 
 
 def test_sequences_are_counted(store_path: Path, text: str) -> None:
-    expected: dict[tuple[str, ...], int] = {}
+    expected: Counter[tuple[str, int]] = Counter()
     for words in read_sentences(text):
         for start in range(len(words)):
             for length in (1, 3):
                 part = words[start : start + length]
-                classes = [word.upos for word in part]
-                if classes in (["NOUN"], ["NOUN", "ADP", "NOUN"]):
-                    key = tuple(word.form for word in part)
-                    expected[key] = expected.get(key, 0) + 1
+                if [word.upos for word in part] == ["NOUN", "ADP", "NOUN"][:length]:
+                    expected[unicodedata.normalize("NFC", " ".join(word.form for word in part)), length] += 1
     answer = colloc.sequences(store_path, "NOUN (ADP NOUN)?", layer="form", limit=0)
-    found = {(row["sequence"], row["length"]): row["joint"] for row in answer.to_dicts()}
-    joined: dict[tuple[str, int], int] = {}
-    for key, n in expected.items():
-        place = " ".join(key), len(key)
-        joined[place] = joined.get(place, 0) + n
-    import unicodedata
-
-    normal: dict[tuple[str, int], int] = {}
-    for (key_text, length), n in joined.items():
-        place = unicodedata.normalize("NFC", key_text), length
-        normal[place] = normal.get(place, 0) + n
-    assert found == normal
+    assert {(row["sequence"], row["length"]): row["joint"] for row in answer.to_dicts()} == expected
     counts = answer["joint"].tolist()
     assert counts == sorted(counts, reverse=True)
     top = colloc.sequences(store_path, "NOUN (ADP NOUN)?", layer="form", limit=5)
