@@ -269,6 +269,18 @@ def only_in_logs(demo: Demo) -> Iterable[str]:
     return sorted(of("log") - of("notice"))[0], "the"
 
 
+def test_differences_are_told_where_they_were_planted(demo: Demo) -> None:
+    """Truths of the demo corpora: *thick fog* is firmer in notices than in logs, at all times alike; *heavy rain* is
+    the same everywhere."""
+
+    def told(first: str, second: str) -> str:
+        return " ".join(colloc.explain(demo.store, first, second, examples=0).statements)
+
+    assert "where genre is notice" in told("thick", "fog")
+    assert "where year is" not in told("thick", "fog")
+    assert "not the same everywhere" not in told("heavy", "rain")
+
+
 CONLLU = """# newdoc id = one
 1\tShe\tshe\tPRON\t_\t_\t2\tnsubj\t_\t_
 2\tsells\tsell\tVERB\t_\t_\t0\troot\t_\t_

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from typing import Any
 
@@ -85,8 +85,14 @@ class Evidence:
         rows = self.measures["measure"].tolist()
         return float(self.measures["value"][rows.index(measure)])
 
-    def sentence(self) -> str:
-        """The sentence of a dictionary maker: in how many cases the second word stands near the first."""
+    def sentence(self, shown: Callable[[str], str] = str) -> str:
+        """The sentence of a dictionary maker: in how many cases the second word stands near the first.
+
+        Parameters
+        ----------
+        shown : callable
+            What is done to the two words, for instance to keep their direction apart from that of the sentence.
+        """
         left, right = self.cases["left"], self.cases["right"]
         if left == right:
             where = f"within {left} word{'s' if left != 1 else ''} of"
@@ -97,7 +103,7 @@ class Evidence:
         else:
             where = f"within {left} words before or {right} after"
         with_second, cases = self.cases["with_second"], self.cases["cases"]
-        return f"‘{self.second}’ stands {where} ‘{self.first}’ in {with_second:,} of {cases:,} cases."
+        return f"‘{shown(self.second)}’ stands {where} ‘{shown(self.first)}’ in {with_second:,} of {cases:,} cases."
 
     def to_dict(self) -> dict[str, Any]:
         """Plain values for JSON: columns as lists of rows; what is not a number is None, infinities are "inf"."""

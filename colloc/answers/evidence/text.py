@@ -17,7 +17,11 @@ _BAR = 24
 def card_lines(card: Evidence, columns: int) -> list[str]:
     """The card in lines of at most ``columns`` display columns; words that are longer than that excepted."""
     columns = max(columns, LEAST_WIDTH)
-    lines = [f"{shown_text(card.first)} + {shown_text(card.second)}", "", *_wrapped(card.sentence(), columns)]
+    lines = [
+        f"{shown_text(card.first)} + {shown_text(card.second)}",
+        "",
+        *textwrap.wrap(card.sentence(shown_text), columns),
+    ]
     for statement in card.statements:
         lines += _wrapped(statement, columns, "- ", "  ")
     sections: list[tuple[str, list[str]]] = [

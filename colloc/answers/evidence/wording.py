@@ -9,9 +9,13 @@ from colloc.answers.columns import Columns
 from colloc.answers.questions import Question
 from colloc.answers.sureness.documents import SOUND_DOCUMENTS, SOUND_JOINT
 from colloc.counts.grouping import GROUPS
+from colloc.measures.intervals import normal_quantile
 
 FEW = 5
 """Below this many meetings, or this expected count, a claim is not made."""
+APART = 4.0
+"""Standard errors between two parts from which on they are said to differ: the asymptotic ones are too small on
+running text, and the two parts are the most different of several."""
 ONE_AUTHOR = 0.5
 """From this share on a single document is named as the possible cause."""
 
@@ -139,22 +143,28 @@ def _limits(question: Question, parts: dict[str, Any], joint: float) -> list[str
 
 
 def _changing(slices: dict[str, Columns]) -> str | None:
-    """The key whose parts differ most: where two intervals of PMI lie apart."""
-    best: tuple[float, str] | None = None
+    """The key whose parts differ most, where they differ by far more than the best of many pairs would by chance."""
+    best = (APART, "")
     for key, table in slices.items():
         rows = [row for row in table if row["joint"] >= FEW]
         if len(rows) < 2:
             continue
         low = min(rows, key=lambda row: row["pmi"])
         high = max(rows, key=lambda row: row["pmi"])
-        gap = high["pmi_low"] - low["pmi_high"]
-        if gap > 0 and (best is None or gap > best[0]):
-            best = (
-                gap,
+        apart = (high["pmi"] - low["pmi"]) / math.hypot(_standard_error(low), _standard_error(high))
+        best = max(
+            best,
+            (
+                apart,
                 f"It is not the same everywhere: PMI {high['pmi']:.2f} where {key} is {high['value']}, "
                 f"{low['pmi']:.2f} where it is {low['value']}.",
-            )
-    return None if best is None else best[1]
+            ),
+        )
+    return best[1] or None
+
+
+def _standard_error(row: dict[str, Any]) -> float:
+    return max(float(row["pmi_high"] - row["pmi_low"]) / (2 * normal_quantile(0.95)), 1e-9)
 
 
 def _count(value: float) -> str:

@@ -133,7 +133,7 @@ def _chance(card: Evidence) -> Markup:
     if card.tests:
         at_most = "at most " if card.tests["q_is"] == "at most" else ""
         found += (
-            f"<p>p {text(p_text(card.tests))}; q {at_most}{_small(card.tests['q'])} among "
+            f"<p>p {text(p_text(card.tests).replace('-', '−'))}; q {at_most}{_small(card.tests['q'])} among "
             f"{number(card.tests['hypotheses'])} pairs of words.</p>"
         )
     for row in card.floors:

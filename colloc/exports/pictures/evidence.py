@@ -77,7 +77,7 @@ def _spread(card: Evidence, axes: Axes) -> None:
     axes.set_ylim(0, max([*joint.tolist(), *even.tolist(), 1]) * 1.12)
     axes.locator_params(integer=True)
     axes.set_title(
-        f"‘{shorten(card.first)}’ + ‘{shorten(card.second)}’ over documents (DPnorm {spread['dp_norm']:.2f})",
+        f"Spread of ‘{shorten(card.first)}’ + ‘{shorten(card.second)}’ over documents (DPnorm {spread['dp_norm']:.2f})",
         loc="left",
         fontsize=10,
     )
