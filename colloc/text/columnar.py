@@ -55,7 +55,7 @@ def read(opened: Opened, skip: int) -> Iterator[Document]:
         try:
             yield from _documents(opened, file, skip)
         except (pa.ArrowException, OSError, EOFError, ValueError, MemoryError) as error:
-            reason = str(error).splitlines()[0][:200] if str(error) else type(error).__name__
+            reason = ascii(str(error).partition("\n")[0][:200])[1:-1] or type(error).__name__
             raise opened.error(f"damaged, or no {opened.format} file: {reason}; get the file again") from error
 
 

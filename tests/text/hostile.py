@@ -6,13 +6,14 @@ import random
 import struct
 import zlib
 from pathlib import Path
+from xml.sax.saxutils import escape
 
 from colloc.errors import CollocError
 from colloc.settings import ReadSettings
 
 from .samples import HOSTILE, PACKERS, count_characters, json_line, prose
 
-NAMES = ("a.txt", "a.jsonl", "a.csv", "a.tsv")
+NAMES = ("a.txt", "a.jsonl", "a.csv", "a.tsv", "a.html", "a.xml")
 ENCODINGS = ("utf-8", "utf-8", "utf-8", "detect", "utf-16", "latin-1", "shift_jis", "gb18030")
 
 
@@ -39,9 +40,20 @@ def _sound(chance: random.Random, name: str) -> bytes:
         content = "".join(json_line(text=text, year=1990, deep={"a": [text]}) for text in chosen)
     elif name == "a.csv":
         content = "text,year\r\n" + "".join('"{}",1990\r\n'.format(text.replace('"', '""')) for text in chosen)
+    elif name == "a.html":
+        content = "<!DOCTYPE html><title>t</title>" + "".join(f"<p class=x>{text}<br><b>y</b></p>" for text in chosen)
+    elif name == "a.xml":
+        content = "<TEI><text><body>{}</body></text></TEI>".format(
+            "".join(f"<p><s><w lemma='x'>{escape(_printable(text))}</w></s></p>" for text in chosen)
+        )
     else:
         content = "text\tyear\n" + "".join(" ".join(text.split()) + "\t1990\n" for text in chosen)
     return content.encode(chance.choice(["utf-8"] * 5 + ["utf-8-sig", "utf-16", "utf-32", "gb18030"]))
+
+
+def _printable(text: str) -> str:
+    """Without what XML 1.0 has no place for."""
+    return "".join(character for character in text if character.isprintable())
 
 
 def _mutated(chance: random.Random, data: bytes) -> bytes:
@@ -82,6 +94,10 @@ TROUBLE = (
     b"-Infinity",
     b'"text":"x",',
     b"\x1b$B\xff",
+    b"<![CDATA[",
+    b"<!DOCTYPE a [<!ENTITY b 'c'>]>",
+    b"<p>" * 3000,
+    b"&#xD800;",
 )
 """Pieces put into sound input: zero bytes, halves of pairs, overlong forms, line ends, deep nesting, huge numbers."""
 

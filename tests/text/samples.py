@@ -8,6 +8,7 @@ import json
 import lzma
 import random
 from collections.abc import Callable
+from dataclasses import replace
 from functools import partial
 from pathlib import Path
 
@@ -60,7 +61,7 @@ def json_line(**columns: object) -> str:
 def read_documents(path: Path | str, settings: ReadSettings | None = None, skip: int = 0) -> list[Document]:
     """Every document of one input, its pieces read."""
     return [
-        Document(document.identifier, document.metadata, tuple(document.pieces), document.record)
+        replace(document, pieces=tuple(document.pieces))
         for source in open_sources([str(path)], settings or ReadSettings())
         for document in source.documents(skip)
     ]

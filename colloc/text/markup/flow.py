@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import re
 
-_SPACES = re.compile(r"[ \t\n\r\f]+")
+_SPACES = re.compile(r"[ \t\n\r\f]{2,}|[\t\n\r\f]")
+"""White space that is not one space already."""
 PARAGRAPH_END = "\n\n"
 """Ends a paragraph in every setting of the segmenter."""
 SOFT_HYPHEN = "\u00ad"

@@ -15,8 +15,8 @@ and 17; attributes of ``att.linguistic``.
 from __future__ import annotations
 
 from collections import deque
-from collections.abc import Iterator, Mapping
-from typing import Any
+from collections.abc import Callable, Iterator, Mapping
+from typing import Any, NoReturn
 
 from colloc.errors import MissingExtraError, UsageError
 from colloc.records import Annotation, Document, MetaValue
@@ -125,8 +125,8 @@ class _Handler:
 
     def __init__(self, paths: MetaPaths, largest: int) -> None:
         self.queue: deque[_Begin | str] = deque()
-        self.wrong = ""
-        """What makes the file unreadable, if anything does."""
+        self.fail: Callable[[str], NoReturn]
+        """Says what makes the file unreadable, and where; set by who has the parser."""
         self._paths = paths
         self._largest = largest
         self._header: _Header | None = None
@@ -144,7 +144,7 @@ class _Handler:
         if self._root:
             self._root = False
             if name not in _ROOTS:
-                self.wrong = f"no TEI: its outermost element is {name[:40]!r}"
+                self.fail(f"no TEI: its outermost element is {name[:40]!r}")
         if self._header_depth:
             self._in_header(name, attributes)
         elif self._body is not None:
@@ -177,8 +177,8 @@ class _Handler:
         if self._header_depth:
             self._header_size += len(data)
             if self._header_size > self._largest:
-                self.wrong = f"a header of more than {self._largest:,} characters (max_record)"
-            elif self._header is not None:
+                self.fail(f"a header of more than {self._largest:,} characters (max_record)")
+            if self._header is not None:
                 self._header.text(data)
         elif self._body is not None:
             self._body.text(data)
@@ -225,12 +225,12 @@ class _Handler:
                 return
             self._announce(body.marks_words)
             body.decide(self._annotated)
-        if final or body.size > _UNDECIDED:
+        if final or body.size > min(_UNDECIDED, self._largest):
             piece = body.take(self._annotated)
             if piece:
                 self.queue.append(piece)
             if body.size > self._largest:
-                self.wrong = f"a sentence or note of more than {self._largest:,} characters (max_record)"
+                self.fail(f"a sentence or note of more than {self._largest:,} characters (max_record)")
 
 
 class _Documents:
@@ -241,6 +241,7 @@ class _Documents:
         paths = MetaPaths(opened.settings.meta_xpath)
         self._handler = _Handler(paths, opened.settings.max_record)
         self._parser = XmlParser(opened, self._handler)
+        self._handler.fail = self._parser.fail
         self._pieces = opened.text(declared=declared_encoding)
         self._ended = False
         self._record = 0
@@ -279,8 +280,6 @@ class _Documents:
                 self._parser.close()
             else:
                 self._parser.feed(piece)
-            if self._handler.wrong:
-                self._parser.fail(self._handler.wrong)
         return bool(self._handler.queue)
 
 

@@ -114,6 +114,8 @@ class _Sink:
 
     def take_lines(self) -> str:
         """The whole sentences that have been collected."""
+        if not self.ready:
+            return ""
         taken = "".join(self.lines[: self.ready])
         del self.lines[: self.ready]
         self.ready = 0
@@ -142,6 +144,8 @@ class Body:
 
     def __init__(self, annotated: bool) -> None:
         self.marks_words = annotated
+        self.size = 0
+        """Characters waiting to be taken."""
         self._sinks = [_Sink(True)]
         self._aside: list[_Sink] = []
         self._depth = 0
@@ -152,11 +156,6 @@ class Body:
         self._word: list[str] = []
         self._word_attributes: Mapping[str, str] = {}
         self._fragment: tuple[str, Mapping[str, str]] | None = None
-
-    @property
-    def size(self) -> int:
-        """Characters waiting to be taken."""
-        return sum(sink.size for sink in (*self._sinks, *self._aside))
 
     def decide(self, annotated: bool) -> None:
         """Whether words or text will be taken."""
@@ -214,6 +213,7 @@ class Body:
             self._text(data)
 
     def _text(self, data: str) -> None:
+        self.size += len(data)
         if self._word_depth:
             self._word.append(data)
         else:
@@ -260,11 +260,15 @@ class Body:
     def take(self, annotated: bool) -> str:
         """What is ready: whole sentences of lines, or text."""
         sink = self._sinks[0]
-        if not annotated:
+        if annotated:
+            sink.flow.take()
+            taken = sink.take_lines()
+        else:
             sink.lines.clear()
-            return sink.take_text()
-        sink.flow.take()
-        return sink.take_lines()
+            taken = sink.take_text()
+        if taken:
+            self.size = sum(sink.size for sink in (*self._sinks, *self._aside))
+        return taken
 
 
 def _field(value: str | None, otherwise: str) -> str:
