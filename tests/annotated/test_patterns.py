@@ -6,6 +6,7 @@ import re
 import time
 import unicodedata
 from collections import Counter
+from itertools import pairwise
 from pathlib import Path
 
 import numpy as np
@@ -131,7 +132,7 @@ def test_sequences_are_counted(store_path: Path, text: str) -> None:
 def test_pairs_by_pattern(store_path: Path, text: str) -> None:
     expected: dict[tuple[str, str], int] = {}
     for words in read_sentences(text):
-        for one, two in zip(words, words[1:], strict=False):
+        for one, two in pairwise(words):
             if one.upos in ("ADJ", "NOUN") and two.upos == "NOUN" and "_" not in (one.lemma, two.lemma):
                 key = f"{one.lemma}/{one.upos}", f"{two.lemma}/{two.upos}"
                 expected[key] = expected.get(key, 0) + 1

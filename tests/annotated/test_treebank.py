@@ -89,7 +89,8 @@ def test_verb_particles(store_path: Path, text: str) -> None:
 def test_subtypes(store_path: Path, text: str) -> None:
     expected = Counter(relation for relation, _, _ in relation_counts(text).elements())
     totals = {
-        name: colloc.tally(store_path, relation=name, layer="lemma")["total"] for name in ("nmod", "nmod:poss", "nmod:*")
+        name: colloc.tally(store_path, relation=name, layer="lemma")["total"]
+        for name in ("nmod", "nmod:poss", "nmod:*")
     }
     assert totals["nmod"] == expected["nmod"]
     assert totals["nmod:*"] == sum(n for name, n in expected.items() if name.split(":")[0] == "nmod")

@@ -1,4 +1,4 @@
-"""Annotated text for tests: made by the seed with everything that CoNLL-U has, or the open treebank where it is at hand.
+"""Annotated text for tests: made by the seed with everything CoNLL-U has, or the open treebank where it is at hand.
 
 The reader here is plain Python after the format's description (universaldependencies.org, "CoNLL-U Format") and shares
 nothing with the package.
