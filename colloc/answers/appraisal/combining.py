@@ -173,47 +173,57 @@ def _learnt(
     for train, test in inner.split(features, wanted, groups):
         if len(np.unique(wanted[train])) < 2:
             continue
+        places = _Places(features[train])
+        seen, unseen = places.of(features[train]), places.of(features[test])
         for strength in STRENGTHS:
-            odds = _Model(strength).fit(features[train], wanted[train]).odds(features[test])
+            odds = _regression(strength).fit(seen, wanted[train]).decision_function(unseen)
             losses[strength] += float(np.logaddexp(0.0, np.where(wanted[test], -odds, odds)).sum())
     strength = min(losses, key=lambda one: (losses[one], one))
-    return strength, _Model(strength).fit(features, wanted)
+    places = _Places(features)
+    return strength, _Model(places, _regression(strength).fit(places.of(features), wanted))
 
 
-class _Model:
-    """Scores brought to a normal distribution by their places among those of the training, then logistic regression."""
+def _regression(strength: float) -> Any:
+    from sklearn.linear_model import LogisticRegression
 
-    def __init__(self, strength: float) -> None:
-        from sklearn.linear_model import LogisticRegression
+    return LogisticRegression(C=strength, max_iter=2000)
 
-        self._regression = LogisticRegression(C=strength, max_iter=2000)
-        self._sorted: FloatArray = np.zeros((0, 0))
 
-    def fit(self, features: FloatArray, wanted: NDArray[np.bool_]) -> _Model:
+class _Places:
+    """Scores brought to a normal distribution by their places among those of the training.
+
+    Normal scores of the mid-ranks (Blom 1958: (rank - 3/8) / (n + 1/4)); equal values have equal scores.
+    """
+
+    def __init__(self, features: FloatArray) -> None:
         self._sorted = np.sort(features, axis=0)
-        self._regression.fit(self._placed(features), wanted)
-        return self
+
+    def of(self, features: FloatArray) -> FloatArray:
+        """Normal scores, of the shape of ``features``."""
+        from scipy.special import ndtri
+
+        n, ranks = len(self._sorted), np.empty(features.shape)
+        for one in range(features.shape[1]):
+            known, values = self._sorted[:, one], features[:, one]
+            ranks[:, one] = (np.searchsorted(known, values, "left") + np.searchsorted(known, values, "right") + 1) / 2
+        found: FloatArray = ndtri(np.clip((ranks - 0.375) / (n + 0.25), 0.25 / n, 1 - 0.25 / n))
+        return found
+
+
+@dataclass(frozen=True, slots=True)
+class _Model:
+    """What was learnt from some candidates."""
+
+    places: _Places
+    regression: Any
 
     def odds(self, features: FloatArray) -> FloatArray:
         """Log odds of being wanted."""
-        found: FloatArray = self._regression.decision_function(self._placed(features))
+        found: FloatArray = self.regression.decision_function(self.places.of(features))
         return found
 
     @property
     def weights(self) -> FloatArray:
         """One a feature."""
-        found: FloatArray = self._regression.coef_[0]
-        return found
-
-    def _placed(self, features: FloatArray) -> FloatArray:
-        """Normal scores of the mid-ranks (Blom 1958: (rank - 3/8) / (n + 1/4)); equal values have equal scores."""
-        from scipy.special import ndtri
-
-        n, columns = len(self._sorted), range(features.shape[1])
-        below = np.stack([np.searchsorted(self._sorted[:, one], features[:, one], "left") for one in columns], axis=1)
-        through = np.stack(
-            [np.searchsorted(self._sorted[:, one], features[:, one], "right") for one in columns], axis=1
-        )
-        rank = (below + through + 1) / 2
-        found: FloatArray = ndtri(np.clip((rank - 0.375) / (n + 0.25), 0.25 / n, 1 - 0.25 / n))
+        found: FloatArray = self.regression.coef_[0]
         return found
