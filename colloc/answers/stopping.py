@@ -60,9 +60,16 @@ class StopWords:
         if not number.isascii() or not number.isdigit() or int(number) < 1:
             raise UsageError(f"{given!r}: write top:N, such as top:100")
         tokens = question.words.tokens
-        # Of words that are equally frequent the first ones of the text go.
-        order = np.argsort(-tokens, kind="stable")[: int(number)]
-        self._stopped[order[tokens[order] > 0]] = True
+        wanted = min(int(number), int(np.count_nonzero(tokens)))
+        if not wanted:
+            return
+        last = np.partition(tokens, len(tokens) - wanted)[len(tokens) - wanted]
+        self._stopped |= tokens > last
+        # Words that are equally frequent stand by their text, as in the list of words.
+        tied = np.flatnonzero(tokens == last)
+        texts = vocabulary.term_texts(question.store, question.layer, tied)
+        order = sorted(range(len(tied)), key=texts.__getitem__)
+        self._stopped[tied[order[: wanted - int(np.count_nonzero(tokens > last))]]] = True
 
     def _stop_listed(self, question: Question, listed: Iterable[str]) -> None:
         names = question.layer.split("/")

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import unicodedata
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from functools import cache
 
 from colloc.errors import UsageError
@@ -24,7 +24,7 @@ def folder(names: tuple[str, ...]) -> Callable[[str], str]:
     """Folding with additions (see :mod:`colloc.tokens.folding.additions`), by name; `fold` itself without any.
 
     What an addition changes before case folding comes first, then case
-    folding, then the other changes, in the order of their names; the result is
+    folding, then the other changes, in the order of that module; the result is
     NFC.
 
     Raises
@@ -38,18 +38,29 @@ def folder(names: tuple[str, ...]) -> Callable[[str], str]:
 
     for name in names:
         if name not in ADDITIONS:
-            raise UsageError(f"unknown folding {name!r}: choose from {', '.join(ADDITIONS)}")
-    chosen = [ADDITIONS[name] for name in sorted(set(names))]
+            raise UsageError(f"unknown folding {name!r}: choose from {', '.join(sorted(ADDITIONS))}")
+    chosen = [ADDITIONS[name] for name in ADDITIONS if name in names]
     before = [addition.before for addition in chosen if addition.before is not None]
     after = [addition.after for addition in chosen if addition.after is not None]
+    apart = [addition.apart for addition in chosen if addition.apart]
 
     def folded(text: str) -> str:
         text = unicodedata.normalize("NFC", text)
         for change in before:
             text = change(text)
-        text = fold(text)
+        text = _fold_around(text, apart)
         for change in after:
             text = unicodedata.normalize("NFC", change(text))
         return text
 
     return folded
+
+
+def _fold_around(text: str, apart: Sequence[str]) -> str:
+    """Fold case, but for the letters that stay apart."""
+    if not apart:
+        return fold(text)
+    first = apart[0][0]
+    for other in apart[0][1:]:
+        text = text.replace(other, first)
+    return first.join(_fold_around(part, apart[1:]) for part in text.split(first))

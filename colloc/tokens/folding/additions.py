@@ -29,6 +29,8 @@ class Addition:
     """Before case folding."""
     after: Change | None = None
     """After it."""
+    apart: str = ""
+    """Letters whose case is folded by hand: the first one stands for all of them."""
 
 
 def _translation(letters: Mapping[str, str], dropped: str = "") -> Change:
@@ -55,9 +57,6 @@ def _width_table() -> dict[int, str]:
             found[code] = chr(int(decomposition.split()[1], 16))
     return found
 
-
-_KEPT_SHARP_S = "\ue0df"
-"""Private use: stands for the sharp s while case is folded."""
 
 _SPACING_TONES = "\u0300\u0301\u0303\u0309\u0323"
 _OLD_PLACEMENT = re.compile(rf"(o)([{_SPACING_TONES}])([ae])$|(?<!q)(u)([{_SPACING_TONES}])(y)$", re.IGNORECASE)
@@ -93,6 +92,10 @@ _INDIC = _translation(
 
 
 ADDITIONS: Mapping[str, Addition] = {
+    "width": Addition(
+        "fullwidth and halfwidth forms are the ordinary ones (ＡＢＣ, ｶﾀｶﾅ, ﾡ)",
+        before=lambda text: unicodedata.normalize("NFC", text.translate(_width_table())),
+    ),
     "arabic": Addition(
         "vowel signs and tatweel go; alef with hamza or madda is alef, alef maksura is yeh, teh marbuta is heh",
         after=_translation(
@@ -122,11 +125,7 @@ ADDITIONS: Mapping[str, Addition] = {
         ),
     ),
     "russian": Addition("ё is е; stress marks go", after=_russian),
-    "sharp-s": Addition(
-        "ß stays apart from ss (ẞ is ß)",
-        before=lambda text: text.replace("ß", _KEPT_SHARP_S).replace("ẞ", _KEPT_SHARP_S),
-        after=lambda text: text.replace(_KEPT_SHARP_S, "ß"),
-    ),
+    "sharp-s": Addition("ß stays apart from ss (ẞ is ß)", apart="ßẞ"),
     "turkish": Addition(
         "I is the capital of ı, İ that of i (Turkish, Azerbaijani)",
         before=_translation({"I": "ı", "İ": "i"}),
@@ -134,9 +133,5 @@ ADDITIONS: Mapping[str, Addition] = {
     "vietnamese": Addition(
         "tone marks stand where the newer spelling has them: hòa is hoà, thúy is thuý", after=_vietnamese
     ),
-    "width": Addition(
-        "fullwidth and halfwidth forms are the ordinary ones (ＡＢＣ, ｶﾀｶﾅ, ﾡ)",
-        before=lambda text: unicodedata.normalize("NFC", text.translate(_width_table())),
-    ),
 }
-"""By name, as the option and the store have it."""
+"""By name, as the option and the store have it; several act in this order."""
