@@ -5,11 +5,16 @@ from __future__ import annotations
 import os
 import re
 import sqlite3
+import unicodedata
 from contextlib import closing
 from importlib import import_module
 from pathlib import Path
+from tempfile import TemporaryDirectory
 
 import pytest
+from hypothesis import HealthCheck, given
+from hypothesis import settings as hypothesis_settings
+from hypothesis import strategies as st
 
 import colloc
 from colloc.errors import DataError, NotSeenError, StoreDamagedError, UsageError
@@ -243,6 +248,50 @@ def test_a_store_without_text_says_so(tmp_path: Path) -> None:
     card = colloc.explain(tmp_path / "a.colloc", "fog", "rain")
     assert len(card.examples) == 0
     assert card.cases["with_second"] == 1
+
+
+def test_removed_and_added_documents(tmp_path: Path, demo: Demo) -> None:
+    """Places stay right when documents before and between have gone, and when others came."""
+    names = list(demo.texts)[:9]
+    texts = {name: demo.texts[name] for name in names}
+    path = tmp_path / "a.colloc"
+    colloc.build(path, [write_documents(tmp_path / "a.jsonl", texts)], jobs=1)
+    colloc.remove(path, identifiers=[names[0], names[4]])
+    later = {name: demo.texts[name] for name in list(demo.texts)[9:12]}
+    colloc.add(path, [write_documents(tmp_path / "b.jsonl", later)], jobs=1)
+    kept = {name: text for name, text in (texts | later).items() if name not in (names[0], names[4])}
+    answer = colloc.lines(path, "the", inside="paragraph", limit=0, sort="random")
+    assert found_lines(answer) == plain_lines(kept, ["the"], None, 0, 0)
+    assert_verbatim(answer, kept)
+    card = colloc.explain(path, "the", "of")
+    assert card.spread["of_documents"] == len(kept)
+    assert_verbatim(card.examples, kept)
+
+
+PIECES = st.sampled_from(
+    [*"aBé.,!?'\"-–\n\r\t (ß)", "\u0301", "\u200d", "\u202e", "ﬁ", "İ", "海", "の", "カ", "ม", "ا", "ل", "\u0640", "א",
+     "3", "5.5", "http://a.b/c", "x@y.zz", "👩\u200d🚀", "🇸🇪", "Mr. ", ". A ", "\u2029", "\x85"]
+)  # fmt: skip
+"""Letters, marks, controls and stretches that segmenters stumble over."""
+
+
+@hypothesis_settings(max_examples=10, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@given(st.lists(st.lists(PIECES, max_size=60).map("".join), min_size=1, max_size=3))
+def test_every_word_of_any_text_is_found_where_it_stands(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, written: list[str]
+) -> None:
+    # Segmenting begins again in the middle of these short texts, as it does every thousand words of long ones.
+    monkeypatch.setattr(import_module("colloc.build.segmenting"), "ANCHOR_EVERY", 3)
+    texts = {str(number): text for number, text in enumerate(written)}
+    with TemporaryDirectory(dir=tmp_path) as folder:
+        path = Path(folder) / "a.colloc"
+        colloc.build(path, [write_documents(Path(folder) / "a.jsonl", {**texts, "last": "end"})], jobs=1)
+        for row in colloc.words(path, layer="form", limit=0):
+            answer = colloc.lines(path, row["word"], layer="form", inside="document", limit=0)
+            if " " not in row["word"]:
+                assert len(answer) == row["count"]
+            assert {unicodedata.normalize("NFC", match) for match in answer["match"]} == {row["word"]}
+            assert_verbatim(answer, {**texts, "last": "end"})
 
 
 def altered(path: Path, sql: str, *values: object) -> None:
