@@ -102,8 +102,8 @@ def vectors(
     weighting: Literal["flat", "harmonic", "linear"] = "flat",
     rows: Sequence[str] | None = None,
     contexts: Sequence[str] | None = None,
-    min_row_count: int = DEFAULT_MIN_COUNT,
-    min_context_count: int = DEFAULT_MIN_COUNT,
+    min_row_count: int | None = None,
+    min_context_count: int | None = None,
     most_rows: int | None = None,
     most_contexts: int | None = None,
     layer: str | None = None,
@@ -134,6 +134,8 @@ def vectors(
         Add to each word's vector the vector of the same word as a context.
     seed : int
         Equal seeds give equal vectors.
+    min_row_count, min_context_count : int, optional
+        5 when not given, but where words are listed.
 
     The other options are those of :func:`matrix`.
     """
@@ -169,8 +171,8 @@ def similar(
     shift: float = 1.0,
     smoothing: float = 0.75,
     weighting: Literal["flat", "harmonic", "linear"] = "flat",
-    min_row_count: int = DEFAULT_MIN_COUNT,
-    min_context_count: int = DEFAULT_MIN_COUNT,
+    min_row_count: int | None = None,
+    min_context_count: int | None = None,
     layer: str | None = None,
     window: int | None = None,
     left: int | None = None,
@@ -244,7 +246,8 @@ def agreement(
     return correlate(Space(known), judged, seed=seed)
 
 
-def _choice(words: Sequence[str] | None, min_count: int, most: int | None) -> Choice:
+def _choice(words: Sequence[str] | None, min_count: int | None, most: int | None) -> Choice:
     from colloc.answers.spaces.choosing import Choice
 
-    return Choice(words=None if words is None else tuple(words), min_count=min_count, most=most)
+    least = min_count if min_count is not None else DEFAULT_MIN_COUNT if words is None else 1
+    return Choice(words=None if words is None else tuple(words), min_count=least, most=most)

@@ -150,15 +150,17 @@ def _interleaved(left: RowCells, right: RowCells) -> RowCells:
     base = min(int(left.rows[0]), int(right.rows[0]))
     stop = max(int(left.rows[-1]), int(right.rows[-1])) + 1
     of_left, of_right = (left.rows - np.uint32(base), right.rows - np.uint32(base))
-    left_ends = np.cumsum(np.bincount(of_left, minlength=stop - base))
+    left_counts = np.bincount(of_left, minlength=stop - base)
     right_counts = np.bincount(of_right, minlength=stop - base)
+    left_ends = np.cumsum(left_counts)
     right_begins = np.cumsum(right_counts) - right_counts
     # Before a cell stand those of its own side, and those of the other in rows above; for `right` also in its own row.
     left_places = np.arange(len(left)) + right_begins[of_left]
     right_places = np.arange(len(right)) + left_ends[of_right]
     size = len(left) + len(right)
-    rows, columns = np.empty(size, np.uint32), np.empty(size, np.uint32)
+    rows = np.repeat(np.arange(base, stop, dtype=np.uint32), left_counts + right_counts)
+    columns = np.empty(size, np.uint32)
     joint = np.empty(size, np.result_type(left.joint, right.joint))
     for places, side in ((left_places, left), (right_places, right)):
-        rows[places], columns[places], joint[places] = side.rows, side.columns, side.joint
+        columns[places], joint[places] = side.columns, side.joint
     return RowCells(rows, columns, joint)

@@ -10,7 +10,6 @@ import typer
 from colloc.cli import options as opt
 from colloc.cli.output import Target, deliver, print_lines, remark, settings_line
 from colloc.cli.progress import ProgressLine
-from colloc.settings import DEFAULT_MIN_COUNT
 
 OutputFile = Annotated[
     Path,
@@ -43,6 +42,18 @@ MinRowOption = Annotated[
 ]
 MinContextOption = Annotated[
     int, typer.Option("--min-context-count", metavar="N", min=1, help="Contexts are words seen at least so often.")
+]
+LeastRowOption = Annotated[
+    int | None,
+    typer.Option(
+        "--min-row-count", metavar="N", min=1, help="Rows are words seen at least so often; 5 when not given."
+    ),
+]
+LeastContextOption = Annotated[
+    int | None,
+    typer.Option(
+        "--min-context-count", metavar="N", min=1, help="Contexts are words seen at least so often; 5 when not given."
+    ),
 ]
 MostRowsOption = Annotated[
     int | None, typer.Option("--most-rows", metavar="N", min=1, help="Rows are the N most frequent words.")
@@ -167,8 +178,8 @@ def vectors(
     weighting: WeightingOption = "flat",
     rows_from: RowsFromOption = None,
     contexts_from: ContextsFromOption = None,
-    min_row_count: MinRowOption = DEFAULT_MIN_COUNT,
-    min_context_count: MinContextOption = DEFAULT_MIN_COUNT,
+    min_row_count: LeastRowOption = None,
+    min_context_count: LeastContextOption = None,
     most_rows: MostRowsOption = None,
     most_contexts: MostContextsOption = None,
     layer: opt.LayerOption = None,
@@ -198,7 +209,6 @@ def vectors(
     if output is None and not evaluate:
         raise UsageError("name a file with -o, or lists of judged pairs with --evaluate")
     lists = {str(path): judged_rows(path) for path in evaluate or ()}
-    chosen_rows, chosen_contexts = listed(rows_from), listed(contexts_from)
     with ProgressLine(quiet=quiet) as progress:
         made = spaces.vectors(
             store,
@@ -210,10 +220,10 @@ def vectors(
             shift=shift,
             smoothing=smoothing,
             weighting=weighting,
-            rows=chosen_rows,
-            contexts=chosen_contexts,
-            min_row_count=1 if chosen_rows else min_row_count,
-            min_context_count=1 if chosen_contexts else min_context_count,
+            rows=listed(rows_from),
+            contexts=listed(contexts_from),
+            min_row_count=min_row_count,
+            min_context_count=min_context_count,
             most_rows=most_rows,
             most_contexts=most_contexts,
             layer=layer,
@@ -252,8 +262,8 @@ def similar(
     shift: ShiftOption = 1.0,
     smoothing: SmoothingOption = VECTOR_SMOOTHING,
     weighting: WeightingOption = "flat",
-    min_row_count: MinRowOption = DEFAULT_MIN_COUNT,
-    min_context_count: MinContextOption = DEFAULT_MIN_COUNT,
+    min_row_count: LeastRowOption = None,
+    min_context_count: LeastContextOption = None,
     layer: opt.LayerOption = None,
     window: opt.WindowOption = None,
     left: opt.LeftOption = None,

@@ -235,3 +235,11 @@ def test_lists_of_judged_pairs(text: str) -> None:
 def test_lists_that_are_none(text: str, message: str) -> None:
     with pytest.raises(DataError, match=message):
         judged_pairs("x", text.splitlines())
+
+
+def test_listed_rows_need_no_frequency(demo: Path) -> None:
+    made = colloc.vectors(demo, dimensions=2, rows=["fog", "tea", "rope"])
+    assert made.words == ["fog", "tea", "rope"]
+    assert len(colloc.vectors(demo, dimensions=2).words) < len(
+        colloc.vectors(demo, dimensions=2, min_row_count=1).words
+    )
