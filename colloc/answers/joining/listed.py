@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 
 from colloc.errors import DataError, UsageError
@@ -86,10 +86,8 @@ def checked_layer(layer: str) -> str:
     return layer
 
 
-def folded(expressions: Sequence[Expression], layer: str) -> list[Expression]:
+def folded(expressions: Sequence[Expression], layer: str, fold: Callable[[str], str]) -> list[Expression]:
     """The expressions as the layer writes them, each once, with its highest score."""
-    from colloc.tokens.folding import fold
-
     best: dict[tuple[str, ...], float] = {}
     for one in expressions:
         words = tuple(map(fold, one.words)) if layer == "fold" else one.words

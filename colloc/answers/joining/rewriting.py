@@ -14,7 +14,7 @@ from colloc.records import Int64Array, Segments
 from colloc.settings import SegmentSettings
 from colloc.tokens.classes import code_points
 from colloc.tokens.cutting import safe_cut
-from colloc.tokens.folding import fold
+from colloc.tokens.folding import folder
 from colloc.tokens.numbering import TypeNumberer
 from colloc.tokens.segmenter import Segmenter
 
@@ -75,7 +75,8 @@ class Joiner:
         joiner: str = "_",
         across_lines: bool = False,
     ) -> None:
-        self.expressions = folded(expressions, layer)
+        self._fold = folder(settings.folding)
+        self.expressions = folded(expressions, layer, self._fold)
         self.settings = settings
         self._joiner = joiner
         self._folds = layer == "fold"
@@ -165,7 +166,7 @@ class Joiner:
         local = self._numberer.number(segments)
         fresh = self._numberer.take_new()
         known = self._trie.word_numbers
-        numbers = [known.get(fold(form) if self._folds else form, 0) for form in fresh]
+        numbers = [known.get(self._fold(form) if self._folds else form, 0) for form in fresh]
         self._forms = np.concatenate([self._forms, np.array(numbers, np.int64)])
         return self._forms[local]
 
