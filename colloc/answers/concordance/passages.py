@@ -9,8 +9,6 @@ from __future__ import annotations
 import unicodedata
 from collections.abc import Sequence
 from dataclasses import dataclass
-from difflib import SequenceMatcher
-from importlib.metadata import version
 from itertools import pairwise
 
 import numpy as np
@@ -209,6 +207,8 @@ class PassageReader(StreamReader):
         offset = first - stretch.first
         if stretch.forms[offset : offset + len(wanted)] == wanted:
             return np.arange(offset, offset + len(wanted))
+        from importlib.metadata import version
+
         made_by = versions(self._store)
         if made_by.get("colloc") == version("colloc") and made_by.get("regex") == version("regex"):
             raise StoreDamagedError(
@@ -219,6 +219,8 @@ class PassageReader(StreamReader):
 
     def _matched(self, stretch: _Stretch, offset: int, wanted: list[str], row: DocumentRow) -> Int64Array:
         """Tokens found again where another version divided the text: each of them, in order, or none at all."""
+        from difflib import SequenceMatcher
+
         # The neighbourhood of the expected place only, so that a repeated phrase is not taken for another.
         low = max(0, offset - len(wanted) - 64)
         forms = stretch.forms[low : offset + 2 * len(wanted) + 64]
