@@ -13,7 +13,7 @@ from colloc.answers.questions import Question
 from colloc.counts.candidates import CandidatePass
 from colloc.counts.selection import slice_selection
 from colloc.counts.words import document_words
-from colloc.measures.subcorpora.documents import DocumentRates
+from colloc.measures.subcorpora.ranks import DocumentRates
 from colloc.records import Int64Array, UInt32Array
 from colloc.store.connection import Store
 

@@ -20,9 +20,9 @@ from colloc.errors import NotSeenError, UsageError
 from colloc.measures.discoveries import log_q_values
 from colloc.measures.intervals import Interval, jackknife
 from colloc.measures.odds import log_odds, log_odds_se
-from colloc.measures.subcorpora.documents import TrendTest, trend_test
 from colloc.measures.subcorpora.information import presence_information
 from colloc.measures.subcorpora.periods import PeriodRates
+from colloc.measures.subcorpora.trends import TrendTest, trend_test
 from colloc.measures.trend import weighted_slope
 from colloc.records import FloatArray, Int64Array, UInt32Array
 from colloc.settings import DEFAULT_MEMORY

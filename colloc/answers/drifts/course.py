@@ -20,8 +20,8 @@ from colloc.errors import NotSeenError
 from colloc.measures.intervals import jackknife
 from colloc.measures.pmi import pmi
 from colloc.measures.strata import breslow_day
-from colloc.measures.subcorpora.documents import trend_test
 from colloc.measures.subcorpora.periods import PeriodRates, period_rates
+from colloc.measures.subcorpora.trends import trend_test
 from colloc.measures.trend import mann_kendall, weighted_slope
 from colloc.records import FloatArray, UInt32Array
 from colloc.settings import DEFAULT_MEMORY

@@ -20,65 +20,20 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
 
 from colloc.errors import UsageError
 from colloc.measures.contingency import FloatArray
-from colloc.measures.contrast import t_log_p, welch_test
-
-Int64Array = NDArray[np.int64]
-BoolArray = NDArray[np.bool_]
+from colloc.measures.contrast import welch_test
+from colloc.measures.subcorpora.ranks import (
+    BoolArray,
+    DocumentRates,
+    Int64Array,
+    RankScores,
+    agreed_log_p,
+    by_documents,
+)
 
 _LABELLINGS_AT_ONCE = 64
-
-
-@dataclass(frozen=True, slots=True)
-class DocumentRates:
-    """Relative frequencies of many items in many documents; those that are not named are 0.
-
-    Attributes
-    ----------
-    items, documents : int64 arrays, shape (m,)
-        Each combination at most once.
-    rates : float64 array, shape (m,)
-        Above 0.
-    n_items, n_documents : int
-    """
-
-    items: Int64Array
-    documents: Int64Array
-    rates: FloatArray
-    n_items: int
-    n_documents: int
-
-
-@dataclass(frozen=True, slots=True)
-class GroupsTest:
-    """Kruskal-Wallis over any number of groups, arrays of shape (n_items,): H, and ln of its p-value."""
-
-    h: FloatArray
-    log_p: FloatArray
-
-
-def groups_test(rates: DocumentRates, group: Int64Array) -> GroupsTest:
-    """Whether the relative frequencies of items rank alike in all groups of documents (Kruskal & Wallis 1952).
-
-    H with the correction for ties, chi-square distributed with one degree of freedom less than there are groups.
-
-    Parameters
-    ----------
-    group : int64 array, shape (n_documents,)
-        0 .. n_groups - 1, each with a document.
-    """
-    from scipy.special import gammaincc
-
-    n_groups = int(group.max()) + 1
-    members = group[:, np.newaxis] == np.arange(n_groups)
-    scores = _Scores(rates)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        h = scores.between(members)
-        log_p = np.log(np.asarray(gammaincc((n_groups - 1) / 2.0, h / 2.0), dtype=np.float64))
-    return GroupsTest(h, log_p)
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,11 +66,11 @@ def document_test(rates: DocumentRates, in_this: BoolArray) -> DocumentTest:
     in_this : bool array, shape (n_documents,)
         Whether a document belongs to the first group; else to the second.
     """
-    scores = _Scores(rates)
+    scores = RankScores(rates)
     with np.errstate(divide="ignore", invalid="ignore"):
         rank_z, rank_log_p = scores.judge(in_this.astype(np.float64))
         welch, difference, welch_log_p = _welch(rates, in_this)
-    log_p = _both(rank_z, rank_log_p, difference, welch_log_p)
+    log_p = agreed_log_p(rank_z, rank_log_p, difference, welch_log_p)
     n_this = np.count_nonzero(in_this)
     if min(n_this, rates.n_documents - n_this) < 2:
         log_p = np.full(rates.n_items, np.nan)
@@ -123,74 +78,32 @@ def document_test(rates: DocumentRates, in_this: BoolArray) -> DocumentTest:
 
 
 @dataclass(frozen=True, slots=True)
-class TrendTest:
-    """Arrays of shape (n_items,).
+class GroupsTest:
+    """Kruskal-Wallis over any number of groups, arrays of shape (n_items,): H, and ln of its p-value."""
 
-    Attributes
-    ----------
-    slope : float64
-        Least squares slope of relative frequency over time.
-    rank_z : float64
-        Standardised sum of ranks times time, above 0 where later documents have higher ranks.
-    slope_t : float64
-    log_p : float64
-        ln of the larger of the two p-values; 0 where the tests point different ways, nan below four documents.
-    """
-
-    slope: FloatArray
-    rank_z: FloatArray
-    slope_t: FloatArray
+    h: FloatArray
     log_p: FloatArray
 
 
-def trend_test(rates: DocumentRates, times: ArrayLike) -> TrendTest:
-    """Whether items become more or less frequent, document by document: the same two kinds of test over time.
+def groups_test(rates: DocumentRates, group: Int64Array) -> GroupsTest:
+    """Whether the relative frequencies of items rank alike in all groups of documents (Kruskal & Wallis 1952).
 
-    The rank test takes the sum of ranks times the documents' times; with the times 0 and 1 it is the rank sum test. In
-    the place of Welch's test stands the slope of the relative frequency with a standard error that does not take the
-    documents' variances for equal (HC3: MacKinnon & White 1985), t with two degrees of freedom less than documents.
+    H with the correction for ties, chi-square distributed with one degree of freedom less than there are groups.
 
     Parameters
     ----------
-    times : array, shape (n_documents,)
-        In any unit and order.
+    group : int64 array, shape (n_documents,)
+        0 .. n_groups - 1, each with a document.
     """
-    moments = np.asarray(times, dtype=np.float64)
+    from scipy.special import gammaincc
+
+    n_groups = int(group.max()) + 1
+    members = group[:, np.newaxis] == np.arange(n_groups)
+    scores = RankScores(rates)
     with np.errstate(divide="ignore", invalid="ignore"):
-        rank_z, rank_log_p = _Scores(rates).judge(moments)
-        slope, slope_t, slope_log_p = _robust_slope(rates, moments)
-    log_p = _both(rank_z, rank_log_p, slope, slope_log_p)
-    if rates.n_documents < 4 or not np.ptp(moments):
-        log_p = np.full(rates.n_items, np.nan)
-    return TrendTest(slope, rank_z, slope_t, log_p)
-
-
-def _both(z: FloatArray, rank_log_p: FloatArray, mean: FloatArray, mean_log_p: FloatArray) -> FloatArray:
-    """ln of the p-value of two tests that must agree."""
-    agree = np.sign(z) == np.sign(mean)
-    return np.minimum(np.where(agree, np.maximum(rank_log_p, mean_log_p), 0.0), 0.0)
-
-
-def _robust_slope(rates: DocumentRates, times: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Slope, t and ln p; documents without an item count as 0 and are never written out."""
-    n = rates.n_documents
-    centred = times - times.mean()
-    squares = float((centred**2).sum())
-    leverage = 1.0 / n + centred**2 / squares
-    weight = centred**2 / (1.0 - leverage) ** 2
-
-    def total(values: FloatArray) -> FloatArray:
-        return np.bincount(rates.items, weights=values, minlength=rates.n_items).astype(np.float64)
-
-    at, own = centred[rates.documents], weight[rates.documents]
-    mean, slope = total(rates.rates) / n, total(at * rates.rates) / squares
-    fitted = mean[rates.items] + slope[rates.items] * at
-    # Squared residuals as if no document had the item, then put right where one has.
-    none = mean**2 * weight.sum() + 2 * mean * slope * (weight * centred).sum()
-    none = none + slope**2 * (weight * centred**2).sum()
-    spread = none + total(own * ((rates.rates - fitted) ** 2 - fitted**2))
-    t = slope / (np.sqrt(np.maximum(spread, 0.0)) / squares)
-    return slope, t, np.where(slope == 0, 0.0, t_log_p(t, np.full(len(t), n - 2.0)))
+        h = scores.between(members)
+        log_p = np.log(np.asarray(gammaincc((n_groups - 1) / 2.0, h / 2.0), dtype=np.float64))
+    return GroupsTest(h, log_p)
 
 
 def permuted_p(rates: DocumentRates, in_this: BoolArray, permutations: int, seed: int = 1) -> FloatArray:
@@ -213,7 +126,7 @@ def permuted_p(rates: DocumentRates, in_this: BoolArray, permutations: int, seed
     """
     if permutations < 19:
         raise UsageError(f"permutations must be at least 19, or no p-value can reach 0.05, not {permutations}")
-    scores = _Scores(rates)
+    scores = RankScores(rates)
     moments = _Moments(rates)
     actual = _smaller(scores, moments, in_this[:, np.newaxis])[:, 0]
     reached = np.ones(rates.n_items)
@@ -232,94 +145,13 @@ def _exchanged(in_this: BoolArray, permutations: int, seed: int) -> Iterator[Boo
         yield random.permuted(np.repeat(in_this[:, np.newaxis], width, axis=1), axis=0)
 
 
-def _smaller(scores: _Scores, moments: _Moments, labels: BoolArray) -> FloatArray:
+def _smaller(scores: RankScores, moments: _Moments, labels: BoolArray) -> FloatArray:
     """The smaller of the sizes of the two statistics, by item and labelling."""
     with np.errstate(divide="ignore", invalid="ignore"):
         z = scores.standardised(labels.astype(np.float64))
         t = moments.welch_t(labels)
         same = np.sign(z) == np.sign(t)
         return np.nan_to_num(np.where(same, np.minimum(np.abs(z), np.abs(t)), 0.0), nan=0.0)
-
-
-class _Scores:
-    """Midranks less the midrank of the documents without the item, so that most scores are 0."""
-
-    def __init__(self, rates: DocumentRates) -> None:
-        self._rates = rates
-        order = np.lexsort((rates.rates, rates.items))
-        items, values = rates.items[order], rates.rates[order]
-        held = np.bincount(rates.items, minlength=rates.n_items)
-        starts = np.cumsum(held) - held
-        place = np.arange(len(items)) - starts[items] + 1.0
-        fresh = np.ones(len(items), dtype=np.bool_)
-        fresh[1:] = (items[1:] != items[:-1]) | (values[1:] != values[:-1])
-        run = np.cumsum(fresh) - 1
-        lengths = np.bincount(run, minlength=1)
-        midplace = (place[fresh] + (lengths - 1) / 2.0)[run] if len(items) else place
-        absent = rates.n_documents - held
-        # Ranks of the absent are 1 .. absent, their midrank (absent + 1) / 2.
-        self._score = np.empty(len(items))
-        self._score[order] = midplace + (absent[items] - 1) / 2.0
-        n = float(rates.n_documents)
-        first, second, third = (self._total(self._score**power) / n for power in (1, 2, 3))
-        self._mean = first
-        self._spread = np.maximum(second - first**2, 0.0)
-        self._lean = third - 3 * first * second + 2 * first**3
-
-    def _total(self, values: FloatArray) -> FloatArray:
-        return np.bincount(self._rates.items, weights=values, minlength=self._rates.n_items).astype(np.float64)
-
-    def standardised(self, weights: FloatArray) -> FloatArray:
-        """z of the sum of scores times weights, over all ways to deal the weights out; 0 where all scores are equal.
-
-        Parameters
-        ----------
-        weights : float64 array, shape (n_documents, n)
-
-        Returns
-        -------
-        float64 array, shape (n_items, n)
-        """
-        n = float(self._rates.n_documents)
-        centred = weights - weights.mean(axis=0)
-        sums = _by_documents(self._rates, self._score, centred)
-        se = n * np.sqrt(np.outer(self._spread, (centred**2).mean(axis=0)) / (n - 1.0))
-        return np.where(se > 0, sums / se, 0.0)
-
-    def between(self, members: BoolArray) -> FloatArray:
-        """Kruskal-Wallis H of the groups in the columns of ``members``; 0 where all scores are equal."""
-        n, sizes = float(self._rates.n_documents), members.sum(axis=0)
-        sums = _by_documents(self._rates, self._score, members.astype(np.float64))
-        gaps = sums - np.outer(self._mean, sizes)
-        # The ranks' variance has the divisor n - 1, which brings the correction for ties with it.
-        spread = self._spread * n / (n - 1.0)
-        return np.where(spread > 0, (gaps**2 / sizes).sum(axis=1) / spread, 0.0)
-
-    def judge(self, weights: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """z, and ln of the two-sided p-value from the Pearson type III curve; weights of shape (n_documents,)."""
-        n = float(self._rates.n_documents)
-        z = self.standardised(weights[:, np.newaxis])[:, 0]
-        centred = weights - weights.mean()
-        se = n * np.sqrt(self._spread * (centred**2).mean() / (n - 1.0))
-        third = n**3 * self._lean * (centred**3).mean() / ((n - 1.0) * (n - 2.0))
-        skewness = np.where(se > 0, third / se**3, 0.0)
-        # Twice the smaller tail: a skewed curve has no natural other tail.
-        tail = np.minimum(_upper_tail(z, skewness), _upper_tail(-z, -skewness))
-        return z, np.minimum(np.log(2.0) + tail, 0.0)
-
-
-def _upper_tail(z: FloatArray, skewness: FloatArray) -> FloatArray:
-    """ln P(Z >= z) for the Pearson type III curve with mean 0, variance 1 and the given skewness."""
-    from scipy.special import gammainc, gammaincc, log_ndtr
-
-    lean = np.abs(skewness)
-    curved = lean > 1e-3
-    shape = 4.0 / np.where(curved, lean, 1.0) ** 2
-    # Standardised gamma deviates: Z = (G - shape) / sqrt(shape), mirrored where the skewness is negative.
-    deviate = np.maximum(shape + np.where(skewness < 0, -z, z) * np.sqrt(shape), 0.0)
-    upper = np.where(skewness < 0, gammainc(shape, deviate), gammaincc(shape, deviate))
-    with np.errstate(divide="ignore"):
-        return np.where(curved, np.log(upper), log_ndtr(-z))
 
 
 class _Moments:
@@ -329,16 +161,16 @@ class _Moments:
         self._rates = rates
         self._squares = rates.rates**2
         everything = np.ones((rates.n_documents, 1))
-        self._sum = _by_documents(rates, rates.rates, everything)
-        self._square_sum = _by_documents(rates, self._squares, everything)
+        self._sum = by_documents(rates, rates.rates, everything)
+        self._square_sum = by_documents(rates, self._squares, everything)
 
     def welch_t(self, labels: BoolArray) -> FloatArray:
         """Welch's t by item and column of ``labels``."""
         chosen = labels.astype(np.float64)
         n_this = chosen.sum(axis=0)
         n_that = len(labels) - n_this
-        this = _by_documents(self._rates, self._rates.rates, chosen)
-        squares = _by_documents(self._rates, self._squares, chosen)
+        this = by_documents(self._rates, self._rates.rates, chosen)
+        squares = by_documents(self._rates, self._squares, chosen)
         that, other_squares = self._sum - this, self._square_sum - squares
         share = (
             _sample_variance(this, squares, n_this) / n_this + _sample_variance(that, other_squares, n_that) / n_that
@@ -348,14 +180,6 @@ class _Moments:
 
 def _sample_variance(sums: FloatArray, squares: FloatArray, n: FloatArray | float) -> FloatArray:
     return np.maximum(squares - sums**2 / n, 0.0) / (n - 1.0)
-
-
-def _by_documents(rates: DocumentRates, values: FloatArray, weights: FloatArray) -> FloatArray:
-    """Values of the items in documents times each column of document weights, added up; shape (n_items, n)."""
-    from scipy.sparse import csr_array
-
-    table = csr_array((values, (rates.items, rates.documents)), shape=(rates.n_items, rates.n_documents))
-    return np.asarray(table @ weights, dtype=np.float64)
 
 
 def _welch(rates: DocumentRates, in_this: BoolArray) -> tuple[FloatArray, FloatArray, FloatArray]:

@@ -9,13 +9,9 @@ import pytest
 from scipy import stats
 
 from colloc.errors import UsageError
-from colloc.measures.subcorpora.documents import (
-    DocumentRates,
-    document_test,
-    groups_test,
-    permuted_p,
-    trend_test,
-)
+from colloc.measures.subcorpora.documents import document_test, groups_test, permuted_p
+from colloc.measures.subcorpora.ranks import DocumentRates
+from colloc.measures.subcorpora.trends import trend_test
 
 ITEMS, DOCUMENTS = 120, 40
 
@@ -78,7 +74,7 @@ def test_a_trend_over_two_moments_is_the_rank_sum_test(table: np.ndarray) -> Non
 
 
 def test_the_curve_comes_close_to_all_exchanges() -> None:
-    """14 documents, 4 of them this: all 1001 exchanges. Where it matters the curve promises at most a third too much."""
+    """14 documents, 4 of them this: all 1001 exchanges; in the tails the curve promises at most a third too much."""
     table = table_of(3, 14)
     labels = np.arange(14) < 4
     ranks = stats.rankdata(table, axis=1)
