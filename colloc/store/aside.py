@@ -3,14 +3,12 @@
 from __future__ import annotations
 
 import os
-import tempfile
 from collections.abc import Iterator
 from contextlib import contextmanager
-from pathlib import Path
 
 from colloc.store.connection import Store
 from colloc.store.opening import create
-from colloc.store.scratch import scratch_folder
+from colloc.store.scratch import place_for_readers, scratch_folder
 from colloc.store.vocabulary import term_count
 
 
@@ -24,8 +22,7 @@ def store_aside(store: Store, layer: str, temp: str | os.PathLike[str] | None = 
         Where it is made; when None, beside the store, or in the system's folder for temporary files where the
         store's own folder cannot be written.
     """
-    beside = store.path.absolute().parent
-    place = Path(temp) if temp is not None else beside if os.access(beside, os.W_OK) else Path(tempfile.gettempdir())
+    place = place_for_readers(store.path, temp)
     with scratch_folder(store.path, place) as folder, create(folder / store.path.name, {}, "count aside") as aside:
         with aside.transaction():
             terms = term_count(store, layer)
@@ -39,7 +36,7 @@ def store_aside(store: Store, layer: str, temp: str | os.PathLike[str] | None = 
 
 @contextmanager
 def stream_aside(store: Store, layer: str, temp: str | os.PathLike[str] | None = None) -> Iterator[Store]:
-    """An empty store, open for writing, for another stream of the terms of a layer: they are its types; gone afterwards.
+    """An empty store, open for writing, for another stream of a layer's terms: they are its types; gone afterwards.
 
     Parameters
     ----------

@@ -35,6 +35,18 @@ def scratch_folder(store_path: str | os.PathLike[str], temp: str | os.PathLike[s
         shutil.rmtree(folder, ignore_errors=True)
 
 
+def place_for_readers(store_path: str | os.PathLike[str], temp: str | os.PathLike[str] | None = None) -> Path:
+    """Where one who only reads a store makes temporary files.
+
+    ``temp`` where it is given, else beside the store, or in the system's folder for temporary files where the store's
+    own folder cannot be written.
+    """
+    if temp is not None:
+        return Path(temp)
+    beside = Path(store_path).absolute().parent
+    return beside if os.access(beside, os.W_OK) else Path(tempfile.gettempdir())
+
+
 def clean_leftovers(store_path: str | os.PathLike[str], temp: str | os.PathLike[str] | None = None) -> list[Path]:
     """Remove the folders of processes that no longer live; returns what was removed."""
     store_path = Path(store_path).absolute()

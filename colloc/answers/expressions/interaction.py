@@ -59,7 +59,7 @@ def _counted(grower: Grower, wanted: dict[Shape, Int64Array]) -> dict[Shape, _Co
         if len(shape) == 1:
             keys = np.empty(0, np.uint64)
             single = grower.single
-            level = Level(shape, None, None, 0, keys, single.counts[terms[:, 0]], single.ids, None)
+            level = Level(shape, None, None, keys, single.counts[terms[:, 0]], single.ids, None)
             done[shape] = _Counts(terms, level)
             continue
         # of single words the number is the term; of longer ones the row: both ascend as the terms do

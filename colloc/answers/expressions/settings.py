@@ -64,9 +64,9 @@ COLUMNS = (
     Different words in an open slot, their entropy in bits (where there are several slots: of the one where it is
     smallest), and the most frequent with their counts, slots divided by ``|``.
 """
-_SHOWN = ("count", "documents", "dp_norm", "strength", "weakest_split")
-SHOWN = (*_SHOWN, "c_value", "fragment", "fragment_count")
-SHOWN_OF_FRAMES = (*_SHOWN, "filler_kinds", "filler_entropy", "fillers")
+SHOWN = ("count", "documents", "strength", "c_value", "fragment", "fragment_count")
+SHOWN_OF_FRAMES = ("count", "documents", "strength", "filler_kinds", "filler_entropy", "fillers")
+"""What is shown beside the expression when nothing else is asked for."""
 LONGEST = 8
 """Words of the longest expressions that can be asked for."""
 FEWEST_DOCUMENTS = 3

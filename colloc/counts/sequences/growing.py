@@ -36,7 +36,7 @@ from colloc.settings import Inside
 from colloc.store import facts
 from colloc.store.connection import Store
 from colloc.store.documents import token_places
-from colloc.store.scratch import scratch_folder
+from colloc.store.scratch import place_for_readers, scratch_folder
 from colloc.store.slices import select
 from colloc.store.vocabulary import term_count, type_count, type_keys
 
@@ -108,7 +108,7 @@ class Grower:
         }
         self.units = sum(share["units"] for share in self._shares("lay_out", shared))
         nothing = np.empty(0, np.uint64)
-        self.single = Level((0,), None, None, 0, nothing, self.words.tokens, Column(**places["ids"]), None)
+        self.single = Level((0,), None, None, nothing, self.words.tokens, Column(**places["ids"]), None)
 
     def join(self, left: Level, right: Level, offset: int) -> Level:
         """The frequent sequences of a left part and a right part that begins ``offset`` places later.
@@ -131,13 +131,13 @@ class Grower:
         merged = self._merge(tasks, runs, name)
         keys = np.concatenate([np.empty(0, np.uint64), *(_taken(part) for part in merged)])
         counts, ids = self._numbered(name, parts, keys)
-        return Level(words, left, right, offset, keys, counts, ids, self._spread(ids, words, len(keys), name))
+        return Level(words, left, right, keys, counts, ids, self._spread(ids, words, len(keys), name))
 
     def known(self, left: Level, right: Level, offset: int, keys: UInt64Array) -> Level:
         """As `join`, but of given keys (ascending, each once), however often they occur, and without their spread."""
         name, words, parts = self._begun(left, right, offset)
         counts, ids = self._numbered(name, parts, keys)
-        return Level(words, left, right, offset, keys, counts, ids, None)
+        return Level(words, left, right, keys, counts, ids, None)
 
     def fillers(self, level: Level, numbers: Int64Array, slot: int) -> tuple[Int64Array, Int64Array, Int64Array]:
         """What stands in an open slot of some sequences of a level.
@@ -321,6 +321,8 @@ def growing(
         What no sequence reaches beyond.
     min_count : int
         Occurrences from which a sequence is frequent.
+    temp : path, optional
+        Where temporary files go; as `place_for_readers` says when None.
     memory : int
         Bytes for all processes together; the tables of frequent sequences come on top.
 
@@ -338,7 +340,8 @@ def growing(
     wanted = jobs if jobs is not None else os.cpu_count() or 1
     used = affordable_jobs(memory, max(1, min(wanted, tokens // _WORTH_A_PROCESS)))
     budget = plan_memory(memory, used, term_count(store, layer))
-    with scratch_folder(store.path, temp) as folder, crew(store, used) as workers:
+    place = place_for_readers(store.path, temp)
+    with scratch_folder(store.path, place) as folder, crew(store, used) as workers:
         yield Grower(store, workers, used, budget.entries, folder, layer, inside, where, min_count)
     if not store.writable:
         store.refresh()

@@ -49,8 +49,6 @@ class Level:
         Offsets of the words from the first, which is at 0; what is left out between is an open slot.
     left, right : Level or None
         The shorter sequences that make one up; None for single words, whose numbers are terms.
-    offset : int
-        Where the right part begins.
     keys : uint64 array, shape (n,)
         Number of the left part << 32 | number of the right part, ascending.
     counts : int64 array, shape (n,)
@@ -64,7 +62,6 @@ class Level:
     words: tuple[int, ...]
     left: Level | None
     right: Level | None
-    offset: int
     keys: UInt64Array
     counts: Int64Array
     ids: Column
@@ -87,15 +84,3 @@ class Level:
     def rights(self) -> Int64Array:
         """Number of each sequence's right part in its level."""
         return right_of(self.keys).astype(np.int64)
-
-    def terms(self, numbers: Int64Array | None = None) -> Int64Array:
-        """Terms of the words of some sequences, or of all: shape (n, words)."""
-        chosen = np.arange(len(self)) if numbers is None else np.asarray(numbers, np.int64)
-        if self.left is None or self.right is None:
-            return chosen[:, None]
-        left, right = self.left.terms(self.lefts[chosen]), self.right.terms(self.rights[chosen])
-        own = [self.words.index(self.offset + word) for word in self.right.words]
-        result = np.empty((len(chosen), len(self.words)), np.int64)
-        result[:, : left.shape[1]] = left
-        result[:, own] = right
-        return result

@@ -6,7 +6,10 @@ from collections import Counter, defaultdict
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 
-from colloc.records import NO_TERM
+import numpy as np
+
+from colloc.counts.sequences.levels import Level
+from colloc.records import NO_TERM, Int64Array
 from tests.counts.brute import units_of
 
 
@@ -42,6 +45,17 @@ def sequences(
                 seen.opening += place == 0
                 seen.closing += place + words[-1] == len(unit) - 1
     return dict(found)
+
+
+def terms_of(level: Level) -> Int64Array:
+    """Terms of the words of all sequences of a level: shape (n, words)."""
+    if level.left is None or level.right is None:
+        return np.arange(len(level))[:, None]
+    left, right = terms_of(level.left)[level.lefts], terms_of(level.right)[level.rights]
+    # the parts may overlap, but not so much that the last word of the right part is not the last of all
+    begin = len(level.words) - right.shape[1]
+    assert (left[:, begin:] == right[:, : left.shape[1] - begin]).all()
+    return np.concatenate([left[:, :begin], right], axis=1)
 
 
 def fillers(

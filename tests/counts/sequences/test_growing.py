@@ -18,7 +18,7 @@ from colloc.records import NO_TERM
 from colloc.store import documents as store_documents
 from colloc.store import facts
 from colloc.store.opening import open_for_reading, open_for_writing
-from tests.counts.sequences.plain import Seen, fillers, sequences
+from tests.counts.sequences.plain import Seen, fillers, sequences, terms_of
 from tests.counts.stores import Text, folded, make_store, random_text
 
 LEAST = 3
@@ -51,7 +51,7 @@ def plainly(text: Text) -> Plainly:
 
 
 def as_dict(level: Level) -> dict[tuple[int, ...], int]:
-    return {tuple(terms): count for terms, count in zip(level.terms().tolist(), level.counts.tolist(), strict=True)}
+    return {tuple(terms): count for terms, count in zip(terms_of(level).tolist(), level.counts.tolist(), strict=True)}
 
 
 def frequent(plain: dict[tuple[int, ...], Seen], least: int = LEAST) -> dict[tuple[int, ...], int]:
@@ -91,7 +91,7 @@ def test_spread_over_documents_and_edges_of_sentences(path: Path, text: Text) ->
         units = grower.units
     assert units == len(text.starts("sentence"))
     found = sequences(documents, (0, 1))
-    plain = [found[tuple(terms)] for terms in level.terms().tolist()]
+    plain = [found[tuple(terms)] for terms in terms_of(level).tolist()]
     spread = level.spread
     assert spread is not None
     assert spread.documents.tolist() == [len(seen.documents) for seen in plain]
@@ -142,7 +142,7 @@ def test_open_slots(path: Path, text: Text, words: tuple[int, ...]) -> None:
         slot = next(offset for offset in range(words[-1]) if offset not in words)
         index, term, count = grower.fillers(level, numbers, slot)
     for row, number in enumerate(numbers.tolist()):
-        expected = fillers(documents, words, tuple(level.terms()[number].tolist()), slot)
+        expected = fillers(documents, words, tuple(terms_of(level)[number].tolist()), slot)
         here = index == row
         assert dict(zip(term[here].tolist(), count[here].tolist(), strict=True)) == dict(expected)
 
