@@ -104,3 +104,29 @@ def test_pairs_of_both_sides(talkative: Store, logs_only: Store, directed: bool)
 def test_what_cannot_be_compared(talkative: Store, sides: dict[str, object], message: str) -> None:
     with pytest.raises(UsageError, match=message):
         colloc.contrast(talkative, **sides)  # type: ignore[arg-type]
+
+
+@pytest.mark.parametrize(
+    "counting",
+    [{"unit": True}, {"margins": "positions"}, {"left": 1, "right": 3}, {"layer": "form", "window": 2}],
+    ids=str,
+)
+def test_every_way_of_counting_is_that_of_the_slices(talkative: Store, counting: dict[str, object]) -> None:
+    answer = colloc.contrast(talkative, this="genre=log", pairs=True, limit=4, **counting)  # type: ignore[arg-type]
+    for row in answer:
+        for side, where in (("this", "genre=log"), ("that", "genre=notice")):
+            beside = colloc.around(
+                talkative,
+                row["first"],
+                where=where,
+                limit=0,
+                min_count=1,
+                any_strength=True,
+                **counting,  # type: ignore[arg-type]
+            )
+            found = {one["second"]: one for one in beside}
+            if row[f"joint_{side}"]:
+                assert found[row["second"]]["joint"] == row[f"joint_{side}"]
+                assert found[row["second"]]["pmi"] == pytest.approx(row[f"pmi_{side}"])
+            else:
+                assert row["second"] not in found
