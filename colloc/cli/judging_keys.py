@@ -17,7 +17,7 @@ from colloc.cli.output import print_lines, remark
 
 if TYPE_CHECKING:
     from colloc.answers.judging.candidates import Candidate
-    from colloc.store.decisions import Example, Verdict
+    from colloc.answers.judging.matters import Example, Verdict
 
 LINES = 5
 """Example lines beside a candidate: as many as there are keys for."""

@@ -143,11 +143,11 @@ def test_against_decisions(store: Path, tmp_path: Path, capsys: pytest.CaptureFi
     colloc.judge(store, ["the", "reef"], "accept", by="Ben")
     colloc.judge(store, ["at", "dawn"], "unsure", by="Ben")
     picture = tmp_path / "p.svg"
-    arguments = ["appraise", str(store), "--show", "npmi,pmi", "--repeats", "50", "--at", "3", "-f", "csv"]
+    arguments = ["appraise", str(store), "--show", "npmi,joint", "--repeats", "50", "--at", "3", "-f", "csv"]
     assert main([*arguments, "--plot", str(picture)]) == 0
     out, err = capsys.readouterr()
     rows = list(csv.DictReader(out.splitlines()))
-    assert [row["measure"] for row in rows] == ["npmi", "pmi"]
+    assert [row["measure"] for row in rows] == ["npmi", "joint"]
     assert float(rows[0]["average_precision"]) == 1.0
     assert float(rows[0]["precision_at_3"]) == 1.0
     # The disputed pair and the one that nobody decided are passed over; unsure beside accept does not matter.

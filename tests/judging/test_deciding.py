@@ -162,6 +162,18 @@ def test_agreement_is_cohens_kappa(store: Path) -> None:
     }
 
 
+def test_agreement_where_one_judge_accepts_everything(store: Path) -> None:
+    for words, verdict in (("thick fog", "accept"), ("strong wind", "accept"), ("the boat", "reject")):
+        colloc.judge(store, words.split(), verdict, by="Anna")  # type: ignore[arg-type]
+        colloc.judge(store, words.split(), "accept", by="Ben")
+    (row,) = colloc.judge_agreement(store).to_dicts()
+    assert (row["both"], row["same"], row["kappa"]) == (3, 2, 0.0)
+    colloc.judge(store, ["the", "boat"], "accept", by="Anna")
+    (row,) = colloc.judge_agreement(store).to_dicts()
+    assert row["same"] == 3
+    assert str(row["kappa"]) == "nan", "agreement by chance is certain: kappa says nothing"
+
+
 def test_a_session_by_keys(store: Path) -> None:
     rows, measures = colloc.candidates(store, limit=4)
     pressed = iter(["1", "n", "a", "r", "b", "x", "u", "s", "a", "a"])

@@ -93,7 +93,9 @@ def agreement(store: Store) -> Columns:
         kappa = low = high = float("nan")
         by_chance = float((table.sum(axis=0) * table.sum(axis=1)).sum())
         if both and by_chance < both**2:
-            found = cohens_kappa(table)
+            # Where one judge gave one verdict throughout, the variance can come out a rounding error below 0.
+            with np.errstate(invalid="ignore"):
+                found = cohens_kappa(table)
             kappa, low, high = float(found.kappa), float(found.kappa_low), float(found.kappa_upp)
         rows.append((one, other, both, same, kappa, low, high))
     columns = list(zip(*rows, strict=True)) or [()] * 7

@@ -12,6 +12,8 @@ from colloc.errors import DataError, NotSeenError, UsageError
 from colloc.store import vocabulary
 from colloc.store.connection import Store
 from colloc.store.decisions import Decision, Key, Kind, key_of
+from colloc.store.decisions import Example as Example
+from colloc.store.decisions import Verdict as Verdict
 
 OPEN = "*"
 """Stands for any one word in an expression."""

@@ -25,7 +25,15 @@ def appraise(
         ),
     ] = None,
     by: Annotated[str | None, typer.Option("--by", metavar="NAME", help="Decisions of this judge only.")] = None,
-    show: opt.ShowOption = None,
+    show: Annotated[
+        list[str] | None,
+        typer.Option(
+            "--show",
+            metavar="NAMES",
+            help="Measures held against it, joint among them; all when not given.",
+            autocompletion=opt.complete_measures,
+        ),
+    ] = None,
     at: Annotated[
         str, typer.Option("--at", metavar="PLACES", help="Places at which precision and recall are told.")
     ] = "100",
@@ -80,7 +88,7 @@ def appraise(
             store,
             gold=read_matters(gold) if gold is not None else None,
             by=by,
-            show=opt.shown_measures(show),
+            show=_names(show),
             at=_places(at),
             min_count=min_count,
             combined=combined,
@@ -111,6 +119,16 @@ def appraise(
         remark(f"largest weights: {', '.join(weights)}", quiet=quiet)
     if found.ranking is not None and ranking is not None:
         deliver(found.ranking, Target("csv", ranking, True), "appraise")
+
+
+def _names(values: list[str] | None) -> list[str] | None:
+    """Measures and ``joint``; None for all."""
+    names = opt.split_names(values)
+    if names is None or "all" in names:
+        return None
+    for name in names:
+        opt.check_ranking(name)
+    return names
 
 
 def _places(text: str) -> list[int]:

@@ -13,7 +13,7 @@ from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
 if TYPE_CHECKING:
-    from colloc.store.decisions import Verdict
+    from colloc.answers.judging.matters import Verdict
 
 MORE_CANDIDATES = 200
 ByOption = Annotated[str | None, typer.Option("--by", metavar="NAME", help="Who decides.")]
