@@ -5,9 +5,11 @@ from __future__ import annotations
 import csv
 import json
 import sys
+from collections import deque
 from collections.abc import Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass
+from itertools import islice
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, BinaryIO, Literal
 
@@ -132,6 +134,22 @@ class _Lines:
         self.number = 0
         self._stream = stream
         self._ahead: str | None = None
+        self._waiting: deque[bytes] = deque()
+
+    @property
+    def waiting(self) -> bool:
+        """Whether lines of a stretch are still to be read."""
+        return bool(self._waiting)
+
+    def stretch(self, count: int) -> list[bytes]:
+        """The next lines as they are; they stay to be read, or are passed over."""
+        self._waiting.extend(islice(self._stream, count - len(self._waiting)))
+        return list(self._waiting)
+
+    def pass_over(self) -> None:
+        """Take the lines of the last stretch as read."""
+        self.number += len(self._waiting)
+        self._waiting.clear()
 
     def peek(self) -> str:
         self._ahead = self._decode(self._stream.readline()).removeprefix("\ufeff")
@@ -141,7 +159,7 @@ class _Lines:
         while True:
             line, self._ahead = self._ahead, None
             if line is None:
-                line = self._decode(self._stream.readline())
+                line = self._decode(self._waiting.popleft() if self._waiting else self._stream.readline())
             if not line:
                 return
             self.number += 1
@@ -177,25 +195,56 @@ def _delimited_rows(lines: _Lines, delimiter: str) -> Iterator[Rows]:
     names: list[str] = []
     rows: list[list[str]] = []
     ends: list[int] = []
+    given = False
     try:
         names = [restore(name.strip()) for name in next(reader)]
         _check_names(names, lines)
-        for row in reader:
-            if not row:
+        while stretch := lines.stretch(ROWS_A_PART):
+            cells = _plain_cells(stretch, delimiter, len(names))
+            if cells is not None:
+                begin = lines.number + 1
+                lines.pass_over()
+                given = True
+                columns = {name: restore_all(cells[place :: len(names)]) for place, name in enumerate(names)}
+                yield Rows(lines.name, columns, list(range(begin, lines.number + 1)))
                 continue
-            if len(row) != len(names):
-                raise DataError(
-                    f"{lines.name}:{lines.number}: {len(row)} cells where the header has {len(names)}; "
-                    f"quote cells that hold the separator"
-                )
-            rows.append(row)
-            ends.append(lines.number)
-            if len(rows) == ROWS_A_PART:
+            for row in reader:
+                if row and len(row) != len(names):
+                    raise DataError(
+                        f"{lines.name}:{lines.number}: {len(row)} cells where the header has {len(names)}; "
+                        f"quote cells that hold the separator"
+                    )
+                if row:
+                    rows.append(row)
+                    ends.append(lines.number)
+                if not lines.waiting:
+                    break
+            if rows:
+                given = True
                 yield _transposed(lines.name, names, rows, ends)
                 rows, ends = [], []
     except csv.Error as error:
         raise DataError(f"{lines.name}:{lines.number}: not a table of the expected form: {error}") from error
-    yield _transposed(lines.name, names, rows, ends)
+    if not given:
+        yield _transposed(lines.name, names, [], [])
+
+
+def _plain_cells(stretch: list[bytes], delimiter: str, width: int) -> list[str] | None:
+    """All cells of some lines, row by row, where nothing is quoted and every line has its cells; else None.
+
+    Several times as fast as the library's reader, which takes the rest.
+    """
+    data = b"".join(stretch)
+    separator = delimiter.encode()
+    if b'"' in data or b"\r" in data or b"\n\n" in data or data.startswith(b"\n"):
+        return None
+    if any(line.count(separator) != width - 1 for line in stretch):
+        return None
+    try:
+        text = data.decode("utf-8")
+    except UnicodeDecodeError:
+        return None  # the line is named where it is read alone
+    return text.removesuffix("\n").replace("\n", delimiter).split(delimiter)
 
 
 def _check_names(names: list[str], lines: _Lines) -> None:
