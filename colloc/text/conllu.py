@@ -210,5 +210,16 @@ def _document_starts(text: str) -> list[int]:
     """Where the sentences begin whose comments say that a document does."""
     if "newdoc" not in text:
         return []
-    found = (text.rfind("\n\n", 0, match.start()) for match in _NEW_DOCUMENT.finditer(text))
-    return sorted({0 if end < 0 else end + 2 for end in found})
+    return sorted({_sentence_start(text, match.start()) for match in _NEW_DOCUMENT.finditer(text)})
+
+
+def _sentence_start(text: str, place: int) -> int:
+    """Where the sentence, or the block of comments, begins that holds a place."""
+    reach = 256
+    while reach < place:
+        end = text.rfind("\n\n", place - reach, place)
+        if end >= 0:
+            return end + 2
+        reach *= 4
+    end = text.rfind("\n\n", 0, place)
+    return 0 if end < 0 else end + 2
