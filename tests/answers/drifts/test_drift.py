@@ -12,7 +12,6 @@ import colloc
 from colloc.answers.drifts.changed import bars
 from colloc.answers.drifts.periods import make_periods
 from colloc.errors import NotSeenError, UsageError
-
 from tests.answers.conftest import Demo
 
 
