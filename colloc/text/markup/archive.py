@@ -25,7 +25,6 @@ _DAMAGE = (
     EOFError,
     OSError,
     OverflowError,
-    NotImplementedError,
     RuntimeError,
     ValueError,
 )

@@ -144,7 +144,7 @@ class _Handler:
         if self._root:
             self._root = False
             if name not in _ROOTS:
-                self.fail(f"no TEI: its outermost element is {name[:40]!r}")
+                self.fail(f"no TEI: its outermost element is {name[:40]!r}; leave the file out")
         if self._header_depth:
             self._in_header(name, attributes)
         elif self._body is not None:
