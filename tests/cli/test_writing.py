@@ -20,8 +20,8 @@ from colloc.cli.output import Target, deliver, settings_line
 from colloc.cli.progress import ProgressLine, clock, progress_text
 from colloc.cli.render import make_writer
 from colloc.cli.sizes import size_in_bytes, written_size
-from colloc.exports.spreadsheets import defuse, restore
 from colloc.errors import UsageError
+from colloc.exports.spreadsheets import defuse, restore
 
 TEXT = st.text(st.characters(exclude_categories=("Cs",)), max_size=8)
 RISKY = st.text(st.sampled_from("'=+-@\t\ra1.e"), max_size=6)
