@@ -19,10 +19,11 @@ from typing import Any
 
 from colloc.errors import DataError, MissingExtraError
 from colloc.records import Document, MetaValue
-from colloc.text.lines import exceeds, record_document
+from colloc.text.lines import MOST_COLUMNS, exceeds, record_document
 from colloc.text.opening import STANDARD_INPUT, Opened
 
-MOST_COLUMNS = 4096
+LARGEST_FOOTER = 2**25
+"""Bytes of the part that describes columns; it takes some thirty times as much memory."""
 ROWS = 1024
 """Rows read at once, at most."""
 LARGEST_BATCH = 2**29
@@ -127,13 +128,30 @@ def _check_columns(opened: Opened, schema: Any) -> None:
 def _batches(opened: Opened, file: Any, skip: int) -> Iterator[tuple[Any, int, Any]]:
     """Schema, number of the first row, and batch; batches that are wholly skipped are left out."""
     head = file.read(8)
-    file.seek(0)
+    _check_footer(opened, file, head)
     if head.startswith(_PARQUET):
         yield from _parquet_batches(opened, file, skip)
     elif opened.format == "parquet":
         raise opened.error("no Parquet file: it does not begin with PAR1; get the file again")
     else:
         yield from _arrow_batches(opened, file, skip, head.startswith(_FILE))
+
+
+def _check_footer(opened: Opened, file: Any, head: bytes) -> None:
+    """Refuse a description of columns that would fill the memory; leaves the file at its beginning.
+
+    Its length stands before the mark at the end (Parquet: 4 bytes and PAR1; Arrow: 4 bytes and ARROW1), in an
+    Arrow stream after the first 4 bytes.
+    """
+    size = file.seek(0, 2)
+    if head.startswith((_PARQUET, _FILE)):
+        file.seek(max(size - (8 if head.startswith(_PARQUET) else 10), 0))
+        length = int.from_bytes(file.read(4), "little")
+    else:
+        length = int.from_bytes(head[4:8], "little")
+    file.seek(0)
+    if LARGEST_FOOTER < length < size:
+        raise opened.error(f"describes its columns in {length:,} bytes, more than {LARGEST_FOOTER:,}: leave some out")
 
 
 def _parquet_batches(opened: Opened, file: Any, skip: int) -> Iterator[tuple[Any, int, Any]]:

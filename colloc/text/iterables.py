@@ -12,7 +12,7 @@ from typing import Any, overload
 from colloc.errors import DataError
 from colloc.records import Document, MetaValue, SourceInfo
 from colloc.settings import ReadSettings
-from colloc.text.lines import pieces
+from colloc.text.lines import MOST_COLUMNS, pieces
 
 ITERABLE = "iterable"
 """What the provenance calls such an input; later ones are numbered."""
@@ -113,6 +113,8 @@ class IterableSource:
             raise self._wrong(record, "half a surrogate pair, which is no character, in its text")
         if not isinstance(metadata, Mapping):
             raise self._wrong(record, f"its metadata is {type(metadata).__name__}, not a mapping")
+        if len(metadata) > MOST_COLUMNS:
+            raise self._wrong(record, f"{len(metadata):,} keys of metadata, more than {MOST_COLUMNS:,}: leave some out")
         kept = {str(key): self._value(record, str(key), item) for key, item in metadata.items()}
         if identifier is None or identifier == "":
             return f"{self.info.name}:{record + 1}", text, kept

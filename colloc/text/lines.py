@@ -12,6 +12,8 @@ from colloc.text.opening import Opened
 
 PIECE = 2**20
 """Code points in a piece of a record's text."""
+MOST_COLUMNS = 4096
+"""Columns of a record; a table with more is no table of documents."""
 
 _LINE_END = re.compile(r"[\r\n]")
 
@@ -114,6 +116,13 @@ def record_document(
     """A document from a record; its own columns go before what path and side table say.
 
     Without an identifier it is called ``file:n``, n counting records from 1.
+
+    Raises
+    ------
+    DataError
+        For more than `MOST_COLUMNS` columns.
     """
+    if len(columns) > MOST_COLUMNS:
+        raise opened.error(f"record {record + 1}: {len(columns):,} columns, more than {MOST_COLUMNS:,}: leave some out")
     name = f"{opened.identifier}:{record + 1}" if identifier is None else str(identifier)
     return Document(name, {**opened.metadata, **columns}, pieces(text), record)

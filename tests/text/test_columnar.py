@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime
 import decimal
 import gzip
+import json
 import resource
 import time
 from collections.abc import Callable
@@ -18,6 +19,7 @@ import pytest
 
 from colloc.errors import DataError
 from colloc.settings import ReadSettings
+from colloc.text import columnar
 from colloc.text.sources import open_sources
 
 from .samples import HOSTILE, count_characters, prose, read_documents, read_texts
@@ -110,6 +112,27 @@ def test_wrong_tables(tmp_path: Path, table: dict[str, list[Any]], settings: Rea
         read_texts(path, settings)
 
 
+@pytest.mark.parametrize("name", ["wide.parquet", "wide.feather", "wide.arrows"])
+def test_a_description_that_would_fill_the_memory(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, name: str) -> None:
+    monkeypatch.setattr(columnar, "LARGEST_FOOTER", 2**12)
+    table = pa.table({"text": ["a"], **{f"column{number}": [number] for number in range(200)}})
+    WRITERS[name.replace("wide", "a")](table, str(tmp_path / name))
+    with pytest.raises(DataError, match=rf"{name}: describes its columns in [\d,]+ bytes, more than 4,096"):
+        read_texts(tmp_path / name)
+
+
+@pytest.mark.parametrize("name", ["wide.jsonl", "wide.csv"])
+def test_records_of_very_many_columns(tmp_path: Path, name: str) -> None:
+    names = [f"c{number}" for number in range(100_000)]
+    if name == "wide.jsonl":
+        content = json.dumps({"text": "a", **dict.fromkeys(names, 1)})
+    else:
+        content = f"text,{','.join(names)}\na{',1' * len(names)}\n"
+    (tmp_path / name).write_text(content)
+    with pytest.raises(DataError, match=rf"{name}: record 1: 100,000 columns, more than 4,096"):
+        read_texts(tmp_path / name)
+
+
 @pytest.mark.parametrize(
     ("name", "data"),
     [("a.parquet", b"PAR1" + b"0" * 90), ("a.parquet", b"text"), ("a.feather", b"ARROW1"), ("a.arrow", b"\xff" * 64)],
@@ -137,8 +160,6 @@ def test_a_string_said_once_and_meant_often_stays_bounded(tmp_path: Path) -> Non
 def test_speed_beside_json_lines(tmp_path: Path) -> None:
     texts = [prose(seed, 4000) for seed in range(60)] * 60
     pq.write_table(pa.table({"text": texts}), tmp_path / "a.parquet")
-    import json
-
     (tmp_path / "a.jsonl").write_text("".join(json.dumps({"text": text}) + "\n" for text in texts))
 
     def seconds(name: str) -> float:
