@@ -12,44 +12,36 @@ Places, runs and tables of numbers lie in temporary files; in memory are only th
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Iterable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator
 from contextlib import contextmanager
 from dataclasses import asdict
-from itertools import pairwise
-from pathlib import Path
-from typing import Any
+from functools import partial
 
 import numpy as np
 
 from colloc.counts.budget import DEFAULT_MEMORY, affordable_jobs, plan_memory
 from colloc.counts.keys import merge
-from colloc.counts.processes import Crew, Task, crew
-from colloc.counts.runs import Column, RunFile, save_runs, write_column
+from colloc.counts.processes import crew
+from colloc.counts.runs import Column
 from colloc.counts.selection import Selection, documents_selection
+from colloc.counts.sequences.capitals import capital_marks
 from colloc.counts.sequences.levels import Level, Spread
-from colloc.counts.sequences.places import NONE, fill, left_of, reserve, right_of
-from colloc.counts.sequences.sharing import CAPITAL, MOST_WORDS, NO_MARK, SMALL, Facts
+from colloc.counts.sequences.places import NONE, fill, left_of, right_of
+from colloc.counts.sequences.sharing import MOST_WORDS, Facts
+from colloc.counts.sequences.sharing_out import END, Shop, remove_runs, run_file, taken
 from colloc.counts.words import slice_word_counts
 from colloc.errors import LockedError, UsageError
-from colloc.records import Int64Array, UInt8Array, UInt64Array, WordCounts
+from colloc.records import Int64Array, UInt64Array, WordCounts
 from colloc.settings import Inside
 from colloc.store import facts
 from colloc.store.connection import Store
 from colloc.store.documents import token_places
 from colloc.store.scratch import place_for_readers, scratch_folder
 from colloc.store.slices import select
-from colloc.store.vocabulary import term_count, type_count, type_keys
-
-Progress = Callable[[float, int, str], None]
+from colloc.store.vocabulary import term_count
 
 _WORTH_A_PROCESS = 2**20
 """Tokens for which a worker is started."""
-_LARGEST_SHARE = 2**20
-_LEAST_RANGE = 2**16
-"""Run entries that make a range of keys worth a task of its own."""
-_SAMPLES = 2**17
-_END = 2**64 - 1
-_TYPES_AT_A_TIME = 2**16
 
 
 class Grower:
@@ -68,45 +60,27 @@ class Grower:
     """
 
     def __init__(
-        self,
-        store: Store,
-        workers: Crew,
-        jobs: int,
-        entries: int,
-        folder: Path,
-        layer: str,
-        inside: Inside,
-        where: str,
-        min_count: int,
+        self, store: Store, make_shop: Callable[[int], Shop], layer: str, inside: Inside, where: str, min_count: int
     ) -> None:
-        self._workers, self._jobs, self._entries, self._folder = workers, jobs, entries, folder
         self._least = max(min_count, 1)
         self._made = 0
         numbers = select(store, where)
-        selection = documents_selection(store, numbers)
-        begins, sizes = token_places(store, numbers)
-        begins, sizes = _in_order(begins, sizes)
-        self._selection, self._size = selection, len(selection)
-        self._documents = self._keep("documents", _places(selection, begins))
-        self._sizes = self._keep("sizes", sizes)
-        shares = jobs * -(-self._size // (jobs * _LARGEST_SHARE)) if self._size else 0
-        self._edges = [self._size * share // max(shares, 1) for share in range(shares + 1)] or [0]
+        self._selection = documents_selection(store, numbers)
+        begins, sizes = _in_order(*token_places(store, numbers))
+        self._shop = make_shop(len(self._selection))
+        self._folder = {"folder": str(self._shop.folder)}
+        self._documents = self._shop.keep("documents", _places(self._selection, begins))
+        self._sizes = self._shop.keep("sizes", sizes)
+        self._least_share = float(sizes.min() / max(sizes.sum(), 1)) if len(sizes) else 1.0
         self.words: WordCounts = slice_word_counts(store, layer, where)
         self.total = int(self.words.tokens.sum())
-        self._least_share = float(sizes.min() / max(sizes.sum(), 1)) if len(sizes) else 1.0
-        places = {name: self._reserve(name, kind) for name, kind in (("ids", "<u4"), ("room", "|u1"), ("marks", "|u1"))}
+        kinds = {"ids": "<u4", "room": "|u1", "marks": "|u1"}
+        places = {name: self._shop.reserve(name, kind) for name, kind in kinds.items()}
         self._room, self._marks = places["room"], places["marks"]
-        shared: Facts = {
-            "layer": layer,
-            "inside": inside,
-            "selection": {
-                "begins": self._keep("begins", selection.begins),
-                "stops": self._keep("stops", selection.stops),
-            },
-            "capitals": self._keep("capitals", capital_marks(store)),
-            "into": places,
-        }
-        self.units = sum(share["units"] for share in self._shares("lay_out", shared))
+        stretches = {name: self._shop.keep(name, getattr(self._selection, name)) for name in ("begins", "stops")}
+        marks = self._shop.keep("capitals", capital_marks(store))
+        laid = {"layer": layer, "inside": inside, "selection": stretches, "capitals": marks, "into": places}
+        self.units = sum(share["units"] for share in self._shop.share_out("lay_out", laid))
         nothing = np.empty(0, np.uint64)
         self.single = Level((0,), None, None, nothing, self.words.tokens, Column(**places["ids"]), None)
 
@@ -121,15 +95,10 @@ class Grower:
             The sequence would reach over more than `MOST_WORDS` places.
         """
         name, words, parts = self._begun(left, right, offset)
-        counted = self._shares("count_joins", parts, f"{name}-count")
-        runs = [_run_file(run) for run in counted]
-        least = {"least": self._least, "folder": str(self._folder)}
-        tasks: list[Task] = [
-            ("merge_joins", {"first": first, "last": last, "name": f"{name}-merge-{i}", **least})
-            for i, (first, last) in enumerate(pairwise(self._ranges(runs)))
-        ]
-        merged = self._merge(tasks, runs, name)
-        keys = np.concatenate([np.empty(0, np.uint64), *(_taken(part) for part in merged)])
+        runs = [run_file(run) for run in self._shop.share_out("count_joins", parts, f"{name}-count")]
+        least = {"least": self._least}
+        merged = self._shop.merge("merge_joins", self._shop.key_cuts(runs), least, runs, f"{name}-merge")
+        keys = np.concatenate([np.empty(0, np.uint64), *(taken(part) for part in merged)])
         counts, ids = self._numbered(name, parts, keys)
         return Level(words, left, right, keys, counts, ids, self._spread(ids, words, len(keys), name))
 
@@ -158,13 +127,13 @@ class Grower:
         name = f"fillers-{self._made}"
         rows = np.full(len(level), NONE)
         rows[numbers] = np.arange(len(numbers))
-        asked = {"ids": asdict(level.ids), "terms": asdict(self.single.ids), "slot": slot, "folder": str(self._folder)}
-        counted = self._shares("count_fillers", {**asked, "rows": self._keep(name, rows)}, name)
-        runs = [_run_file(run) for run in counted]
-        everything = merge([run.between(0, _END) for run in runs])
+        asked = {"ids": asdict(level.ids), "terms": asdict(self.single.ids), "slot": slot, **self._folder}
+        counted = self._shop.share_out("count_fillers", {**asked, "rows": self._shop.keep(name, rows)}, name)
+        runs = [run_file(run) for run in counted]
+        everything = merge([run.between(0, END) for run in runs])
         index, term = left_of(everything.keys).astype(np.int64), right_of(everything.keys).astype(np.int64)
         counts = everything.counts.astype(np.int64)
-        _remove(runs)
+        remove_runs(runs)
         return index, term, counts
 
     def keep_matches(self, matches: Iterable[tuple[Int64Array, Int64Array]]) -> Column:
@@ -177,7 +146,7 @@ class Grower:
             words are left out.
         """
         self._made += 1
-        column = self._reserve(f"matches-{self._made}", "<u2")
+        column = self._shop.reserve(f"matches-{self._made}", "<u2")
         for starts, lengths in matches:
             fits = lengths <= MOST_WORDS
             places = _places(self._selection, starts[fits])
@@ -193,8 +162,8 @@ class Grower:
         self._made += 1
         asked = {"ids": asdict(level.ids), "n": len(level), "words": len(level.words), "matches": asdict(matches)}
         counts = np.zeros(len(level), np.int64)
-        for share in self._shares("count_matches", {**asked, "folder": str(self._folder)}, f"matching-{self._made}"):
-            counts += _taken(share)
+        for share in self._shop.share_out("count_matches", {**asked, **self._folder}, f"matching-{self._made}"):
+            counts += taken(share)
         return counts
 
     def bags(self, terms: Int64Array) -> Int64Array:
@@ -212,11 +181,11 @@ class Grower:
         for word in range(terms.shape[1]):
             keys = before.astype(np.uint64) << np.uint64(32) | terms[:, word].astype(np.uint64)
             distinct, before = np.unique(keys, return_inverse=True)
-            chain.append(self._keep(f"{name}-{word}", distinct))
-        asked = {"terms": asdict(self.single.ids), "room": self._room, "chain": chain, "folder": str(self._folder)}
+            chain.append(self._shop.keep(f"{name}-{word}", distinct))
+        asked = {"terms": asdict(self.single.ids), "room": self._room, "chain": chain, **self._folder}
         counts = np.zeros(len(terms), np.int64)
-        for share in self._shares("count_bags", asked, name):
-            counts += _taken(share)
+        for share in self._shop.share_out("count_bags", asked, name):
+            counts += taken(share)
         return counts
 
     def _begun(self, left: Level, right: Level, offset: int) -> tuple[str, tuple[int, ...], Facts]:
@@ -225,78 +194,36 @@ class Grower:
             raise UsageError(f"a sequence reaches over at most {MOST_WORDS} places, not {words[-1] + 1}")
         self._made += 1
         parts = {"left": asdict(left.ids), "right": asdict(right.ids), "offset": offset, "span": words[-1] + 1}
-        return f"level-{self._made}", words, {**parts, "room": self._room, "folder": str(self._folder)}
+        return f"level-{self._made}", words, {**parts, "room": self._room, **self._folder}
 
     def _numbered(self, name: str, parts: Facts, keys: UInt64Array) -> tuple[Int64Array, Column]:
-        ids = self._reserve(f"{name}.ids", "<u4")
-        numbering = {**parts, "keys": self._keep(f"{name}.keys", keys), "ids": ids}
+        ids = self._shop.reserve(f"{name}.ids", "<u4")
+        numbering = {**parts, "keys": self._shop.keep(f"{name}.keys", keys), "ids": ids}
         counts = np.zeros(len(keys), np.int64)
-        for share in self._shares("number_joins", numbering, f"{name}-number"):
-            counts += _taken(share)
+        for share in self._shop.share_out("number_joins", numbering, f"{name}-number"):
+            counts += taken(share)
         return counts, Column(**ids)
 
     def _spread(self, ids: Column, words: tuple[int, ...], n: int, name: str) -> Spread:
-        where = {"room": self._room, "marks": self._marks, "documents": self._documents, "folder": str(self._folder)}
+        where = {"room": self._room, "marks": self._marks, "documents": self._documents, **self._folder}
         survey = {"ids": asdict(ids), "n": n, "words": list(words), **where}
         sums = {what: np.zeros(n, np.int64) for what in ("capitals", "marked", "opening", "closing")}
-        surveyed = self._shares("survey_sequences", survey, f"{name}-survey")
+        surveyed = self._shop.share_out("survey_sequences", survey, f"{name}-survey")
         for share in surveyed:
             for what, so_far in sums.items():
-                so_far += _taken(share[what])
-        runs = [_run_file(share["run"]) for share in surveyed]
-        entries = sum(run.keys.n for run in runs)
-        ranges = min(max(n, 1), self._range_count(entries))
-        edges = sorted({n * part // ranges for part in range(ranges + 1)})
-        same = {"sizes": self._sizes, "folder": str(self._folder)}
-        tasks: list[Task] = [
-            ("spread_sequences", {"first": first, "last": last, "name": f"{name}-spread-{i}", **same})
-            for i, (first, last) in enumerate(pairwise(edges))
-        ]
-        parts = self._merge(tasks, runs, f"{name}-spread")
+                so_far += taken(share[what])
+        runs = [run_file(share["run"]) for share in surveyed]
+        cuts = self._shop.number_cuts(runs, n)
+        parts = self._shop.merge("spread_sequences", cuts, {"sizes": self._sizes}, runs, f"{name}-spread")
         none = np.empty(0, np.int64)
         documents, largest = (
-            np.concatenate([none, *(_taken(part[what]) for part in parts)]) for what in ("documents", "largest")
+            np.concatenate([none, *(taken(part[what]) for part in parts)]) for what in ("documents", "largest")
         )
-        dp = np.concatenate([np.empty(0), *(_taken(part["distance"]) for part in parts)]) / 2
+        dp = np.concatenate([np.empty(0), *(taken(part["distance"]) for part in parts)]) / 2
         with np.errstate(invalid="ignore", divide="ignore"):
             written = np.where(sums["marked"] > 0, sums["capitals"] / sums["marked"], np.nan)
             dp_norm = dp / (1 - self._least_share) if self._least_share < 1 else np.full(n, np.nan)
         return Spread(documents, largest, dp, dp_norm, written, sums["opening"], sums["closing"])
-
-    def _shares(self, task: str, arguments: Facts, name: str | None = None) -> list[Facts]:
-        """Do a task for every share of the selection."""
-        tasks: list[Task] = []
-        for share, (begin, stop) in enumerate(pairwise(self._edges)):
-            named = {"name": f"{name}-{share}"} if name is not None else {}
-            tasks.append((task, {**arguments, "begin": begin, "stop": stop, **named}))
-        return list(self._workers.results(tasks))
-
-    def _merge(self, tasks: Sequence[Task], runs: Sequence[RunFile], name: str) -> list[Facts]:
-        """Do tasks that read all runs, which are gone afterwards."""
-        listed = self._folder / f"{name}.runs"
-        save_runs(listed, runs)
-        done = list(self._workers.results([(task, {**arguments, "runs": str(listed)}) for task, arguments in tasks]))
-        _remove(runs)
-        return done
-
-    def _range_count(self, entries: int) -> int:
-        """Into how many ranges of keys so many run entries are cut."""
-        return max(1, -(-entries // self._entries), min(self._jobs, entries // _LEAST_RANGE))
-
-    def _ranges(self, runs: Sequence[RunFile]) -> list[int]:
-        """Cuts between keys, so that the ranges have about equally many entries of all runs."""
-        entries = sum(run.keys.n for run in runs)
-        step = max(1, entries // _SAMPLES)
-        sample = np.sort(np.concatenate([np.empty(0, np.uint64), *(run.keys.read()[::step] for run in runs)]))
-        ranges = self._range_count(entries)
-        cuts = np.unique(sample[len(sample) * np.arange(1, ranges) // ranges]) if len(sample) else sample
-        return [0, *cuts[cuts > 0].tolist(), _END]
-
-    def _keep(self, name: str, values: Any) -> Facts:
-        return asdict(write_column(self._folder / f"{name}.column", np.asarray(values)))
-
-    def _reserve(self, name: str, kind: str) -> Facts:
-        return asdict(reserve(self._folder / f"{name}.places", kind, self._size))
 
 
 @contextmanager
@@ -342,31 +269,11 @@ def growing(
     budget = plan_memory(memory, used, term_count(store, layer))
     place = place_for_readers(store.path, temp)
     with scratch_folder(store.path, place) as folder, crew(store, used) as workers:
-        yield Grower(store, workers, used, budget.entries, folder, layer, inside, where, min_count)
+        yield Grower(store, partial(Shop, workers, used, budget.entries, folder), layer, inside, where, min_count)
     if not store.writable:
         store.refresh()
     if facts.generation(store) != generation:
         raise LockedError(f"{store.path}: documents were added or removed while it was counted; try again")
-
-
-def capital_marks(store: Store) -> UInt8Array:
-    """The mark of each type: whether its form begins with a capital; words that are one letter say nothing."""
-    n = type_count(store)
-    marks = np.empty(n, np.uint8)
-    for first in range(0, n, _TYPES_AT_A_TIME):
-        keys = type_keys(store, first, min(first + _TYPES_AT_A_TIME, n))
-        forms = [key if isinstance(key, str) else key[0] for key in keys]
-        marks[first : first + len(forms)] = [_mark(form) for form in forms]
-    return marks
-
-
-def _mark(form: str) -> int:
-    if form[0].lower() == form[0].upper():
-        return SMALL
-    if not form[1:2].isalpha():
-        # "I", "I'm": one letter that is always or never a capital tells nothing of names
-        return NO_MARK
-    return CAPITAL if form[0].isupper() or form[0].istitle() else SMALL
 
 
 def _in_order(begins: Int64Array, sizes: Int64Array) -> tuple[Int64Array, Int64Array]:
@@ -380,20 +287,3 @@ def _places(selection: Selection, begins: Int64Array) -> Int64Array:
     """The selection's own places of places in the stream."""
     stretch = np.searchsorted(selection.begins, begins, side="right") - 1
     return begins - selection.begins[stretch] + selection.places[stretch]
-
-
-def _run_file(run: Facts) -> RunFile:
-    return RunFile(Column(**run["keys"]), Column(**run["counts"]))
-
-
-def _remove(runs: Sequence[RunFile]) -> None:
-    for run in runs:
-        Path(run.keys.path).unlink()
-        Path(run.counts.path).unlink()
-
-
-def _taken(column: Facts) -> Any:
-    """What a column holds; its file is gone afterwards."""
-    values = np.array(Column(**column).read())
-    Path(column["path"]).unlink()
-    return values

@@ -10,6 +10,7 @@ import numpy as np
 import pytest
 
 from colloc.counts.sequences import growing as module
+from colloc.counts.sequences import sharing_out
 from colloc.counts.sequences.growing import Grower, growing
 from colloc.counts.sequences.levels import Level
 from colloc.errors import LockedError, UsageError
@@ -70,7 +71,7 @@ def grown(grower: Grower, words: int) -> Level:
 def test_counts_of_every_length(
     path: Path, plainly: Plainly, inside: str, share: int, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr(module, "_LARGEST_SHARE", share)
+    monkeypatch.setattr(sharing_out, "_LARGEST_SHARE", share)
     with (
         open_for_reading(path) as store,
         growing(store, layer="fold", inside=inside, min_count=LEAST, jobs=1) as grower,
@@ -120,9 +121,9 @@ def test_slice_and_removed_documents(text: Text, tmp_path: Path) -> None:
 
 
 def test_processes_and_ranges_change_nothing(path: Path, text: Text, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(module, "_LARGEST_SHARE", 1500)
+    monkeypatch.setattr(sharing_out, "_LARGEST_SHARE", 1500)
     monkeypatch.setattr(module, "_WORTH_A_PROCESS", 1)
-    monkeypatch.setattr(module, "_LEAST_RANGE", 64)
+    monkeypatch.setattr(sharing_out, "_LEAST_RANGE", 64)
     with open_for_reading(path) as store, growing(store, layer="fold", min_count=LEAST, jobs=2) as grower:
         level = grown(grower, 4)
     assert as_dict(level) == frequent(sequences(parts(text, "sentence"), range(4)))
