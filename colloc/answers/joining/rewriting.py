@@ -136,12 +136,14 @@ class Joiner:
         waiting = ""
         for piece in pieces:
             waiting += piece
-            while len(waiting) >= STRETCH:
-                cut = self._cut(waiting)
+            place = 0
+            while len(waiting) - place >= STRETCH:
+                cut = self._cut(waiting[place : place + 2 * STRETCH]) or self._cut(waiting[place:])
                 if not cut:
                     break
-                yield waiting[:cut]
-                waiting = waiting[cut:]
+                yield waiting[place : place + cut]
+                place += cut
+            waiting = waiting[place:]
         if waiting:
             yield waiting
 
