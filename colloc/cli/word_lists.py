@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
+import re
 from pathlib import Path
 
 from colloc.cli.tables_in import read_lines, read_rows
 from colloc.errors import DataError
+
+_JOINED = re.compile(r"(?<=[^\s_])_(?=[^\s_])")
+"""An underscore between words; one that stands alone is an open place."""
 
 
 def read_matters(path: Path) -> list[list[str]]:
@@ -29,7 +33,7 @@ def read_matters(path: Path) -> list[list[str]]:
             for rows in read_rows(path)
             for first, second in zip(rows.columns["first"], rows.columns["second"], strict=True)
         ]
-    found = [line.split("\t") if "\t" in line else line.replace("_", " ").split() for line in lines]
+    found = [line.split("\t") if "\t" in line else _JOINED.sub(" ", line).split() for line in lines]
     for line, words in zip(lines, found, strict=True):
         if len(words) < 2:
             raise DataError(f"{path}: {line!r} is one word: a pair or an expression has two or more")

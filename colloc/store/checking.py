@@ -10,7 +10,7 @@ import numpy as np
 from colloc.errors import StoreDamagedError
 from colloc.records import NO_TERM, Int64Array, UInt32Array
 from colloc.settings import TallySpec
-from colloc.store import documents, facts, stream, texts, visibility, vocabulary
+from colloc.store import decisions, documents, facts, stream, texts, visibility, vocabulary
 from colloc.store.connection import Store
 from colloc.store.database.findings import Finding, noting
 from colloc.store.paging.checking import check_tally
@@ -28,7 +28,8 @@ def check(store: Store) -> list[Finding]:
     Reads the whole store once; memory is bounded by the number of words.
     """
     findings: list[Finding] = []
-    for part in (_check_database, _check_words, _check_stream, _check_documents, _check_texts, _check_tallies):
+    stored = (_check_stream, _check_documents, _check_texts, _check_tallies, _check_decisions)
+    for part in (_check_database, _check_words, *stored):
         with noting(findings, part.__name__.removeprefix("_check_"), _REBUILD):
             part(store, findings)
     return findings
@@ -165,3 +166,10 @@ def _check_tallies(store: Store, findings: list[Finding]) -> None:
             except (TypeError, ValueError) as error:
                 raise StoreDamagedError(f"its description cannot be read ({error})") from error
             findings.extend(Finding(place, problem, _RECOUNT) for problem in check_tally(store, number, spec))
+
+
+def _check_decisions(store: Store, findings: list[Finding]) -> None:
+    remedy = "counts and text can be used; decisions before and after it can be read with an SQLite program"
+    with noting(findings, "decisions", remedy):
+        for _ in decisions.iterate(store):
+            pass

@@ -133,6 +133,7 @@ def candidates(
     words: Sequence[str] | str = (),
     given: Sequence[Sequence[str]] = (),
     kind: Kind | None = None,
+    expressions: bool = False,
     by: str = "",
     again: bool = True,
     measure: str | None = None,
@@ -153,6 +154,8 @@ def candidates(
 ) -> tuple[list[Candidate], tuple[str, ...]]:
     """What there is to judge, and the measures of pairs: a ranking, the company of ``words``, or what is ``given``.
 
+    With ``expressions`` the ranking is that of expressions.
+
     Parameters
     ----------
     by : str
@@ -165,7 +168,14 @@ def candidates(
 
     options = pair_options(layer, window, left, right, False, inside, margins, directed, True, where, None)
     choice = Choice(
-        words=as_list(words), given=given, kind=kind, measure=measure, show=show, min_count=min_count, limit=limit
+        words=as_list(words),
+        given=given,
+        kind=kind,
+        expressions=expressions,
+        measure=measure,
+        show=show,
+        min_count=min_count,
+        limit=limit,
     )
     with reading(store) as opened:
         return find(opened, choice, options, judge=by, again=again, jobs=jobs, memory=memory, progress=progress)

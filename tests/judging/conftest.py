@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import shutil
+from importlib.resources import as_file, files
 from pathlib import Path
 
 import numpy as np
@@ -58,3 +59,12 @@ def harbour(tmp_path_factory: pytest.TempPathFactory) -> Path:
 def store(harbour: Path, tmp_path: Path) -> Path:
     """A copy that the test may write to."""
     return Path(shutil.copy(harbour, tmp_path / "harbour.colloc"))
+
+
+@pytest.fixture(scope="session")
+def demo(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """A store of the demo texts, to read only."""
+    path = tmp_path_factory.mktemp("demo") / "demo.colloc"
+    with as_file(files("corpora_demo")) as corpus:
+        colloc.build(path, sorted(str(text) for text in corpus.glob("*.jsonl")), jobs=1)
+    return path

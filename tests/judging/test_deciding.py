@@ -251,6 +251,25 @@ def test_candidates_of_words_and_unknown_words(store: Path, tmp_path: Path) -> N
     assert main(["sheet", str(store), "--given", str(given)]) == 65
 
 
+def test_candidates_from_the_ranking_of_expressions(store: Path, demo: Path, tmp_path: Path) -> None:
+    rows, _ = colloc.candidates(demo, expressions=True, limit=5)
+    ranked = colloc.expressions(demo, limit=5)
+    assert len(ranked) == 5
+    assert [row.matter.text for row in rows] == ranked["expression"].tolist()
+    assert [row.figures.joint for row in rows] == ranked["count"].tolist()
+    assert [row.figures.documents for row in rows] == ranked["documents"].tolist()
+    assert {row.matter.kind for row in rows} == {"expression"}
+    with pytest.raises(UsageError, match="ranking of their own"):
+        colloc.candidates(demo, expressions=True, measure="npmi")
+    given = tmp_path / "frames.txt"
+    given.write_text("took the _ into account\nby_and_large\n", encoding="utf-8")
+    sheet = tmp_path / "s.csv"
+    assert main(["sheet", str(store), "--given", str(given), "--lines", "0", "-o", str(sheet), "-q"]) == 0
+    assert "took the * into account" in sheet.read_text(encoding="utf-8")
+    assert main(["sheet", str(demo), "--expressions", "-n", "2", "--lines", "1", "-o", str(sheet), "-q"]) == 0
+    assert "specific_correlation" in sheet.read_text(encoding="utf-8")
+
+
 def test_a_store_that_cannot_be_written_keeps_its_decisions(store: Path, tmp_path: Path) -> None:
     colloc.judge(store, ["thick", "fog"], "accept", by="Anna")
     copy = Path(shutil.copy(store, tmp_path / "copy"))

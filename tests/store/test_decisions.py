@@ -10,6 +10,7 @@ from pathlib import Path
 import pytest
 
 from colloc.errors import DataError, StoreDamagedError, UsageError
+from colloc.store.checking import check
 from colloc.store.decisions import Decision, Example, append, from_dict, iterate, newest
 from colloc.store.opening import open_for_reading, open_for_writing
 
@@ -89,3 +90,5 @@ def test_a_damaged_row_is_named(tmp_path: Path) -> None:
     connection.close()
     with open_for_reading(path) as store, pytest.raises(StoreDamagedError, match="decision 1 cannot be read"):
         list(iterate(store))
+    with open_for_reading(path) as store:
+        assert [finding.place for finding in check(store)] == ["decisions"]

@@ -12,7 +12,8 @@ from colloc.answers.judging.figures import EXPRESSION_SCORE, Figures, figures
 from colloc.answers.judging.matters import Matter, make_matter
 from colloc.answers.pairs import pairs
 from colloc.answers.questions import PairOptions, measure_names, resolve_spec
-from colloc.settings import DEFAULT_MEMORY
+from colloc.errors import UsageError
+from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store.connection import Store
 from colloc.store.decisions import Decision, Kind, newest
 
@@ -29,12 +30,15 @@ class Choice:
         Pairs and expressions named one by one; ``limit`` and ``min_count`` do not matter.
     kind : {"pair", "directed", "expression"}, optional
         Of those given.
+    expressions : bool
+        The ranking of expressions instead of that of pairs.
     measure, show : as for pairs
     """
 
     words: Sequence[str] = ()
     given: Sequence[Sequence[str]] = ()
     kind: Kind | None = None
+    expressions: bool = False
     measure: str | None = None
     show: Sequence[str] | None = None
     min_count: int | None = None
@@ -96,16 +100,34 @@ def _matters(store: Store, choice: Choice, options: PairOptions, **resources: An
     if choice.given:
         yield from (make_matter(store, words, choice.kind, options.layer) for words in choice.given)
         return
+    if choice.expressions:
+        yield from _expressions(store, choice, options, **resources)
+        return
     asked: dict[str, Any] = {
         "measure": choice.measure,
         "options": options,
         "min_count": choice.min_count,
         "limit": choice.limit,
+        **resources,
     }
     answer: Columns = around(store, choice.words, **asked) if choice.words else pairs(store, **asked)
     kind: Kind = "directed" if options.directed else "pair"
     for first, second in zip(answer["first"].tolist(), answer["second"].tolist(), strict=True):
         yield Matter(answer.settings["layer"], kind, (first, second))
+
+
+def _expressions(store: Store, choice: Choice, options: PairOptions, **resources: Any) -> Iterable[Matter]:
+    from colloc.answers.expressions.ranking import expressions
+    from colloc.answers.expressions.settings import ExpressionOptions
+
+    if choice.words or choice.measure:
+        raise UsageError("expressions have a ranking of their own: leave out words and measure")
+    least = DEFAULT_MIN_COUNT if choice.min_count is None else choice.min_count
+    wanted = ExpressionOptions(layer=options.layer, where=options.where, inside=options.inside, min_count=least)
+    answer = expressions(store, options=wanted, show=(), limit=choice.limit, **resources)
+    layer = answer.settings["layer"]
+    for text in answer["expression"].tolist():
+        yield make_matter(store, text.split(" "), "expression", layer)
 
 
 def shown_scores(rows: Sequence[Candidate], measures: Sequence[str]) -> list[str]:

@@ -16,7 +16,7 @@ from colloc.store.decisions import Example as Example
 from colloc.store.decisions import Verdict as Verdict
 
 OPEN = "*"
-"""Stands for any one word in an expression."""
+"""Stands for any one word in an expression; ``_``, which is no word either, is read as the same."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,7 +76,7 @@ def make_matter(
     kind = kind or ("pair" if len(parts) == 2 else "expression")
     if kind != "expression" and len(parts) != 2:
         raise UsageError(f"a {kind} has two words, not {len(parts)}")
-    parts = [word if word == OPEN else vocabulary.brought_to(store, layer, word) for word in parts]
+    parts = [OPEN if word in (OPEN, "_") else vocabulary.brought_to(store, layer, word) for word in parts]
     if kind != "expression" and OPEN in parts:
         raise UsageError("* is an open place of an expression; a pair has two words")
     closed = [word for word in parts if word != OPEN]

@@ -31,6 +31,9 @@ GivenOption = Annotated[
         "--given", metavar="FILE", help="Candidates: the pairs and expressions of this file, or `first` and `second`."
     ),
 ]
+ExpressionsOption = Annotated[
+    bool, typer.Option("--expressions", help="Candidates: the ranking of expressions instead of pairs.")
+]
 CandidatesOption = Annotated[int, typer.Option("--limit", "-n", metavar="N", min=0, help="Candidates; 0 for all.")]
 MinOption = Annotated[
     int | None, typer.Option("--min-count", metavar="N", min=0, help="Least joint count of candidates: 5 if not given.")
@@ -66,6 +69,7 @@ def judge(
     ] = False,
     words_from: WordsFromOption = None,
     given: GivenOption = None,
+    expressions: ExpressionsOption = False,
     again: Annotated[bool, typer.Option("--again", help="By keys: also what NAME has decided already.")] = False,
     measure: opt.MeasureOption = None,
     layer: opt.LayerOption = None,
@@ -117,6 +121,7 @@ def judge(
         _choice(words_from, given)
         | {
             "kind": kind,
+            "expressions": expressions,
             "again": again,
             "measure": measure,
             "layer": layer,
@@ -172,6 +177,7 @@ def sheet(
     store: opt.StoreArgument,
     words_from: WordsFromOption = None,
     given: GivenOption = None,
+    expressions: ExpressionsOption = False,
     by: Annotated[
         str | None, typer.Option("--by", metavar="NAME", help="Who will decide; earlier decisions are filled in.")
     ] = None,
@@ -211,6 +217,7 @@ def sheet(
             by=by or "",
             lines=lines,
             kind=kind,
+            expressions=expressions,
             again=not open_only,
             measure=measure,
             show=opt.shown_measures(show),
