@@ -190,7 +190,7 @@ def append(store: Store, decisions: Iterable[Decision]) -> int:
         How many were added.
     """
     with store.transaction():
-        known = {_row(decision) for _, decision in iterate(store)}
+        known = set(store.rows(f"SELECT {_COLUMNS} FROM decisions"))
         new = [row for row in dict.fromkeys(map(_row, decisions)) if row not in known]
         store.execute_many(f"INSERT INTO decisions ({_COLUMNS}) VALUES ({', '.join('?' * 10)})", new)
     return len(new)
