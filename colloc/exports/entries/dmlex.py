@@ -19,6 +19,7 @@ from colloc.exports.entries.markup import document, element, text
 from colloc.exports.entries.wording import check_language, figures_in_words, source_in_words, words_of
 
 NAMESPACE = "http://docs.oasis-open.org/lexidma/ns/dmlex-1.0"
+Mark = tuple[int, int, str, dict[str, str]]
 COLLOCATION, PART = "collocation", "part of expression"
 
 
@@ -130,12 +131,12 @@ def _senses(entry: Entry) -> list[dict[str, Any]]:
         if sense.text:
             made["definitions"] = [{"text": sense.text}]
         if sense.lines:
-            made["examples"] = _examples(sense, entry.matter.words[1] if pair else None)
+            made["examples"] = _examples(sense, made["id"], entry.matter.words[1] if pair else None)
         senses.append(made)
     return senses
 
 
-def _examples(sense: Sense, collocate: str | None) -> list[dict[str, Any]]:
+def _examples(sense: Sense, identifier: str, collocate: str | None) -> list[dict[str, Any]]:
     """Texts are unique in a sense: a text that stands in two documents is one example."""
     made: dict[str, dict[str, Any]] = {}
     for line in sense.lines:
@@ -148,7 +149,8 @@ def _examples(sense: Sense, collocate: str | None) -> list[dict[str, Any]]:
             record["sourceElaboration"] = source_in_words(line)
         record["headwordMarkers"] = marks[:1]
         if collocate is not None:
-            record["collocateMarkers"] = [{**marks[1], "lemma": collocate}]
+            # The XML schema has every marker of a collocate named.
+            record["collocateMarkers"] = [{**marks[1], "lemma": collocate, "id": f"{identifier}-c{len(made) + 1}"}]
         made.setdefault(example.text, record)
     return list(made.values())
 
@@ -202,8 +204,8 @@ def _optional(name: str, record: dict[str, Any]) -> list[str]:
 
 
 def _entry_xml(entry: dict[str, Any]) -> str:
-    marks: list[tuple[int, int, str, str | None]] = [
-        (one["startIndex"], one["endIndex"], "placeholderMarker", None) for one in entry.get("placeholderMarkers", [])
+    marks: list[Mark] = [
+        (one["startIndex"], one["endIndex"], "placeholderMarker", {}) for one in entry.get("placeholderMarkers", [])
     ]
     content = [element("headword", _marked(entry["headword"], marks)), *map(_sense_xml, entry.get("senses", []))]
     return element("entry", content, {"id": entry["id"], "homographNumber": entry.get("homographNumber")})
@@ -220,22 +222,22 @@ def _sense_xml(sense: dict[str, Any]) -> str:
 
 
 def _example_xml(example: dict[str, Any]) -> str:
-    marks: list[tuple[int, int, str, str | None]] = [
-        (one["startIndex"], one["endIndex"], "headwordMarker", None) for one in example["headwordMarkers"]
+    marks: list[Mark] = [
+        (one["startIndex"], one["endIndex"], "headwordMarker", {}) for one in example["headwordMarkers"]
     ]
     marks += [
-        (one["startIndex"], one["endIndex"], "collocateMarker", one["lemma"])
+        (one["startIndex"], one["endIndex"], "collocateMarker", {"lemma": one["lemma"], "id": one["id"]})
         for one in example.get("collocateMarkers", [])
     ]
     attributes = {name: example.get(name) for name in ("sourceIdentity", "sourceElaboration")}
     return element("example", element("text", _marked(example["text"], marks)), attributes)
 
 
-def _marked(whole: str, marks: list[tuple[int, int, str, str | None]]) -> list[str]:
-    """A text with elements around its marks: start, end, name of the element, lemma."""
+def _marked(whole: str, marks: list[Mark]) -> list[str]:
+    """A text with elements around its marks: start, end, name and attributes of the element."""
     content, place = [], 0
-    for begin, end, name, lemma in sorted(marks, key=lambda mark: mark[:2]):
+    for begin, end, name, attributes in sorted(marks, key=lambda mark: mark[:2]):
         content.append(text(whole[place:begin]))
-        content.append(element(name, text(whole[begin:end]), {"lemma": lemma}))
+        content.append(element(name, text(whole[begin:end]), attributes))
         place = end
     return [*content, text(whole[place:])]

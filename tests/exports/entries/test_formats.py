@@ -120,6 +120,34 @@ def test_dmlex_json_and_xml_say_the_same_and_keep_each_character(text: str) -> N
     assert thick["examples"][0]["sourceIdentity"] == example.document
 
 
+ORDER = {
+    "lexicographicResource": ("entry", "labelTag", "sourceIdentityTag", "relation", "relationType"),
+    "entry": ("headword", "label", "sense"),
+    "sense": ("indicator", "label", "definition", "example"),
+    "example": ("text", "label"),
+    "relation": ("description", "member"),
+    "relationType": ("memberType",),
+}
+"""Sequences of the XML schema (schemas/XML/dmlex_no-crosslingual.xsd), cut to what is written."""
+
+
+def test_dmlex_xml_keeps_order_and_keys() -> None:
+    root = etree.fromstring(dmlex.dmlex_xml(sample(), "en", TITLE))
+    for element in root.iter():
+        name = str(element.tag).removeprefix(DMLEX)
+        children = [str(child.tag).removeprefix(DMLEX) for child in element]
+        if name in ORDER:
+            assert children == sorted(children, key=ORDER[name].index)
+    keyed = [one for name in ("entry", "sense", "collocateMarker") for one in root.iter(f"{DMLEX}{name}")]
+    keys = [one.get("id") for one in keyed]
+    assert None not in keys
+    assert len(set(keys)) == len(keys)
+    assert {member.get("ref") for member in root.iter(f"{DMLEX}member")} <= set(keys)
+    for relation in root.iter(f"{DMLEX}relation"):
+        members = [(member.get("ref"), member.get("role")) for member in relation.iter(f"{DMLEX}member")]
+        assert len(members) == len(set(members)) >= 2
+
+
 def _entry_of(element: Any) -> dict[str, Any]:
     """The JSON form of an XML entry, read from the tree alone."""
     headword, places, _ = _marked(element.find(f"{DMLEX}headword"))
@@ -151,7 +179,7 @@ def _marked(element: Any) -> tuple[str, dict[str, list[dict[str, int]]], list[di
     for marker in element:
         place = {"startIndex": len(text), "endIndex": len(text) + len(marker.text)}
         if marker.tag == f"{DMLEX}collocateMarker":
-            collocates.append({**place, "lemma": marker.get("lemma")})
+            collocates.append({**place, **dict(marker.attrib)})
         else:
             places[marker.tag.removeprefix(DMLEX)].append(place)
         text += marker.text + (marker.tail or "")
