@@ -190,8 +190,11 @@ def _kept(
     if keep is not None:
         cells = cells.take(keep)
     values = value(maker.counted(cells.rows, cells.columns, cells.joint))
-    stored = values != 0 if wanted.min_value is None else (values != 0) & (values >= wanted.min_value)
-    return cells.rows[stored], cells.columns[stored], values[stored]
+    above = values != 0 if wanted.min_value is None else (values != 0) & (values >= wanted.min_value)
+    if above.all():
+        return cells.rows, cells.columns, values
+    stored = np.flatnonzero(above)  # places are taken quicker than a mask is applied, three times over
+    return cells.rows.take(stored), cells.columns.take(stored), values.take(stored)
 
 
 class _Gathered:
