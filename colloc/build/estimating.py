@@ -7,8 +7,10 @@ import shutil
 import tempfile
 import time
 from collections.abc import Iterator, Sequence
+from contextlib import ExitStack
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TextIO
 
 from colloc.build.batches import BATCH_CHARACTERS
 from colloc.build.building import build, resources
@@ -76,13 +78,13 @@ def estimate(
     limits = resources(jobs, memory, temp)
     folder = Path(path).absolute().parent
     with tempfile.TemporaryDirectory(dir=limits.temp or folder, prefix=f"{Path(path).name}.tmp-") as scratch:
-        sample, share = _write_sample(Path(scratch), inputs, read or ReadSettings())
+        samples, share = _write_sample(Path(scratch), inputs, read or ReadSettings())
         store = Path(scratch) / "sample"
         began = time.perf_counter()
         done = build(
             store,
-            [str(sample)],
-            read=ReadSettings(format="jsonl"),
+            [str(sample) for sample in samples],
+            read=ReadSettings(),
             segment=segment,
             tally=tally,
             jobs=1,
@@ -107,28 +109,36 @@ def estimate(
     )
 
 
-def _write_sample(folder: Path, inputs: Sequence[str], read: ReadSettings) -> tuple[Path, float]:
-    """A JSON Lines file of the first documents, and the share of all input they are."""
+def _write_sample(folder: Path, inputs: Sequence[str], read: ReadSettings) -> tuple[list[Path], float]:
+    """Files of the first documents (annotated ones apart, by their columns), and the share of all input they are."""
     sources = list(open_sources(inputs, read))
     sizes = [max(source.info.size, 1) for source in sources]
-    sample = folder / "sample.jsonl"
+    samples: dict[tuple[str, ...], Path] = {}
     written, done = 0, 0.0
-    with sample.open("w", encoding="utf-8") as file:
+    with ExitStack() as stack:
+        files: dict[tuple[str, ...], TextIO] = {}
         for number, source in enumerate(sources):
             for document in source.documents():
+                columns = document.annotation.columns if document.annotation is not None else ()
+                if columns not in files:
+                    name = f"sample-{len(files)}{'.conllup' if columns else '.jsonl'}"
+                    samples[columns] = folder / name
+                    files[columns] = stack.enter_context(samples[columns].open("w", encoding="utf-8"))
+                    if columns:
+                        files[columns].write(f"# global.columns = {' '.join(columns).upper()}\n")
                 text = "".join(_first(document, SAMPLE_CHARACTERS - written))
-                file.write(json.dumps({"text": text}) + "\n")
+                files[columns].write(text if columns else json.dumps({"text": text}) + "\n")
                 written += len(text)
                 done = (sum(sizes[:number]) + sizes[number] * source.position) / sum(sizes)
                 if written >= SAMPLE_CHARACTERS:
-                    return sample, max(done, 1e-9)
-    return sample, 1.0
+                    return [*samples.values()], max(done, 1e-9)
+    return [*samples.values()], 1.0
 
 
 def _first(document: Document, characters: int) -> Iterator[str]:
-    """The document's text up to about so many characters."""
+    """The document's text up to about so many characters; of annotated text whole pieces."""
     for piece in document.pieces:
-        yield piece[:characters]
+        yield piece if document.annotation is not None else piece[:characters]
         characters -= len(piece)
         if characters <= 0:
             return

@@ -8,6 +8,7 @@ import pytest
 
 import colloc
 from colloc.build import batches, building
+from colloc.build.estimating import estimate
 from colloc.build.segmenting import SegmentedBatch
 from colloc.build.writing import StreamWriter
 from colloc.errors import UsageError
@@ -17,7 +18,7 @@ from colloc.store import documents, stream, texts
 from colloc.store.opening import open_for_reading
 from colloc.text.sources import open_sources
 
-from .treebanks import relation_counts, treebank
+from .treebanks import read_sentences, relation_counts, treebank
 
 PLUS = """# global.columns = ID FORM UPOS HEAD DEPREL MISC PARSEME:MWE
 # newdoc id = one
@@ -202,3 +203,12 @@ def test_plain_text_is_not_written(tmp_path: Path) -> None:
     colloc.build(tmp_path / "s", [str(tmp_path / "a.txt")])
     with pytest.raises(colloc.errors.NotSeenError, match="no annotated document"):
         _written(tmp_path / "s")
+
+
+def test_estimates_know_annotated_text(tmp_path: Path) -> None:
+    (tmp_path / "a.conllu").write_text(treebank(1), encoding="utf-8")
+    (tmp_path / "b.tokens").write_text(TABLE, encoding="utf-8")
+    (tmp_path / "c.txt").write_text("five words of plain text", encoding="utf-8")
+    words = sum(map(len, read_sentences(treebank(1))))
+    found = estimate(tmp_path / "s", [str(tmp_path / name) for name in ("a.conllu", "b.tokens", "c.txt")])
+    assert found.sampled_tokens == words + 4 + 5
