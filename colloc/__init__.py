@@ -23,9 +23,9 @@ if typing.TYPE_CHECKING:
     from colloc.settings import ReadSettings as ReadSettings
     from colloc.settings import SegmentSettings as SegmentSettings
     from colloc.settings import TallySpec as TallySpec
-    from colloc.verbs.appraising import appraise as appraise
     from colloc.verbs.annotated import conllu as conllu
     from colloc.verbs.annotated import sequences as sequences
+    from colloc.verbs.appraising import appraise as appraise
     from colloc.verbs.asking import around as around
     from colloc.verbs.asking import floors as floors
     from colloc.verbs.asking import measure as measure

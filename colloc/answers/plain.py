@@ -59,7 +59,7 @@ def shown_text(text: str) -> str:
 
 
 def is_right_to_left(text: str) -> bool | None:
-    """Whether the first letter with a direction is written from right to left (UAX #9, P2); None without such a letter."""
+    """Whether the first letter with a direction runs from right to left (UAX #9, P2); None without such a letter."""
     for character in text:
         direction = unicodedata.bidirectional(character)
         if direction in ("L", "R", "AL"):

@@ -143,7 +143,7 @@ def check_segmenting(settings: SegmentSettings) -> None:
 
 
 def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progress | None, read: ReadSettings) -> Read:
-    """Read what is missing, count what is not counted, and make it durable."""
+    """Read what is missing and count what is not counted; the caller makes it durable."""
     ensure_layer(store, TallySpec.from_json(facts.get(store, "default_tally")).layer)
     with scratch_folder(store.path, limits.temp) as folder:
         done = read_into(
@@ -157,7 +157,6 @@ def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progr
             progress=progress,
         )
         count_new_documents(store, limits, progress)
-    store.make_durable()
     return done
 
 

@@ -30,8 +30,8 @@ __all__ = [
     "TypeKey",
     "TypeRegistry",
     "append_word_counts",
-    "ensure_annotated_layers",
     "brought_to",
+    "ensure_annotated_layers",
     "ensure_layer",
     "has_word_counts",
     "index_words",
@@ -65,9 +65,7 @@ def ensure_annotated_layers(store: Store) -> None:
     """Make the layers that annotation gives: ``lemma``, ``upos`` and ``lemma/upos``, as far as words carry them."""
     if find_layer(store, "form").same:
         return  # plain text only
-    there = [
-        column for column in ("lemma", "upos") if store.value(f"SELECT 1 FROM types WHERE {column} != '' LIMIT 1")
-    ]
+    there = [column for column in ("lemma", "upos") if store.value(f"SELECT 1 FROM types WHERE {column} != '' LIMIT 1")]
     for name in [*there, "lemma/upos"] if len(there) == 2 else there:
         ensure_layer(store, name)
 

@@ -89,7 +89,7 @@ def test_bugs_keep_their_traceback(run: Run, monkeypatch: pytest.MonkeyPatch, bu
 @pytest.mark.parametrize(
     ("arguments", "words"),
     [
-        (["pears"], "No such command 'pears'. Did you mean 'pairs'?"),
+        (["pears"], "No such command 'pears'. Did you mean 'pairs'"),
         (["pairs"], "Missing argument 'STORE'"),
         (["pairs", "store", "--windo", "3"], "--window"),
         (["pairs", "store", "--window", "three"], "'--window'"),

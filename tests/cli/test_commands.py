@@ -201,9 +201,9 @@ def test_info(run: Run, built: Path) -> None:
     assert [(row["year"], row["documents"]) for row in by_year] == [("1901", "1"), ("1902", "2")]
     documents = rows_of(run("info", built, "--documents", "-f", "csv").out)
     assert [(row["document"], row["genre"], row["year"]) for row in documents] == [
-        ("log/1901-a.txt", "log", "1901"),
-        ("log/1902-b.txt", "log", "1902"),
-        ("notice/1902-c.txt", "notice", "1902"),
+        ("a", "log", "1901"),
+        ("b", "log", "1902"),
+        ("c", "notice", "1902"),
     ]
     assert sum(int(row["tokens"]) for row in documents) == 38
 
@@ -234,9 +234,7 @@ def test_add_remove_and_merge(run: Run, store: Path, built: Path, tmp_path: Path
     taken = run("remove", store, "--where", "year=1903")
     assert taken.out.startswith(f"{store}: 1 documents taken out; now 3 documents")
     assert run("pairs", store, "--min-count", 1, "-n", 0, "-f", "csv", "-q").out == before
-    assert run("remove", store, "log/1901-a.txt", "log/1902-b.txt").out.startswith(
-        f"{store}: 2 documents taken out; now 1 "
-    )
+    assert run("remove", store, "a", "b").out.startswith(f"{store}: 2 documents taken out; now 1 ")
     other = tmp_path / "other.colloc"
     texts = [built.parent / "texts" / f"{name}.txt" for name in ("log/1901-a", "log/1902-b")]
     run("build", other, *texts, "--window", WINDOW, "--meta-from-path", "{genre}/{year}-{id}.txt", "-q")

@@ -141,8 +141,8 @@ def test_ties_stand_in_a_fixed_order(store: Path) -> None:
     from colloc.answers.pairs import pairs
 
     with open_for_reading(store) as opened:
-        everything = pairs(opened, limit=0, min_count=1, repulsion=True)
-        few = pairs(opened, limit=37, min_count=1, repulsion=True)
+        everything = pairs(opened, limit=0, min_count=1, any_strength=True)
+        few = pairs(opened, limit=37, min_count=1, any_strength=True)
     rows = list(zip(everything["npmi"], everything["joint"], everything["first"], everything["second"], strict=True))
     assert rows == sorted(rows, key=lambda row: (-row[0], -row[1], row[2], row[3]))
     assert few.to_dicts() == everything[:37].to_dicts()
