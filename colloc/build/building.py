@@ -14,14 +14,14 @@ from pathlib import Path
 
 from colloc.build.counting import count_new_documents
 from colloc.build.reading import Progress, Read, Resources, read_into
-from colloc.errors import CannotCreateError, CollocError, DataError, InputOutputError
+from colloc.errors import CannotCreateError, CollocError, DataError, InputOutputError, UsageError
 from colloc.settings import DEFAULT_MEMORY, SMALLEST_MEMORY, Margins, ReadSettings, SegmentSettings, TallySpec
 from colloc.store import documents, facts
 from colloc.store.connection import sqlite_version
 from colloc.store.opening import Store, create, open_for_writing
 from colloc.store.scratch import scratch_folder
 from colloc.store.stream import token_count
-from colloc.store.vocabulary import ensure_layer
+from colloc.store.vocabulary import ensure_layer, require_terms
 from colloc.text.iterables import PythonDocuments, cannot_be_resumed
 from colloc.text.sources import open_sources
 from colloc.tokens.folding import folder
@@ -97,6 +97,8 @@ def build(
     ------
     CannotCreateError
         When the path holds a store built from other inputs or with other settings.
+    UsageError
+        When the words read carry nothing for the layer to be counted; no store is left.
     NoInputError, DataError, InputOutputError, LockedError
     """
     began = time.perf_counter()
@@ -121,8 +123,10 @@ def build(
             try:
                 done = fill(store, inputs, limits, progress, read or ReadSettings())
             except BaseException as error:
-                # A store that got nothing is no use to anyone; one that got something is gone on with, if it can be.
-                useless = new and (once or (isinstance(error, CollocError) and not token_count(store)))
+                # A store that got nothing is no use to anyone, nor is one whose settings do not fit its text;
+                # any other that got something is gone on with, if it can be.
+                unfit = isinstance(error, UsageError)
+                useless = new and (once or unfit or (isinstance(error, CollocError) and not token_count(store)))
                 raise
             with store.transaction():
                 facts.put(store, "state", "complete")
@@ -144,7 +148,8 @@ def check_segmenting(settings: SegmentSettings) -> None:
 
 def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progress | None, read: ReadSettings) -> Read:
     """Read what is missing and count what is not counted; the caller makes it durable."""
-    ensure_layer(store, TallySpec.from_json(facts.get(store, "default_tally")).layer)
+    layer = TallySpec.from_json(facts.get(store, "default_tally")).layer
+    ensure_layer(store, layer)
     with scratch_folder(store.path, limits.temp) as folder:
         done = read_into(
             store,
@@ -156,6 +161,7 @@ def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progr
             folder=folder,
             progress=progress,
         )
+        require_terms(store, layer)
         count_new_documents(store, limits, progress)
     return done
 

@@ -21,6 +21,7 @@ from colloc.store.lexicon.layers import (
     layer_names,
     number_texts,
     remember,
+    require_terms,
     term_count,
     type_keys,
 )
@@ -37,6 +38,7 @@ __all__ = [
     "index_words",
     "layer_map",
     "layer_names",
+    "require_terms",
     "term_count",
     "term_numbers",
     "term_texts",

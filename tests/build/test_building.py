@@ -304,3 +304,13 @@ def test_what_is_refused(tmp_path: Path) -> None:
         remove(tmp_path / "s", identifiers=["z"])
     with pytest.raises(UsageError, match="which documents"):
         remove(tmp_path / "s")
+
+
+@pytest.mark.parametrize("layer", ["lemma", "upos", "lemma/upos"])
+def test_plain_text_is_not_built_for_a_layer_of_annotation(tmp_path: Path, layer: str) -> None:
+    write_corpus(tmp_path / "a.jsonl", 1, 4)
+    with pytest.raises(UsageError, match=f"carry nothing for the layer '{layer}'"):
+        build(tmp_path / "new", [str(tmp_path / "a.jsonl")], tally=TallySpec(layer=layer))
+    assert not (tmp_path / "new").exists()
+    build(tmp_path / "new", [str(tmp_path / "a.jsonl")])
+    assert len(content(tmp_path / "new")["documents"]) == 4

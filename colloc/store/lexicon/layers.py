@@ -238,11 +238,17 @@ def ensure_layer(store: Store, name: str, limit: int = 2_000_000) -> None:
         writer = LayerWriter(store, find_layer(store, name), limit)
         for first in range(0, types, _BATCH):
             writer.extend(as_columns(type_keys(store, first, first + _BATCH)))
-        if types and writer.layer.terms == 0:
-            raise UsageError(
-                f"{store.path}: its words carry nothing for the layer {name!r}; build it from annotated text"
-                + (", or with --lemma" if "lemma" in name else "")
-            )
+        require_terms(store, name)
+
+
+def require_terms(store: Store, name: str) -> None:
+    """Raise UsageError where the store has types, but none of them is in the layer."""
+    layer = find_layer(store, name)
+    if layer.types and not layer.terms:
+        raise UsageError(
+            f"{store.path}: its words carry nothing for the layer {name!r}; build it from annotated text"
+            + (", or with --lemma" if "lemma" in name else "")
+        )
 
 
 def detach_forms(store: Store, layer: Layer, limit: int) -> LayerWriter:
