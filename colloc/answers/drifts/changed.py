@@ -12,7 +12,7 @@ from colloc.answers.contrasts.gathering import DocumentCounts, pair_counts_by_gr
 from colloc.answers.contrasts.grouped import pairs_in_groups
 from colloc.answers.contrasts.pairs import require_cells
 from colloc.answers.contrasts.saying import NO_FINDING, SURE, UNEVEN, both_directions
-from colloc.answers.drifts.course import period_slices, period_tables, rates_of
+from colloc.answers.drifts.course import period_slices, period_tables, rate_slope, rates_of, single_documents
 from colloc.answers.drifts.periods import Periods, make_periods
 from colloc.answers.questions import PairOptions, Question, ask, built_spec
 from colloc.counts.words import slice_word_counts
@@ -189,10 +189,10 @@ class _Trends:
         self._rate = np.concatenate([one.rate for one in rates])
         self._z = np.concatenate([one.rank_z for one in tests])
         self._log_p = np.concatenate([one.log_p for one in tests])
-        self._slope = weighted_slope(
+        self._slope = rate_slope(
             np.concatenate([one.log2_rate for one in rates]),
             np.concatenate([one.log2_variance for one in rates]),
-            periods.times,
+            periods,
         )
         told = presence_information(self._count, rates[0].tokens)
         self._g2, self._log_q = told.g2, log_q_values(told.log_p)
@@ -200,6 +200,12 @@ class _Trends:
 
     def ranked(self, sort: str, min_docs: int, limit: int) -> Int64Array:
         """The rows shown, rising ones first."""
+        alone = single_documents(self._periods)
+        if sort == "slope" and alone:
+            raise UsageError(
+                f"{alone} of {len(self._periods)} periods hold a single document and let no slope be told: make "
+                "periods wider, or sort by documents"
+            )
         shown = np.flatnonzero(self._held.sum(axis=1) >= min_docs)
         slope = self._slope
         bound = np.where(slope.slope >= 0, slope.interval.low, -slope.interval.high)

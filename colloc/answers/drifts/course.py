@@ -17,12 +17,12 @@ from colloc.answers.questions import PairOptions, Question, ask, built_spec
 from colloc.counts.grouping import GROUPS, deal
 from colloc.counts.words import slice_word_counts
 from colloc.errors import NotSeenError
-from colloc.measures.intervals import jackknife
+from colloc.measures.intervals import Interval, jackknife
 from colloc.measures.pmi import pmi
 from colloc.measures.strata import breslow_day
 from colloc.measures.subcorpora.periods import PeriodRates, period_rates
 from colloc.measures.subcorpora.trends import trend_test
-from colloc.measures.trend import mann_kendall, weighted_slope
+from colloc.measures.trend import Slope, mann_kendall, weighted_slope
 from colloc.records import FloatArray, UInt32Array
 from colloc.settings import DEFAULT_MEMORY
 from colloc.store import slices
@@ -61,8 +61,10 @@ def drift(
         per_million (tokens), low, high (95 %, documents as the independent observations); for a pair also
         expected, pmi, pmi_low, pmi_high (bits, 95 %, jackknife over documents). In the settings the trend:
         tau and tau_p (Mann-Kendall over the periods), slope, slope_low, slope_high (bits, that is doublings, of the
-        rate for one unit of the key), document_z and document_p (trend over documents); for a pair also pmi_tau,
-        pmi_tau_p, pmi_slope and its bounds, and same_p (Breslow-Day: one odds ratio in all periods); and says.
+        rate for one unit of the key; nan where a period holds a single document), document_z and document_p (trend
+        over documents); for a pair also pmi_tau, pmi_tau_p, pmi_slope and its bounds, pmi_left_out (periods without
+        a PMI and its interval, through which that slope does not go), and same_p (Breslow-Day: one odds ratio in all
+        periods); and says.
 
     Raises
     ------
@@ -138,29 +140,60 @@ def rates_of(counts: DocumentCounts, n_periods: int) -> PeriodRates:
 def _trend(periods: Periods, counts: DocumentCounts, rates: PeriodRates, settings: dict[str, Any]) -> dict[str, Any]:
     """The trend of the rate as plain numbers, and all trends in words."""
     monotone = mann_kendall(rates.rate[0])
-    slope = weighted_slope(rates.log2_rate[0], rates.log2_variance[0], periods.times)
+    slope = rate_slope(rates.log2_rate[0], rates.log2_variance[0], periods)
     documents = trend_test(counts.rates, periods.times[counts.side])
     p = float(np.exp(documents.log_p[0]))
-    said = _verdict("frequency", float(slope.slope), p <= SURE)
-    if "pmi_slope" in settings:
-        steep = settings["pmi_slope_low"] > 0 or settings["pmi_slope_high"] < 0
-        said += "; " + _verdict("association", settings["pmi_slope"], steep)
+    z = float(documents.rank_z[0])
+    low, high = float(slope.interval.low), float(slope.interval.high)
+    alone = single_documents(periods)
+    if alone:
+        said = f"{alone} of {len(periods)} periods hold a single document: no slope and no verdict, make periods wider"
+    else:
+        said = _verdict("frequency", low, high, z if p <= SURE else 0.0)
+        if "pmi_slope" in settings:
+            bounds = settings["pmi_slope_low"], settings["pmi_slope_high"]
+            steep = settings["pmi_slope"] if bounds[0] > 0 or bounds[1] < 0 else 0.0
+            said += "; " + _verdict("association", *bounds, steep)
+            if settings["pmi_left_out"]:
+                said += f" ({settings['pmi_left_out']} of {len(periods)} periods have no PMI with an interval to go by)"
     return {
         "tau": float(monotone.tau),
         "tau_p": float(monotone.p),
         "slope": float(slope.slope),
-        "slope_low": float(slope.interval.low),
-        "slope_high": float(slope.interval.high),
-        "document_z": float(documents.rank_z[0]),
+        "slope_low": low,
+        "slope_high": high,
+        "document_z": z,
         "document_p": p,
         "says": said,
     }
 
 
-def _verdict(what: str, slope: float, sure: bool) -> str:
-    if not sure:
-        return f"{what}: no trend beyond the differences between documents"
-    return f"{what}: {'rises' if slope > 0 else 'falls'}, over documents too"
+def single_documents(periods: Periods) -> int:
+    """How many periods hold one document only, from which no difference between documents can be told."""
+    return int(np.count_nonzero(periods.groups.sizes < 2))
+
+
+def rate_slope(log2_rate: FloatArray, log2_variance: FloatArray, periods: Periods) -> Slope:
+    """The slope of rates (shape (..., n_periods)) over the periods.
+
+    nan where a period holds a single document: it has no variance over documents, and a line through the other
+    periods would not be the one of all.
+    """
+    if single_documents(periods):
+        nothing = np.full(log2_rate.shape[:-1], np.nan)
+        return Slope(nothing, Interval(nothing, nothing, nothing), nothing)
+    return weighted_slope(log2_rate, log2_variance, periods.times)
+
+
+def _verdict(what: str, low: float, high: float, direction: float) -> str:
+    """A trend is one where the slope's interval leaves out 0 on the side of ``direction`` (0: not sure of one)."""
+    if direction > 0 and low > 0:
+        return f"{what}: rises, over documents too"
+    if direction < 0 and high < 0:
+        return f"{what}: falls, over documents too"
+    if direction or low > 0 or high < 0:
+        return f"{what}: no sure trend, the interval of the slope and the test over documents do not agree"
+    return f"{what}: no trend beyond the differences between documents"
 
 
 def _association(
@@ -177,7 +210,7 @@ def _association(
             interval = jackknife(value[row], pmi(*without))
             low[row], high[row], se[row] = interval.low, interval.high, interval.se
     monotone = mann_kendall(np.where(np.isnan(value), -np.inf, value))
-    slope = weighted_slope(value, se**2, periods.times)
+    slope = rate_slope(value, se**2, periods)
     columns = {
         "expected": table[1] * table[2] / np.maximum(table[3], 1),
         "pmi": value,
@@ -190,6 +223,7 @@ def _association(
         "pmi_slope": float(slope.slope),
         "pmi_slope_low": float(slope.interval.low),
         "pmi_slope_high": float(slope.interval.high),
+        "pmi_left_out": int(np.count_nonzero(~(np.isfinite(value) & np.isfinite(se) & (se > 0)))),
         "same_p": float(breslow_day(*table).p),
     }
     return columns, trend

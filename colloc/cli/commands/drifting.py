@@ -17,7 +17,7 @@ if TYPE_CHECKING:
 LIMIT = 50
 LEAST = 20
 TREND = ("tau", "tau_p", "slope", "slope_low", "slope_high", "document_z", "document_p")
-PMI_TREND = ("pmi_tau", "pmi_tau_p", "pmi_slope", "pmi_slope_low", "pmi_slope_high", "same_p")
+PMI_TREND = ("pmi_tau", "pmi_tau_p", "pmi_slope", "pmi_slope_low", "pmi_slope_high", "pmi_left_out", "same_p")
 NARROW = (
     "word",
     "first",
@@ -153,11 +153,11 @@ def _pmi_lines(trend: dict[str, Any]) -> list[str]:
 
 
 def _line(what: str, trend: dict[str, Any], prefix: str) -> str:
-    bounds = f"{trend[f'{prefix}slope_low']:.4f} to {trend[f'{prefix}slope_high']:.4f}"
-    text = (
-        f"{what}: slope {trend[f'{prefix}slope']:.4f} bits a unit of time ({bounds}); "
-        f"tau {trend[f'{prefix}tau']:.2f}, p {trend[f'{prefix}tau_p']:.3g} (Mann-Kendall)"
-    )
+    slope = "no slope"
+    if trend[f"{prefix}slope"] == trend[f"{prefix}slope"]:
+        bounds = f"{trend[f'{prefix}slope_low']:.4f} to {trend[f'{prefix}slope_high']:.4f}"
+        slope = f"slope {trend[f'{prefix}slope']:.4f} bits a unit of time ({bounds})"
+    text = f"{what}: {slope}; tau {trend[f'{prefix}tau']:.2f}, p {trend[f'{prefix}tau_p']:.3g} (Mann-Kendall)"
     return text if prefix else f"{text}; over documents p {trend['document_p']:.3g}"
 
 

@@ -39,17 +39,20 @@ def draw_course(answer: Columns, path: Path) -> None:
             _line(panels[1], answer, "pmi", "pmi_low", "pmi_high")
             panels[1].axhline(0, color=SOFT, linewidth=0.8, linestyle=(0, (1, 2)))
             panels[1].set_ylabel("PMI (bits)")
+            panels[1].set_xlim(panels[0].get_xlim())
         panels[-1].set_xlabel(f"{answer.settings['by']} (mean of each period; bars: 95 %, over documents)")
 
 
 def _line(axes: Axes, answer: Columns, value: str, low: str, high: str) -> None:
     times, values = answer["time"], answer[value]
+    # A value that is not finite (the pair never met) breaks the line; an unbounded interval has no bar.
     known = np.isfinite(values)
-    bounds = [np.where(np.isfinite(answer[name]), answer[name], values) for name in (low, high)]
-    reach = np.abs(np.vstack([values - bounds[0], bounds[1] - values]))[:, known]
+    bounded = known & np.isfinite(answer[low]) & np.isfinite(answer[high])
+    reach = np.zeros((2, len(values)))
+    reach[:, bounded] = np.abs(np.vstack([answer[low], answer[high]])[:, bounded] - values[bounded])
     axes.errorbar(
-        times[known],
-        values[known],
+        times,
+        np.where(known, values, np.nan),
         yerr=reach,
         color=INK,
         ecolor=FILL,

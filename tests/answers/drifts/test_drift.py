@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import json
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
@@ -11,6 +13,7 @@ from scipy import stats
 import colloc
 from colloc.answers.drifts.changed import bars
 from colloc.answers.drifts.periods import make_periods
+from colloc.cli.app import main
 from colloc.errors import NotSeenError, UsageError
 from tests.answers.conftest import Demo
 
@@ -133,3 +136,64 @@ def test_bars_run_from_the_smallest_to_the_largest() -> None:
     assert bars(np.array([0.0, 1.0, np.nan, 7.0])) == "▁▂ █"
     assert bars(np.array([2.0, 2.0])) == "▁▁"
     assert bars(np.array([np.nan])) == " "
+
+
+@pytest.fixture
+def thin(tmp_path: Path) -> Path:
+    """A store of eight years with one document each but for two; the pair never meets in the fourth year."""
+    filler = "the pier was long and the day was fine "
+    records = []
+    for place in range(8):
+        said = "fog near " + filler if place == 3 else "thick fog " * (place + 1) + "thick harbour fog "
+        for copy in range(2 if place in (2, 6) else 1):
+            text = said * (copy + 1) + filler * 30
+            records.append({"id": f"d{place}.{copy}", "text": text, "year": 1900 + place})
+    source = tmp_path / "thin.jsonl"
+    source.write_text("".join(json.dumps(record) + "\n" for record in records), encoding="utf-8")
+    made = tmp_path / "thin.colloc"
+    colloc.build(made, [str(source)])
+    return made
+
+
+def test_single_documents_give_no_slope_and_no_verdict(thin: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    for words in (("fog",), ("thick", "fog")):
+        answer = colloc.drift(thin, *words, by="year", width=1)
+        assert np.isnan(answer.settings["slope"])
+        assert answer.settings["says"].startswith("6 of 8 periods hold a single document: no slope and no verdict")
+    with pytest.raises(UsageError, match="6 of 8 periods hold a single document"):
+        colloc.drift(thin, by="year", width=1, everything=True, words=True, sort="slope")
+    assert main(["drift", str(thin), "thick", "fog", "--width", "1"]) == 0
+    shown = capsys.readouterr().out
+    assert "rate: no slope" in shown
+    assert "PMI: no slope" in shown
+    assert "rises" not in shown
+
+
+def test_the_verdict_agrees_with_the_interval(demo: Demo) -> None:
+    for word in ("fog", "paraffin", "oil", "strange", "the", "harbour", "steamer"):
+        told = colloc.drift(demo.store, word, by="year").settings
+        if "rises" in told["says"]:
+            assert told["slope_low"] > 0
+        if "falls" in told["says"]:
+            assert told["slope_high"] < 0
+        if "no trend beyond" in told["says"]:
+            assert told["slope_low"] <= 0 <= told["slope_high"]
+
+
+def test_the_line_breaks_where_the_pair_never_met(thin: Path, monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    from matplotlib.axes import Axes
+
+    drawn: list[tuple[np.ndarray, np.ndarray]] = []
+    own = Axes.errorbar
+
+    def noted(axes: Axes, x: np.ndarray, y: np.ndarray, **more: Any) -> Any:
+        drawn.append((y, more["yerr"]))
+        return own(axes, x, y, **more)
+
+    monkeypatch.setattr(Axes, "errorbar", noted)
+    colloc.drift(thin, "thick", "fog", by="year", width=1, plot=tmp_path / "a.svg")
+    (rate, rate_reach), (association, _) = drawn
+    assert np.isfinite(rate).all()
+    assert not rate_reach[:, [0, 1, 4, 5, 7]].any(), "an unbounded interval has no bar"
+    assert rate_reach[1, [2, 3, 6]].all()
+    assert np.flatnonzero(np.isnan(association)).tolist() == [3]
