@@ -71,6 +71,11 @@ def around(
     The other parameters are those of `colloc.answers.pairs.pairs`; the q-values are among all pairs of a word asked
     for with any other word.
 
+    Returns
+    -------
+    Columns
+        Its setting ``unknown``, where there is one, lists the words asked for that the store does not know.
+
     Raises
     ------
     NotSeenError
@@ -86,7 +91,8 @@ def around(
     sides = _sides(question, side, avoid)
     if avoid:
         check_avoidance(question, wishes, min_expected, any_strength)
-    terms = list(dict.fromkeys(headwords(store, question.layer, words)))
+    known, unknown = headwords(store, question.layer, words)
+    terms = list(dict.fromkeys(known))
     classes = word_classes(store, question.layer, upos)
     least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
     stopped = StopWords(question, stop) if stop else None
@@ -144,6 +150,7 @@ def around(
         **judge.settings(),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         **({"stop": list(stop)} if stop else {}),
+        **({"unknown": unknown} if unknown else {}),
         limit=limit,
     )
     return Columns({name: np.concatenate([part[name] for part in parts]) for name in parts[0].names}, settings)
@@ -163,20 +170,21 @@ def _sides(question: Question, side: Sides, avoid: bool) -> tuple[Side, ...]:
     return ("left", "right") if side == "each" else (side,)
 
 
-def headwords(store: Store, layer: str, words: Sequence[str]) -> list[int]:
-    """Term numbers of the words that the store knows, in the order given.
+def headwords(store: Store, layer: str, words: Sequence[str]) -> tuple[list[int], list[str]]:
+    """Term numbers of the words that the store knows, in the order given, and the words that it does not know.
 
     Raises
     ------
     NotSeenError
         When none is known.
     """
-    numbers = vocabulary.term_numbers(store, layer, list(words))
-    known = [int(number) for number in numbers if number >= 0]
+    numbers = vocabulary.term_numbers(store, layer, list(words)).tolist()
+    known = [number for number in numbers if number >= 0]
+    unknown = list(dict.fromkeys(word for word, number in zip(words, numbers, strict=True) if number < 0))
     if not known:
-        listed = ", ".join(repr(word) for word in words[:5])
+        listed = ", ".join(map(repr, unknown[:5]))
         raise NotSeenError(f"{store.path}: {listed} never occurs in layer {layer!r}; `colloc words` lists what does")
-    return known
+    return known, unknown
 
 
 def _ranked(

@@ -65,7 +65,7 @@ def around_relations(
         raise UsageError("avoid and upos are asked of one relation: name it")
     chosen_relations(store, "")  # raises where there is none
     spec, margins = resolve_spec(store, replace(options, relation=""))
-    terms = headwords(store, spec.layer, words)
+    terms, _ = headwords(store, spec.layer, words)
     ranking, _ = measure_names(measure, None, margins)
     parts = []
     for relation in relation_names(store):

@@ -57,8 +57,8 @@ class Scorer:
         Columns
             The table's own columns, then unknown (``first``, ``second`` or ``both`` where the layer has no such
             word, else empty), joint, first_total, second_total, total, expected and the measures. Where a word is
-            unknown the counts are 0 and the measures are not numbers; where both words are known and never meet,
-            the measures have their limits.
+            unknown its total and the joint count are 0 and the measures are not numbers, while a known word beside
+            it keeps its own total; where both words are known and never meet, the measures have their limits.
 
         Raises
         ------
@@ -73,12 +73,20 @@ class Scorer:
         second = self._numbers(columns["second"].tolist())
         known = (first >= 0) & (second >= 0)
         rows = np.flatnonzero(known)
-        found = self._question.reader.given(first[rows].astype(np.uint32), second[rows].astype(np.uint32))
+        reader = self._question.reader
+        found = reader.given(first[rows].astype(np.uint32), second[rows].astype(np.uint32))
         counts = {
             name: _spread(getattr(found, name), rows, len(first)) for name in ("joint", "first_total", "second_total")
         }
-        total = np.full(len(first), self._question.reader.total)
-        halved = np.flatnonzero(found.total != self._question.reader.total)
+        for name, terms, totals in (
+            ("first_total", first, reader.first_totals()),
+            ("second_total", second, reader.second_totals()),
+        ):
+            lone = np.flatnonzero(~known & (terms >= 0))
+            if len(lone):
+                counts[name][lone] = totals[terms[lone]]
+        total = np.full(len(first), reader.total)
+        halved = np.flatnonzero(found.total != reader.total)
         if len(halved):
             total = total.astype(np.float64)
             total[rows[halved]] = found.total[halved]

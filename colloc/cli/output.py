@@ -19,6 +19,10 @@ if TYPE_CHECKING:
     from colloc.answers.columns import Columns
 
 
+NAMED = 10
+"""Unknown words that a remark names; it counts all."""
+
+
 class ReaderGone(Exception):
     """Whoever read our standard output has closed it (``| head``): nothing more is wanted."""
 
@@ -122,13 +126,22 @@ def remark(text: str, *, quiet: bool = False) -> None:
         print(text, file=sys.stderr, flush=True)
 
 
+def remark_unknown(settings: Mapping[str, Any], *, quiet: bool = False) -> None:
+    """Name the words asked for that the store does not know, the first ten of them."""
+    unknown = settings.get("unknown", [])
+    if unknown:
+        more = ", ..." if len(unknown) > NAMED else ""
+        listed = ", ".join(map(repr, unknown[:NAMED])) + more
+        remark(f"# {len(unknown)} unknown in layer {settings['layer']!r}, left out: {listed}", quiet=quiet)
+
+
 def settings_line(command: str, settings: Mapping[str, Any]) -> str:
     """The header line: what was asked, in words that are options of the command.
 
     >>> settings_line("pairs", {"layer": "fold", "kind": "window", "left": 0, "right": 5, "where": "", "min_count": 5})
     '# pairs: layer fold; window 5; min count 5'
     """
-    shown = dict(settings)
+    shown = {key: value for key, value in settings.items() if key != "unknown"}
     if shown.get("kind") in ("window", "unit", "relation"):
         # Stored tables of these kinds have one reach or none; what the user chose has the name of the kind.
         kind = shown["kind"]

@@ -67,6 +67,18 @@ def test_unknown_words_and_pairs_never_met(store: Path) -> None:
     assert len(colloc.score(store, [])) == 0
 
 
+@pytest.mark.parametrize(
+    "options", [{}, {"directed": True}, {"unit": True}, {"margins": "tokens"}, {"margins": "positions"}], ids=str
+)
+def test_a_known_word_keeps_its_total_beside_an_unknown_one(store: Path, options: dict[str, object]) -> None:
+    pairs = [("passengers", "the"), ("kraken", "the"), ("passengers", "squid"), ("kraken", "squid")]
+    found = colloc.score(store, pairs, show=["pmi"], **options)
+    first, second = found["first_total"].tolist(), found["second_total"].tolist()
+    assert first[0] > 0 < second[0]
+    assert first[1:] == [0, first[0], 0]
+    assert second[1:] == [second[0], 0, 0]
+
+
 def test_other_columns_pass_through(store: Path) -> None:
     found = colloc.score(store, {"n": [1, 2], "first": ["the", "a"], "second": ["passengers", "boat"]}, show=["pmi"])
     assert found.names[:4] == ("n", "first", "second", "unknown")

@@ -149,6 +149,20 @@ def test_what_was_never_seen(run: Run, store: Path) -> None:
     assert "has no document 'no-such-document'; `colloc info --documents` lists them" in gone.err
 
 
+def test_unknown_words_among_known_ones_are_named(run: Run, store: Path, tmp_path: Path) -> None:
+    asked = ("around", store, "fog", "--min-count", 1, "--any-strength", "-f", "csv")
+    ran = run(*asked, "zeppelin", "Kraken", "zeppelin")
+    assert (ran.code, ran.out) == (0, run(*asked).out)
+    assert ran.err.splitlines()[1:] == ["# 2 unknown in layer 'fold', left out: 'zeppelin', 'Kraken'"]
+    listed = as_file(tmp_path, "words.txt", "".join(f"unseen{n}\n" for n in range(12)).encode())
+    remarks = run(*asked, "--words-from", listed).err.splitlines()[1:]
+    assert [line.count("'unseen") for line in remarks] == [10]
+    assert remarks[0].startswith("# 12 unknown")
+    assert remarks[0].endswith("'unseen9', ...")
+    assert run(*asked, "zeppelin", "-q").err == ""
+    assert not run(*asked).err.splitlines()[1:]
+
+
 def test_outputs_that_cannot_be_written(run: Run, store: Path, tmp_path: Path) -> None:
     before = contents(store)
     for goal in (tmp_path / "missing" / "out.csv", tmp_path):

@@ -8,7 +8,7 @@ from typing import Annotated, Literal
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver
+from colloc.cli.output import Target, deliver, remark_unknown
 from colloc.cli.progress import ProgressLine
 from colloc.settings import DEFAULT_MIN_EXPECTED
 
@@ -251,6 +251,7 @@ def around(
             progress=progress,
         )
     deliver(answer, target, "around")
+    remark_unknown(answer.settings, quiet=quiet)
     if plot is not None:
         picture(answer, plot, plot_as, store=store)
 
