@@ -12,10 +12,13 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from colloc.measures.contingency import FloatArray, Table
+from colloc.measures.contingency import FloatArray, Table, expected
 from colloc.measures.intervals import Interval, normal_quantile
 from colloc.measures.likelihood import chi_square_p
 from colloc.measures.odds import log_odds, log_odds_se
+
+LEAST_EXPECTED = 1.0
+"""Where fewer meetings than this are expected and none is seen, an odds ratio with 0.5 added is mostly the 0.5."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -115,10 +118,12 @@ def woolf(
 ) -> tuple[PooledOdds, StrataTest]:
     """Log odds ratios weighted by 1 / se^2, and the test that they are the same in all strata (Woolf 1955).
 
-    For few large strata; tables with a zero have 0.5 added to each cell.
+    For few large strata; tables with a zero have 0.5 added to each cell, but for those of :func:`tells_nothing`, which
+    are left out: their odds ratio would be that of the 0.5.
     """
     with np.errstate(all="ignore"):
         table, says = _tables(joint, first_total, second_total, total)
+        says &= ~tells_nothing(table.joint, table.first_total, table.second_total, table.total)
         value = log_odds.rule(table)
         weight = _kept(1.0 / log_odds_se.rule(table) ** 2, says)
         mass = weight.sum(axis=-1)
@@ -127,6 +132,16 @@ def woolf(
         se = 1.0 / np.sqrt(mass)
         reach = normal_quantile(confidence) * se
         return PooledOdds(mean, Interval(mean - reach, mean + reach, se)), _homogeneity(statistic, says)
+
+
+def tells_nothing(
+    joint: ArrayLike, first_total: ArrayLike, second_total: ArrayLike, total: ArrayLike
+) -> NDArray[np.bool]:
+    """Whether a pair never met where less than ``LEAST_EXPECTED`` meetings were expected (project-defined limit)."""
+    silent: NDArray[np.bool] = (np.asarray(joint) == 0) & (
+        expected(joint, first_total, second_total, total) < LEAST_EXPECTED
+    )
+    return silent
 
 
 def _tables(

@@ -9,7 +9,7 @@ from statsmodels.stats.contingency_tables import StratifiedTable
 from colloc.measures.contingency import expected
 from colloc.measures.contrast import difference
 from colloc.measures.odds import log_odds, log_odds_se
-from colloc.measures.strata import breslow_day, mantel_haenszel, mantel_haenszel_test, woolf
+from colloc.measures.strata import breslow_day, mantel_haenszel, mantel_haenszel_test, tells_nothing, woolf
 
 from .rounding import rounds_to
 
@@ -103,3 +103,16 @@ def test_limits() -> None:
     assert np.isnan(mantel_haenszel(*four(nothing)).log_odds)
     assert np.isnan(mantel_haenszel_test(*four(nothing)).p)
     assert np.isnan(woolf(*four(CITIES[:1]))[1].p), "one stratum cannot disagree with itself"
+
+
+def test_woolf_leaves_out_what_only_its_correction_would_tell() -> None:
+    """Never met, 0.0008 expected: the value would be that of the 0.5; Breslow-Day and Mantel-Haenszel need none."""
+    tiny, rare = [0, 2, 2, 4996], [0, 40, 100, 1860]
+    padded = np.concatenate([CITIES, [tiny]])
+    assert tells_nothing(*four(np.array([tiny, rare, [1, 1, 1, 4997]]))).tolist() == [True, False, False]
+    assert woolf(*four(padded))[1].statistic == pytest.approx(float(woolf(*four(CITIES))[1].statistic), rel=1e-12)
+    assert woolf(*four(padded))[1].df == 7
+    assert woolf(*four(np.concatenate([CITIES, [rare]])))[1].df == 8
+    reference = StratifiedTable([table.reshape(2, 2).astype(float) for table in padded])
+    assert breslow_day(*four(padded)).df == 8
+    assert mantel_haenszel(*four(padded)).log_odds == pytest.approx(reference.logodds_pooled)

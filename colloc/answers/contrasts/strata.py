@@ -18,7 +18,7 @@ from colloc.measures.contingency import expected
 from colloc.measures.intervals import Interval, log_odds_interval
 from colloc.measures.odds import log_odds
 from colloc.measures.pmi import pmi
-from colloc.measures.strata import breslow_day, mantel_haenszel, mantel_haenszel_test, woolf
+from colloc.measures.strata import breslow_day, mantel_haenszel, mantel_haenszel_test, tells_nothing, woolf
 from colloc.settings import DEFAULT_MEMORY
 from colloc.store.connection import Store
 
@@ -61,7 +61,9 @@ def contrast_strata(
         slice, documents (that hold the pair), joint, expected, pmi (bits), log_odds (nats), low, high (95 %),
         statistic, df, p. After the values of the key come: all documents as one; pooled within the slices
         (Mantel-Haenszel with the test of no association, Woolf); and whether the slices agree (Breslow-Day, the same
-        with Tarone's adjustment, Woolf). ``settings["says"]`` is the verdict in plain words.
+        with Tarone's adjustment, Woolf). ``settings["says"]`` is the verdict in plain words. Slices where the pair
+        never met and less than one meeting was expected have no log_odds and no part in Woolf's; the other tests take
+        them as they are. ``settings["left_out_by_woolf"]`` counts them.
 
     Raises
     ------
@@ -85,7 +87,13 @@ def contrast_strata(
     tests, says = _tests(table, whole)
     names = [name for name in _Line.__dataclass_fields__ if name != "slice"]
     columns = {name: np.array([getattr(line, name) for line in [*lines, *tests]], np.float64) for name in names}
-    settings = question.settings(first=first, second=second, by=by, says=says)
+    silent = int(np.count_nonzero(tells_nothing(*table)))
+    if silent:
+        says += (
+            f"; {silent} of {len(groups.names)} slices, without the pair and with less than one expected, have no odds"
+        )
+        says += " ratio and no part in Woolf's"
+    settings = question.settings(first=first, second=second, by=by, left_out_by_woolf=silent, says=says)
     return Columns({"slice": [line.slice for line in [*lines, *tests]], **columns}, settings)
 
 
@@ -99,7 +107,8 @@ def _values(names: Sequence[str], documents: np.ndarray, table: tuple[np.ndarray
 def _line_of(name: str, documents: float, table: tuple[np.ndarray, ...]) -> _Line:
     interval = log_odds_interval(*table)
     possible = 0 < float(table[1][0]) < float(table[3][0]) and 0 < float(table[2][0]) < float(table[3][0])
-    value = (log_odds(*table)[0], interval.low[0], interval.high[0]) if possible else (np.nan,) * 3
+    told = possible and not tells_nothing(*table)[0]
+    value = (log_odds(*table)[0], interval.low[0], interval.high[0]) if told else (np.nan,) * 3
     strength = (float(expected(*table)[0]), float(pmi(*table)[0]))
     return _Line(name, documents, float(table[0][0]), *strength, *map(float, value))
 

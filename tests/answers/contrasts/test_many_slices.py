@@ -97,6 +97,30 @@ def test_a_pooled_association_that_vanishes_is_flagged(markets: Path) -> None:
         colloc.contrast(markets, "herring", "squid", by="place")
 
 
+def test_a_slice_without_the_pair_and_next_to_no_chance_of_it_has_no_odds_ratio(tmp_path: Path) -> None:
+    random = np.random.default_rng(5)
+    documents = []
+    for number, place in enumerate(["coast", "hills", "moor"] * 4):
+        words = list(random.choice(["turnip", "corn", "meadow"], size=400))
+        if place == "moor":
+            words[3], words[300] = "herring", "barrel"
+        else:
+            words[10:60] = ["herring", "barrel", "corn", "herring", "corn"] * 10
+        documents.append({"id": f"m{number}", "place": place, "text": " ".join(words)})
+    (tmp_path / "m.jsonl").write_text("\n".join(map(json.dumps, documents)) + "\n", encoding="utf-8")
+    colloc.build(tmp_path / "m.colloc", [str(tmp_path / "m.jsonl")], jobs=1)
+    answer = colloc.contrast(tmp_path / "m.colloc", "herring", "barrel", by="place", window=2)
+    lines = {row["slice"]: row for row in answer}
+    assert lines["moor"]["joint"] == 0
+    assert 0 < lines["moor"]["expected"] < 1
+    assert all(np.isnan(lines["moor"][name]) for name in ("log_odds", "low", "high"))
+    assert np.isfinite(lines["coast"]["log_odds"])
+    assert lines["same in all slices? (Woolf)"]["df"] == 1
+    assert lines["same in all slices? (Breslow-Day)"]["df"] == 2
+    assert answer.settings["left_out_by_woolf"] == 1
+    assert "1 of 3 slices" in answer.settings["says"]
+
+
 @pytest.mark.parametrize(
     ("numbers", "said"),
     [
