@@ -6,6 +6,7 @@ Used by ``repr`` of an answer and by the command line's tables.
 from __future__ import annotations
 
 import math
+import re
 import unicodedata
 from collections.abc import Sequence
 from typing import Any
@@ -16,8 +17,12 @@ DECIMALS = 4
 COLUMN_DECIMALS = {"per_million": 1}
 """Columns that need fewer."""
 
-MARGIN_COLUMNS = ("first_total", "second_total", "total")
-"""Counts that halving on the diagonal makes floats: shown as counts where the whole column is whole."""
+_COUNT_NAME = re.compile(
+    r"(?:joint|count|total|documents|tokens)(?:_(?:this|that|in))?|\w+_(?:total|count)|df|this|that"
+)
+_PROBABILITY_NAME = re.compile(r"q_value|(?:\w+_)?(?<!log10_)[pq]")
+_LEAST_PROBABILITY = "<1e-300"
+"""What stands for a probability that underflowed: none of the tests here ends in an exact zero."""
 
 _FIRST_STRONG_ISOLATE = "\u2068"
 _POP_ISOLATE = "\u2069"
@@ -97,6 +102,36 @@ def number_text(value: float, decimals: int = DECIMALS) -> str:
     return f"{value:.{decimals}f}"
 
 
+def is_count(name: str) -> bool:
+    """Whether a column of this name holds counts, or (``this``, ``that``) counts beside measures.
+
+    Halving a word's pairs with itself, and measures beside them, make such columns floats.
+    """
+    return _COUNT_NAME.fullmatch(name) is not None
+
+
+def _count_text(value: float) -> str:
+    """A count as a whole number where it is one, a half with one digit, a weighted one as measures are.
+
+    >>> [_count_text(v) for v in (9.0, 8.5, 500082016.0, 1 / 3)]
+    ['9', '8.5', '500082016', '0.3333']
+    """
+    if value.is_integer():
+        return str(int(value))
+    return f"{value:.1f}" if (2 * value).is_integer() else number_text(value)
+
+
+def _probability_text(value: float) -> str:
+    """A p- or q-value; small ones with four significant digits.
+
+    >>> [_probability_text(v) for v in (0.25, 0.00042, 1.2e-9, 0.0)]
+    ['0.2500', '4.200e-04', '1.200e-09', '<1e-300']
+    """
+    if value == 0:
+        return _LEAST_PROBABILITY
+    return f"{value:.{DECIMALS - 1}e}" if 0 < value < 10 ** (1 - DECIMALS) else number_text(value)
+
+
 def cell_text(value: Any, decimals: int = DECIMALS) -> str:
     """What a table shows for one value; nothing where it is missing."""
     if value is None:
@@ -138,8 +173,9 @@ class Grid:
 
     @staticmethod
     def _column(values: Sequence[Any], name: str) -> list[str]:
-        if name in MARGIN_COLUMNS and all(isinstance(value, float) and value.is_integer() for value in values):
-            return [str(int(value)) for value in values]
+        special = _count_text if is_count(name) else _probability_text if _PROBABILITY_NAME.fullmatch(name) else None
+        if special is not None:
+            return [special(value) if isinstance(value, float) else cell_text(value) for value in values]
         return [cell_text(value, COLUMN_DECIMALS.get(name, DECIMALS)) for value in values]
 
     def _line(self, cells: Sequence[str]) -> str:

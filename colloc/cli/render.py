@@ -8,6 +8,7 @@ import re
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any, BinaryIO, Protocol
 
+from colloc.answers.plain import is_count
 from colloc.errors import MissingExtraError
 from colloc.exports.spreadsheets import defuse, defuse_all
 
@@ -45,7 +46,10 @@ class TableWriter:
 
 
 class DelimitedWriter:
-    """CSV (RFC 4180 quoting, line feeds) or TSV, UTF-8, formulas defused, numbers in full precision."""
+    """CSV (RFC 4180 quoting, line feeds) or TSV, UTF-8, formulas defused, numbers in full precision.
+
+    A whole count is written without a point even where halves beside it make its column one of floats.
+    """
 
     def __init__(self, stream: BinaryIO, settings: Mapping[str, Any], *, delimiter: str) -> None:
         self._stream = stream
@@ -56,7 +60,9 @@ class DelimitedWriter:
     def write(self, part: Columns) -> None:
         heading = [] if self._begun else [[defuse(name)] for name in part.names]
         self._begun = True
-        columns = [defuse_all(values) if text else values for values, text in map(_cells, part.data.values())]
+        columns = [
+            defuse_all(values) if text else values for values, text in map(_cells, part.names, part.data.values())
+        ]
         if heading:
             columns = [head + column for head, column in zip(heading, columns, strict=True)]
         lines = map(self._delimiter.join, zip(*map(self._quoted, columns), strict=True))
@@ -75,7 +81,7 @@ class DelimitedWriter:
 _QUOTE = '"'
 
 
-def _cells(array: Any) -> tuple[list[str], bool]:
+def _cells(name: str, array: Any) -> tuple[list[str], bool]:
     """A numpy column's values as written, and whether they are text that might have to be defused."""
     values = array.tolist()
     kind = array.dtype.kind
@@ -85,7 +91,8 @@ def _cells(array: Any) -> tuple[list[str], bool]:
         # A mixed column: only its texts are defused.
         return [defuse(value) if isinstance(value, str) else _cell(value) for value in values], False
     if kind == "f":
-        return ["" if text == "nan" else text for text in map(str, values)], False
+        texts = ["" if text == "nan" else text for text in map(str, values)]
+        return [text.removesuffix(".0") for text in texts] if is_count(name) else texts, False
     return [_cell(value) for value in values] if kind == "b" else list(map(str, values)), False
 
 

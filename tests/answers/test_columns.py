@@ -181,13 +181,24 @@ def test_cells() -> None:
     assert [cell_text(value) for value in (None, True, False, 12, 0.5, "x")] == ["", "yes", "no", "12", "0.5000", "x"]
 
 
-def test_halved_margins_read_as_counts_where_they_are_whole() -> None:
+def test_counts_read_as_counts_also_beside_halves() -> None:
     grid = Grid(["total", "pmi", "per_million"], [True, True, True])
-    assert grid.lines([[10.0], [1.0], [2.0]], heading=True) == [
+    assert grid.lines([[10.0, 8.5, np.nan], [1.0, 1.0, 1.0], [2.0, 2.25, 3.0]], heading=True) == [
         "total     pmi  per_million",
         "   10  1.0000          2.0",
+        "  8.5  1.0000          2.2",
+        "       1.0000          3.0",
     ]
-    assert grid.lines([[10.0, 8.5], [1.0, 1.0], [2.0, 2.25]], heading=False) == [
-        "10.0000  1.0000          2.0",
-        " 8.5000  1.0000          2.2",
-    ]
+    for name in ("joint", "count", "first_total", "joint_this", "count_that", "fragment_count"):
+        assert Grid([name], [True]).lines([[500082016.0]], heading=False)[0].strip() == "500082016"
+    assert Grid(["count"], [True]).lines([[1e15, 1 / 3]], heading=False) == ["1000000000000000", "          0.3333"]
+
+
+def test_small_probabilities_keep_their_digits() -> None:
+    """A float below 5e-324 is 0 (IEEE 754): that is no certainty, and no table says so."""
+    values = [0.0, 1.2e-9, 4.24e-4, 0.25, np.nan]
+    for name in ("p", "q", "q_value", "document_q", "g2_p"):
+        lines = Grid([name], [True]).lines([values], heading=False)
+        assert [line.strip() for line in lines] == ["<1e-300", "1.200e-09", "4.240e-04", "0.2500", ""]
+    for name in ("g2_log10_p", "pmi", "dp"):
+        assert Grid([name], [True]).lines([[0.0]], heading=False) == ["0.0000".rjust(len(name))]
