@@ -207,6 +207,8 @@ def test_a_pair_that_never_met(demo: Demo) -> None:
     # Rule of three (Hanley & Lippman-Hand 1983): nothing met, so at most -ln 0.05 = 3.0 expected at 95 %.
     assert card.avoidance["pmi_at_most"] == pytest.approx(math.log2(-math.log(0.05) / card.table["expected"]))
     assert card.avoidance["pmi_if_one"] == pytest.approx(math.log2(1 / card.table["expected"]))
+    assert set(card.intervals["method"]) == {"asymptotic"}
+    assert any(statement.startswith("There is no interval over documents") for statement in card.statements)
     seldom = colloc.explain(demo.store, "dogs", "puffins", examples=0)
     assert seldom.table["expected"] < 5
     assert any("cannot bear a claim that they avoid" in statement for statement in seldom.statements)
@@ -236,6 +238,22 @@ def test_seldom_pairs_are_not_claimed(tmp_path: Path) -> None:
     assert "cannot bear the claim" in text
     assert "Fewer than 5 meetings" in text
     assert "not to be trusted here" in text
+
+
+def test_no_sentence_takes_back_what_another_says(demo: Demo) -> None:
+    """Each pair of ``the`` that chance would explain among so many has no sentence that its attraction stands."""
+    found = colloc.around(demo.store, "the", any_strength=True, min_count=10, limit=0, show=["pmi"])
+    weak = [row["second"] for row in found if 0.02 < abs(row["pmi"]) < 0.5][:30]
+    reworded = 0
+    for word in weak:
+        card = colloc.explain(demo.store, "the", word, examples=0)
+        text = " ".join(card.statements)
+        if card.tests["q"] > 0.05:
+            assert "standing: " not in text
+            reworded += "stays unproven" in text
+        else:
+            assert "stays unproven" not in text
+    assert reworded
 
 
 def test_chance_floors_are_shown_where_they_are_kept(tmp_path: Path, demo: Demo) -> None:

@@ -23,19 +23,23 @@ EXACT_UP_TO = 500_000
 
 
 def interval_rows(seen: PairOccurrences, table: PairTable) -> Columns:
-    """95 % intervals of PMI and of the log odds ratio: asymptotic, and by leaving groups of documents out."""
+    """95 % intervals of PMI and of the log odds ratio: asymptotic, and by leaving groups of documents out.
+
+    A pair that never met has none over documents: whichever are left out, it still never met, and what would vary is
+    the 0.5 that the log odds ratio adds.
+    """
     values = {"pmi": pmi(*table.arguments)}
     asymptotic = {"pmi": pmi_interval(*table.arguments)}
     if seen.question.convention.margins != "tokens":
         values["log_odds"] = log_odds(*table.arguments)
         asymptotic["log_odds"] = log_odds_interval(*table.arguments)
-    resampled, groups = _resampled(seen, values)
+    resampled, groups = _resampled(seen, values if table.joint[0] else {})
     documents = int(np.count_nonzero(seen.joint))
     sound = int(table.joint[0]) >= SOUND_JOINT and documents >= SOUND_DOCUMENTS and groups == GROUPS
     rows: list[tuple[str, str, float, Interval, bool]] = []
     for name, value in values.items():
         rows.append((name, "asymptotic", float(value[0]), asymptotic[name], False))
-        if groups > 1:
+        if name in resampled:
             rows.append((name, "documents", float(value[0]), resampled[name], sound))
     return Columns(
         {

@@ -11,6 +11,8 @@ from colloc.answers.sureness.documents import SOUND_DOCUMENTS, SOUND_JOINT
 from colloc.counts.grouping import GROUPS
 from colloc.measures.intervals import normal_quantile
 
+SURE = 0.05
+"""q-value from which down chance is called an unlikely explanation."""
 FEW = 5
 """Below this many meetings, or this expected count, a claim is not made."""
 APART = 4.0
@@ -46,7 +48,7 @@ def _chance(parts: dict[str, Any], joint: float, often: float) -> list[str]:
             "the sample cannot bear a claim that they avoid each other."
         ]
     found = []
-    if tests["q"] <= 0.05:
+    if tests["q"] <= SURE:
         q = "below 0.0001" if tests["q"] < 0.0001 else f"{tests['q']:.2g}"
         bound = "at most " if tests["q_is"] == "at most" and tests["q"] >= 0.0001 else ""
         found.append(
@@ -115,12 +117,24 @@ def _limits(question: Question, parts: dict[str, Any], joint: float) -> list[str
     found = []
     rows = {(row["measure"], row["method"]): row for row in parts["intervals"]}
     resampled = rows.get(("pmi", "documents"))
-    if resampled is None:
+    # What the many pairs looked at make unsure is not made sure again by an interval of this pair alone.
+    unsure = bool(parts["tests"]) and parts["tests"]["q"] > SURE
+    if not joint:
+        found.append(
+            "There is no interval over documents: whichever are left out, they were never met, and nothing would vary "
+            "but what is added to the empty cell."
+        )
+    elif resampled is None:
         found.append("Without several documents there is no interval that resamples them.")
     elif not resampled["trusted"]:
         found.append(
             "The interval over documents is shown but not to be trusted here: it was found reliable from "
             f"{SOUND_JOINT} meetings in {SOUND_DOCUMENTS} documents on, with at least {GROUPS} documents in all."
+        )
+    elif unsure and (resampled["low"] > 0 or resampled["high"] < 0):
+        found.append(
+            f"The interval of PMI over documents, {resampled['low']:.2f} to {resampled['high']:.2f} bits, leaves out "
+            "0, but it is that of one pair: among so many, some do by chance, and the claim stays unproven."
         )
     elif resampled["low"] > 0:
         found.append(
