@@ -30,6 +30,12 @@ _WIDE = ("utf-16-le", "utf-16-be", "utf-32-le", "utf-32-be")
 _NOT_FOR_TEXT = ("idna", "punycode", "undefined", "unicode-escape", "raw-unicode-escape", "utf-7", "mbcs", "oem")
 """Codecs of Python that are escapes, of this machine only, or (UTF-7) let halves of surrogate pairs through."""
 
+_PREFERRED = ("utf_8", "cp1252", "latin_1")
+"""What a detected encoding most often is, before the code pages of other regions."""
+_CHAOS_MARGIN = 0.11
+_COHERENCE_MARGIN = 0.03
+"""How much less plausible than the best guess a preferred encoding may look: chosen on sentences in 15 languages."""
+
 _COUNTING = "colloc-replace-and-count"
 _tally = threading.local()
 
@@ -99,6 +105,7 @@ def choose_encoding(head: bytes, encoding: str) -> tuple[str, int]:
 
 
 def _detect(head: bytes) -> str:
+    """A guess: UTF-8 where the bytes are that, else what gives the most plausible letters."""
     try:
         codecs.getincrementaldecoder("utf-8")().decode(head)
     except UnicodeDecodeError:
@@ -107,9 +114,19 @@ def _detect(head: bytes) -> str:
         return "utf-8"
     # A sample cut in mid-character would speak against the right encoding.
     cut = head.rfind(b"\n") + 1 if len(head) >= SAMPLE else 0
-    best = from_bytes(head[: cut or None]).best()
+    matches = from_bytes(head[: cut or None])
+    best = matches.best()
     if best is None:
         raise UnknownEncodingError("its encoding could not be detected: name it")
+    for preferred in _PREFERRED:
+        # Those that decode to the same text are one match, under the name that comes first in the alphabet.
+        if any(
+            preferred in match.could_be_from_charset
+            and match.chaos <= best.chaos + _CHAOS_MARGIN
+            and match.coherence >= best.coherence - _COHERENCE_MARGIN
+            for match in matches
+        ):
+            return checked_encoding(preferred)
     return checked_encoding(best.encoding)
 
 

@@ -201,6 +201,33 @@ DETECTED = {
 }
 
 
+WESTERN = {
+    "fr": "J'ai été à l'école où les élèves étaient déjà là. ",
+    "es": "El niño llegó mañana al faro con el capitán. ",
+    "pt": "O faroleiro não viu o navio, mas ouviu o sino da estação à noite. São três irmãos. ",
+    "sv": "Fyrvaktaren såg båten på väg över sjön när dimman lättade för en stund. ",
+}
+EASTERN = {
+    "cs": ("cp1250", "Příliš žluťoučký kůň úpěl ďábelské ódy. Řekl že přijde později, když bude mít čas. "),
+    "pl": ("cp1250", "Zażółć gęślą jaźń. Późną nocą łódź wróciła do portu, ponieważ wiatr był mocny. "),
+    "el": ("cp1253", "Ο φαροφύλακας έγραψε ότι ο άνεμος ήταν δυνατός και το πλοίο άργησε. "),
+}
+
+
+@pytest.mark.parametrize("text", WESTERN.values(), ids=WESTERN)
+def test_western_text_is_not_taken_for_another_region(tmp_path: Path, text: str) -> None:
+    path = tmp_path / "a.txt"
+    path.write_bytes((text * 40).encode("latin-1"))
+    assert read_texts(path, ReadSettings(encoding="detect")) == [text * 40]
+
+
+@pytest.mark.parametrize(("codec", "text"), EASTERN.values(), ids=EASTERN)
+def test_nor_another_region_for_western_text(tmp_path: Path, codec: str, text: str) -> None:
+    path = tmp_path / "a.txt"
+    path.write_bytes((text * 40).encode(codec))
+    assert read_texts(path, ReadSettings(encoding="detect")) == [text * 40]
+
+
 @pytest.mark.parametrize("codec", DETECTED)
 def test_detecting(tmp_path: Path, codec: str) -> None:
     text = (DETECTED[codec] * 3 + "\n") * 40
