@@ -129,9 +129,12 @@ def test_withdrawn_decisions_do_not_count(store: Path) -> None:
     assert colloc.entries(store).entries == ()
 
 
-PAIRS = ("thick fog", "strong wind", "clean oil", "one mind", "the boat", "the reef", "keeper wrote", "at dawn")
-BY_ANNA = ("accept", "accept", "accept", "reject", "reject", "unsure", "accept", "reject")
-BY_BEN = ("accept", "accept", "reject", "reject", "unsure", "unsure", "accept", "accept")
+PAIRS = (
+    *("thick fog", "strong wind", "clean oil", "one mind", "the boat", "the reef", "keeper wrote", "at dawn"),
+    *("the fog", "the wind"),
+)
+BY_ANNA = ("accept", "accept", "accept", "reject", "reject", "unsure", "accept", "reject", "reject", "reject")
+BY_BEN = ("accept", "accept", "reject", "reject", "unsure", "unsure", "accept", "accept", "reject", "reject")
 
 
 def test_agreement_is_cohens_kappa(store: Path) -> None:
@@ -141,13 +144,14 @@ def test_agreement_is_cohens_kappa(store: Path) -> None:
     colloc.judge(store, ["the", "lamp"], "accept", by="Cora")
     rows = colloc.judge_agreement(store).to_dicts()
     assert [(row["judge"], row["other"], row["both"], row["same"]) for row in rows] == [
-        ("Anna", "Ben", 8, 5),
+        ("Anna", "Ben", 10, 7),
         ("Anna", "Cora", 0, 0),
         ("Ben", "Cora", 0, 0),
     ]
     assert rows[0]["kappa"] == pytest.approx(cohen_kappa_score(BY_ANNA, BY_BEN))
     assert rows[0]["kappa_low"] < rows[0]["kappa"] < rows[0]["kappa_high"]
     assert str(rows[1]["kappa"]) == "nan"
+    assert [row["says"] for row in rows] == ["", *["too few: 0 in common, kappa needs 10"] * 2]
     differing = colloc.decisions(store, disagreements=True).to_dicts()
     found = {" ".join(sorted(row["words"])) for row in differing}
     wanted = zip(PAIRS, BY_ANNA, BY_BEN, strict=True)
@@ -163,14 +167,25 @@ def test_agreement_is_cohens_kappa(store: Path) -> None:
 
 
 def test_agreement_where_one_judge_accepts_everything(store: Path) -> None:
-    for words, verdict in (("thick fog", "accept"), ("strong wind", "accept"), ("the boat", "reject")):
-        colloc.judge(store, words.split(), verdict, by="Anna")  # type: ignore[arg-type]
+    with pytest.raises(NotSeenError, match="nobody has decided anything"):
+        colloc.judge_agreement(store)
+    for place, words in enumerate(PAIRS):
+        colloc.judge(store, words.split(), "accept" if place else "reject", by="Anna")
+        if not place:
+            with pytest.raises(NotSeenError, match="only one judge, Anna, has decided"):
+                colloc.judge_agreement(store)
         colloc.judge(store, words.split(), "accept", by="Ben")
+        (row,) = colloc.judge_agreement(store).to_dicts()
+        if place < 9:
+            assert str(row["kappa"]) == "nan"
+            assert row["says"] == f"too few: {place + 1} in common, kappa needs 10"
+    assert (row["both"], row["same"], row["kappa"]) == (10, 9, 0.0)
+    assert row["kappa"] == pytest.approx(cohen_kappa_score(["reject"] + ["accept"] * 9, ["accept"] * 10))
+    assert str(row["kappa_low"]) == str(row["kappa_high"]) == "nan"
+    assert row["says"] == "one of them gave one verdict throughout: no interval"
+    colloc.judge(store, PAIRS[0].split(), "accept", by="Anna")
     (row,) = colloc.judge_agreement(store).to_dicts()
-    assert (row["both"], row["same"], row["kappa"]) == (3, 2, 0.0)
-    colloc.judge(store, ["the", "boat"], "accept", by="Anna")
-    (row,) = colloc.judge_agreement(store).to_dicts()
-    assert row["same"] == 3
+    assert row["same"] == 10
     assert str(row["kappa"]) == "nan", "agreement by chance is certain: kappa says nothing"
 
 

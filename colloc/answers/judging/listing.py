@@ -9,11 +9,14 @@ from typing import Any
 import numpy as np
 
 from colloc.answers.columns import Columns
-from colloc.errors import MissingExtraError
+from colloc.errors import MissingExtraError, NotSeenError
 from colloc.store.connection import Store
 from colloc.store.decisions import Decision, Key, iterate, newest
 
 CATEGORIES = ("accept", "reject", "unsure")
+LEAST_SHARED = 10
+"""Matters that both judges decided from which on their kappa is told: a project-defined limit, as the variance of
+kappa is one of large samples (Fleiss, Cohen & Everitt 1969)."""
 
 
 def standing(store: Store, judge: str | None = None) -> list[Decision]:
@@ -69,11 +72,14 @@ def agreement(store: Store) -> Columns:
     -------
     Columns
         judge, other, both (matters), same (how many of them have the same verdict), kappa and kappa_low, kappa_high
-        (95 %, asymptotic): Cohen's (1960) over accept, reject and unsure; nan where both gave one and the same verdict
-        throughout.
+        (95 %, asymptotic): Cohen's (1960) over accept, reject and unsure; says, why there is no kappa (nan: fewer than
+        ``LEAST_SHARED`` matters, or both gave one and the same verdict throughout) or no interval of it (one of the
+        judges gave one verdict throughout: kappa is 0 whatever the other did).
 
     Raises
     ------
+    NotSeenError
+        Fewer than two judges have decided anything.
     MissingExtraError
         Where statsmodels is not installed.
     """
@@ -83,7 +89,10 @@ def agreement(store: Store) -> Columns:
         raise MissingExtraError("agreement needs statsmodels: pip install 'colloc[judging]'") from error
     matters = _by_matter(store)
     judges = sorted({judge for decisions in matters.values() for judge in decisions})
-    rows: list[tuple[str, str, int, int, float, float, float]] = []
+    if len(judges) < 2:
+        who = f"only one judge, {judges[0]}, has" if judges else "nobody has"
+        raise NotSeenError(f"{store.path}: {who} decided anything that counts; agreement needs two judges")
+    rows: list[tuple[str, str, int, int, float, float, float, str]] = []
     for one, other in combinations(judges, 2):
         table = np.zeros((len(CATEGORIES), len(CATEGORIES)), np.int64)
         for decisions in matters.values():
@@ -91,16 +100,22 @@ def agreement(store: Store) -> Columns:
                 table[CATEGORIES.index(decisions[one].verdict), CATEGORIES.index(decisions[other].verdict)] += 1
         both, same = int(table.sum()), int(np.trace(table))
         kappa = low = high = float("nan")
-        by_chance = float((table.sum(axis=0) * table.sum(axis=1)).sum())
-        if both and by_chance < both**2:
-            # Where one judge gave one verdict throughout, the variance can come out a rounding error below 0.
-            with np.errstate(invalid="ignore"):
-                found = cohens_kappa(table)
+        says = ""
+        used = [int(np.count_nonzero(table.sum(axis=axis))) for axis in (0, 1)]
+        if both < LEAST_SHARED:
+            says = f"too few: {both} in common, kappa needs {LEAST_SHARED}"
+        elif used == [1, 1] and same == both:
+            says = "one and the same verdict throughout: nothing to compare"
+        elif 1 in used:
+            # Chance agreement is then all there is: kappa is 0 by its definition, and its variance degenerates.
+            kappa, says = 0.0, "one of them gave one verdict throughout: no interval"
+        else:
+            found = cohens_kappa(table)
             kappa, low, high = float(found.kappa), float(found.kappa_low), float(found.kappa_upp)
-        rows.append((one, other, both, same, kappa, low, high))
-    columns = list(zip(*rows, strict=True)) or [()] * 7
-    kinds = (object, object, np.int64, np.int64, np.float64, np.float64, np.float64)
-    names = ("judge", "other", "both", "same", "kappa", "kappa_low", "kappa_high")
+        rows.append((one, other, both, same, kappa, low, high, says))
+    columns = list(zip(*rows, strict=True))
+    kinds = (object, object, np.int64, np.int64, np.float64, np.float64, np.float64, object)
+    names = ("judge", "other", "both", "same", "kappa", "kappa_low", "kappa_high", "says")
     arrays = {name: np.array(values, kind) for name, values, kind in zip(names, columns, kinds, strict=True)}
     return Columns(arrays, {"store": str(store.path), "categories": list(CATEGORIES)})
 
