@@ -58,7 +58,7 @@ def sequences(
         The pattern cannot be read, or the store does not tell word classes.
     """
     automaton = compile_pattern(pattern)
-    slices.select(store, where)  # raises where the slice means nothing
+    slices.fitting(store, where)  # raises where the slice means nothing or no document
     terms = vocabulary.layer_map(store, layer)
     reader = StreamReader(store)
     counters: dict[int, _Counter] = {}

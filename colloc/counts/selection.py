@@ -10,7 +10,7 @@ from numpy.typing import ArrayLike
 from colloc.records import Int64Array
 from colloc.store.connection import Store
 from colloc.store.documents import document, token_places
-from colloc.store.slices import select
+from colloc.store.slices import fitting
 from colloc.store.stream import token_count
 from colloc.store.visibility import uncounted
 
@@ -63,5 +63,5 @@ def documents_selection(store: Store, numbers: Int64Array) -> Selection:
 
 
 def slice_selection(store: Store, where: str) -> Selection:
-    """The tokens of the documents of a slice; empty text means all."""
-    return documents_selection(store, select(store, where)) if where else visible_stream(store)
+    """The tokens of the documents of a slice; empty text means all. NotSeenError where no document fits."""
+    return documents_selection(store, fitting(store, where)) if where else visible_stream(store)

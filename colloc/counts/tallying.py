@@ -24,7 +24,7 @@ from colloc.store.aside import store_aside
 from colloc.store.connection import Store
 from colloc.store.opening import open_for_reading, open_for_writing
 from colloc.store.scratch import scratch_folder
-from colloc.store.slices import select
+from colloc.store.slices import fitting, select
 from colloc.store.tallies import Tally, TallyWriter
 from colloc.store.vocabulary import ensure_layer, term_count
 
@@ -66,7 +66,7 @@ def obtain_tally(
     UsageError
         The layer or the slice is not there, or relations are asked of plain text.
     NotSeenError
-        No relation is called so.
+        No relation is called so, or no document fits the slice.
     InputOutputError
         The disk is full, or a process was ended from outside.
     LockedError
@@ -89,6 +89,7 @@ def obtain_tally(
         if keep and store.writable:
             tallies.set_kept(store, spec)
         return found
+    fitting(store, spec.where)  # raises where no document fits, before anything is kept
     if not store.writable:
         return _count_aside(store, spec, jobs, memory, temp, progress)
     ensure_layer(store, spec.layer)

@@ -21,12 +21,12 @@ import json
 import math
 import re
 from collections import Counter
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
-from colloc.errors import UsageError
+from colloc.errors import NotSeenError, UsageError
 from colloc.records import FloatArray, Int64Array, MetaValue
 from colloc.store.connection import Store
 from colloc.store.documents import visible_end
@@ -34,6 +34,9 @@ from colloc.store.documents import visible_end
 IDENTIFIER_KEY = "id"
 _PLAIN = re.compile(r'[^\s",&=()]+')
 _NUMBER = r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d+)?"
+_HYPHEN = re.compile(r"(\d+) *[-\u2013] *(\d+)")
+_LISTED = 10
+"""Values of a key that a message lists."""
 _RANGE = re.compile(rf"({_NUMBER})?\.\.({_NUMBER})?")
 _PIECE = re.compile(r'\s*(?:"((?:[^"]|"")*)"|([^",&]*?))\s*(?=[,&]|$)')
 _KEY = re.compile(r'\s*(?:"((?:[^"]|"")+)"|([^"=&,]+?))\s*=')
@@ -111,6 +114,47 @@ def select(store: Store, where: str) -> Int64Array:
     if not conditions:
         return _all_documents(store)
     return _fulfilling(store, conditions)
+
+
+def fitting(store: Store, where: str) -> Int64Array:
+    """The documents of a slice, as `select` gives them, of which there must be one where ``where`` is not empty.
+
+    Raises
+    ------
+    UsageError
+        A condition that cannot be read, or a key that no document has.
+    NotSeenError
+        No document fits; the message lists values that there are.
+    """
+    numbers = select(store, where)
+    if where and not len(numbers):
+        conditions = list(_simple(_parsed(where)))
+        hints = [f"did you mean {meant}" for condition in conditions if (meant := _meant_range(condition))]
+        known = [_known_values(store, key) for key in dict.fromkeys(condition.key for condition in conditions)]
+        raise NotSeenError(f"{store.path}: no document fits {where!r}; " + "; ".join([*hints, *known]))
+    return numbers
+
+
+def _simple(conditions: Sequence[_Condition | _Exception]) -> Iterator[_Condition]:
+    """The conditions, those in brackets too."""
+    for condition in conditions:
+        if isinstance(condition, _Exception):
+            yield from _simple(condition.conditions)
+        else:
+            yield condition
+
+
+def _meant_range(condition: _Condition) -> str:
+    """The condition with ``..`` where it has a hyphen between two numbers; empty where it has none."""
+    meant = [match for text in condition.texts if (match := _HYPHEN.fullmatch(text))]
+    return f"{quoted(condition.key)}={','.join(f'{match[1]}..{match[2]}' for match in meant)}" if meant else ""
+
+
+def _known_values(store: Store, key: str) -> str:
+    """The first values of a key, for a message."""
+    values = list(values_of(store, key))
+    more = f", ... ({len(values)} values)" if len(values) > _LISTED else ""
+    return f"values of {key}: {', '.join(values[:_LISTED])}{more}"
 
 
 def _all_documents(store: Store) -> Int64Array:

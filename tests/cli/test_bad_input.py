@@ -149,6 +149,36 @@ def test_what_was_never_seen(run: Run, store: Path) -> None:
     assert "has no document 'no-such-document'; `colloc info --documents` lists them" in gone.err
 
 
+@pytest.mark.parametrize(
+    "arguments",
+    [
+        ["pairs"],
+        ["around", "fog"],
+        ["words"],
+        ["lines", "fog"],
+        ["expressions"],
+        ["tally", "--window", "2"],
+        ["floors"],
+    ],
+    ids=lambda arguments: arguments[0],
+)
+def test_a_slice_that_no_document_fits(run: Run, tmp_path: Path, arguments: list[str]) -> None:
+    rows = "".join(f'{{"id": "{year}", "year": {year}, "text": "the fog came in"}}\n' for year in range(1900, 1912))
+    path = tmp_path / "years.colloc"
+    assert run("build", path, as_file(tmp_path, "years.jsonl", rows.encode()), "-q").code == 0
+    before = contents(path)
+    command, *more = arguments
+    ran = run(command, path, *more, "--where", "year=1900-1905")
+    assert (ran.code, ran.out) == (1, "")
+    assert ran.err.splitlines()[-1] == (
+        f"colloc: {path}: no document fits 'year=1900-1905'; did you mean year=1900..1905; values of year: "
+        + ", ".join(map(str, range(1900, 1910)))
+        + ", ... (12 values)"
+    )
+    assert contents(path) == before
+    assert "no document fits 'year=2001'; values of year: 1900" in run(command, path, *more, "--where", "year=2001").err
+
+
 def test_unknown_words_among_known_ones_are_named(run: Run, store: Path, tmp_path: Path) -> None:
     asked = ("around", store, "fog", "--min-count", 1, "--any-strength", "-f", "csv")
     ran = run(*asked, "zeppelin", "Kraken", "zeppelin")

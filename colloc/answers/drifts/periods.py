@@ -102,7 +102,7 @@ def make_periods(
 def _times(store: Store, key: str, where: str) -> tuple[Int64Array, FloatArray]:
     """Document numbers, ascending, with their numbers of the key."""
     found = slices.numbers_of(store, key)
-    chosen = slices.select(store, where)
+    chosen = slices.fitting(store, where)
     keep = np.isin(found[0], chosen)
     if not keep.any():
         known = ", ".join(slices.metadata_keys(store)) or "none"

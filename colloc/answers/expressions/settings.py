@@ -175,7 +175,7 @@ def resolve(store: Store, options: ExpressionOptions) -> Asked:
     """Options and store together."""
     built = built_spec(store)
     where = slices.canonical(options.where)
-    documents = len(slices.select(store, where)) if where else document_count(store)
+    documents = len(slices.fitting(store, where)) if where else document_count(store)
     fewest = min(FEWEST_DOCUMENTS, documents) if options.min_docs is None else options.min_docs
     return Asked(options, options.layer or built.layer, options.inside or built.inside, where, fewest)
 
