@@ -10,7 +10,7 @@ from colloc.answers.tables import Convention, TableReader
 from colloc.counts.tallying import cached_tally
 from colloc.counts.words import slice_word_counts
 from colloc.errors import DataError, UsageError
-from colloc.measures.catalogue import MEASURES
+from colloc.measures.catalogue import MEASURES, find_ranking
 from colloc.records import WordCounts
 from colloc.settings import DEFAULT_MEASURE, DEFAULT_MEMORY, Inside, Margins, TallySpec
 from colloc.store import facts, slices
@@ -187,4 +187,6 @@ def measure_names(measure: str | None, show: Sequence[str] | None, margins: str)
     for name in names:
         if name not in MEASURES:
             raise UsageError(f"unknown measure {name!r}: choose from joint, {', '.join(MEASURES)}")
+    if ranking != "joint":
+        find_ranking(ranking)
     return ranking, tuple(names)

@@ -13,7 +13,7 @@ from sklearn.utils.validation import check_is_fitted
 
 from colloc.errors import UsageError
 from colloc.estimators.reading import TextReader, as_terms, count_pairs, near_pairs, pair_keys
-from colloc.measures.catalogue import find
+from colloc.measures.catalogue import find_ranking
 from colloc.records import Int64Array
 
 
@@ -72,7 +72,7 @@ class PairFeatures(TransformerMixin, BaseEstimator):  # type: ignore[misc] # sci
         UsageError
             Where no pair passes the thresholds.
         """
-        chosen = find(self.measure)
+        chosen = find_ranking(self.measure)
         reader = TextReader(self.lowercase)
         tokens = reader.read(X)
         counted = count_pairs(tokens, len(reader.vocabulary), self.window, self.directed)

@@ -157,6 +157,18 @@ def test_ranks_among_pairs_met_as_often(demo: Demo) -> None:
         assert ranks[name] == 1 + int((like[name] > card.value(name) + 1e-12).sum())
 
 
+def test_only_strength_is_ranked(demo: Demo) -> None:
+    card = colloc.explain(demo.store, "thick", "fog", examples=0)
+    ranks = {row["measure"]: row["rank"] for row in card.measures}
+    unranked = {name for name, rank in ranks.items() if not rank}
+    tests = {f"{test}_{form}" for test in ("g2", "chi2", "fisher") for form in ("p", "log10_p")}
+    assert unranked == {"log_odds_se", "p_second_given_first", "p_first_given_second", *tests}
+    for ask_for in (colloc.pairs, lambda store, **more: colloc.around(store, "fog", **more)):
+        with pytest.raises(UsageError, match="log_odds_se tells how uncertain"):
+            ask_for(demo.store, measure="log_odds_se")
+        assert "log_odds_se" in ask_for(demo.store, show=["log_odds_se"], limit=3)
+
+
 def test_slices_add_up(demo: Demo) -> None:
     card = colloc.explain(demo.store, "heavy", "luggage", examples=0)
     assert {"genre", "year"} <= set(card.slices)

@@ -30,7 +30,7 @@ class Evidence:
     mutual_information : mapping or None
         pair_bits, table_bits, share; None where the table is no distribution of pairs.
     measures : Columns
-        measure, title, value, unit, rank, compared; rank 1 is the strongest.
+        measure, title, value, unit, rank, compared; rank 1 is the strongest, 0 for what tells no strength.
     compared : mapping
         low, high (joint counts of the pairs compared), pairs (of the table), compared.
     intervals : Columns

@@ -45,14 +45,17 @@ class Similar:
     def places(self, names: Sequence[str], own: PairTable) -> Int64Array:
         """The place of a pair among those compared, 1 for the strongest, by each measure; ties share the best place.
 
-        0 where nothing is compared.
+        0 where nothing is compared, and by measures that tell no strength (p-values, standard errors, conditional
+        probabilities).
         """
         if not len(self.table):
             return np.zeros(len(names), np.int64)
         values = compute_all(names, *self.table.arguments)
         of_pair = compute_all(names, *own.arguments)
-        places = np.empty(len(names), np.int64)
+        places = np.zeros(len(names), np.int64)
         for row, name in enumerate(names):
+            if MEASURES[name].tells != "strength":
+                continue
             others, value = values[name], of_pair[name][0]
             stronger = others > value if MEASURES[name].strongest == "highest" else others < value
             # Rounding must not put a pair behind itself: it may be among those compared.

@@ -26,6 +26,20 @@ def compute_all(
     return dict(zip(names, evaluate(rules, joint, first_total, second_total, total), strict=True))
 
 
+def find_ranking(name: str) -> Measure:
+    """The measure of that name, to rank by.
+
+    Raises
+    ------
+    UsageError
+        There is none, or it tells only how uncertain another measure is.
+    """
+    measure = find(name)
+    if measure.tells == "error":
+        raise UsageError(f"{name} tells how uncertain another measure is, not how strong a pair: rank by another")
+    return measure
+
+
 def find(name: str) -> Measure:
     """The measure of that name.
 

@@ -31,6 +31,9 @@ class Measure:
         family does without: it may be given margins counted otherwise than the joint counts.
     strongest : "highest" or "lowest"
         Which end of the range is the strongest association: the end that a ranking begins with.
+    tells : "strength", "chance", "condition" or "error"
+        How strong the pair is; how probable such counts are by chance (p-values); a conditional probability; or how
+        uncertain another measure is, which is nothing to rank by.
     over_rates, under_rates, misleads : str
         Which pairs rank too high, which too low, and when not to trust it.
     source : str
@@ -52,6 +55,7 @@ class Measure:
     source: str
     function: TableFunction = field(repr=False)
     strongest: Literal["highest", "lowest"] = "highest"
+    tells: Literal["strength", "chance", "condition", "error"] = "strength"
 
     @property
     def rule(self) -> Rule:
@@ -201,6 +205,7 @@ ENTRIES = (
         source="Dunning 1993; Wilks 1938, doi:10.1214/aoms/1177732360",
         function=likelihood.g2_p,
         strongest="lowest",
+        tells="chance",
     ),
     Measure(
         name="g2_log10_p",
@@ -216,6 +221,7 @@ ENTRIES = (
         source="as g2_p; for p-values too small for a float",
         function=likelihood.g2_log10_p,
         strongest="lowest",
+        tells="chance",
     ),
     Measure(
         name="chi2_p",
@@ -231,6 +237,7 @@ ENTRIES = (
         source="Pearson 1900, doi:10.1080/14786440009463897",
         function=likelihood.chi2_p,
         strongest="lowest",
+        tells="chance",
     ),
     Measure(
         name="chi2_log10_p",
@@ -246,6 +253,7 @@ ENTRIES = (
         source="as chi2_p; for p-values too small for a float",
         function=likelihood.chi2_log10_p,
         strongest="lowest",
+        tells="chance",
     ),
     Measure(
         name="fisher_p",
@@ -261,6 +269,7 @@ ENTRIES = (
         source="Fisher 1935, doi:10.2307/2342435; Pedersen 1996, arXiv:cmp-lg/9608010",
         function=exact.fisher_p,
         strongest="lowest",
+        tells="chance",
     ),
     Measure(
         name="fisher_log10_p",
@@ -276,6 +285,7 @@ ENTRIES = (
         source="as fisher_p; for p-values too small for a float",
         function=exact.fisher_log10_p,
         strongest="lowest",
+        tells="chance",
     ),
     Measure(
         name="t",
@@ -407,6 +417,7 @@ ENTRIES = (
         source="Woolf 1955, doi:10.1111/j.1469-1809.1955.tb01348.x",
         function=odds.log_odds_se,
         strongest="lowest",
+        tells="error",
     ),
     Measure(
         name="p_second_given_first",
@@ -421,6 +432,7 @@ ENTRIES = (
         misleads="It knows no chance: compare it with C / N, or read delta_p_second_given_first.",
         source="common practice, no single source",
         function=overlap.p_second_given_first,
+        tells="condition",
     ),
     Measure(
         name="p_first_given_second",
@@ -435,5 +447,6 @@ ENTRIES = (
         misleads="It knows no chance: compare it with R / N, or read delta_p_first_given_second.",
         source="common practice, no single source",
         function=overlap.p_first_given_second,
+        tells="condition",
     ),
 )
