@@ -5,7 +5,7 @@ from __future__ import annotations
 import difflib
 from collections.abc import Iterable, Sequence
 from pathlib import Path
-from typing import Annotated, Any, Literal
+from typing import Annotated, Any, Literal, get_args
 
 import typer
 
@@ -125,8 +125,39 @@ InputArgument = Annotated[
     typer.Argument(metavar="INPUT", help="Files, folders or quoted globs; - reads standard input."),
 ]
 
+ENDINGS = {
+    ".csv": "csv",
+    ".tsv": "tsv",
+    ".jsonl": "jsonl",
+    ".json": "json",
+    ".parquet": "parquet",
+    ".html": "html",
+}
+"""Formats that the ending of a file stands for."""
+
+
+def format_option(formats: Any) -> Any:
+    """``--format`` of a command that writes the formats of this Literal: goes by FILE's ending when not given."""
+    choices = get_args(formats)
+
+    def by_ending(context: typer.Context, value: str) -> str:
+        output = context.params.get("output")  # there already: options that are given are read before those left out
+        source = context.get_parameter_source("format")
+        given = source is not None and source.name != "DEFAULT"
+        if given or output is None or context.resilient_parsing:
+            return value
+        wanted = ENDINGS.get(Path(output).suffix.lower(), value)
+        if wanted not in choices:
+            listed = ", ".join(choices)
+            raise UsageError(f"{output}: {context.info_name} writes no {wanted}; choose --format from {listed}")
+        return wanted
+
+    shown = "How the result is written; by the ending of FILE when not given."
+    return _option("--format", "-f", help=shown, callback=by_ending)
+
+
 # Result
-FormatOption = Annotated[Format, _option("--format", "-f", help="How the result is written.")]
+FormatOption = Annotated[Format, format_option(Format)]
 OutputOption = Annotated[
     Path | None, _option("--output", "-o", help="Write to this file instead of standard output.", metavar="FILE")
 ]

@@ -11,10 +11,8 @@ from colloc.cli.output import Target, deliver, deliver_bytes
 from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
-LinesFormat = Annotated[
-    Literal["table", "csv", "tsv", "jsonl", "json", "parquet", "html"],
-    typer.Option("--format", "-f", help="How the lines are written."),
-]
+LinesFormat = Literal["table", "csv", "tsv", "jsonl", "json", "parquet", "html"]
+CardFormat = Literal["text", "json", "html"]
 
 
 def lines(
@@ -48,7 +46,7 @@ def lines(
         typer.Option("--keys", metavar="NAMES", help="Metadata shown beside the document in a table."),
     ] = None,
     limit: opt.LimitOption = 50,
-    format: LinesFormat = "table",
+    format: Annotated[LinesFormat, opt.format_option(LinesFormat)] = "table",
     output: opt.OutputOption = None,
     settings_beside: opt.BesideOption = False,
     quiet: opt.QuietOption = False,
@@ -130,9 +128,7 @@ def explain(
         Literal["positions", "spread", "both"],
         typer.Option("--plot-as", help="Positions of the second word, spread over documents, or both."),
     ] = "both",
-    format: Annotated[
-        Literal["text", "json", "html"], typer.Option("--format", "-f", help="How the card is written.")
-    ] = "text",
+    format: Annotated[CardFormat, opt.format_option(CardFormat)] = "text",
     output: opt.OutputOption = None,
     settings_beside: opt.BesideOption = False,
     quiet: opt.QuietOption = False,
