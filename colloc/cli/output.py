@@ -23,6 +23,11 @@ NAMED = 10
 """Unknown words that a remark names; it counts all."""
 
 
+LEAST_COUNTS = ("min_count", "min_word_count", "min_docs")
+THRESHOLDS = (*LEAST_COUNTS, "max_q", "above_chance", "interval_above", "min_expected", "upos", "pattern", "stop")
+"""Settings that can leave rows out of an answer."""
+
+
 class ReaderGone(Exception):
     """Whoever read our standard output has closed it (``| head``): nothing more is wanted."""
 
@@ -89,9 +94,13 @@ def deliver_parts(parts: Iterable[Columns], settings: Mapping[str, Any], target:
     remark(settings_line(command, settings), quiet=target.quiet)
     with opened(target.path) as stream:
         writer = make_writer(target.format, stream, settings)
+        n_rows = 0
         for part in chain([first], rest):
             writer.write(part)
+            n_rows += len(part)
         writer.close()
+    if not n_rows:
+        remark(no_rows_line(settings), quiet=target.quiet)
     if target.settings_beside and target.path is not None:
         write_settings(target.path, settings, command)
 
@@ -154,6 +163,23 @@ def settings_line(command: str, settings: Mapping[str, Any]) -> str:
         shown["no_span"] = True
     phrases = [_phrase(key.replace("_", " "), value) for key, value in shown.items()]
     return f"# {command}: " + "; ".join(phrase for phrase in phrases if phrase)
+
+
+def no_rows_line(settings: Mapping[str, Any]) -> str:
+    """What is said where an answer has no rows: the thresholds that may have left them out.
+
+    >>> no_rows_line({"min_count": 5, "min_docs": 1, "max_q": None, "any_strength": False})
+    '# no rows; min count 5; attraction only, unless --any-strength'
+    """
+    phrases = [
+        _phrase(key.replace("_", " "), settings.get(key))
+        for key in ("where", *THRESHOLDS)
+        # a least count of 0 or 1 leaves out nothing
+        if key not in LEAST_COUNTS or (settings.get(key) or 0) > 1
+    ]
+    if settings.get("any_strength") is False and not settings.get("avoid"):
+        phrases.append("attraction only, unless --any-strength")
+    return "; ".join(["# no rows", *(phrase for phrase in phrases if phrase)])
 
 
 def _phrase(key: str, value: Any) -> str:

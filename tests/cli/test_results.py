@@ -1,4 +1,4 @@
-"""The ending of the file that a result goes to."""
+"""The ending of the file that a result goes to, and what is said where there are no rows."""
 
 from __future__ import annotations
 
@@ -39,3 +39,14 @@ def test_endings_of_lines_and_cards(run: Run, built: Path, tmp_path: Path) -> No
     assert ran.code == 2
     assert "pairs writes no html; choose --format from table, csv" in ran.err
     assert not (tmp_path / "pairs.html").exists()
+
+
+def test_what_left_all_rows_out_is_said(run: Run, built: Path) -> None:
+    none = run("pairs", built, "--min-count", 1000, "-f", "csv")
+    assert none.code == 0
+    assert len(none.out.splitlines()) == 1
+    assert none.err.splitlines()[1:] == ["# no rows; min count 1000; attraction only, unless --any-strength"]
+    assert run("pairs", built, "--min-count", 1000, "-q").err == ""
+    words = run("words", built, "--min-count", 2, "--min-docs", 9)
+    assert words.err.splitlines()[1:] == ["# no rows; min count 2; min docs 9"]
+    assert not run("pairs", built, "--min-count", 1, "--any-strength").err.splitlines()[1:]
