@@ -56,6 +56,7 @@ def describe(store: Store) -> dict[str, Any]:
                 "digest": source.digest,
                 "documents": source.records,
                 "finished": source.finished,
+                **({"detected_encoding": source.encoding} if source.encoding is not None else {}),
             }
             for source in source_list(store)
         ],

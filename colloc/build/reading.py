@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
+from collections import Counter
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, field
 from pathlib import Path
 
 from colloc.build.batches import Batcher, Numbered
@@ -15,7 +16,7 @@ from colloc.settings import ReadSettings, SegmentSettings
 from colloc.store import documents, facts, stream
 from colloc.store.connection import Store
 from colloc.store.inputs.repeats import SeenHashes
-from colloc.store.inputs.sources import SourceRow, add_source, find_source, finish
+from colloc.store.inputs.sources import SourceRow, add_source, find_source, finish, note_encoding
 from colloc.store.vocabulary import TypeRegistry
 from colloc.text.iterables import IterableSource
 from colloc.text.sources import Source, open_sources
@@ -53,6 +54,8 @@ class Read:
     replaced_bytes: int
     repeated_documents: int
     repeated_paragraphs: int
+    detected: Mapping[str, int] = field(default_factory=dict)
+    """Files by the encoding that was detected for them; empty where the encoding was named."""
 
 
 def read_into(
@@ -106,6 +109,7 @@ def read_into(
         sources.replaced,
         totals.repeated_documents,
         totals.repeated_paragraphs,
+        sources.detected,
     )
 
 
@@ -171,7 +175,9 @@ class _Sources:
 
     def _finish(self, positions: list[int]) -> None:
         for position in positions:
-            finish(self._store, self._rows[position].number, self._sources[position].digest())
+            source = self._sources[position]
+            finish(self._store, self._rows[position].number, source.digest())
+            note_encoding(self._store, source.info.name, source.detected)
             self._exhausted.remove(position)
 
     @property
@@ -180,6 +186,10 @@ class _Sources:
         if self._current < len(self._sources):
             done += self._weight[self._current] * self._sources[self._current].position
         return done / sum(self._weight) if self._weight else 1.0
+
+    @property
+    def detected(self) -> dict[str, int]:
+        return dict(Counter(source.detected for source in self._sources if source.detected is not None))
 
     @property
     def replaced(self) -> int:

@@ -56,5 +56,6 @@ def drop_uncounted(store: Store) -> None:
     store.execute("DELETE FROM annotation_rests WHERE block >= ?", (mark.get("blocks", 0),))
     store.execute("DELETE FROM text_blocks WHERE first_character >= ?", (mark.get("characters", 0),))
     store.execute("DELETE FROM sources WHERE id >= ?", (mark.get("sources", 0),))
+    sources.forget_encodings(store)
     for key, value in mark.get("totals", {}).items():
         facts.put(store, key, value)

@@ -61,6 +61,7 @@ class IterableSource:
     """The one source that an iterable is: see :class:`colloc.text.sources.Source`."""
 
     replaced = 0
+    detected = None
 
     def __init__(self, inputs: PythonDocuments, settings: ReadSettings) -> None:
         self.info = SourceInfo(inputs.name, -1, 0.0)

@@ -96,6 +96,7 @@ class Opened:
         self.metadata = metadata
         self.settings = settings
         self.packed = False
+        self.detected: str | None = None
         self._hash = hashlib.blake2b(digest_size=16)
         self._consumed = 0
         self._size = -1
@@ -210,7 +211,8 @@ class Opened:
         if kind:
             raise self.error(f"{kind}, not text: convert it to text first")
         try:
-            codec, mark = choose_encoding(head, self._encoding(head, declared))
+            wanted = self._encoding(head, declared)
+            codec, mark = choose_encoding(head, wanted)
         except UnknownEncodingError as error:
             raise self.error(str(error)) from error
         if seems_binary(head, codec):
@@ -218,6 +220,7 @@ class Opened:
                 f"a binary file, not text (zero byte at {head.index(0)}): leave it out, "
                 "or name its encoding if it is UTF-16 or UTF-32"
             )
+        self.detected = codec if wanted == "detect" else None
         self._decoder = Decoder(codec, self.settings.errors, mark)
         try:
             yield from self._decoder.decode(_without(chunks, mark))

@@ -35,6 +35,11 @@ class Source:
         return self._opened.replaced if self._opened else 0
 
     @property
+    def detected(self) -> str | None:
+        """The encoding that ``encoding="detect"`` chose for this file, once it was opened."""
+        return self._opened.detected if self._opened else None
+
+    @property
     def position(self) -> float:
         """Share of the file read so far, 0..1; 0 until the end where its size is unknown."""
         return self._opened.position if self._opened else 0.0

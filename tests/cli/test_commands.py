@@ -7,7 +7,9 @@ import io
 import json
 import math
 import shutil
+import sqlite3
 from collections import Counter
+from contextlib import closing
 from pathlib import Path
 
 import pytest
@@ -286,6 +288,27 @@ def test_what_was_left_out_is_told(run: Run, tmp_path: Path) -> None:
         "colloc: 1 overlong tokens left out (--max-token)",
         "colloc: 1 undecodable bytes replaced",
     ]
+
+
+def test_a_detected_encoding_is_told_and_kept(run: Run, tmp_path: Path) -> None:
+    text = "Le gardien du phare a écrit que la mer était très forte et que le bateau n'était pas arrivé. "
+    (tmp_path / "a.txt").write_bytes((text * 40).encode("latin-1"))
+    (tmp_path / "b.txt").write_text(text * 40, encoding="utf-8")
+    ran = run("build", tmp_path / "s.colloc", tmp_path / "a.txt", tmp_path / "b.txt", "--encoding", "detect")
+    assert "encoding detected, which is a guess: cp1252 (files: 1), utf-8 (files: 1)" in ran.err
+
+    def kept(store: str) -> list[str]:
+        sources = json.loads(run("info", tmp_path / store, "-f", "json").out)["sources"]
+        return [source.get("detected_encoding") for source in sources]
+
+    assert kept("s.colloc") == ["cp1252", "utf-8"]
+    assert run("build", tmp_path / "t.colloc", tmp_path / "b.txt").code == 0
+    assert kept("t.colloc") == [None]
+    assert run("remove", tmp_path / "s.colloc", "a.txt").code == 0
+    assert kept("s.colloc") == ["utf-8"]
+    with closing(sqlite3.connect(tmp_path / "s.colloc")) as store:
+        facts = store.execute("SELECT key, value FROM facts WHERE key LIKE 'encoding:%'").fetchall()
+    assert facts == [(f"encoding:{tmp_path / 'b.txt'}", "utf-8")]
 
 
 def test_dry_run_leaves_nothing(run: Run, tmp_path: Path) -> None:

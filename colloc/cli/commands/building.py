@@ -27,7 +27,9 @@ Duplicates = Literal["none", "document", "paragraph"]
 _INPUT_FORMAT = typer.Option(
     "--input-format", metavar="NAME", help="txt, jsonl, csv, tsv, ...; auto goes by the file name."
 )
-_ENCODING = typer.Option("--encoding", metavar="NAME", help="Name of an encoding, or detect.")
+_ENCODING = typer.Option(
+    "--encoding", metavar="NAME", help="Name of an encoding; detect guesses it for each file: see what it chose."
+)
 _ERRORS = typer.Option("--errors", help="Bytes that cannot be decoded: stop, or replace and count them.")
 _TEXT_COLUMN = typer.Option("--text-column", metavar="NAME", help="Column or key that holds the text.")
 _ID_COLUMN = typer.Option(
@@ -252,6 +254,9 @@ def _tell(done: BuildReport, quiet: bool) -> None:
     ):
         if number:
             remark(f"colloc: {number:,} {what}")
+    if read.detected:
+        chosen = ", ".join(f"{encoding} (files: {files:,})" for encoding, files in read.detected.items())
+        remark(f"colloc: encoding detected, which is a guess: {chosen}; `colloc info` lists it by file")
 
 
 def add(

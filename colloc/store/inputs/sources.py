@@ -5,9 +5,15 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from colloc.records import SourceInfo
+from colloc.store import facts
 from colloc.store.connection import Store
 
-_COLUMNS = "id, name, size, modified, digest, records, finished"
+_ENCODING = "encoding:"
+"""Before a source's name: the fact that holds its detected encoding."""
+_COLUMNS = (
+    "id, name, size, modified, digest, records, finished, "
+    f"(SELECT value FROM facts WHERE key = '{_ENCODING}' || sources.name)"
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -20,6 +26,8 @@ class SourceRow:
         blake2b-128 of the raw bytes, known once the source was read to its end.
     records : int
         Documents finished so far: where a resumed build goes on.
+    encoding : str or None
+        The encoding that was detected; None where it was named.
     """
 
     number: int
@@ -27,6 +35,7 @@ class SourceRow:
     digest: str | None
     records: int
     finished: bool
+    encoding: str | None = None
 
 
 def add_source(store: Store, info: SourceInfo) -> int:
@@ -49,6 +58,7 @@ def copy_source(store: Store, source: SourceRow) -> int:
         "UPDATE sources SET records = ?, digest = ?, finished = ? WHERE id = ?",
         (source.records, source.digest, int(source.finished), number),
     )
+    note_encoding(store, source.info.name, source.encoding)
     return number
 
 
@@ -62,9 +72,26 @@ def finish(store: Store, number: int, digest: str) -> None:
     store.execute("UPDATE sources SET digest = ?, finished = 1 WHERE id = ?", (digest, number))
 
 
+def note_encoding(store: Store, name: str, encoding: str | None) -> None:
+    """Note which encoding was detected for a source, or that none was."""
+    if encoding is None:
+        facts.remove(store, _ENCODING + name)
+    else:
+        facts.put(store, _ENCODING + name, encoding)
+
+
 def forget_emptied(store: Store) -> None:
     """Forget the sources of which no document is left, so that they can be read again."""
     store.execute("DELETE FROM sources WHERE records > 0 AND id NOT IN (SELECT source FROM documents)")
+    forget_encodings(store)
+
+
+def forget_encodings(store: Store) -> None:
+    """Forget the encodings of sources that are gone: the name of a file may be private."""
+    store.execute(
+        "DELETE FROM facts WHERE key GLOB ? AND substr(key, ?) NOT IN (SELECT name FROM sources)",
+        (f"{_ENCODING}*", len(_ENCODING) + 1),
+    )
 
 
 def find_source(store: Store, name: str) -> SourceRow | None:
@@ -78,6 +105,6 @@ def source_list(store: Store) -> list[SourceRow]:
     return [_as_row(row) for row in store.rows(f"SELECT {_COLUMNS} FROM sources ORDER BY id")]
 
 
-def _as_row(row: tuple[int, str, int, float, str | None, int, int]) -> SourceRow:
-    number, name, size, modified, digest, records, finished = row
-    return SourceRow(number, SourceInfo(name, size, modified), digest, records, bool(finished))
+def _as_row(row: tuple[int, str, int, float, str | None, int, int, str | None]) -> SourceRow:
+    number, name, size, modified, digest, records, finished, encoding = row
+    return SourceRow(number, SourceInfo(name, size, modified), digest, records, bool(finished), encoding)
