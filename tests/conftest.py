@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 
+import numpy as np  # loaded before any test can choose its vectors: numpy warns of names it does not know
 import pytest
 from hypothesis import settings
 
@@ -11,6 +12,7 @@ from hypothesis import settings
 os.environ.update(COLUMNS="120", NO_COLOR="1", TERM="dumb", MPLBACKEND="agg")
 os.environ.pop("FORCE_COLOR", None)
 
+assert np.__version__
 IN_CI = os.environ.get("CI") == "true"
 
 # No deadline: a loaded machine is no bug. In continuous integration the examples are the same in every run.
