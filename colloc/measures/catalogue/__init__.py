@@ -8,7 +8,8 @@ from types import MappingProxyType
 from numpy.typing import ArrayLike
 
 from colloc.errors import UsageError
-from colloc.measures.catalogue.entries import ENTRIES, Measure
+from colloc.measures.catalogue.entries import ENTRIES
+from colloc.measures.catalogue.measure import Measure
 from colloc.measures.contingency import FloatArray, evaluate
 
 

@@ -7,7 +7,7 @@ import sys
 from collections.abc import Iterator
 
 from colloc.measures.catalogue import MEASURES
-from colloc.measures.catalogue.entries import Measure
+from colloc.measures.catalogue.measure import Measure
 
 _OPENING = """\
 # Measures of association
