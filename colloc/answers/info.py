@@ -6,7 +6,7 @@ import json
 from typing import Any
 
 from colloc.answers.columns import Columns
-from colloc.answers.questions import built_margins, built_spec
+from colloc.answers.questions import built_margins, built_spec, told_spec
 from colloc.counts.words import slice_word_counts
 from colloc.errors import UsageError
 from colloc.store import documents, facts, slices, tallies, vocabulary
@@ -39,7 +39,7 @@ def describe(store: Store) -> dict[str, Any]:
         "settings": {
             "read": json.loads(facts.get(store, "read_settings")),
             "segment": json.loads(facts.get(store, "segment_settings")),
-            "tally": json.loads(spec.to_json()),
+            "tally": told_spec(spec),
             "margins": built_margins(store),
         },
         "versions": json.loads(facts.get(store, "versions")),
@@ -61,7 +61,7 @@ def describe(store: Store) -> dict[str, Any]:
             for source in source_list(store)
         ],
         "tallies": [
-            {**json.loads(entry.spec.to_json()), "kept": entry.kept, "bytes": entry.n_bytes}
+            {**told_spec(entry.spec), "kept": entry.kept, "bytes": entry.n_bytes}
             for entry in tallies.tally_list(store)
         ],
     }

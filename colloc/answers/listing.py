@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colloc.answers.columns import Columns
+from colloc.answers.questions import told_reach
 from colloc.records import DocumentRow, Int64Array
 from colloc.store import documents, slices, tallies
 from colloc.store.opening import Store
@@ -61,7 +62,8 @@ def kept_tallies(store: Store) -> Columns:
     Returns
     -------
     Columns
-        layer, kind, left, right, inside, where, relation, asked_for (by the build or
+        layer, kind, window (the reach on both sides) or left and right where they differ, inside, where, relation,
+        asked_for (by the build or
         ``colloc tally``; else a cache that makes room when needed), pairs (distinct), total, bytes.
     """
     entries = tallies.tally_list(store)
@@ -70,6 +72,11 @@ def kept_tallies(store: Store) -> Columns:
     def text(name: str) -> NDArray[Any]:
         return np.array([getattr(entry.spec, name) for entry in entries], dtype=object)
 
+    reaches = [told_reach(entry.spec.kind, entry.spec.left, entry.spec.right) for entry in entries]
+
+    def reach(name: str) -> NDArray[Any]:
+        return np.array([told.get(name) for told in reaches], dtype=object)
+
     def numbers(values: Iterable[int]) -> Int64Array:
         return np.array(list(values), dtype=np.int64)
 
@@ -77,8 +84,9 @@ def kept_tallies(store: Store) -> Columns:
         {
             "layer": text("layer"),
             "kind": text("kind"),
-            "left": numbers(entry.spec.left for entry in entries),
-            "right": numbers(entry.spec.right for entry in entries),
+            "window": reach("window"),
+            "left": reach("left"),
+            "right": reach("right"),
             "inside": text("inside"),
             "where": text("where"),
             "relation": text("relation"),

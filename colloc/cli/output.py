@@ -9,11 +9,12 @@ from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from itertools import chain
 from pathlib import Path
-from typing import TYPE_CHECKING, Any, BinaryIO
+from typing import TYPE_CHECKING, Any, BinaryIO, get_args
 
 from colloc.cli.render import make_writer
 from colloc.errors import UsageError
 from colloc.exports.replacing import replacing
+from colloc.settings import TallyKind
 
 if TYPE_CHECKING:
     from colloc.answers.columns import Columns
@@ -151,18 +152,29 @@ def settings_line(command: str, settings: Mapping[str, Any]) -> str:
     '# pairs: layer fold; window 5; min count 5'
     """
     shown = {key: value for key, value in settings.items() if key != "unknown"}
-    if shown.get("kind") in ("window", "unit", "relation"):
-        # Stored tables of these kinds have one reach or none; what the user chose has the name of the kind.
-        kind = shown["kind"]
-        reach, _ = shown.pop("right"), shown.pop("left")
-        shown["kind"] = reach if kind == "window" else shown.pop(kind, "") or True
-        shown = {kind if key == "kind" else key: value for key, value in shown.items()}
+    if shown.get("kind") in get_args(TallyKind):
+        shown = _told_table(shown)
     else:
         shown.pop("kind", None)
     if not shown.pop("spanned", True):
         shown["no_span"] = True
     phrases = [_phrase(key.replace("_", " "), value) for key, value in shown.items()]
     return f"# {command}: " + "; ".join(phrase for phrase in phrases if phrase)
+
+
+def _told_table(settings: dict[str, Any]) -> dict[str, Any]:
+    """Settings in which the kind and the reach of a table have given way to the options that ask for it."""
+    from colloc.answers.questions import told_reach
+
+    kind = settings["kind"]
+    asked: dict[str, Any] = told_reach(kind, settings["left"], settings["right"]) or {kind: settings.get(kind) or True}
+    told: dict[str, Any] = {}
+    for name, value in settings.items():
+        if name == "kind":
+            told |= asked
+        elif name not in ("left", "right", "relation"):
+            told[name] = value
+    return told
 
 
 def no_rows_line(settings: Mapping[str, Any]) -> str:

@@ -195,7 +195,9 @@ def test_info(run: Run, built: Path) -> None:
     assert table["documents"] == "3"
     assert table["tokens"] == "38"
     assert table["sentences"] == str(len(SENTENCES))
-    assert table["settings.tally.right"] == str(WINDOW)
+    assert table["settings.tally.window"] == str(WINDOW)
+    assert "settings.tally.left" not in table
+    assert "settings.tally.right" not in table
     whole = json.loads(run("info", built, "--format", "json").out)
     assert whole == json.loads(json.dumps(colloc.info(built)))
     assert whole["settings"]["read"]["meta_from_path"] == "{genre}/{year}-{id}.txt"
@@ -212,9 +214,20 @@ def test_info(run: Run, built: Path) -> None:
 
 def test_tally_counts_keeps_and_drops(run: Run, store: Path) -> None:
     ran = run("tally", store, "--window", 3, "-f", "csv")
-    assert [(row["right"], row["asked_for"]) for row in rows_of(ran.out)] == [("2", "true"), ("3", "true")]
+    assert [(row["window"], row["left"], row["right"], row["asked_for"]) for row in rows_of(ran.out)] == [
+        ("2", "", "", "true"),
+        ("3", "", "", "true"),
+    ]
     assert int(rows_of(ran.out)[1]["total"]) == follower_counts(3).total()
     assert len(rows_of(run("tally", store, "--list", "-f", "csv").out)) == 2
+    uneven = rows_of(run("tally", store, "--left", 1, "--right", 3, "-f", "csv").out)[-1]
+    assert (uneven["kind"], uneven["window"], uneven["left"], uneven["right"]) == ("span", "", "1", "3")
+    even = rows_of(run("tally", store, "--margins", "positions", "-f", "csv").out)[-1]
+    assert (even["kind"], even["window"], even["left"], even["right"]) == ("positions", "2", "", "")
+    whole = rows_of(run("tally", store, "--unit", "-f", "csv").out)[-1]
+    assert (whole["kind"], whole["window"], whole["left"], whole["right"]) == ("unit", "", "", "")
+    for gone in (("--left", 1, "--right", 3), ("--margins", "positions"), ("--unit",)):
+        assert run("tally", store, *gone, "--drop").code == 0
     assert len(rows_of(run("tally", store, "--window", 3, "--drop", "-f", "csv").out)) == 1
     gone = run("tally", store, "--window", 3, "--drop")
     assert gone.code == 1

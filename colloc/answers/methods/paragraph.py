@@ -137,9 +137,9 @@ def _reach(tally: Mapping[str, Any]) -> str:
         return f"two words co-occur in a {tally['inside']} that holds both"
     if tally["kind"] == "relation":
         return f"two words co-occur as head and dependent ({tally['relation'] or 'any relation'})"
-    left = tally["right"] if tally["kind"] == "window" else tally["left"]
-    reach = f"within {left} words" if left == tally["right"] else f"up to {left} words left or {tally['right']} right"
-    return f"two words co-occur {reach} of each other {inside}"
+    if "window" in tally:
+        return f"two words co-occur within {tally['window']} words of each other {inside}"
+    return f"two words co-occur up to {tally['left']} words left or {tally['right']} right of each other {inside}"
 
 
 def _measured(cited: Mapping[str, Any], n_measures: int) -> str:
