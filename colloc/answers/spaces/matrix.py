@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Any, Literal, get_args
+from typing import TYPE_CHECKING, Any, get_args
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,20 +11,17 @@ from numpy.typing import NDArray
 from colloc.answers.questions import PairOptions, Question, ask
 from colloc.answers.spaces.choosing import EVERY_WORD, Choice, Chosen, choose
 from colloc.answers.spaces.rows import RowCells, cells_by_row
+from colloc.answers.spaces.values import Value, ValueRule, value_rule
 from colloc.answers.spaces.weighting import WeightedTally, Weighting, nested_specs
-from colloc.answers.tables import PairTable, TableMaker
+from colloc.answers.tables import TableMaker
 from colloc.counts.tallying import obtain_tally
 from colloc.errors import UsageError
-from colloc.measures.catalogue import MEASURES
-from colloc.measures.pmi import shifted_ppmi, smoothed_totals
 from colloc.records import FloatArray
 from colloc.settings import DEFAULT_MEMORY
 from colloc.store.connection import Store
 
 if TYPE_CHECKING:
     from scipy.sparse import csr_array
-
-Value = Literal["ppmi", "npmi", "g2", "count"]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -114,12 +110,12 @@ def matrix(
     names = () if wanted.value == "count" else (wanted.value,)
     question = ask(store, options or PairOptions(), names, jobs=jobs, memory=memory, progress=progress)
     source, maker = weighted(question, wanted.weighting, jobs, memory, progress)
-    value = value_of(wanted, maker)
+    value = value_rule(wanted.value, wanted.shift, wanted.smoothing, maker)
     rows = choose(question, wanted.rows, "rows")
     columns = choose(question, wanted.contexts, "contexts")
     gathered = _Gathered(len(question.words.tokens), source.n_pairs)
     for cells in cells_by_row(source, maker.ordered, question.spec.kind == "unit"):
-        gathered.add(*_kept(cells, value, maker, rows, columns, wanted))
+        gathered.add(*_kept(cells, value, rows, columns, wanted))
     square = wanted.rows == wanted.contexts == EVERY_WORD
     return gathered.finished(question, rows, columns, square, matrix_settings(question, wanted))
 
@@ -152,33 +148,8 @@ def matrix_settings(question: Question, wanted: MatrixOptions) -> dict[str, Any]
     )
 
 
-ValueRule = Callable[[PairTable], FloatArray]
-
-
-def value_of(wanted: MatrixOptions, maker: TableMaker) -> ValueRule:
-    """What a cell holds, as a function of the contingency tables of many cells."""
-    if wanted.value == "count":
-        # A symmetric matrix holds both orders of a word with itself, which the halved table does not.
-        twice = 1 if maker.ordered or maker.spec.kind == "unit" or maker.convention.margins == "tokens" else 2
-        return lambda table: np.where(table.first == table.second, twice * table.joint, table.joint).astype(np.float64)
-    if wanted.value != "ppmi":
-        return lambda table: MEASURES[wanted.value].compute(*table.arguments)
-
-    def positive(table: PairTable, second_total: Any) -> FloatArray:
-        return shifted_ppmi(table.joint, table.first_total, second_total, table.total, wanted.shift)
-
-    if wanted.smoothing == 1:
-        return lambda table: positive(table, table.second_total)
-    full = np.asarray(maker.second_totals(), dtype=np.float64)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        share = smoothed_totals(full, wanted.smoothing) / full
-
-    # Halved totals on the diagonal are smoothed in the same proportion.
-    return lambda table: positive(table, table.second_total * share[table.second])
-
-
 def _kept(
-    cells: RowCells, value: ValueRule, maker: TableMaker, rows: Chosen, columns: Chosen, wanted: MatrixOptions
+    cells: RowCells, value: ValueRule, rows: Chosen, columns: Chosen, wanted: MatrixOptions
 ) -> tuple[NDArray[np.uint32], NDArray[np.uint32], FloatArray]:
     """Rows, columns and values of the cells that pass all thresholds."""
     keep: NDArray[np.bool] | None = None
@@ -189,7 +160,7 @@ def _kept(
             keep = side.mask[terms] if keep is None else keep & side.mask[terms]
     if keep is not None:
         cells = cells.take(keep)
-    values = value(maker.counted(cells.rows, cells.columns, cells.joint))
+    values = value(cells)
     above = values != 0 if wanted.min_value is None else (values != 0) & (values >= wanted.min_value)
     if above.all():
         return cells.rows, cells.columns, values
@@ -205,6 +176,7 @@ class _Gathered:
         self._columns = np.empty(2 * n_pairs, np.int32)
         self._values = np.empty(2 * n_pairs)
         self._counts = np.zeros(n_terms, np.int64)
+        self._has_column = np.zeros(n_terms, bool)
         self._filled = 0
 
     def add(self, rows: NDArray[np.uint32], columns: NDArray[np.uint32], values: FloatArray) -> None:
@@ -212,6 +184,7 @@ class _Gathered:
             return
         stop = self._filled + len(rows)
         self._columns[self._filled : stop] = columns
+        self._has_column[columns] = True
         self._values[self._filled : stop] = values
         self._filled = stop
         base = int(rows[0])
@@ -226,8 +199,7 @@ class _Gathered:
         for room in (self._columns, self._values):
             room.resize(self._filled, refcheck=False)
         has_row = self._counts > 0
-        has_column = np.zeros(len(self._counts), bool)
-        has_column[self._columns] = True
+        has_column = self._has_column
         if square:
             has_row = has_column = has_row | has_column
         row_terms = rows.terms if rows.terms is not None else np.flatnonzero(has_row)
@@ -239,7 +211,7 @@ class _Gathered:
         numbers[column_terms[column_terms >= 0]] = np.flatnonzero(column_terms >= 0)
         for start in range(0, self._filled, _STRETCH):
             stretch = self._columns[start : start + _STRETCH]
-            stretch[:] = numbers[stretch]
+            numbers.take(stretch, out=stretch, mode="clip")  # all are in range; clipping needs no copy
         arrays: Any = (self._values, self._columns.astype(index, copy=False), pointers)
         made: csr_array[np.float64] = csr_array(arrays, shape=(len(within), len(column_terms)))
         if columns.terms is not None:
