@@ -61,8 +61,7 @@ def describe(store: Store) -> dict[str, Any]:
             for source in source_list(store)
         ],
         "tallies": [
-            {**told_spec(entry.spec), "kept": entry.kept, "bytes": entry.n_bytes}
-            for entry in tallies.tally_list(store)
+            {**told_spec(entry.spec), "kept": entry.kept, "bytes": entry.n_bytes} for entry in tallies.tally_list(store)
         ],
     }
 

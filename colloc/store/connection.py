@@ -157,14 +157,27 @@ class Store:
         Each commit is on the disk when it returns (synchronous FULL); this makes
         the one file complete without its ``-wal`` companion, so that it can be
         copied. Where a reader is at work for longer than half a second, the companion stays.
+
+        Raises
+        ------
+        InputOutputError
+            Where the main file cannot take it, as on a full disk: every commit is kept in the companion then.
         """
         with translated(self.path):
             (patience,) = self.connection.execute("PRAGMA busy_timeout").fetchone()
             self.connection.execute("PRAGMA busy_timeout = 500")
-            try:
-                self.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchall()
-            finally:
-                self.connection.execute(f"PRAGMA busy_timeout = {patience}")
+        try:
+            self.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchall()
+        except sqlite3.Error as error:
+            if in_our_words(error, self.path) is None:
+                raise
+            raise InputOutputError(
+                f"{self.path}: all is done and kept, but in {self.path.name}-wal, since {self.path.name} could not take "
+                f"it ({error}); do not run the command again: keep both files together and free some space, and the "
+                "next command that writes here joins them"
+            ) from error
+        finally:
+            self.execute(f"PRAGMA busy_timeout = {patience}")
 
     def close(self) -> None:
         """Close the connection and give the writer lock back."""

@@ -70,6 +70,27 @@ def test_add_without_room_leaves_what_was_there(corpus: Path, tmp_path: Path) ->
     assert len(content(tmp_path / "store")["documents"]) == 240
 
 
+def test_room_for_the_change_but_not_to_move_it(corpus: Path, tmp_path: Path) -> None:
+    """The documents are in the write-ahead log when the store itself cannot grow: they are there, and that is said."""
+    shutil.copy(corpus / "whole", tmp_path / "store")
+    few = (corpus / "b.jsonl").read_text(encoding="utf-8").splitlines(keepends=True)[:12]
+    (tmp_path / "few.jsonl").write_text("".join(few), encoding="utf-8")
+    size = (tmp_path / "store").stat().st_size
+    done = run(["add", "store", "few.jsonl"], tmp_path, size)
+    assert done.returncode == 74, done.stderr
+    assert "all is done and kept, but in store-wal" in done.stderr
+    assert "do not run the command again" in done.stderr
+    assert done.stderr.count("\n") == 1
+    with open_for_reading(tmp_path / "store") as store:
+        assert check(store) == []
+    assert len(content(tmp_path / "store")["documents"]) == 132
+    # the next command that writes joins the two
+    assert run(["tally", "store", "--window", "2", "-q"], tmp_path).returncode == 0
+    assert not (tmp_path / "store-wal").exists()
+    assert (tmp_path / "store").stat().st_size > size
+    assert len(content(tmp_path / "store")["documents"]) == 132
+
+
 @pytest.mark.long
 def test_on_a_small_file_system(corpus: Path, tmp_path: Path) -> None:
     """Needs the right to mount a file system in memory."""

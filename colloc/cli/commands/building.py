@@ -350,7 +350,10 @@ def merge(
     temp: opt.TempOption = None,
     quiet: opt.QuietOption = False,
 ) -> None:
-    """Take the documents and counts of other stores into one."""
+    """Take the documents and counts of other stores into one that is there already.
+
+    All must be built with the same settings; to leave every store as it is, copy one and merge into the copy.
+    """
     prefer_fast_sorting()
     from colloc.verbs import making
 

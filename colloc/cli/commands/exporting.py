@@ -58,7 +58,11 @@ def export(
     endings = {made.ending: name for name, made in FORMATS.items()}
     chosen = format or endings.get(output.suffix.lower())
     if chosen is None:
-        raise UsageError(f"{output}: say in which format with --format")
+        known = ", ".join(f"{ending} ({name})" for ending, name in endings.items() if ending)
+        why = f"no format has the ending {output.suffix!r}"
+        if output.suffix.lower() == ".csv":
+            why = f"CSV goes into a folder, as several files: name one without the ending, such as {output.stem}"
+        raise UsageError(f"{output}: {why}; endings of single files: {known}; or say --format")
     with ProgressLine(quiet=quiet) as progress:
         made = exporting.export(
             store,
