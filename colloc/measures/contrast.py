@@ -14,8 +14,9 @@ from numpy.typing import ArrayLike
 
 from colloc.measures.contingency import FloatArray
 from colloc.measures.intervals import Interval, normal_quantile
-from colloc.measures.likelihood import chi_square_log_p, g2
+from colloc.measures.likelihood import g2
 from colloc.measures.odds import ZERO_CORRECTION
+from colloc.measures.tails import chi_square_log_p
 
 
 def as_table(

@@ -14,6 +14,7 @@ the total is some 10^12 (the same decomposition for the binomial: Loader 2000).
 
 from __future__ import annotations
 
+import math
 from functools import cache
 from typing import Literal, get_args
 
@@ -22,7 +23,8 @@ from numpy.typing import ArrayLike, NDArray
 
 from colloc.errors import UsageError
 from colloc.measures.contingency import FloatArray, Table, evaluate, table_function
-from colloc.measures.likelihood import LOG10_E, chi_square_log_p, half_g2
+from colloc.measures.likelihood import LOG10_E, half_g2
+from colloc.measures.tails import chi_square_log_p
 
 Alternative = Literal["two-sided", "greater", "less"]
 
@@ -135,8 +137,6 @@ def _log_point(a: FloatArray, b: FloatArray, c: FloatArray, d: FloatArray) -> Fl
 
 def _s(n: FloatArray) -> FloatArray:
     """ln n! - n ln n + n: Stirling's series from 16 on, where its next term is below 1e-14."""
-    from scipy.special import gammaln, xlogy
-
     large = np.maximum(n, 16.0)
     inverse = 1.0 / large
     square = inverse * inverse
@@ -144,8 +144,21 @@ def _s(n: FloatArray) -> FloatArray:
     result: FloatArray = 0.5 * np.log(2 * np.pi * large) + series
     small = n < 16
     few = n[small]
-    result[small] = gammaln(few + 1.0) - xlogy(few, few) + few
+    whole = np.maximum(few, 0.0).astype(np.int64)
+    exact = _WHOLE[whole]
+    odd = np.flatnonzero(whole != few)
+    exact[odd] = [_s_of(one) for one in few[odd].tolist()]
+    result[small] = exact
     return result
+
+
+def _s_of(n: float) -> float:
+    if n < 0:
+        return math.nan
+    return math.lgamma(n + 1.0) - (n * math.log(n) if n else 0.0) + n
+
+
+_WHOLE = np.array([_s_of(n) for n in range(16)])
 
 
 def _log_rest(point: FloatArray, a: FloatArray, b: FloatArray, c: FloatArray, d: FloatArray) -> FloatArray:

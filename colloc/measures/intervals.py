@@ -15,6 +15,7 @@ from numpy.typing import ArrayLike
 from colloc.errors import UsageError
 from colloc.measures.contingency import FloatArray, Table, evaluate, table_function
 from colloc.measures.odds import log_odds, log_odds_se
+from colloc.measures.tails import t_quantile
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,8 +101,6 @@ def jackknife(estimate: ArrayLike, replicates: ArrayLike, *, confidence: float =
     UsageError
         Fewer than two groups.
     """
-    from scipy.special import stdtrit
-
     without = np.asarray(replicates, dtype=np.float64)
     groups = without.shape[0] if without.ndim else 0
     if groups < 2:
@@ -111,7 +110,7 @@ def jackknife(estimate: ArrayLike, replicates: ArrayLike, *, confidence: float =
     sound = np.where(finite, without, 0.0)
     spread = np.sum((sound - sound.mean(axis=0)) ** 2, axis=0)
     se = np.where(finite, np.sqrt((groups - 1) / groups * spread), np.inf)
-    return _symmetric(value, se, float(stdtrit(groups - 1, 0.5 + 0.5 * _checked(confidence))))
+    return _symmetric(value, se, t_quantile(_checked(confidence), groups - 1))
 
 
 def jackknife_difference(this: Interval, that: Interval) -> FloatArray:

@@ -77,7 +77,7 @@ def label_tables(present: ArrayLike, documents: ArrayLike) -> LabelTables:
 
 def _log_p(statistic: FloatArray, degrees: int) -> FloatArray:
     if degrees == 1:
-        from colloc.measures.likelihood import chi_square_log_p
+        from colloc.measures.tails import chi_square_log_p
 
         return chi_square_log_p(statistic)
     from scipy.stats import chi2

@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import numpy as np
-from numpy.typing import ArrayLike
 
 from colloc.measures.contingency import FloatArray, Table, table_function
+from colloc.measures.tails import chi_square_log_p, chi_square_p
 
 _ALMOST_MINUS_ONE = np.nextafter(-1.0, 0.0)
 LOG10_E = float(np.log10(np.e))
@@ -55,25 +55,25 @@ def chi2(table: Table) -> FloatArray:
 @table_function
 def g2_p(table: Table) -> FloatArray:
     """Two-sided p-value of G2 by the chi-square distribution with one degree of freedom; 0 below about 1e-308."""
-    return _p(2.0 * table.once(half_g2))
+    return chi_square_p(2.0 * table.once(half_g2))
 
 
 @table_function
 def chi2_p(table: Table) -> FloatArray:
     """Two-sided p-value of X2 by the chi-square distribution with one degree of freedom; 0 below about 1e-308."""
-    return _p(table.once(x2))
+    return chi_square_p(table.once(x2))
 
 
 @table_function
 def g2_log10_p(table: Table) -> FloatArray:
     """log10 of ``g2_p``, exact where the p-value itself is too small for a float."""
-    return _log_p(2.0 * table.once(half_g2)) * LOG10_E
+    return chi_square_log_p(2.0 * table.once(half_g2)) * LOG10_E
 
 
 @table_function
 def chi2_log10_p(table: Table) -> FloatArray:
     """log10 of ``chi2_p``, exact where the p-value itself is too small for a float."""
-    return _log_p(table.once(x2)) * LOG10_E
+    return chi_square_log_p(table.once(x2)) * LOG10_E
 
 
 @table_function
@@ -89,26 +89,3 @@ def t(table: Table) -> FloatArray:
 def z(table: Table) -> FloatArray:
     """z-score (O - E) / sqrt(E) (Berry-Rogghe 1973, without the factor for E / N); nan where a word never occurs."""
     return table.excess / np.sqrt(table.expected)
-
-
-def chi_square_p(statistic: ArrayLike) -> FloatArray:
-    """P(chi-square with one degree of freedom > statistic), unsigned statistic."""
-    return _p(np.asarray(statistic, dtype=np.float64))
-
-
-def chi_square_log_p(statistic: ArrayLike) -> FloatArray:
-    """Natural log of :func:`chi_square_p`; right where that underflows (statistics above some 1,400)."""
-    return _log_p(np.asarray(statistic, dtype=np.float64))
-
-
-def _p(statistic: FloatArray) -> FloatArray:
-    from scipy.special import erfc
-
-    # One degree of freedom is a squared normal deviate; erfc is some seven times faster than the gamma function.
-    return np.asarray(erfc(np.sqrt(0.5 * statistic)), dtype=np.float64)
-
-
-def _log_p(statistic: FloatArray) -> FloatArray:
-    from scipy.special import log_ndtr
-
-    return np.asarray(np.log(2.0) + log_ndtr(-np.sqrt(statistic)), dtype=np.float64)

@@ -14,8 +14,8 @@ from numpy.typing import ArrayLike, NDArray
 
 from colloc.measures.contingency import FloatArray, Table, expected
 from colloc.measures.intervals import Interval, normal_quantile
-from colloc.measures.likelihood import chi_square_p
 from colloc.measures.odds import log_odds, log_odds_se
+from colloc.measures.tails import chi_square_p
 
 LEAST_EXPECTED = 1.0
 """Where fewer meetings than this are expected and none is seen, an odds ratio with 0.5 added is mostly the 0.5."""

@@ -14,7 +14,7 @@ from numpy.typing import ArrayLike, NDArray
 from colloc.errors import UsageError
 from colloc.measures.contingency import FloatArray
 from colloc.measures.intervals import Interval, normal_quantile
-from colloc.measures.likelihood import chi_square_p
+from colloc.measures.tails import chi_square_p
 
 _EXACT_PERIODS = 40
 """Up to here the exact distribution is used where no two values are equal."""

@@ -11,8 +11,8 @@ from statsmodels.stats.contingency_tables import Table2x2
 from colloc.errors import DataError
 from colloc.measures.catalogue import compute_all
 from colloc.measures.contingency import expected, impossible, require_possible
-from colloc.measures.likelihood import chi_square_log_p, chi_square_p
 from colloc.measures.odds import log_ratio
+from colloc.measures.tails import chi_square_log_p, chi_square_p
 
 
 def random_tables(seed: int, rows: int, largest: int) -> np.ndarray:

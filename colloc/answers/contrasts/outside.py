@@ -19,8 +19,8 @@ from colloc.measures.contrast import as_table, keyness_g2, log_ratio_interval
 from colloc.measures.discoveries import log_q_values
 from colloc.measures.exact import association_log_p
 from colloc.measures.intervals import Interval
-from colloc.measures.likelihood import chi_square_log_p
 from colloc.measures.subcorpora.reference import g2_to_rate, log_ratio_to_rate, rate_test_log_p
+from colloc.measures.tails import chi_square_log_p
 from colloc.records import FloatArray, Int64Array
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store import slices, vocabulary

@@ -25,6 +25,7 @@ from colloc.measures.intervals import Interval, jackknife_difference
 from colloc.measures.odds import log_odds, log_odds_se
 from colloc.measures.pmi import pmi
 from colloc.measures.subcorpora.documents import document_test, permuted_p
+from colloc.measures.tails import t_quantile
 from colloc.records import FloatArray, Int64Array
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store import vocabulary
@@ -235,8 +236,6 @@ class Strength:
 
 def strength(questions: tuple[Question, Question], tables: tuple[PairTable, PairTable]) -> Strength:
     """Association of the same pairs on two sides compared: one pass over the stream of each side."""
-    from scipy.special import stdtrit
-
     values = tuple(pmi(*table.arguments) for table in tables)
     intervals = [document_evidence(question, table).interval for question, table in zip(questions, tables, strict=True)]
     with np.errstate(invalid="ignore"):
@@ -247,7 +246,7 @@ def strength(questions: tuple[Question, Question], tables: tuple[PairTable, Pair
             else np.full(len(gap), np.inf)
         )
         # Both sides have 20 groups at most; 19 degrees of freedom are the safe choice for their difference.
-        reach = float(stdtrit(19, 0.975)) * se
+        reach = t_quantile(0.95, 19) * se
         bears = np.isfinite(se) & np.isfinite(gap)
         interval = Interval(np.where(bears, gap - reach, -np.inf), np.where(bears, gap + reach, np.inf), se)
     return Strength((values[0], values[1]), gap, interval)
