@@ -18,10 +18,32 @@ Format = Literal["table", "csv", "tsv", "jsonl", "json", "parquet"]
 
 
 def complete_measures(incomplete: str) -> list[str]:
-    """Names of measures for shell completion."""
+    """Names of measures for shell completion, after those that stand before a comma."""
     from colloc.measures.catalogue import MEASURES
 
-    return [name for name in ("joint", *MEASURES) if name.startswith(incomplete)]
+    return _completed(incomplete, ["joint", *MEASURES])
+
+
+def complete_columns(incomplete: str) -> list[str]:
+    """Names that ``--show`` takes of an answer with columns of sureness, for shell completion."""
+    from colloc.answers.sureness.wishes import SHOWN_COLUMNS
+    from colloc.measures.catalogue import MEASURES
+
+    return _completed(incomplete, [*MEASURES, *SHOWN_COLUMNS, "all"])
+
+
+def _completed(incomplete: str, names: Iterable[str]) -> list[str]:
+    before, comma, begun = incomplete.rpartition(",")
+    return [f"{before}{comma}{name}" for name in names if name.startswith(begun)]
+
+
+def complete_rankings(context: typer.Context, incomplete: str) -> list[str]:
+    """Names that ``--measure`` ranks by, with the margins given so far, for shell completion."""
+    from colloc.measures.catalogue import MEASURES
+
+    cells = context.params.get("margins") != "tokens"
+    usable = [name for name, one in MEASURES.items() if one.tells != "error" and (cells or not one.needs_cells)]
+    return [name for name in ("joint", *usable) if name.startswith(incomplete)]
 
 
 def split_names(values: Iterable[str] | None) -> list[str] | None:
@@ -53,33 +75,53 @@ def shown_measures(values: Iterable[str] | None) -> list[str] | None:
 
 
 def shown_columns(values: Iterable[str] | None) -> list[str] | None:
-    """Names given with ``--show`` where columns of sureness can be shown beside measures.
+    """Names given with ``--show`` where word frequencies and columns of sureness can be shown beside measures.
 
     Raises
     ------
     UsageError
         For an unknown name, with the nearest known one.
     """
-    from colloc.answers.sureness.wishes import SURE_COLUMNS
+    from colloc.answers.sureness.wishes import SHOWN_COLUMNS
     from colloc.measures.catalogue import MEASURES
 
     names = split_names(values)
     if names is None:
         return None
-    sure = [name for name in names if name in SURE_COLUMNS]
+    others = [name for name in names if name in SHOWN_COLUMNS]
     if "all" in names:
-        return [*MEASURES, *sure]
+        return [*MEASURES, *others]
     for name in names:
-        _check_known(name, [*MEASURES, *SURE_COLUMNS])
+        _check_known(name, [*MEASURES, *SHOWN_COLUMNS])
     return names
 
 
-def check_ranking(name: str | None) -> None:
-    """Raise UsageError for a ``--measure`` that is neither ``joint`` nor in the catalogue."""
+def one_ranking(values: Iterable[str] | None) -> str | None:
+    """The one name given with ``--measure``; None where the option was not given.
+
+    Raises
+    ------
+    UsageError
+        For several names, and for one that is neither ``joint`` nor in the catalogue.
+    """
+    names = split_names(values)
+    if names is None:
+        return None
+    if len(names) > 1:
+        raise UsageError(
+            f"--measure ranks by one measure, not by {' and '.join(names)}: add --show {','.join(names[1:])} to see "
+            f"{'it' if len(names) == 2 else 'them'} beside {names[0]}"
+        )
+    name = names[0] if names else ""
+    check_ranking(name)
+    return name
+
+
+def check_ranking(name: str) -> None:
+    """Raise UsageError for a measure that is neither ``joint`` nor in the catalogue."""
     from colloc.measures.catalogue import MEASURES
 
-    if name is not None:
-        _check_known(name, ["joint", *MEASURES])
+    _check_known(name, ["joint", *MEASURES])
 
 
 def _check_known(name: str, known: list[str]) -> None:
@@ -179,11 +221,16 @@ LimitOption = Annotated[int, _option("--limit", "-n", metavar="N", min=0, help="
 
 # Measures
 MeasureOption = Annotated[
-    str | None,
+    list[str] | None,
     _option(
-        "--measure", "-m", metavar="NAME", help="Rank by this measure, or by joint.", autocompletion=complete_measures
+        "--measure",
+        "-m",
+        metavar="NAME",
+        help="Rank by this one measure, or by joint.",
+        autocompletion=complete_rankings,
     ),
 ]
+"""A list, so that a second one is seen and refused: see `one_ranking`."""
 ShowOption = Annotated[
     list[str] | None,
     _option(
@@ -191,6 +238,16 @@ ShowOption = Annotated[
         help="Measures to show, separated by commas or repeated; all for the whole catalogue.",
         metavar="NAMES",
         autocompletion=complete_measures,
+    ),
+]
+ShowColumnsOption = Annotated[
+    list[str] | None,
+    _option(
+        "--show",
+        help="Measures to show, separated by commas or repeated, all for the whole catalogue; also first_count and "
+        "second_count, the frequencies of the words, and columns of --sure.",
+        metavar="NAMES",
+        autocompletion=complete_columns,
     ),
 ]
 

@@ -137,8 +137,10 @@ class Judge:
         return keep
 
     def shown(self, table: PairTable, evidence: DocumentEvidence | None) -> dict[str, NDArray[np.generic]]:
-        """The columns of sureness for rows that are shown."""
+        """The columns asked for beside measures, for rows that are shown."""
         found: dict[str, NDArray[np.generic]] = {}
+        tokens = self._question.words.tokens
+        found |= {"first_count": tokens[table.first], "second_count": tokens[table.second]}
         if evidence is not None:
             found |= {"documents": evidence.documents, "dp_norm": evidence.dp_norm, "sound": evidence.sound}
             if evidence.interval is not None:

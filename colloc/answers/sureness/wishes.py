@@ -1,4 +1,4 @@
-"""What of sureness a question asks for: columns to show, and what rows must reach."""
+"""What a question asks for beside measures: word frequencies, columns of sureness, and what rows must reach."""
 
 from __future__ import annotations
 
@@ -9,6 +9,8 @@ from dataclasses import dataclass, replace
 from colloc.answers.sureness.floors import SHUFFLES, Shuffle
 from colloc.errors import UsageError
 
+WORD_COLUMNS = ("first_count", "second_count")
+"""Frequencies of the two words in the documents asked about, in tokens: margins count pairs."""
 DOCUMENT_COLUMNS = ("documents", "dp_norm")
 INTERVAL_COLUMNS = ("pmi_low", "pmi_high", "sound")
 FORMULA_COLUMNS = ("formula_low", "formula_high")
@@ -16,6 +18,8 @@ Q_COLUMNS = ("q_value",)
 FLOOR_COLUMNS = ("corpus_floor", "above_corpus", "order_floor", "above_order")
 SURE_COLUMNS = (*DOCUMENT_COLUMNS, *INTERVAL_COLUMNS, *FORMULA_COLUMNS, *Q_COLUMNS, *FLOOR_COLUMNS)
 """All columns of sureness, in the order in which they are shown."""
+SHOWN_COLUMNS = (*WORD_COLUMNS, *SURE_COLUMNS)
+"""All that can be shown beside measures."""
 CELL_COLUMNS = (*FORMULA_COLUMNS, *Q_COLUMNS)
 """Those that need the cells of a table, which margins of tokens do not have."""
 
@@ -27,9 +31,9 @@ class Wishes:
     Parameters
     ----------
     columns : sequence of str
-        Names of `SURE_COLUMNS`.
+        Names of `SHOWN_COLUMNS`.
     everything : bool
-        All columns that the margins can bear.
+        All columns of sureness that the margins can bear.
     min_docs : int
         Least number of documents that hold the pair.
     max_q : float
@@ -48,9 +52,9 @@ class Wishes:
     interval_above: float | None = None
 
     def __post_init__(self) -> None:
-        unknown = [name for name in self.columns if name not in SURE_COLUMNS]
+        unknown = [name for name in self.columns if name not in SHOWN_COLUMNS]
         if unknown:
-            raise UsageError(f"unknown column {unknown[0]!r}: choose from {', '.join(SURE_COLUMNS)}")
+            raise UsageError(f"unknown column {unknown[0]!r}: choose from {', '.join(SHOWN_COLUMNS)}")
         if self.max_q is not None and not 0 < self.max_q <= 1:
             raise UsageError(f"max_q must be above 0 and at most 1, not {self.max_q}")
         if self.above_chance is not None and self.above_chance not in SHUFFLES:
@@ -97,15 +101,15 @@ class Wishes:
             raise UsageError(
                 f"{name} needs the cells of a table, which margins tokens does not have: use margins pairs"
             )
-        return tuple(name for name in SURE_COLUMNS if name in wanted)
+        return tuple(name for name in SHOWN_COLUMNS if name in wanted)
 
 
 def divided(show: Sequence[str] | None, wishes: Wishes | None) -> tuple[Sequence[str] | None, Wishes]:
-    """Names to show as names of measures, and as wishes that hold the columns of sureness among them."""
+    """Names to show as names of measures, and as wishes that hold the other columns among them."""
     wishes = wishes or Wishes()
     if show is None:
         return None, wishes
-    sure = [name for name in show if name in SURE_COLUMNS]
-    measures = [name for name in show if name not in SURE_COLUMNS]
-    # columns of sureness alone are shown beside the usual measures
-    return measures if measures or not sure else None, replace(wishes, columns=(*wishes.columns, *sure))
+    others = [name for name in show if name in SHOWN_COLUMNS]
+    measures = [name for name in show if name not in SHOWN_COLUMNS]
+    # other columns alone are shown beside the usual measures
+    return measures if measures or not others else None, replace(wishes, columns=(*wishes.columns, *others))

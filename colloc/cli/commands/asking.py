@@ -53,7 +53,7 @@ def words(
 def pairs(
     store: opt.StoreArgument,
     measure: opt.MeasureOption = None,
-    show: opt.ShowOption = None,
+    show: opt.ShowColumnsOption = None,
     layer: opt.LayerOption = None,
     window: opt.WindowOption = None,
     left: opt.LeftOption = None,
@@ -102,13 +102,13 @@ def pairs(
     from colloc.verbs import asking
     from colloc.verbs.evidence import picture
 
-    opt.check_ranking(measure)
+    ranking = opt.one_ranking(measure)
     opt.check_plot(plot)
     target = Target(format, output, quiet, settings_beside)
     with ProgressLine(quiet=quiet) as progress:
         answer = asking.pairs(
             store,
-            measure=measure,
+            measure=ranking,
             show=opt.shown_columns(show),
             layer=layer,
             window=window,
@@ -165,7 +165,7 @@ def around(
         ),
     ] = None,
     measure: opt.MeasureOption = None,
-    show: opt.ShowOption = None,
+    show: opt.ShowColumnsOption = None,
     layer: opt.LayerOption = None,
     window: opt.WindowOption = None,
     left: opt.LeftOption = None,
@@ -211,7 +211,7 @@ def around(
     from colloc.verbs import asking
     from colloc.verbs.evidence import picture
 
-    opt.check_ranking(measure)
+    ranking = opt.one_ranking(measure)
     opt.check_plot(plot)
     asked = opt.read_words(words or [], words_from)
     target = Target(format, output, quiet, settings_beside)
@@ -221,7 +221,7 @@ def around(
             asked,
             side=side,
             upos=opt.split_names(upos) or (),
-            measure=measure,
+            measure=ranking,
             show=opt.shown_columns(show),
             layer=layer,
             window=window,

@@ -62,7 +62,7 @@ def export(
         why = f"no format has the ending {output.suffix!r}"
         if output.suffix.lower() == ".csv":
             why = f"CSV goes into a folder, as several files: name one without the ending, such as {output.stem}"
-        raise UsageError(f"{output}: {why}; endings of single files: {known}; or say --format")
+        raise UsageError(f"{output}: {why}; endings of single files: {known}; or say in which format with --format")
     with ProgressLine(quiet=quiet) as progress:
         made = exporting.export(
             store,

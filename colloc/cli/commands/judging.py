@@ -114,7 +114,7 @@ def judge(
         return
     if chosen or sense or note or label or example:
         raise UsageError("say what is decided: X Y, or a quoted phrase")
-    opt.check_ranking(measure)
+    ranking = opt.one_ranking(measure)
     _by_keys(
         store,
         judging.check_judge(by),
@@ -123,7 +123,7 @@ def judge(
             "kind": kind,
             "expressions": expressions,
             "again": again,
-            "measure": measure,
+            "measure": ranking,
             "layer": layer,
             "window": window,
             "directed": directed,
@@ -208,7 +208,7 @@ def sheet(
     """
     from colloc.verbs import judging
 
-    opt.check_ranking(measure)
+    ranking = opt.one_ranking(measure)
     ending = output.suffix.lower() if output is not None else ""
     chosen = format or ("xlsx" if ending == ".xlsx" else "tsv" if ending == ".tsv" else "csv")
     with ProgressLine(quiet=quiet) as progress:
@@ -219,7 +219,7 @@ def sheet(
             kind=kind,
             expressions=expressions,
             again=not open_only,
-            measure=measure,
+            measure=ranking,
             show=opt.shown_measures(show),
             layer=layer,
             window=window,
