@@ -20,6 +20,7 @@ from typer.exceptions import Abort, TyperException
 from typer.main import get_command
 
 from colloc.cli.output import ReaderGone, remark
+from colloc.cli.quick_values import with_quick_values
 from colloc.errors import CollocError, InputOutputError, LockedError, StoreDamagedError
 
 COMMAND_MODULES = (
@@ -78,7 +79,7 @@ class CommandTable(TyperGroup):
             return None
         alone = typer.Typer(add_completion=False, rich_markup_mode=None, pretty_exceptions_enable=False)
         alone.command(cmd_name, context_settings=CONTEXT)(self._functions[cmd_name])
-        return get_command(alone)
+        return with_quick_values(get_command(alone))
 
     def format_commands(self, ctx: Any, formatter: Any) -> None:
         """The list on the help page: the first line of each command's help."""
@@ -119,7 +120,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     anything unexpected keeps its traceback.
     """
     try:
-        code = get_command(build_app()).main(
+        code = with_quick_values(get_command(build_app())).main(
             args=None if arguments is None else list(arguments),
             prog_name="colloc",
             standalone_mode=False,
