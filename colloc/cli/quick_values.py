@@ -20,9 +20,17 @@ _UNSURE = object()
 
 def with_quick_values(command: Any) -> Any:
     """A command of typer's whose parameters take plain values quickly; unchanged where typer converts otherwise."""
-    for parameter in command.params:
-        if hasattr(parameter, "get_runtime_param") and hasattr(parameter, "type_descriptor"):
-            parameter.get_runtime_param = _Quick(parameter)
+    parameters_of = command.get_params
+
+    def get_params(context: Any) -> Any:
+        found = parameters_of(context)  # with --help, which is not among the command's own
+        for parameter in found:
+            known = isinstance(getattr(parameter, "get_runtime_param", None), _Quick)
+            if not known and hasattr(parameter, "get_runtime_param") and hasattr(parameter, "type_descriptor"):
+                parameter.get_runtime_param = _Quick(parameter)
+        return found
+
+    command.get_params = get_params
     return command
 
 

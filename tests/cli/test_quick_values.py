@@ -59,7 +59,7 @@ def test_every_option_of_every_command_as_typer_has_it(name: str) -> None:
     alone.command(name)(TABLE._functions[name])
     thorough, quick = get_command(alone), with_quick_values(get_command(alone))
     with thorough.make_context(name, [], resilient_parsing=True) as context:
-        for own, other in zip(quick.params, thorough.params, strict=True):
+        for own, other in zip(quick.get_params(context), thorough.get_params(context), strict=True):
             for value in VALUES:
                 assert outcome(own, context, value) == outcome(other, context, value), (own.name, value)
 
