@@ -25,7 +25,7 @@ Points = NDArray[np.unsignedinteger[Any]]
 LETTER, NUMERIC, CONNECTOR, MID_LETTER, MID_NUMBER, SOLO, UNCOMMON, BARE = (1 << bit for bit in range(8))
 WORDISH = LETTER | NUMERIC | CONNECTOR
 
-_WORDISH_CLASSES = {
+WORDISH_CLASSES = {
     "ALetter": LETTER,
     "Hebrew_Letter": LETTER,
     "Numeric": NUMERIC,
@@ -82,7 +82,7 @@ class Classes:
 
 def _flags(word: str, category: str) -> int:
     spoken = category in ("L", "N")
-    flags = _WORDISH_CLASSES.get(word, 0) | _MID_CLASSES.get(word, 0)
+    flags = WORDISH_CLASSES.get(word, 0) | _MID_CLASSES.get(word, 0)
     if flags & WORDISH and not spoken:
         flags |= BARE
     if spoken and not flags & WORDISH:

@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 import secrets
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colloc.records import Int64Array, UInt32Array, UInt64Array
 
@@ -35,6 +37,37 @@ class KeyTable:
     def nbytes(self) -> int:
         """Bytes held."""
         return self._values.nbytes + sum(keys.nbytes for keys in self._keys)
+
+    @property
+    def arrays(self) -> tuple[NDArray[Any], ...]:
+        """Keys, one array a word, and values: what compiled loops read, and write into while there is `room`."""
+        return (*self._keys, self._values)
+
+    @property
+    def multipliers(self) -> list[np.uint64]:
+        """One a word of the keys."""
+        return self._multipliers
+
+    @property
+    def shift(self) -> int:
+        """64 less the binary logarithm of the size."""
+        return int(self._shift)
+
+    @property
+    def room(self) -> int:
+        """How many keys may be put in before the table has to grow."""
+        return len(self._values) // 2 - self._count
+
+    def note(self, entered: int) -> None:
+        """That so many keys have been written into the arrays."""
+        self._count += entered
+
+    def grow(self) -> None:
+        """Make room for twice as many keys."""
+        used = self._values != ABSENT
+        old_keys, old_values = [table[used] for table in self._keys], self._values[used]
+        self._make(2 * len(self._values))
+        self._insert(old_keys, old_values)
 
     def _slots(self, keys: list[UInt64Array]) -> Int64Array:
         mixed = keys[0] * self._multipliers[0]
@@ -70,14 +103,8 @@ class KeyTable:
 
     def add(self, keys: list[UInt64Array], values: UInt32Array) -> None:
         """Put in keys that are distinct and not yet there."""
-        size = len(self._values)
-        while 2 * (self._count + len(values)) > size:
-            size *= 2
-        if size > len(self._values):
-            used = self._values != ABSENT
-            old_keys, old_values = [table[used] for table in self._keys], self._values[used]
-            self._make(size)
-            self._insert(old_keys, old_values)
+        while self.room < len(values):
+            self.grow()
         self._insert(keys, values)
 
     def _insert(self, keys: list[UInt64Array], values: UInt32Array) -> None:

@@ -17,6 +17,8 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.kernels.numbers import UNKEYED, number_tokens
+from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, Segments, UInt32Array, UInt64Array
 from colloc.tokens.arrays import distinct
 from colloc.tokens.classes import Points, code_points
@@ -25,9 +27,12 @@ from colloc.tokens.keytable import ABSENT, KeyTable
 _CODED_WORD: Final = 8
 _PLAIN_WORD: Final = 3
 _PART: Final = 1 << 15
+_TABLES: Final = 4
 _MASKS: Final = np.array([(1 << (8 * n)) - 1 for n in range(_CODED_WORD + 1)], np.uint64)
 _BYTES_A_STRING: Final = 160
 """A short string, its number and its share of the dict, roughly."""
+
+Codes = NDArray[np.uint8]
 
 
 class Alphabet:
@@ -47,7 +52,7 @@ class Alphabet:
         """Bytes held."""
         return self._codes.nbytes
 
-    def encode(self, points: Points) -> NDArray[np.uint8]:
+    def encode(self, points: Points) -> Codes:
         """Codes of code points, shape (n,), with room for reading 16 bytes from each place: shape (n + 16,)."""
         coded = np.zeros(len(points) + 2 * _CODED_WORD, np.uint8)
         coded[: len(points)] = points
@@ -104,12 +109,54 @@ class TypeNumberer:
 
     def number(self, segments: Segments) -> UInt32Array:
         """Local type number of each token, shape (n_tokens,)."""
+        numbers = np.full(len(segments.starts), ABSENT, np.uint32)
+        if len(numbers):
+            points = code_points(segments.text)
+            number = self._number_in_a_loop if compiled() else self._number_arrays
+            number(segments, points, self._alphabet.encode(points), numbers)
+            self._measure()
+        return numbers
+
+    def _number_in_a_loop(self, segments: Segments, points: Points, coded: Codes, numbers: UInt32Array) -> None:
+        """Write the numbers with a compiled loop, which stops where a table must grow."""
+        tables = (self._short, self._long, self._plain)
+        # Code points are asked for only where a character has no code.
+        spelled = points.astype(np.uint32) if not coded[: len(points)].all() else np.zeros(0, np.uint32)
+        fresh, slots = np.empty(len(numbers), np.int64), np.empty(len(numbers), np.int64)
+        multipliers = np.array(
+            [table.multipliers[word % len(table.multipliers)] for table in tables for word in (0, 1)]
+        )
+        done = 0
+        while True:
+            base, first = len(self._numbers), done
+            room = np.array([*(table.room for table in tables), 0], np.int64)
+            before = room.copy()
+            shifts = np.array([table.shift for table in tables], np.int64)
+            arrays = [array for table in tables for array in table.arrays]
+            done = number_tokens(
+                *(coded, spelled, segments.starts, segments.ends, first, base),
+                *(*arrays, multipliers, shifts, room, numbers, fresh, slots),
+            )
+            count = int(room[UNKEYED])
+            final = np.array(self._spelled_numbers(segments, fresh[:count]), np.uint32)
+            # Tokens told twice, and forms that are canonically equivalent, share a number.
+            if count and not np.array_equal(final, np.arange(base, base + count)):
+                told = numbers[first:done]
+                moved = told >= base
+                told[moved] = final[told[moved] - np.uint32(base)]
+            for place, table in enumerate(tables):
+                table.note(int(before[place] - room[place]))
+                entered = np.flatnonzero(slots[:count] % _TABLES == place)
+                table.arrays[-1][slots[entered] // _TABLES] = final[entered]
+            if done == len(numbers):
+                return
+            for place, table in enumerate(tables):
+                if room[place] == 0:
+                    table.grow()
+
+    def _number_arrays(self, segments: Segments, points: Points, coded: Codes, numbers: UInt32Array) -> None:
+        """Write the numbers with array operations."""
         starts, lengths = segments.starts, segments.ends - segments.starts
-        numbers = np.full(len(starts), ABSENT, np.uint32)
-        if not len(starts):
-            return numbers
-        points = code_points(segments.text)
-        coded = self._alphabet.encode(points)
         uncoded = _tokens_with_zeros(coded[: len(points)], starts, segments.ends)
         # A view at every byte: the word that begins at a token's start is one element.
         words = np.ndarray((len(coded) - _CODED_WORD + 1,), "<u8", coded, strides=(1,))
@@ -131,8 +178,6 @@ class TypeNumberer:
             _look_up(self._plain, plain, lambda tokens: _plain_keys(points, starts, lengths, tokens), numbers),
         ]
         self._number_new(segments, numbers, [unknown for unknown in looked_up if unknown is not None])
-        self._measure()
-        return numbers
 
     def _number_new(self, segments: Segments, numbers: UInt32Array, unknown: list[_Unknown]) -> None:
         """Give numbers to what no table knows, in the order of the text."""
@@ -143,17 +188,17 @@ class TypeNumberer:
         tokens = np.flatnonzero(listed)
         if not len(tokens):
             return
-        spans = zip(segments.starts[tokens].tolist(), segments.ends[tokens].tolist(), strict=True)
-        numbers[tokens] = self._type_numbers([segments.text[start:end] for start, end in spans])
+        numbers[tokens] = self._spelled_numbers(segments, tokens)
         for part in unknown:
             values = numbers[part.first]
             part.table.add(part.keys, values)
             numbers[part.tokens] = values[part.inverse]
 
-    def _type_numbers(self, surfaces: list[str]) -> list[int]:
-        """Numbers of the types of surface forms; those that are canonically equivalent share one."""
+    def _spelled_numbers(self, segments: Segments, tokens: Int64Array) -> list[int]:
+        """Numbers of the types of some tokens as strings; those that are canonically equivalent share one."""
+        spans = zip(segments.starts[tokens].tolist(), segments.ends[tokens].tolist(), strict=True)
         known, count, result = self._numbers, len(self._numbers), []
-        for surface in surfaces:
+        for surface in [segments.text[start:end] for start, end in spans]:
             key = surface if surface.isascii() else unicodedata.normalize("NFC", surface)
             number = known.setdefault(key, count)
             if number == count:

@@ -13,9 +13,8 @@ from colloc.tokens.dictionaries import check_library, dictionary_words, find_run
 from colloc.tokens.patterns import compiled, pattern_tokens
 from colloc.tokens.sentences import sentence_breaks
 from colloc.tokens.signs import find_marks, find_tags
-from colloc.tokens.words import word_tokens
+from colloc.tokens.words import HYPHENS, word_tokens
 
-_HYPHENS = (0x2D, 0x2010, 0x2011)
 _Spans = tuple[Int64Array, Int64Array]
 
 
@@ -101,9 +100,9 @@ class Segmenter:
         settings = self.settings
         hyphens: Int64Array | None = None
         if settings.tailored and settings.hyphens == "keep":
-            found = points == _HYPHENS[0]
+            found = points == HYPHENS[0]
             if points.dtype != np.uint8:
-                found |= (points == _HYPHENS[1]) | (points == _HYPHENS[2])
+                found |= (points == HYPHENS[1]) | (points == HYPHENS[2])
             hyphens = np.flatnonzero(found)
         words = word_tokens(kinds, hyphens)
         if settings.tailored and settings.scripts == "dictionary":

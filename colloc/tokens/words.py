@@ -10,10 +10,13 @@ characters occur.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 
-from colloc.records import Int64Array
+from colloc.kernels import words as loop
+from colloc.kernels.switch import compiled
+from colloc.records import Int64Array, UInt32Array
 from colloc.tokens.arrays import any_within
 from colloc.tokens.attaching import Attached, find_attached
 from colloc.tokens.classes import (
@@ -25,6 +28,7 @@ from colloc.tokens.classes import (
     SOLO,
     UNCOMMON,
     WORDISH,
+    WORDISH_CLASSES,
     Kinds,
     Mask,
     classes,
@@ -32,6 +36,8 @@ from colloc.tokens.classes import (
     kinds_of,
     translated,
 )
+
+HYPHENS = (0x2D, 0x2010, 0x2011)
 
 
 @dataclass
@@ -133,8 +139,11 @@ def word_tokens(kinds: Kinds, hyphens: Int64Array | None = None) -> tuple[Int64A
     """
     if not len(kinds):
         return np.zeros(0, np.int64), np.zeros(0, np.int64)
-    flags = translated(kinds, classes().word_flags)
-    joins = _join(kinds, flags, hyphens)
+    if compiled():
+        starts, ends = np.empty(len(kinds) + 1, np.int64), np.empty(len(kinds) + 1, np.int64)
+        count = loop.word_spans(kinds, _traits(), np.zeros(0, np.int64) if hyphens is None else hyphens, starts, ends)
+        return starts[:count], ends[:count]
+    joins = _join(kinds, translated(kinds, classes().word_flags), hyphens)
     first, last = joins.tokenish.copy(), joins.tokenish.copy()
     first[1:] &= ~joins.joined
     last[:-1] &= ~joins.joined
@@ -151,6 +160,42 @@ def word_tokens(kinds: Kinds, hyphens: Int64Array | None = None) -> tuple[Int64A
         silent = suspects[~any_within(kinds, classes().spoken, starts[suspects], ends[suspects])]
         starts, ends = np.delete(starts, silent), np.delete(ends, silent)
     return starts, ends
+
+
+@cache
+def _traits() -> UInt32Array:
+    """What the compiled loop is told of each kind."""
+    tables = classes()
+    bits = {
+        "ALetter": loop.LETTER,
+        "Hebrew_Letter": loop.LETTER | loop.HEBREW,
+        "Numeric": loop.NUMERIC,
+        "ExtendNumLet": loop.CONNECTOR | loop.UNDERSCORE,
+        "Katakana": loop.CONNECTOR | loop.KATAKANA,
+        "MidLetter": loop.MID_LETTER,
+        "MidNum": loop.MID_NUMBER,
+        "MidNumLet": loop.MID_LETTER | loop.MID_NUMBER,
+        "Single_Quote": loop.MID_LETTER | loop.MID_NUMBER | loop.SINGLE_QUOTE,
+        "Double_Quote": loop.DOUBLE_QUOTE,
+        "Extend": loop.ATTACHED,
+        "Format": loop.ATTACHED,
+        "ZWJ": loop.ATTACHED | loop.JOINER,
+        "CR": loop.NEWLINE,
+        "LF": loop.NEWLINE,
+        "Newline": loop.NEWLINE,
+    }
+    traits = np.zeros(256, np.uint32)
+    for value, bit in bits.items():
+        traits[tables.word[value]] |= np.uint32(bit)
+    wordish = tables.words(*WORDISH_CLASSES)
+    for which, bit in (
+        (tables.spoken, loop.SPOKEN),
+        (tables.pictographic, loop.PICTOGRAPH),
+        (wordish != tables.spoken, loop.ODD),
+    ):
+        traits[which] |= np.uint32(bit)
+    traits[tables.kind_of[list(HYPHENS)]] |= np.uint32(loop.HYPHEN)
+    return traits
 
 
 def word_boundaries(text: str) -> Int64Array:

@@ -15,8 +15,10 @@ from hypothesis import given, settings
 from colloc.tokens.classes import classes, code_points, kinds_of
 from colloc.tokens.make_classes import make_table
 from colloc.tokens.sentences import sentence_boundaries
-from colloc.tokens.words import word_boundaries
+from colloc.tokens.words import word_boundaries, word_tokens
 from tests.tokens import slow_rules, texts
+
+pytestmark = pytest.mark.usefixtures("both_ways")
 
 AUXILIARY = Path("/usr/share/unicode/auxiliary")
 
@@ -58,6 +60,15 @@ def test_every_official_case(name: str, boundaries: Callable[[str], np.ndarray],
     differing = {text: boundaries(text).tolist() for text, breaks in cases if boundaries(text).tolist() != breaks}
     older = {text for text, breaks in cases if CHANGED_IN_17.get(text, breaks) != breaks}
     assert differing == {text: breaks for text, breaks in CHANGED_IN_17.items() if text in older}
+
+
+def test_words_of_every_official_case() -> None:
+    """Segments between the boundaries of the file that hold a letter or digit, and no others."""
+    for text, listed in official_cases("WordBreakTest.txt"):
+        breaks = CHANGED_IN_17.get(text, listed)
+        spoken = [(start, end) for start, end in pairwise(breaks) if regex.search(r"[\p{L}\p{N}]", text[start:end])]
+        starts, ends = word_tokens(kinds_of(code_points(text)))
+        assert list(zip(starts.tolist(), ends.tolist(), strict=True)) == spoken, text
 
 
 def test_the_generated_text_reaches_every_class() -> None:

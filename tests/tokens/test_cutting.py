@@ -15,6 +15,8 @@ from colloc.tokens.cutting import is_hard_break, safe_cut
 from colloc.tokens.segmenter import Segmenter
 from tests.tokens import texts
 
+pytestmark = pytest.mark.usefixtures("both_ways")
+
 CHOICES = [
     SegmentSettings(),
     SegmentSettings(tailored=False),

@@ -19,6 +19,8 @@ from colloc.tokens.numbering import TypeNumberer
 from colloc.tokens.segmenter import Segmenter
 from tests.tokens import texts
 
+pytestmark = pytest.mark.usefixtures("both_ways")
+
 
 def segments_of(tokens: list[str]) -> Segments:
     """A stretch that holds these tokens, a space between them, as a token pattern could cut it."""

@@ -17,6 +17,8 @@ from colloc.errors import MissingExtraError
 from colloc.settings import SegmentSettings
 from colloc.tokens.segmenter import Segmenter
 
+pytestmark = pytest.mark.usefixtures("both_ways")
+
 
 def words(text: str, **options: Any) -> list[str]:
     segments = Segmenter(SegmentSettings(**options)).segment(text)

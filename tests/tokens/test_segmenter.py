@@ -16,6 +16,8 @@ from colloc.tokens.abbreviations import ALWAYS, BEFORE_NUMBERS, INITIALS
 from colloc.tokens.segmenter import Segmenter
 from tests.tokens import slow_rules, texts
 
+pytestmark = pytest.mark.usefixtures("both_ways")
+
 
 def segment(text: str, **options: object) -> Segments:
     return Segmenter(SegmentSettings(**options)).segment(text)  # type: ignore[arg-type]

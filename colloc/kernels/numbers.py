@@ -1,0 +1,163 @@
+"""Tokens -> numbers through hash tables of spelled-out keys: the loop behind ``colloc.tokens.numbering``."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colloc.kernels.kernel import kernel
+
+SHORT, LONG, PLAIN, UNKEYED = range(4)
+"""Tables by their place; what cannot be spelled as a key has none."""
+_CODED_WORD = 8
+_PLAIN_WORD = 3
+_ABSENT = np.uint32(0xFFFFFFFF)
+_ONES = np.uint64(0x0101010101010101)
+_HIGHS = np.uint64(0x8080808080808080)
+_ALL = np.uint64(0xFFFFFFFFFFFFFFFF)
+
+
+@kernel(
+    "int64(uint8[::1], uint32[::1], Array(int64, 1, 'C', True), Array(int64, 1, 'C', True), int64, int64, "
+    "uint64[::1], uint32[::1], uint64[::1], uint64[::1], uint32[::1], uint64[::1], uint64[::1], uint32[::1], "
+    "uint64[::1], int64[::1], int64[::1], uint32[::1], int64[::1], int64[::1])"
+)
+def number_tokens(
+    coded: NDArray[np.uint8],
+    points: NDArray[np.uint32],
+    starts: NDArray[Any],
+    ends: NDArray[Any],
+    first: int,
+    base: int,
+    short_keys: NDArray[np.uint64],
+    short_values: NDArray[np.uint32],
+    long_keys: NDArray[np.uint64],
+    long_more: NDArray[np.uint64],
+    long_values: NDArray[np.uint32],
+    plain_keys: NDArray[np.uint64],
+    plain_more: NDArray[np.uint64],
+    plain_values: NDArray[np.uint32],
+    multipliers: NDArray[np.uint64],
+    shifts: NDArray[Any],
+    room: NDArray[Any],
+    numbers: NDArray[np.uint32],
+    fresh: NDArray[Any],
+    slots: NDArray[Any],
+) -> int:
+    """Number tokens from ``first`` on until all are done or a table has no room; return where it stopped.
+
+    The k-th token that no table knows gets the number ``base`` + k, also in the table that it is entered
+    in, and is told: ``room[3]`` counts them.
+
+    Parameters
+    ----------
+    coded : uint8 array, shape (n + 16,)
+        A byte for each character of the text, 0 where it has no code.
+    points : uint32 array, shape (n,) or (0,)
+        Code points; may be left out where no character lacks a code.
+    starts, ends : int64 arrays, shape (n_tokens,)
+    multipliers : uint64 array, shape (6,)
+        Two for each table, the second of the short ones unused.
+    shifts : int64 array, shape (3,)
+        64 less the binary logarithm of each table's size.
+    room : int64 array, shape (4,)
+        How many keys each table may take, counted down; and the count of tokens told.
+    numbers : uint32 array, shape (n_tokens,)
+    fresh, slots : int64 arrays, shape (n_tokens,)
+        Tokens told, ascending, and where they were entered: 4 * slot + table.
+    """
+    n_fresh = room[UNKEYED]
+    for token in range(first, len(starts)):
+        start = starts[token]
+        length = ends[token] - start
+        table = UNKEYED
+        key = np.uint64(0)
+        more = np.uint64(0)
+        if length <= 2 * _CODED_WORD:
+            for k in range(_CODED_WORD):
+                key |= np.uint64(coded[start + k]) << np.uint64(8 * k)
+            mask = _ALL
+            if length < _CODED_WORD:
+                mask = ~(_ALL << np.uint64(8 * length))
+            key &= mask
+            # A byte that is 0 inside the token: Mycroft's test, which is exact as to whether there is one.
+            filled = key | ~mask
+            zeros = (filled - _ONES) & ~filled & _HIGHS
+            table = SHORT
+            if length > _CODED_WORD:
+                table = LONG
+                for k in range(_CODED_WORD):
+                    more |= np.uint64(coded[start + _CODED_WORD + k]) << np.uint64(8 * k)
+                mask = _ALL
+                if length < 2 * _CODED_WORD:
+                    mask = ~(_ALL << np.uint64(8 * (length - _CODED_WORD)))
+                more &= mask
+                filled = more | ~mask
+                zeros |= (filled - _ONES) & ~filled & _HIGHS
+            if zeros != np.uint64(0):
+                table = UNKEYED
+                if length <= 2 * _PLAIN_WORD:
+                    table = PLAIN
+                    key = np.uint64(0)
+                    more = np.uint64(0)
+                    for k in range(length):
+                        point = np.uint64(points[start + k])
+                        if point == np.uint64(0):
+                            table = UNKEYED
+                        if k < _PLAIN_WORD:
+                            key |= point << np.uint64(21 * k)
+                        else:
+                            more |= point << np.uint64(21 * (k - _PLAIN_WORD))
+        if table == UNKEYED:
+            numbers[token] = base + n_fresh
+            fresh[n_fresh] = token
+            slots[n_fresh] = UNKEYED
+            n_fresh += 1
+            continue
+        mixed = key * multipliers[2 * table]
+        if table == SHORT:
+            last = len(short_values) - 1
+            slot = np.int64(mixed >> np.uint64(shifts[SHORT]))
+            while short_values[slot] != _ABSENT and short_keys[slot] != key:
+                slot = (slot + 1) & last
+            value = short_values[slot]
+        else:
+            mixed ^= mixed >> np.uint64(32)
+            mixed += more
+            mixed *= multipliers[2 * table + 1]
+            slot = np.int64(mixed >> np.uint64(shifts[table]))
+            if table == LONG:
+                last = len(long_values) - 1
+                while long_values[slot] != _ABSENT and (long_keys[slot] != key or long_more[slot] != more):
+                    slot = (slot + 1) & last
+                value = long_values[slot]
+            else:
+                last = len(plain_values) - 1
+                while plain_values[slot] != _ABSENT and (plain_keys[slot] != key or plain_more[slot] != more):
+                    slot = (slot + 1) & last
+                value = plain_values[slot]
+        if value == _ABSENT:
+            if room[table] == 0:
+                room[UNKEYED] = n_fresh
+                return token
+            room[table] -= 1
+            value = np.uint32(base + n_fresh)
+            if table == SHORT:
+                short_keys[slot] = key
+                short_values[slot] = value
+            elif table == LONG:
+                long_keys[slot] = key
+                long_more[slot] = more
+                long_values[slot] = value
+            else:
+                plain_keys[slot] = key
+                plain_more[slot] = more
+                plain_values[slot] = value
+            fresh[n_fresh] = token
+            slots[n_fresh] = 4 * slot + table
+            n_fresh += 1
+        numbers[token] = value
+    room[UNKEYED] = n_fresh
+    return len(starts)
