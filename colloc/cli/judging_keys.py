@@ -160,6 +160,7 @@ def _progress(place: int, total: int, verdicts: dict[int, Verdict]) -> str:
 
 def card(row: Candidate, measures: Sequence[str]) -> list[str]:
     """The candidate with its numbers, in a few lines."""
+    from colloc.answers.expressions.measures import SHOWN
     from colloc.answers.plain import number_text, shown_text
 
     figures = row.figures
@@ -172,8 +173,8 @@ def card(row: Candidate, measures: Sequence[str]) -> list[str]:
     counted = f"{figures.joint:,} times in {figures.documents:,} documents"
     if expected is not None:
         counted += f", {number_text(float(expected))} by chance"
-    names = [name for name in (*measures, *figures.scores) if name in figures.scores]
-    scores = [f"{name} {number_text(figures.scores[name])}" for name in dict.fromkeys(names)]
+    shown = SHOWN if row.matter.kind == "expression" else measures
+    scores = [f"{name} {number_text(figures.scores[name])}" for name in shown if name in figures.scores]
     return [f"  {shown_text(row.matter.text)}", f"  {counted}; {', '.join(words)}", f"  {'   '.join(scores)}"]
 
 

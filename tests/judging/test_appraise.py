@@ -174,6 +174,6 @@ def test_export_by_command(store: Path, tmp_path: Path, capsys: pytest.CaptureFi
         *("datapackage.json", "entries.csv", "examples.csv"),
     ]
     assert main(["export", str(store), str(tmp_path / "e.pdf")]) == 2
-    assert "say in which format" in capsys.readouterr().err
+    assert "no format has the ending '.pdf'" in capsys.readouterr().err
     assert main(["export", str(store), str(tmp_path / "e.pdf"), "-f", "pdf"]) == 2
     assert main(["export", str(store), str(tmp_path / "e.ttl"), "--base-iri", "no iri"]) == 2

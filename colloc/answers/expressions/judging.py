@@ -61,7 +61,10 @@ def judge(table: Gathered, asked: Asked, matched: Int64Array | None = None) -> J
     options, first = asked.options, table.edges[1]
     own = np.arange(first, table.edges[-1])
     held = bonds(table)
-    fit = table.spread.documents >= asked.min_docs
+    lengths = table.lengths[first:]
+    # what was looked up on top of the frequent sequences, or is longer than they, is part of no rule
+    fit = (table.counts[first:] >= options.min_count) & (lengths <= options.max_words + 1)
+    fit &= table.spread.documents >= asked.min_docs
     if options.names == "drop":
         # NaN, where every word begins a sentence or is a single letter (headings), compares as false
         fit &= table.spread.capitals < NAME_SHARE
@@ -70,7 +73,6 @@ def judge(table: Gathered, asked: Asked, matched: Int64Array | None = None) -> J
     whole = wholes(table, fit) if options.fragments == "fold" else own
     fragment, best, fragments = folded_into(whole, np.where(fit, holding(table, held.weakest), -np.inf), first)
     complete = completeness(table)
-    lengths = table.lengths[first:]
     listed = fit & (whole == own) & (lengths >= options.min_words) & (lengths <= options.max_words)
     if options.common == "drop":
         listed &= ~only_common(table)
@@ -88,7 +90,8 @@ def holding(table: Gathered, weakest: FloatArray) -> FloatArray:
     counts = table.counts[table.edges[1] :]
     alone = table.spread.documents.max(initial=0) < 2
     elsewhere = counts if alone else counts - table.spread.largest
-    result: FloatArray = weakest * np.log2(1.0 + elsewhere)
+    with np.errstate(invalid="ignore"):  # minus infinity times 0: what was looked up and never occurs
+        result: FloatArray = weakest * np.log2(1.0 + elsewhere)
     return result
 
 

@@ -16,6 +16,7 @@ from colloc.answers.expressions.judging import Judged, in_order, judge, texts
 from colloc.answers.expressions.orders import in_any_order
 from colloc.answers.expressions.scoring import c_values, nesting
 from colloc.answers.expressions.settings import Asked, ExpressionOptions, resolve, shown_columns
+from colloc.answers.expressions.sureness import split_intervals
 from colloc.answers.patterns import matches
 from colloc.counts.runs import Column
 from colloc.counts.sequences.growing import Grower, growing
@@ -101,7 +102,7 @@ def _ranked(
     judged = judge(table, asked, matched)
     first = table.edges[1]
     rows = np.flatnonzero(judged.listed) + first
-    scores = _scores(table, judged)
+    scores = scores_of(table, judged)
     rank = asked.options.rank
     if rank == "specific_interaction":
         values = np.full(len(judged.listed), np.nan)
@@ -118,14 +119,32 @@ def _ranked(
     more = {name: values if name == "fillers" else np.array(values) for name, values in more.items()}
     if "specific_interaction" in shown and rank != "specific_interaction":
         more["specific_interaction"] = interactions(grower, table, rows)
-    if "any_order" in shown and not asked.options.slots:
-        more["any_order"] = in_any_order(grower, table, rows)
+    more |= looked_up(grower, table, judged, rows, shown)
     if matched is not None:
         more["pattern_count"] = matched[rows - first]
     return answer.adding(more)
 
 
-def _scores(table: Gathered, judged: Judged) -> dict[str, NDArray[Any]]:
+def looked_up(
+    grower: Grower, table: Gathered, judged: Judged, rows: Int64Array, names: Sequence[str]
+) -> dict[str, NDArray[Any]]:
+    """Those of the named columns that go back to the stream, for some rows of the table; no list is ranked by them."""
+    found: dict[str, NDArray[Any]] = {}
+    if "any_order" in names and contiguous(table):
+        found["any_order"] = in_any_order(grower, table, rows)
+    if {"split_low", "split_high"} & set(names):
+        held, here = judged.held, rows - table.edges[1]
+        low, high = split_intervals(grower, table, rows, held.weakest[here], held.cut[here])
+        found |= {"split_low": low, "split_high": high}
+    return found
+
+
+def contiguous(table: Gathered) -> bool:
+    """Whether no sequence of the table has an open slot."""
+    return all(level.contiguous for level in table.levels)
+
+
+def scores_of(table: Gathered, judged: Judged) -> dict[str, NDArray[Any]]:
     """By name, for all sequences of two words and more."""
     scores: dict[str, NDArray[Any]] = {
         "count": table.counts[table.edges[1] :],
@@ -135,7 +154,7 @@ def _scores(table: Gathered, judged: Judged) -> dict[str, NDArray[Any]]:
         "specific_correlation": judged.held.correlation,
         "best_split_g2": judged.held.g2,
     }
-    if all(level.contiguous for level in table.levels):
+    if contiguous(table):
         scores["c_value"], scores["c_value_length"] = c_values(table, nesting(table, judged.fit))
     return scores
 

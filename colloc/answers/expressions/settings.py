@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Any, Literal, get_args
+from typing import Any, Literal
 
+from colloc.answers.expressions.measures import RANKS
 from colloc.answers.questions import built_spec
 from colloc.counts.sequences.sharing import MOST_WORDS
 from colloc.errors import UsageError
@@ -15,26 +16,32 @@ from colloc.store.connection import Store
 from colloc.store.documents import document_count
 
 Treatment = Literal["drop", "keep"]
-Rank = Literal[
-    "strength",
-    "weakest_split",
-    "specific_correlation",
-    "specific_interaction",
-    "best_split_g2",
-    "c_value",
-    "c_value_length",
-    "count",
-    "documents",
-]
-RANKS: tuple[str, ...] = get_args(Rank)
 CONTIGUOUS_ONLY = ("c_value", "c_value_length", "any_order")
 """Columns that frames with open slots do not have."""
 PATTERNS_ONLY = ("pattern_count",)
 FRAMES_ONLY = ("fillers", "filler_kinds", "filler_entropy")
 COLUMNS = (
     *("expression", "words", "count", "documents", "dp_norm", "capitals", "strength", "completeness", "weakest_split"),
-    *("cut", "specific_correlation", "specific_interaction", "best_split_g2", "c_value", "c_value_length", "any_order"),
-    *("pattern_count", "fragment", "fragment_count", "fragments", "filler_kinds", "filler_entropy", "fillers"),
+    *(
+        "split_low",
+        "split_high",
+        "cut",
+        "specific_correlation",
+        "specific_interaction",
+        "best_split_g2",
+        "c_value",
+        "c_value_length",
+    ),
+    *(
+        "any_order",
+        "pattern_count",
+        "fragment",
+        "fragment_count",
+        "fragments",
+        "filler_kinds",
+        "filler_entropy",
+        "fillers",
+    ),
 )
 """All columns of an answer, in their order:
 
@@ -48,6 +55,8 @@ COLUMNS = (
     See `colloc.answers.expressions.judging` and `colloc.answers.expressions.folding`.
 ``weakest_split``, ``cut``
     PMI in bits across the cut where its halves cling least, and the number of words left of that cut.
+``split_low``, ``split_high``
+    Its 95 % interval over documents.
 ``specific_correlation``, ``specific_interaction``
     Van de Cruys 2011, bits.
 ``best_split_g2``

@@ -8,14 +8,16 @@ from typing import Any
 
 from colloc.answers.around import around
 from colloc.answers.columns import Columns
-from colloc.answers.judging.figures import EXPRESSION_SCORE, Figures, figures
+from colloc.answers.expressions.measures import MEASURES as EXPRESSION_MEASURES
+from colloc.answers.expressions.measures import SHOWN as SHOWN_OF_EXPRESSIONS
+from colloc.answers.judging.figures import Figures, figures, figures_of_expressions
 from colloc.answers.judging.matters import Matter, make_matter
 from colloc.answers.pairs import pairs
 from colloc.answers.questions import PairOptions, measure_names, resolve_spec
 from colloc.errors import UsageError
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store.connection import Store
-from colloc.store.decisions import Decision, Kind, newest
+from colloc.store.decisions import Decision, Key, Kind, newest
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -81,14 +83,23 @@ def candidates(
     options = options or PairOptions()
     _, margins = resolve_spec(store, options)
     _, measures = measure_names(choice.measure, choice.show, margins)
-    found = list(_matters(store, choice, options, jobs=jobs, memory=memory, progress=progress))
+    resources: dict[str, Any] = {"jobs": jobs, "memory": memory, "progress": progress}
+    ranked: dict[Key, tuple[Matter, Figures]] = {}
+    if choice.expressions and not choice.given:
+        ranked = _expressions(store, choice, options, **resources)
+        found = [matter for matter, _ in ranked.values()]
+    else:
+        found = list(_matters(store, choice, options, **resources))
     decided = {key: value for (key, who), value in newest(store).items() if who == judge and judge}
     decided = {key: value for key, value in decided.items() if value[1].verdict != "withdrawn"}
     unique = {matter.key: matter for matter in reversed(found)}
     chosen = [matter for matter in dict.fromkeys(unique[matter.key] for matter in found)]
     if not again:
         chosen = [matter for matter in chosen if matter.key not in decided]
-    numbers = figures(store, chosen, measures, options, jobs=jobs, memory=memory, progress=progress)
+    if ranked:
+        numbers = [ranked[matter.key][1] for matter in chosen]
+    else:
+        numbers = figures(store, chosen, measures, options, **resources)
     rows = []
     for matter, figure in zip(chosen, numbers, strict=True):
         number, decision = decided.get(matter.key, (0, None))
@@ -99,9 +110,6 @@ def candidates(
 def _matters(store: Store, choice: Choice, options: PairOptions, **resources: Any) -> Iterable[Matter]:
     if choice.given:
         yield from (make_matter(store, words, choice.kind, options.layer) for words in choice.given)
-        return
-    if choice.expressions:
-        yield from _expressions(store, choice, options, **resources)
         return
     asked: dict[str, Any] = {
         "measure": choice.measure,
@@ -116,7 +124,10 @@ def _matters(store: Store, choice: Choice, options: PairOptions, **resources: An
         yield Matter(answer.settings["layer"], kind, (first, second))
 
 
-def _expressions(store: Store, choice: Choice, options: PairOptions, **resources: Any) -> Iterable[Matter]:
+def _expressions(
+    store: Store, choice: Choice, options: PairOptions, **resources: Any
+) -> dict[Key, tuple[Matter, Figures]]:
+    """The ranking of expressions, in its order, with what it says of each."""
     from colloc.answers.expressions.ranking import expressions
     from colloc.answers.expressions.settings import ExpressionOptions
 
@@ -124,13 +135,15 @@ def _expressions(store: Store, choice: Choice, options: PairOptions, **resources
         raise UsageError("expressions have a ranking of their own: leave out words and measure")
     least = DEFAULT_MIN_COUNT if choice.min_count is None else choice.min_count
     wanted = ExpressionOptions(layer=options.layer, where=options.where, inside=options.inside, min_count=least)
-    answer = expressions(store, options=wanted, show=(), limit=choice.limit, **resources)
+    answer = expressions(store, options=wanted, show=tuple(EXPRESSION_MEASURES), limit=choice.limit, **resources)
     layer = answer.settings["layer"]
-    for text in answer["expression"].tolist():
-        yield make_matter(store, text.split(" "), "expression", layer)
+    matters = [make_matter(store, text.split(" "), "expression", layer) for text in answer["expression"].tolist()]
+    numbers = figures_of_expressions(store, matters, answer, answer.settings["where"])
+    return {matter.key: (matter, figure) for matter, figure in zip(matters, numbers, strict=True)}
 
 
 def shown_scores(rows: Sequence[Candidate], measures: Sequence[str]) -> list[str]:
-    """Names of the score columns that some row fills."""
+    """Names of the score columns that some row fills, of those that judges are shown."""
     names = list(measures) if any(row.matter.kind != "expression" for row in rows) else []
-    return names + ([EXPRESSION_SCORE] if any(row.matter.kind == "expression" for row in rows) else [])
+    there = {name for row in rows if row.matter.kind == "expression" for name in row.figures.scores}
+    return names + [name for name in SHOWN_OF_EXPRESSIONS if name in there]

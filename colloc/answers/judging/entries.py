@@ -6,9 +6,11 @@ import hashlib
 import json
 from collections.abc import Mapping, Sequence
 from dataclasses import asdict, dataclass
-from typing import Any
+from typing import Any, Literal
 
-from colloc.answers.judging.figures import EXPRESSION_SCORE, Figures, figures
+from colloc.answers.expressions.measures import MEASURES as EXPRESSION_MEASURES
+from colloc.answers.expressions.measures import SCORES
+from colloc.answers.judging.figures import Figures, figures
 from colloc.answers.judging.listing import standing
 from colloc.answers.judging.matters import Matter, matter_of
 from colloc.answers.questions import PairOptions, measure_names, resolve_spec
@@ -61,12 +63,22 @@ class Entry:
 
 @dataclass(frozen=True, slots=True)
 class ScoreFacts:
-    """What a score is: for people and for the formats that describe their properties."""
+    """What a score is: for people and for the formats that describe their properties.
+
+    Attributes
+    ----------
+    kind : {"pair", "expression"}
+        What has it.
+    bond : bool
+        Whether it says how well the words hold together, as a score of collocation does.
+    """
 
     name: str
     title: str
     formula: str
     unit: str
+    kind: Literal["pair", "expression"] = "pair"
+    bond: bool = True
 
 
 @dataclass(frozen=True, slots=True)
@@ -113,7 +125,7 @@ def accepted_entries(
     Parameters
     ----------
     measures : sequence of str
-        Scores of pairs; those shown by default when not given. Expressions have a score of their own.
+        Scores of pairs; those shown by default when not given. Expressions have scores of their own, all of them.
     options : PairOptions
         How pairs are counted for the numbers beside them.
     """
@@ -137,10 +149,11 @@ def accepted_entries(
     entries.sort(key=lambda entry: (entry.matter.text, entry.matter.kind, entry.matter.layer))
     shown = [name for name in names if any(name in entry.figures.scores for entry in entries)]
     facts = [ScoreFacts(name, MEASURES[name].title, MEASURES[name].formula, MEASURES[name].unit) for name in shown]
-    if any(EXPRESSION_SCORE in entry.figures.scores for entry in entries):
-        facts.append(
-            ScoreFacts(EXPRESSION_SCORE, "specific correlation", "log2(p(x1 ... xn) / (p(x1) ... p(xn)))", "bits")
-        )
+    whole = [entry.figures.scores for entry in entries if entry.matter.kind == "expression"]
+    for name in SCORES:
+        if any(name in scores for scores in whole):
+            one = EXPRESSION_MEASURES[name]
+            facts.append(ScoreFacts(name, one.title, one.formula, one.unit, kind="expression", bond=one.bond))
     return Entries(
         tuple(entries),
         tuple(facts),

@@ -8,21 +8,23 @@ from typing import Any
 
 import numpy as np
 
+from colloc.answers.columns import Columns
 from colloc.answers.concordance import finding, matching
+from colloc.answers.expressions.given import LONGEST_GIVEN, OPEN_TERM, given_expressions
+from colloc.answers.expressions.measures import SCORES
+from colloc.answers.expressions.settings import ExpressionOptions
 from colloc.answers.judging.matters import OPEN, Matter
 from colloc.answers.questions import PairOptions, Question, ask, built_spec, chosen_spec
 from colloc.answers.sureness.documents import document_evidence
 from colloc.counts.words import slice_word_counts
-from colloc.errors import NotSeenError
 from colloc.measures.catalogue import compute_all
 from colloc.measures.contingency import expected
 from colloc.measures.multivariate import specific_correlation
-from colloc.settings import DEFAULT_MEMORY
+from colloc.records import WordCounts
+from colloc.settings import DEFAULT_MEMORY, Inside
 from colloc.store import slices, vocabulary
 from colloc.store.connection import Store
 
-EXPRESSION_SCORE = "specific_correlation"
-"""For expressions: log2 of p(all words in a row) over the product of the words' shares, in bits."""
 Value = int | float | None
 
 
@@ -41,7 +43,7 @@ class Figures:
     table : dict
         first_total, second_total, total and expected of a pair.
     scores : dict
-        By measure, for an expression `EXPRESSION_SCORE`; only what can be computed.
+        By measure, for an expression `colloc.answers.expressions.measures.SCORES`; only what can be computed.
     """
 
     joint: int
@@ -79,7 +81,7 @@ def figures(
         chosen = [matters[row] for row in rows]
         settled = replace(options, layer=layer, directed=options.directed or kind == "directed")
         if kind == "expression":
-            answers = [_of_expression(store, matter, settled) for matter in chosen]
+            answers = _of_expressions(store, chosen, settled, jobs=jobs, memory=memory, progress=progress)
         else:
             question = ask(store, settled, tuple(measures), jobs=jobs, memory=memory, progress=progress)
             answers = _of_pairs(question, chosen, measures)
@@ -102,7 +104,10 @@ def _of_pairs(question: Question, matters: Sequence[Matter], measures: Sequence[
         "total": table.total,
         "expected": expected(*table.arguments),
     }
-    answers = [Figures(0, 0, _word_counts(question, matter), dict.fromkeys(columns), {}) for matter in matters]
+    answers = [
+        Figures(0, 0, _word_counts(question.store, question.words, matter), dict.fromkeys(columns), {})
+        for matter in matters
+    ]
     for place, row in enumerate(there.tolist()):
         answers[row] = Figures(
             int(table.joint[place]),
@@ -114,25 +119,61 @@ def _of_pairs(question: Question, matters: Sequence[Matter], measures: Sequence[
     return answers
 
 
-def _word_counts(question: Question, matter: Matter) -> tuple[int, ...]:
-    numbers = vocabulary.term_numbers(question.store, question.layer, list(matter.words)).tolist()
-    return tuple(int(question.words.tokens[number]) if number >= 0 else 0 for number in numbers)
-
-
-def _of_expression(store: Store, matter: Matter, options: PairOptions) -> Figures:
-    where = slices.canonical(options.where)
-    words = slice_word_counts(store, matter.layer, where)
+def _word_counts(store: Store, words: WordCounts, matter: Matter) -> tuple[int, ...]:
     numbers = vocabulary.term_numbers(store, matter.layer, list(matter.words)).tolist()
-    counts = tuple(int(words.tokens[number]) if number >= 0 else 0 for number in numbers)
+    return tuple(int(words.tokens[number]) if number >= 0 else 0 for number in numbers)
+
+
+def figures_of_expressions(store: Store, matters: Sequence[Matter], answer: Columns, where: str) -> list[Figures]:
+    """Figures from an answer about expressions that has a row with every measure for each matter.
+
+    Parameters
+    ----------
+    where : str
+        Canonical slice that the answer counts in.
+    """
+    layers = {matter.layer for matter in matters}
+    words = {layer: slice_word_counts(store, layer, where) for layer in layers}
+    found = []
+    for matter, row in zip(matters, answer.to_dicts(), strict=True):
+        scores = {name: float(row[name]) for name in SCORES if not np.isnan(row.get(name, np.nan))}
+        counts = _word_counts(store, words[matter.layer], matter)
+        found.append(Figures(row["count"], row["documents"], counts, {}, scores))
+    return found
+
+
+def _of_expressions(store: Store, matters: Sequence[Matter], options: PairOptions, **resources: Any) -> list[Figures]:
+    """Expressions of one layer: looked up among all that are frequent, by the default rules of their ranking."""
+    where, layer = slices.canonical(options.where), matters[0].layer
     inside = chosen_spec(options, built_spec(store), "pairs").inside
-    try:
-        search = matching.prepare(store, matter.layer, [matter.text])
-    except NotSeenError:
-        return Figures(0, 0, counts, {}, {})
+    words = slice_word_counts(store, layer, where)
+    answers: dict[int, Figures] = {}
+    grown: dict[int, list[int]] = {}
+    for place, matter in enumerate(matters):
+        terms = vocabulary.term_numbers(store, layer, list(matter.words)).tolist()
+        closed = [word != OPEN for word in matter.words]
+        if any(wanted and term < 0 for wanted, term in zip(closed, terms, strict=True)):
+            answers[place] = Figures(0, 0, _word_counts(store, words, matter), {}, {})
+        elif closed[0] and closed[-1] and len(terms) <= LONGEST_GIVEN:
+            grown[place] = [term if wanted else OPEN_TERM for wanted, term in zip(closed, terms, strict=True)]
+        else:
+            answers[place] = _searched(store, matter, words, inside, where)
+    if grown:
+        asked = ExpressionOptions(layer=layer, where=options.where, inside=inside)
+        found = given_expressions(store, list(grown.values()), asked, **resources)
+        of_grown = figures_of_expressions(store, [matters[place] for place in grown], found, where)
+        answers.update(zip(grown, of_grown, strict=True))
+    return [answers[place] for place in range(len(matters))]
+
+
+def _searched(store: Store, matter: Matter, words: WordCounts, inside: Inside, where: str) -> Figures:
+    """An expression that is too long to be grown, or begins or ends with an open place: found in the text."""
+    counts = _word_counts(store, words, matter)
+    search = matching.prepare(store, matter.layer, [matter.text])
     hits = finding.find(store, search, left=0, right=0, inside=inside, where=where)
-    scores: dict[str, float] = {}
-    tokens = int(words.tokens.sum())
     closed = [count for word, count in zip(matter.words, counts, strict=True) if word != OPEN]
+    scores: dict[str, float] = {}
     if len(hits) and len(closed) > 1:
-        scores[EXPRESSION_SCORE] = float(specific_correlation(len(hits), np.array(closed), tokens))
+        tokens = int(words.tokens.sum())
+        scores["specific_correlation"] = float(specific_correlation(len(hits), np.array(closed), tokens))
     return Figures(len(hits), len(np.unique(hits.documents)), counts, {}, scores)

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 from colloc.answers.concordance.matching import parts_of
 from colloc.answers.questions import built_spec
+from colloc.answers.spelling import not_seen
 from colloc.errors import DataError, NotSeenError, UsageError
 from colloc.store import vocabulary
 from colloc.store.connection import Store
@@ -86,7 +87,7 @@ def make_matter(
         numbers = vocabulary.term_numbers(store, layer, closed).tolist()
         for word, number in zip(closed, numbers, strict=True):
             if number < 0:
-                raise NotSeenError(f"{store.path}: {word!r} never occurs in layer {layer!r}")
+                raise NotSeenError(not_seen(store, layer, word))
     return Matter(layer, kind, tuple(parts))
 
 

@@ -20,6 +20,7 @@ from functools import partial
 import numpy as np
 
 from colloc.counts.budget import DEFAULT_MEMORY, affordable_jobs, plan_memory
+from colloc.counts.grouping import deal
 from colloc.counts.keys import merge
 from colloc.counts.processes import crew
 from colloc.counts.runs import Column
@@ -31,7 +32,7 @@ from colloc.counts.sequences.sharing import MOST_WORDS, Facts
 from colloc.counts.sequences.sharing_out import END, Shop, remove_runs, run_file, taken
 from colloc.counts.words import slice_word_counts
 from colloc.errors import LockedError, UsageError
-from colloc.records import Int64Array, UInt64Array, WordCounts
+from colloc.records import Int64Array, UInt32Array, UInt64Array, WordCounts
 from colloc.settings import Inside
 from colloc.store import facts
 from colloc.store.connection import Store
@@ -57,6 +58,8 @@ class Grower:
         Units of the selection.
     single : Level
         The words themselves.
+    groups : int
+        Groups that the documents are dealt into, for intervals.
     """
 
     def __init__(
@@ -71,6 +74,9 @@ class Grower:
         self._folder = {"folder": str(self._shop.folder)}
         self._documents = self._shop.keep("documents", _places(self._selection, begins))
         self._sizes = self._shop.keep("sizes", sizes)
+        dealt = deal(len(sizes))
+        self.groups = int(dealt.max(initial=-1)) + 1
+        self._groups = self._shop.keep("groups", dealt)
         self._least_share = float(sizes.min() / max(sizes.sum(), 1)) if len(sizes) else 1.0
         self.words: WordCounts = slice_word_counts(store, layer, where)
         self.total = int(self.words.tokens.sum())
@@ -84,10 +90,15 @@ class Grower:
         nothing = np.empty(0, np.uint64)
         self.single = Level((0,), None, None, nothing, self.words.tokens, Column(**places["ids"]), None)
 
-    def join(self, left: Level, right: Level, offset: int) -> Level:
+    def join(self, left: Level, right: Level, offset: int, also: UInt64Array | None = None) -> Level:
         """The frequent sequences of a left part and a right part that begins ``offset`` places later.
 
         Parts may overlap; what they share stands at the same places of the text.
+
+        Parameters
+        ----------
+        also : uint64 array, optional
+            Keys of sequences that are wanted too, however often they occur.
 
         Raises
         ------
@@ -99,14 +110,17 @@ class Grower:
         least = {"least": self._least}
         merged = self._shop.merge("merge_joins", self._shop.key_cuts(runs), least, runs, f"{name}-merge")
         keys = np.concatenate([np.empty(0, np.uint64), *(taken(part) for part in merged)])
+        if also is not None:
+            keys = np.union1d(keys, also)
         counts, ids = self._numbered(name, parts, keys)
         return Level(words, left, right, keys, counts, ids, self._spread(ids, words, len(keys), name))
 
-    def known(self, left: Level, right: Level, offset: int, keys: UInt64Array) -> Level:
-        """As `join`, but of given keys (ascending, each once), however often they occur, and without their spread."""
+    def known(self, left: Level, right: Level, offset: int, keys: UInt64Array, *, spread: bool = False) -> Level:
+        """As `join`, but of given keys (ascending, each once), however often they occur; with their spread if asked."""
         name, words, parts = self._begun(left, right, offset)
         counts, ids = self._numbered(name, parts, keys)
-        return Level(words, left, right, keys, counts, ids, None)
+        seen = self._spread(ids, words, len(keys), name) if spread else None
+        return Level(words, left, right, keys, counts, ids, seen)
 
     def fillers(self, level: Level, numbers: Int64Array, slot: int) -> tuple[Int64Array, Int64Array, Int64Array]:
         """What stands in an open slot of some sequences of a level.
@@ -123,18 +137,40 @@ class Grower:
         index, term, count : int64 arrays
             Sorted by index (into ``numbers``), then by term.
         """
+        asked = {"terms": asdict(self.single.ids), "slot": slot}
+        return self._beside(level, _wanted(level, numbers), "count_fillers", asked)
+
+    def by_group(self, level: Level, rows: UInt32Array) -> Int64Array:
+        """How often sequences of a level occur in each group of documents (`colloc.counts.grouping.deal`).
+
+        Parameters
+        ----------
+        rows : uint32 array, shape (len(level),)
+            The row that each sequence is counted in, or `NONE`.
+
+        Returns
+        -------
+        int64 array, shape (rows, groups)
+        """
+        counts = np.zeros((int(rows[rows != NONE].max(initial=0)) + 1, self.groups), np.int64)
+        asked = {"documents": self._documents, "groups": self._groups}
+        row, group, count = self._beside(level, rows, "count_groups", asked)
+        counts[row, group] = count
+        return counts
+
+    def _beside(
+        self, level: Level, rows: UInt32Array, task: str, asked: Facts
+    ) -> tuple[Int64Array, Int64Array, Int64Array]:
+        """What a task counts beside some sequences: row, what is there, and how often; sorted."""
         self._made += 1
-        name = f"fillers-{self._made}"
-        rows = np.full(len(level), NONE)
-        rows[numbers] = np.arange(len(numbers))
-        asked = {"ids": asdict(level.ids), "terms": asdict(self.single.ids), "slot": slot, **self._folder}
-        counted = self._shop.share_out("count_fillers", {**asked, "rows": self._shop.keep(name, rows)}, name)
-        runs = [run_file(run) for run in counted]
+        name = f"beside-{self._made}"
+        facts = {"ids": asdict(level.ids), "rows": self._shop.keep(name, rows), **asked, **self._folder}
+        runs = [run_file(run) for run in self._shop.share_out(task, facts, name)]
         everything = merge([run.between(0, END) for run in runs])
-        index, term = left_of(everything.keys).astype(np.int64), right_of(everything.keys).astype(np.int64)
+        index, there = left_of(everything.keys).astype(np.int64), right_of(everything.keys).astype(np.int64)
         counts = everything.counts.astype(np.int64)
         remove_runs(runs)
-        return index, term, counts
+        return index, there, counts
 
     def keep_matches(self, matches: Iterable[tuple[Int64Array, Int64Array]]) -> Column:
         """Keep where something begins, for `matching`.
@@ -274,6 +310,13 @@ def growing(
         store.refresh()
     if facts.generation(store) != generation:
         raise LockedError(f"{store.path}: documents were added or removed while it was counted; try again")
+
+
+def _wanted(level: Level, numbers: Int64Array) -> UInt32Array:
+    """The place of each sequence of a level among some of them, or NONE."""
+    rows = np.full(len(level), NONE)
+    rows[numbers] = np.arange(len(numbers))
+    return rows
 
 
 def _in_order(begins: Int64Array, sizes: Int64Array) -> tuple[Int64Array, Int64Array]:

@@ -210,14 +210,42 @@ def count_fillers(
     dict
         The run: row << 32 | term.
     """
+    places, wanted = _asked_about(ids, rows, begin, stop)
+    fillers: UInt32Array = padded(Column(**terms), begin + slot, stop + slot, int(NONE))[places]
+    there = fillers != NONE
+    return dataclasses.asdict(write_run(Path(folder), name, run_of_keys(pair_keys(wanted[there], fillers[there]))))
+
+
+def count_groups(
+    ids: Facts, rows: Facts, documents: Facts, groups: Facts, begin: int, stop: int, folder: str, name: str
+) -> Facts:
+    """Count some sequences in a share by group of documents, into a run.
+
+    Parameters
+    ----------
+    rows : Column facts
+        As for `count_fillers`.
+    documents, groups : Column facts
+        Place where each document begins, ascending, and its group.
+
+    Returns
+    -------
+    dict
+        The run: row << 32 | group.
+    """
+    places, wanted = _asked_about(ids, rows, begin, stop)
+    starts: Int64Array = Column(**documents).read()
+    group: Int64Array = Column(**groups).read()[np.searchsorted(starts, places + begin, side="right") - 1]
+    return dataclasses.asdict(write_run(Path(folder), name, run_of_keys(pair_keys(wanted, group.astype(np.uint32)))))
+
+
+def _asked_about(ids: Facts, rows: Facts, begin: int, stop: int) -> tuple[Int64Array, UInt32Array]:
+    """Places (less ``begin``) where sequences begin that are asked about, and their rows."""
     numbers: UInt32Array = Column(**ids).read(begin, stop)
     row: UInt32Array = Column(**rows).read()
     places = np.flatnonzero(numbers != NONE)
     wanted = row[numbers[places]]
-    places, wanted = places[wanted != NONE], wanted[wanted != NONE]
-    fillers: UInt32Array = padded(Column(**terms), begin + slot, stop + slot, int(NONE))[places]
-    there = fillers != NONE
-    return dataclasses.asdict(write_run(Path(folder), name, run_of_keys(pair_keys(wanted[there], fillers[there]))))
+    return places[wanted != NONE], wanted[wanted != NONE]
 
 
 def count_matches(

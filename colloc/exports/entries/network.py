@@ -2,18 +2,19 @@
 
 from __future__ import annotations
 
-import math
-
 from colloc.answers.judging.entries import Entries, Entry
 from colloc.answers.judging.matters import OPEN
 from colloc.exports.entries.markup import document, element, text
-from colloc.exports.entries.wording import words_of
+from colloc.exports.entries.wording import finite_scores, words_of
 
 NAMESPACE = "http://graphml.graphdrawing.org/xmlns"
+Values = list[tuple[str, str]]
 
 
 def graphml(entries: Entries) -> bytes:
     """Words and expressions are nodes; a pair is an edge, and an expression has one to each of its words.
+
+    The numbers of a pair are on its edge, those of an expression on its node.
 
     The graph is undirected unless every pair is directed.
 
@@ -24,13 +25,12 @@ def graphml(entries: Entries) -> bytes:
     """
     kinds = [entry.matter.kind for entry in entries.entries]
     directed = "directed" in kinds and "pair" not in kinds
-    scores = [score.name for score in entries.scores]
     keys = [
-        *(("node", name, kind) for name, kind in (("label", "string"), ("layer", "string"), ("kind", "string"))),
-        ("node", "count", "long"),
-        *(("edge", name, kind) for name, kind in (("entry", "string"), ("kind", "string"), ("sense", "string"))),
+        *(("node", name, "string") for name in ("label", "layer", "kind", "entry", "sense")),
+        *(("node", name, "long") for name in ("count", "documents")),
+        *(("edge", name, "string") for name in ("entry", "kind", "sense")),
         *(("edge", name, "long") for name in ("joint", "documents")),
-        *(("edge", name, "double") for name in scores),
+        *(("node" if score.kind == "expression" else "edge", score.name, "double") for score in entries.scores),
     ]
     content = [
         element("key", attributes={"id": f"{place}-{name}", "for": place, "attr.name": name, "attr.type": kind})
@@ -40,39 +40,44 @@ def graphml(entries: Entries) -> bytes:
     nodes: list[str] = []
     for (layer, word), count in sorted(words_of(entries).items()):
         names[layer, word] = f"n{len(nodes)}"
-        nodes.append(_node(names[layer, word], word, layer, "word", count))
+        nodes.append(_node(names[layer, word], word, layer, "word", [("count", str(count))]))
     edges: list[str] = []
     for entry in entries.entries:
-        matter = entry.matter
+        matter, figures = entry.matter, entry.figures
         if matter.kind != "expression":
-            edges.append(_edge(entry, [names[matter.layer, word] for word in matter.words], scores))
+            numbers = [("joint", str(figures.joint)), *_numbers(entry)]
+            edges.append(_edge(entry, [names[matter.layer, word] for word in matter.words], numbers))
             continue
         name = f"n{len(nodes)}"
-        nodes.append(_node(name, matter.text, matter.layer, "expression", entry.figures.joint))
+        told = [("entry", entry.identifier), *_sense(entry), ("count", str(figures.joint)), *_numbers(entry)]
+        nodes.append(_node(name, matter.text, matter.layer, "expression", told))
         words = [word for word in dict.fromkeys(matter.words) if word != OPEN]
-        edges += [_edge(entry, [name, names[matter.layer, word]], scores) for word in words]
+        edges += [_edge(entry, [name, names[matter.layer, word]], []) for word in words]
     kind = "directed" if directed else "undirected"
     graph = element("graph", [f"\n{part}" for part in (*nodes, *edges)], {"id": "g", "edgedefault": kind})
     return document(element("graphml", [*(f"\n{part}" for part in content), "\n", graph], {"xmlns": NAMESPACE}))
 
 
-def _node(name: str, label: str, layer: str, kind: str, count: int) -> str:
-    values = (("label", label), ("layer", layer), ("kind", kind), ("count", str(count)))
+def _node(name: str, label: str, layer: str, kind: str, more: Values) -> str:
+    values = [("label", label), ("layer", layer), ("kind", kind), *more]
     return element("node", [_data("node", key, value) for key, value in values], {"id": name})
 
 
-def _edge(entry: Entry, ends: list[str], scores: list[str]) -> str:
-    figures = entry.figures
-    sense = "; ".join(sense.text for sense in entry.senses if sense.text)
-    values = [("entry", entry.identifier), ("kind", entry.matter.kind)]
-    values += [("sense", sense)] if sense else []
-    values += [("joint", str(figures.joint)), ("documents", str(figures.documents))]
-    # Infinite scores are left out: readers of the format differ about them.
-    values += [
-        (name, repr(figures.scores[name])) for name in scores if math.isfinite(figures.scores.get(name, math.nan))
-    ]
+def _edge(entry: Entry, ends: list[str], more: Values) -> str:
+    values = [("entry", entry.identifier), ("kind", entry.matter.kind), *_sense(entry), *more]
     content = [_data("edge", key, value) for key, value in values]
     return element("edge", content, {"source": ends[0], "target": ends[1]})
+
+
+def _sense(entry: Entry) -> Values:
+    sense = "; ".join(sense.text for sense in entry.senses if sense.text)
+    return [("sense", sense)] if sense else []
+
+
+def _numbers(entry: Entry) -> Values:
+    """Documents and scores; infinite scores are left out: readers of the format differ about them."""
+    scores = [(name, repr(value)) for name, value in finite_scores(entry)]
+    return [("documents", str(entry.figures.documents)), *scores]
 
 
 def _data(place: str, key: str, value: str) -> str:

@@ -3,8 +3,9 @@
 Terms are those of the FrAC draft of June 2026. A pair is a ``frac:Collocation`` whose
 members are words; an expression is an ``ontolex:MultiWordExpression`` and the
 ``frac:Collocation`` of its components. The score names of the draft exist in no
-published ontology, so each score is a property of our own below ``frac:cScore`` with
-its formula as a comment; the first score is the ``rdf:value`` too.
+published ontology, so each score is a property of our own with its formula as a
+comment, below ``frac:cScore`` where it says how well the words hold together (not how
+they are spread); the first score is the ``rdf:value`` too.
 """
 
 from __future__ import annotations
@@ -92,9 +93,14 @@ class _Graph:
         for score in self._entries.scores:
             measure = self._own(f"measure-{score.name}")
             yield measure, A, n("rdf:Property")
-            yield measure, n("rdfs:subPropertyOf"), n("frac:cScore")
+            if score.bond:
+                yield measure, n("rdfs:subPropertyOf"), n("frac:cScore")
             yield measure, n("rdfs:label"), Literal(score.title, language="en")
             yield measure, n("rdfs:comment"), Literal(f"{score.formula} ({score.unit})", language="en")
+        documents = self._own("measure-documents")
+        yield documents, A, n("rdf:Property")
+        yield documents, n("rdfs:label"), Literal("documents", language="en")
+        yield documents, n("rdfs:comment"), Literal("how many documents hold it", language="en")
         yield from self._frame()
         for (layer, word), count in sorted(words_of(self._entries).items()):
             name = self._word(layer, word)
@@ -156,6 +162,7 @@ class _Graph:
         scores = list(finite_scores(entry))
         for name, value in scores:
             yield collocation, self._own(f"measure-{name}"), Literal(repr(value), "double")
+        yield collocation, self._own("measure-documents"), Literal(str(entry.figures.documents), "integer")
         main = Literal(repr(scores[0][1]), "double") if scores else Literal(str(entry.figures.joint), "integer")
         yield collocation, n("rdf:value"), main
         yield from self._counted(collocation, entry.figures.joint)

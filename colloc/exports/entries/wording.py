@@ -30,13 +30,13 @@ def source_in_words(line: Line) -> str:
 
 
 def figures_in_words(entry: Entry) -> str:
-    """Counts and scores of an entry on one line."""
+    """Counts and scores of an entry on one line; the scores to their last digit."""
     figures = entry.figures
     words = ", ".join(
         f"{word} {count}" for word, count in zip(entry.matter.words, figures.word_counts, strict=True) if count
     )
     parts = [f"joint {figures.joint}", f"documents {figures.documents}", f"frequencies {words}" if words else ""]
-    parts += [f"{name} {value:.4f}" for name, value in figures.scores.items()]
+    parts += [f"{name} {value!r}" for name, value in figures.scores.items()]
     return "; ".join(part for part in parts if part)
 
 

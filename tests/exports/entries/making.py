@@ -49,8 +49,9 @@ def sample(text: str = "a thick one") -> Entries:
         entry(("take", "*", "into", "account"), "expression", (Sense("", (), (), ()),), {}),
         entry(("thick", "fog"), "pair", (other,), {"pmi": 1.0}, layer="form"),
     )
-    scores = tuple(
-        ScoreFacts(name, name.upper(), f"log2 {name}", "bits") for name in ("pmi", "npmi", "specific_correlation")
+    scores = (
+        *(ScoreFacts(name, name.upper(), f"log2 {name}", "bits") for name in ("pmi", "npmi")),
+        ScoreFacts("specific_correlation", "specific correlation", "log2 p", "bits", kind="expression"),
     )
     return Entries(entries, scores, 10_000, 60, "layer fold; window of 5 words", {"layer": "fold"}, 0)
 
