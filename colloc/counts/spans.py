@@ -50,7 +50,7 @@ def apply_layer(layer: UInt32Array, types: UInt32Array) -> UInt32Array:
     """Terms of types; `NO_TERM` stays."""
     gone = types == NO_TERM
     if not gone.any():
-        return layer[types]
+        return layer.take(types)
     terms = np.full(len(types), NO_TERM)
     terms[~gone] = layer[types[~gone]]
     return terms

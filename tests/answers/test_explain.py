@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import json
 import math
+import random
 from collections import Counter
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from itertools import pairwise
 from pathlib import Path
 from typing import Any
@@ -15,6 +16,7 @@ import pytest
 from sklearn.metrics import mutual_info_score
 
 import colloc
+from colloc.answers.evidence import occurring
 from colloc.answers.evidence.byslice import labels_of
 from colloc.answers.evidence.occurring import occurrences_of
 from colloc.answers.questions import PairOptions, ask
@@ -22,6 +24,7 @@ from colloc.answers.sureness.documents import document_evidence
 from colloc.answers.sureness.hypotheses import all_pairs
 from colloc.errors import NotSeenError, UsageError
 from colloc.store import vocabulary
+from colloc.store.opening import Store
 
 from .conftest import Demo, write_documents
 from .test_lines import scan
@@ -90,6 +93,45 @@ def test_the_table_is_the_one_that_is_kept(demo: Demo, options: dict[str, Any], 
     counted = occurrences_of(question, int(terms[0]), int(terms[1])).table()
     for one, other in zip(kept.arguments, counted.arguments, strict=True):
         np.testing.assert_allclose(one, other, rtol=1e-12)
+
+
+@pytest.fixture(scope="module")
+def notes() -> dict[str, list[list[str]]]:
+    """Paragraphs of words: none, one, a few and many of them in a document."""
+    draw = random.Random(7)
+    return {
+        f"d{number}": [draw.choices(["sea", "wind", "salt", "rope"], k=draw.choice([1, 2, 3, 9, 60])) for _ in range(n)]
+        for number, n in enumerate([1, 2, 7, 1, 20, 3])
+    }
+
+
+@pytest.fixture(scope="module")
+def noted(tmp_path_factory: pytest.TempPathFactory, notes: dict[str, list[list[str]]]) -> Iterator[Store]:
+    folder = tmp_path_factory.mktemp("notes")
+    texts = {name: "\n\n".join(map(" ".join, paragraphs)) for name, paragraphs in notes.items()}
+    colloc.build(folder / "n.colloc", [write_documents(folder / "n.jsonl", texts)], jobs=1)
+    with colloc.open_store(folder / "n.colloc") as store:
+        yield store
+
+
+@pytest.mark.parametrize("piece", [1, 2, 7, 64, 2**17])
+@pytest.mark.parametrize("reach", [1, 3, 40])
+def test_totals_by_document(
+    notes: dict[str, list[list[str]]], noted: Store, monkeypatch: pytest.MonkeyPatch, piece: int, reach: int
+) -> None:
+    """However the stream is cut: words, and pairs of words within reach, by a plain loop over every paragraph."""
+    monkeypatch.setattr(occurring, "PIECE", piece)
+    question = ask(noted, PairOptions(window=reach, inside="paragraph"))
+    one, two = vocabulary.term_numbers(noted, question.layer, ["sea", "wind"]).tolist()
+    seen = occurrences_of(question, one, two)
+    found = zip(seen.total.tolist(), seen.words.sum(axis=1).tolist(), strict=True)
+    assert list(found) == [
+        (
+            sum(min(reach, len(words) - 1 - place) for words in paragraphs for place in range(len(words))),
+            sum(map(len, paragraphs)),
+        )
+        for paragraphs in notes.values()
+    ]
 
 
 def test_intervals_and_spread_are_those_of_the_lists(demo: Demo) -> None:

@@ -158,7 +158,7 @@ class _Counter:
         joint = self._profile(tokens, here[FIRST], begin)
         if self._kind == "unit":
             return
-        tokens.add(self.words[:, OTHER], tokens.present[tokens.core])
+        tokens.add_words(self.words[:, OTHER])
         for label, found in here.items():
             tokens.add_at(self.words[:, label], found, 1)
             tokens.add_at(self.words[:, OTHER], found, -1)
@@ -167,7 +167,7 @@ class _Counter:
             return
         tokens.add_at(self.joint, here[FIRST], joint)
         after, before = self._spec.right, self._spec.left
-        tokens.add(self.total, tokens.following(None, after) + tokens.following(None, before))
+        tokens.add_neighbours(self.total, (after, before))
         for label, found in here.items():
             # Row and column sums of M, or of C where the span is unequal.
             rows = tokens.following(found, after) + tokens.preceding(found, before)
@@ -275,14 +275,9 @@ class _Tokens:
         unit = np.searchsorted(self.edges[:-1], here, side="right") - 1
         return self.edges[unit], self.edges[unit + 1]
 
-    def following(self, here: Int64Array | None, reach: int) -> Int64Array:
-        """Words within reach after the tokens ``here``, or after each token of the core; 0 for what is no word."""
-        if here is None:
-            here = np.arange(self.core.start, self.core.stop)
-            stop = np.repeat(self.edges[1:], np.diff(self.edges))[self.core]
-        else:
-            stop = self.bounds(here)[1]
-        stop = np.minimum(here + reach + 1, stop)
+    def following(self, here: Int64Array, reach: int) -> Int64Array:
+        """Words within reach after the tokens ``here``; 0 for what is no word."""
+        stop = np.minimum(here + reach + 1, self.bounds(here)[1])
         found: Int64Array = self._words(here + 1, stop) * self.present[here]
         return found
 
@@ -305,6 +300,26 @@ class _Tokens:
         found: NDArray[np.bool_] = (sums[stop] - sums[first] - marks[here] > 0) & self.present[here]
         return found
 
+    def add_words(self, into: Int64Array) -> None:
+        """Add the words of the core up by document."""
+        edges = np.append(self.starts, self.core.stop)
+        into[self.documents] += np.diff(edges) if self.before is None else np.diff(self.before[edges])
+
+    def add_neighbours(self, into: Int64Array, reaches: tuple[int, ...]) -> None:
+        """Add up by document how many words follow each word of the core within each reach."""
+        if self.before is not None:
+            here = np.flatnonzero(self.present[self.core]) + self.core.start
+            for reach in reaches:
+                self.add_at(into, here, self.following(here, reach))
+            return
+        # All tokens are words: what follows depends on how many are left in the unit, which runs down to none.
+        low, high = np.searchsorted(self.edges, [self.core.start + 1, self.core.stop])
+        begins = np.maximum(self.edges[low - 1 : high], self.core.start)
+        ends = self.edges[low : high + 1]
+        for reach in reaches:
+            sums = _run_down(ends - begins, reach) - _run_down(np.maximum(ends - self.core.stop, 0), reach)
+            self.add_at(into, begins, sums)
+
     def add(self, into: Int64Array, values: NDArray[np.bool_] | Int64Array) -> None:
         """Add values of the core up by document."""
         sums = np.concatenate([[0], np.cumsum(values, dtype=np.int64)])
@@ -314,6 +329,13 @@ class _Tokens:
         """Add values of the tokens ``here`` up by document."""
         owners = self.documents[np.searchsorted(self.starts, here, side="right") - 1]
         np.add.at(into, owners, values)
+
+
+def _run_down(length: Int64Array, reach: int) -> Int64Array:
+    """The sum of min(reach, k) over k = 0 .. length - 1."""
+    short = np.minimum(length, reach)
+    found: Int64Array = short * (short - 1) // 2 + reach * (length - short)
+    return found
 
 
 def _count_units(
