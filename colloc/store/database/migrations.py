@@ -9,7 +9,9 @@ never imports sqlite-utils (it takes a third of a second where pandas is there).
 from __future__ import annotations
 
 import sqlite3
-from collections.abc import Callable
+import sys
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -78,10 +80,29 @@ def check_applied(connection: sqlite3.Connection, name: str) -> Applied:
     return Applied(not missing, not any(step.needed_to_read for step in missing))
 
 
+@contextmanager
+def _pandas_hidden() -> Iterator[None]:
+    """sqlite-utils loads pandas, where it is installed, to know its types: half a second that is no use here.
+
+    What is imported inside is forgotten afterwards, so that whoever else imports sqlite-utils gets it whole.
+    """
+    if any(name in sys.modules for name in ("pandas", "sqlite_utils")):
+        yield
+        return
+    sys.modules["pandas"] = None  # type: ignore[assignment]  # the import system's own sign for "cannot be imported"
+    try:
+        yield
+    finally:
+        del sys.modules["pandas"]
+        for name in [name for name in sys.modules if name.split(".")[0] == "sqlite_utils"]:
+            del sys.modules[name]
+
+
 def migrate(connection: sqlite3.Connection) -> None:
     """Apply the steps that are missing."""
-    from sqlite_utils import Database
-    from sqlite_utils.migrations import Migrations
+    with _pandas_hidden():
+        from sqlite_utils import Database
+        from sqlite_utils.migrations import Migrations
 
     migrations = Migrations(MIGRATION_SET)
     for step in STEPS:
