@@ -169,3 +169,24 @@ class TallySpec(_Jsonable):
             raise UsageError("a window tally counts followers: left is 0 and right at least 1")
         if self.kind in ("span", "positions") and self.left + self.right < 1:
             raise UsageError("a span needs at least one word on one side")
+
+
+def told_reach(kind: str, left: int, right: int) -> dict[str, int]:
+    """A table's reach as the options that ask for it: ``window`` where both sides are equal; none of units, relations.
+
+    >>> told_reach("window", 0, 5), told_reach("span", 1, 3), told_reach("unit", 0, 0)
+    ({'window': 5}, {'left': 1, 'right': 3}, {})
+    """
+    if kind in ("unit", "relation"):
+        return {}
+    # A window is stored as followers alone: its left is 0.
+    return {"window": right} if kind == "window" or left == right else {"left": left, "right": right}
+
+
+def told_spec(spec: TallySpec) -> dict[str, Any]:
+    """Settings of a table for people: those that apply, in the words of the options."""
+    stored = dataclasses.asdict(spec)
+    reach = told_reach(spec.kind, stored.pop("left"), stored.pop("right"))
+    unused = "inside" if spec.kind == "relation" else "relation"
+    del stored[unused]
+    return {"layer": stored.pop("layer"), "kind": stored.pop("kind"), **reach, **stored}

@@ -12,6 +12,7 @@ from colloc.answers.columns import Columns
 from colloc.answers.pairs import as_columns, filtered, score, text_ranks
 from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
+from colloc.answers.spelling import NAMED, named_unknown, not_seen, spelled_like
 from colloc.answers.stopping import StopWords
 from colloc.answers.sureness.floors import Floors, Shuffle
 from colloc.answers.sureness.hypotheses import Hypotheses, pairs_of_words
@@ -74,7 +75,8 @@ def around(
     Returns
     -------
     Columns
-        Its setting ``unknown``, where there is one, lists the words asked for that the store does not know.
+        Its setting ``unknown``, where there is one, lists the words asked for that the store does not know, and
+        ``near`` what the first of them may have meant.
 
     Raises
     ------
@@ -150,7 +152,7 @@ def around(
         **judge.settings(),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         **({"stop": list(stop)} if stop else {}),
-        **({"unknown": unknown} if unknown else {}),
+        **({"unknown": unknown, "near": spelled_like(store, question.layer, unknown)} if unknown else {}),
         limit=limit,
     )
     return Columns({name: np.concatenate([part[name] for part in parts]) for name in parts[0].names}, settings)
@@ -182,8 +184,11 @@ def headwords(store: Store, layer: str, words: Sequence[str]) -> tuple[list[int]
     known = [number for number in numbers if number >= 0]
     unknown = list(dict.fromkeys(word for word, number in zip(words, numbers, strict=True) if number < 0))
     if not known:
-        listed = ", ".join(map(repr, unknown[:5]))
-        raise NotSeenError(f"{store.path}: {listed} never occurs in layer {layer!r}; `colloc words` lists what does")
+        if len(unknown) == 1:
+            raise NotSeenError(not_seen(store, layer, unknown[0]))
+        more = ", ..." if len(unknown) > NAMED else ""
+        listed = ", ".join(named_unknown(unknown, spelled_like(store, layer, unknown)))
+        raise NotSeenError(f"{store.path}: none of these occurs in layer {layer!r}: {listed}{more}")
     return known, unknown
 
 

@@ -6,9 +6,10 @@ import json
 from typing import Any
 
 from colloc.answers.columns import Columns
-from colloc.answers.questions import built_margins, built_spec, told_spec
+from colloc.answers.questions import built_margins, built_spec
 from colloc.counts.words import slice_word_counts
 from colloc.errors import UsageError
+from colloc.settings import told_spec
 from colloc.store import documents, facts, slices, tallies, vocabulary
 from colloc.store.connection import Store
 from colloc.store.inputs.sources import source_list

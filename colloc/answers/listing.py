@@ -10,8 +10,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colloc.answers.columns import Columns
-from colloc.answers.questions import told_reach
 from colloc.records import DocumentRow, Int64Array
+from colloc.settings import told_reach
 from colloc.store import documents, slices, tallies
 from colloc.store.opening import Store
 

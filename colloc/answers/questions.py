@@ -77,27 +77,6 @@ class Question:
         }
 
 
-def told_reach(kind: str, left: int, right: int) -> dict[str, int]:
-    """A table's reach as the options that ask for it: ``window`` where both sides are equal; none of units, relations.
-
-    >>> told_reach("window", 0, 5), told_reach("span", 1, 3), told_reach("unit", 0, 0)
-    ({'window': 5}, {'left': 1, 'right': 3}, {})
-    """
-    if kind in ("unit", "relation"):
-        return {}
-    # A window is stored as followers alone: its left is 0.
-    return {"window": right} if kind == "window" or left == right else {"left": left, "right": right}
-
-
-def told_spec(spec: TallySpec) -> dict[str, Any]:
-    """Settings of a table for people: those that apply, in the words of the options."""
-    stored = asdict(spec)
-    reach = told_reach(spec.kind, stored.pop("left"), stored.pop("right"))
-    unused = "inside" if spec.kind == "relation" else "relation"
-    del stored[unused]
-    return {"layer": stored.pop("layer"), "kind": stored.pop("kind"), **reach, **stored}
-
-
 def built_spec(store: Store) -> TallySpec:
     """The tally the store was built with.
 

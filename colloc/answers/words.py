@@ -9,6 +9,7 @@ import numpy as np
 
 from colloc.answers.columns import Columns
 from colloc.answers.questions import built_spec
+from colloc.answers.spelling import near_spellings
 from colloc.counts.words import slice_dispersion, slice_word_counts
 from colloc.errors import UsageError
 from colloc.records import Int64Array
@@ -58,6 +59,7 @@ def words(
     dp, dp_norm = slice_dispersion(store, layer, slice_text)
     numbers, texts = _ordered(store, layer, numbers, counts.tokens, counts.documents, dp_norm, sort, limit)
     tokens = int(counts.tokens.sum())
+    near = near_spellings(store, layer, pattern) if pattern and not len(numbers) and "*" not in pattern else []
     return Columns(
         {
             "word": texts,
@@ -77,6 +79,7 @@ def words(
             "sort": sort,
             "limit": limit,
             "tokens": tokens,
+            **({"near": {pattern: near}} if near else {}),
         },
     )
 

@@ -13,6 +13,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from colloc.build.counting import count_new_documents
+from colloc.build.differing import differences
 from colloc.build.reading import Progress, Read, Resources, read_into
 from colloc.errors import CannotCreateError, CollocError, DataError, InputOutputError, UsageError
 from colloc.settings import DEFAULT_MEMORY, SMALLEST_MEMORY, Margins, ReadSettings, SegmentSettings, TallySpec
@@ -251,13 +252,12 @@ def _open_or_create(path: Path, wanted: dict[str, str]) -> Store:
         return create(path, {**wanted, **more})
     store = open_for_writing(path, "build")
     try:
-        for key, value in wanted.items():
-            kept = facts.get(store, key)
-            if kept != value:
-                raise CannotCreateError(
-                    f"{path} was built with other {key.replace('_', ' ')}: use `colloc add` for more documents, "
-                    "`colloc tally` for another table, or another name"
-                )
+        differs = differences({key: facts.get(store, key) for key in wanted}, wanted)
+        if differs:
+            raise CannotCreateError(
+                f"{path} was built otherwise: {'; '.join(differs)}. Use `colloc add` for more documents, "
+                "`colloc tally` for another table, or another name"
+            )
         if facts.get(store, "state") not in ("building", "complete"):
             raise DataError(f"{path}: a change was interrupted; run that command again to finish it")
     except BaseException:

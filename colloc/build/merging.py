@@ -14,6 +14,7 @@ from colloc.build.annotating import narrow
 from colloc.build.building import BuildReport, report, resources
 from colloc.build.changing import require_complete
 from colloc.build.counting import count_new_documents
+from colloc.build.differing import differences
 from colloc.build.reading import Progress, Read, registry_limit
 from colloc.errors import CollocError, UsageError
 from colloc.records import NO_TERM, Anchors, UInt32Array
@@ -24,10 +25,7 @@ from colloc.store.inputs.sources import copy_source, source_list
 from colloc.store.opening import open_for_reading, open_for_writing
 from colloc.store.vocabulary import TypeRegistry
 
-_MUST_AGREE = {
-    "segment_settings": "segmented differently",
-    "keep_text": "of which one keeps its text and the other does not",
-}
+_MUST_AGREE = ("segment_settings", "keep_text")
 
 
 def merge(
@@ -85,9 +83,12 @@ def _check(store: Store, other: Store) -> None:
         raise UsageError(f"{other.path} cannot be merged into itself")
     if facts.get(other, "state") != "complete":
         raise UsageError(f"{other.path} is not complete: finish its build or change first")
-    for key, difference in _MUST_AGREE.items():
-        if facts.get(store, key) != facts.get(other, key):
-            raise UsageError(f"{store.path} and {other.path} are stores {difference}: build them alike to merge them")
+    one, two = ({key: facts.get(opened, key) for key in _MUST_AGREE} for opened in (store, other))
+    differs = differences(one, two, says="{option} is {kept} there and {wanted} here")
+    if differs:
+        raise UsageError(
+            f"{other.path} cannot be merged into {store.path}: {'; '.join(differs)}; build them alike to merge them"
+        )
 
 
 def _copy(store: Store, other: Store, limit: int) -> None:

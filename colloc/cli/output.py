@@ -14,14 +14,10 @@ from typing import TYPE_CHECKING, Any, BinaryIO, get_args
 from colloc.cli.render import make_writer
 from colloc.errors import UsageError
 from colloc.exports.replacing import replacing
-from colloc.settings import TallyKind
+from colloc.settings import TallyKind, told_reach
 
 if TYPE_CHECKING:
     from colloc.answers.columns import Columns
-
-
-NAMED = 10
-"""Unknown words that a remark names; it counts all."""
 
 
 LEAST_COUNTS = ("min_count", "min_word_count", "min_docs")
@@ -140,8 +136,10 @@ def remark_unknown(settings: Mapping[str, Any], *, quiet: bool = False) -> None:
     """Name the words asked for that the store does not know, the first ten of them."""
     unknown = settings.get("unknown", [])
     if unknown:
+        from colloc.answers.spelling import NAMED, named_unknown
+
         more = ", ..." if len(unknown) > NAMED else ""
-        listed = ", ".join(map(repr, unknown[:NAMED])) + more
+        listed = ", ".join(named_unknown(unknown, settings.get("near", {}))) + more
         remark(f"# {len(unknown)} unknown in layer {settings['layer']!r}, left out: {listed}", quiet=quiet)
 
 
@@ -151,7 +149,7 @@ def settings_line(command: str, settings: Mapping[str, Any]) -> str:
     >>> settings_line("pairs", {"layer": "fold", "kind": "window", "left": 0, "right": 5, "where": "", "min_count": 5})
     '# pairs: layer fold; window 5; min count 5'
     """
-    shown = {key: value for key, value in settings.items() if key != "unknown"}
+    shown = {key: value for key, value in settings.items() if key not in ("unknown", "near")}
     if shown.get("kind") in get_args(TallyKind):
         shown = _told_table(shown)
     else:
@@ -164,8 +162,6 @@ def settings_line(command: str, settings: Mapping[str, Any]) -> str:
 
 def _told_table(settings: dict[str, Any]) -> dict[str, Any]:
     """Settings in which the kind and the reach of a table have given way to the options that ask for it."""
-    from colloc.answers.questions import told_reach
-
     kind = settings["kind"]
     asked: dict[str, Any] = told_reach(kind, settings["left"], settings["right"]) or {kind: settings.get(kind) or True}
     told: dict[str, Any] = {}
@@ -183,6 +179,8 @@ def no_rows_line(settings: Mapping[str, Any]) -> str:
     >>> no_rows_line({"min_count": 5, "min_docs": 1, "max_q": None, "any_strength": False})
     '# no rows; min count 5; attraction only, unless --any-strength'
     """
+    from colloc.answers.spelling import meant
+
     phrases = [
         _phrase(key.replace("_", " "), settings.get(key))
         for key in ("where", *THRESHOLDS)
@@ -191,6 +189,8 @@ def no_rows_line(settings: Mapping[str, Any]) -> str:
     ]
     if settings.get("any_strength") is False and not settings.get("avoid"):
         phrases.append("attraction only, unless --any-strength")
+    if "unknown" not in settings:
+        phrases += map(meant, settings.get("near", {}).values())
     return "; ".join(["# no rows", *(phrase for phrase in phrases if phrase)])
 
 

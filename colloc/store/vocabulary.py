@@ -25,7 +25,7 @@ from colloc.store.lexicon.layers import (
     term_count,
     type_keys,
 )
-from colloc.store.lexicon.terms import brought_to, term_numbers, term_texts, terms_matching
+from colloc.store.lexicon.terms import brought_to, term_numbers, term_texts, terms_matching, terms_of_shape
 
 __all__ = [
     "TypeKey",
@@ -43,6 +43,7 @@ __all__ = [
     "term_numbers",
     "term_texts",
     "terms_matching",
+    "terms_of_shape",
     "type_count",
     "type_keys",
     "word_counts",

@@ -83,8 +83,8 @@ def pairs(
     Parameters
     ----------
     show : sequence of str
-        Measures; first_count and second_count, the frequencies of the two words in the documents asked about (the
-        margins count pairs); and columns of sureness: documents, dp_norm, pmi_low, pmi_high, sound, formula_low, formula_high,
+        Measures; first_count and second_count, the frequencies of the two words in the documents asked about (margins
+        count pairs); and columns of sureness: documents, dp_norm, pmi_low, pmi_high, sound, formula_low, formula_high,
         q_value, corpus_floor, above_corpus, order_floor, above_order.
     min_count : int
         Least joint count: 5 when not given, 0 with ``avoid``.

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from colloc.answers.spelling import not_seen
 from colloc.errors import NotSeenError, UsageError
 from colloc.records import Int64Array, UInt32Array
 from colloc.settings import SegmentSettings
@@ -59,18 +60,24 @@ def parts_of(store: Store, layer: str, expression: str) -> list[str]:
     UsageError
         Where no word is in it.
     """
-    segmenter = Segmenter(segment_settings(store))
-    parts: list[str] = []
-    for piece in expression.split():
-        # words of annotated text ('s, n't, a comma) are what their annotation says, not what a segmenter makes of them
-        as_it_stands = "*" in piece or layer not in _PLAIN_LAYERS
-        if as_it_stands or vocabulary.term_numbers(store, layer, [piece])[0] >= 0:
-            parts.append(piece)
-            continue
-        found = segmenter.segment(piece)
-        parts += [piece[start:end] for start, end in zip(found.starts.tolist(), found.ends.tolist(), strict=True)]
+    parts = [part for parts in divided(store, layer, expression.split()) for part in parts]
     if not parts:
         raise UsageError(f"{expression!r} holds no word: look for a word, several words, or words with * in them")
+    return parts
+
+
+def divided(store: Store, layer: str, pieces: Sequence[str]) -> list[list[str]]:
+    """The words in each piece of text without spaces; as in `parts_of`, but a piece may hold none."""
+    segmenter = Segmenter(segment_settings(store))
+    known = vocabulary.term_numbers(store, layer, list(pieces)) >= 0
+    parts: list[list[str]] = []
+    for piece, there in zip(pieces, known.tolist(), strict=True):
+        # words of annotated text ('s, n't, a comma) are what their annotation says, not what a segmenter makes of them
+        if there or "*" in piece or layer not in _PLAIN_LAYERS:
+            parts.append([piece])
+            continue
+        found = segmenter.segment(piece)
+        parts.append([piece[start:end] for start, end in zip(found.starts.tolist(), found.ends.tolist(), strict=True)])
     return parts
 
 
@@ -104,8 +111,5 @@ def _terms(store: Store, layer: str, part: str) -> Int64Array:
         return found
     number = vocabulary.term_numbers(store, layer, [part])
     if number[0] < 0:
-        raise NotSeenError(
-            f"{store.path}: {part!r} never occurs in layer {layer!r}; "
-            f"`colloc words {store.path} '{part[:3]}*'` lists words that begin like it"
-        )
+        raise NotSeenError(not_seen(store, layer, part))
     return number

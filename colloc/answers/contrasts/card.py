@@ -15,6 +15,7 @@ from colloc.answers.contrasts.pairs import ask_both, strength, tables_of
 from colloc.answers.contrasts.saying import say
 from colloc.answers.contrasts.sides import resolve_sides
 from colloc.answers.questions import PairOptions, Question
+from colloc.answers.spelling import not_seen
 from colloc.answers.tables import PairTable
 from colloc.errors import NotSeenError
 from colloc.measures.catalogue import MEASURES
@@ -127,9 +128,7 @@ def term_numbers_of(store: Store, layer: str, words: Sequence[str]) -> list[UInt
     numbers = vocabulary.term_numbers(store, layer, list(words))
     for word, number in zip(words, numbers, strict=True):
         if number < 0:
-            raise NotSeenError(
-                f"{store.path}: {word!r} never occurs in layer {layer!r}; `colloc words` lists what does"
-            )
+            raise NotSeenError(not_seen(store, layer, word))
     return [np.array([number], np.uint32) for number in numbers]
 
 

@@ -17,6 +17,7 @@ from colloc.answers.evidence.seen import examples_and_forms
 from colloc.answers.evidence.similar import similar_pairs
 from colloc.answers.evidence.tested import interval_rows, tests_of
 from colloc.answers.questions import PairOptions, Question, ask
+from colloc.answers.spelling import not_seen
 from colloc.answers.sureness.floors import SHUFFLES, find_floors, floor_measures
 from colloc.answers.tables import TOKEN_MARGIN_MEASURES, PairTable
 from colloc.errors import NotSeenError, UsageError
@@ -128,15 +129,13 @@ def _terms(question: Question, first: str, second: str) -> tuple[int, int]:
     numbers = vocabulary.term_numbers(question.store, question.layer, [first, second]).tolist()
     for word, number in zip((first, second), numbers, strict=True):
         if number < 0 or not question.words.tokens[number]:
-            place = f" in documents where {question.spec.where}" if question.spec.where else ""
-            hint = (
-                f"explain takes two single words; `colloc lines {question.store.path} '{word}'` looks for phrases"
-                if len(word.split()) > 1
-                else f"`colloc words {question.store.path} '{word[:3]}*'` lists words that begin like it"
-            )
-            raise NotSeenError(
-                f"{question.store.path}: {word!r} never occurs in layer {question.layer!r}{place}; {hint}"
-            )
+            if number < 0 and len(word.split()) == 1:
+                raise NotSeenError(not_seen(question.store, question.layer, word))
+            said = f"{question.store.path}: {word!r} never occurs in layer {question.layer!r}"
+            if number >= 0:
+                raise NotSeenError(f"{said} in documents where {question.spec.where}")
+            phrases = f"`colloc lines {question.store.path} '{word}'` looks for phrases"
+            raise NotSeenError(f"{said}; explain takes two single words; {phrases}")
     return numbers[0], numbers[1]
 
 

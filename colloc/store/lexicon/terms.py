@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 import unicodedata
 from collections.abc import Sequence
 from typing import Any
@@ -80,6 +81,24 @@ def terms_matching(store: Store, layer: str, pattern: str) -> Int64Array:
     sql, fixed = _by_text(row.same, row.number)
     found = store.rows(f"{sql} GLOB ?", (*fixed, escaped))
     return np.array(sorted(number for (number,) in found), dtype=np.int64)
+
+
+def terms_of_shape(store: Store, layer: str, text: str, reach: int = 2) -> tuple[Int64Array, list[str]]:
+    """Terms and their texts that begin with the character of ``text`` and differ in length by ``reach`` at most."""
+    if not text or _has_half_pair(text):
+        return np.empty(0, dtype=np.int64), []
+    row = find_layer(store, layer)
+    table, column, where = ("types", "form", "") if row.same else ("terms", "text", "layer = ? AND ")
+    begins = ord(text[0])
+    # The index serves a range: all texts from this character to the next one that can be written.
+    after = "" if begins == sys.maxunicode else chr(0xE000 if begins == 0xD7FF else begins + 1)
+    until = f" AND {column} < ?" if after else ""
+    lengths = (max(len(text) - reach, 1), len(text) + reach)
+    found = store.rows(
+        f"SELECT id, {column} FROM {table} WHERE {where}{column} >= ?{until} AND length({column}) BETWEEN ? AND ?",
+        (*(() if row.same else (row.number,)), text[0], *((after,) if after else ()), *lengths),
+    )
+    return np.array([number for number, _ in found], dtype=np.int64), [other for _, other in found]
 
 
 def _by_text(same: bool, layer: int) -> tuple[str, tuple[int, ...]]:
