@@ -42,8 +42,9 @@ def test_contrast_of_words(run: Run, built: Path) -> None:
     ran = run("contrast", built, "--this", "genre=log", "-n", 4)
     assert ran.code == 0
     head, *lines = ran.out.splitlines()
+    bounds = ("formula_low", "formula_high")
     counts = ("count_this", "count_that", "documents_this", "documents_that")
-    assert tuple(head.split()) == ("word", "log_ratio", "low", "high", *counts, "g2", "document_q", "says")
+    assert tuple(head.split()) == ("word", "log_ratio", *bounds, *counts, "g2", "document_q", "says")
     assert [line.split()[0] for line in lines] == ["we", "and", "will", "be"]
     assert "this genre=log; that not (genre=log); min count 5" in ran.err
     wide = run("contrast", built, "--this", "genre=log", "-n", 4, "--wide", "-q")

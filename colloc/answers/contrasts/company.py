@@ -61,9 +61,9 @@ def contrast_company(
     Returns
     -------
     Columns
-        word, log_odds_difference, low, high (nats, 95 %), joint_this, joint_that, documents_this, documents_that, t
-        (Church et al. 1991: for counts as they are, so it favours the more frequent of the two words), g2, q. Words
-        that prefer this come first.
+        word, log_odds_difference, formula_low, formula_high (nats, 95 %, by formula), joint_this, joint_that,
+        documents_this, documents_that, t (Church et al. 1991: for counts as they are, so it favours the more frequent
+        of the two words), g2, q. Words that prefer this come first.
 
     Raises
     ------
@@ -118,8 +118,8 @@ def contrast_company(
         {
             "word": vocabulary.term_texts(store, question.layer, words[rows]),
             "log_odds_difference": gap[rows],
-            "low": interval.low[rows],
-            "high": interval.high[rows],
+            "formula_low": interval.low[rows],
+            "formula_high": interval.high[rows],
             "joint_this": joint[0][rows],
             "joint_that": joint[1][rows],
             "documents_this": held[0][rows],

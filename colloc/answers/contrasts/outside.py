@@ -106,9 +106,9 @@ def contrast_frequencies(
     Returns
     -------
     Columns
-        word, log_ratio, low, high (bits, 95 %), count_this, count_that (counted lists only), per_million_this,
-        per_million_that, documents_this, g2, q, document_q (the documents' mean rate against that of the list; never
-        below the q-value of G2), says.
+        word, log_ratio, formula_low, formula_high (bits, 95 %), count_this, count_that (counted lists only),
+        per_million_this, per_million_that, documents_this, g2, q, document_q (the documents' mean rate against that of
+        the list; never below the q-value of G2), says.
 
     Raises
     ------
@@ -161,8 +161,8 @@ def contrast_frequencies(
     columns: dict[str, Any] = {
         "word": [names[row] if row < len(terms) else texts[row - len(terms)] for row in rows.tolist()],
         "log_ratio": log_ratio[rows],
-        "low": interval.low[rows],
-        "high": interval.high[rows],
+        "formula_low": interval.low[rows],
+        "formula_high": interval.high[rows],
         "count_this": count[rows],
         **({"count_that": other[rows]} if frequencies.total is not None else {}),
         "per_million_this": count[rows] * (1e6 / max(tokens, 1)),

@@ -92,8 +92,8 @@ def contrast_pairs(
     Returns
     -------
     Columns
-        first, second, log_ratio, low, high (of the pair's relative frequency; bits, 95 %), joint_this, joint_that,
-        documents_this, documents_that, g2, q, document_z, document_q (or document_p),
+        first, second, log_ratio, formula_low, formula_high (of the pair's relative frequency; bits, 95 %), joint_this,
+        joint_that, documents_this, documents_that, g2, q, document_z, document_q (or document_p),
         pmi_this, pmi_that, pmi_difference, pmi_low, pmi_high (bits; 95 % from the jackknife over documents),
         log_odds_difference (nats), log_odds_q (Woolf), says.
     """
@@ -279,8 +279,8 @@ def _columns(
         "first": vocabulary.term_texts(store, layer, first),
         "second": vocabulary.term_texts(store, layer, second),
         "log_ratio": found.log_ratio[pairs],
-        "low": found.interval.low[pairs],
-        "high": found.interval.high[pairs],
+        "formula_low": found.interval.low[pairs],
+        "formula_high": found.interval.high[pairs],
         "joint_this": joint,
         "joint_that": other_joint,
         "documents_this": counts.documents_on(True)[rows],

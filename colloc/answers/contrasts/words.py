@@ -60,9 +60,9 @@ def contrast_words(
     Returns
     -------
     Columns
-        word, log_ratio, low, high (bits, 95 %), count_this, count_that, per_million_this, per_million_that,
-        documents_this, documents_that, g2, g2_two_cells, q, document_z, document_q (or document_p), says. Words of
-        this come first (log_ratio above 0), then words of that.
+        word, log_ratio, formula_low, formula_high (bits, 95 %), count_this, count_that, per_million_this,
+        per_million_that, documents_this, documents_that, g2, g2_two_cells, q, document_z, document_q (or
+        document_p), says. Words of this come first (log_ratio above 0), then words of that.
     """
     check_order(sort)
     sides = resolve_sides(store, this, that, where)
@@ -105,8 +105,8 @@ def contrast_words(
     columns: dict[str, Any] = {
         "word": vocabulary.term_texts(store, layer, terms[rows]),
         "log_ratio": log_ratio[rows],
-        "low": interval.low[rows],
-        "high": interval.high[rows],
+        "formula_low": interval.low[rows],
+        "formula_high": interval.high[rows],
         "count_this": count[0][rows],
         "count_that": count[1][rows],
         "per_million_this": count[0][rows] * (1e6 / max(totals[0], 1)),

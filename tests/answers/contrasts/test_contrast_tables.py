@@ -31,8 +31,8 @@ def test_planted_words_of_the_genres(talkative: Store) -> None:
     rows = by_word(colloc.contrast(talkative, this="genre=log", limit=0))
     assert rows["we"]["says"] == "this only; holds over documents"
     assert rows["passengers"]["says"] == "that only; holds over documents"
-    assert rows["swell"]["low"] < np.log2(2883 / 892) < rows["swell"]["high"]
-    assert rows["wind"]["low"] < np.log2(4036 / 1487) < rows["wind"]["high"]
+    assert rows["swell"]["formula_low"] < np.log2(2883 / 892) < rows["swell"]["formula_high"]
+    assert rows["wind"]["formula_low"] < np.log2(4036 / 1487) < rows["wind"]["formula_high"]
     assert rows["wind"]["says"] == "holds over documents"
 
 
@@ -60,11 +60,11 @@ def test_exchanged_labels_agree(talkative: Store) -> None:
 
 def test_effect_size_stands_first_and_both_directions_are_there(talkative: Store) -> None:
     answer = colloc.contrast(talkative, this="genre=log", limit=10)
-    assert answer.names[:4] == ("word", "log_ratio", "low", "high")
+    assert answer.names[:4] == ("word", "log_ratio", "formula_low", "formula_high")
     assert (answer["log_ratio"] > 0).tolist() == [True] * 5 + [False] * 5
     by_bound = colloc.contrast(talkative, this="genre=log", limit=10, sort="bound")
-    assert np.all(np.diff(by_bound["low"][:5]) <= 0)
-    assert np.all(np.diff(by_bound["high"][5:]) >= 0)
+    assert np.all(np.diff(by_bound["formula_low"][:5]) <= 0)
+    assert np.all(np.diff(by_bound["formula_high"][5:]) >= 0)
 
 
 def test_both_forms_of_g2(talkative: Store) -> None:
@@ -136,7 +136,7 @@ def test_a_list_from_elsewhere_is_the_other_side(talkative: Store, logs_only: St
     sides = by_word(colloc.contrast(talkative, this="genre=notice", that="genre=log", limit=0))
     assert listed.keys() == sides.keys()
     for word, row in listed.items():
-        for column in ("log_ratio", "low", "g2", "count_this", "count_that"):
+        for column in ("log_ratio", "formula_low", "g2", "count_this", "count_that"):
             assert row[column] == pytest.approx(sides[word][column]), (word, column)
         assert np.isnan(row["document_q"]) or row["document_q"] >= row["q"] * (1 - 1e-9)
     assert listed["we"]["says"] == "that only; no document here has it"
