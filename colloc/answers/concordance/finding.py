@@ -11,13 +11,15 @@ from numpy.typing import NDArray
 from colloc.answers.concordance.matching import Search
 from colloc.counts.placing import document_places
 from colloc.counts.selection import Selection, selection_of, slice_selection
-from colloc.counts.spans import PIECE, read_stretches, window_spans
+from colloc.counts.spans import PIECE, read_stretches, slices_in, window_spans
 from colloc.records import NO_TERM, Int64Array, TokenSpan, UInt32Array
 from colloc.settings import Inside
 from colloc.store.connection import Store
-from colloc.store.stream import block_heads, block_types
+from colloc.store.stream import block_heads, block_types, read_block
 
 _FAR = np.int64(2**62)
+_FEW_TYPES = 16
+"""Spellings of a word up to which each is compared with the stream."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,28 +76,48 @@ def find(store: Store, search: Search, *, left: int, right: int, inside: Inside,
     where : str
         Canonical slice; empty for all documents.
     """
-    back = left + sum(search.lengths)
-    ahead = right + sum(search.lengths)
     whole = slice_selection(store, where)
-    selection = _needed(store, search, whole, max(back, ahead))
-    places, partners, distances = [], [], []
-    for first, span in _spans(store, search, selection, inside, back, ahead):
-        found, partner, distance = _in_span(span, search.lengths, left, right)
-        places.append(stream_places(selection, found + first))
-        partners.append(stream_places(selection, partner + first) if len(search.lengths) > 1 else partner)
-        distances.append(distance)
-    empty = np.empty(0, np.int64)
-    at = np.concatenate([*places, empty])
+    selection = _needed(store, search, whole, max(left, right) + sum(search.lengths))
+    types = search.types_of(0)
+    if search.lengths == (1,) and len(types) <= _FEW_TYPES:
+        found = _of_one_word(store, types, selection)
+    else:
+        found = _of_expressions(store, search, selection, left, right, inside)
+    nothing = np.empty(0, np.int64)
+    at, partners, distances = (np.concatenate(arrays) for arrays in zip((nothing,) * 3, *found, strict=True))
     documents = document_places(store, whole)
-    owner = documents.numbers[documents.of(_selection_places(whole, at))] if len(at) else empty
-    return Hits(
-        at,
-        owner,
-        search.lengths[0],
-        np.concatenate([*partners, empty]),
-        np.concatenate([*distances, empty]),
-        search.lengths[1] if len(search.lengths) > 1 else 0,
-    )
+    owner = documents.numbers[documents.of(_selection_places(whole, at))] if len(at) else nothing
+    partner_length = search.lengths[1] if len(search.lengths) > 1 else 0
+    return Hits(at, owner, search.lengths[0], partners, distances, partner_length)
+
+
+_Found = tuple[Int64Array, Int64Array, Int64Array]
+"""Places, partners and distances, as `Hits` has them."""
+
+
+def _of_one_word(store: Store, types: Int64Array, selection: Selection) -> Iterator[_Found]:
+    """A single word: no border of a unit matters to it, and its few types are soon compared."""
+    for head in block_heads(store):
+        _, parts = slices_in(selection, head)
+        tokens = read_block(store, head.number).tokens if parts else np.empty(0, np.uint32)
+        for part in parts:
+            fits = np.zeros(part.stop - part.start, np.bool_)
+            for one in types.tolist():
+                fits |= tokens[part] == one
+            places = np.flatnonzero(fits) + (head.first_token + part.start)
+            yield places, np.full(len(places), -1), np.zeros(len(places), np.int64)
+
+
+def _of_expressions(
+    store: Store, search: Search, selection: Selection, left: int, right: int, inside: Inside
+) -> Iterator[_Found]:
+    """Several words, or too many types to compare each."""
+    words = sum(search.lengths)
+    for first, span in _spans(store, search, selection, inside, left + words, right + words):
+        places, partners, distances = _in_span(span, search.lengths, left, right)
+        if len(search.lengths) > 1:
+            partners = stream_places(selection, partners + first)
+        yield stream_places(selection, places + first), partners, distances
 
 
 def _needed(store: Store, search: Search, selection: Selection, reach: int) -> Selection:
