@@ -5,12 +5,14 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any, Literal
 
+from colloc.errors import UsageError
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT, Inside, Margins
-from colloc.verbs.opening import ProgressCall, StorePath, pair_options, reading
+from colloc.verbs.opening import ProgressCall, StorePath, as_list, pair_options, reading
 
 if TYPE_CHECKING:
+    from colloc.answers.appraisal.labelled import Labelled
     from colloc.answers.columns import Columns
     from colloc.store.opening import Store
 
@@ -25,11 +27,12 @@ class Appraisal:
     ----------
     measures : Columns
         A row for each measure, best first; the learnt ranking is the row ``combined``, by models that had not seen
-        the pairs they ranked.
+        what they ranked.
     folds, weights : Columns or None
         Of the learnt ranking.
     ranking : Columns or None
-        The strongest pairs of the store by the learnt ranking: first, second, joint, combined (log odds), accepted.
+        The strongest of the store by the learnt ranking: first and second with joint, or expression with count, and
+        combined (log odds) and wanted.
     """
 
     measures: Columns
@@ -41,6 +44,7 @@ class Appraisal:
 def appraise(
     store: StorePath | Store,
     *,
+    items: Literal["pairs", "expressions"] = "pairs",
     gold: Sequence[Sequence[str]] | None = None,
     by: str | None = None,
     show: Sequence[str] | None = None,
@@ -59,6 +63,12 @@ def appraise(
     margins: Margins | None = None,
     directed: bool = False,
     where: Sequence[str] | str = (),
+    min_words: int | None = None,
+    max_words: int | None = None,
+    min_docs: int | None = None,
+    names: Literal["drop", "keep"] | None = None,
+    common: Literal["drop", "keep"] | None = None,
+    fragments: Literal["fold", "keep"] | None = None,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
     progress: ProgressCall | None = None,
@@ -67,9 +77,11 @@ def appraise(
 
     Parameters
     ----------
-    gold : sequence of pairs of words
-        Every pair that meets at least ``min_count`` times is a candidate, those of the list are wanted. Without it the
-        candidates are the pairs that were decided, and the accepted ones are wanted.
+    items : {"pairs", "expressions"}
+        Pairs, ranked by the measures of association, or expressions, by those of `expressions`.
+    gold : sequence of sequences of words
+        Every pair that meets at least ``min_count`` times, or everything that `expressions` lists, is a candidate;
+        those of the list are wanted. Without it the candidates are what was decided, and the accepted are wanted.
     by : str
         Decisions of this judge only.
     show : sequence of str
@@ -77,24 +89,55 @@ def appraise(
     combined : bool
         Also learn a ranking from all measures.
     limit : int
-        With ``combined``: so many pairs of the store, ranked by what was learnt.
+        With ``combined``: so many pairs or expressions of the store, ranked by what was learnt.
     plot : path
         Draw precision against recall to this SVG or PNG file.
+    min_words, max_words, min_docs, names, common, fragments
+        Of expressions: what is a candidate, as for `expressions`. The others (window to directed) are for pairs.
 
     Raises
     ------
     UsageError
-        Where nothing was accepted, or nothing rejected, or too little to learn from.
+        Where nothing was accepted, or nothing rejected, or too little to learn from; for an option of the other items.
     """
-    from colloc.answers.appraisal import appraising, labelled
+    from colloc.answers.appraisal import appraising
 
-    options = pair_options(layer, window, left, right, False, inside, margins, directed, True, where, None)
+    resources: dict[str, Any] = {"jobs": jobs, "memory": memory, "progress": progress}
+    chosen: dict[str, Any] = {
+        name: value
+        for name, value in (
+            ("min_words", min_words),
+            ("max_words", max_words),
+            ("min_docs", min_docs),
+            ("names", names),
+            ("common", common),
+            ("fragments", fragments),
+        )
+        if value is not None
+    }
+    _check_items(
+        items, {"window": window, "left": left, "right": right, "margins": margins, "directed": directed}, chosen
+    )
     with reading(store) as opened:
-        if gold is not None:
-            found = labelled.from_list(opened, gold, options, min_count, jobs=jobs, memory=memory, progress=progress)
+        found: Labelled
+        if items == "expressions":
+            from colloc.answers.appraisal import of_expressions
+            from colloc.answers.expressions.settings import ExpressionOptions
+
+            wanted = ExpressionOptions(layer=layer, where=as_list(where), inside=inside, min_count=min_count, **chosen)
+            if gold is not None:
+                found = of_expressions.from_list(opened, gold, wanted, **resources)
+            else:
+                found = of_expressions.from_decisions(opened, wanted, by, **resources)
         else:
-            found = labelled.from_decisions(opened, options, by, jobs=jobs, memory=memory, progress=progress)
-        scores = found.scores(appraising.chosen_measures(found, show))
+            from colloc.answers.appraisal import of_pairs
+
+            options = pair_options(layer, window, left, right, False, inside, margins, directed, True, where, None)
+            if gold is not None:
+                found = of_pairs.from_list(opened, gold, options, min_count, **resources)
+            else:
+                found = of_pairs.from_decisions(opened, options, by, **resources)
+        scores = found.scores(found.measures(show))
         folds = weights = ranking = None
         if combined:
             from colloc.answers.appraisal import combining
@@ -109,3 +152,11 @@ def appraise(
 
         precision_recall_picture(Path(plot), found.wanted, scores, table["measure"].tolist())
     return Appraisal(table, folds, weights, ranking)
+
+
+def _check_items(items: str, of_pairs: dict[str, Any], of_expressions: dict[str, Any]) -> None:
+    if items not in ("pairs", "expressions"):
+        raise UsageError(f"items are pairs or expressions, not {items!r}")
+    others = of_expressions if items == "pairs" else {name: value for name, value in of_pairs.items() if value}
+    if others:
+        raise UsageError(f"{', '.join(others)} is nothing that {items} have: leave it out, or choose the other items")

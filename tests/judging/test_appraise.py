@@ -12,7 +12,7 @@ import pytest
 from sklearn.metrics import average_precision_score
 
 import colloc
-from colloc.answers.appraisal import combining, labelled
+from colloc.answers.appraisal import combining, of_pairs
 from colloc.answers.questions import PairOptions
 from colloc.cli.app import main
 from colloc.errors import UsageError
@@ -104,14 +104,14 @@ def test_a_learnt_ranking_is_tested_on_words_it_has_not_seen(planted: tuple[Path
     store, gold, _ = planted
     options = PairOptions(window=1, directed=True)
     with open_store(store) as opened:
-        made = labelled.from_list(opened, gold, options, 5)
+        made = of_pairs.from_list(opened, gold, options, 5)
         scores = made.scores(["joint", "npmi", "g2", "dice"])
         learnt = combining.combine(made, scores, seed=5)
         again = combining.combine(made, scores, seed=5)
         best = combining.ranked(learnt, made, 3, 40)
         # Labels that mean nothing: whatever is learnt from them must not help on other words.
         wanted = np.random.default_rng(2).permutation(made.wanted)
-        noise = labelled.Labelled(made.question, made.table, wanted, 0, 0)
+        noise = of_pairs.LabelledPairs(made.question, made.table, wanted, 0, 0)
         nothing = combining.combine(noise, scores, seed=5)
     np.testing.assert_array_equal(learnt.out_of_fold, again.out_of_fold)
     assert average_precision_score(made.wanted, learnt.out_of_fold) > 0.9

@@ -9,9 +9,7 @@ import numpy as np
 
 from colloc.answers.appraisal.labelled import Labelled
 from colloc.answers.columns import Columns
-from colloc.answers.tables import TOKEN_MARGIN_MEASURES
 from colloc.errors import UsageError
-from colloc.measures.catalogue import MEASURES, find
 from colloc.measures.retrieval import (
     average_precision,
     best_threshold,
@@ -24,14 +22,6 @@ from colloc.records import FloatArray
 
 DEFAULT_PLACES = (100,)
 REPEATS = 1000
-
-
-def chosen_measures(labelled: Labelled, names: Sequence[str] | None) -> list[str]:
-    """The measures asked for; ``joint`` and all that the margins can bear when not given."""
-    if names is not None:
-        return [name if name == "joint" else find(name).name for name in dict.fromkeys(names)]
-    bearable = TOKEN_MARGIN_MEASURES if labelled.question.convention.margins == "tokens" else tuple(MEASURES)
-    return ["joint", *bearable]
 
 
 def appraised(
@@ -76,8 +66,7 @@ def appraised(
         for place in dict.fromkeys(at):
             row[f"precision_at_{place}"], row[f"recall_at_{place}"] = precision_recall_at(ranking, place)
         cut = best_threshold(ranking)
-        turned = name in MEASURES and MEASURES[name].strongest == "lowest"
-        row["threshold"] = -cut.score if turned else cut.score
+        row["threshold"] = -cut.score if labelled.turned(name) else cut.score
         row |= {"threshold_precision": cut.precision, "threshold_recall": cut.recall, "threshold_f1": cut.f1}
         rows.append(row)
     rows.sort(key=lambda row: (-row["average_precision"], row["measure"]))
@@ -87,12 +76,12 @@ def appraised(
 
 
 def settings_of(labelled: Labelled, **more: Any) -> dict[str, Any]:
-    """How the pairs were counted, how many were held against what."""
+    """How the candidates were counted, how many were held against what."""
     wanted = int(labelled.wanted.sum())
-    return labelled.question.settings(
-        candidates=len(labelled.table),
+    return labelled.settings(
+        candidates=len(labelled),
         wanted=wanted,
-        share_wanted=round(wanted / max(len(labelled.table), 1), 6),
+        share_wanted=round(wanted / max(len(labelled), 1), 6),
         listed=labelled.listed,
         passed_over=labelled.passed_over,
         **more,

@@ -1,6 +1,6 @@
 """A ranking learnt from labels: regularised logistic regression over the measures, with honest cross-validation.
 
-Pairs that share their first word are never divided between training and test. The
+Candidates that share their first word are never divided between training and test. The
 strength of the regularisation is chosen inside each training part, and so is the
 single measure that the combination is compared with.
 """
@@ -13,14 +13,11 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.answers.appraisal.labelled import Labelled, pair_codes, ranking_values
+from colloc.answers.appraisal.labelled import Labelled
 from colloc.answers.columns import Columns
-from colloc.answers.pairs import text_ranks
-from colloc.answers.ranking import TopRows
 from colloc.errors import MissingExtraError, UsageError
 from colloc.measures.retrieval import average_precision, steps
 from colloc.records import FloatArray
-from colloc.store import vocabulary
 
 FOLDS, INNER_FOLDS = 5, 3
 STRENGTHS = (0.01, 0.1, 1.0, 10.0)
@@ -76,12 +73,13 @@ def combine(labelled: Labelled, scores: dict[str, FloatArray], *, seed: int = 0)
     except ImportError as error:
         raise MissingExtraError("a combined ranking needs scikit-learn: pip install 'colloc[judging]'") from error
     features, wanted = _features(scores), labelled.wanted
-    groups = labelled.table.first.astype(np.int64)
+    groups = labelled.groups
     few = min(int(wanted.sum()), int((~wanted).sum()))
     of_wanted = min(len(np.unique(groups[wanted])), len(np.unique(groups[~wanted]))) if few else 0
     if few < LEAST or of_wanted < FOLDS:
         raise UsageError(
-            f"{int(wanted.sum())} wanted and {int((~wanted).sum())} other pairs are too few to learn from: "
+            f"{int(wanted.sum())} wanted and {int((~wanted).sum())} other {labelled.what} are too few to learn "
+            f"from: "
             f"{LEAST} of each are needed, with at least {FOLDS} different first words"
         )
     generator = np.random.default_rng(seed)
@@ -117,30 +115,10 @@ def combine(labelled: Labelled, scores: dict[str, FloatArray], *, seed: int = 0)
 
 
 def ranked(combination: Combination, labelled: Labelled, min_count: int, limit: int) -> Columns:
-    """The pairs of the store that the model learnt from everything puts first.
-
-    Returns
-    -------
-    Columns
-        first, second, joint, combined (log odds of being wanted) and wanted (1 where the label says so).
-    """
-    question = labelled.question
-    top = TopRows(limit, lambda: text_ranks(question))
-    for table in question.reader.blocks():
-        chosen = table.take(table.joint >= max(min_count, 1))
-        if len(chosen):
-            scores = ranking_values(chosen, combination.measures)
-            top.add(chosen, combination.model.odds(_features(scores)))
-    table, odds, first, second = top.best(lambda terms: vocabulary.term_texts(question.store, question.layer, terms))
-    accepted = pair_codes(question, labelled.table.first, labelled.table.second)[labelled.wanted]
-    columns = {
-        "first": first,
-        "second": second,
-        "joint": table.joint,
-        "combined": odds,
-        "wanted": np.isin(pair_codes(question, table.first, table.second), accepted).astype(np.int64),
-    }
-    return Columns(columns, question.settings(min_count=min_count, limit=limit))
+    """What the store has, as the model learnt from everything ranks it: see `Labelled.ranked`."""
+    return labelled.ranked(
+        combination.measures, lambda scores: combination.model.odds(_features(scores)), min_count, limit
+    )
 
 
 def _features(scores: dict[str, FloatArray]) -> FloatArray:

@@ -1,126 +1,113 @@
-"""Pairs with a label: what was accepted or rejected, or every pair of the store beside a list."""
+"""What rankings are held against: candidates with a label each, from decisions or from a list."""
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
-from typing import Any
+from abc import ABC, abstractmethod
+from collections.abc import Callable, Sequence
+from typing import Any, ClassVar
 
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.answers.columns import Columns
 from colloc.answers.judging.listing import standing
-from colloc.answers.questions import PairOptions, Question, ask
-from colloc.answers.tables import PairTable, joined
-from colloc.errors import NotSeenError, UsageError
-from colloc.measures.catalogue import MEASURES, compute_all
-from colloc.records import FloatArray
-from colloc.settings import DEFAULT_MEMORY
-from colloc.store import vocabulary
+from colloc.errors import UsageError
+from colloc.records import FloatArray, Int64Array
 from colloc.store.connection import Store
-from colloc.store.decisions import Decision, Key
+from colloc.store.decisions import Decision, Key, Kind
+
+Scores = dict[str, FloatArray]
+"""Ranking values by measure, the highest first."""
 
 
-@dataclass(frozen=True, slots=True)
-class Labelled:
-    """Candidates, which of them are wanted, and where the numbers come from.
+class Labelled(ABC):
+    """Candidates, and which of them are wanted.
 
     Attributes
     ----------
-    question : Question
-    table : PairTable
+    what : str
+        What the candidates are, in the plural.
     wanted : bool array, shape (n,)
     listed : int
-        Pairs of the list, or decisions of the kind asked about, whether or not the store has them as candidates.
+        Entries of the list, or decisions of the kind asked about, whether or not the store has them as candidates.
     passed_over : int
         Of those, how many are no candidates: too rare, never met, or undecided.
+    groups : int64 array, shape (n,)
+        The first word of each, as a number.
     """
 
-    question: Question
-    table: PairTable
+    what: ClassVar[str]
     wanted: NDArray[np.bool_]
     listed: int
     passed_over: int
+    groups: Int64Array
 
-    def scores(self, measures: Sequence[str]) -> dict[str, FloatArray]:
-        """Ranking value of each candidate by each measure, highest first; ``joint`` is frequency."""
-        return ranking_values(self.table, measures)
+    def __len__(self) -> int:
+        return len(self.wanted)
+
+    @abstractmethod
+    def measures(self, names: Sequence[str] | None) -> list[str]:
+        """The measures asked for, all that can rank these candidates when not given.
+
+        Raises
+        ------
+        UsageError
+            For a name that is none of them.
+        """
+
+    @abstractmethod
+    def scores(self, measures: Sequence[str]) -> Scores:
+        """Ranking value of each candidate by each measure."""
+
+    def turned(self, measure: str) -> bool:
+        """Whether the strongest end of a measure is its lowest, so that its ranking values are negative."""
+        return False
+
+    @abstractmethod
+    def settings(self, **more: Any) -> dict[str, Any]:
+        """How the candidates were counted."""
+
+    @abstractmethod
+    def ranked(
+        self, measures: Sequence[str], odds: Callable[[Scores], FloatArray], min_count: int, limit: int
+    ) -> Columns:
+        """What the store has, by odds that were learnt from the measures: ``combined`` is them, ``wanted`` the label.
+
+        Parameters
+        ----------
+        limit : int
+            Rows.
+        """
 
 
-def ranking_values(table: PairTable, measures: Sequence[str]) -> dict[str, FloatArray]:
-    """Measures turned so that the strongest end is the highest."""
-    named = [name for name in measures if name != "joint"]
-    computed = compute_all(named, *table.arguments)
-    turned = {name: -values if MEASURES[name].strongest == "lowest" else values for name, values in computed.items()}
-    if "joint" in measures:
-        turned["joint"] = table.joint.astype(np.float64)
-    return {name: turned[name] for name in measures}
+def decided(store: Store, kind: Kind, layer: str, judge: str | None) -> tuple[list[Decision], NDArray[np.bool_], int]:
+    """What was accepted or rejected of one kind in one layer; what judges dispute, or are unsure of, is passed over.
 
-
-def from_list(
-    store: Store, listed: Sequence[Sequence[str]], options: PairOptions, min_count: int, **resources: Any
-) -> Labelled:
-    """Every pair that meets at least ``min_count`` times; those of the list are wanted.
-
-    Entries of the list that are no pairs of words are passed over.
+    Returns
+    -------
+    decisions : list of Decision
+        One of each matter.
+    wanted : bool array
+        Whether it was accepted.
+    listed : int
+        Matters that were decided at all.
     """
-    question = ask(store, options, (), **resources)
-    pairs = [tuple(words) for words in listed if len(words) == 2]
-    if not pairs:
-        raise UsageError("the list holds no pair of two words")
-    terms = [vocabulary.term_numbers(store, question.layer, [pair[place] for pair in pairs]) for place in (0, 1)]
-    known = (terms[0] >= 0) & (terms[1] >= 0)
-    gold = np.unique(pair_codes(question, terms[0][known], terms[1][known]))
-    table = joined(list(_frequent(question, min_count)))
-    if not len(table):
-        raise NotSeenError(f"{store.path}: no pair meets {min_count} times or more")
-    codes = pair_codes(question, table.first, table.second)
-    wanted = np.isin(codes, gold)
-    return Labelled(question, table, wanted, len(set(pairs)), len(set(pairs)) - len(np.unique(codes[wanted])))
-
-
-def _frequent(question: Question, min_count: int) -> Iterator[PairTable]:
-    empty = np.zeros(0, np.uint32)
-    yield question.reader.given(empty, empty)
-    for table in question.reader.blocks():
-        yield table.take(table.joint >= max(min_count, 1))
-
-
-def pair_codes(question: Question, first: NDArray[Any], second: NDArray[Any]) -> NDArray[np.uint64]:
-    """One number a pair; both orders of a pair without direction have the same."""
-    one, two = first.astype(np.uint64), second.astype(np.uint64)
-    if not question.reader.ordered:
-        one, two = np.minimum(one, two), np.maximum(one, two)
-    return one << np.uint64(32) | two
-
-
-def from_decisions(
-    store: Store, options: PairOptions, judge: str | None, *, jobs: int | None = None, memory: int = DEFAULT_MEMORY,
-    progress: Any = None,
-) -> Labelled:  # fmt: skip
-    """The pairs that were accepted (wanted) or rejected; where judges disagree, or are unsure, a pair is passed over.
-
-    Pairs of the layer asked about; directed ones where the question is directed, else those without direction.
-    """
-    question = ask(store, options, (), jobs=jobs, memory=memory, progress=progress)
-    kind = "directed" if options.directed else "pair"
     verdicts: dict[Key, set[str]] = {}
-    words: dict[Key, Decision] = {}
+    matters: dict[Key, Decision] = {}
     for one in standing(store, judge):
-        if one.kind == kind and one.layer == question.layer:
+        if one.kind == kind and one.layer == layer:
             verdicts.setdefault(one.key, set()).add(one.verdict)
-            words[one.key] = one
-    decided = [key for key, found in verdicts.items() if len(found & {"accept", "reject"}) == 1]
-    terms = [
-        vocabulary.term_numbers(store, question.layer, [words[key].words[place] for key in decided]) for place in (0, 1)
-    ]
-    known = (terms[0] >= 0) & (terms[1] >= 0)
-    table = question.reader.given(terms[0][known].astype(np.uint32), terms[1][known].astype(np.uint32))
-    wanted = np.array(["accept" in verdicts[key] for key in decided], np.bool_)[known]
+            matters[one.key] = one
+    clear = [key for key, found in verdicts.items() if len(found & {"accept", "reject"}) == 1]
+    wanted = np.array(["accept" in verdicts[key] for key in clear], np.bool_)
+    return [matters[key] for key in clear], wanted, len(verdicts)
+
+
+def check_both(store: Store, wanted: NDArray[np.bool_], what: str, layer: str) -> None:
+    """Raise UsageError where everything, or nothing, is wanted."""
     if wanted.all() or not wanted.any():
-        what = "accepted" if not wanted.any() else "rejected"
+        verdict = "accepted" if not wanted.any() else "rejected"
         raise UsageError(
-            f"{store.path}: no {kind} of layer {question.layer!r} was {what}: accept some and reject some, "
+            f"{store.path}: no {what} of layer {layer!r} was {verdict}: accept some and reject some, "
             "or give a list with --gold"
         )
-    return Labelled(question, table, wanted, len(verdicts), len(verdicts) - len(table))

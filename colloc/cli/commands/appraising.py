@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import Annotated
+from typing import Annotated, Literal
 
 import typer
 
@@ -16,12 +16,16 @@ from colloc.settings import DEFAULT_MIN_COUNT
 
 def appraise(
     store: opt.StoreArgument,
+    items: Annotated[
+        Literal["pairs", "expressions"],
+        typer.Option("--items", help="Hold pairs against it, or expressions by the measures that rank those."),
+    ] = "pairs",
     gold: Annotated[
         Path | None,
         typer.Option(
             "--gold",
             metavar="FILE",
-            help="Hold the measures against this list of pairs, one a line, instead of the decisions.",
+            help="Hold the measures against this list of pairs or expressions, one a line, instead of the decisions.",
         ),
     ] = None,
     by: Annotated[str | None, typer.Option("--by", metavar="NAME", help="Decisions of this judge only.")] = None,
@@ -30,7 +34,8 @@ def appraise(
         typer.Option(
             "--show",
             metavar="NAMES",
-            help="Measures held against it, joint among them; all when not given.",
+            help="Measures held against it, joint among them (of expressions: strength, c_value, ...); all when not "
+            "given.",
             autocompletion=opt.complete_measures,
         ),
     ] = None,
@@ -43,7 +48,7 @@ def appraise(
     ranking: Annotated[
         Path | None,
         typer.Option(
-            "--ranking", metavar="FILE", help="With --combined: the store's pairs by what was learnt, as CSV."
+            "--ranking", metavar="FILE", help="With --combined: what the store has, by what was learnt, as CSV."
         ),
     ] = None,
     plot: Annotated[
@@ -58,12 +63,31 @@ def appraise(
     directed: opt.DirectedOption = False,
     where: opt.WhereOption = None,
     min_count: Annotated[
-        int, typer.Option("--min-count", metavar="N", min=1, help="With --gold: least joint count of candidates.")
+        int, typer.Option("--min-count", metavar="N", min=1, help="With --gold: least count of candidates.")
     ] = DEFAULT_MIN_COUNT,
+    min_words: Annotated[
+        int | None, typer.Option("--min-words", metavar="N", help="Of expressions: fewest words; 2 if not given.")
+    ] = None,
+    max_words: Annotated[
+        int | None, typer.Option("--max-words", metavar="N", help="Of expressions: most words; 6 if not given.")
+    ] = None,
+    min_docs: Annotated[
+        int | None, typer.Option("--min-docs", metavar="N", min=0, help="Of expressions: least number of documents.")
+    ] = None,
+    names: Annotated[
+        Literal["drop", "keep"] | None, typer.Option("--names", help="Of expressions: as `colloc expressions` has it.")
+    ] = None,
+    common: Annotated[
+        Literal["drop", "keep"] | None, typer.Option("--common", help="Of expressions: as `colloc expressions` has it.")
+    ] = None,
+    fragments: Annotated[
+        Literal["fold", "keep"] | None,
+        typer.Option("--fragments", help="Of expressions: as `colloc expressions` has it."),
+    ] = None,
     repeats: Annotated[int, typer.Option("--repeats", metavar="N", min=1, help="Samples of the bootstrap.")] = 1000,
     seed: Annotated[int, typer.Option("--seed", metavar="N", min=0, help="Of the bootstrap and the folds.")] = 0,
     limit: Annotated[
-        int, typer.Option("--limit", "-n", metavar="N", min=1, help="Pairs written with --ranking.")
+        int, typer.Option("--limit", "-n", metavar="N", min=1, help="Rows written with --ranking.")
     ] = 1000,
     format: opt.FormatOption = "table",
     output: opt.OutputOption = None,
@@ -74,8 +98,9 @@ def appraise(
 
     Average precision is told with a 95 % interval by bootstrap over the candidates, the
     threshold is the one with the highest F1. The line `combined` is a regularised
-    logistic regression over all measures, each pair ranked by a model that has not seen
-    its first word.
+    logistic regression over all measures, each pair or expression ranked by a model that
+    has not seen its first word. With --items expressions the candidates are what `colloc
+    expressions` lists, or the expressions that were decided.
     """
     from colloc.cli.word_lists import read_matters
     from colloc.verbs import appraising
@@ -86,9 +111,10 @@ def appraise(
     with ProgressLine(quiet=quiet) as progress:
         found = appraising.appraise(
             store,
+            items=items,
             gold=read_matters(gold) if gold is not None else None,
             by=by,
-            show=_names(show),
+            show=_names(show, items),
             at=_places(at),
             min_count=min_count,
             combined=combined,
@@ -104,6 +130,12 @@ def appraise(
             margins=margins,
             directed=directed,
             where=where or (),
+            min_words=min_words,
+            max_words=max_words,
+            min_docs=min_docs,
+            names=names,
+            common=common,
+            fragments=fragments,
             progress=progress,
         )
     deliver(found.measures, target, "appraise")
@@ -121,12 +153,12 @@ def appraise(
         deliver(found.ranking, Target("csv", ranking, True), "appraise")
 
 
-def _names(values: list[str] | None) -> list[str] | None:
-    """Measures and ``joint``; None for all."""
+def _names(values: list[str] | None, items: str) -> list[str] | None:
+    """Measures, those of pairs (with ``joint``) checked; None for all."""
     names = opt.split_names(values)
     if names is None or "all" in names:
         return None
-    for name in names:
+    for name in names if items == "pairs" else ():
         opt.check_ranking(name)
     return names
 
