@@ -13,7 +13,9 @@ SHORT, LONG, PLAIN, UNKEYED = range(4)
 """Tables by their place; what cannot be spelled as a key has none."""
 _CODED_WORD = 8
 _PLAIN_WORD = 3
-_ABSENT = np.uint32(0xFFFFFFFF)
+_NOTHING = np.uint64(0)
+_ONE = np.uint64(1)
+_HALF = np.uint64(32)
 _ONES = np.uint64(0x0101010101010101)
 _HIGHS = np.uint64(0x8080808080808080)
 _ALL = np.uint64(0xFFFFFFFFFFFFFFFF)
@@ -69,15 +71,22 @@ def number_tokens(
         Tokens told, ascending, and where they were entered: 4 * slot + table.
     """
     n_fresh = room[UNKEYED]
+    # Unsigned, since for indices with a sign the compiler adds a look whether they count from the end.
+    short_last = np.uint64(len(short_values) - 1)
+    long_last = np.uint64(len(long_values) - 1)
+    plain_last = np.uint64(len(plain_values) - 1)
+    short_multiplier = multipliers[0]
+    short_shift = np.uint64(shifts[SHORT])
     for token in range(first, len(starts)):
-        start = starts[token]
-        length = ends[token] - start
+        start = np.uint64(starts[token])
+        length = ends[token] - starts[token]
         table = UNKEYED
         key = np.uint64(0)
         more = np.uint64(0)
+        slot = np.uint64(0)
         if length <= 2 * _CODED_WORD:
             for k in range(_CODED_WORD):
-                key |= np.uint64(coded[start + k]) << np.uint64(8 * k)
+                key |= np.uint64(coded[start + np.uint64(k)]) << np.uint64(8 * k)
             mask = _ALL
             if length < _CODED_WORD:
                 mask = ~(_ALL << np.uint64(8 * length))
@@ -88,62 +97,62 @@ def number_tokens(
             table = SHORT
             if length > _CODED_WORD:
                 table = LONG
-                for k in range(_CODED_WORD):
-                    more |= np.uint64(coded[start + _CODED_WORD + k]) << np.uint64(8 * k)
+                for k in range(_CODED_WORD, 2 * _CODED_WORD):
+                    more |= np.uint64(coded[start + np.uint64(k)]) << np.uint64(8 * (k - _CODED_WORD))
                 mask = _ALL
                 if length < 2 * _CODED_WORD:
                     mask = ~(_ALL << np.uint64(8 * (length - _CODED_WORD)))
                 more &= mask
                 filled = more | ~mask
                 zeros |= (filled - _ONES) & ~filled & _HIGHS
-            if zeros != np.uint64(0):
+            if zeros != _NOTHING:
                 table = UNKEYED
                 if length <= 2 * _PLAIN_WORD:
                     table = PLAIN
                     key = np.uint64(0)
                     more = np.uint64(0)
                     for k in range(length):
-                        point = np.uint64(points[start + k])
-                        if point == np.uint64(0):
+                        point = np.uint64(points[start + np.uint64(k)])
+                        if point == _NOTHING:
                             table = UNKEYED
                         if k < _PLAIN_WORD:
                             key |= point << np.uint64(21 * k)
                         else:
                             more |= point << np.uint64(21 * (k - _PLAIN_WORD))
-        if table == UNKEYED:
-            numbers[token] = base + n_fresh
-            fresh[n_fresh] = token
-            slots[n_fresh] = UNKEYED
-            n_fresh += 1
-            continue
-        mixed = key * multipliers[2 * table]
+        # No key begins with 0, so that a key of 0 is a free place.
         if table == SHORT:
-            last = len(short_values) - 1
-            slot = np.int64(mixed >> np.uint64(shifts[SHORT]))
-            while short_values[slot] != _ABSENT and short_keys[slot] != key:
-                slot = (slot + 1) & last
-            value = short_values[slot]
-        else:
-            mixed ^= mixed >> np.uint64(32)
+            slot = (key * short_multiplier) >> short_shift
+            found = short_keys[slot]
+            while found != key and found != _NOTHING:
+                slot = (slot + _ONE) & short_last
+                found = short_keys[slot]
+            if found == key:
+                numbers[token] = short_values[slot]
+                continue
+        elif table != UNKEYED:
+            mixed = key * multipliers[2 * table]
+            mixed ^= mixed >> _HALF
             mixed += more
             mixed *= multipliers[2 * table + 1]
-            slot = np.int64(mixed >> np.uint64(shifts[table]))
+            slot = mixed >> np.uint64(shifts[table])
             if table == LONG:
-                last = len(long_values) - 1
-                while long_values[slot] != _ABSENT and (long_keys[slot] != key or long_more[slot] != more):
-                    slot = (slot + 1) & last
-                value = long_values[slot]
+                while long_keys[slot] != _NOTHING and (long_keys[slot] != key or long_more[slot] != more):
+                    slot = (slot + _ONE) & long_last
+                if long_keys[slot] == key:
+                    numbers[token] = long_values[slot]
+                    continue
             else:
-                last = len(plain_values) - 1
-                while plain_values[slot] != _ABSENT and (plain_keys[slot] != key or plain_more[slot] != more):
-                    slot = (slot + 1) & last
-                value = plain_values[slot]
-        if value == _ABSENT:
+                while plain_keys[slot] != _NOTHING and (plain_keys[slot] != key or plain_more[slot] != more):
+                    slot = (slot + _ONE) & plain_last
+                if plain_keys[slot] == key:
+                    numbers[token] = plain_values[slot]
+                    continue
+        value = np.uint32(base + n_fresh)
+        if table != UNKEYED:
             if room[table] == 0:
                 room[UNKEYED] = n_fresh
                 return token
             room[table] -= 1
-            value = np.uint32(base + n_fresh)
             if table == SHORT:
                 short_keys[slot] = key
                 short_values[slot] = value
@@ -155,9 +164,9 @@ def number_tokens(
                 plain_keys[slot] = key
                 plain_more[slot] = more
                 plain_values[slot] = value
-            fresh[n_fresh] = token
-            slots[n_fresh] = 4 * slot + table
-            n_fresh += 1
         numbers[token] = value
+        fresh[n_fresh] = token
+        slots[n_fresh] = np.int64(slot << np.uint64(2)) + table
+        n_fresh += 1
     room[UNKEYED] = n_fresh
     return len(starts)

@@ -20,6 +20,7 @@ _WORDISH = LETTER | NUMERIC | CONNECTOR
 _LETTER_OR_NUMERIC = LETTER | NUMERIC
 _LOOKS_AHEAD = MID_LETTER | MID_NUMBER | DOUBLE_QUOTE
 _BESIDE_KATAKANA = KATAKANA | UNDERSCORE
+_NONE, _ONE = np.uint64(0), np.uint64(1)
 
 
 @kernel(
@@ -44,56 +45,57 @@ def word_spans(
     starts, ends : int64 arrays, shape (n + 1,)
         To be written.
     """
-    n = len(kinds)
-    count = 0  # tokens that have begun
-    hyphen = 0  # the next of the hyphens
-    inside = 0
-    i = 0
+    # Unsigned, since for indices with a sign the compiler adds a look whether they count from the end.
+    n = np.uint64(len(kinds))
+    n_hyphens = np.uint64(len(hyphens))
+    count = _NONE  # tokens that have begun
+    hyphen = _NONE  # the next of the hyphens
+    i = _NONE
     while True:
         # Quick: letters, digits and what stands between words, without a branch for each word.
         ended = count
-        inside = 0
+        inside = _NONE
         while i < n:
             now = traits[kinds[i]]
-            within = 1 if now & _WORDISH else 0
+            within = _ONE if now & _WORDISH else _NONE
             if now >= MID_LETTER:
                 if now >= ATTACHED:
                     break
-                if inside and i + 1 < n:
-                    after = traits[kinds[i + 1]]
+                if inside and i + _ONE < n:
+                    after = traits[kinds[i + _ONE]]
                     if after >= ATTACHED:
                         break
-                    before = traits[kinds[i - 1]]
+                    before = traits[kinds[i - _ONE]]
                     if before & after & (now >> MID_SHIFT) & _LETTER_OR_NUMERIC:
-                        within = 1
+                        within = _ONE
                     elif now & HYPHEN and after & SPOKEN:
-                        while hyphen < len(hyphens) and hyphens[hyphen] < i:
-                            hyphen += 1
-                        if hyphen < len(hyphens) and hyphens[hyphen] == i:
-                            within = 1
-            starts[count] = i
+                        while hyphen < n_hyphens and hyphens[hyphen] < np.int64(i):
+                            hyphen += _ONE
+                        if hyphen < n_hyphens and hyphens[hyphen] == np.int64(i):
+                            within = _ONE
+            starts[count] = np.int64(i)
             count += within & ~inside
-            ends[ended] = i
+            ends[ended] = np.int64(i)
             ended += inside & ~within
             inside = within
-            i += 1
+            i += _ONE
         if i == n:
             if inside:
-                ends[ended] = n
-            return count
+                ends[ended] = np.int64(n)
+            return int(count)
         # With care, until a character that ends a word for certain.
         count = ended
-        begin = starts[count] if inside else max(i - 1, 0)
+        begin = starts[count] if inside else max(np.int64(i) - 1, 0)
         spoken = SPOKEN if inside else 0
-        before = traits[kinds[i - 1]] if i > 0 else np.uint32(0)  # of the last one not attached to another
+        before = traits[kinds[i - _ONE]] if i > _NONE else np.uint32(0)  # of the last one not attached to another
         previous = before
         bound = False  # whether the next one is joined, whatever it is
         while i < n:
             now = traits[kinds[i]]
-            if now & ATTACHED and i > 0 and not previous & NEWLINE:  # WB4
+            if now & ATTACHED and i > _NONE and not previous & NEWLINE:  # WB4
                 spoken |= now & SPOKEN
                 previous = now
-                i += 1
+                i += _ONE
                 continue
             joined = bound
             bound = False
@@ -103,18 +105,18 @@ def word_spans(
                 )
                 joined = joined or not apart
             elif (now & _LOOKS_AHEAD and before & _LETTER_OR_NUMERIC) or (now & HYPHEN and before & SPOKEN):
-                j = i + 1
+                j = i + _ONE
                 while j < n and traits[kinds[j]] & ATTACHED:
-                    j += 1
+                    j += _ONE
                 after = traits[kinds[j]] if j < n else np.uint32(0)
                 middle = before & after & (now >> MID_SHIFT) & _LETTER_OR_NUMERIC  # WB6, WB7, WB11, WB12
                 quote = now & DOUBLE_QUOTE and before & after & HEBREW  # WB7b, WB7c
                 if middle or quote:
                     bound = True
                 elif now & HYPHEN and after & SPOKEN:
-                    while hyphen < len(hyphens) and hyphens[hyphen] < i:
-                        hyphen += 1
-                    bound = hyphen < len(hyphens) and hyphens[hyphen] == i
+                    while hyphen < n_hyphens and hyphens[hyphen] < np.int64(i):
+                        hyphen += _ONE
+                    bound = hyphen < n_hyphens and hyphens[hyphen] == np.int64(i)
                 joined = joined or bound
             if now & SINGLE_QUOTE and before & HEBREW:  # WB7a
                 joined = True
@@ -123,20 +125,20 @@ def word_spans(
             if not joined:
                 if spoken:
                     starts[count] = begin
-                    ends[count] = i
-                    count += 1
-                begin = i
+                    ends[count] = np.int64(i)
+                    count += _ONE
+                begin = np.int64(i)
                 spoken = 0
                 if now & _WORDISH == 0 and now < MID_LETTER:
-                    i += 1
+                    i += _ONE
                     break
             spoken |= now & SPOKEN
             before = now
             previous = now
-            i += 1
+            i += _ONE
         else:
             if spoken:
                 starts[count] = begin
-                ends[count] = n
-                count += 1
-            return count
+                ends[count] = np.int64(n)
+                count += _ONE
+            return int(count)

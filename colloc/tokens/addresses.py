@@ -94,11 +94,19 @@ _MARKS = (("://", _url_at), ("www.", _www_at), ("WWW.", _www_at), ("@", _mail_at
 
 
 def _places(points: Points, mark: str) -> list[int]:
-    """Where `mark` stands: array comparisons, which cost a tenth of searching the string."""
-    found = points[: len(points) - len(mark) + 1] == ord(mark[0])
-    for offset in range(1, len(mark)):
-        found &= points[offset : len(points) - len(mark) + 1 + offset] == ord(mark[offset])
-    return np.flatnonzero(found).tolist() if found.any() else []
+    """Where `mark` stands: array comparisons, which cost a fraction of searching the string.
+
+    They are made for the last two characters, which hardly ever stand together but in a mark.
+    """
+    rest, ending = mark[:-2], mark[-2:]
+    n = len(points) - len(mark) + 1
+    found = points[len(rest) : len(rest) + n] == ord(ending[0])
+    for offset, character in enumerate(ending[1:], len(rest) + 1):
+        found &= points[offset : offset + n] == ord(character)
+    places = np.flatnonzero(found) if found.any() else np.zeros(0, np.int64)
+    for offset, character in enumerate(rest):
+        places = places[points[places + offset] == ord(character)]
+    return places.tolist()
 
 
 def find_addresses(text: str, points: Points) -> tuple[Int64Array, Int64Array]:

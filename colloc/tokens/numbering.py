@@ -10,8 +10,10 @@ before, and long tokens, become Python strings.
 from __future__ import annotations
 
 import unicodedata
+from collections import defaultdict
 from collections.abc import Callable
 from dataclasses import dataclass
+from itertools import count
 from typing import Final
 
 import numpy as np
@@ -98,7 +100,8 @@ class TypeNumberer:
         """Forget everything: numbers begin again at 0."""
         self._alphabet = Alphabet()
         self._short, self._long, self._plain = KeyTable(1), KeyTable(2), KeyTable(2)
-        self._numbers: dict[str, int] = {}
+        # Whatever is asked for gets a number: the next one where it has none.
+        self._numbers: defaultdict[str, int] = defaultdict(count().__next__)
         self._new: list[str] = []
         self._measure()
 
@@ -137,16 +140,16 @@ class TypeNumberer:
                 *(coded, spelled, segments.starts, segments.ends, first, base),
                 *(*arrays, multipliers, shifts, room, numbers, fresh, slots),
             )
-            count = int(room[UNKEYED])
-            final = np.array(self._spelled_numbers(segments, fresh[:count]), np.uint32)
+            n_fresh = int(room[UNKEYED])
+            final = np.array(self._spelled_numbers(segments, fresh[:n_fresh]), np.uint32)
             # Tokens told twice, and forms that are canonically equivalent, share a number.
-            if count and not np.array_equal(final, np.arange(base, base + count)):
+            if n_fresh and not np.array_equal(final, np.arange(base, base + n_fresh)):
                 told = numbers[first:done]
                 moved = told >= base
                 told[moved] = final[told[moved] - np.uint32(base)]
             for place, table in enumerate(tables):
                 table.note(int(before[place] - room[place]))
-                entered = np.flatnonzero(slots[:count] % _TABLES == place)
+                entered = np.flatnonzero(slots[:n_fresh] % _TABLES == place)
                 table.arrays[-1][slots[entered] // _TABLES] = final[entered]
             if done == len(numbers):
                 return
@@ -197,14 +200,14 @@ class TypeNumberer:
     def _spelled_numbers(self, segments: Segments, tokens: Int64Array) -> list[int]:
         """Numbers of the types of some tokens as strings; those that are canonically equivalent share one."""
         spans = zip(segments.starts[tokens].tolist(), segments.ends[tokens].tolist(), strict=True)
-        known, count, result = self._numbers, len(self._numbers), []
-        for surface in [segments.text[start:end] for start, end in spans]:
-            key = surface if surface.isascii() else unicodedata.normalize("NFC", surface)
-            number = known.setdefault(key, count)
-            if number == count:
-                count += 1
-                self._new.append(key)
-            result.append(number)
+        keys = [segments.text[start:end] for start, end in spans]
+        if not all(map(str.isascii, keys)):
+            keys = [key if key.isascii() else unicodedata.normalize("NFC", key) for key in keys]
+        known = len(self._numbers)
+        result = list(map(self._numbers.__getitem__, keys))
+        if len(self._numbers) - known < len(keys):
+            keys = list(dict.fromkeys(key for key, number in zip(keys, result, strict=True) if number >= known))
+        self._new += keys
         return result
 
     def _measure(self) -> None:

@@ -7,11 +7,14 @@ hundred characters; all of them are looked at together.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 from typing import Literal
 
 import numpy as np
 
-from colloc.records import Int64Array
+from colloc.kernels import sentences as loop
+from colloc.kernels.switch import compiled
+from colloc.records import Int64Array, UInt32Array
 from colloc.tokens.abbreviations import after_abbreviation
 from colloc.tokens.arrays import distinct
 from colloc.tokens.attaching import Attached, find_attached
@@ -106,6 +109,44 @@ def _terminated(kinds: Kinds, points: Points, attached: Attached | None, abbrevi
     return after_spaces[breaks]
 
 
+@cache
+def _traits() -> UInt32Array:
+    """What the compiled loop is told of each kind."""
+    bits = {
+        "Upper": loop.UPPER,
+        "Lower": loop.LOWER,
+        "OLetter": loop.LETTER,
+        "Numeric": loop.NUMERIC,
+        "Close": loop.CLOSE,
+        "Sp": loop.SPACE,
+        "SContinue": loop.CONTINUES,
+        "Extend": loop.ATTACHED,
+        "Format": loop.ATTACHED,
+        "STerm": loop.TERMINATOR,
+        "ATerm": loop.FULL_STOP,
+        "CR": loop.RETURN,
+        "LF": loop.FEED,
+        "Sep": loop.SEPARATOR,
+    }
+    traits = np.zeros(256, np.uint32)
+    for value, bit in bits.items():
+        traits[classes().sentence[value]] = bit
+    return traits
+
+
+def _places(kinds: Kinds, points: Points, abbreviations: bool) -> Int64Array:
+    """Where sentences break, found by a compiled loop."""
+    places, stops = np.empty(len(kinds), np.int64), np.empty(len(kinds), np.int64)
+    numeric = np.empty(len(kinds), np.uint8)
+    count = loop.sentence_places(kinds, _traits(), classes().first_terminator, places, stops, numeric)
+    places = places[:count]
+    if not abbreviations:
+        return places.copy()
+    asked = np.flatnonzero(stops[:count] >= 0)
+    asked = asked[points[stops[asked]] == _FULL_STOP]
+    return np.delete(places, asked[after_abbreviation(points, stops[asked], numeric[asked] != 0)])
+
+
 def sentence_breaks(
     kinds: Kinds,
     points: Points,
@@ -134,6 +175,8 @@ def sentence_breaks(
         returns = feeds[tables.sentence["CR"][kinds[feeds - 1]]] - 1
         kinds = kinds.copy()
         kinds[spaces] = kinds[returns] = tables.space_kind
+    if compiled():
+        return Breaks(_places(kinds, points, abbreviations), paragraphs)
     attached = find_attached(kinds, tables.sentences("Extend", "Format"), tables.sentences("CR", "LF", "Sep"))
     if attached is not None:
         kinds = kinds[attached.kept]
