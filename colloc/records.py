@@ -40,8 +40,8 @@ class Annotation:
 
     Blank lines end sentences; a line that begins with ``#`` is a comment (where
     the first column is not ``id``: unless it has as many columns as a word).
-    Each piece holds whole sentences, every line ended by LF and every sentence
-    by a blank line.
+    Each of `Document.sentences` holds whole sentences, every line ended by LF and
+    every sentence by a blank line.
 
     Attributes
     ----------
@@ -65,8 +65,9 @@ class Document:
     """One document as its reader gives it: streamed, never held whole.
 
     ``pieces`` are the text in order, each of bounded size; they may be cut
-    anywhere, even inside a word (annotated ones: between sentences only). They
-    must be consumed before the next document is asked for.
+    anywhere, even inside a word. They must be consumed before the next document
+    is asked for. Annotated documents have ``sentences`` instead: pieces of
+    UTF-8, cut between sentences only.
     """
 
     identifier: str
@@ -76,6 +77,8 @@ class Document:
     """0-based ordinal of the document in its source: where a resumed build goes on."""
     annotation: Annotation | None = None
     """None for plain text."""
+    sentences: Iterable[bytes] = ()
+    """Text that is annotated; see `Annotation`."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -35,7 +35,7 @@ class Entry:
     source: int
     record: int
     start: int
-    """Code point in the batch's text."""
+    """Code point in the batch's text, byte of its lines."""
     length: int
     first: bool
     """Whether the document begins here."""
@@ -56,7 +56,8 @@ class Batch:
     ``opening``: whether a sentence begins at its start for certain; where not,
     the stretch before says so. ``following``: the code point after its end.
     ``annotation``: what the columns of the lines hold where the text is
-    annotated; such text is whole sentences of documents of one source.
+    annotated; such text is whole sentences of documents of one source, and
+    stands, in UTF-8, in ``lines``.
     """
 
     text: str
@@ -64,6 +65,7 @@ class Batch:
     opening: bool = True
     following: str = ""
     annotation: Annotation | None = None
+    lines: bytes = b""
 
 
 @dataclass(slots=True)
@@ -71,26 +73,37 @@ class _Growing:
     """The batch being filled."""
 
     parts: list[str] = field(default_factory=list)
+    lines: list[bytes] = field(default_factory=list)
     entries: list[Entry] = field(default_factory=list)
     length: int = 0
     opening: bool = True
     annotation: Annotation | None = None
 
-    def append(self, text: str) -> tuple[int, int]:
-        """Where the text begins in the batch, and its length."""
+    def append(self, text: str | bytes) -> tuple[int, int]:
+        """Where the text, or lines of annotated text, begin in the batch, and their length."""
         start = self.length
-        self.parts.append(text)
+        if isinstance(text, str):
+            self.parts.append(text)
+        else:
+            self.lines.append(text)
         self.length += len(text)
         return start, len(text)
 
     def close(self, following: str = "") -> Batch:
-        batch = Batch("".join(self.parts), tuple(self.entries), self.opening, following, self.annotation)
-        self.parts, self.entries, self.length, self.opening = [], [], 0, True
+        batch = Batch(
+            "".join(self.parts),
+            tuple(self.entries),
+            self.opening,
+            following,
+            self.annotation,
+            b"".join(self.lines),
+        )
+        self.parts, self.lines, self.entries, self.length, self.opening = [], [], [], 0, True
         return batch
 
 
 class _Enter(Protocol):
-    def __call__(self, text: str, *, first: bool, last: bool, repeat: bool = False, line: int = 1) -> None: ...
+    def __call__(self, text: str | bytes, *, first: bool, last: bool, repeat: bool = False, line: int = 1) -> None: ...
 
 
 Numbered = tuple[int, Document]
@@ -133,22 +146,26 @@ class Batcher:
         enter = self._entering(growing, source, document)
         line = document.annotation.line
         fingerprint = self._repeats.fingerprint()
-        first, waiting = True, ""
-        for piece in document.pieces:
+        first, size = True, 0
+        waiting: list[bytes] = []
+        for piece in document.sentences:
             fingerprint.update(piece)
-            if waiting and growing.length + len(waiting) + len(piece) > BATCH_CHARACTERS:
+            if waiting and growing.length + size + len(piece) > BATCH_CHARACTERS:
                 if first and growing.entries:
                     # A long document begins a batch of its own, so that what precedes it can be committed.
                     yield growing.close()
-                if not first or len(waiting) + len(piece) > BATCH_CHARACTERS:
-                    enter(waiting, first=first, last=False, line=line)
+                if not first or size + len(piece) > BATCH_CHARACTERS:
+                    whole = b"".join(waiting)
+                    enter(whole, first=first, last=False, line=line)
                     yield growing.close()
-                    line += waiting.count("\n")
-                    first, waiting = False, ""
-            waiting += piece
+                    line += whole.count(b"\n")
+                    first, size = False, 0
+                    waiting.clear()
+            waiting.append(piece)
+            size += len(piece)
         repeat = self._repeats.is_repeat(fingerprint)
         if not (repeat and first):
-            enter(waiting, first=first, last=True, repeat=repeat, line=line)
+            enter(b"".join(waiting), first=first, last=True, repeat=repeat, line=line)
 
     def _document(self, growing: _Growing, source: int, document: Document) -> Iterator[Batch]:
         first = True
@@ -159,16 +176,21 @@ class Batcher:
         for piece in self._repeats.without_paragraphs(document.pieces):
             fingerprint.update(piece)
             waiting += piece
-            while len(waiting) > BATCH_CHARACTERS:
+            done = 0
+            while len(waiting) - done > BATCH_CHARACTERS:
                 if first and growing.entries:
                     # A long document begins a batch of its own, so that what precedes it can be committed.
                     yield growing.close()
-                cut = safe_cut(waiting[:BATCH_CHARACTERS], self._settings, BATCH_CHARACTERS // 2) or BATCH_CHARACTERS
-                enter(waiting[:cut], first=first, last=False)
-                hard = is_hard_break(waiting[: cut + 1], cut, self._settings)
-                yield growing.close(following=waiting[cut : cut + 1])
+                # The rest of a long piece stays where it is: cutting it off would copy all of it for each batch.
+                near = waiting[done : done + BATCH_CHARACTERS + 1]
+                cut = safe_cut(near[:BATCH_CHARACTERS], self._settings, BATCH_CHARACTERS // 2) or BATCH_CHARACTERS
+                enter(near[:cut], first=first, last=False)
+                hard = is_hard_break(near[: cut + 1], cut, self._settings)
+                yield growing.close(following=near[cut : cut + 1])
                 growing.opening = hard
-                waiting, first = waiting[cut:], False
+                done, first = done + cut, False
+            if done:
+                waiting = waiting[done:]
         repeat = self._repeats.is_repeat(fingerprint)
         if repeat and first:
             return
@@ -179,7 +201,7 @@ class Batcher:
         """What puts a part of the document into the growing batch."""
         metadata = json.dumps(dict(document.metadata), ensure_ascii=False)
 
-        def enter(text: str, *, first: bool, last: bool, repeat: bool = False, line: int = 1) -> None:
+        def enter(text: str | bytes, *, first: bool, last: bool, repeat: bool = False, line: int = 1) -> None:
             start, length = growing.append(text)
             growing.entries.append(
                 Entry(

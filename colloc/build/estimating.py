@@ -6,17 +6,19 @@ import json
 import shutil
 import tempfile
 import time
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from contextlib import ExitStack
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TextIO
+from typing import BinaryIO, TypeVar
 
 from colloc.build.batches import BATCH_CHARACTERS
 from colloc.build.building import build, resources
 from colloc.records import Document
 from colloc.settings import DEFAULT_MEMORY, ReadSettings, SegmentSettings, TallySpec
 from colloc.text.sources import open_sources
+
+Text = TypeVar("Text", str, bytes)
 
 SAMPLE_CHARACTERS = 2 * BATCH_CHARACTERS
 
@@ -116,29 +118,38 @@ def _write_sample(folder: Path, inputs: Sequence[str], read: ReadSettings) -> tu
     samples: dict[tuple[str, ...], Path] = {}
     written, done = 0, 0.0
     with ExitStack() as stack:
-        files: dict[tuple[str, ...], TextIO] = {}
+        files: dict[tuple[str, ...], BinaryIO] = {}
         for number, source in enumerate(sources):
             for document in source.documents():
                 columns = document.annotation.columns if document.annotation is not None else ()
                 if columns not in files:
                     name = f"sample-{len(files)}{'.conllup' if columns else '.jsonl'}"
                     samples[columns] = folder / name
-                    files[columns] = stack.enter_context(samples[columns].open("w", encoding="utf-8"))
+                    files[columns] = stack.enter_context(samples[columns].open("wb"))
                     if columns:
-                        files[columns].write(f"# global.columns = {' '.join(columns).upper()}\n")
-                text = "".join(_first(document, SAMPLE_CHARACTERS - written))
-                files[columns].write(text if columns else json.dumps({"text": text}) + "\n")
-                written += len(text)
+                        files[columns].write(f"# global.columns = {' '.join(columns).upper()}\n".encode())
+                size, sample = _sample(document, SAMPLE_CHARACTERS - written)
+                files[columns].write(sample)
+                written += size
                 done = (sum(sizes[:number]) + sizes[number] * source.position) / sum(sizes)
                 if written >= SAMPLE_CHARACTERS:
                     return [*samples.values()], max(done, 1e-9)
     return [*samples.values()], 1.0
 
 
-def _first(document: Document, characters: int) -> Iterator[str]:
-    """The document's text up to about so many characters; of annotated text whole pieces."""
-    for piece in document.pieces:
-        yield piece if document.annotation is not None else piece[:characters]
+def _sample(document: Document, characters: int) -> tuple[int, bytes]:
+    """The document's text up to about so many characters (of annotated text whole pieces), and as a file has it."""
+    if document.annotation is not None:
+        lines = b"".join(_first(document.sentences, characters))
+        return len(lines), lines
+    text = "".join(_first(document.pieces, characters))[:characters]
+    return len(text), json.dumps({"text": text}).encode() + b"\n"
+
+
+def _first(pieces: Iterable[Text], characters: int) -> Iterator[Text]:
+    """The first pieces, as many as it takes."""
+    for piece in pieces:
+        yield piece
         characters -= len(piece)
         if characters <= 0:
             return

@@ -34,24 +34,22 @@ NOTHING_MET = Met()
 
 
 class Fingerprint(Protocol):
-    """What a document's text is hashed with."""
+    """What a document's text, as such or in UTF-8, is hashed with."""
 
-    def update(self, text: str) -> None: ...
+    def update(self, text: str | bytes) -> None: ...
 
 
 class _NoFingerprint:
-    def update(self, text: str) -> None:
+    def update(self, text: str | bytes) -> None:
         """Nothing is asked of the text."""
 
 
 class _TextFingerprint:
     def __init__(self) -> None:
         self._hash = hashlib.blake2b(digest_size=16)
-        self._characters = 0
 
-    def update(self, text: str) -> None:
-        self._hash.update(text.encode("utf-8", "surrogatepass"))
-        self._characters += len(text)
+    def update(self, text: str | bytes) -> None:
+        self._hash.update(text.encode("utf-8", "surrogatepass") if isinstance(text, str) else text)
 
     def digest(self) -> bytes:
         return self._hash.digest()

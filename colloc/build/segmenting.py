@@ -29,7 +29,7 @@ from colloc.store.texts import PackedText, pack_text
 from colloc.store.vocabulary import TypeKey
 from colloc.tokens.annotated.lines import Part
 from colloc.tokens.annotated.reading import read_words
-from colloc.tokens.annotated.values import TripleNumberer
+from colloc.tokens.annotated.values import FieldNumberer
 from colloc.tokens.numbering import TypeNumberer
 from colloc.tokens.segmenter import Segmenter
 
@@ -97,16 +97,16 @@ class _Worker:
     def __init__(self, settings: SegmentSettings, keep_text: bool, memory: int) -> None:
         self._segmenter = Segmenter(settings)
         self._numberer = TypeNumberer()
-        self._triples = TripleNumberer()
+        self._fields = FieldNumberer()
         self._keep_text = keep_text
         self._memory = memory
 
     def segment(self, batch: Batch) -> tuple[Arrays, dict[str, Any]]:
         """Arrays and small facts of one batch."""
-        restarted = self._numberer.nbytes + self._triples.nbytes > self._memory
+        restarted = self._numberer.nbytes + self._fields.nbytes > self._memory
         if restarted:
             self._numberer.reset()
-            self._triples.reset()
+            self._fields.reset()
         if batch.annotation is not None:
             arrays, facts = self._read(batch, batch.annotation)
         else:
@@ -144,7 +144,7 @@ class _Worker:
     def _read(self, batch: Batch, annotation: Annotation) -> tuple[Arrays, dict[str, Any]]:
         """Annotated text: it is words already."""
         parts = [Part(entry.start, entry.line, entry.last) for entry in batch.entries]
-        words = read_words(batch.text, parts, annotation, self._triples)
+        words = read_words(batch.lines, parts, annotation, self._fields)
         annotations = annotations_of(words, annotation, self._keep_text)
         anchor_tokens = sentence_anchors(words, ANCHOR_EVERY)
         arrays: Arrays = {
@@ -159,7 +159,7 @@ class _Worker:
             "anchor_characters": words.starts[anchor_tokens],
         }
         facts: dict[str, Any] = {
-            "new_types": self._triples.take_new(),
+            "new_types": self._fields.take_new(),
             "closed": True,
             "dropped": 0,
             "texts": pack_text(words.text) if self._keep_text else [],

@@ -143,7 +143,7 @@ class _Writer:
                 known = self._values[_SOURCES[name]]
                 fields[name] = [known[value] for value in values[_SOURCES[name]].tolist()]
             else:
-                fields[name] = rest.texts.get(name) or [NOTHING] * len(forms)
+                fields[name] = rest.texts[name].split("\n") if name in rest.texts else [NOTHING] * len(forms)
         return fields
 
     def _heads(self, offsets: NDArray[Any], positions: Int64Array, relations: NDArray[Any] | None) -> list[str]:

@@ -7,7 +7,7 @@ document begins at the sentence whose comments hold ``# newdoc``; what comes
 before the first is a document too, and so is a file without any. Comments
 ``# meta::KEY = VALUE`` of a document's first sentence become metadata.
 
-Only whole sentences are handed on, as text: what their lines say is read by
+Only whole sentences are handed on, as bytes: what their lines say is read by
 :mod:`colloc.tokens.annotated`, in the processes that segment.
 Source: universaldependencies.org, "CoNLL-U Format" and "CoNLL-U Plus Format".
 """
@@ -20,7 +20,7 @@ from dataclasses import dataclass
 from itertools import chain, pairwise
 
 from colloc.records import CONLLU_COLUMNS, Annotation, Document, MetaValue
-from colloc.text.lines import byte_length, too_long
+from colloc.text.lines import too_long
 from colloc.text.metadata import typed
 from colloc.text.opening import Opened
 
@@ -30,6 +30,7 @@ MOST_COLUMNS = 64
 LONGEST_HEADER = 4096
 
 _GLOBAL_COLUMNS = re.compile(r"#[ \t]*global\.columns[ \t]*=[ \t]*(.*)")
+_NEWDOC = b"newdoc"
 _NEW_DOCUMENT = re.compile(r"^#[ \t]*newdoc\b(?:[ \t]+id[ \t]*=[ \t]*(.*))?", re.MULTILINE)
 _META = re.compile(r"^#[ \t]*meta::([^\s=]+)[ \t]*=[ \t]*(.*)$", re.MULTILINE)
 
@@ -38,7 +39,7 @@ _META = re.compile(r"^#[ \t]*meta::([^\s=]+)[ \t]*=[ \t]*(.*)$", re.MULTILINE)
 class _Stretch:
     """Whole sentences of one document."""
 
-    text: str
+    text: bytes
     line: int
     opens: bool
     """Whether the document begins here."""
@@ -52,8 +53,8 @@ def read(opened: Opened, skip: int) -> Iterator[Document]:
     DataError
         ``file:line: ...`` for a wrong header, or a sentence larger than ``max_record``.
     """
-    pieces = _line_feeds(opened.text())
-    first, pieces = _first_line(opened, pieces)
+    pieces = _line_feeds(opened.utf8())
+    first, pieces = _first_line(pieces)
     columns, header = _columns(opened, first)
     documents = _Documents(_by_document(_whole_sentences(opened, pieces, header)))
     yield from documents.read(opened, columns, skip)
@@ -70,14 +71,13 @@ class _Documents:
         record = 0
         while (first := self._next) is not None:
             pieces = self._pieces()
-            if record < skip:
-                for _ in pieces:
-                    pass
-            else:
+            if record >= skip:
                 yield _document(opened, columns, record, first, pieces)
+            for _ in pieces:
+                pass
             record += 1
 
-    def _pieces(self) -> Iterator[str]:
+    def _pieces(self) -> Iterator[bytes]:
         opening = True
         while (stretch := self._next) is not None and (opening or not stretch.opens):
             opening = False
@@ -86,9 +86,9 @@ class _Documents:
 
 
 def _document(
-    opened: Opened, columns: tuple[str, ...], record: int, first: _Stretch, pieces: Iterator[str]
+    opened: Opened, columns: tuple[str, ...], record: int, first: _Stretch, sentences: Iterator[bytes]
 ) -> Document:
-    comments = first.text[: _end_of_comments(first.text)]
+    comments = _decoded(first.text[: _end_of_comments(first.text)])
     found = _NEW_DOCUMENT.search(comments)
     metadata: dict[str, MetaValue] = dict(opened.metadata)
     metadata.update((key, typed(value.strip())) for key, value in _META.findall(comments))
@@ -99,40 +99,49 @@ def _document(
         name = str(given)
     else:
         name = opened.identifier if record == 0 else f"{opened.identifier}:{record + 1}"
-    return Document(name, metadata, pieces, record, Annotation(columns, opened.name, first.line))
+    return Document(name, metadata, (), record, Annotation(columns, opened.name, first.line), sentences)
 
 
-def _end_of_comments(text: str) -> int:
+def _decoded(text: bytes) -> str:
+    """Text that has been found to be UTF-8; the first line may be cut in the middle of a character."""
+    return text.decode(errors="ignore")
+
+
+def _end_of_comments(text: bytes) -> int:
     """Where the first line stands that is neither a comment nor blank."""
     end = 0
-    while end < len(text) and text[end] in "#\n":
-        stop = text.find("\n", end)
+    while end < len(text) and text[end] in b"#\n":
+        stop = text.find(b"\n", end)
         end = len(text) if stop < 0 else stop + 1
     return end
 
 
-def _line_feeds(pieces: Iterator[str]) -> Iterator[str]:
+def _line_feeds(pieces: Iterator[bytes]) -> Iterator[bytes]:
     """The text with CR LF as LF."""
-    held = ""
+    held = b""
     for piece in pieces:
         text = held + piece
-        held = "\r" if text.endswith("\r") else ""
-        yield text.removesuffix("\r").replace("\r\n", "\n")
+        if b"\r" not in text:
+            held = b""
+            yield text
+            continue
+        held = b"\r" if text.endswith(b"\r") else b""
+        yield text.removesuffix(b"\r").replace(b"\r\n", b"\n")
     if held:
         yield held
 
 
-def _first_line(opened: Opened, pieces: Iterator[str]) -> tuple[str, Iterator[str]]:
+def _first_line(pieces: Iterator[bytes]) -> tuple[str, Iterator[bytes]]:
     """The beginning of the first line, and the whole text again."""
-    taken: list[str] = []
+    taken: list[bytes] = []
     size = 0
     for piece in pieces:
         taken.append(piece)
         size += len(piece)
-        if "\n" in piece or size > LONGEST_HEADER:
+        if b"\n" in piece or size > LONGEST_HEADER:
             break
-    text = "".join(taken)
-    return text.partition("\n")[0], chain([text], pieces)
+    text = b"".join(taken)
+    return _decoded(text.partition(b"\n")[0]), chain([text], pieces)
 
 
 def _columns(opened: Opened, first: str) -> tuple[tuple[str, ...], int]:
@@ -160,37 +169,36 @@ def _columns(opened: Opened, first: str) -> tuple[tuple[str, ...], int]:
     return names, 1
 
 
-def _whole_sentences(opened: Opened, pieces: Iterator[str], header: int) -> Iterator[tuple[str, int]]:
+def _whole_sentences(opened: Opened, pieces: Iterator[bytes], header: int) -> Iterator[tuple[bytes, int]]:
     """The text in stretches that end with a sentence, each with the number of its first line."""
-    held: list[str] = []
+    held: list[bytes] = []
     size = 0
     line = 1
     for piece in pieces:
-        split = "\n\n" in piece or (piece.startswith("\n") and bool(held) and held[-1].endswith("\n"))
+        split = b"\n\n" in piece or (piece.startswith(b"\n") and bool(held) and held[-1].endswith(b"\n"))
         held.append(piece)
-        size += byte_length(piece)
+        size += len(piece)
         if split:
-            text = "".join(held)
-            end = text.rindex("\n\n") + 2
+            text = b"".join(held)
+            end = text.rindex(b"\n\n") + 2
             held = [text[end:]] if end < len(text) else []
-            size = byte_length("".join(held))
+            size = len(text) - end
             yield from _without_header(text[:end], line, header)
-            line += text.count("\n", 0, end)
+            line += text.count(b"\n", 0, end)
         if size > opened.settings.max_record:
             raise too_long(opened, line)
     if held:
-        text = "".join(held)
-        yield from _without_header(text.rstrip("\n") + "\n\n", line, header)
+        yield from _without_header(b"".join(held).rstrip(b"\n") + b"\n\n", line, header)
 
 
-def _without_header(text: str, line: int, header: int) -> Iterator[tuple[str, int]]:
+def _without_header(text: bytes, line: int, header: int) -> Iterator[tuple[bytes, int]]:
     if header and line == 1:
-        text, line = text.partition("\n")[2], 2
+        text, line = text.partition(b"\n")[2], 2
     if text:
         yield text, line
 
 
-def _by_document(stretches: Iterator[tuple[str, int]]) -> Iterator[_Stretch]:
+def _by_document(stretches: Iterator[tuple[bytes, int]]) -> Iterator[_Stretch]:
     """The same stretches, cut where documents begin."""
     opens = True
     for text, line in stretches:
@@ -202,24 +210,32 @@ def _by_document(stretches: Iterator[tuple[str, int]]) -> Iterator[_Stretch]:
         for begin, stop in pairwise(edges):
             if begin < stop:
                 yield _Stretch(text[begin:stop], line, opens or begin in begins)
-                line += text.count("\n", begin, stop)
+                line += text.count(b"\n", begin, stop)
                 opens = False
 
 
-def _document_starts(text: str) -> list[int]:
-    """Where the sentences begin whose comments say that a document does."""
-    if "newdoc" not in text:
-        return []
-    return sorted({_sentence_start(text, match.start()) for match in _NEW_DOCUMENT.finditer(text)})
+def _document_starts(text: bytes) -> list[int]:
+    """Where the sentences begin whose comments say that a document does, ascending."""
+    found: dict[int, None] = {}
+    place = text.find(_NEWDOC)
+    while place >= 0:
+        stop = text.find(b"\n", place)
+        stop = len(text) if stop < 0 else stop
+        start = text.rfind(b"\n", 0, place) + 1
+        if text.startswith(b"#", start) and _NEW_DOCUMENT.match(_decoded(text[start:stop])):
+            found[_sentence_start(text, start)] = None
+        # a line is looked at once, whatever it holds
+        place = text.find(_NEWDOC, stop)
+    return [*found]
 
 
-def _sentence_start(text: str, place: int) -> int:
+def _sentence_start(text: bytes, place: int) -> int:
     """Where the sentence, or the block of comments, begins that holds a place."""
     reach = 256
     while reach < place:
-        end = text.rfind("\n\n", place - reach, place)
+        end = text.rfind(b"\n\n", place - reach, place)
         if end >= 0:
             return end + 2
         reach *= 4
-    end = text.rfind("\n\n", 0, place)
+    end = text.rfind(b"\n\n", 0, place)
     return 0 if end < 0 else end + 2

@@ -147,6 +147,7 @@ class Decoder:
     def __init__(self, codec: str, errors: Literal["strict", "replace"], offset: int = 0) -> None:
         self.replaced = 0
         self._codec = codec
+        self._errors = errors
         self._offset = offset
         self._decoder = codecs.getincrementaldecoder(codec)(_COUNTING if errors == "replace" else "strict")
 
@@ -166,6 +167,17 @@ class Decoder:
         text = self._step(b"", final=True)
         if text:
             yield text
+
+    def recode(self, chunks: Iterator[bytes]) -> Iterator[bytes]:
+        """The same in UTF-8; bytes that are that already are passed on, once they have been found to be right."""
+        if (self._codec, self._errors) == ("utf-8", "strict"):
+            for chunk in chunks:
+                self._step(chunk, final=False)
+                yield chunk
+            self._step(b"", final=True)
+        else:
+            for text in self.decode(chunks):
+                yield text.encode()
 
     def _step(self, data: bytes, *, final: bool) -> str:
         pending = len(self._decoder.getstate()[0])

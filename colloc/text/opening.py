@@ -10,7 +10,7 @@ import stat
 import sys
 from collections.abc import Callable, Generator, Iterator, Mapping
 from contextlib import contextmanager
-from typing import BinaryIO
+from typing import BinaryIO, TypeVar
 
 from colloc.errors import DataError, InputOutputError, NoInputError, UsageError
 from colloc.records import MetaValue
@@ -25,6 +25,8 @@ from colloc.text.decoding import (
     choose_encoding,
     seems_binary,
 )
+
+Text = TypeVar("Text", str, bytes)
 
 CHUNK = 2**16
 """Bytes asked of the operating system at once."""
@@ -191,7 +193,7 @@ class Opened:
             yield chunk
 
     def text(self, declared: Callable[[bytes], str | None] | None = None) -> Iterator[str]:
-        """The text in pieces of at most 1 Mi code points, cut anywhere. Can be gone through once.
+        """The text in pieces of at most 1 Mi code points, cut anywhere. Can be gone through once; it, or `utf8`.
 
         Parameters
         ----------
@@ -204,6 +206,17 @@ class Opened:
         DataError
             For binary files and undecodable bytes, with the byte offset.
         """
+        return self._decoded(Decoder.decode, declared)
+
+    def utf8(self) -> Iterator[bytes]:
+        """The text in UTF-8, in pieces that are cut anywhere; errors as those of `text`."""
+        return self._decoded(Decoder.recode, None)
+
+    def _decoded(
+        self,
+        decode: Callable[[Decoder, Iterator[bytes]], Iterator[Text]],
+        declared: Callable[[bytes], str | None] | None,
+    ) -> Iterator[Text]:
         head, chunks = _peek(self._undrained(self.chunks()), SAMPLE)
         if packing_by_content(head):
             raise self.error("packed twice: unpack it once")
@@ -223,7 +236,7 @@ class Opened:
         self.detected = codec if wanted == "detect" else None
         self._decoder = Decoder(codec, self.settings.errors, mark)
         try:
-            yield from self._decoder.decode(_without(chunks, mark))
+            yield from decode(self._decoder, _without(chunks, mark))
         except UndecodableError as error:
             unpacked = " of the unpacked data" if self.packed else ""
             raise self.error(

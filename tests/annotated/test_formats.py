@@ -88,7 +88,9 @@ def test_documents_have_names_and_metadata(tmp_path: Path) -> None:
     )
     (tmp_path / "a.conllu").write_text(text, encoding="utf-8", newline="\r\n")
     source = next(iter(open_sources([str(tmp_path / "a.conllu")], ReadSettings())))
-    found = [(one.identifier, dict(one.metadata), "".join(one.pieces).count("sea\tsea")) for one in source.documents()]
+    found = [
+        (one.identifier, dict(one.metadata), b"".join(one.sentences).count(b"sea\tsea")) for one in source.documents()
+    ]
     assert found == [
         ("one", {"year": 1990}, 1),
         ("a.conllu:2", {}, 2),

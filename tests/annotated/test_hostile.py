@@ -133,7 +133,7 @@ def test_memory_stays_bounded(tmp_path: Path) -> None:
         tracemalloc.start()
         documents = next(iter(colloc_sources(folder / "a.conllu"))).documents()
         for document in documents:
-            for _ in document.pieces:
+            for _ in document.sentences:
                 pass
         peaks.append(tracemalloc.get_traced_memory()[1])
         tracemalloc.stop()

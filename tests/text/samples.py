@@ -61,7 +61,7 @@ def json_line(**columns: object) -> str:
 def read_documents(path: Path | str, settings: ReadSettings | None = None, skip: int = 0) -> list[Document]:
     """Every document of one input, its pieces read."""
     return [
-        replace(document, pieces=tuple(document.pieces))
+        replace(document, pieces=tuple(document.pieces), sentences=tuple(document.sentences))
         for source in open_sources([str(path)], settings or ReadSettings())
         for document in source.documents(skip)
     ]

@@ -262,8 +262,11 @@ class _Documents:
         metadata = {**opened.metadata, **begin.metadata}
         given = metadata.pop("id", None)
         name = begin.identifier or (f"{opened.identifier}:{record + 1}" if record else opened.identifier)
-        annotation = Annotation(COLUMNS, opened.name) if begin.annotated else None
-        return Document(str(given) if given is not None else name, metadata, pieces, record, annotation)
+        identifier = str(given) if given is not None else name
+        if not begin.annotated:
+            return Document(identifier, metadata, pieces, record)
+        sentences = map(str.encode, pieces)
+        return Document(identifier, metadata, (), record, Annotation(COLUMNS, opened.name), sentences)
 
     def _document(self) -> Iterator[str]:
         while self._fill() and isinstance(self._handler.queue[0], str):

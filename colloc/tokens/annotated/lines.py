@@ -4,9 +4,8 @@ from __future__ import annotations
 
 import re
 from bisect import bisect_right
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
-from itertools import compress, repeat
 from typing import NoReturn
 
 import numpy as np
@@ -14,15 +13,17 @@ from numpy.typing import NDArray
 
 from colloc.errors import DataError
 from colloc.records import Annotation, Int64Array
+from colloc.tokens.annotated.buffer import Buffer, Slices, whole_numbers
 
-COMMENT, RANGE, EMPTY = "comment", "range", "empty node"
-"""Kinds of lines that are not words."""
-_SMALL = 2**10
-NUMBERS = {str(number): number for number in range(1, _SMALL)}
-"""Numbers as they are written, without zeros in front; those of longer sentences are read one by one."""
-_INTEGER = re.compile(r"[1-9][0-9]{0,8}")
+NOTHING = "_"
+"""CoNLL-U's word for a field that is not specified."""
+LONGEST = 2**16
+"""Code points of one field."""
+INTEGER = re.compile(r"[1-9][0-9]{0,8}")
 _RANGE = re.compile(r"([1-9][0-9]{0,8})-([1-9][0-9]{0,8})")
 _EMPTY_NODE = re.compile(r"(0|[1-9][0-9]{0,8})\.([1-9][0-9]{0,8})")
+_CHECKED_APART = ("id", "head")
+"""Columns whose empty fields are no numbers."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,7 +31,7 @@ class Part:
     """A document, or a part of one, in the text to be read."""
 
     start: int
-    """Code point of the text."""
+    """Byte of the text."""
     line: int
     """Number of its first line in its source."""
     last: bool = True
@@ -38,13 +39,28 @@ class Part:
 
 
 @dataclass(frozen=True, slots=True)
-class Range:
-    """A multiword token: one surface token over several words."""
+class Ranges:
+    """Multiword tokens: one surface token over several words. Arrays of shape (n_ranges,).
 
-    first: int
-    """Offset of its first word."""
-    length: int
-    fields: Sequence[str]
+    Attributes
+    ----------
+    words, lengths : int64 arrays
+        Offset of the first word, and how many there are.
+    columns : dict of Slices
+        The fields of their lines.
+    """
+
+    words: Int64Array
+    lengths: Int64Array
+    columns: dict[str, Slices]
+
+
+@dataclass(frozen=True, slots=True)
+class Others:
+    """Lines that are not words, whole, in order, each with the word (offset) beside which it stands."""
+
+    words: Int64Array
+    lines: Slices
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,204 +69,237 @@ class Lines:
 
     Attributes
     ----------
-    columns : dict of lists of str
-        Fields of the words, by the name of the column.
+    columns : dict of Slices
+        Fields of the words, by the name of the column; none is empty, but for those of ID and HEAD.
     sentences : int64 array
         Offsets of the words that begin a sentence, ascending.
     positions : int64 array
         1-based place of each word in its sentence.
     part_words : int64 array
         First word of each part.
-    ranges : list of Range
-    before, after : list of (int, str)
-        Lines that are not words, whole, each with the word (offset) before or
-        after which it stands; comments, ranges and empty nodes.
+    ranges : Ranges
+    before, after : Others
+        Lines that stand before a word (comments, ranges and some empty nodes), and behind one (empty nodes).
     """
 
-    columns: dict[str, list[str]]
+    buffer: Buffer
+    columns: dict[str, Slices]
     sentences: Int64Array
     positions: Int64Array
     part_words: Int64Array
-    ranges: list[Range]
-    before: list[tuple[int, str]]
-    after: list[tuple[int, str]]
+    ranges: Ranges
+    before: Others
+    after: Others
     places: Places
-    next_line: int
 
     def __len__(self) -> int:
         return len(self.positions)
 
+    def field(self, name: str, word: int) -> str:
+        """What stands in a column of a word."""
+        column = self.columns[name]
+        start = int(column.starts[word])
+        return self.buffer.text(start, start + int(column.lengths[word]))
+
 
 class Places:
-    """Where words stand in their source: for messages."""
+    """Where lines and words stand in their source: for messages."""
 
-    def __init__(self, annotation: Annotation, text: str, parts: Sequence[Part], line: int) -> None:
+    def __init__(self, annotation: Annotation, part_lines: Int64Array, numbers: list[int]) -> None:
         self._annotation = annotation
-        self._numbers = [line, *(part.line for part in parts)]
-        self._first_lines = [0]
-        before = 0
-        for part in parts:
-            self._first_lines.append(self._first_lines[-1] + text.count("\n", before, part.start))
-            before = part.start
-        self.part_lines = np.array(self._first_lines[1:], np.int64)
+        self._part_lines = part_lines.tolist()
+        self._numbers = numbers
         self.words: Int64Array = np.zeros(0, np.int64)
         """Line (of the text, from 0) of each word."""
 
     def fail(self, message: str, *, line: int | None = None, word: int | None = None) -> NoReturn:
         """Raise a DataError that names the source and the line."""
         at = int(self.words[word]) if word is not None else int(line or 0)
-        raise DataError(f"{self._annotation.source}:{self.number(at)}: {message}")
-
-    def number(self, line: int) -> int:
-        """What a line of the text is called in its source."""
-        part = bisect_right(self._first_lines, line) - 1
-        return self._numbers[part] + line - self._first_lines[part]
+        part = bisect_right(self._part_lines, at) - 1
+        number = self._numbers[part] + at - self._part_lines[part]
+        raise DataError(f"{self._annotation.source}:{number}: {message}")
 
 
-def split_lines(text: str, parts: Sequence[Part], annotation: Annotation, line: int) -> Lines:
+def split_lines(text: bytes, parts: Sequence[Part], annotation: Annotation) -> Lines:
     """Take whole sentences apart.
 
     Parameters
     ----------
+    text : bytes
+        UTF-8; every line is ended by LF.
     parts : sequence of Part
-        Those that begin in ``text``.
-    line : int
-        Number of the first line in its source, where no part begins there.
+        The first begins with the text.
 
     Raises
     ------
     DataError
-        ``source:line: ...`` for a wrong number of columns, or identifiers that are out of order.
+        ``source:line: ...`` for a wrong number of columns, identifiers that are out of order, or empty fields.
     """
-    places = Places(annotation, text, parts, line)
-    lines = text.split("\n")
-    if not lines[-1]:
-        lines.pop()
-    words, blank, others = _kinds(places, lines, annotation.columns)
-    places.words = np.flatnonzero(words)
-    columns = _by_column(lines, words, annotation.columns)
-    ids = None
-    if "id" in columns:
-        ids, columns, more = _numbered(places, columns)
-        words[[*more]] = False
-        others |= more
-    # The sentence a line is in: how many blank lines stand before it.
-    sentence = np.cumsum(blank)[places.words]
-    begins = np.flatnonzero(np.diff(sentence, prepend=-1))
-    positions = np.arange(len(sentence)) - np.repeat(begins, np.diff(begins, append=len(sentence))) + 1
-    if ids is not None and (ids != positions).any():
-        word = int(np.flatnonzero(ids != positions)[0])
-        places.fail(f"ID {ids[word]} where {positions[word]} comes next: number words from 1", word=word)
-    next_words = np.concatenate([[0], np.cumsum(words)])
-    result = Lines(
-        columns, begins, positions, next_words[places.part_lines], [], [], [], places, places.number(len(lines))
-    )
-    numbers = sorted(others)
-    for number, word in zip(numbers, next_words[numbers].tolist(), strict=True):
-        if others[number] == COMMENT:
-            result.before.append((word, lines[number]))
-        else:
-            _keep(result, lines[number], others[number], number, word)
-    return result
+    return _Splitting(text, parts, annotation).lines()
 
 
-def _kinds(
-    places: Places, lines: list[str], names: tuple[str, ...]
-) -> tuple[NDArray[np.bool_], NDArray[np.bool_], dict[int, str]]:
-    """Which lines are words, which are blank, and what the others are."""
-    width = len(names)
-    fields = np.fromiter(map(str.count, lines, repeat("\t")), np.int64, len(lines)) + 1
-    words = fields == width
-    if width == 1:
-        words &= np.array([line != "" and not line.startswith("#") for line in lines], bool)
-    blank = np.zeros(len(lines), bool)
-    others = {}
-    for number in np.flatnonzero(~words).tolist():
-        line = lines[number]
-        if not line:
-            blank[number] = True
-        elif line[0] == "#":
-            others[number] = COMMENT
-        elif line.isspace() and "\t" not in line:
-            places.fail("a line of spaces: sentences end with an empty line", line=number)
-        else:
-            found = f"{fields[number]:,} column{'' if fields[number] == 1 else 's'}"
-            places.fail(f"{found} where {width} belong, divided by tabs ({', '.join(names)})", line=number)
-    return words, blank, others
+class _Splitting:
+    """One text being taken apart."""
+
+    def __init__(self, text: bytes, parts: Sequence[Part], annotation: Annotation) -> None:
+        self._names = annotation.columns
+        self._buffer = Buffer(text)
+        data = self._buffer.bytes
+        # Tab and line feed are neighbours: the bytes 9 and 10.
+        self._dividers = np.flatnonzero(data - np.uint8(ord("\t")) < 2)
+        self._ends = np.flatnonzero(data[self._dividers] == ord("\n"))
+        """Of the dividers, those that end a line."""
+        stops = self._dividers[self._ends]
+        starts = np.zeros_like(stops)
+        starts[1:] = stops[:-1] + 1
+        self._all = Slices(starts, stops - starts)
+        part_lines = np.searchsorted(stops, np.array([part.start for part in parts], np.int64))
+        self._part_lines = part_lines
+        self._places = Places(annotation, part_lines, [part.line for part in parts])
+
+    def lines(self) -> Lines:
+        """All that is in the text."""
+        places = self._places
+        words, blank = self._kinds()
+        others = ~(words | blank)
+        ids = None
+        nodes = np.zeros(0, np.int64)
+        ranges = nodes
+        if "id" in self._names:
+            ids, ranges, nodes = self._numbered(words)
+            others = ~(words | blank)
+        places.words = np.flatnonzero(words)
+        columns = self._columns(places.words)
+        _check_fields(self._buffer, columns, places)
+        # The sentence a line is in: how many blank lines stand before it.
+        sentence = np.cumsum(blank)[places.words]
+        begins = np.flatnonzero(np.diff(sentence, prepend=-1))
+        positions = np.arange(1, len(sentence) + 1) - np.repeat(begins, np.diff(begins, append=len(sentence)))
+        if ids is not None and (ids != positions).any():
+            word = int(np.flatnonzero(ids != positions)[0])
+            places.fail(f"ID {ids[word]} where {positions[word]} comes next: number words from 1", word=word)
+        next_words = np.zeros(len(words) + 1, np.int64)
+        np.cumsum(words, out=next_words[1:])
+        after = self._after(nodes, next_words, positions)
+        others[after] = False
+        before = np.flatnonzero(others)
+        return Lines(
+            self._buffer,
+            columns,
+            begins,
+            positions,
+            next_words[self._part_lines],
+            self._ranges(ranges, next_words, positions),
+            Others(next_words[before], self._all.only(before)),
+            Others(next_words[after] - 1, self._all.only(after)),
+            places,
+        )
+
+    def _kinds(self) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
+        """Which lines have as many columns as a word, and which are blank; all others must be comments."""
+        names, width = self._names, len(self._names)
+        comments = self._buffer.bytes[self._all.starts] == ord("#")
+        blank = self._all.lengths == 0
+        fields = np.diff(self._ends, prepend=-1)
+        words = fields == width
+        if width == 1:
+            words &= ~(blank | comments)
+        wrong = np.flatnonzero(~(words | comments | blank))
+        if len(wrong):
+            line = int(wrong[0])
+            text = self._line(line)
+            if text.isspace() and "\t" not in text:
+                self._places.fail("a line of spaces: sentences end with an empty line", line=line)
+            found = f"{fields[line]:,} column{'' if fields[line] == 1 else 's'}"
+            self._places.fail(f"{found} where {width} belong, divided by tabs ({', '.join(names)})", line=line)
+        return words, blank
+
+    def _line(self, line: int) -> str:
+        start = int(self._all.starts[line])
+        return self._buffer.text(start, start + int(self._all.lengths[line]))
+
+    def _columns(self, lines: Int64Array) -> dict[str, Slices]:
+        """Fields of lines that have as many as there are columns."""
+        first = self._ends[lines] - (len(self._names) - 1)
+        starts = self._all.starts[lines]
+        columns = {}
+        for at, name in enumerate(self._names):
+            stops = self._dividers[first + at]
+            columns[name] = Slices(starts, stops - starts)
+            starts = stops + 1
+        return columns
+
+    def _numbered(self, words: NDArray[np.bool_]) -> tuple[Int64Array, Int64Array, Int64Array]:
+        """Numbers of the words, and the lines of ranges and empty nodes, which are taken from the ``words``."""
+        lines = np.flatnonzero(words)
+        at = self._names.index("id")
+        first = self._ends[lines] - (len(self._names) - 1) + at
+        starts = self._dividers[first - 1] + 1 if at else self._all.starts[lines]
+        column = Slices(starts, self._dividers[first] - starts)
+        numbers, other = whole_numbers(self._buffer, column)
+        other |= numbers == 0
+        ranges, nodes = [], []
+        for row in np.flatnonzero(other).tolist():
+            start, line = int(column.starts[row]), int(lines[row])
+            text = self._buffer.text(start, start + int(column.lengths[row]))
+            if _RANGE.fullmatch(text):
+                ranges.append(line)
+            elif _EMPTY_NODE.fullmatch(text):
+                nodes.append(line)
+            elif INTEGER.fullmatch(text):
+                numbers[row], other[row] = int(text), False
+            elif not text.startswith("#"):  # else a comment that happens to hold as many tabs as a word
+                self._places.fail(f"ID {text[:40]!r} is neither a number, a range such as 3-4, nor 5.1", line=line)
+        words[lines[other]] = False
+        return numbers[~other], np.array(ranges, np.int64), np.array(nodes, np.int64)
+
+    def _after(self, nodes: Int64Array, next_words: Int64Array, positions: Int64Array) -> Int64Array:
+        """Of the lines of empty nodes, those that stand behind a word; the others stand at a sentence's beginning."""
+        after = []
+        for line, word in zip(nodes.tolist(), next_words[nodes].tolist(), strict=True):
+            name = self._id(line)
+            follows = int(name.partition(".")[0])
+            if follows != (int(positions[word - 1]) if follows and word else 0):
+                self._places.fail(f"empty node {name} does not stand after word {follows}", line=line)
+            if follows:
+                after.append(line)
+        return np.array(after, np.int64)
+
+    def _ranges(self, lines: Int64Array, next_words: Int64Array, positions: Int64Array) -> Ranges:
+        columns = self._columns(lines)
+        words = next_words[lines]
+        names = [*map(self._id, lines.tolist())]
+        bounds = [[*map(int, name.split("-"))] for name in names]
+        first, last = np.array(bounds, np.int64).reshape(-1, 2).T
+        lengths = last - first + 1
+        n = len(positions)
+        padded = np.append(positions, -1)
+        last_words = np.clip(words + lengths - 1, 0, n)
+        misplaced = (lengths < 1) | (padded[words] != first) | (padded[last_words] != last)
+        overlapping = np.zeros(len(lines), bool)
+        overlapping[1:] = words[:-1] + lengths[:-1] > words[1:]
+        for row in np.flatnonzero(misplaced | overlapping)[:1].tolist():
+            wrong = (
+                "does not stand before its words in the same sentence"
+                if misplaced[row]
+                else "overlaps the one before it"
+            )
+            self._places.fail(f"range {names[row]} {wrong}", line=int(lines[row]))
+        return Ranges(words, lengths, columns)
+
+    def _id(self, line: int) -> str:
+        return self._line(line).split("\t")[self._names.index("id")]
 
 
-def _by_column(lines: list[str], words: NDArray[np.bool_], names: tuple[str, ...]) -> dict[str, list[str]]:
-    # All fields in one list: a list a line would cost twice the time, most of it collecting garbage.
-    chosen = [*compress(lines, words.tolist())]
-    fields = "\t".join(chosen).split("\t") if chosen else []
-    return {name: fields[at :: len(names)] for at, name in enumerate(names)}
-
-
-def _numbered(places: Places, columns: dict[str, list[str]]) -> tuple[Int64Array, dict[str, list[str]], dict[int, str]]:
-    """Numbers of the words, their columns without the rows that are no words, and what those are, by line."""
-    numbers = [*map(NUMBERS.get, columns["id"])]
-    more: dict[int, str] = {}
-    if None in numbers:
-        found = _not_words(places, columns["id"], numbers)
-        more = {int(places.words[offset]): kind for offset, kind in found.items()}
-        if found:
-            plain = [number is not None for number in numbers]
-            columns = {name: [*compress(column, plain)] for name, column in columns.items()}
-            numbers = [number for number in numbers if number is not None]
-            places.words = places.words[plain]
-    return np.array(numbers, np.int64), columns, more
-
-
-def _not_words(places: Places, ids: Sequence[str], numbers: list[int | None]) -> dict[int, str]:
-    """Kinds of the rows that are no words, by offset; large numbers are put into ``numbers``."""
-    found = {}
-    for offset in [offset for offset, number in enumerate(numbers) if number is None]:
-        text = ids[offset]
-        if _INTEGER.fullmatch(text):
-            numbers[offset] = int(text)
-        elif _RANGE.fullmatch(text):
-            found[offset] = RANGE
-        elif _EMPTY_NODE.fullmatch(text):
-            found[offset] = EMPTY
-        elif text.startswith("#"):
-            found[offset] = COMMENT  # that happens to hold as many tabs as a word
-        else:
-            places.fail(f"ID {text[:40]!r} is neither a number, a range such as 3-4, nor 5.1", word=offset)
-    return found
-
-
-def _keep(lines: Lines, text: str, kind: str, line: int, word: int) -> None:
-    """File a range or an empty node."""
-    if kind == RANGE:
-        lines.ranges.append(_range(lines, text.split("\t"), line, word))
-    if kind == EMPTY:
-        name = text.partition("\t")[0]
-        node = _EMPTY_NODE.fullmatch(name)
-        assert node is not None
-        follows = int(node[1])
-        at = int(lines.positions[word - 1]) if follows and word else 0
-        if follows != at:
-            lines.places.fail(f"empty node {name} does not stand after word {follows}", line=line)
-        if follows:
-            lines.after.append((word - 1, text))
-            return
-    lines.before.append((word, text))
-
-
-def _range(lines: Lines, fields: list[str], line: int, word: int) -> Range:
-    match = _RANGE.fullmatch(fields[0])
-    assert match is not None
-    first, last = int(match[1]), int(match[2])
-    length = last - first + 1
-    stop = word + length
-    there = word < len(lines) and lines.positions[word] == first
-    if length < 1 or not there or stop > len(lines) or lines.positions[stop - 1] != last:
-        lines.places.fail(f"range {fields[0]} does not stand before its words in the same sentence", line=line)
-    if lines.ranges and lines.ranges[-1].first + lines.ranges[-1].length > word:
-        lines.places.fail(f"range {fields[0]} overlaps the one before it", line=line)
-    return Range(word, length, fields)
-
-
-def comments(lines: Lines) -> Iterator[tuple[int, str]]:
-    """Comments, each with the offset of the word that follows."""
-    return ((word, line) for word, line in lines.before if line.startswith("#"))
+def _check_fields(buffer: Buffer, columns: dict[str, Slices], places: Places) -> None:
+    """Raise DataError for a field that is empty or too long."""
+    for name, column in columns.items():
+        if name not in _CHECKED_APART and len(column) and not column.lengths.all():
+            word = int(np.flatnonzero(column.lengths == 0)[0])
+            places.fail(f"{name.upper()} is empty: write {NOTHING} where there is nothing to say", word=word)
+        if column.lengths.max(initial=0) > LONGEST:
+            for word in np.flatnonzero(column.lengths > LONGEST).tolist():
+                start = int(column.starts[word])
+                length = len(buffer.text(start, start + int(column.lengths[word])))
+                if length > LONGEST:
+                    places.fail(f"{name.upper()} has {length:,} characters, more than {LONGEST:,}", word=word)

@@ -2,19 +2,21 @@
 
 from __future__ import annotations
 
-import re
 from dataclasses import dataclass
-from itertools import chain
 
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.records import Int64Array
-from colloc.tokens.annotated.lines import Lines, comments
+from colloc.records import Int64Array, UInt8Array
+from colloc.tokens.annotated.buffer import MASKS, Buffer, Slices, code_points_before, column_text, gather, having
+from colloc.tokens.annotated.lines import Lines
 
-_BEGINS = re.compile(r"#[ \t]*new(?:par|doc)\b")
 PARAGRAPH_END = "\n\n"
 """Stands between paragraphs and between documents."""
+_NO_SPACE = b"SpaceAfter=No"
+_NEW_PARAGRAPH = b"NewPar=Yes"
+_OPENERS = np.array([int.from_bytes(word, "little") for word in (b"newpar", b"newdoc")], np.uint64)
+_OPENER = len(b"newpar")
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,78 +26,103 @@ class Surface:
     Attributes
     ----------
     text : str
-        Up to the last word's end.
-    gap : str
-        What follows it, unless a paragraph begins.
+        Up to the last word's end, or the space behind it.
     starts, widths : int64 arrays, shape (n_words,)
         Code points; the words of a multiword token that are not spelled out one after the other all have its place.
     """
 
     text: str
-    gap: str
     starts: Int64Array
     widths: Int64Array
 
 
-def paragraph_starts(lines: Lines) -> Int64Array:
+def paragraph_starts(lines: Lines, misc: Misc | None) -> Int64Array:
     """Words that begin a paragraph: ``# newpar`` or ``# newdoc`` before their sentence, or ``NewPar=Yes`` in MISC."""
-    marked = {word for word, line in comments(lines) if line[1:].split(maxsplit=1)[:1] in (["newpar"], ["newdoc"])} - {
-        len(lines)
-    }
-    misc = lines.columns.get("misc", [])
-    found = {value for value in set(misc) if "NewPar=Yes" in value.split("|")}
-    if found:
-        marked.update(offset for offset, value in enumerate(misc) if value in found)
-    return np.union1d(np.array(sorted(marked), np.int64), lines.part_words[lines.part_words < len(lines)])
+    marked = lines.before.words[_openers(lines.buffer, lines.before.lines)]
+    found = [marked[marked < len(lines)], lines.part_words[lines.part_words < len(lines)]]
+    if misc is not None:
+        found.append(np.flatnonzero(having(misc.joined, misc.begins, _NEW_PARAGRAPH)))
+    return np.unique(np.concatenate(found))
 
 
-def surface(lines: Lines, paragraphs: Int64Array) -> Surface:
-    """The words as they were written: a space behind each, unless ``SpaceAfter=No``.
+def _openers(buffer: Buffer, lines: Slices) -> NDArray[np.bool_]:
+    """Which lines are comments that say that a paragraph, or a document, begins."""
+    following = np.minimum(lines.starts + 1, len(buffer.bytes))
+    words = following + (buffer.words[following] & MASKS[1] == ord(" "))
+    head = buffer.words[words]
+    ends = (head >> np.uint64(8 * _OPENER)) & MASKS[1]
+    named = np.isin(head & MASKS[_OPENER], _OPENERS)
+    opens: NDArray[np.bool_] = named & ((ends == ord(" ")) | (ends == ord("\n")))
+    # Written with other spaces than one in front and one behind: looked at one by one.
+    first = head & MASKS[1]
+    unusual = (first <= ord(" ")) | (first >= 128) | (named & ~opens)
+    for row in np.flatnonzero(unusual).tolist():
+        start = int(lines.starts[row])
+        comment = buffer.text(start + 1, start + int(lines.lengths[row]))
+        opens[row] = comment.split(maxsplit=1)[:1] in (["newpar"], ["newdoc"])
+    opens &= buffer.bytes[lines.starts] == ord("#")
+    return opens
+
+
+@dataclass(frozen=True, slots=True)
+class Misc:
+    """The fields of MISC, as `colloc.tokens.annotated.buffer.column_text` gives them."""
+
+    joined: UInt8Array
+    begins: Int64Array
+
+
+def surface(lines: Lines, paragraphs: Int64Array, misc: Misc | None, goes_on: bool) -> Surface:
+    """The words as they were written: a space behind each, unless ``SpaceAfter=No``; the last only if it ``goes_on``.
 
     Multiword tokens stand in place of their words.
     """
-    written = list(lines.columns["form"])
-    misc = lines.columns.get("misc")
-    gaps = [" "] * len(written)
+    form = lines.columns["form"]
+    starts, sizes = form.starts.copy(), form.lengths.copy()
+    gaps = np.ones(len(lines), np.int64)
     if misc is not None:
-        close = {value for value in set(misc) if "SpaceAfter=No" in value.split("|")}
-        gaps = ["" if value in close else " " for value in misc]
-    shared = _place_ranges(lines, written, gaps)
-    for word in paragraphs.tolist():
-        if word:
-            gaps[word - 1] = PARAGRAPH_END
-    gap = ""
-    if gaps:
-        gap, gaps[-1] = gaps[-1], ""
-    widths = np.fromiter(map(len, written), np.int64, len(written))
-    steps = widths + np.fromiter(map(len, gaps), np.int64, len(gaps))
-    starts = np.cumsum(steps) - steps
-    text = "".join(chain.from_iterable(zip(written, gaps, strict=True)))
+        gaps[having(misc.joined, misc.begins, _NO_SPACE)] = 0
+    shared = _place_ranges(lines, starts, sizes, gaps)
+    gaps[paragraphs[paragraphs > 0] - 1] = len(PARAGRAPH_END)
+    if not goes_on:
+        gaps[-1:] = 0
+    # Behind a field there is room for a gap, to be overwritten: what divides it from the next, and that one's start.
+    written, begins = gather(lines.buffer.bytes, Slices(starts, sizes + gaps))
+    ends = begins + sizes
+    written[ends[gaps == 1]] = ord(" ")
+    for offset in range(len(PARAGRAPH_END)):
+        written[ends[gaps == len(PARAGRAPH_END)] + offset] = ord(PARAGRAPH_END[offset])
+    text = written.tobytes().decode("utf-8", "surrogatepass")
+    if len(text) < len(written):
+        begins = code_points_before(written, begins)
+        ends = code_points_before(written, ends)
+    widths = ends - begins
     for word, length in shared:
-        starts[word : word + length], widths[word : word + length] = starts[word], widths[word]
-    return Surface(text, gap, starts, widths)
+        begins[word : word + length], widths[word : word + length] = begins[word], widths[word]
+    return Surface(text, begins, widths)
 
 
-def _place_ranges(lines: Lines, written: list[str], gaps: list[str]) -> list[tuple[int, int]]:
+def _place_ranges(lines: Lines, starts: Int64Array, sizes: Int64Array, gaps: Int64Array) -> list[tuple[int, int]]:
     """Write multiword tokens in place of their words; tells those whose words share one place."""
-    form, misc = _index(lines, "form"), _index(lines, "misc")
-    shared = []
-    for one in lines.ranges:
-        first, stop = one.first, one.first + one.length
-        spelled = one.fields[form]
-        if "".join(written[first:stop]) != spelled:
-            written[first:stop] = [spelled, *[""] * (one.length - 1)]
-            shared.append((first, one.length))
-        no_space = misc >= 0 and "SpaceAfter=No" in one.fields[misc].split("|")
-        gaps[first:stop] = [""] * (one.length - 1) + ["" if no_space else " "]
-    return shared
-
-
-def _index(lines: Lines, name: str) -> int:
-    names = list(lines.columns)
-    return names.index(name) if name in names else -1
-
-
-def step_column(starts: Int64Array) -> NDArray[np.int32]:
-    """Code points from each word's start to the next one's: what packs well; the first is 0."""
-    return np.diff(starts, prepend=starts[:1]).astype(np.int32)
+    ranges, data = lines.ranges, lines.buffer.bytes
+    if not len(ranges.words):
+        return []
+    begins = np.cumsum(ranges.lengths) - ranges.lengths
+    words = np.repeat(ranges.words - begins, ranges.lengths)
+    words += np.arange(len(words))
+    no_space = np.zeros(len(ranges.words), bool)
+    if "misc" in ranges.columns:
+        no_space = having(*column_text(lines.buffer, ranges.columns["misc"]), _NO_SPACE)
+    gaps[words] = 0
+    gaps[ranges.words + ranges.lengths - 1] = ~no_space
+    spelled = ranges.columns["form"]
+    differing = np.add.reduceat(sizes[words], begins) != spelled.lengths
+    alike = np.repeat(~differing, ranges.lengths)
+    one, firsts = gather(data, spelled.only(~differing))
+    other, _ = gather(data, Slices(starts[words[alike]], sizes[words[alike]]))
+    if len(one):
+        differing[~differing] = np.logical_or.reduceat(one != other, firsts)
+    sizes[words[np.repeat(differing, ranges.lengths)]] = 0
+    shared = ranges.words[differing]
+    starts[shared], sizes[shared] = spelled.starts[differing], spelled.lengths[differing]
+    return [*zip(shared.tolist(), ranges.lengths[differing].tolist(), strict=True)]

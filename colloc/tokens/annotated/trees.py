@@ -2,21 +2,17 @@
 
 from __future__ import annotations
 
-import re
-from collections.abc import Sequence
-
 import numpy as np
 from numpy.typing import NDArray
 
 from colloc.records import Int64Array
-from colloc.tokens.annotated.lines import NUMBERS, Lines
+from colloc.tokens.annotated.buffer import whole_numbers
+from colloc.tokens.annotated.lines import INTEGER, NOTHING, Lines
 
 UNSPECIFIED = -1
-_HEADS = NUMBERS | {"0": 0, "_": UNSPECIFIED}
-_INTEGER = re.compile(r"[1-9][0-9]{0,8}")
 
 
-def read_heads(lines: Lines, column: Sequence[str]) -> Int64Array:
+def read_heads(lines: Lines) -> Int64Array:
     """The heads as numbers of words in their sentence: 0 for the root, -1 where unspecified.
 
     Raises
@@ -24,13 +20,16 @@ def read_heads(lines: Lines, column: Sequence[str]) -> Int64Array:
     DataError
         A head that is no number, or beyond the sentence.
     """
-    found = [*map(_HEADS.get, column)]
-    if None in found:
-        for offset in [offset for offset, number in enumerate(found) if number is None]:
-            if not _INTEGER.fullmatch(column[offset]):
-                lines.places.fail(f"HEAD {column[offset][:40]!r} is no number (0 for the root)", word=offset)
-            found[offset] = int(column[offset])
-    heads = np.array(found, np.int64)
+    column = lines.columns["head"]
+    heads, other = whole_numbers(lines.buffer, column)
+    if other.any():
+        unspecified = column.are(lines.buffer, NOTHING.encode())
+        heads[unspecified] = UNSPECIFIED
+        for word in np.flatnonzero(other & ~unspecified).tolist():
+            text = lines.field("head", word)
+            if not INTEGER.fullmatch(text):
+                lines.places.fail(f"HEAD {text[:40]!r} is no number (0 for the root)", word=word)
+            heads[word] = int(text)
     lengths = np.diff(lines.sentences, append=len(lines))
     beyond = np.flatnonzero(heads > np.repeat(lengths, lengths))
     if len(beyond):
@@ -52,13 +51,14 @@ def head_offsets(lines: Lines, heads: Int64Array) -> NDArray[np.int32]:
     if len(own):
         lines.places.fail("a word that is its own head", word=int(own[0]))
     # Every word looks as far up again as it has come: 2^k steps after k rounds, so depth costs its logarithm only.
+    # Words that have reached a root stay there and are left alone.
     above = np.arange(len(lines)) + offsets
+    climbing = np.flatnonzero(offsets[above])
     for _ in range(int(lines.positions.max(initial=1)).bit_length() + 1):
-        unfinished = offsets[above] != 0
-        if not unfinished.any():
+        if not len(climbing):
             break
-        above = above[above]
+        above[climbing] = above[above[climbing]]
+        climbing = climbing[offsets[above[climbing]] != 0]
     else:
-        word = int(np.flatnonzero(unfinished)[0])
-        lines.places.fail("its heads go round in a circle and reach no root", word=word)
+        lines.places.fail("its heads go round in a circle and reach no root", word=int(climbing[0]))
     return offsets.astype(np.int32)

@@ -1,86 +1,102 @@
-"""Fields of words as numbers: types by (form, lemma, UPOS), other columns by small tables of their own."""
+"""Fields of words as numbers: types by (form, lemma, UPOS), other columns by the different fields they have."""
 
 from __future__ import annotations
 
 import unicodedata
-from typing import cast
+from collections.abc import Sequence
 
 import numpy as np
 
-from colloc.records import UInt32Array
-from colloc.tokens.annotated.lines import Lines
+from colloc.records import Int64Array, UInt32Array
+from colloc.tokens.annotated.buffer import Buffer, Slices, gather
+from colloc.tokens.annotated.lines import NOTHING, Lines
+from colloc.tokens.annotated.slicetable import Growing, SliceTable
 
-NOTHING = "_"
-"""CoNLL-U's word for a field that is not specified."""
-LONGEST = 2**16
-"""Code points of one field."""
-_BYTES_A_TYPE = 500
-"""Of a key as read and its strings, about."""
+TYPE_COLUMNS = ("form", "lemma", "upos")
+VALUE_COLUMNS = ("deprel", "xpos", "feats")
+_BYTES_A_STRING = 160
+"""A short string, its number and its share of a dict, roughly."""
 
-_COLUMNS = ("form", "lemma", "upos")
 Triple = tuple[str, str, str]
 Changed = tuple[int, str, str]
 """Word, column, and the field as it was read."""
 
 
-class TripleNumberer:
-    """Local numbers of types, in order of first appearance, over many batches."""
+class FieldNumberer:
+    """Local numbers of types, in order of first appearance, and of fields, over many batches.
+
+    Columns that stand side by side are looked up together, as one slice of a line.
+    """
 
     def __init__(self) -> None:
         self.reset()
 
     def reset(self) -> None:
         """Forget everything: numbers begin again at 0."""
-        self._known: dict[Triple, int] = {}
         self._types: dict[Triple, int] = {}
         self._new: list[Triple] = []
-        self._changed: dict[Triple, list[tuple[str, str]]] = {}
+        self._fields: dict[str, dict[str, int]] = {name: {} for name in VALUE_COLUMNS}
+        self._bundles: dict[tuple[str, ...], _Bundle] = {}
 
     @property
     def nbytes(self) -> int:
         """Memory taken, about."""
-        return _BYTES_A_TYPE * len(self._known)
+        strings = 3 * len(self._types) + sum(map(len, self._fields.values()))
+        return _BYTES_A_STRING * strings + sum(bundle.nbytes for bundle in self._bundles.values())
 
     def take_new(self) -> list[Triple]:
         """Types first seen since the last call, in the order of their numbers."""
         taken, self._new = self._new, []
         return taken
 
-    def number(self, lines: Lines) -> tuple[UInt32Array, list[Changed]]:
-        """Local type number of each word, and the fields that their types do not give back.
+    def number(self, lines: Lines) -> tuple[UInt32Array, dict[str, UInt32Array], list[Changed]]:
+        """Numbers of words and fields.
 
         Returns
         -------
-        numbers : uint32 array, shape (n_words,)
+        types : uint32 array, shape (n_words,)
+        fields : dict of uint32 arrays, shape (n_words,)
+            By column, for those of `VALUE_COLUMNS` that there are; :meth:`texts` tells what the numbers stand for.
         changed : list of (word, column, field)
-            Fields that were not NFC.
-
-        Raises
-        ------
-        DataError
-            An empty field, or one of more than ``LONGEST`` code points.
+            Fields that their types do not give back: those that were not NFC.
         """
-        columns = lines.columns
-        absent = (NOTHING,) * len(lines)
-        keys: list[Triple] = [
-            *zip(columns["form"], columns.get("lemma", absent), columns.get("upos", absent), strict=True)
-        ]
-        numbers = [*map(self._known.get, keys)]
-        if None in numbers:
-            for offset in [offset for offset, number in enumerate(numbers) if number is None]:
-                numbers[offset] = self._number(lines, keys[offset], offset)
+        types: UInt32Array = np.zeros(0, np.uint32)
+        fields: dict[str, UInt32Array] = {}
         changed: list[Changed] = []
-        if self._changed:
-            odd = ((offset, key) for offset, key in enumerate(keys) if key in self._changed)
-            changed = [(offset, *change) for offset, key in odd for change in self._changed[key]]
-        return np.array(cast(list[int], numbers), np.uint32), changed
+        for names in _bundled(lines.columns):
+            bundle = self._bundles.setdefault(names, _Bundle(names))
+            numbers, fresh = bundle.table.number(*_slices(lines, names))
+            self._learn(bundle, lines, numbers, fresh)
+            fields |= {name: array.values[numbers] for name, array in bundle.fields.items()}
+            if "form" in names:
+                types = bundle.types.values[numbers]
+                changed = bundle.changed_words(numbers)
+        return types, fields, changed
 
-    def _number(self, lines: Lines, read: Triple, word: int) -> int:
+    def texts(self, name: str) -> Sequence[str]:
+        """The fields of a column, by number."""
+        return [*self._fields[name]]
+
+    def _learn(self, bundle: _Bundle, lines: Lines, numbers: UInt32Array, fresh: Int64Array) -> None:
+        """Read what is in a bundle's new slices."""
+        if not len(fresh):
+            return
+        read = {name: _texts(lines, name, fresh) for name in bundle.names}
+        given = numbers[fresh].tolist()
+        for name, array in bundle.fields.items():
+            known = self._fields[name]
+            array.extend(np.array([known.setdefault(text, len(known)) for text in read[name]], np.uint32))
+        if "form" in read:
+            nothing = [NOTHING] * len(fresh)
+            triples = [*zip(*(read.get(name, nothing) for name in TYPE_COLUMNS), strict=True)]
+            types = np.zeros(len(fresh), np.uint32)
+            # Types have their numbers by the order of the text, slices by their length too.
+            for at in np.argsort(fresh).tolist():
+                types[at] = self._type(bundle, triples[at], given[at])
+            bundle.types.extend(types)
+
+    def _type(self, bundle: _Bundle, read: Triple, slice_number: int) -> int:
         """The number of a type that may be new."""
-        if read in self._known:
-            return self._known[read]
-        for name, text in zip(_COLUMNS, read, strict=True):
-            check_field(lines, name, text, word)
         form, lemma, upos = normal = tuple(unicodedata.normalize("NFC", text) for text in read)
         # A word that is an underscore has the lemma that it shows.
         triple = form, "" if lemma == NOTHING != form else lemma, "" if upos == NOTHING else upos
@@ -88,39 +104,82 @@ class TripleNumberer:
             self._types[triple] = len(self._types)
             self._new.append(triple)
         if normal != read:
-            pairs = zip(_COLUMNS, read, normal, strict=True)
-            self._changed[read] = [(name, text) for name, text, kept in pairs if text != kept]
-        self._known[read] = self._types[triple]
+            pairs = zip(TYPE_COLUMNS, read, normal, strict=True)
+            bundle.changed[slice_number] = [(name, text) for name, text, kept in pairs if text != kept]
         return self._types[triple]
 
 
-class ValueNumberer:
-    """Numbers of the different fields of a column, in order of first appearance."""
+class _Bundle:
+    """Columns that are looked up together; arrays by the number of the slice."""
 
-    def __init__(self, name: str) -> None:
-        self._name = name
-        self.values: dict[str, int] = {}
+    def __init__(self, names: tuple[str, ...]) -> None:
+        self.names = names
+        self.table = SliceTable()
+        self.types = Growing(np.uint32)
+        self.fields = {name: Growing(np.uint32) for name in names if name in VALUE_COLUMNS}
+        self.changed: dict[int, list[tuple[str, str]]] = {}
 
-    def number(self, lines: Lines) -> UInt32Array:
-        """The number of each word's field.
+    @property
+    def nbytes(self) -> int:
+        """Memory taken, about."""
+        arrays = (self.types, *self.fields.values())
+        changed = 2 * _BYTES_A_STRING * len(self.changed)
+        return self.table.nbytes + sum(array.nbytes for array in arrays) + changed
 
-        Raises
-        ------
-        DataError
-            An empty field, or one of more than ``LONGEST`` code points.
-        """
-        column = lines.columns[self._name]
-        for text in dict.fromkeys(column):
-            if text not in self.values:
-                if not text or len(text) > LONGEST:
-                    check_field(lines, self._name, text, column.index(text))
-                self.values[text] = len(self.values)
-        return np.fromiter(map(self.values.__getitem__, column), np.uint32, len(column))
+    def changed_words(self, numbers: UInt32Array) -> list[Changed]:
+        """The words whose slices hold fields that were changed."""
+        if not self.changed:
+            return []
+        odd = np.zeros(len(self.table), bool)
+        odd[[*self.changed]] = True
+        words = np.flatnonzero(odd[numbers])
+        pairs = zip(words.tolist(), numbers[words].tolist(), strict=True)
+        return [(word, *change) for word, number in pairs for change in self.changed[number]]
 
 
-def check_field(lines: Lines, name: str, text: str, word: int) -> None:
-    """Raise DataError for a field that is empty or too long."""
-    if not text:
-        lines.places.fail(f"{name.upper()} is empty: write {NOTHING} where there is nothing to say", word=word)
-    if len(text) > LONGEST:
-        lines.places.fail(f"{name.upper()} has {len(text):,} characters, more than {LONGEST:,}", word=word)
+def _bundled(columns: dict[str, Slices]) -> list[tuple[str, ...]]:
+    """Which columns are looked up together: those of the type with XPOS and features, and the relation by itself."""
+    together = tuple(name for name in columns if name in (*TYPE_COLUMNS, "xpos", "feats"))
+    return [together, ("deprel",)] if "deprel" in columns else [together]
+
+
+def _slices(lines: Lines, names: tuple[str, ...]) -> tuple[Buffer, Slices]:
+    """The columns of a bundle as slices: of the lines where they stand side by side, else of a copy."""
+    order = [*lines.columns]
+    first, last = lines.columns[names[0]], lines.columns[names[-1]]
+    if order.index(names[-1]) - order.index(names[0]) == len(names) - 1:
+        return lines.buffer, first.through(last)
+    columns = [lines.columns[name] for name in names]
+    starts = np.stack([column.starts for column in columns], axis=1).ravel()
+    lengths = np.stack([column.lengths + 1 for column in columns], axis=1).ravel()
+    copied, begins = gather(lines.buffer.bytes, Slices(starts, lengths))
+    # The last may have ended a line in some file and a field in another.
+    copied[begins + lengths - 1] = ord("\t")
+    begins = begins[:: len(names)]
+    return Buffer(copied.tobytes()), Slices(begins, np.diff(begins, append=len(copied)) - 1)
+
+
+def _texts(lines: Lines, name: str, words: Int64Array) -> list[str]:
+    """The fields of some words."""
+    column = lines.columns[name].only(words)
+    stops = (column.starts + column.lengths).tolist()
+    return [lines.buffer.text(start, stop) for start, stop in zip(column.starts.tolist(), stops, strict=True)]
+
+
+def by_appearance(numbers: UInt32Array, texts: Sequence[str]) -> tuple[UInt32Array, list[str]]:
+    """The same fields numbered anew: only those that occur, in order of first appearance.
+
+    Returns
+    -------
+    numbers : uint32 array
+        Into the list beside it.
+    texts : list of str
+    """
+    first = np.full(len(texts), -1)
+    # Written backwards, so that the first place is written last and stays.
+    first[numbers[::-1]] = np.arange(len(numbers))[::-1]
+    present = np.flatnonzero(first >= 0)
+    order = present[np.argsort(first[present])]
+    renumbered = np.zeros(len(texts), np.uint32)
+    renumbered[order] = np.arange(len(order))
+    return renumbered[numbers], [texts[number] for number in order.tolist()]

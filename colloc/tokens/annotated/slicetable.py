@@ -1,0 +1,184 @@
+"""Slices of bytes -> numbers, exactly and on whole arrays."""
+
+from __future__ import annotations
+
+import secrets
+from collections.abc import Iterator
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colloc.records import Int64Array, UInt32Array, UInt64Array
+from colloc.tokens.annotated.buffer import MASKS, WORD, Buffer, Slices, gather
+from colloc.tokens.keytable import ABSENT, KeyTable
+
+LONGEST_HASHED = 512
+"""Bytes; longer slices, which are rare, are looked up one by one."""
+_BYTES_A_STRING = 160
+
+
+class Growing:
+    """An array that grows at its end."""
+
+    def __init__(self, kind: type[np.generic]) -> None:
+        self._room: NDArray[Any] = np.zeros(1024, kind)
+        self._count = 0
+
+    @property
+    def values(self) -> NDArray[Any]:
+        """What is in it."""
+        return self._room[: self._count]
+
+    @property
+    def nbytes(self) -> int:
+        """Bytes held."""
+        return self._room.nbytes
+
+    def __len__(self) -> int:
+        return self._count
+
+    def extend(self, more: NDArray[Any]) -> None:
+        """Add values at the end."""
+        stop = self._count + len(more)
+        if stop > len(self._room):
+            room = np.zeros(max(stop, 2 * len(self._room)), self._room.dtype)
+            room[: self._count] = self.values
+            self._room = room
+        self._room[self._count : stop] = more
+        self._count = stop
+
+    def drop(self, n: int) -> None:
+        """Take the last ``n`` values away."""
+        self._count -= n
+
+
+class SliceTable:
+    """Numbers different slices from 0 on, over many buffers.
+
+    A slice is found by a hash of 64 bits (multiplicative, by a number drawn at
+    random for each table) and then compared, eight bytes at a time, with what
+    is kept of the slice that has this hash; one that has the same hash but
+    other bytes is looked up by its bytes, as are long ones.
+    """
+
+    def __init__(self) -> None:
+        self._multiplier = np.uint64(secrets.randbits(64) | 1)
+        self._table = KeyTable(1)
+        self._apart: dict[bytes, int] = {}
+        self._kept = Growing(np.uint8)
+        self._kept.extend(np.zeros(WORD, np.uint8))
+        self._starts, self._lengths, self._tails = Growing(np.int64), Growing(np.int64), Growing(np.uint64)
+
+    def __len__(self) -> int:
+        return len(self._starts)
+
+    @property
+    def nbytes(self) -> int:
+        """Memory taken, about."""
+        arrays = (self._kept, self._starts, self._lengths, self._tails)
+        apart = sum(map(len, self._apart)) + _BYTES_A_STRING * len(self._apart)
+        return self._table.nbytes + sum(array.nbytes for array in arrays) + apart
+
+    def number(self, buffer: Buffer, slices: Slices) -> tuple[UInt32Array, Int64Array]:
+        """Numbers of slices, none of them empty.
+
+        Returns
+        -------
+        numbers : uint32 array, shape (n,)
+        fresh : int64 array
+            The slices with which numbers were given, in the order of these numbers.
+        """
+        long = np.flatnonzero(slices.lengths > LONGEST_HASHED)
+        if not len(long):
+            return self._number(buffer, slices)
+        short = np.flatnonzero(slices.lengths <= LONGEST_HASHED)
+        numbers = np.zeros(len(slices), np.uint32)
+        numbers[short], fresh = self._number(buffer, slices.only(short))
+        return numbers, np.append(short[fresh], self._number_apart(buffer, slices, long, numbers))
+
+    def _number(self, buffer: Buffer, slices: Slices) -> tuple[UInt32Array, Int64Array]:
+        tails = _tails(buffer, slices)
+        hashes = self._hashes(buffer, slices, tails)
+        numbers = self._table.find([hashes])
+        absent = np.flatnonzero(numbers == ABSENT)
+        fresh = absent
+        if len(absent):
+            keys, firsts, inverse = np.unique(hashes[absent], return_index=True, return_inverse=True)
+            order = np.argsort(firsts)
+            fresh = absent[firsts[order]]
+            given = np.empty(len(keys), np.uint32)
+            given[order] = np.arange(len(self), len(self) + len(keys), dtype=np.uint32)
+            self._keep(buffer, slices.only(fresh), tails[fresh])
+            self._table.add([keys], given)
+            numbers[absent] = given[inverse]
+        unequal = self._unequal(buffer, slices, tails, numbers)
+        if len(unequal):
+            fresh = np.append(fresh, self._number_apart(buffer, slices, unequal, numbers))
+        return numbers, fresh
+
+    def _number_apart(self, buffer: Buffer, slices: Slices, rows: Int64Array, numbers: UInt32Array) -> Int64Array:
+        """Number some slices by their bytes; tells the new ones."""
+        fresh: list[int] = []
+        for row in rows.tolist():
+            start = int(slices.starts[row])
+            key = buffer.data[start : start + int(slices.lengths[row])]
+            number = self._apart.setdefault(key, len(self) + len(fresh))
+            if number == len(self) + len(fresh):
+                fresh.append(row)
+            numbers[row] = number
+        new = np.array(fresh, np.int64)
+        # So that numbers and places go on together; their bytes are in the dictionary.
+        self._keep(buffer, Slices(slices.starts[new], np.zeros(len(new), np.int64)), np.zeros(len(new), np.uint64))
+        return new
+
+    def _keep(self, buffer: Buffer, slices: Slices, tails: UInt64Array) -> None:
+        kept, begins = gather(buffer.bytes, slices)
+        self._starts.extend(begins + len(self._kept) - WORD)
+        self._lengths.extend(slices.lengths)
+        self._tails.extend(tails)
+        # Behind the last one is room for reading a whole word.
+        self._kept.drop(WORD)
+        self._kept.extend(np.append(kept, np.zeros(WORD, np.uint8)))
+
+    def _hashes(self, buffer: Buffer, slices: Slices, tails: UInt64Array) -> UInt64Array:
+        mixed = self._mixed(tails + slices.lengths.astype(np.uint64) * self._multiplier)
+        for rows, offset in _inner_words(slices.lengths):
+            mixed[rows] = self._mixed(mixed[rows] ^ buffer.words[slices.starts[rows] + offset])
+        return mixed
+
+    def _mixed(self, words: UInt64Array) -> UInt64Array:
+        words *= self._multiplier
+        words ^= words >> np.uint64(32)
+        return words
+
+    def _unequal(self, buffer: Buffer, slices: Slices, tails: UInt64Array, numbers: UInt32Array) -> Int64Array:
+        """Slices that are not what is kept under their numbers, ascending."""
+        unequal = self._lengths.values[numbers] != slices.lengths
+        unequal |= self._tails.values[numbers] != tails
+        unequal_rows = [np.flatnonzero(unequal)]
+        kept = self._kept.values
+        words = np.ndarray((len(kept) - WORD + 1,), "<u8", kept, strides=(1,))
+        starts = self._starts.values[numbers]
+        for rows, offset in _inner_words(np.where(unequal, 0, slices.lengths)):
+            differ = words[starts[rows] + offset] != buffer.words[slices.starts[rows] + offset]
+            if differ.any():
+                unequal_rows.append(rows[differ])
+        return np.unique(np.concatenate(unequal_rows))
+
+
+def _tails(buffer: Buffer, slices: Slices) -> UInt64Array:
+    """The last eight bytes of each slice, or all that it has."""
+    beyond = np.maximum(slices.lengths - WORD, 0)
+    tails: UInt64Array = buffer.words[slices.starts + beyond] & MASKS[np.minimum(slices.lengths, WORD)]
+    return tails
+
+
+def _inner_words(lengths: Int64Array) -> Iterator[tuple[Int64Array, int]]:
+    """Slices that have more than the next eight bytes, and where these begin; the last ones are in the tails."""
+    offset = 0
+    rows = np.flatnonzero(lengths > WORD)
+    while len(rows):
+        yield rows, offset
+        offset += WORD
+        rows = rows[lengths[rows] > offset + WORD]
