@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from functools import cached_property
+from itertools import repeat
 from typing import Any
 
 import numpy as np
@@ -20,7 +21,7 @@ from colloc.settings import Margins
 from colloc.store import vocabulary
 
 _MANY = 4096
-"""So many different words at once are looked up in a table of the whole layer, read once."""
+"""So many words at once are looked up in a table of the whole layer, read once."""
 
 
 EXACT_TESTS = ("fisher_p", "fisher_log10_p")
@@ -95,21 +96,16 @@ class Scorer:
         return columns.adding({"unknown": _unknown(first, second), **counts, "total": total, **measures})
 
     def _numbers(self, words: list[Any]) -> Int64Array:
-        distinct = dict.fromkeys(words)
-        texts = [word if isinstance(word, str) else "" for word in distinct]
+        texts = words if {*map(type, words)} <= {str} else [w if isinstance(w, str) else "" for w in words]
+        # A word written as the layer writes it is found at once; the others are brought to its form one by one.
+        known = self._every_term if len(texts) >= _MANY else {}
+        numbers = np.fromiter(map(known.get, texts, repeat(-1)), np.int64, len(texts))
+        others = np.flatnonzero(numbers < 0).tolist()
+        distinct = list(dict.fromkeys(texts[place] for place in others))
         store, layer = self._question.store, self._question.layer
-        if len(distinct) < _MANY:
-            found = vocabulary.term_numbers(store, layer, texts).tolist()
-        else:
-            # A word written as the layer writes it is found at once; the others are brought to its form one by one.
-            found = list(map(self._every_term.get, texts))
-            others = [place for place, number in enumerate(found) if number is None]
-            for place, number in zip(
-                others, vocabulary.term_numbers(store, layer, [texts[place] for place in others]).tolist(), strict=True
-            ):
-                found[place] = number
-        numbers = dict(zip(distinct, found, strict=True))
-        return np.fromiter(map(numbers.__getitem__, words), np.int64, len(words))
+        found = dict(zip(distinct, vocabulary.term_numbers(store, layer, distinct).tolist(), strict=True))
+        numbers[others] = [found[texts[place]] for place in others]
+        return numbers
 
     @cached_property
     def _every_term(self) -> dict[str, int]:

@@ -54,46 +54,73 @@ class DelimitedWriter:
     def __init__(self, stream: BinaryIO, settings: Mapping[str, Any], *, delimiter: str) -> None:
         self._stream = stream
         self._delimiter = delimiter
-        self._special = re.compile(rf'["\r\n{delimiter}]').search
+        self._signs = f"{_QUOTE}\r\n{delimiter}"
+        self._special = re.compile(f"[{self._signs}]").search
         self._begun = False
+        self._quick = False
 
     def write(self, part: Columns) -> None:
-        heading = [] if self._begun else [[defuse(name)] for name in part.names]
-        self._begun = True
+        from colloc.answers.rowtext import QUICK_ROWS
+
+        if not self._begun:
+            self._begun = True
+            self._write_rows([self._quoted([defuse(name)]) for name in part.names])
+        self._quick = self._quick or len(part) >= QUICK_ROWS
+        for start in range(0, len(part), _ROWS_AT_ONCE):
+            self._write_part(part[start : start + _ROWS_AT_ONCE])
+
+    def _write_part(self, part: Columns) -> None:
+        # Numbers need neither quotes nor guards.
         columns = [
-            defuse_all(values) if text else values for values, text in map(_cells, part.names, part.data.values())
+            array if array.dtype.kind in "biuf" else self._quoted(_texts(array.tolist()))
+            for array in part.data.values()
         ]
-        if heading:
-            columns = [head + column for head, column in zip(heading, columns, strict=True)]
-        lines = map(self._delimiter.join, zip(*map(self._quoted, columns), strict=True))
+        if self._quick:
+            from colloc.answers.rowtext import rows_as_text
+
+            text = rows_as_text(columns, list(map(is_count, part.names)), self._delimiter)
+            if text is not None:
+                self._stream.write(text)
+                return
+        cells = zip(part.names, columns, strict=True)
+        self._write_rows([column if isinstance(column, list) else _numbers(name, column) for name, column in cells])
+
+    def _write_rows(self, columns: list[list[str]]) -> None:
+        lines = map(self._delimiter.join, zip(*columns, strict=True))
         self._stream.write("".join([f"{line}\n" if line else '""\n' for line in lines]).encode())
 
     def _quoted(self, cells: list[str]) -> list[str]:
         # Not csv.writer: with line feeds as row ends it leaves a carriage return inside a cell unquoted.
-        if not self._special("\0".join(cells)):
+        joined = "\0".join(cells)
+        if not any(sign in joined for sign in self._signs):
             return cells
-        return [f'"{cell.replace(_QUOTE, _QUOTE * 2)}"' if self._special(cell) else cell for cell in cells]
+        special = self._special
+        return [f'"{cell.replace(_QUOTE, _QUOTE * 2)}"' if special(cell) else cell for cell in cells]
 
     def close(self) -> None:
         """Nothing is left to write."""
 
 
+_ROWS_AT_ONCE = 1 << 15
+"""Their text stays in the processor's cache, or nearly."""
 _QUOTE = '"'
 
 
-def _cells(name: str, array: Any) -> tuple[list[str], bool]:
-    """A numpy column's values as written, and whether they are text that might have to be defused."""
+def _texts(values: list[Any]) -> list[str]:
+    """The values of a column of objects as written, texts guarded."""
+    if {*map(type, values)} <= {str}:
+        return defuse_all(values)
+    # A mixed column: only its texts are guarded.
+    return [defuse(value) if isinstance(value, str) else _cell(value) for value in values]
+
+
+def _numbers(name: str, array: Any) -> list[str]:
+    """The values of a column of numbers as written."""
     values = array.tolist()
-    kind = array.dtype.kind
-    if kind == "O":
-        if all(isinstance(value, str) for value in values):
-            return values, True
-        # A mixed column: only its texts are defused.
-        return [defuse(value) if isinstance(value, str) else _cell(value) for value in values], False
-    if kind == "f":
+    if array.dtype.kind == "f":
         texts = ["" if text == "nan" else text for text in map(str, values)]
-        return [text.removesuffix(".0") for text in texts] if is_count(name) else texts, False
-    return [_cell(value) for value in values] if kind == "b" else list(map(str, values)), False
+        return [text.removesuffix(".0") for text in texts] if is_count(name) else texts
+    return [_cell(value) for value in values] if array.dtype.kind == "b" else list(map(str, values))
 
 
 def _cell(value: Any) -> str:

@@ -12,8 +12,6 @@ import re
 
 _DANGEROUS = re.compile(r"'*[=+\-@\t\r]")
 _DEFUSED = re.compile(r"'+[=+\-@\t\r]")
-_ANY_DANGEROUS = re.compile(r"(?:\A|\0)'*[=+\-@\t\r]")
-_ANY_DEFUSED = re.compile(r"(?:\A|\0)'+[=+\-@\t\r]")
 _NUMBER = re.compile(r"[+-]?(?:\d+(?:\.\d*)?(?:[eE][+-]?\d+)?|\.\d+(?:[eE][+-]?\d+)?|inf|nan)")
 
 
@@ -38,10 +36,21 @@ def restore(cell: str) -> str:
 
 
 def defuse_all(cells: list[str]) -> list[str]:
-    """:func:`defuse` for a column; one look at the whole column where nothing is to do, as nearly always."""
-    return [defuse(cell) for cell in cells] if _ANY_DANGEROUS.search("\0".join(cells)) else cells
+    """:func:`defuse` for a column; a few looks at the whole column where nothing is to do, as nearly always."""
+    joined = _joined(cells)
+    dangerous = any(f"\0{sign}" in joined for sign in _SIGNS) or _ANY_DEFUSED.search(joined)
+    return [defuse(cell) for cell in cells] if dangerous else cells
 
 
 def restore_all(cells: list[str]) -> list[str]:
     """:func:`restore` for a column."""
-    return [restore(cell) for cell in cells] if _ANY_DEFUSED.search("\0".join(cells)) else cells
+    return [restore(cell) for cell in cells] if _ANY_DEFUSED.search(_joined(cells)) else cells
+
+
+_SIGNS = "=+-@\t\r"
+_ANY_DEFUSED = re.compile(r"\0'+[=+\-@\t\r]")
+
+
+def _joined(cells: list[str]) -> str:
+    """The cells behind each other, a NUL before each."""
+    return "\0".join(["", *cells])

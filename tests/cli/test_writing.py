@@ -16,6 +16,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from colloc.answers.columns import Columns
+from colloc.answers.rowtext import QUICK_ROWS
 from colloc.cli.output import Target, deliver, settings_line
 from colloc.cli.progress import ProgressLine, clock, progress_text
 from colloc.cli.render import make_writer
@@ -228,3 +229,31 @@ def test_progress_tells_rate_and_time_left() -> None:
     assert progress_text(0.0, 0, "reading", 0.1) == "reading    0 %"
     assert progress_text(1.2, 5, "reading", 0.1) == "reading  100 %"
     assert [clock(seconds) for seconds in (0, 59.6, 3725)] == ["0:00", "1:00", "1:02:05"]
+
+
+@pytest.mark.parametrize(("file_format", "delimiter"), [("csv", ","), ("tsv", "\t")])
+def test_many_rows_are_the_same_characters_as_few(file_format: str, delimiter: str) -> None:
+    """A large part is written at once: it must be what its rows are one by one, quotes and guards too."""
+    random = np.random.default_rng(2)
+    n = QUICK_ROWS + 100
+    texts = np.array(["sea", "'tis", "1,000", "=A1", 'a "b"', "tab\there", "", "-5", "two\nlines"], dtype=object)
+    answer = Columns(
+        {
+            "first": texts[random.integers(0, len(texts), n)],
+            "joint": random.integers(0, 50, n),
+            "total": random.integers(0, 9, n) / 2,
+            "pmi": np.where(
+                random.random(n) < 0.1, np.nan, random.standard_normal(n) * 10.0 ** random.integers(-9, 9, n)
+            ),
+            "a, b": np.where(random.random(n) < 0.5, None, 1.5),
+        }
+    )
+    whole, piecemeal = io.BytesIO(), io.BytesIO()
+    for stream, size in ((whole, n), (piecemeal, QUICK_ROWS // 3)):
+        writer = make_writer(file_format, stream, {})
+        for start in range(0, n, size):
+            writer.write(answer[start : start + size])
+    assert whole.getvalue() == piecemeal.getvalue()
+    rows = list(csv.reader(io.StringIO(whole.getvalue().decode(), newline=""), delimiter=delimiter))
+    assert len(rows) == n + 1
+    assert [restore(row[0]) for row in rows[1:]] == answer["first"].tolist()
