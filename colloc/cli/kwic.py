@@ -23,7 +23,7 @@ def terminal_width() -> int:
 
 
 def kwic_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[str]:
-    """One line of text for each row of an answer of ``lines``.
+    """A line of names, and one line of text for each row of an answer of ``lines``; words are counted from 1.
 
     Parameters
     ----------
@@ -40,19 +40,21 @@ def kwic_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[
     rows = answer.to_dicts()
     if not rows:
         return []
-    left = [[row["document"], *(row[key] for key in keys), row["token"]] for row in rows]
-    heads = [[_cut_end(_plain(value), _WIDEST_NAME) for value in cells] for cells in left]
+    names = ["document", *keys, "word"]
+    left = [[row["document"], *(row[key] for key in keys), row["token"] + 1] for row in rows]
+    heads = [[_cut_end(_plain(value), _WIDEST_NAME) for value in cells] for cells in [names, *left]]
     head_widths = [max(map(width, cells)) for cells in zip(*heads, strict=True)]
     match_width = min(max(width(_plain(row["match"])) for row in rows), _WIDEST_MATCH)
-    room = max(columns, 40) - sum(head_widths) - 2 * len(head_widths) - match_width - 2
-    side = max(room // 2, 8)
+    room = max(columns, 40) - sum(head_widths) - 2 * len(head_widths)
+    side = max((room - match_width) // 2, 8)
+    bodies = ["", *(_body(row, side, max(room - side, 8)) for row in rows)]
     lines = []
-    for cells, row in zip(heads, rows, strict=True):
+    for cells, body in zip(heads, bodies, strict=True):
         head = "  ".join(
             _padded(cell, wide, left=place != len(cells) - 1)
             for place, (cell, wide) in enumerate(zip(cells, head_widths, strict=True))
         )
-        lines.append(f"{head}  {_body(row, side, match_width)}".rstrip())
+        lines.append(f"{head}  {body}".rstrip())
     return lines
 
 
@@ -69,15 +71,15 @@ def sentence_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> l
     return lines
 
 
-def _body(row: dict[str, Any], side: int, match_width: int) -> str:
+def _body(row: dict[str, Any], before_width: int, rest_width: int) -> str:
+    """What stands before the match up to a column, the match and what follows from there, spaced as in the text."""
     from colloc.answers.plain import is_right_to_left
 
-    before, match, after = (_plain(row[name]) for name in ("before", "match", "after"))
-    before, after = _fit(before, side, _cut_start), _fit(after, side, _cut_end)
-    match = _fit(match, match_width, _cut_end)
+    before, rest = _SPACES.sub(" ", row["before"]).lstrip(), _SPACES.sub(" ", row["match"] + row["after"]).rstrip()
+    before, rest = _fit(before, before_width, _cut_start), _fit(rest, rest_width, _cut_end)
     if is_right_to_left(row["match"] + row["after"]):
-        return f"{_padded(after, side, left=False)} {_padded(match, match_width)} {_padded(before, side)}"
-    return f"{_padded(before, side, left=False)} {_padded(match, match_width)} {_padded(after, side)}"
+        return _padded(rest, rest_width, left=False) + _padded(before, before_width)
+    return _padded(before, before_width, left=False) + _padded(rest, rest_width)
 
 
 def _plain(value: Any) -> str:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import html
 import io
 import json
 import re
@@ -43,9 +44,7 @@ def columns(text: str) -> int:
 
 def word_columns(line: str, word: str) -> set[int]:
     """Columns where the word begins; isolates stand in logical order, from left to right."""
-    return {columns(line[: match.start()]) for match in re.finditer(rf"(?<= ){re.escape(word)}(?= |$)", line)} | {
-        columns(line[: match.start()]) for match in re.finditer(f"\u2068{re.escape(word)}\u2069", line)
-    }
+    return {columns(line[: match.start()]) for match in re.finditer(re.escape(word), line)}
 
 
 @pytest.mark.parametrize("width", [60, 80, 120])
@@ -56,9 +55,15 @@ def test_matches_stand_under_each_other(
     monkeypatch.setenv("COLUMNS", str(width))
     done = run("lines", store, WORDS[name], "--where", f"id={name}", "--layer", "form", "-q")
     assert done.code == 0
-    lines = done.out.splitlines()
+    head, *lines = done.out.splitlines()
+    assert head.split() == ["document", "word"]
     assert len(lines) == {"english": 4, "arabic": 3, "hebrew": 2, "japanese": 3, "combining": 3, "controls": 1}[name]
-    assert len(set.intersection(*(word_columns(line, WORDS[name]) for line in lines))) == 1
+    if name in ("arabic", "hebrew"):
+        # What is read first stands on the right: the cell that begins with the match ends in one column.
+        assert all(line.split("\u2068")[1].startswith(WORDS[name]) for line in lines)
+        assert len({columns(line[: line.index("\u2069")]) for line in lines}) == 1
+    else:
+        assert set.intersection(*(word_columns(line, WORDS[name]) for line in lines))
     for line in lines:
         assert columns(line) <= width
         # Nothing in the text steers the terminal, and every isolate is closed.
@@ -69,8 +74,49 @@ def test_matches_stand_under_each_other(
 def test_right_to_left_lines_read_from_the_right(run: Run, store: Path) -> None:
     done = run("lines", store, WORDS["arabic"], "-q", "-n", 1)
     cells = [cell.strip("\u2068\u2069 ") for cell in done.out.strip().split("\u2068")[1:]]
-    assert cells[1:] == ["البحر", "كان"]
-    assert cells[0].startswith("هادئا في الصباح")
+    assert cells[1:] == ["كان"]
+    assert cells[0].startswith("البحر هادئا في الصباح")
+
+
+def test_lines_are_spaced_as_the_text_is(run: Run, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """No space between a word and its comma: what stands in a line stands in the text, but for runs of spaces."""
+    monkeypatch.setenv("COLUMNS", "200")
+    texts = {
+        "a": 'The sea, the "sea" and (sea): sea-side\n sea!  A  sea.',
+        "b": "海は静かだった。「海へ行こう」と彼は言った。",
+    }
+    records = [json.dumps({"id": name, "text": text}) for name, text in texts.items()]
+    (tmp_path / "a.jsonl").write_text("\n".join(records), encoding="utf-8")
+    colloc.build(tmp_path / "a.colloc", [str(tmp_path / "a.jsonl")], jobs=1)
+    for name, word in (("a", "sea"), ("b", "海")):
+        asked = ("lines", tmp_path / "a.colloc", word, "-q")
+        rows = json.loads(run(*asked, "-f", "json").out)["rows"]
+        page = run(*asked, "-f", "html").out
+        shown = run(*asked).out.splitlines()[1:]
+        for row, line in zip(rows, shown, strict=True):
+            whole = row["before"] + row["match"] + row["after"]
+            assert whole in texts[name]
+            place, text = line.split(maxsplit=2)[1:]
+            assert int(place) == row["token"] + 1
+            assert text == " ".join(whole.split())
+            before, rest = html.escape(row["before"]), html.escape(row["after"])
+            assert f'<bdi>{before}</bdi></span><span class="rest"><bdi><mark>{word}</mark>{rest}</bdi>' in page
+            assert f", word {place}</span>" in page
+
+
+def test_a_word_has_one_number_for_readers(run: Run, store: Path) -> None:
+    """Counted from 1 in lines, whole sentences and pages; an offset from 0 where programs read it."""
+    asked = ("lines", store, "rose", "-q")
+    place = TEXTS["english"].rstrip("?").replace(".", "").replace(",", "").split().index("rose") + 1
+    assert run(*asked).out.splitlines()[1].split()[:2] == ["english", str(place)]
+    assert run(*asked, "--sentences").out.splitlines()[0] == f"english, word {place}"
+    assert f"english, word {place}<" in run(*asked, "-f", "html").out
+    assert json.loads(run(*asked, "-f", "jsonl").out)["token"] == place - 1
+
+
+def test_whole_sentences_are_running_text(run: Run, store: Path) -> None:
+    assert '<ol class="lines running">' in run("lines", store, "sea", "--sentences", "-q", "-f", "html").out
+    assert '<ol class="lines">' in run("lines", store, "sea", "-q", "-f", "html").out
 
 
 def test_formats_hold_the_same_lines(run: Run, store: Path, tmp_path: Path) -> None:
@@ -97,12 +143,19 @@ def test_formats_hold_the_same_lines(run: Run, store: Path, tmp_path: Path) -> N
 
 def test_how_many_there_are_is_said(run: Run, store: Path) -> None:
     done = run("lines", store, "sea", "-n", 2)
-    assert len(done.out.splitlines()) == 2
+    assert len(done.out.splitlines()) == 3
     assert "found 5; in documents 2; shown 2" in done.err
 
 
 def test_metadata_beside_the_document(run: Run, store: Path) -> None:
-    assert run("lines", store, "wave", "-q", "--keys", "year").out.split()[:3] == ["english", "1900", "6"]
+    assert run("lines", store, "wave", "-q", "--keys", "year").out.split()[:6] == [
+        "document",
+        "year",
+        "word",
+        "english",
+        "1900",
+        "7",
+    ]
     done = run("lines", store, "wave", "--keys", "author")
     assert done.code == 2
     assert "no document has the key 'author'" in done.err

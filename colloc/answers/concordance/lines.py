@@ -141,6 +141,7 @@ def lines(
         "sort": "best" if best else sort,
         "seed": seed if sort == "random" or best else None,
         "one_per_document": one_per_document,
+        "sentences": sentences or best,
         "found": len(hits),
         "in_documents": len(np.unique(hits.documents)),
         "shown": len(shown),

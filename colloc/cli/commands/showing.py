@@ -55,6 +55,8 @@ def lines(
 
     The lines come from the stored text. A line is one occurrence of X; with Y, one that
     has Y within reach. Tables are cut to the width of the terminal, other formats are whole.
+    Tables and pages count the words of a document from 1; token and character in csv, tsv,
+    jsonl, json and parquet are offsets from 0 in words and in code points.
     """
     from colloc.verbs import evidence
 

@@ -10,7 +10,10 @@ from colloc.exports.pages.frame import Markup, number, page, settings_footer, te
 
 
 def lines_page(answer: Columns) -> bytes:
-    """A page with the lines of an answer of ``lines``, the matches under each other."""
+    """A page with the lines of an answer of ``lines``: words are counted from 1.
+
+    The matches stand under each other where there is room; whole sentences, narrow screens and paper have running text.
+    """
     settings = answer.settings
     asked = settings["first"] if settings["second"] is None else f"{settings['first']} … {settings['second']}"
     documents = settings["in_documents"]
@@ -22,7 +25,7 @@ def lines_page(answer: Columns) -> bytes:
     body = [
         f"<h1><bdi>{text(asked)}</bdi></h1>",
         f'<p class="lead">{found}</p>',
-        f'<ol class="lines">{"".join(items)}</ol>',
+        f'<ol class="lines{" running" if settings["sentences"] else ""}">{"".join(items)}</ol>',
         settings_footer(settings),
     ]
     return page(f"Lines: {asked}", body)
@@ -32,12 +35,13 @@ def _item(row: dict[str, Any]) -> Markup:
     before, match, after = marked(row)
     # In right-to-left text what is read first stands on the right of the match.
     turned = ' class="turned" dir="rtl"' if is_right_to_left(row["match"] + row["after"]) else ""
+    # The space between them would not be seen at the end of a cell: a margin stands for it.
+    close = "" if before[-1:].isspace() else " close"
     return (
         f"<li{turned}>"
-        f'<span class="where" dir="auto">{text(row["document"])}, {number(row["token"] + 1)}</span> '
-        f'<span class="before" dir="auto">{before}</span> '
-        f'<span class="match" dir="auto">{match}</span> '
-        f'<span class="after" dir="auto">{after}</span></li>\n'
+        f'<span class="where" dir="auto">{text(row["document"])}, word {number(row["token"] + 1)}</span> '
+        f'<span class="before{close}"><bdi>{before}</bdi></span>'
+        f'<span class="rest"><bdi>{match}{after}</bdi></span></li>\n'
     )
 
 
