@@ -50,6 +50,9 @@ def join(
     expressions : sequence of str, optional
         Words separated by spaces; ``*`` stands for any one word, and a score may follow after a tab. Those accepted
         in the store when not given.
+    layer : str, optional
+        What words are compared by, as the store was built when not given: ``form``, ``fold``, and ``lemma`` or
+        ``lemma_fold`` where the store was built with a dictionary of lemmas. Expressions are then written in lemmas.
 
     Returns
     -------
@@ -70,13 +73,15 @@ def make_joiner(
 ) -> Joiner:
     """What joins one text after the other: ``join``, ``join_many`` and, for long texts in pieces, ``join_stream``."""
     from colloc.answers.concordance.matching import segment_settings
-    from colloc.answers.joining.listed import accepted, checked_layer, expressions_of
+    from colloc.answers.joining.layers import layer_of_words
+    from colloc.answers.joining.listed import accepted, expressions_of
     from colloc.answers.joining.rewriting import Joiner
     from colloc.answers.questions import built_spec
 
     with reading(store) as opened:
-        chosen = checked_layer(layer or built_spec(opened).layer)
+        chosen = layer or built_spec(opened).layer
         settings = segment_settings(opened)
+        layer_of_words(chosen, settings)  # raises where running text has no such layer
         if expressions is None:
             listed = accepted(opened, chosen)
         else:

@@ -9,9 +9,6 @@ from colloc.errors import DataError, UsageError
 from colloc.store import decisions
 from colloc.store.connection import Store
 
-LAYERS = ("fold", "form")
-"""Layers of running text: what its words are can be told without annotation."""
-
 
 @dataclass(frozen=True, slots=True)
 class Expression:
@@ -79,17 +76,10 @@ def accepted(store: Store, layer: str) -> list[Expression]:
     return found
 
 
-def checked_layer(layer: str) -> str:
-    """The layer itself; UsageError where running text has no such layer."""
-    if layer not in LAYERS:
-        raise UsageError(f"running text has the layers {' and '.join(LAYERS)} only, not {layer!r}")
-    return layer
-
-
-def folded(expressions: Sequence[Expression], layer: str, fold: Callable[[str], str]) -> list[Expression]:
-    """The expressions as the layer writes them, each once, with its highest score."""
+def brought_to_layer(expressions: Sequence[Expression], written: Callable[[str], str]) -> list[Expression]:
+    """The expressions as the layer writes their words, each once, with its highest score."""
     best: dict[tuple[str, ...], float] = {}
     for one in expressions:
-        words = tuple(map(fold, one.words)) if layer == "fold" else one.words
+        words = tuple(map(written, one.words))
         best[words] = max(best.get(words, one.score), one.score)
     return [Expression(words, score) for words, score in best.items()]

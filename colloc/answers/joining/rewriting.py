@@ -8,13 +8,13 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.answers.joining.listed import Expression, folded
+from colloc.answers.joining.layers import layer_of_listed, layer_of_words
+from colloc.answers.joining.listed import Expression, brought_to_layer
 from colloc.answers.joining.matching import Matches, Trie, chosen
 from colloc.records import Int64Array, Segments
 from colloc.settings import SegmentSettings
 from colloc.tokens.classes import code_points
 from colloc.tokens.cutting import safe_cut
-from colloc.tokens.folding import folder
 from colloc.tokens.numbering import TypeNumberer
 from colloc.tokens.segmenter import Segmenter
 
@@ -58,12 +58,18 @@ class Joiner:
     expressions : sequence of Expression
     settings : SegmentSettings
         How text becomes words.
-    layer : {"fold", "form"}
-        Whether case matters.
+    layer : str
+        What words are compared by: ``form``, ``fold``, or, where the settings name a dictionary of lemmas, ``lemma``
+        or ``lemma_fold``.
     joiner : str
         Put in place of the space between two words.
     across_lines : bool
         Also where one line end stands between two words, which then is lost.
+
+    Raises
+    ------
+    UsageError
+        Where running text has no such layer.
     """
 
     def __init__(
@@ -75,11 +81,10 @@ class Joiner:
         joiner: str = "_",
         across_lines: bool = False,
     ) -> None:
-        self._fold = folder(settings.folding)
-        self.expressions = folded(expressions, layer, self._fold)
+        self._called = layer_of_words(layer, settings)
+        self.expressions = brought_to_layer(expressions, layer_of_listed(layer, settings))
         self.settings = settings
         self._joiner = joiner
-        self._folds = layer == "fold"
         self._trie = Trie(self.expressions)
         self._segmenter = Segmenter(settings)
         self._numberer = TypeNumberer()
@@ -168,7 +173,7 @@ class Joiner:
         local = self._numberer.number(segments)
         fresh = self._numberer.take_new()
         known = self._trie.word_numbers
-        numbers = [known.get(self._fold(form) if self._folds else form, 0) for form in fresh]
+        numbers = [known.get(self._called(form), 0) for form in fresh]
         self._forms = np.concatenate([self._forms, np.array(numbers, np.int64)])
         return self._forms[local]
 

@@ -13,12 +13,14 @@ from hypothesis import example, given
 from hypothesis import strategies as st
 
 import colloc
+from colloc.answers.joining.layers import layer_of_words
 from colloc.answers.joining.listed import Expression, expressions_of
 from colloc.answers.joining.rewriting import STRETCH, Joined, Joiner
 from colloc.errors import DataError, UsageError
 from colloc.settings import SegmentSettings
 from colloc.store import decisions
 from colloc.store.opening import open_for_writing
+from colloc.store.vocabulary import layer_map, term_texts
 
 
 def joiner(*expressions: str, **options: object) -> Joiner:
@@ -172,5 +174,28 @@ def test_accepted_in_the_store(tmp_path: Path) -> None:
         decisions.append(store, made)
     assert colloc.join(path, "Thick fog at dawn, heavy rain").text == "Thick_fog at_dawn, heavy rain"
     assert [one.text for one in colloc.join(path, ["at dawn", "x"], ["at dawn"], joiner="+")] == ["at+dawn", "x"]
-    with pytest.raises(UsageError, match="running text has the layers fold and form only"):
+    with pytest.raises(UsageError, match="has the layer lemma where the store was built with --lemma, which it was"):
         colloc.join(path, "x", ["a b"], layer="lemma")
+    with pytest.raises(UsageError, match=r"running text has the layers form, fold, and .* lemma and lemma_fold; not 'u"):
+        colloc.join(path, "x", ["a b"], layer="upos")
+
+
+def test_by_lemma(tmp_path: Path) -> None:
+    """Words of the text become lemmas as the store makes them; expressions are written in lemmas."""
+    sentence = "The captains drank cups of strong teas; Cups of tea stood there."
+    (tmp_path / "a.txt").write_text(sentence, encoding="utf-8")
+    path = tmp_path / "s.colloc"
+    settings = SegmentSettings(lemma="en")
+    colloc.build(path, str(tmp_path / "a.txt"), segment=settings, tally=colloc.TallySpec(layer="lemma"), jobs=1)
+    joined = "The captains drank cups_of_strong_teas; Cups_of_tea stood there."
+    for layer in (None, "lemma", "lemma_fold"):
+        assert colloc.join(path, sentence, ["cup of tea", "cup of strong tea"], layer=layer).text == joined
+    assert colloc.join(path, sentence, ["cups of tea"], layer="lemma").text == sentence
+    assert colloc.join(path, sentence, ["cups of tea"], layer="fold").text.endswith("; Cups_of_tea stood there.")
+    with colloc.open_store(path) as store:
+        called = layer_of_words("lemma", settings)
+        forms, lemmas = (term_texts(store, layer) for layer in ("form", "lemma"))
+        of_type = layer_map(store, "lemma")
+        assert [called(form) for form in forms] == [lemmas[term] for term in of_type.tolist()]
+    with pytest.raises(UsageError, match="no dictionary of lemmas"):
+        Joiner([Expression(("a", "b"))], SegmentSettings(lemma="xx"), layer="lemma")
