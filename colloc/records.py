@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -97,6 +98,8 @@ class Segments:
         Whether a sentence ends where this stretch ends.
     dropped : int
         Tokens left out because they were longer than ``max_token``.
+    points : unsigned array, shape (len(text),), or None
+        Code points of the text, where they are at hand.
     """
 
     text: str
@@ -106,6 +109,7 @@ class Segments:
     paragraphs: Int64Array
     closed: bool = True
     dropped: int = 0
+    points: NDArray[np.unsignedinteger[Any]] | None = None
 
     def __len__(self) -> int:
         return len(self.starts)

@@ -23,6 +23,8 @@ from numpy.typing import NDArray
 from colloc.build.annotating import Annotations, annotations_of, sentence_anchors
 from colloc.build.batches import Batch
 from colloc.errors import CollocError, InputOutputError
+from colloc.kernels.characters import mark
+from colloc.kernels.switch import compiled
 from colloc.records import Anchors, Annotation, Int64Array, UInt32Array
 from colloc.settings import SegmentSettings
 from colloc.store.texts import PackedText, pack_text
@@ -181,7 +183,10 @@ def _present(tokens: UInt32Array) -> UInt32Array:
     if not len(tokens):
         return tokens
     seen = np.zeros(int(tokens.max()) + 1, dtype=bool)
-    seen[tokens] = True
+    if compiled():
+        mark(tokens, seen)
+    else:
+        seen[tokens] = True
     return np.flatnonzero(seen).astype(np.uint32)
 
 

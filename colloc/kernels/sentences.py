@@ -1,4 +1,4 @@
-"""Sentence ends in one pass over kinds of characters: the rules of UAX #29 that ``colloc.tokens.sentences`` lays out."""
+"""Sentence ends in one pass over kinds of characters: the rules that ``colloc.tokens.sentences`` lays out."""
 
 from __future__ import annotations
 

@@ -116,7 +116,7 @@ def word_spans(
                 elif now & HYPHEN and after & SPOKEN:
                     while hyphen < n_hyphens and hyphens[hyphen] < np.int64(i):
                         hyphen += _ONE
-                    bound = hyphen < n_hyphens and hyphens[hyphen] == np.int64(i)
+                    bound = bool(hyphen < n_hyphens and hyphens[hyphen] == np.int64(i))
                 joined = joined or bound
             if now & SINGLE_QUOTE and before & HEBREW:  # WB7a
                 joined = True

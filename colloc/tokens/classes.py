@@ -17,6 +17,9 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.kernels.characters import look_up
+from colloc.kernels.switch import compiled
+
 Kinds = NDArray[np.uint8]
 Mask = NDArray[np.bool_]
 Points = NDArray[np.unsignedinteger[Any]]
@@ -152,6 +155,10 @@ def kinds_of(points: Points) -> Kinds:
     tables = classes()
     if points.dtype == np.uint8:
         return np.frombuffer(points.tobytes().translate(tables.latin), np.uint8)
+    if points.dtype == np.uint16 and compiled():
+        kinds = np.empty(len(points), np.uint8)
+        look_up(points, tables.kind_of, kinds)
+        return kinds
     high = np.flatnonzero(points > 255)
     if 4 * len(high) > len(points):
         return tables.kind_of[points]

@@ -13,7 +13,7 @@ import unicodedata
 from collections import defaultdict
 from collections.abc import Callable
 from dataclasses import dataclass
-from itertools import count
+from itertools import count, islice
 from typing import Final
 
 import numpy as np
@@ -114,7 +114,7 @@ class TypeNumberer:
         """Local type number of each token, shape (n_tokens,)."""
         numbers = np.full(len(segments.starts), ABSENT, np.uint32)
         if len(numbers):
-            points = code_points(segments.text)
+            points = code_points(segments.text) if segments.points is None else segments.points
             number = self._number_in_a_loop if compiled() else self._number_arrays
             number(segments, points, self._alphabet.encode(points), numbers)
             self._measure()
@@ -205,9 +205,8 @@ class TypeNumberer:
             keys = [key if key.isascii() else unicodedata.normalize("NFC", key) for key in keys]
         known = len(self._numbers)
         result = list(map(self._numbers.__getitem__, keys))
-        if len(self._numbers) - known < len(keys):
-            keys = list(dict.fromkeys(key for key, number in zip(keys, result, strict=True) if number >= known))
-        self._new += keys
+        # What is new stands at the end of the dict.
+        self._new += list(islice(reversed(self._numbers), len(self._numbers) - known))[::-1]
         return result
 
     def _measure(self) -> None:

@@ -4,13 +4,16 @@ from __future__ import annotations
 
 import numpy as np
 
+from colloc.kernels.characters import first_from
+from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, Segments
 from colloc.settings import SegmentSettings
 from colloc.tokens.addresses import find_addresses
 from colloc.tokens.arrays import any_within, distinct
 from colloc.tokens.classes import Kinds, Points, classes, code_points, kinds_of
 from colloc.tokens.dictionaries import check_library, dictionary_words, find_runs
-from colloc.tokens.patterns import compiled, pattern_tokens
+from colloc.tokens.patterns import compiled as compiled_pattern
+from colloc.tokens.patterns import pattern_tokens
 from colloc.tokens.sentences import sentence_breaks
 from colloc.tokens.signs import find_marks, find_tags
 from colloc.tokens.words import HYPHENS, word_tokens
@@ -32,7 +35,7 @@ class Segmenter:
         """Raises ``UsageError`` for a wrong token pattern, ``MissingExtraError`` where ICU is needed and not there."""
         self.settings = settings
         if settings.pattern is not None:
-            compiled(settings.pattern)
+            compiled_pattern(settings.pattern)
         if settings.scripts == "dictionary":
             check_library()
 
@@ -94,6 +97,7 @@ class Segmenter:
             paragraphs=_first_tokens(starts, paragraph_starts, opening),
             closed=ended or (opening and not len(starts)),
             dropped=dropped,
+            points=points[: len(text)],
         )
 
     def _words(self, text: str, points: Points, kinds: Kinds, addresses: _Spans) -> _Spans:
@@ -188,6 +192,11 @@ def _clipped(starts: Int64Array, ends: Int64Array, length: int) -> _Spans:
 
 def _first_tokens(starts: Int64Array, breaks: Int64Array, opening: bool) -> Int64Array:
     """Numbers of the tokens that come first after a break, and of token 0 where `opening`."""
+    if compiled():
+        if opening:
+            breaks = np.concatenate((np.zeros(1, np.int64), breaks))
+        numbers = np.empty(len(breaks), np.int64)
+        return numbers[: first_from(starts, breaks, numbers)]
     found = np.searchsorted(starts, breaks)
     if opening:
         found = np.concatenate((np.zeros(1, np.int64), found))
