@@ -12,6 +12,7 @@ from colloc.build.repeats import Repeats
 from colloc.build.segmenting import segment_batches
 from colloc.build.writing import StreamWriter
 from colloc.errors import DataError, NoInputError
+from colloc.kernels.switch import WORTH_BYTES, prefer_compiled
 from colloc.settings import ReadSettings, SegmentSettings
 from colloc.store import documents, facts, stream
 from colloc.store.connection import Store
@@ -79,6 +80,8 @@ def read_into(
         For input that cannot be read, naming file and line; what was committed stays.
     """
     sources = _Sources(store, list(open_sources(inputs, read)))
+    # Before processes are made: they inherit what is loaded.
+    prefer_compiled(sources.bytes_left > WORTH_BYTES)
     with SeenHashes(store, folder) as seen:
         repeats = Repeats(read.skip_duplicates, seen if read.skip_duplicates != "none" else None)
         writer = StreamWriter(store, TypeRegistry(store, limit=registry_limit(resources.memory)))
@@ -179,6 +182,12 @@ class _Sources:
             finish(self._store, self._rows[position].number, source.digest())
             note_encoding(self._store, source.info.name, source.detected)
             self._exhausted.remove(position)
+
+    @property
+    def bytes_left(self) -> int:
+        """Size of the sources that are not finished, as they lie on the disk; pipes and iterables count nothing."""
+        rows = zip(self._sources, self._rows, strict=True)
+        return sum(max(source.info.size, 0) for source, row in rows if not row.finished)
 
     @property
     def share(self) -> float:

@@ -3,20 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Protocol
+from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 
 from colloc.counts.dense import DensePlan, run_of_cells
 from colloc.counts.keys import Run, merge, pack, run_of_keys
-from colloc.records import NO_TERM, Int64Array, UInt32Array
+from colloc.kernels import pairs
+from colloc.kernels.switch import compiled
+from colloc.records import NO_TERM, Int64Array, TokenSpan, UInt32Array
 
 BoolArray = NDArray[np.bool_]
 Places = slice | Int64Array
 """Tokens of the loaded span: a stretch, or their offsets."""
 
 DEFAULT_PENDING = 2**22
+_MOST_IN_CELLS = 2**31 - 1
 
 
 class PairSink(Protocol):
@@ -46,7 +49,10 @@ class Accumulator:
         self, plan: DensePlan | None = None, pending: int = DEFAULT_PENDING, spill: Callable[[Run], None] | None = None
     ) -> None:
         self._plan = plan
-        self._cells = np.zeros(plan.n_cells, np.int64) if plan is not None else None
+        # Narrow cells are twice as many in the processor's cache; `windows` sees to it that they do not overflow.
+        kind = np.int32 if compiled() else np.int64
+        self._cells: NDArray[Any] | None = np.zeros(plan.n_cells, kind) if plan is not None else None
+        self._in_cells = 0
         self._keys = np.empty(pending, np.uint64)
         self._n_keys = 0
         self._runs: list[Run] = []
@@ -87,6 +93,30 @@ class Accumulator:
         np.add.at(self._cells, cell.astype(np.int64), 1)
         self._keep(self._terms[first][outside], self._terms[second][outside])
 
+    def takes_windows(self, reach: int) -> bool:
+        """Whether `windows` can be called for windows of this reach."""
+        return self._plan is not None and 2 * reach + 1 < len(self._keys)
+
+    def windows(self, span: TokenSpan, left: int, right: int) -> None:
+        """What `colloc.counts.windows.add_windows` does, by a compiled loop."""
+        assert self._plan is not None
+        assert self._cells is not None
+        plan = self._plan
+        terms, units = np.ascontiguousarray(span.terms), np.ascontiguousarray(span.units)
+        self._in_cells += len(terms) * (left + right)
+        if self._in_cells > _MOST_IN_CELLS:
+            self._flush_cells()
+            self._in_cells = len(terms) * (left + right)
+        rows = np.empty((len(terms), 3), np.int32)
+        state = np.array([span.context, self._n_keys], np.int64)
+        while state[0] < len(terms):
+            arguments = (plan.base, plan.stop, plan.twice, rows, self._cells, self._keys, state)
+            pairs.add_windows(terms, units, span.context, left, right, *arguments)
+            self._n_keys = int(state[1])
+            if state[0] < len(terms):
+                self._flush_keys()
+                state[1] = 0
+
     def _keep(self, first: UInt32Array, second: UInt32Array) -> None:
         done = 0
         while done < len(first):
@@ -104,12 +134,15 @@ class Accumulator:
             self._spill(run_of_keys(self._keys[: self._n_keys]))
             self._n_keys = 0
 
+    def _flush_cells(self) -> None:
+        if self._plan is not None and self._cells is not None:
+            self._spill(run_of_cells(self._plan, self._cells))
+            self._in_cells = 0
+
     def finish(self) -> Run:
         """Hand the last keys and the table to ``spill``; without ``spill`` return the sum of all as one run."""
         self._flush_keys()
-        if self._plan is not None and self._cells is not None:
-            self._spill(run_of_cells(self._plan, self._cells))
-            self._cells.fill(0)
+        self._flush_cells()
         whole = merge(self._runs)
         self._runs.clear()
         return whole

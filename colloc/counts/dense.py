@@ -20,11 +20,13 @@ on values fetched once for each token.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from colloc.counts.keys import Run, pack_ordered, sorted_run
+from colloc.kernels import pairs
 from colloc.records import Int64Array
 
 Int32Array = NDArray[np.int32]
@@ -108,8 +110,16 @@ def _size(limits: Int64Array) -> int:
     return int((2 * (limits - np.arange(len(limits))) + 1).sum())
 
 
-def run_of_cells(plan: DensePlan, cells: Int64Array) -> Run:
-    """The counts of the table ``cells`` (shape (n_cells,)) as a run."""
+def run_of_cells(plan: DensePlan, cells: NDArray[Any]) -> Run:
+    """The counts of the table ``cells`` (shape (n_cells,)) as a run; the table is zero afterwards.
+
+    Tables of int32 are those of compiled loops.
+    """
+    if cells.dtype == np.int32:
+        n = int(np.count_nonzero(cells))
+        keys, counts = np.empty(n, np.uint64), np.empty(n, np.int64)
+        n = pairs.list_cells(cells, plan.row_starts, plan.terms, keys, counts)
+        return sorted_run(keys[:n], counts[:n])
     used = cells != 0
     # spare cells count nothing: the invalid pairs (before row 0), the end of each row, and the row of all others
     used[0] = used[-1] = False
@@ -124,4 +134,6 @@ def run_of_cells(plan: DensePlan, cells: Int64Array) -> Run:
     # odd cells stand for [h, l]
     swapped = ((within & 1) == 1) ^ (lower_terms > higher_terms)
     keys = pack_ordered(np.minimum(lower_terms, higher_terms), np.maximum(lower_terms, higher_terms), swapped)
-    return sorted_run(keys, cells[filled])
+    counts = cells[filled].astype(np.int64)
+    cells.fill(0)
+    return sorted_run(keys, counts)

@@ -15,11 +15,15 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.kernels import merging, pairs
+from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, PairBlock, UInt32Array, UInt64Array
 
 _LOW = np.uint64(32)
 _ONE = np.uint64(1)
 _LOWER_HALF = np.uint64(0xFFFFFFFF)
+_DIGIT = 9
+"""Bits that one pass of a radix sort looks at: as many places as the nearest cache has room for."""
 _HIGH_MASK = np.uint64(0x7FFFFFFF)
 
 
@@ -63,9 +67,17 @@ def pack_ordered(low: NDArray[Any], high: NDArray[Any], swapped: NDArray[np.bool
 
 
 def run_of_keys(keys: UInt64Array) -> Run:
-    """Sort ``keys`` in place and count equal ones."""
+    """Sort ``keys``, whose content is lost, and count equal ones."""
     if len(keys) == 0:
         return empty_run()
+    if compiled():
+        sorted_keys, spare = keys, np.empty_like(keys)
+        for shift, bits in pairs.bit_ranges(*_bits(keys), _DIGIT):
+            pairs.radix_keys(sorted_keys, spare, shift, np.zeros(1 << bits, np.int64))
+            sorted_keys, spare = spare, sorted_keys
+        counts = np.zeros(len(keys), np.int64)
+        n = pairs.group_keys(sorted_keys, counts)
+        return Run(sorted_keys[:n].copy(), counts[:n].copy())
     keys.sort()
     edges = _group_edges(keys)
     return Run(keys[edges[:-1]], edges[1:] - edges[:-1])
@@ -79,8 +91,9 @@ def sorted_run(keys: UInt64Array, counts: Int64Array) -> Run:
     """
     if len(keys) == 0:
         return empty_run()
-    highest = int(keys.max())
-    term_bits = max((highest >> 32).bit_length(), int(high_terms(keys).max()).bit_length())
+    if compiled():
+        return _by_digits(keys, counts)
+    term_bits = max(_bits(keys))
     place_bits = len(keys).bit_length()
     if 2 * term_bits + 1 + place_bits > 64:
         order = np.argsort(keys)
@@ -93,6 +106,20 @@ def sorted_run(keys: UInt64Array, counts: Int64Array) -> Run:
     return Run(keys[order], counts[order])
 
 
+def _bits(keys: UInt64Array) -> tuple[int, int]:
+    """Bits of the largest lower term and of the largest higher term."""
+    return (int(keys.max()) >> 32).bit_length(), int(high_terms(keys).max()).bit_length()
+
+
+def _by_digits(keys: UInt64Array, counts: Int64Array) -> Run:
+    """`sorted_run` by a radix sort, which carries the counts along."""
+    run, other = (keys, counts), (np.empty_like(keys), np.empty_like(counts))
+    for shift, bits in pairs.bit_ranges(*_bits(keys), _DIGIT):
+        pairs.radix_pass(*run, *other, shift, np.zeros(1 << bits, np.int64))
+        run, other = other, run
+    return Run(*run)
+
+
 def merge(runs: Sequence[Run]) -> Run:
     """One run that holds the sum of all. Counts add up in int64.
 
@@ -102,6 +129,12 @@ def merge(runs: Sequence[Run]) -> Run:
     filled = [run for run in runs if len(run)]
     if len(filled) < 2:
         return filled[0] if filled else empty_run()
+    if compiled():
+        # Two and two, the shortest first: each entry is moved as often as the halves double.
+        filled.sort(key=len)
+        while len(filled) > 1:
+            filled = sorted([*filled[2:], _merge_two(filled[0], filled[1])], key=len)
+        return filled[0]
     keys = np.concatenate([run.keys for run in filled])
     order = np.argsort(keys, kind="stable")
     keys = keys[order]
@@ -110,11 +143,24 @@ def merge(runs: Sequence[Run]) -> Run:
     return Run(keys[starts], np.add.reduceat(counts, starts))
 
 
+def _merge_two(one: Run, other: Run) -> Run:
+    n = len(one) + len(other)
+    keys, counts = np.empty(n, np.uint64), np.empty(n, np.int64)
+    n = merging.merge_two(one.keys, one.counts, other.keys, other.counts, keys, counts)
+    return Run(keys[:n], counts[:n])
+
+
 def pair_block(run: Run) -> PairBlock:
     """The run as unordered pairs with both directions beside each other, sorted by (low, high)."""
     if len(run) == 0:
         nothing, none = np.empty(0, np.uint32), np.empty(0, np.int64)
         return PairBlock(nothing, nothing, none, none)
+    if compiled():
+        n = len(run)
+        low, high = np.empty(n, np.uint32), np.empty(n, np.uint32)
+        ahead, back = np.empty(n, np.int64), np.empty(n, np.int64)
+        n = merging.pair_up(run.keys, run.counts, 1, low, high, ahead, back)
+        return PairBlock(low[:n], high[:n], ahead[:n], back[:n])
     unordered = run.keys >> _ONE
     edges = _group_edges(unordered)
     # a pair has one key or two: its first key is the forward one, its last the backward one, if they are there

@@ -20,11 +20,15 @@ from numpy.typing import NDArray
 from colloc.counts.keys import Run, high_terms, merge, pair_block
 from colloc.counts.pagefiles import PageFile, write_pages
 from colloc.counts.runs import Column, RunFile, smallest, write_column
+from colloc.kernels import merging
+from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, PairBlock, UInt32Array
 
 MOST_RANGES = 2**15
 _SAMPLES = 2**17
 _END = 2**64 - 1
+_WIDEST = 4
+"""Terms for each pair up to which pairs are sorted by a table of all terms of their range."""
 _FIELDS = ("low", "high", "forward", "backward")
 
 
@@ -103,11 +107,19 @@ def _widened(run: Run) -> Run:
 
 
 def _deal(block: PairBlock, highs: Sequence[int], folder: Path, name: str) -> Dealt:
+    if compiled():
+        places, dealt = np.zeros(len(highs), np.int64), _room(len(block))
+        merging.deal(*_columns(block), np.array(highs[1:-1], np.uint32), places, *dealt)
+        return Dealt(_write(folder, name, dealt), places.tolist())
     group = np.searchsorted(np.array(highs[1:-1], np.uint32), block.high, side="right").astype(np.uint16)
     order = np.argsort(group, kind="stable")
     edges = np.concatenate([[0], np.cumsum(np.bincount(group, minlength=len(highs) - 1))])
-    columns = [write_column(folder / f"{name}.{field}", smallest(getattr(block, field))[order]) for field in _FIELDS]
-    return Dealt(columns, edges.tolist())
+    return Dealt(_write(folder, name, [column[order] for column in _columns(block)]), edges.tolist())
+
+
+def _write(folder: Path, name: str, columns: Sequence[NDArray[Any]]) -> list[Column]:
+    fields = zip(_FIELDS, columns, strict=True)
+    return [write_column(folder / f"{name}.{field}", smallest(column)) for field, column in fields]
 
 
 def transpose_range(dealt: Sequence[Dealt], group: int, folder: Path, name: str) -> PageFile:
@@ -118,8 +130,26 @@ def transpose_range(dealt: Sequence[Dealt], group: int, folder: Path, name: str)
     ]
     low, high = (np.concatenate(piece).astype(np.uint32) for piece in pieces[:2])
     forward, backward = (np.concatenate([part.astype(np.int64) for part in piece]) for piece in pieces[2:])
+    block = PairBlock(low, high, forward, backward)
+    least = int(high.min()) if len(high) else 0
+    width = int(high.max()) - least + 1 if len(high) else 0
+    if compiled() and 0 < width <= _WIDEST * len(high):
+        turned = _room(len(block))
+        merging.sort_by_high(*_columns(block), least, np.zeros(width, np.int64), *turned)
+        return write_pages(folder, name, PairBlock(*turned), "high")
     order = stable_order(high)
     return write_pages(folder, name, PairBlock(low[order], high[order], forward[order], backward[order]), "high")
+
+
+_FourColumns = tuple[UInt32Array, UInt32Array, Int64Array, Int64Array]
+
+
+def _room(n: int) -> _FourColumns:
+    return np.empty(n, np.uint32), np.empty(n, np.uint32), np.empty(n, np.int64), np.empty(n, np.int64)
+
+
+def _columns(block: PairBlock) -> _FourColumns:
+    return block.low, block.high, block.forward, block.backward
 
 
 def stable_order(values: UInt32Array) -> Int64Array:

@@ -1,6 +1,6 @@
-"""Workers: separate Python processes that get tasks over pipes.
+"""Workers: separate Python processes that get tasks over pipes, or threads.
 
-They are started afresh, not forked: nothing of the caller's (threads, open databases, its main module)
+The processes are started afresh, not forked: nothing of the caller's (threads, open databases, its main module)
 comes along, and it works alike on every system. Only paths and small facts pass between them.
 """
 
@@ -11,8 +11,10 @@ import os
 import selectors
 import subprocess
 import sys
+import threading
 from collections import deque
 from collections.abc import Iterator, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from contextlib import contextmanager
 from pathlib import Path
 from types import TracebackType
@@ -21,8 +23,10 @@ from typing import Any, Protocol, Self
 from colloc import errors
 from colloc.counts.tasks import Facts, perform
 from colloc.errors import InputOutputError
+from colloc.kernels.switch import compiled
 from colloc.processor import prefer_fast_sorting
 from colloc.store.connection import Store
+from colloc.store.opening import open_for_reading
 
 _AHEAD = 2
 """Tasks that a worker has in hand, so that it need not wait while this process writes."""
@@ -152,6 +156,42 @@ class Workers:
         self.close()
 
 
+class Threads:
+    """Several threads of this process: compiled loops run beside each other, and nothing has to be started."""
+
+    def __init__(self, path: Path, jobs: int) -> None:
+        self._path = path
+        self._own = threading.local()
+        self._stores: list[Store] = []
+        self._pool = ThreadPoolExecutor(jobs, "counting")
+
+    def results(self, tasks: Sequence[Task]) -> Iterator[Facts]:
+        """Hand tasks out as threads become free."""
+        waiting = [self._pool.submit(self._perform, name, arguments) for name, arguments in tasks]
+        for result in waiting:
+            yield result.result()
+
+    def _perform(self, name: str, arguments: Facts) -> Facts:
+        if not hasattr(self._own, "store"):
+            self._own.store = open_for_reading(self._path, shared=True)
+            self._stores.append(self._own.store)
+        return perform(self._own.store, name, arguments)
+
+    def close(self) -> None:
+        """Wait for what the threads have in hand; what they have not begun is left."""
+        self._pool.shutdown(cancel_futures=True)
+        for store in self._stores:
+            store.close()
+
+    def __enter__(self) -> Self:
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, traceback: TracebackType | None
+    ) -> None:
+        self.close()
+
+
 def _pipe(pipe: Any) -> Any:
     assert pipe is not None  # both were asked for as pipes
     return pipe
@@ -159,9 +199,16 @@ def _pipe(pipe: Any) -> Any:
 
 @contextmanager
 def crew(store: Store, jobs: int) -> Iterator[Crew]:
-    """``jobs`` workers, or this process where that is one; workers see only what is committed."""
+    """``jobs`` workers, or this process where that is one; workers see only what is committed.
+
+    Workers are threads where loops are compiled, since those do not hold each other up; else processes.
+    """
     if jobs == 1:
         yield Alone(store)
+        return
+    if compiled():
+        with Threads(store.path, jobs) as threads:
+            yield threads
         return
     with Workers(store.path, jobs) as workers:
         yield workers

@@ -16,6 +16,8 @@ from colloc.counts.keys import Run
 from colloc.errors import InputOutputError
 from colloc.records import UInt64Array
 
+_MAPPED = 2**20
+"""Bytes from which on mapping a file costs less than reading it."""
 _KINDS = (np.uint8, np.uint16, np.uint32, np.int64)
 
 
@@ -28,12 +30,18 @@ class Column:
     n: int
 
     def read(self, begin: int = 0, stop: int | None = None) -> NDArray[Any]:
-        """The elements from ``begin`` to ``stop``, mapped from the file where there are any."""
+        """The elements from ``begin`` to ``stop``: mapped from the file where there are many, private to the reader."""
         stop = self.n if stop is None else stop
+        kind = np.dtype(self.kind)
         if begin >= stop:
-            return np.empty(0, np.dtype(self.kind))
+            return np.empty(0, kind)
         try:
-            return np.memmap(self.path, np.dtype(self.kind), "r", begin * np.dtype(self.kind).itemsize, (stop - begin,))
+            if (stop - begin) * kind.itemsize > _MAPPED:
+                return np.memmap(self.path, kind, "c", begin * kind.itemsize, (stop - begin,))
+            values = np.fromfile(self.path, kind, stop - begin, offset=begin * kind.itemsize)
+            if len(values) != stop - begin:
+                raise OSError("it was cut short")
+            return values
         except (OSError, ValueError) as error:
             raise InputOutputError(f"{self.path}: a temporary file cannot be read ({error})") from error
 

@@ -17,6 +17,7 @@ from colloc.counts.relations import chosen_relations
 from colloc.counts.selection import Selection, documents_selection, slice_selection
 from colloc.counts.words import change_word_counts
 from colloc.errors import CannotCreateError, LockedError
+from colloc.kernels.switch import WORTH_PAIRS, prefer_compiled
 from colloc.records import Int64Array
 from colloc.settings import TallySpec
 from colloc.store import facts, tallies
@@ -198,6 +199,7 @@ class _Counter:
         self, target: Store, spec: TallySpec, selection: Selection, *, kept: bool, sign: int = 1, delta: bool = False
     ) -> None:
         """Write one run of a tally into ``target``, which has a transaction open."""
+        prefer_compiled(len(selection) * max(1, spec.left + spec.right) > WORTH_PAIRS)
         jobs = affordable_jobs(self._memory, max(1, min(self._jobs, len(selection) // _WORTH_A_PROCESS)))
         n_terms = term_count(self._source, spec.layer)
         budget = plan_memory(self._memory, jobs, n_terms)

@@ -6,6 +6,7 @@ import numpy as np
 
 from colloc.counts.accumulating import Accumulator, PairSink
 from colloc.counts.keys import Run
+from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, TokenSpan
 
 
@@ -23,6 +24,9 @@ def add_windows(span: TokenSpan, left: int, right: int, into: PairSink) -> None:
     Each pair of tokens i < j in one unit adds to the cell [t_i, t_j] where j - i <= right, and to the
     cell [t_j, t_i] where j - i <= left: the table M_right + transpose(M_left). With left = 0 this is M.
     """
+    if compiled() and isinstance(into, Accumulator) and into.takes_windows(max(left, right)):
+        into.windows(span, left, right)
+        return
     n = len(span.terms)
     into.load(span.terms)
     remaining = tokens_left(span).astype(np.int32)

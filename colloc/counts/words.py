@@ -9,6 +9,8 @@ import numpy as np
 
 from colloc.counts.selection import Selection, slice_selection
 from colloc.counts.spans import Stretch, read_stretches
+from colloc.kernels import pairs
+from colloc.kernels.switch import compiled
 from colloc.records import NO_TERM, FloatArray, Int64Array, UInt32Array, WordCounts
 from colloc.store.connection import Store
 from colloc.store.vocabulary import append_word_counts, has_word_counts, layer_map, layer_names, term_count, word_counts
@@ -50,6 +52,13 @@ def count_words(store: Store, layer: str, selection: Selection) -> WordCounts:
     """Frequencies of a layer's terms in a selection, from the stream: tokens, and documents that hold the term."""
     n_terms = term_count(store, layer)
     tokens, documents = np.zeros(n_terms, np.int64), np.zeros(n_terms, np.int64)
+    if compiled():
+        seen, document = np.full(n_terms, -1, np.int64), 0
+        for stretch in read_stretches(store, layer_map(store, layer), selection, "document"):
+            starts = stretch.units - stretch.first
+            pairs.count_words(np.ascontiguousarray(stretch.terms), starts, document, tokens, documents, seen)
+            document += len(starts)
+        return WordCounts(tokens, documents)
     for batch in document_words(store, layer, selection):
         # a term comes once for each document of a batch
         np.add.at(tokens, batch.terms, batch.counts)

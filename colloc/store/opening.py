@@ -56,10 +56,15 @@ def create(path: str | os.PathLike[str], facts: Mapping[str, str], purpose: str 
         raise
 
 
-def open_for_reading(path: str | os.PathLike[str]) -> Store:
+def open_for_reading(path: str | os.PathLike[str], *, shared: bool = False) -> Store:
     """Open a store to read; works while another process writes, and where nothing can be written.
 
     All that is read is of the moment of opening, or of the last :meth:`Store.refresh`.
+
+    Parameters
+    ----------
+    shared : bool
+        Whether another thread than the one that opens it may close it.
 
     Raises
     ------
@@ -71,7 +76,7 @@ def open_for_reading(path: str | os.PathLike[str]) -> Store:
     path = Path(path)
     _check_header(path)
     with translated(path):
-        connection = _connect(path, _reading_mode(path))
+        connection = _connect(path, _reading_mode(path), shared)
         try:
             connection.execute("PRAGMA query_only = ON")
             if not _check_ours(connection, path).readable:
@@ -176,10 +181,10 @@ def _reading_mode(path: Path) -> str:
     return "mode=ro&immutable=1"
 
 
-def _connect(path: Path, mode: str) -> sqlite3.Connection:
+def _connect(path: Path, mode: str, shared: bool = False) -> sqlite3.Connection:
     # as_uri quotes `?`, `#` and `%` in file names, which would otherwise be read as options.
     uri = f"{path.absolute().as_uri()}?{mode}"
-    return sqlite3.connect(uri, uri=True, isolation_level=None, timeout=_BUSY_SECONDS)
+    return sqlite3.connect(uri, uri=True, isolation_level=None, timeout=_BUSY_SECONDS, check_same_thread=not shared)
 
 
 def _sync_folder(folder: Path) -> None:

@@ -21,6 +21,8 @@ from colloc.counts.windows import add_windows, count_windows
 from colloc.records import NO_TERM, TokenSpan
 from tests.counts import brute
 
+pytestmark = pytest.mark.usefixtures("loops")
+
 HUGE = 2**31 - 1
 terms = st.one_of(st.integers(0, 6), st.sampled_from([HUGE, HUGE - 1, int(NO_TERM)]))
 streams = st.tuples(st.lists(terms, max_size=40), st.lists(st.integers(0, 45), max_size=8))

@@ -22,6 +22,8 @@ from colloc.store.connection import Store
 from tests.counts import stores
 from tests.counts.test_tallying import check
 
+pytestmark = pytest.mark.usefixtures("loops")
+
 MILLION = 1_000_000
 SPECS = [
     *(

@@ -23,6 +23,8 @@ from colloc.store.tallies import Tally
 from colloc.store.vocabulary import word_counts
 from tests.counts import brute, stores
 
+pytestmark = pytest.mark.usefixtures("loops")
+
 SPECS = [
     TallySpec(right=1),
     TallySpec(right=2, inside="paragraph"),

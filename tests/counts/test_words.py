@@ -13,6 +13,8 @@ from colloc.counts.words import slice_dispersion, slice_word_counts
 from colloc.records import NO_TERM
 from tests.counts import stores
 
+pytestmark = pytest.mark.usefixtures("loops")
+
 
 @pytest.mark.parametrize("sparsest", [0, 1000], ids=["sorted", "tables"])
 def test_words_and_documents_are_plain_counts(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, sparsest: int) -> None:

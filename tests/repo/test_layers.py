@@ -14,7 +14,7 @@ from .tree import PACKAGE, module_name, package_modules, show, syntax
 FRONT = {"colloc", "__main__"}
 """The front page re-exports the verbs and ``__main__`` starts the command line: outside the table."""
 
-SLOW = ("scipy", "sqlite_utils", "matplotlib", "pandas", "polars", "pyarrow", "sklearn", "charset_normalizer")
+SLOW = ("scipy", "numba", "sqlite_utils", "matplotlib", "pandas", "polars", "pyarrow", "sklearn", "charset_normalizer")
 """Never loaded by importing a module: only by the function that needs them."""
 
 CLASSES_OF_OTHERS = {"estimators"}
