@@ -67,14 +67,19 @@ class Question:
 
     def settings(self, **more: Any) -> dict[str, Any]:
         """Everything that decides the numbers, for the header line and the file beside a result."""
-        return {
-            "store": str(self.store.path),
-            **asdict(self.spec),
-            "margins": self.convention.margins,
-            "directed": self.convention.directed,
-            "spanned": self.convention.spanned,
-            **more,
-        }
+        return settings_of(self.store, self.spec, self.convention, **more)
+
+
+def settings_of(store: Store, spec: TallySpec, convention: Convention, **more: Any) -> dict[str, Any]:
+    """Everything that decides the numbers of an answer."""
+    return {
+        "store": str(store.path),
+        **asdict(spec),
+        "margins": convention.margins,
+        "directed": convention.directed,
+        "spanned": convention.spanned,
+        **more,
+    }
 
 
 def built_spec(store: Store) -> TallySpec:

@@ -32,6 +32,7 @@ def matrix(
     most_rows: int | None = None,
     most_contexts: int | None = None,
     layer: str | None = None,
+    context_layer: str | None = None,
     window: int | None = None,
     left: int | None = None,
     right: int | None = None,
@@ -64,6 +65,9 @@ def matrix(
     rows, contexts : sequence of str, optional
         Words in the order wanted; by frequency with the ``min_`` and ``most_`` options otherwise. The margins are
         always those of all text.
+    context_layer : str, optional
+        Contexts are words of this layer and rows of ``layer``, as in lemmas beside forms: counted in one pass over
+        the text, by window or relation.
     min_count, min_value : float
         Cells below are left out.
     """
@@ -79,6 +83,7 @@ def matrix(
         weighting=weighting,
         rows=_choice(rows, min_row_count, most_rows),
         contexts=_choice(contexts, min_context_count, most_contexts),
+        context_layer=context_layer,
         min_count=min_count,
         min_value=min_value,
     )
@@ -107,6 +112,7 @@ def vectors(
     most_rows: int | None = None,
     most_contexts: int | None = None,
     layer: str | None = None,
+    context_layer: str | None = None,
     window: int | None = None,
     left: int | None = None,
     right: int | None = None,
@@ -151,6 +157,7 @@ def vectors(
         weighting=weighting,
         rows=_choice(rows, min_row_count, most_rows),
         contexts=_choice(contexts, min_context_count, most_contexts),
+        context_layer=context_layer,
         min_count=min_count,
     )
     shape = VectorOptions(dimensions=dimensions, power=power, join_contexts=join_contexts, seed=seed)
@@ -174,6 +181,7 @@ def similar(
     min_row_count: int | None = None,
     min_context_count: int | None = None,
     layer: str | None = None,
+    context_layer: str | None = None,
     window: int | None = None,
     left: int | None = None,
     right: int | None = None,
@@ -214,6 +222,7 @@ def similar(
         weighting=weighting,
         rows=_choice(None, min_row_count, None),
         contexts=_choice(None, min_context_count, None),
+        context_layer=context_layer,
     )
     given = vectors if vectors is None or isinstance(vectors, Vectors) else read_vectors(Path(vectors))
     with reading(store) as opened:

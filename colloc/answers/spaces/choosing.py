@@ -8,10 +8,10 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.answers.questions import Question
 from colloc.errors import UsageError
 from colloc.records import Int64Array
 from colloc.store import vocabulary
+from colloc.store.connection import Store
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -54,6 +54,23 @@ EVERY_WORD = Choice()
 
 
 @dataclass(frozen=True, slots=True)
+class Words:
+    """What rows or contexts are chosen from.
+
+    Attributes
+    ----------
+    store : Store
+    layer : str
+    tokens : int64 array
+        How often each of the layer's words was seen, in the slice asked for.
+    """
+
+    store: Store
+    layer: str
+    tokens: Int64Array
+
+
+@dataclass(frozen=True, slots=True)
 class Chosen:
     """A choice resolved for one store.
 
@@ -71,14 +88,14 @@ class Chosen:
     mask: NDArray[np.bool] | None
     words: tuple[str, ...] | None
 
-    def texts(self, question: Question, terms: Int64Array) -> list[str]:
+    def texts(self, known: Words, terms: Int64Array) -> list[str]:
         """What the rows or columns are called."""
         if self.words is not None:
             return list(self.words)
-        return vocabulary.term_texts(question.store, question.layer, terms)
+        return vocabulary.term_texts(known.store, known.layer, terms)
 
 
-def choose(question: Question, choice: Choice, what: str) -> Chosen:
+def choose(known: Words, choice: Choice, what: str) -> Chosen:
     """The terms that a choice means.
 
     Raises
@@ -87,8 +104,8 @@ def choose(question: Question, choice: Choice, what: str) -> Chosen:
         Where two words of a list are one term of the layer.
     """
     if choice.words is not None:
-        return _listed(question, choice.words, what)
-    tokens = question.words.tokens
+        return _listed(known, choice.words, what)
+    tokens = known.tokens
     mask: NDArray[np.bool] | None = None
     if choice.min_count > 1:
         mask = tokens >= choice.min_count
@@ -100,15 +117,15 @@ def choose(question: Question, choice: Choice, what: str) -> Chosen:
     return Chosen(None, mask, None)
 
 
-def _listed(question: Question, words: Sequence[str], what: str) -> Chosen:
-    terms = vocabulary.term_numbers(question.store, question.layer, words)
-    known = terms[terms >= 0]
-    numbers, counts = np.unique(known, return_counts=True)
+def _listed(known: Words, words: Sequence[str], what: str) -> Chosen:
+    terms = vocabulary.term_numbers(known.store, known.layer, words)
+    there = terms[terms >= 0]
+    numbers, counts = np.unique(there, return_counts=True)
     if (counts > 1).any():
         same = [word for word, term in zip(words, terms.tolist(), strict=True) if term == numbers[counts > 1][0]]
         raise UsageError(
-            f"{what}: {' and '.join(map(repr, same[:2]))} are one word in the layer {question.layer!r}; leave one out"
+            f"{what}: {' and '.join(map(repr, same[:2]))} are one word in the layer {known.layer!r}; leave one out"
         )
-    mask = np.zeros(len(question.words.tokens), bool)
-    mask[known] = True
+    mask = np.zeros(len(known.tokens), bool)
+    mask[there] = True
     return Chosen(terms, mask, tuple(words))

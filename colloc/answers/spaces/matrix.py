@@ -8,9 +8,10 @@ from typing import TYPE_CHECKING, Any, get_args
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.answers.questions import PairOptions, Question, ask
-from colloc.answers.spaces.choosing import EVERY_WORD, Choice, Chosen, choose
-from colloc.answers.spaces.rows import RowCells, cells_by_row
+from colloc.answers.questions import PairOptions, Question, ask, resolve_spec
+from colloc.answers.spaces.choosing import EVERY_WORD, Choice, Chosen, Words, choose
+from colloc.answers.spaces.crossing import crossed_table
+from colloc.answers.spaces.rows import MatrixTable, RowCells, cells_by_row
 from colloc.answers.spaces.values import Value, ValueRule, value_rule
 from colloc.answers.spaces.weighting import WeightedTally, Weighting, nested_specs
 from colloc.answers.tables import TableMaker
@@ -19,6 +20,7 @@ from colloc.errors import UsageError
 from colloc.records import FloatArray
 from colloc.settings import DEFAULT_MEMORY
 from colloc.store.connection import Store
+from colloc.store.tallies import Tally
 
 if TYPE_CHECKING:
     from scipy.sparse import csr_array
@@ -40,6 +42,8 @@ class MatrixOptions:
         What a pair at distance d of a window of reach w counts: 1, 1/d, or (w + 1 - d)/w.
     rows, contexts : Choice
         Which words; margins stay those of all text.
+    context_layer : str, optional
+        What the contexts are words of; that of the rows when not given.
     min_count : float
         Cells with a smaller joint count are left out.
     min_value : float, optional
@@ -52,6 +56,7 @@ class MatrixOptions:
     weighting: Weighting = "flat"
     rows: Choice = EVERY_WORD
     contexts: Choice = EVERY_WORD
+    context_layer: str | None = None
     min_count: float = 1
     min_value: float | None = None
 
@@ -106,23 +111,34 @@ def matrix(
     UsageError
         For options that contradict each other or the convention.
     """
-    wanted = chosen or MatrixOptions()
-    names = () if wanted.value == "count" else (wanted.value,)
-    question = ask(store, options or PairOptions(), names, jobs=jobs, memory=memory, progress=progress)
-    source, maker = weighted(question, wanted.weighting, jobs, memory, progress)
-    value = value_rule(wanted.value, wanted.shift, wanted.smoothing, maker)
-    rows = choose(question, wanted.rows, "rows")
-    columns = choose(question, wanted.contexts, "contexts")
-    gathered = _Gathered(len(question.words.tokens), source.n_pairs)
-    for cells in cells_by_row(source, maker.ordered, question.spec.kind == "unit"):
+    wanted, asked = chosen or MatrixOptions(), options or PairOptions()
+    table = _table(store, asked, wanted, jobs, memory, progress)
+    value = value_rule(wanted.value, wanted.shift, wanted.smoothing, table.maker)
+    rows, columns = choose(table.rows, wanted.rows, "rows"), choose(table.columns, wanted.contexts, "contexts")
+    gathered = _Gathered(table)
+    for cells in table.cells:
         gathered.add(*_kept(cells, value, rows, columns, wanted))
-    square = wanted.rows == wanted.contexts == EVERY_WORD
-    return gathered.finished(question, rows, columns, square, matrix_settings(question, wanted))
+    square = table.rows.layer == table.columns.layer and wanted.rows == wanted.contexts == EVERY_WORD
+    return gathered.finished(rows, columns, square, matrix_settings(table, wanted))
 
 
-def weighted(
+def _table(
+    store: Store, options: PairOptions, wanted: MatrixOptions, jobs: int | None, memory: int, progress: Any
+) -> MatrixTable:
+    """The table asked for, of one layer or two, weighted or not."""
+    if wanted.context_layer not in (None, resolve_spec(store, options)[0].layer):
+        return crossed_table(store, options, str(wanted.context_layer), wanted.weighting, progress=progress)
+    names = () if wanted.value == "count" else (wanted.value,)
+    question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
+    source, maker = _weighted(question, wanted.weighting, jobs, memory, progress)
+    cells = cells_by_row(source, maker.ordered, question.spec.kind == "unit")
+    words = Words(store, question.layer, question.words.tokens)
+    return MatrixTable(cells, 2 * source.n_pairs, maker, words, words, question.settings())
+
+
+def _weighted(
     question: Question, weighting: Weighting, jobs: int | None, memory: int, progress: Any
-) -> tuple[Any, TableMaker]:
+) -> tuple[Tally | WeightedTally, TableMaker]:
     """The table asked for, or its weighted form, and what makes contingency tables of it."""
     if weighting == "flat":
         return question.reader.tally, question.reader
@@ -134,18 +150,19 @@ def weighted(
     return tally, TableMaker(tally, question.convention, question.words)
 
 
-def matrix_settings(question: Question, wanted: MatrixOptions) -> dict[str, Any]:
+def matrix_settings(table: MatrixTable, wanted: MatrixOptions) -> dict[str, Any]:
     """Everything that decides the numbers of a matrix."""
-    return question.settings(
-        measure=wanted.value,
-        shift=wanted.shift,
-        smoothing=wanted.smoothing,
-        weighting=wanted.weighting,
-        rows=wanted.rows.described(),
-        contexts=wanted.contexts.described(),
-        min_count=wanted.min_count,
-        min_value=wanted.min_value,
-    )
+    return {
+        **table.settings,
+        "measure": wanted.value,
+        "shift": wanted.shift,
+        "smoothing": wanted.smoothing,
+        "weighting": wanted.weighting,
+        "rows": wanted.rows.described(),
+        "contexts": wanted.contexts.described(),
+        "min_count": wanted.min_count,
+        "min_value": wanted.min_value,
+    }
 
 
 def _kept(
@@ -171,12 +188,13 @@ def _kept(
 class _Gathered:
     """Cells in the order of a matrix, written straight into the arrays of the result."""
 
-    def __init__(self, n_terms: int, n_pairs: int) -> None:
+    def __init__(self, table: MatrixTable) -> None:
         # The room is address space only: a page of memory is taken when it is first written to.
-        self._columns = np.empty(2 * n_pairs, np.int32)
-        self._values = np.empty(2 * n_pairs)
-        self._counts = np.zeros(n_terms, np.int64)
-        self._has_column = np.zeros(n_terms, bool)
+        self._columns = np.empty(table.n_cells, np.int32)
+        self._values = np.empty(table.n_cells)
+        self._of_rows, self._of_columns = table.rows, table.columns
+        self._counts = np.zeros(len(table.rows.tokens), np.int64)
+        self._has_column = np.zeros(len(table.columns.tokens), bool)
         self._filled = 0
 
     def add(self, rows: NDArray[np.uint32], columns: NDArray[np.uint32], values: FloatArray) -> None:
@@ -191,9 +209,7 @@ class _Gathered:
         counts = np.bincount(rows - np.uint32(base))
         self._counts[base : base + len(counts)] += counts
 
-    def finished(
-        self, question: Question, rows: Chosen, columns: Chosen, square: bool, settings: dict[str, Any]
-    ) -> Matrix:
+    def finished(self, rows: Chosen, columns: Chosen, square: bool, settings: dict[str, Any]) -> Matrix:
         from scipy.sparse import csr_array
 
         for room in (self._columns, self._values):
@@ -207,7 +223,7 @@ class _Gathered:
         index = np.int64 if self._filled > np.iinfo(np.int32).max else np.int32
         within = np.sort(row_terms[row_terms >= 0])
         pointers = np.concatenate([[0], np.cumsum(self._counts[within])]).astype(index)
-        numbers = np.zeros(len(self._counts), np.int32)
+        numbers = np.zeros(len(self._has_column), np.int32)
         numbers[column_terms[column_terms >= 0]] = np.flatnonzero(column_terms >= 0)
         for start in range(0, self._filled, _STRETCH):
             stretch = self._columns[start : start + _STRETCH]
@@ -218,8 +234,8 @@ class _Gathered:
             made.sort_indices()
         if rows.terms is not None:
             made = _in_order(made, within, row_terms)
-        names = rows.texts(question, row_terms)
-        return Matrix(made, names, names if square else columns.texts(question, column_terms), settings)
+        names = rows.texts(self._of_rows, row_terms)
+        return Matrix(made, names, names if square else columns.texts(self._of_columns, column_terms), settings)
 
 
 _STRETCH = 1 << 20

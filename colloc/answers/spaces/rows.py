@@ -9,10 +9,12 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
-from typing import Protocol
+from typing import Any, Protocol
 
 import numpy as np
 
+from colloc.answers.spaces.choosing import Words
+from colloc.answers.tables import TableMaker
 from colloc.records import FloatArray, Int64Array, PairBlock, UInt32Array
 from colloc.store.pages import Order
 
@@ -60,6 +62,32 @@ class RowCells:
     def take(self, index: np.ndarray | slice) -> RowCells:
         """The cells chosen by a mask, a slice or numbers."""
         return RowCells(self.rows[index], self.columns[index], self.joint[index])
+
+
+@dataclass(frozen=True, slots=True)
+class MatrixTable:
+    """A table ready to become a matrix.
+
+    Attributes
+    ----------
+    cells : iterator of RowCells
+        Row by row; all of a row before the next one.
+    n_cells : int
+        At most so many.
+    maker : TableMaker
+        Makes contingency tables of the cells.
+    rows, columns : Words
+        What both are words of.
+    settings : dict
+        What decided the counts.
+    """
+
+    cells: Iterator[RowCells]
+    n_cells: int
+    maker: TableMaker
+    rows: Words
+    columns: Words
+    settings: dict[str, Any]
 
 
 def cells_by_row(source: Source, ordered: bool, unit: bool) -> Iterator[RowCells]:

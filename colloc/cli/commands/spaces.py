@@ -62,6 +62,13 @@ MostContextsOption = Annotated[
     int | None, typer.Option("--most-contexts", metavar="N", min=1, help="Contexts are the N most frequent words.")
 ]
 
+ContextLayerOption = Annotated[
+    str | None,
+    typer.Option(
+        "--context-layer", metavar="NAME", help="Layer of the contexts, when it is another than that of the rows."
+    ),
+]
+
 
 def listed(path: Path | None) -> list[str] | None:
     """The words of a file, or None without one."""
@@ -84,6 +91,7 @@ def matrix(
     most_rows: MostRowsOption = None,
     most_contexts: MostContextsOption = None,
     layer: opt.LayerOption = None,
+    context_layer: ContextLayerOption = None,
     window: opt.WindowOption = None,
     left: opt.LeftOption = None,
     right: opt.RightOption = None,
@@ -123,6 +131,7 @@ def matrix(
             most_rows=most_rows,
             most_contexts=most_contexts,
             layer=layer,
+            context_layer=context_layer,
             window=window,
             left=left,
             right=right,
@@ -183,6 +192,7 @@ def vectors(
     most_rows: MostRowsOption = None,
     most_contexts: MostContextsOption = None,
     layer: opt.LayerOption = None,
+    context_layer: ContextLayerOption = None,
     window: opt.WindowOption = None,
     left: opt.LeftOption = None,
     right: opt.RightOption = None,
@@ -227,6 +237,7 @@ def vectors(
             most_rows=most_rows,
             most_contexts=most_contexts,
             layer=layer,
+            context_layer=context_layer,
             window=window,
             left=left,
             right=right,
@@ -265,6 +276,7 @@ def similar(
     min_row_count: LeastRowOption = None,
     min_context_count: LeastContextOption = None,
     layer: opt.LayerOption = None,
+    context_layer: ContextLayerOption = None,
     window: opt.WindowOption = None,
     left: opt.LeftOption = None,
     right: opt.RightOption = None,
@@ -300,6 +312,7 @@ def similar(
             min_row_count=min_row_count,
             min_context_count=min_context_count,
             layer=layer,
+            context_layer=context_layer,
             window=window,
             left=left,
             right=right,
