@@ -31,12 +31,15 @@ class Dependents:
     terms : uint32 array
     heads, dependents : int64 arrays, shape (n_pairs,)
         Offsets in ``terms``.
+    relations : int64 array, shape (n_pairs,)
+        Numbers of the column ``relation``.
     """
 
     first: int
     terms: UInt32Array
     heads: Int64Array
     dependents: Int64Array
+    relations: Int64Array
 
 
 def relation_names(store: Store) -> list[str]:
@@ -102,4 +105,5 @@ def read_dependents(
         governors = dependents + heads[dependents]
         if len(governors) and not 0 <= governors.min() <= governors.max() < len(types):
             raise StoreDamagedError(f"{store.path}: block {head.number} holds heads outside their documents")
-        yield Dependents(first, apply_layer(layer, types), governors, dependents)
+        terms = apply_layer(layer, types)
+        yield Dependents(first, terms, governors, dependents, relations[dependents].astype(np.int64))

@@ -2,18 +2,23 @@
 
 from __future__ import annotations
 
+import math
 import os
+import re
 from collections import Counter, defaultdict
 from pathlib import Path
+from typing import Any
 
 import numpy as np
 import pytest
 
 import colloc
+from colloc.answers.evidence.text import card_lines
 from colloc.build.building import build
 from colloc.build.changing import remove
 from colloc.build.merging import merge
 from colloc.exports.conllu import conllu_text
+from colloc.exports.pages.card import card_page
 from colloc.store import documents, facts, stream, texts, vocabulary
 from colloc.store.checking import check
 from colloc.store.opening import Store, open_for_reading
@@ -116,6 +121,73 @@ def test_all_relations_in_one_table(store_path: Path, text: str) -> None:
         mine, others = (heads, dependents) if row["role"] == "head" else (dependents, heads)
         expected_margins = mine[name, word], others[name, row["second"]], by_relation[name]
         assert (row["first_total"], row["second_total"], row["total"]) == expected_margins
+
+
+def test_relations_between_two_words(store_path: Path, text: str) -> None:
+    """The card of a pair, by a plain count of the treebank: each relation, each direction, NPMI within the relation."""
+    counts = relation_counts(text)
+    totals, heads, dependents = Counter[str](), Counter[tuple[str, str]](), Counter[tuple[str, str]]()
+    for (name, head, other), n in counts.items():
+        totals[name] += n
+        heads[name, head] += n
+        dependents[name, other] += n
+    both_ways = sorted(
+        {(head, other) for _, head, other in counts if head < other},
+        key=lambda pair: -sum(n for (_, *ends), n in counts.items() if sorted(ends) == [*pair]),
+    )[:3]
+    same = Counter({(head, other): n for (_, head, other), n in counts.items() if head == other}).most_common(1)
+    for first, second in [*both_ways, *(pair for pair, _ in same)]:
+        card = colloc.explain(store_path, first, second, layer="lemma", examples=0)
+        found = {(row["relation"], row["head"], row["dependent"]): row for row in card.relations}
+        ends = {(first, second), (second, first)}
+        assert {key: row["joint"] for key, row in found.items()} == {
+            key: n for key, n in counts.items() if key[1:] in ends
+        }
+        assert [row["joint"] for row in card.relations] == sorted(card.relations["joint"], reverse=True)
+        for (name, head, other), row in found.items():
+            n, total = counts[name, head, other], totals[name]
+            of_head, of_other = heads[name, head], dependents[name, other]
+            assert (row["head_total"], row["dependent_total"], row["total"]) == (of_head, of_other, total)
+            assert row["expected"] == pytest.approx(of_head * of_other / total)
+            if n < total:
+                assert row["npmi"] == pytest.approx(math.log(n * total / (of_head * of_other)) / -math.log(n / total))
+        rows = card.to_dict()["relations"]
+        assert [row["relation"] for row in rows] == card.relations["relation"].tolist()
+        shown, page = "\n".join(card_lines(card, 120)), card_page(card).decode()
+        assert "\nRelations\n" in shown
+        assert "<h2>Relations</h2>" in page
+        for row in rows:
+            assert re.search(rf"^  {re.escape(row['relation'])} .* {row['joint']:,} ", shown, re.MULTILINE)
+
+
+def test_relations_of_a_slice_and_of_words_apart(tmp_path: Path) -> None:
+    """Only the documents asked for; words that never depend on each other are said to; plain text has no such part."""
+    word = "{0}\t{1}\t{1}\tNOUN\t_\t_\t{2}\t{3}\t_\t_\n"
+    one = word.format(1, "rope", 2, "nsubj") + word.format(2, "hold", 0, "root") + word.format(3, "ship", 2, "obj")
+    other = word.format(1, "rope", 0, "root") + word.format(2, "hold", 1, "acl") + word.format(3, "ship", 2, "obj")
+    parts = [f"# newdoc id = d{n}\n# meta::genre = {n}\n{lines}\n" for n, lines in enumerate([one, other, one])]
+    (tmp_path / "a.conllu").write_text("".join(parts), encoding="utf-8")
+    store = tmp_path / "a.colloc"
+    colloc.build(store, [str(tmp_path / "a.conllu")], jobs=1)
+
+    def rows(**asked: Any) -> list[tuple[str, str, str, int]]:
+        found = colloc.explain(store, "rope", "hold", examples=0, **asked).relations
+        return [(row["relation"], row["head"], row["dependent"], row["joint"]) for row in found]
+
+    assert rows() == [("nsubj", "hold", "rope", 2), ("acl", "rope", "hold", 1)]
+    assert rows(where="genre=1") == [("acl", "rope", "hold", 1)]
+    assert rows(where="genre=0,2") == [("nsubj", "hold", "rope", 2)]
+    apart = colloc.explain(store, "rope", "ship", examples=0)
+    assert len(apart.relations) == 0
+    assert "  neither word is ever the head of the other" in card_lines(apart, 80)
+    assert "Neither word is ever the head of the other." in card_page(apart).decode()
+    (tmp_path / "b.txt").write_text("Rope and ship. A rope, a ship.", encoding="utf-8")
+    colloc.build(tmp_path / "b.colloc", [str(tmp_path / "b.txt")], jobs=1)
+    plain = colloc.explain(tmp_path / "b.colloc", "rope", "ship", examples=0)
+    assert plain.relations is None
+    assert plain.to_dict()["relations"] is None
+    assert "Relations" not in card_lines(plain, 80)
+    assert "<h2>Relations</h2>" not in card_page(plain).decode()
 
 
 def test_evidence_of_relations(store_path: Path) -> None:

@@ -19,10 +19,12 @@ import colloc
 from colloc.answers.evidence import occurring
 from colloc.answers.evidence.byslice import labels_of
 from colloc.answers.evidence.occurring import occurrences_of
+from colloc.answers.evidence.text import card_lines
 from colloc.answers.questions import PairOptions, ask
 from colloc.answers.sureness.documents import document_evidence
 from colloc.answers.sureness.hypotheses import all_pairs
 from colloc.errors import NotSeenError, UsageError
+from colloc.exports.pages.card import card_page
 from colloc.store import vocabulary
 from colloc.store.opening import Store
 
@@ -224,6 +226,59 @@ def test_slices_add_up(demo: Demo) -> None:
 
 
 @pytest.mark.parametrize(
+    ("options", "counted"),
+    [
+        ({}, "pairs"),
+        ({"left": 3, "right": 1}, "pairs"),
+        ({"margins": "positions"}, "words"),
+        ({"unit": True, "inside": "sentence"}, "sentences"),
+        ({"unit": True, "inside": "document"}, "documents"),
+    ],
+)
+def test_rates_name_what_the_million_is(demo: Demo, options: dict[str, Any], counted: str) -> None:
+    """Joint counts in a million words, and in a million of what the slice's own tally adds up; as contrast has it."""
+    card = colloc.explain(demo.store, "heavy", "luggage", examples=0, **options)
+    assert card.counted == counted
+    rows = {row["value"]: row for row in card.slices["genre"]}
+    compared = colloc.contrast(demo.store, "heavy", "luggage", this="genre=log", that="genre=notice", **options)
+    lines = {row["item"]: row for row in compared}
+    for value, side in (("log", "this"), ("notice", "that")):
+        total = ask(demo.store, PairOptions(where=[f"genre={value}"], **options)).reader.tally.total
+        names = [name for name, data in demo.metadata.items() if data["genre"] == value]
+        words = sum(len(line) for name in names for line in scan(demo.texts[name]))
+        joint = rows[value]["joint"]
+        assert rows[value]["per_million_words"] == pytest.approx(joint * 1e6 / words)
+        assert rows[value]["per_million_counted"] == pytest.approx(joint * 1e6 / total)
+        assert lines[f"per million {counted}; log ratio"][side] == pytest.approx(rows[value]["per_million_counted"])
+        if counted != "words":
+            assert lines["per million words"][side] == pytest.approx(rows[value]["per_million_words"])
+    shown = "\n".join(card_lines(card, 80))
+    assert f"per M {counted}" in shown
+    assert shown.count("per M words") == len(card.slices)
+    page = card_page(card).decode()
+    assert f">per M {counted}<" in page
+    assert f"per M {counted}" in card.notes()["slices"].replace("Per", "per")
+    assert card.spread["tokens"] == sum(len(line) for text in demo.texts.values() for line in scan(text))
+
+
+def test_counts_say_what_they_count(demo: Demo, tmp_path: Path) -> None:
+    card = colloc.explain(demo.store, "heavy", "luggage")
+    cases = card.cases["with_second"]
+    assert card.forms["count"].sum() == cases
+    assert card.notes()["forms"].endswith(f"nearest to it: {cases:,} cases.")
+    shown = " ".join(" ".join(card_lines(card, 80)).split())
+    page = card_page(card).decode()
+    for name in ("table", "ranks", "slices", "forms"):
+        assert " ".join(card.notes()[name].split()) in shown
+        assert card.notes()[name] in page
+    (tmp_path / "a.conllu").write_text(CONLLU, encoding="utf-8")
+    colloc.build(tmp_path / "a.colloc", [str(tmp_path / "a.conllu")], jobs=1)
+    widened = colloc.explain(tmp_path / "a.colloc", "sells", "shells")
+    said = "All forms of the two lemmas count here, 2 cases, where the words as asked for have 1:"
+    assert widened.notes()["forms"].startswith(said)
+
+
+@pytest.mark.parametrize(
     ("values", "labels"),
     [
         (["a", "b", "a", None], ["a", "b", "a", None]),
@@ -278,7 +333,7 @@ def test_one_document_is_named(demo: Demo) -> None:
     )
     own = [word for word, count in words.most_common() if count >= 10 and others[word] <= 3]
     assert own
-    near = colloc.around(demo.store, own[0], any_strength=True, min_count=5, limit=1)
+    near = colloc.around(demo.store, own[0], any_strength=True, min_count=5, min_docs=1, limit=1)
     card = colloc.explain(demo.store, own[0], near["second"][0])
     assert card.spread["largest_document"] == "log-0151"
     assert any("log-0151" in statement for statement in card.statements)

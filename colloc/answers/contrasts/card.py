@@ -14,6 +14,7 @@ from colloc.answers.contrasts.gathering import DocumentCounts, pair_counts_by_do
 from colloc.answers.contrasts.pairs import ask_both, strength, tables_of
 from colloc.answers.contrasts.saying import say
 from colloc.answers.contrasts.sides import resolve_sides
+from colloc.answers.evidence.card import observations
 from colloc.answers.questions import PairOptions, Question
 from colloc.answers.spelling import not_seen
 from colloc.answers.tables import PairTable
@@ -87,7 +88,7 @@ def contrast_pair(
         *_counts(questions, (tables[0], tables[1]), terms),
         _Line("documents with the pair", *(float(counts.documents_on(side)[0]) for side in (True, False))),
         _Line("most in one document", *(float(counts.largest_on(side)[0]) for side in (True, False))),
-        *_rates(arguments, float(np.exp(log_p[0]))),
+        *_rates(arguments, float(np.exp(log_p[0])), questions),
         _over_documents(counts.in_this, over_documents.log_p, over_documents.difference, counts),
         *_strengths(questions, cells),
     ]
@@ -149,12 +150,18 @@ def _counts(
     ]
 
 
-def _rates(arguments: tuple[Any, ...], p: float) -> list[_Line]:
+def _rates(arguments: tuple[Any, ...], p: float, questions: tuple[Question, Question]) -> list[_Line]:
     log_ratio, interval = log_ratio_interval(*arguments)
     rates = (float(arguments[0][0] * 1e6 / arguments[1]), float(arguments[2][0] * 1e6 / arguments[3]))
+    spec = questions[0].spec
+    counted = observations(spec.kind, spec.inside)
+    words = [float(question.words.tokens.sum()) for question in questions]
+    # Where words are what is counted, both rates are one.
+    beside = [_Line("per million words", *(float(j[0]) * 1e6 / n for j, n in zip(arguments[::2], words, strict=True)))]
     return [
+        *(beside if counted != "words" else []),
         _Line(
-            "per million pairs; log ratio",
+            f"per million {counted}; log ratio",
             *rates,
             float(log_ratio[0]),
             float(interval.low[0]),

@@ -39,17 +39,19 @@ def _table(seen: PairOccurrences, labels: list[str | None]) -> Columns:
     masks = [given == value for value in values]
     tables = [seen.table(mask).arguments for mask in masks]
     columns = [np.concatenate([table[place] for table in tables]) for place in range(4)]
-    tokens = np.array([seen.words[mask].sum() for mask in masks], np.float64)
+    tokens = np.array([seen.tokens[mask].sum() for mask in masks], np.float64)
+    counted = np.array([seen.total[mask].sum() for mask in masks], np.float64)
     interval = pmi_interval(*columns)
     with np.errstate(divide="ignore", invalid="ignore"):
-        rate = columns[0] * 1e6 / tokens
+        rates = [columns[0] * 1e6 / of for of in (tokens, counted)]
     return Columns(
         {
             "value": values,
             "documents": np.array([int(mask.sum()) for mask in masks]),
             "joint": columns[0],
             "expected": expected(*columns),
-            "per_million": rate,
+            "per_million_words": rates[0],
+            "per_million_counted": rates[1],
             "pmi": pmi(*columns),
             "pmi_low": interval.low,
             "pmi_high": interval.high,

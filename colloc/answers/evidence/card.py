@@ -48,10 +48,16 @@ class Evidence:
         document, joint, tokens, for every document that holds the pair, most first.
     positions : Columns
         offset (of ``second`` from ``first``), count.
+    relations : Columns or None
+        relation, head, dependent, joint, head_total, dependent_total, total, expected, npmi: the pairs in which one
+        word is the syntactic head of the other, however far apart, within each relation. None where the store holds
+        no text with heads.
     slices : mapping of str to Columns
-        By metadata key: value, documents, joint, expected, per_million, pmi, pmi_low, pmi_high.
+        By metadata key: value, documents, joint, expected, per_million_words (joint in a million words of the text),
+        per_million_counted (in a million of what is ``counted``), pmi, pmi_low, pmi_high.
     forms : Columns
-        first_form, second_form, order, count.
+        first_form, second_form, order, count: of cases, each with the nearest second word. Where the store has
+        lemmas, cases of all forms of the two lemmas.
     examples : Columns
         As ``lines`` gives them; no rows where the store keeps no text.
     statements : tuple of str
@@ -75,6 +81,7 @@ class Evidence:
     spread: Mapping[str, Any]
     by_document: Columns
     positions: Columns
+    relations: Columns | None
     slices: Mapping[str, Columns]
     forms: Columns
     examples: Columns
@@ -105,6 +112,48 @@ class Evidence:
         with_second, cases = self.cases["with_second"], self.cases["cases"]
         return f"‘{shown(self.second)}’ stands {where} ‘{shown(self.first)}’ in {with_second:,} of {cases:,} cases."
 
+    @property
+    def counted(self) -> str:
+        """What ``joint`` counts, in the plural."""
+        return observations(self.settings["kind"], self.settings["inside"])
+
+    def notes(self) -> dict[str, str]:
+        """What the numbers of the sections ``table``, ``ranks``, ``relations``, ``slices`` and ``forms`` count."""
+        first, second, cases = self.first, self.second, self.cases["with_second"]
+        of_forms = int(self.forms["count"].sum())
+        nearest = f"a case of ‘{first}’ counts once, with the ‘{second}’ nearest to it"
+        compared = self.compared
+        joint = {
+            "pairs": "pairs of words within reach, "
+            + ("each once" if first == second else f"two where a ‘{first}’ has two ‘{second}’ near it"),
+            "words": f"places of ‘{first}’ that have ‘{second}’ within reach",
+        }.get(self.counted, f"{self.counted} that hold both words")
+        ranked = f"Rank 1 is the strongest of {compared['compared']:,} pairs of words"
+        if compared["compared"] < compared["pairs"]:
+            ranked += f", evenly taken from the {compared['pairs']:,}"
+        within = " of words within reach" if self.counted == "pairs" else ""
+        per = (
+            "Per M words: the joint count in a million words of the text."
+            if self.counted == "words"
+            else f"Per M words, per M {self.counted}: the joint count in a million words of the text, and in a million "
+            f"{self.counted}{within}."
+        )
+        return {
+            "table": f"Joint counts are {joint}.",
+            "ranks": f"{ranked} that are met {compared['low']:,} to {compared['high']:,} times.",
+            "relations": (
+                "Counted wherever one word is the head of the other, however far apart; "
+                "expected counts and NPMI are within the relation."
+            ),
+            "slices": per,
+            "forms": (
+                f"Here {nearest}: {cases:,} cases."
+                if of_forms == cases
+                else f"All forms of the two lemmas count here, {of_forms:,} cases, where the words as asked for have "
+                f"{cases:,}: {nearest}."
+            ),
+        }
+
     def to_dict(self) -> dict[str, Any]:
         """Plain values for JSON: columns as lists of rows; what is not a number is None, infinities are "inf"."""
         return {
@@ -124,6 +173,11 @@ class Evidence:
 
     def __repr__(self) -> str:
         return f"Evidence({self.first!r}, {self.second!r}): {self.sentence()}"
+
+
+def observations(kind: str, inside: str) -> str:
+    """What a tally of a kind adds up, and its total counts, in the plural: pairs, words or units of text."""
+    return {"unit": f"{inside}s", "positions": "words"}.get(kind, "pairs")
 
 
 def _plain(value: Any) -> Any:

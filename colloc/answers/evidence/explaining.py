@@ -13,6 +13,7 @@ from colloc.answers.evidence import wording
 from colloc.answers.evidence.byslice import slice_tables
 from colloc.answers.evidence.card import Evidence
 from colloc.answers.evidence.occurring import PairOccurrences, occurrences_of
+from colloc.answers.evidence.related import relation_rows
 from colloc.answers.evidence.seen import examples_and_forms
 from colloc.answers.evidence.similar import similar_pairs
 from colloc.answers.evidence.tested import interval_rows, tests_of
@@ -113,6 +114,7 @@ def explain(
         "spread": spread,
         "by_document": by_document,
         "positions": Columns({"offset": seen.offsets, "count": seen.profile}),
+        "relations": relation_rows(question, one, two),
         "slices": slice_tables(seen),
         "forms": forms,
         "examples": lines,
@@ -229,7 +231,7 @@ def _floors(question: Question, table: PairTable) -> Columns:
 
 
 def _spread(question: Question, seen: PairOccurrences) -> tuple[dict[str, Any], Columns]:
-    sizes = seen.words.sum(axis=1)
+    sizes = seen.tokens
     there = np.flatnonzero(seen.joint)
     order = there[np.lexsort((there, -seen.joint[there]))]
     rows = [documents.document(question.store, number) for number in seen.documents[order].tolist()]

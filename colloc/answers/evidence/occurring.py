@@ -35,7 +35,9 @@ class PairOccurrences:
     joint : int64 array, shape (n,)
         As the question's table counts them.
     first, second, words : int64 arrays, shape (n, 3)
-        Row sums, column sums and tokens of the labels.
+        Row sums, column sums and tokens (units of text that hold them, where those are counted) of the labels.
+    tokens : int64 array, shape (n,)
+        Words.
     total : int64 array, shape (n,)
         Sum of the table.
     cases, with_second : int64 arrays, shape (n,)
@@ -58,6 +60,7 @@ class PairOccurrences:
     first: Int64Array
     second: Int64Array
     words: Int64Array
+    tokens: Int64Array
     total: Int64Array
     cases: Int64Array
     with_second: Int64Array
@@ -118,6 +121,7 @@ def occurrences_of(question: Question, first: int, second: int) -> PairOccurrenc
         counter.first,
         counter.second,
         counter.words,
+        counter.tokens,
         counter.total,
         counter.cases,
         counter.with_second,
@@ -145,7 +149,7 @@ class _Counter:
         self.offsets = steps[steps != 0]
         self._near: list[tuple[Int64Array, Int64Array]] = [(np.empty(0, np.int64), np.empty(0, np.int64))]
         self.profile = np.zeros(len(self.offsets), np.int64)
-        self.joint, self.total, self.cases, self.with_second = (np.zeros(n_documents, np.int64) for _ in range(4))
+        self.joint, self.total, self.cases, self.with_second, self.tokens = np.zeros((5, n_documents), np.int64)
         self.first, self.second, self.words = (np.zeros((n_documents, 3), np.int64) for _ in range(3))
 
     def add(self, span: TokenSpan, begin: int, places: DocumentPlaces) -> None:
@@ -156,6 +160,7 @@ class _Counter:
         tokens = _Tokens.of(span, begin, places)
         here = {label: tokens.core_places(label) for label in {FIRST, self.second_label}}
         joint = self._profile(tokens, here[FIRST], begin)
+        tokens.add_words(self.tokens)
         if self._kind == "unit":
             return
         tokens.add_words(self.words[:, OTHER])

@@ -24,21 +24,25 @@ def card_lines(card: Evidence, columns: int) -> list[str]:
     ]
     for statement in card.statements:
         lines += _wrapped(statement, columns, "- ", "  ")
+    notes = card.notes()
     sections: list[tuple[str, list[str]]] = [
-        ("Table (observed, expected if independent)", _cells(card)),
+        ("Table (observed, expected if independent)", _cells(card) + _wrapped(notes["table"], columns - 2)),
         ("Information", _information(card)),
         ("Measures", _measures(card, columns)),
         ("Intervals (95 %)", _intervals(card)),
         ("Chance", _chance(card, columns)),
         ("Spread over documents", _spread(card, columns)),
         ("Positions of the second word", _positions(card)),
-        *((f"By {shown_text(key)}", _slice(table)) for key, table in card.slices.items()),
-        ("Forms", _forms(card)),
+        ("Relations", _relations(card, notes["relations"], columns)),
+        *((f"By {shown_text(key)}", _slice(table, card.counted)) for key, table in card.slices.items()),
+        ("", _wrapped(notes["slices"], columns - 2) if card.slices else []),
+        ("Forms and order", _forms(card, notes["forms"], columns)),
         ("Examples", _examples(card, columns)),
     ]
     for title, body in sections:
         if body:
-            lines += ["", title, *(f"  {line}" for line in body)]
+            lines += ["", title] if title else [""]
+            lines += [f"  {line}" for line in body]
     return lines
 
 
@@ -88,16 +92,11 @@ def _information(card: Evidence) -> list[str]:
 
 
 def _measures(card: Evidence, columns: int) -> list[str]:
-    compared = card.compared
     rows = [(row["measure"], measure_text(row["value"]), row["unit"], rank_text(row)) for row in card.measures]
     lines = _grid(("measure", "value", "unit", "rank"), rows, (False, True, False, True))
-    if not compared["compared"]:
+    if not card.compared["compared"]:
         return lines
-    note = (
-        f"Rank among {compared['compared']:,} of the {compared['pairs']:,} pairs "
-        f"met {compared['low']:,} to {compared['high']:,} times; 1 is the strongest."
-    )
-    return lines + _wrapped(note, columns - 2)
+    return lines + _wrapped(card.notes()["ranks"], columns - 2)
 
 
 def _intervals(card: Evidence) -> list[str]:
@@ -154,30 +153,52 @@ def _positions(card: Evidence) -> list[str]:
     ]
 
 
-def _slice(table: Columns) -> list[str]:
+def _relations(card: Evidence, note: str, columns: int) -> list[str]:
+    if card.relations is None:
+        return []
+    if not len(card.relations):
+        return ["neither word is ever the head of the other"]
+    rows = [
+        (
+            row["relation"],
+            row["head"],
+            row["dependent"],
+            f"{row['joint']:,}",
+            _count(row["expected"]),
+            _number(row["npmi"], 3),
+        )
+        for row in card.relations
+    ]
+    names = ("relation", "head", "dependent", "count", "expected", "npmi")
+    return _grid(names, rows, (False, False, False, True, True, True)) + _wrapped(note, columns - 2)
+
+
+def _slice(table: Columns, counted: str) -> list[str]:
+    # Where words are what is counted, both rates are one.
+    rates = {f"per M {counted}": "per_million_counted", "per M words": "per_million_words"}
     rows = [
         (
             row["value"],
             f"{row['documents']:,}",
             _count(row["joint"]),
             _count(row["expected"]),
-            _number(row["per_million"], 1),
+            *(_number(row[rate], 1) for rate in rates.values()),
             _number(row["pmi"], 2),
             f"{_number(row['pmi_low'], 2)} .. {_number(row['pmi_high'], 2)}" if row["joint"] else "-",
         )
         for row in table
     ]
-    names = ("", "documents", "joint", "expected", "a million", "pmi", "asymptotic")
-    return _grid(names, rows, (False, True, True, True, True, True, False))
+    names = ("", "documents", "joint", "expected", *rates, "pmi", "asymptotic")
+    return _grid(names, rows, (False, *[True] * (len(names) - 2), False))
 
 
-def _forms(card: Evidence) -> list[str]:
+def _forms(card: Evidence, note: str, columns: int) -> list[str]:
     rows = []
     for row in card.forms:
         one, two = row["first_form"], row["second_form"]
         shown = f"{two} .. {one}" if row["order"] == "before" else f"{one} .. {two}"
         rows.append((shown, f"{row['count']:,}"))
-    return _grid(("form and order", "count"), rows, (False, True))
+    return _grid(("form and order", "cases"), rows, (False, True)) + _wrapped(note, columns - 2) if rows else []
 
 
 def _examples(card: Evidence, columns: int) -> list[str]:

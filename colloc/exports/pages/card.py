@@ -18,22 +18,25 @@ MOST_KEYS = 3
 
 def card_page(card: Evidence) -> bytes:
     """The whole page."""
+    notes = card.notes()
     body = [
         f"<h1><bdi>{text(card.first)}</bdi> + <bdi>{text(card.second)}</bdi></h1>",
         f'<p class="lead">{text(card.sentence())}</p>',
         _bearing(card),
         '<div class="grid">',
         _section("Best example lines", _examples(card), wide=True),
-        _section("Observed and expected counts", _cells(card) + _information(card)),
+        _section("Observed and expected counts", _cells(card) + _note(notes["table"]) + _information(card)),
         _section(f"Positions of ‘{card.second}’ around ‘{card.first}’", _positions(card)),
+        _section("Relations", _relations(card, notes["relations"])),
         '<div class="stack">',
         _section("Measures", _measures(card)),
-        _section("Forms and order", _forms(card)),
+        _section("Forms and order", _forms(card) + _note(notes["forms"]) if len(card.forms) else ""),
         "</div>",
         '<div class="stack">',
         _section("Intervals, 95 %", _intervals(card) + _chance(card)),
         _section("Spread over documents", _spread(card)),
-        *(_section(f"By {key}", _slice(rows)) for key, rows in list(card.slices.items())[:MOST_KEYS]),
+        *(_section(f"By {key}", _slice(rows, card.counted)) for key, rows in list(card.slices.items())[:MOST_KEYS]),
+        _note(notes["slices"]) if card.slices else "",
         "</div>",
         "</div>",
         settings_footer(card.settings),
@@ -46,6 +49,10 @@ def _section(title: str, body: Markup, *, wide: bool = False) -> Markup:
         return ""
     style = ' class="wide"' if wide else ""
     return f"<section{style}><h2>{text(title)}</h2>\n{body}</section>"
+
+
+def _note(said: str) -> Markup:
+    return f'<p class="soft">{text(said)}</p>'
 
 
 def _bearing(card: Evidence) -> Markup:
@@ -109,13 +116,7 @@ def _measures(card: Evidence) -> Markup:
         for row in card.measures
     ]
     found = table(("measure", "value", "unit", "rank"), rows, classes=("", "n", "", "n"), label="All measures")
-    compared = card.compared
-    if compared["compared"]:
-        found += (
-            f'<p class="soft">Rank 1 is the strongest of {number(compared["compared"])} of the '
-            f"{number(compared['pairs'])} pairs met {number(compared['low'])} to {number(compared['high'])} times.</p>"
-        )
-    return found
+    return found + _note(card.notes()["ranks"]) if card.compared["compared"] else found
 
 
 def _intervals(card: Evidence) -> Markup:
@@ -207,21 +208,43 @@ def _position_table(card: Evidence) -> Markup:
     return table(("words away", "pairs"), rows, classes=("n", "n"), label="Pairs by position")
 
 
-def _slice(rows: Columns) -> Markup:
+def _relations(card: Evidence, note: str) -> Markup:
+    if card.relations is None:
+        return ""
+    if not len(card.relations):
+        return _note("Neither word is ever the head of the other.")
+    rows = [
+        (
+            text(row["relation"]),
+            f"<bdi>{text(row['head'])}</bdi>",
+            f"<bdi>{text(row['dependent'])}</bdi>",
+            number(row["joint"]),
+            _expected(row["expected"]),
+            number(row["npmi"], 3),
+        )
+        for row in card.relations
+    ]
+    heads = ("relation", "head", "dependent", "count", "expected", "NPMI")
+    return table(heads, rows, classes=("", "", "", "n", "n", "n"), label="Syntactic relations") + _note(note)
+
+
+def _slice(rows: Columns, counted: str) -> Markup:
+    # Where words are what is counted, both rates are one.
+    rates = {f"per M {counted}": "per_million_counted", "per M words": "per_million_words"}
     shown = [
         (
             text(row["value"]),
             number(row["documents"]),
             number(int(row["joint"])),
             _expected(row["expected"]),
-            number(row["per_million"], 1),
+            *(number(row[rate], 1) for rate in rates.values()),
             number(row["pmi"], 2),
             f"{number(row['pmi_low'], 2)} to {number(row['pmi_high'], 2)}" if row["joint"] else "–",
         )
         for row in rows
     ]
-    heads = ("", "documents", "joint", "expected", "a million", "PMI, bits", "asymptotic interval")
-    return table(heads, shown, classes=("", "n", "n", "n", "n", "n", "n"), label="The pair in parts of the text")
+    heads = ("", "documents", "joint", "expected", *rates, "PMI, bits", "asymptotic interval")
+    return table(heads, shown, classes=("", *["n"] * (len(heads) - 1)), label="The pair in parts of the text")
 
 
 def _forms(card: Evidence) -> Markup:
