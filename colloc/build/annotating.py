@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colloc.records import Annotation, Int64Array
-from colloc.store.annotation import HEAD, STEP, WIDTH, Rest, pack_rest
+from colloc.store.annotation import HEAD, STEP, WIDTH, OtherLines, pack_rest
 from colloc.tokens.annotated.reading import Words
 
 Arrays = dict[str, NDArray[Any]]
@@ -43,7 +43,7 @@ def annotations_of(words: Words, annotation: Annotation, keep_text: bool) -> Ann
         columns[STEP] = np.diff(words.starts, prepend=words.starts[:1]).astype(np.int32)
         columns[WIDTH] = narrow(words.widths)
         rests = [
-            pack_rest(Rest(annotation.columns, one.texts, one.before, one.after, one.changed))
+            pack_rest(annotation.columns, one.texts, OtherLines(*one.before), OtherLines(*one.after), one.changed)
             for one in words.remainders
         ]
     return Annotations(columns, {name: values for name, (_, values) in words.values.items()}, rests)

@@ -201,8 +201,8 @@ class StreamWriter:
     def _finish(self, entries: tuple[Entry, ...], rows: list[DocumentRow]) -> None:
         finished = [row for entry, row in zip(entries, rows, strict=True) if entry.last]
         documents.append_documents(self.store, finished)
-        for row in finished:
-            sources.note_records(self.store, row.source, row.record + 1)
+        for source, records in {row.source: row.record + 1 for row in finished}.items():
+            sources.note_records(self.store, source, records)
         for entry, row in zip(entries, rows, strict=True):
             self.note_met(entry.met, row.number)
             if entry.last and entry.repeat:

@@ -9,8 +9,9 @@ by block, so that the document can be written out as it was read.
 from __future__ import annotations
 
 import json
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
+from itertools import accumulate, pairwise
 from typing import Any
 
 import numpy as np
@@ -56,16 +57,36 @@ class Rest:
     changed: list[tuple[int, str, str]] = field(default_factory=list)
 
 
-def pack_rest(rest: Rest) -> bytes:
-    """A rest as it is stored: what worker processes do."""
-    values = {
-        "columns": rest.columns,
-        "texts": rest.texts,
-        "before": rest.before,
-        "after": rest.after,
-        "changed": rest.changed,
+@dataclass(frozen=True, slots=True)
+class OtherLines:
+    """Whole lines that are not words: the word beside which each stands, and all of them in UTF-8, ended by LF."""
+
+    words: list[int]
+    lines: bytes
+
+
+def pack_rest(
+    columns: Sequence[str],
+    texts: Mapping[str, bytes],
+    before: OtherLines,
+    after: OtherLines,
+    changed: Sequence[tuple[int, str, str]],
+) -> bytes:
+    """A rest as it is stored (see :class:`Rest`; texts in UTF-8): what worker processes do.
+
+    A line of JSON that says what follows, then the texts of the columns and the lines before and after words.
+    """
+    parts = [*texts.values(), before.lines, after.lines]
+    head = {
+        "columns": columns,
+        "texts": [*texts],
+        "before": before.words,
+        "after": after.words,
+        "changed": changed,
+        "sizes": [*map(len, parts)],
     }
-    return packing.pack_bytes(json.dumps(values, ensure_ascii=False).encode("utf-8", "surrogatepass"))
+    told = json.dumps(head, ensure_ascii=False).encode("utf-8", "surrogatepass")
+    return packing.pack_bytes(b"\n".join((told, b"".join(parts))))
 
 
 def append_rests(store: Store, rows: Sequence[tuple[int, int, bytes]]) -> None:
@@ -87,20 +108,34 @@ def read_rests(store: Store, document: int) -> Iterator[tuple[int, Rest]]:
     for block, data in store.rows(sql, (document,)):
         what = f"{store.path}: annotation of document {document} in block {block}"
         try:
-            values: dict[str, Any] = json.loads(packing.unpack_bytes(data, what).decode("utf-8", "surrogatepass"))
-            yield block, _as_rest(values)
+            yield block, _as_rest(packing.unpack_bytes(data, what))
         except (ValueError, TypeError, KeyError, AttributeError) as error:
             raise StoreDamagedError(f"{what}: cannot be read ({error})") from error
 
 
-def _as_rest(values: dict[str, Any]) -> Rest:
+def _as_rest(data: bytes) -> Rest:
+    told, divider, body = data.partition(b"\n")
+    values: dict[str, Any] = json.loads(_text(told))
+    columns, changed = tuple(values["columns"]), [(word, column, text) for word, column, text in values["changed"]]
+    if not divider:
+        # The first layout: one JSON object.
+        before, after = ([(word, line) for word, line in values[name]] for name in ("before", "after"))
+        return Rest(columns, dict(values["texts"]), before, after, changed)
+    ends = [*accumulate(values["sizes"])]
+    if ends[-1] != len(body):
+        raise ValueError(f"{len(body)} bytes instead of {ends[-1]}")
+    *texts, before_lines, after_lines = (_text(body[start:end]) for start, end in pairwise([0, *ends]))
     return Rest(
-        tuple(values["columns"]),
-        dict(values["texts"]),
-        [(word, line) for word, line in values["before"]],
-        [(word, line) for word, line in values["after"]],
-        [(word, column, text) for word, column, text in values["changed"]],
+        columns,
+        dict(zip(values["texts"], texts, strict=True)),
+        [*zip(values["before"], before_lines.split("\n")[:-1], strict=True)],
+        [*zip(values["after"], after_lines.split("\n")[:-1], strict=True)],
+        changed,
     )
+
+
+def _text(data: bytes) -> str:
+    return data.decode("utf-8", "surrogatepass")
 
 
 def copy_rests(store: Store, other: Store, block: int, new_block: int, documents: dict[int, int]) -> None:

@@ -56,8 +56,16 @@ def read(opened: Opened, skip: int) -> Iterator[Document]:
     pieces = _line_feeds(opened.utf8())
     first, pieces = _first_line(pieces)
     columns, header = _columns(opened, first)
-    documents = _Documents(_by_document(_whole_sentences(opened, pieces, header)))
+    place = _Place()
+    documents = _Documents(_by_document(_whole_sentences(opened, pieces, place), place, header))
     yield from documents.read(opened, columns, skip)
+
+
+@dataclass(slots=True)
+class _Place:
+    """Number of the line where what has not been handed on begins."""
+
+    line: int = 1
 
 
 class _Documents:
@@ -169,11 +177,10 @@ def _columns(opened: Opened, first: str) -> tuple[tuple[str, ...], int]:
     return names, 1
 
 
-def _whole_sentences(opened: Opened, pieces: Iterator[bytes], header: int) -> Iterator[tuple[bytes, int]]:
-    """The text in stretches that end with a sentence, each with the number of its first line."""
+def _whole_sentences(opened: Opened, pieces: Iterator[bytes], place: _Place) -> Iterator[bytes]:
+    """The text in stretches that end with a sentence."""
     held: list[bytes] = []
     size = 0
-    line = 1
     for piece in pieces:
         split = b"\n\n" in piece or (piece.startswith(b"\n") and bool(held) and held[-1].endswith(b"\n"))
         held.append(piece)
@@ -183,25 +190,19 @@ def _whole_sentences(opened: Opened, pieces: Iterator[bytes], header: int) -> It
             end = text.rindex(b"\n\n") + 2
             held = [text[end:]] if end < len(text) else []
             size = len(text) - end
-            yield from _without_header(text[:end], line, header)
-            line += text.count(b"\n", 0, end)
+            yield text[:end]
         if size > opened.settings.max_record:
-            raise too_long(opened, line)
+            raise too_long(opened, place.line)
     if held:
-        yield from _without_header(b"".join(held).rstrip(b"\n") + b"\n\n", line, header)
+        yield b"".join(held).rstrip(b"\n") + b"\n\n"
 
 
-def _without_header(text: bytes, line: int, header: int) -> Iterator[tuple[bytes, int]]:
-    if header and line == 1:
-        text, line = text.partition(b"\n")[2], 2
-    if text:
-        yield text, line
-
-
-def _by_document(stretches: Iterator[tuple[bytes, int]]) -> Iterator[_Stretch]:
-    """The same stretches, cut where documents begin."""
+def _by_document(stretches: Iterator[bytes], place: _Place, header: int) -> Iterator[_Stretch]:
+    """The same stretches without the header, cut where documents begin."""
     opens = True
-    for text, line in stretches:
+    for text in stretches:
+        if header and place.line == 1:
+            text, place.line = text.partition(b"\n")[2], 2
         begins = _document_starts(text)
         if opens and begins and _end_of_comments(text) >= begins[0]:
             # comments above the first document belong to it
@@ -209,8 +210,8 @@ def _by_document(stretches: Iterator[tuple[bytes, int]]) -> Iterator[_Stretch]:
         edges = [0, *begins, len(text)]
         for begin, stop in pairwise(edges):
             if begin < stop:
-                yield _Stretch(text[begin:stop], line, opens or begin in begins)
-                line += text.count(b"\n", begin, stop)
+                yield _Stretch(text[begin:stop], place.line, opens or begin in begins)
+                place.line += text.count(b"\n", begin, stop)
                 opens = False
 
 

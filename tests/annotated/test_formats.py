@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 from pathlib import Path
 
 import pytest
@@ -11,11 +12,13 @@ from colloc.build import batches, building
 from colloc.build.estimating import estimate
 from colloc.build.segmenting import SegmentedBatch
 from colloc.build.writing import StreamWriter
-from colloc.errors import UsageError
+from colloc.errors import StoreDamagedError, UsageError
 from colloc.exports.conllu import conllu_text
 from colloc.settings import ReadSettings
 from colloc.store import documents, stream, texts
-from colloc.store.opening import open_for_reading
+from colloc.store.annotation import read_rests
+from colloc.store.database import packing
+from colloc.store.opening import open_for_reading, open_for_writing
 from colloc.text.sources import open_sources
 
 from .treebanks import read_sentences, relation_counts, treebank
@@ -198,6 +201,30 @@ def test_documents_of_different_columns_are_not_written_together(tmp_path: Path)
     colloc.build(tmp_path / "s", [str(tmp_path / "a.conllup"), str(tmp_path / "b.conllu")])
     with pytest.raises(UsageError, match="other columns"):
         _written(tmp_path / "s")
+
+
+def test_the_first_layout_of_rests_is_read(tmp_path: Path) -> None:
+    """One JSON object, as docs/file-format.md tells it; and damage to the present one is found."""
+    (tmp_path / "a.conllu").write_text(treebank(1, 1, 3), encoding="utf-8")
+    colloc.build(tmp_path / "s", [str(tmp_path / "a.conllu")])
+    with open_for_writing(tmp_path / "s", "test") as store:
+        ((block, rest),) = read_rests(store, 0)
+        old = {
+            "columns": rest.columns,
+            "texts": rest.texts,
+            "before": rest.before,
+            "after": rest.after,
+            "changed": rest.changed,
+        }
+        for data in (json.dumps(old).encode(), json.dumps({**old, "sizes": [1, 2]}).encode() + b"\nabcd"):
+            with store.transaction():
+                store.execute("UPDATE annotation_rests SET data = ?", (packing.pack_bytes(data),))
+            if data.endswith(b"d"):
+                with pytest.raises(StoreDamagedError, match="annotation of document 0 in block 0: cannot be read"):
+                    [*read_rests(store, 0)]
+            else:
+                assert [*read_rests(store, 0)] == [(block, rest)]
+                assert "".join(conllu_text(store)) == treebank(1, 1, 3)
 
 
 def test_plain_text_is_not_written(tmp_path: Path) -> None:

@@ -12,8 +12,9 @@ from colloc.store.connection import Store
 
 def remember(store: Store, document: int, digests: Iterable[bytes]) -> None:
     """Store hashes with the document whose text they are of, inside the caller's transaction."""
-    rows = ((digest, document) for digest in digests)
-    store.execute_many("INSERT OR IGNORE INTO content_hashes VALUES (?, ?)", rows)
+    rows = [(digest, document) for digest in digests]
+    if rows:
+        store.execute_many("INSERT OR IGNORE INTO content_hashes VALUES (?, ?)", rows)
 
 
 class SeenHashes:

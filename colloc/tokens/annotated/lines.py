@@ -20,8 +20,8 @@ NOTHING = "_"
 LONGEST = 2**16
 """Code points of one field."""
 INTEGER = re.compile(r"[1-9][0-9]{0,8}")
-_RANGE = re.compile(r"([1-9][0-9]{0,8})-([1-9][0-9]{0,8})")
-_EMPTY_NODE = re.compile(r"(0|[1-9][0-9]{0,8})\.([1-9][0-9]{0,8})")
+_RANGE = re.compile(rb"([1-9][0-9]{0,8})-([1-9][0-9]{0,8})")
+_EMPTY_NODE = re.compile(rb"(0|[1-9][0-9]{0,8})\.[1-9][0-9]{0,8}")
 _CHECKED_APART = ("id", "head")
 """Columns whose empty fields are no numbers."""
 
@@ -156,6 +156,10 @@ class _Splitting:
         part_lines = np.searchsorted(stops, np.array([part.start for part in parts], np.int64))
         self._part_lines = part_lines
         self._places = Places(annotation, part_lines, [part.line for part in parts])
+        self._range_ids: list[tuple[int, int, int]] = []
+        """Line, first and last word of ranges."""
+        self._node_ids: list[tuple[int, int]] = []
+        """Line of empty nodes, and the word behind which they stand."""
 
     def lines(self) -> Lines:
         """All that is in the text."""
@@ -163,10 +167,8 @@ class _Splitting:
         words, blank = self._kinds()
         others = ~(words | blank)
         ids = None
-        nodes = np.zeros(0, np.int64)
-        ranges = nodes
         if "id" in self._names:
-            ids, ranges, nodes = self._numbered(words)
+            ids = self._numbered(words)
             others = ~(words | blank)
         places.words = np.flatnonzero(words)
         columns = self._columns(places.words)
@@ -180,7 +182,7 @@ class _Splitting:
             places.fail(f"ID {ids[word]} where {positions[word]} comes next: number words from 1", word=word)
         next_words = np.zeros(len(words) + 1, np.int64)
         np.cumsum(words, out=next_words[1:])
-        after = self._after(nodes, next_words, positions)
+        after = self._after(next_words, positions)
         others[after] = False
         before = np.flatnonzero(others)
         return Lines(
@@ -189,7 +191,7 @@ class _Splitting:
             begins,
             positions,
             next_words[self._part_lines],
-            self._ranges(ranges, next_words, positions),
+            self._ranges(next_words, positions),
             Others(next_words[before], self._all.only(before)),
             Others(next_words[after] - 1, self._all.only(after)),
             places,
@@ -229,8 +231,8 @@ class _Splitting:
             starts = stops + 1
         return columns
 
-    def _numbered(self, words: NDArray[np.bool_]) -> tuple[Int64Array, Int64Array, Int64Array]:
-        """Numbers of the words, and the lines of ranges and empty nodes, which are taken from the ``words``."""
+    def _numbered(self, words: NDArray[np.bool_]) -> Int64Array:
+        """Numbers of the words; ranges and empty nodes are taken from the ``words`` and kept apart."""
         lines = np.flatnonzero(words)
         at = self._names.index("id")
         first = self._ends[lines] - (len(self._names) - 1) + at
@@ -238,39 +240,37 @@ class _Splitting:
         column = Slices(starts, self._dividers[first] - starts)
         numbers, other = whole_numbers(self._buffer, column)
         other |= numbers == 0
-        ranges, nodes = [], []
-        for row in np.flatnonzero(other).tolist():
-            start, line = int(column.starts[row]), int(lines[row])
-            text = self._buffer.text(start, start + int(column.lengths[row]))
-            if _RANGE.fullmatch(text):
-                ranges.append(line)
-            elif _EMPTY_NODE.fullmatch(text):
-                nodes.append(line)
-            elif INTEGER.fullmatch(text):
+        rows = np.flatnonzero(other)
+        starts, stops = column.starts[rows], (column.starts + column.lengths)[rows]
+        data = self._buffer.data
+        for row, line, start, stop in zip(*(one.tolist() for one in (rows, lines[rows], starts, stops)), strict=True):
+            if match := _RANGE.fullmatch(data, start, stop):
+                self._range_ids.append((line, int(match[1]), int(match[2])))
+            elif match := _EMPTY_NODE.fullmatch(data, start, stop):
+                self._node_ids.append((line, int(match[1])))
+            elif INTEGER.fullmatch(text := self._buffer.text(start, stop)):
                 numbers[row], other[row] = int(text), False
             elif not text.startswith("#"):  # else a comment that happens to hold as many tabs as a word
                 self._places.fail(f"ID {text[:40]!r} is neither a number, a range such as 3-4, nor 5.1", line=line)
         words[lines[other]] = False
-        return numbers[~other], np.array(ranges, np.int64), np.array(nodes, np.int64)
+        return numbers[~other]
 
-    def _after(self, nodes: Int64Array, next_words: Int64Array, positions: Int64Array) -> Int64Array:
-        """Of the lines of empty nodes, those that stand behind a word; the others stand at a sentence's beginning."""
+    def _after(self, next_words: Int64Array, positions: Int64Array) -> Int64Array:
+        """Lines of the empty nodes that stand behind a word; the others stand at a sentence's beginning."""
         after = []
-        for line, word in zip(nodes.tolist(), next_words[nodes].tolist(), strict=True):
-            name = self._id(line)
-            follows = int(name.partition(".")[0])
+        for line, follows in self._node_ids:
+            word = int(next_words[line])
             if follows != (int(positions[word - 1]) if follows and word else 0):
+                name = self._line(line).split("\t")[self._names.index("id")]
                 self._places.fail(f"empty node {name} does not stand after word {follows}", line=line)
             if follows:
                 after.append(line)
         return np.array(after, np.int64)
 
-    def _ranges(self, lines: Int64Array, next_words: Int64Array, positions: Int64Array) -> Ranges:
+    def _ranges(self, next_words: Int64Array, positions: Int64Array) -> Ranges:
+        lines, first, last = np.array(self._range_ids, np.int64).reshape(-1, 3).T
         columns = self._columns(lines)
         words = next_words[lines]
-        names = [*map(self._id, lines.tolist())]
-        bounds = [[*map(int, name.split("-"))] for name in names]
-        first, last = np.array(bounds, np.int64).reshape(-1, 2).T
         lengths = last - first + 1
         n = len(positions)
         padded = np.append(positions, -1)
@@ -279,16 +279,11 @@ class _Splitting:
         overlapping = np.zeros(len(lines), bool)
         overlapping[1:] = words[:-1] + lengths[:-1] > words[1:]
         for row in np.flatnonzero(misplaced | overlapping)[:1].tolist():
-            wrong = (
-                "does not stand before its words in the same sentence"
-                if misplaced[row]
-                else "overlaps the one before it"
-            )
-            self._places.fail(f"range {names[row]} {wrong}", line=int(lines[row]))
+            wrong = "overlaps the one before it"
+            if misplaced[row]:
+                wrong = "does not stand before its words in the same sentence"
+            self._places.fail(f"range {first[row]}-{last[row]} {wrong}", line=int(lines[row]))
         return Ranges(words, lengths, columns)
-
-    def _id(self, line: int) -> str:
-        return self._line(line).split("\t")[self._names.index("id")]
 
 
 def _check_fields(buffer: Buffer, columns: dict[str, Slices], places: Places) -> None:

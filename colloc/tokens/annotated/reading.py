@@ -27,17 +27,17 @@ class Remainder:
 
     Attributes
     ----------
-    texts : dict of str
+    texts : dict of bytes
         Fields of the other columns, joined by line feeds, a field a word; columns without any are left out.
-    before, after : list of (int, str)
-        Lines that are not words, with the word before or after which they stand.
+    before, after : (list of int, bytes)
+        Lines that are not words: the word before or after which each stands, and all of them, ended by LF.
     changed : list of (int, str, str)
         Word, column, and the field as it was read, where the arrays do not give it back.
     """
 
-    texts: dict[str, str]
-    before: list[tuple[int, str]]
-    after: list[tuple[int, str]]
+    texts: dict[str, bytes]
+    before: tuple[list[int], bytes]
+    after: tuple[list[int], bytes]
     changed: list[Changed]
 
 
@@ -167,7 +167,7 @@ def _remainders(
     ]
 
 
-def _part_texts(lines: Lines, name: str, edges: Int64Array, joined: UInt8Array, begins: Int64Array) -> list[str]:
+def _part_texts(lines: Lines, name: str, edges: Int64Array, joined: UInt8Array, begins: Int64Array) -> list[bytes]:
     """The fields of a column by part; empty for parts that have nothing in it."""
     nothing = lines.columns[name].are(lines.buffer, NOTHING.encode())
     told = np.append(0, np.cumsum(~nothing))[edges]
@@ -175,22 +175,19 @@ def _part_texts(lines: Lines, name: str, edges: Int64Array, joined: UInt8Array, 
     data = joined.tobytes()
     return [
         # The last field's line feed is left out.
-        data[begin : stop - 1].decode("utf-8", "surrogatepass") if anything else ""
+        data[begin : stop - 1] if anything else b""
         for (begin, stop), anything in zip(pairwise(bounds), np.diff(told).tolist(), strict=True)
     ]
 
 
-def _dealt(lines: Lines, others: Others) -> list[list[tuple[int, str]]]:
+def _dealt(lines: Lines, others: Others) -> list[tuple[list[int], bytes]]:
     """Lines that are no words, dealt out to parts; words are counted from the part's first."""
     parts = lines.part_words
     # What stands behind a part's last word stands before the next one's first, where there is a next part.
     edges = np.append(np.searchsorted(others.words, parts), len(others.words))
     words = (others.words - np.repeat(parts, np.diff(edges))).tolist()
-    stops = (others.lines.starts + others.lines.lengths).tolist()
-    data = lines.buffer.data
-    texts = [
-        data[start:stop].decode("utf-8", "surrogatepass")
-        for start, stop in zip(others.lines.starts.tolist(), stops, strict=True)
-    ]
-    pairs = [*zip(words, texts, strict=True)]
-    return [pairs[begin:stop] for begin, stop in pairwise(edges.tolist())]
+    joined, begins = column_text(lines.buffer, others.lines)
+    bounds = np.append(begins, len(joined))[edges].tolist()
+    data = joined.tobytes()
+    places = zip(pairwise(edges.tolist()), pairwise(bounds), strict=True)
+    return [(words[first:last], data[begin:stop]) for (first, last), (begin, stop) in places]

@@ -144,7 +144,11 @@ class SliceTable:
     def _hashes(self, buffer: Buffer, slices: Slices, tails: UInt64Array) -> UInt64Array:
         mixed = self._mixed(tails + slices.lengths.astype(np.uint64) * self._multiplier)
         for rows, offset in _inner_words(slices.lengths):
-            mixed[rows] = self._mixed(mixed[rows] ^ buffer.words[slices.starts[rows] + offset])
+            places = slices.starts[rows]
+            places += offset
+            words = buffer.words[places]
+            words ^= mixed[rows]
+            mixed[rows] = self._mixed(words)
         return mixed
 
     def _mixed(self, words: UInt64Array) -> UInt64Array:
@@ -160,10 +164,11 @@ class SliceTable:
         kept = self._kept.values
         words = np.ndarray((len(kept) - WORD + 1,), "<u8", kept, strides=(1,))
         starts = self._starts.values[numbers]
-        for rows, offset in _inner_words(np.where(unequal, 0, slices.lengths)):
-            differ = words[starts[rows] + offset] != buffer.words[slices.starts[rows] + offset]
-            if differ.any():
-                unequal_rows.append(rows[differ])
+        for rows, offset in _inner_words(np.where(unequal, 0, slices.lengths) if unequal.any() else slices.lengths):
+            one, other = starts[rows], slices.starts[rows]
+            one += offset
+            other += offset
+            unequal_rows.append(rows[words[one] != buffer.words[other]])
         return np.unique(np.concatenate(unequal_rows))
 
 

@@ -65,8 +65,9 @@ class FieldNumberer:
         changed: list[Changed] = []
         for names in _bundled(lines.columns):
             bundle = self._bundles.setdefault(names, _Bundle(names))
-            numbers, fresh = bundle.table.number(*_slices(lines, names))
-            self._learn(bundle, lines, numbers, fresh)
+            buffer, slices = _slices(lines, names)
+            numbers, fresh = bundle.table.number(buffer, slices)
+            self._learn(bundle, buffer, slices.only(fresh), fresh)
             fields |= {name: array.values[numbers] for name, array in bundle.fields.items()}
             if "form" in names:
                 types = bundle.types.values[numbers]
@@ -77,12 +78,12 @@ class FieldNumberer:
         """The fields of a column, by number."""
         return [*self._fields[name]]
 
-    def _learn(self, bundle: _Bundle, lines: Lines, numbers: UInt32Array, fresh: Int64Array) -> None:
-        """Read what is in a bundle's new slices."""
+    def _learn(self, bundle: _Bundle, buffer: Buffer, slices: Slices, fresh: Int64Array) -> None:
+        """Read what is in a bundle's new slices, which are those of the words ``fresh``."""
         if not len(fresh):
             return
-        read = {name: _texts(lines, name, fresh) for name in bundle.names}
-        given = numbers[fresh].tolist()
+        read = dict(zip(bundle.names, zip(*_divided(buffer, slices), strict=True), strict=True))
+        first = len(bundle.table) - len(fresh)
         for name, array in bundle.fields.items():
             known = self._fields[name]
             array.extend(np.array([known.setdefault(text, len(known)) for text in read[name]], np.uint32))
@@ -92,7 +93,7 @@ class FieldNumberer:
             types = np.zeros(len(fresh), np.uint32)
             # Types have their numbers by the order of the text, slices by their length too.
             for at in np.argsort(fresh).tolist():
-                types[at] = self._type(bundle, triples[at], given[at])
+                types[at] = self._type(bundle, triples[at], first + at)
             bundle.types.extend(types)
 
     def _type(self, bundle: _Bundle, read: Triple, slice_number: int) -> int:
@@ -159,11 +160,10 @@ def _slices(lines: Lines, names: tuple[str, ...]) -> tuple[Buffer, Slices]:
     return Buffer(copied.tobytes()), Slices(begins, np.diff(begins, append=len(copied)) - 1)
 
 
-def _texts(lines: Lines, name: str, words: Int64Array) -> list[str]:
-    """The fields of some words."""
-    column = lines.columns[name].only(words)
-    stops = (column.starts + column.lengths).tolist()
-    return [lines.buffer.text(start, stop) for start, stop in zip(column.starts.tolist(), stops, strict=True)]
+def _divided(buffer: Buffer, slices: Slices) -> list[list[str]]:
+    """The fields of each slice."""
+    starts, stops = slices.starts.tolist(), (slices.starts + slices.lengths).tolist()
+    return [buffer.text(start, stop).split("\t") for start, stop in zip(starts, stops, strict=True)]
 
 
 def by_appearance(numbers: UInt32Array, texts: Sequence[str]) -> tuple[UInt32Array, list[str]]:
