@@ -2,18 +2,26 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from colloc.counts.selection import Selection, slice_selection
-from colloc.counts.spans import Stretch, read_stretches
+from colloc.counts.spans import Stretch, apply_layer, read_stretches
 from colloc.kernels import pairs
 from colloc.kernels.switch import compiled
 from colloc.records import NO_TERM, FloatArray, Int64Array, UInt32Array, WordCounts
 from colloc.store.connection import Store
-from colloc.store.vocabulary import append_word_counts, has_word_counts, layer_map, layer_names, term_count, word_counts
+from colloc.store.vocabulary import (
+    append_word_counts,
+    has_word_counts,
+    layer_map,
+    layer_names,
+    term_count,
+    type_count,
+    word_counts,
+)
 
 _TERM_BITS = np.uint64(32)
 _TERM_MASK = np.uint64(0xFFFFFFFF)
@@ -53,12 +61,7 @@ def count_words(store: Store, layer: str, selection: Selection) -> WordCounts:
     n_terms = term_count(store, layer)
     tokens, documents = np.zeros(n_terms, np.int64), np.zeros(n_terms, np.int64)
     if compiled():
-        seen, document = np.full(n_terms, -1, np.int64), 0
-        for stretch in read_stretches(store, layer_map(store, layer), selection, "document"):
-            starts = stretch.units - stretch.first
-            pairs.count_words(np.ascontiguousarray(stretch.terms), starts, document, tokens, documents, seen)
-            document += len(starts)
-        return WordCounts(tokens, documents)
+        return _count_in_a_loop(store, [layer], selection)[0]
     for batch in document_words(store, layer, selection):
         # a term comes once for each document of a batch
         np.add.at(tokens, batch.terms, batch.counts)
@@ -68,12 +71,32 @@ def count_words(store: Store, layer: str, selection: Selection) -> WordCounts:
 
 def change_word_counts(store: Store, selection: Selection, sign: int) -> None:
     """Add the words of a selection to the frequencies of every layer of the store, or take them away (sign -1)."""
-    for layer in layer_names(store):
-        change = count_words(store, layer, selection)
+    layers = layer_names(store)
+    if compiled():
+        changes = _count_in_a_loop(store, layers, selection)
+    else:
+        changes = [count_words(store, layer, selection) for layer in layers]
+    for layer, change in zip(layers, changes, strict=True):
         there = np.flatnonzero(change.tokens)
         append_word_counts(
             store, layer, there.astype(np.uint32), sign * change.tokens[there], sign * change.documents[there]
         )
+
+
+def _count_in_a_loop(store: Store, layers: Sequence[str], selection: Selection) -> list[WordCounts]:
+    """`count_words` for several layers in one pass, by a compiled loop."""
+    maps = [layer_map(store, layer) for layer in layers]
+    sizes = [term_count(store, layer) for layer in layers]
+    counts = [WordCounts(np.zeros(size, np.int64), np.zeros(size, np.int64)) for size in sizes]
+    seen = [np.full(size, -1, np.int64) for size in sizes]
+    document = 0
+    types = np.arange(type_count(store), dtype=np.uint32)
+    for stretch in read_stretches(store, types, selection, "document"):
+        starts = stretch.units - stretch.first
+        for terms, found, last in zip(maps, counts, seen, strict=True):
+            pairs.count_words(apply_layer(terms, stretch.terms), starts, document, found.tokens, found.documents, last)
+        document += len(starts)
+    return counts
 
 
 def slice_dispersion(store: Store, layer: str, where: str = "") -> tuple[FloatArray, FloatArray]:
