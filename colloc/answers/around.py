@@ -2,25 +2,28 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from functools import partial
 from typing import Any, Literal, get_args
 
 import numpy as np
 
 from colloc.answers.avoidance import avoided_by, check_avoidance, shown_avoidance
 from colloc.answers.columns import Columns
-from colloc.answers.pairs import as_columns, filtered, score, text_ranks
+from colloc.answers.pairs import FIRST_REACH, as_columns, filtered, score, text_ranks
 from colloc.answers.questions import PairOptions, Question, ask, measure_names, resolve_spec
 from colloc.answers.ranking import TopRows
 from colloc.answers.spelling import NAMED, named_unknown, not_seen, spelled_like
 from colloc.answers.stopping import StopWords
+from colloc.answers.sureness.documents import DocumentEvidence
 from colloc.answers.sureness.floors import Floors, Shuffle
 from colloc.answers.sureness.hypotheses import Hypotheses, pairs_of_words
 from colloc.answers.sureness.judging import Judge
-from colloc.answers.sureness.wishes import Wishes, divided
+from colloc.answers.sureness.wishes import USUAL_DOCUMENTS, Wishes, divided, settled
 from colloc.answers.tables import PairTable, Side, joined
-from colloc.answers.wordclasses import in_classes, word_classes
+from colloc.answers.wordclasses import Classes, in_classes, word_classes
 from colloc.errors import NotSeenError, UsageError
+from colloc.records import Int64Array
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT, DEFAULT_MIN_EXPECTED
 from colloc.store import vocabulary
 from colloc.store.connection import Store
@@ -90,13 +93,18 @@ def around(
     show, wishes = divided(show, wishes)
     ranking, names = measure_names(measure or ("g2" if avoid else None), show, margins)
     question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
+    least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
+    by_default = wishes.min_docs is None
     sides = _sides(question, side, avoid)
     if avoid:
         check_avoidance(question, wishes, min_expected, any_strength)
     known, unknown = headwords(store, question.layer, words)
     terms = list(dict.fromkeys(known))
+    # The company of words that so many documents do not hold would be empty.
+    spread = bool((question.words.documents[terms] >= USUAL_DOCUMENTS).any())
+    usual = bool(limit) and not avoid and least >= DEFAULT_MIN_COUNT and spread
+    wishes = settled(wishes, store, question.spec.where, usual)
     classes = word_classes(store, question.layer, upos)
-    least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
     stopped = StopWords(question, stop) if stop else None
     parts: list[Columns] = []
     floors: dict[Shuffle, Floors] = {}
@@ -126,11 +134,13 @@ def around(
             progress=progress,
         )
         rows = rows.take(judge.passing(rows))
+        rank = partial(_ranked, question, terms=terms, ranking=ranking, avoid=avoid)
+        looked_up: DocumentEvidence | None = None
         if wishes.late:
-            evidence = judge.evidence(rows)
-            rows = rows.take(judge.late_passing(evidence)) if evidence is not None else rows
+            rows, looked_up = _passing_late(judge, rows, classes, rank, limit)
         for upos_name, kept in in_classes(rows, classes):
-            table, first, second = _ranked(question, kept, terms, ranking, avoid, limit)
+            table, first, second = rank(kept, limit=limit)
+            evidence = judge.evidence(table) if looked_up is None else looked_up.take(_places(table, rows))
             columns = as_columns(first, second, table, names, {})
             if question.spec.kind == "relation":
                 columns = Columns({"role": [ROLES[one_side]] * len(table), **columns.data})
@@ -140,7 +150,7 @@ def around(
                 columns = Columns({"upos": [upos_name] * len(table), **columns.data})
             if avoid and family is not None:
                 columns = columns.adding(shown_avoidance(table, family))
-            parts.append(columns.adding(judge.shown(table, judge.evidence(table))))
+            parts.append(columns.adding(judge.shown(table, evidence)))
     settings = question.settings(
         words=list(words),
         side=side,
@@ -150,6 +160,7 @@ def around(
         min_word_count=min_word_count,
         any_strength=any_strength,
         **judge.settings(),
+        **({"min_docs_by_default": True} if by_default and wishes.least_documents > 1 else {}),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         **({"stop": list(stop)} if stop else {}),
         **({"unknown": unknown, "near": spelled_like(store, question.layer, unknown)} if unknown else {}),
@@ -192,8 +203,42 @@ def headwords(store: Store, layer: str, words: Sequence[str]) -> tuple[list[int]
     return known, unknown
 
 
+def _passing_late(
+    judge: Judge, rows: PairTable, classes: Classes, rank: Callable[..., Any], limit: int
+) -> tuple[PairTable, DocumentEvidence | None]:
+    """Rows that pass what only the text can tell, with what it says of them: the strongest, until lists are full."""
+    reach = FIRST_REACH * limit
+    while True:
+        strongest = joined([rank(kept, limit=reach)[0] for _, kept in in_classes(rows, classes)])
+        evidence = judge.evidence(strongest)
+        if evidence is None:
+            return rows, None
+        passing = np.flatnonzero(judge.late_passing(evidence))
+        found = strongest.take(passing)
+        if not reach or _full(rows, found, classes, limit, reach):
+            return found, evidence.take(passing)
+        reach *= 8
+
+
+def _full(rows: PairTable, found: PairTable, classes: Classes, limit: int, reach: int) -> bool:
+    """Whether every word has its ``limit`` rows of those found, or had no more rows than were looked up."""
+    return all(
+        np.count_nonzero(good.first == term) >= limit or np.count_nonzero(kept.first == term) <= reach
+        for (_, kept), (_, good) in zip(in_classes(rows, classes), in_classes(found, classes), strict=True)
+        for term in np.unique(kept.first).tolist()
+    )
+
+
+def _places(table: PairTable, among: PairTable) -> Int64Array:
+    """Where the rows of one table stand in another that has them all."""
+    wanted, there = (rows.first.astype(np.uint64) << np.uint64(32) | rows.second for rows in (table, among))
+    order = np.argsort(there)
+    places: Int64Array = order[np.searchsorted(there[order], wanted)]
+    return places
+
+
 def _ranked(
-    question: Question, rows: PairTable, terms: list[int], ranking: str, avoid: bool, limit: int
+    question: Question, rows: PairTable, *, terms: list[int], ranking: str, avoid: bool, limit: int
 ) -> tuple[PairTable, list[str], list[str]]:
     """The best rows of each word, in the order of the words."""
     tables: list[PairTable] = []

@@ -14,7 +14,7 @@ from colloc.answers.questions import PairOptions, Question, ask, measure_names, 
 from colloc.answers.ranking import TopRows
 from colloc.answers.stopping import StopWords
 from colloc.answers.sureness.judging import Judge
-from colloc.answers.sureness.wishes import Wishes, divided
+from colloc.answers.sureness.wishes import Wishes, divided, settled
 from colloc.answers.tables import PairTable
 from colloc.answers.wordclasses import TwoWords
 from colloc.errors import UsageError
@@ -25,8 +25,8 @@ from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT, DEFAULT_MIN_EXPEC
 from colloc.store import vocabulary
 from colloc.store.connection import Store
 
-_FIRST_REACH = 20_000
-"""Rows that are looked up in the text at first where documents decide which rows are shown."""
+FIRST_REACH = 4
+"""How many times the rows wanted are looked up in the text at first, where documents decide which rows are shown."""
 
 
 def pairs(
@@ -43,6 +43,7 @@ def pairs(
     min_expected: float = DEFAULT_MIN_EXPECTED,
     upos: str | None = None,
     stop: Sequence[str] = (),
+    no_self: bool = False,
     limit: int = 50,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -60,7 +61,7 @@ def pairs(
         Least joint count and frequency of each word. They act on what is shown, never on the margins.
         ``min_count`` is 5 when not given, and 0 for avoidance.
     wishes : Wishes
-        Columns of sureness, and what rows must reach in them.
+        Columns of sureness, and what rows must reach in them; ``min_docs`` is `settled` when not given.
     any_strength : bool
         Also pairs that meet as often as expected or less; otherwise only those that meet more often.
     avoid : bool
@@ -73,6 +74,8 @@ def pairs(
         classes. It acts on what is shown, never on the margins.
     stop : sequence of str
         Pairs with these words are not shown: `colloc.answers.stopping.StopWords`.
+    no_self : bool
+        Pairs of a word with itself are not shown.
     limit : int
         Rows; 0 for all.
 
@@ -91,6 +94,9 @@ def pairs(
     ranking, names = measure_names(measure or ("g2" if avoid else None), show, margins)
     question = ask(store, options, names, jobs=jobs, memory=memory, progress=progress)
     least = (0 if avoid else DEFAULT_MIN_COUNT) if min_count is None else min_count
+    by_default = wishes.min_docs is None
+    usual = bool(limit) and not avoid and least >= DEFAULT_MIN_COUNT
+    wishes = settled(wishes, store, question.spec.where, usual)
     pattern = TwoWords(store, question.layer, upos) if upos is not None else None
     stopped = StopWords(question, stop) if stop else None
     if avoid:
@@ -100,13 +106,14 @@ def pairs(
     else:
         family, tables = None, []
     judge = Judge(question, wishes, ranking, min_word_count, family=family, jobs=jobs, memory=memory, progress=progress)
-    reach = max(_FIRST_REACH, limit) if wishes.late and limit else limit
+    reach = FIRST_REACH * limit if wishes.late else limit
     while True:
         top = TopRows(reach, lambda: text_ranks(question))
         for table in tables or question.reader.blocks():
             chosen = table if avoid else table.take(filtered(question, table, least, min_word_count, any_strength))
             chosen = chosen if pattern is None else chosen.take(pattern.mask(chosen))
             chosen = chosen if stopped is None else chosen.take(stopped.shown(chosen))
+            chosen = chosen.take(chosen.first != chosen.second) if no_self else chosen
             chosen = chosen.take(judge.passing(chosen)) if len(chosen) else chosen
             if len(chosen):
                 top.add(chosen, score(ranking, chosen, avoid=avoid))
@@ -127,9 +134,11 @@ def pairs(
         min_word_count=min_word_count,
         any_strength=any_strength,
         **judge.settings(),
+        **({"min_docs_by_default": True} if by_default and wishes.least_documents > 1 else {}),
         **({"avoid": True, "min_expected": min_expected} if avoid else {}),
         **({"upos": upos} if upos is not None else {}),
         **({"stop": list(stop)} if stop else {}),
+        **({"no_self": True} if no_self else {}),
         limit=limit,
     )
     columns = as_columns(first, second, table, names, settings)

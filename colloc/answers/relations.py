@@ -11,6 +11,7 @@ import numpy as np
 from colloc.answers.around import Sides, around, headwords
 from colloc.answers.columns import Columns
 from colloc.answers.questions import PairOptions, measure_names, resolve_spec
+from colloc.answers.sureness.wishes import Wishes
 from colloc.counts.relations import chosen_relations, relation_names
 from colloc.errors import UsageError
 from colloc.measures.catalogue import MEASURES
@@ -31,6 +32,7 @@ def around_relations(
     upos: Sequence[str] = (),
     measure: str | None = None,
     avoid: bool = False,
+    wishes: Wishes | None = None,
     limit: int = 50,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -67,6 +69,9 @@ def around_relations(
     spec, margins = resolve_spec(store, replace(options, relation=""))
     terms, _ = headwords(store, spec.layer, words)
     ranking, _ = measure_names(measure, None, margins)
+    wishes = wishes or Wishes()
+    if wishes.min_docs is None:
+        wishes = replace(wishes, min_docs=1)  # else the text would be read once for each relation
     parts = []
     for relation in relation_names(store):
         asked = replace(options, relation=relation)
@@ -76,6 +81,7 @@ def around_relations(
             options=asked,
             side=side,
             measure=ranking,
+            wishes=wishes,
             limit=limit,
             jobs=jobs,
             memory=memory,

@@ -8,7 +8,7 @@ a list of one's own or the most frequent words of the store may serve better.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from pathlib import Path
 
 import numpy as np
@@ -21,6 +21,7 @@ from colloc.store import vocabulary
 from colloc.store.lexicon.forms import store_forms
 
 _TOP = "top:"
+_NUMBERS = "numbers"
 _WRITTEN = ("form", "fold", "lemma", "lemma_fold")
 """Layers, or parts of them, that hold words."""
 
@@ -31,8 +32,8 @@ class StopWords:
     Parameters
     ----------
     stop : sequence of str
-        Each a language (``en``), a file of words (one a line), or ``top:N`` for the N most frequent words of the
-        documents asked about. Words of lists stand for all that fold alike.
+        Each a language (``en``), a file of words (one a line), ``top:N`` for the N most frequent words of the
+        documents asked about, or ``numbers`` for all without a letter. Words of lists stand for all that fold alike.
 
     Raises
     ------
@@ -50,10 +51,14 @@ class StopWords:
         for one in stop:
             if one.startswith(_TOP):
                 self._stop_most_frequent(question, one)
+            elif one == _NUMBERS:
+                self._stop_words(question, lambda word: not any(map(str.isalpha, word)))
             else:
                 listed.update(_listed(one))
         if listed:
-            self._stop_listed(question, listed)
+            fold = store_forms(question.store).fold
+            unwanted = {*map(fold, listed)}
+            self._stop_words(question, lambda word: fold(word) in unwanted)
 
     def _stop_most_frequent(self, question: Question, given: str) -> None:
         number = given.removeprefix(_TOP)
@@ -71,17 +76,15 @@ class StopWords:
         order = sorted(range(len(tied)), key=texts.__getitem__)
         self._stopped[tied[order[: wanted - int(np.count_nonzero(tokens > last))]]] = True
 
-    def _stop_listed(self, question: Question, listed: Iterable[str]) -> None:
+    def _stop_words(self, question: Question, unwanted: Callable[[str], bool]) -> None:
         names = question.layer.split("/")
         place = next((place for place, name in enumerate(names) if name in _WRITTEN), None)
         if place is None:
             raise UsageError(f"the layer {question.layer!r} holds no words to stop; leave stop out")
-        fold = store_forms(question.store).fold
-        unwanted = {*map(fold, listed)}
         for term, text in enumerate(vocabulary.term_texts(question.store, question.layer)):
             # A word may hold a slash itself: the last parts belong to the last names.
             word = text.rsplit("/", len(names) - 1)[place] if len(names) > 1 else text
-            if (word if names[place].endswith("fold") else fold(word)) in unwanted:
+            if unwanted(word):
                 self._stopped[term] = True
 
     def shown(self, table: PairTable, *, first: bool = True) -> NDArray[np.bool_]:
@@ -102,7 +105,7 @@ def _listed(given: str) -> Iterable[str]:
             raise NoInputError(f"{given}: cannot be read: {error.strerror}") from error
         return [line.strip() for line in lines if line.strip()]
     if len(given) > 3:
-        raise NoInputError(f"{given}: no such file; give a language such as en, a file of words, or top:N")
+        raise NoInputError(f"{given}: no such file; give a language such as en, a file of words, top:N, or numbers")
     try:
         import stopwordsiso
     except ImportError as error:

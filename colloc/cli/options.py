@@ -297,6 +297,16 @@ MinWordCountOption = Annotated[
 MinDocsOption = Annotated[
     int, _option("--min-docs", metavar="N", min=0, help="Least number of documents that hold the row.")
 ]
+MinDocsOfPairOption = Annotated[
+    int | None,
+    _option(
+        "--min-docs",
+        metavar="N",
+        min=0,
+        help="Least number of documents that hold the row. When not given: 3 where 20 documents or more are asked "
+        "about, else 1; 1 too with --min-count below 5, --limit 0, --avoid or --relation all.",
+    ),
+]
 MinJointOption = Annotated[
     int | None,
     _option("--min-count", metavar="N", min=0, help="Least joint count shown: 5 when not given, 0 with --avoid."),
@@ -328,10 +338,12 @@ StopOption = Annotated[
     list[str] | None,
     typer.Option(
         "--stop",
-        metavar="LANG|FILE|top:N",
-        help="Leave these words out of the list: of a language, of a file (one a line), or the N most frequent.",
+        metavar="LANG|FILE|top:N|numbers",
+        help="Leave these words out of the list: of a language, of a file (one a line), the N most frequent, or all "
+        "without a letter.",
     ),
 ]
+NoSelfOption = Annotated[bool, _option("--no-self", help="Leave out pairs of a word with itself, such as tut tut.")]
 MinExpectedOption = Annotated[
     float,
     _option(

@@ -21,7 +21,17 @@ if TYPE_CHECKING:
 
 
 LEAST_COUNTS = ("min_count", "min_word_count", "min_docs")
-THRESHOLDS = (*LEAST_COUNTS, "max_q", "above_chance", "interval_above", "min_expected", "upos", "pattern", "stop")
+THRESHOLDS = (
+    *LEAST_COUNTS,
+    "max_q",
+    "above_chance",
+    "interval_above",
+    "min_expected",
+    "upos",
+    "pattern",
+    "stop",
+    "no_self",
+)
 """Settings that can leave rows out of an answer."""
 
 
@@ -156,6 +166,8 @@ def settings_line(command: str, settings: Mapping[str, Any]) -> str:
         shown.pop("kind", None)
     if not shown.pop("spanned", True):
         shown["no_span"] = True
+    if shown.pop("min_docs_by_default", False):
+        shown["min_docs"] = f"{shown['min_docs']} by default (--min-docs 1 shows all)"
     phrases = [_phrase(key.replace("_", " "), value) for key, value in shown.items()]
     return f"# {command}: " + "; ".join(phrase for phrase in phrases if phrase)
 
@@ -189,6 +201,8 @@ def no_rows_line(settings: Mapping[str, Any]) -> str:
     ]
     if settings.get("any_strength") is False and not settings.get("avoid"):
         phrases.append("attraction only, unless --any-strength")
+    if settings.get("min_docs_by_default"):
+        phrases.append("--min-docs 1 shows what fewer hold")
     if "unknown" not in settings:
         phrases += map(meant, settings.get("near", {}).values())
     return "; ".join(["# no rows", *(phrase for phrase in phrases if phrase)])

@@ -172,7 +172,7 @@ class Store:
             if in_our_words(error, self.path) is None:
                 raise
             raise InputOutputError(
-                f"{self.path}: all is done and kept, but in {self.path.name}-wal, since {self.path.name} could not take "
+                f"{self.path}: all is done and kept, but in {self.path.name}-wal, as {self.path.name} could not take "
                 f"it ({error}); do not run the command again: keep both files together and free some space, and the "
                 "next command that writes here joins them"
             ) from error

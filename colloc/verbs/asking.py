@@ -62,7 +62,7 @@ def pairs(
     min_count: int | None = None,
     min_word_count: int = 1,
     sure: bool = False,
-    min_docs: int = 1,
+    min_docs: int | None = None,
     max_q: float | None = None,
     above_chance: Literal["order", "corpus"] | None = None,
     interval_above: float | None = None,
@@ -71,6 +71,7 @@ def pairs(
     min_expected: float = DEFAULT_MIN_EXPECTED,
     upos: str | None = None,
     stop: Sequence[str] | str = (),
+    no_self: bool = False,
     limit: int = DEFAULT_LIMIT,
     jobs: int | None = None,
     memory: int = DEFAULT_MEMORY,
@@ -90,9 +91,13 @@ def pairs(
         Least joint count: 5 when not given, 0 with ``avoid``.
     sure : bool
         All columns of sureness.
-    min_docs, max_q, above_chance, interval_above
-        What rows must reach: documents that hold the pair, the largest q-value, a chance floor, and what the lower
-        end of the interval of PMI must exceed.
+    min_docs : int
+        Least number of documents that hold the pair. When not given: 3 where the documents asked about are 20 or more,
+        else 1; 1 too with ``min_count`` below 5, ``limit=0``, ``avoid``, all relations at once, or words asked for that
+        fewer documents hold.
+    max_q, above_chance, interval_above
+        What rows must reach: the largest q-value, a chance floor, and what the lower end of the interval of PMI must
+        exceed.
     any_strength : bool
         Also pairs that meet as often as expected or less; otherwise only those that meet more often.
     avoid : bool
@@ -103,7 +108,10 @@ def pairs(
         A pattern of word classes that the two words follow, next to each other unless a window is given: ``ADJ NOUN``
         or ``ADJ|NOUN NOUN``. The layer is ``lemma/upos`` where none is given.
     stop : sequence of str
-        Words that are not shown: languages (``en``), files of words, or ``top:N``, the N most frequent.
+        Words that are not shown: languages (``en``), files of words, ``top:N``, the N most frequent, or ``numbers``,
+        all without a letter.
+    no_self : bool
+        Pairs of a word with itself are not shown.
     """
     from colloc.answers.pairs import pairs as ask_pairs
 
@@ -122,6 +130,7 @@ def pairs(
             min_expected=min_expected,
             upos=upos,
             stop=as_list(stop),
+            no_self=no_self,
             limit=limit,
             jobs=jobs,
             memory=memory,
@@ -151,7 +160,7 @@ def around(
     min_count: int | None = None,
     min_word_count: int = 1,
     sure: bool = False,
-    min_docs: int = 1,
+    min_docs: int | None = None,
     max_q: float | None = None,
     above_chance: Literal["order", "corpus"] | None = None,
     interval_above: float | None = None,
@@ -204,7 +213,9 @@ def around(
         )
 
 
-def _wishes(sure: bool, min_docs: int, max_q: float | None, above_chance: Any, interval_above: float | None) -> Wishes:
+def _wishes(
+    sure: bool, min_docs: int | None, max_q: float | None, above_chance: Any, interval_above: float | None
+) -> Wishes:
     from colloc.answers.sureness.wishes import Wishes
 
     return Wishes(

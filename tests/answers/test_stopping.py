@@ -91,3 +91,18 @@ def test_without_the_library(store: Path, monkeypatch: pytest.MonkeyPatch) -> No
     monkeypatch.setitem(sys.modules, "stopwordsiso", None)
     with pytest.raises(MissingExtraError, match=r"pip install 'colloc\[stop\]'"):
         rows(store, stop="en")
+
+
+def test_words_without_a_letter_and_pairs_of_one_word(tmp_path: Path) -> None:
+    path = tmp_path / "numbers.colloc"
+    colloc.build(path, documents=["Tut tut, 12 ships of 1871; tut, 3.5 knots, 12 men, Nr5."] * 3, jobs=1)
+    everything = rows(path)
+    numbers = {"12", "1871", "3.5"}
+    assert numbers < {word for row in everything for word in row}
+    assert rows(path, stop="numbers") == [row for row in everything if not set(row) & numbers]
+    assert ("tut", "tut") in everything
+    assert rows(path, no_self=True) == [row for row in everything if row[0] != row[1]]
+    assert rows(path, no_self=True, stop=["numbers"], layer="form") == [
+        row for row in rows(path, layer="form") if row[0] != row[1] and not set(row) & numbers
+    ]
+    assert colloc.pairs(path, no_self=True).settings["no_self"] is True

@@ -6,6 +6,7 @@ Checked against the full answer filtered here, and against plain counts of the d
 from __future__ import annotations
 
 import json
+from collections import Counter
 from pathlib import Path
 from typing import Any
 
@@ -89,9 +90,53 @@ def test_filters_leave_what_the_columns_say(
 
 
 def test_filters_by_documents_go_on_until_the_rows_are_full(demo: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr("colloc.answers.pairs._FIRST_REACH", 3)
+    monkeypatch.setattr("colloc.answers.pairs.FIRST_REACH", 1)
     few = colloc.pairs(demo, measure="npmi", limit=5, min_docs=40)
     assert words_of(few) == words_of(colloc.pairs(demo, measure="npmi", limit=0, min_docs=40)[:5])
+    assert (few["documents"] >= 40).all()
+    asked: dict[str, Any] = {"words": ["fog", "wind", "sea"], "side": "each", "any_strength": True}
+    every = colloc.around(demo, **asked, limit=0, min_docs=1, show=["documents", "pmi_low"], measure="npmi")
+    for reach in (1, 2, 50):
+        monkeypatch.setattr("colloc.answers.around.FIRST_REACH", reach)
+        for least in (2, 30, 250):
+            wanted = every.take(every["documents"] >= least)
+            firsts = zip(wanted["side"].tolist(), wanted["first"].tolist(), strict=True)
+            ranks: Counter[tuple[str, str]] = Counter()
+            keep = []
+            for row, group in enumerate(firsts):
+                ranks[group] += 1
+                if ranks[group] <= 4:
+                    keep.append(row)
+            found = colloc.around(demo, **asked, limit=4, min_docs=least, show=["documents", "pmi_low"], measure="npmi")
+            assert found.to_dicts() == wanted.take(keep).to_dicts()
+
+
+def test_three_documents_by_default_where_there_are_twenty(run: Run, tmp_path: Path) -> None:
+    """The first words of a list of the strongest are not those of one document; what was left out is said."""
+    lines = ["The sea was calm. Thick fog came in. A calm sea again."] * 19
+    loud = "Tick tock tick tock. " * 9
+    for number in (19, 20):
+        store = tmp_path / f"{number}.colloc"
+        texts = [*lines[: number - 1], loud]
+        colloc.build(store, documents=[{"text": text, "half": str(place % 2)} for place, text in enumerate(texts)])
+        found, company = colloc.pairs(store), colloc.around(store, "tock")
+        everything = colloc.pairs(store, min_docs=1)
+        assert ("tick", "tock") in words_of(everything)
+        assert (("tick", "tock") in words_of(found)) is (number < 20)
+        assert "tick" in company["second"].tolist()  # its word is in one document anyway
+        assert "min_docs_by_default" not in company.settings
+        for answer in (found, colloc.around(store, "fog"), colloc.around(store, ["tock", "fog"])):
+            assert answer.settings["min_docs"] == (3 if number == 20 else 1)
+            assert answer.settings.get("min_docs_by_default", False) is (number == 20)
+            assert ("documents" in answer) is (number == 20)
+        # half of the documents, all rows, what keeps apart, and rarer pairs than usual: nothing more is left out
+        for asked in ({"where": "half=1"}, {"limit": 0}, {"avoid": True}, {"min_count": 4}):
+            other = colloc.pairs(store, **asked)
+            assert other.settings["min_docs"] == 1
+            assert "min_docs_by_default" not in other.settings
+    ran = run("pairs", store)
+    assert "; min docs 3 by default (--min-docs 1 shows all); " in ran.err
+    assert "by default" not in run("pairs", store, "--min-docs", 3).err
 
 
 def test_columns_one_by_one(demo: Path, everything: Columns) -> None:

@@ -14,6 +14,7 @@ from colloc.answers.judging.figures import Figures, figures, figures_of_expressi
 from colloc.answers.judging.matters import Matter, make_matter
 from colloc.answers.pairs import pairs
 from colloc.answers.questions import PairOptions, measure_names, resolve_spec
+from colloc.answers.sureness.wishes import Wishes
 from colloc.errors import UsageError
 from colloc.settings import DEFAULT_MEMORY, DEFAULT_MIN_COUNT
 from colloc.store.connection import Store
@@ -116,6 +117,7 @@ def _matters(store: Store, choice: Choice, options: PairOptions, **resources: An
         "options": options,
         "min_count": choice.min_count,
         "limit": choice.limit,
+        "wishes": Wishes(min_docs=1),
         **resources,
     }
     answer: Columns = around(store, choice.words, **asked) if choice.words else pairs(store, **asked)

@@ -80,7 +80,7 @@ class Judge:
         """What decides which rows are shown, and how the columns of sureness were made."""
         wishes = self._wishes
         found: dict[str, Any] = {
-            "min_docs": wishes.min_docs,
+            "min_docs": wishes.least_documents,
             "max_q": wishes.max_q,
             "above_chance": wishes.above_chance,
             "interval_above": wishes.interval_above,
@@ -114,8 +114,14 @@ class Judge:
         return self._floors[shuffle]
 
     def passing(self, table: PairTable) -> NDArray[np.bool_]:
-        """Which rows pass what can be told from counts alone: ``max_q`` and ``above_chance``."""
+        """Which rows pass what can be told from counts alone: ``max_q`` and ``above_chance``.
+
+        Of ``min_docs`` only what follows for each word: no pair is in more documents than either of its words.
+        """
         keep = np.ones(len(table), np.bool_)
+        if self._wishes.least_documents > 1:
+            held = self._question.words.documents >= self._wishes.least_documents
+            keep &= held[table.first] & held[table.second]
         if self._wishes.above_chance is not None:
             keep &= self._above(table, self._wishes.above_chance)
         if self._wishes.max_q is not None:
@@ -131,7 +137,7 @@ class Judge:
 
     def late_passing(self, evidence: DocumentEvidence) -> NDArray[np.bool_]:
         """Which rows pass ``min_docs`` and ``interval_above``."""
-        keep = evidence.documents >= self._wishes.min_docs
+        keep = evidence.documents >= self._wishes.least_documents
         if self._wishes.interval_above is not None and evidence.interval is not None:
             keep &= evidence.interval.low > self._wishes.interval_above
         return keep

@@ -8,7 +8,13 @@ from dataclasses import dataclass, replace
 
 from colloc.answers.sureness.floors import SHUFFLES, Shuffle
 from colloc.errors import UsageError
+from colloc.store import documents, slices
+from colloc.store.connection import Store
 
+USUAL_DOCUMENTS = 3
+"""Documents that must hold a row of a list of the strongest where nobody said how many."""
+ENOUGH_DOCUMENTS = 20
+"""Documents from which on that many are asked for."""
 WORD_COLUMNS = ("first_count", "second_count")
 """Frequencies of the two words in the documents asked about, in tokens: margins count pairs."""
 DOCUMENT_COLUMNS = ("documents", "dp_norm")
@@ -34,8 +40,8 @@ class Wishes:
         Names of `SHOWN_COLUMNS`.
     everything : bool
         All columns of sureness that the margins can bear.
-    min_docs : int
-        Least number of documents that hold the pair.
+    min_docs : int or None
+        Least number of documents that hold the pair; None: as many as `settled` says.
     max_q : float
         Largest q-value.
     above_chance : "order" or "corpus"
@@ -46,7 +52,7 @@ class Wishes:
 
     columns: Sequence[str] = ()
     everything: bool = False
-    min_docs: int = 1
+    min_docs: int | None = None
     max_q: float | None = None
     above_chance: Shuffle | None = None
     interval_above: float | None = None
@@ -65,7 +71,12 @@ class Wishes:
     @property
     def late(self) -> bool:
         """Whether rows must reach something that only a pass over the text can tell."""
-        return self.min_docs > 1 or self.interval_above is not None
+        return self.least_documents > 1 or self.interval_above is not None
+
+    @property
+    def least_documents(self) -> int:
+        """What ``min_docs`` amounts to."""
+        return 1 if self.min_docs is None else self.min_docs
 
     def tests(self, margins: str) -> bool:
         """Whether q-values are needed."""
@@ -84,7 +95,7 @@ class Wishes:
         else:
             wanted = set()
         wanted |= set(self.columns)
-        if self.min_docs > 1:
+        if self.least_documents > 1:
             wanted.add("documents")
         if self.max_q is not None:
             wanted |= set(Q_COLUMNS)
@@ -102,6 +113,25 @@ class Wishes:
                 f"{name} needs the cells of a table, which margins tokens does not have: use margins pairs"
             )
         return tuple(name for name in SHOWN_COLUMNS if name in wanted)
+
+
+def settled(wishes: Wishes, store: Store, where: str, usual: bool) -> Wishes:
+    """The wishes with ``min_docs`` as it is when nobody said it.
+
+    A list of the strongest from `ENOUGH_DOCUMENTS` documents or more shows what `USUAL_DOCUMENTS` of them hold:
+    measures of strength put first what one document repeats. Elsewhere everything is shown.
+
+    Parameters
+    ----------
+    where : str
+        The slice asked about, whose documents count.
+    usual : bool
+        Whether the answer is a list of the strongest: not of all, of what keeps apart, or of rarer pairs than usual.
+    """
+    if wishes.min_docs is not None or not usual:
+        return wishes
+    n_documents = len(slices.select(store, where)) if where else documents.document_count(store)
+    return replace(wishes, min_docs=USUAL_DOCUMENTS if n_documents >= ENOUGH_DOCUMENTS else None)
 
 
 def divided(show: Sequence[str] | None, wishes: Wishes | None) -> tuple[Sequence[str] | None, Wishes]:
