@@ -21,7 +21,7 @@ _COUNT_NAME = re.compile(
     r"(?:joint|count|total|documents|tokens)(?:_(?:this|that|in))?|\w+_(?:total|count)|df|this|that"
 )
 _PROBABILITY_NAME = re.compile(r"q_value|(?:\w+_)?(?<!log10_)[pq]")
-_LEAST_PROBABILITY = "<1e-300"
+LEAST_PROBABILITY = "<1e-300"
 """What stands for a probability that underflowed: none of the tests here ends in an exact zero."""
 
 _FIRST_STRONG_ISOLATE = "\u2068"
@@ -128,7 +128,7 @@ def _probability_text(value: float) -> str:
     ['0.2500', '4.200e-04', '1.200e-09', '<1e-300']
     """
     if value == 0:
-        return _LEAST_PROBABILITY
+        return LEAST_PROBABILITY
     return f"{value:.{DECIMALS - 1}e}" if 0 < value < 10 ** (1 - DECIMALS) else number_text(value)
 
 

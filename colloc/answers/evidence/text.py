@@ -8,7 +8,7 @@ from typing import Any
 
 from colloc.answers.columns import Columns
 from colloc.answers.evidence.card import Evidence
-from colloc.answers.plain import Grid, number_text, shown_text, width
+from colloc.answers.plain import LEAST_PROBABILITY, Grid, number_text, shown_text, width
 
 LEAST_WIDTH = 40
 _BAR = 24
@@ -92,7 +92,10 @@ def _information(card: Evidence) -> list[str]:
 
 
 def _measures(card: Evidence, columns: int) -> list[str]:
-    rows = [(row["measure"], measure_text(row["value"]), row["unit"], rank_text(row)) for row in card.measures]
+    rows = [
+        (row["measure"], measure_text(row["value"], row["measure"]), row["unit"], rank_text(row))
+        for row in card.measures
+    ]
     lines = _grid(("measure", "value", "unit", "rank"), rows, (False, True, False, True))
     if not card.compared["compared"]:
         return lines
@@ -247,8 +250,10 @@ def _number(value: float, decimals: int = 4) -> str:
     return "-" if value != value else number_text(float(value), decimals)
 
 
-def measure_text(value: float) -> str:
+def measure_text(value: float, name: str) -> str:
     """The value of a measure: four decimals, and four digits where those would be zeros."""
+    if value == 0 and name.endswith("_p"):
+        return LEAST_PROBABILITY
     return f"{value:.4g}" if 0 < abs(value) < 0.1 else _number(value)
 
 

@@ -26,8 +26,10 @@ def card_page(card: Evidence) -> bytes:
         '<div class="grid">',
         _section("Best example lines", _examples(card), wide=True),
         _section("Observed and expected counts", _cells(card) + _note(notes["table"]) + _information(card)),
+        '<div class="stack">',
         _section(f"Positions of ‘{card.second}’ around ‘{card.first}’", _positions(card)),
         _section("Relations", _relations(card, notes["relations"])),
+        "</div>",
         '<div class="stack">',
         _section("Measures", _measures(card)),
         _section("Forms and order", _forms(card) + _note(notes["forms"]) if len(card.forms) else ""),
@@ -109,7 +111,7 @@ def _measures(card: Evidence) -> Markup:
     rows = [
         (
             text(row["title"]),
-            text(measure_text(row["value"]).replace("-", "−") if row["value"] == row["value"] else "–"),
+            text(measure_text(row["value"], row["measure"]).replace("-", "−") if row["value"] == row["value"] else "–"),
             text("" if row["unit"] == "none" else row["unit"]),
             number(row["rank"]) if row["rank"] else "–",
         )
