@@ -18,8 +18,8 @@ from colloc.counts.positions import add_positions
 from colloc.counts.relations import read_dependents
 from colloc.counts.runs import Column, RunFile, load_runs, write_column, write_run
 from colloc.counts.selection import Selection, selection_of
+from colloc.counts.sequences.set_tasks import count_orders, count_sets, survey_sets
 from colloc.counts.sequences.sharing import (
-    count_bags,
     count_fillers,
     count_groups,
     count_joins,
@@ -40,7 +40,7 @@ from colloc.store.connection import Store
 from colloc.store.vocabulary import layer_map, term_count
 
 _SAMPLE_BLOCKS = 1
-_COMPILED_CELLS = 2**int(__import__("os").environ.get("CB","18"))
+_COMPILED_CELLS = 2**18
 """A compiled loop adds to a table in the nearer caches in a tenth of the time it takes to reach a farther one, and
 that is less than sorting takes."""
 RUNS, HIGHS = "runs.json", "highs"
@@ -156,7 +156,9 @@ FILE_TASKS: dict[str, Callable[..., Facts]] = {
     "survey_sequences": survey_sequences,
     "count_fillers": count_fillers,
     "count_groups": count_groups,
-    "count_bags": count_bags,
+    "count_sets": count_sets,
+    "survey_sets": survey_sets,
+    "count_orders": count_orders,
     "count_matches": count_matches,
     "spread_sequences": spread_sequences,
 }

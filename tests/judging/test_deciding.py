@@ -29,7 +29,8 @@ def test_a_decision_by_command_keeps_everything(store: Path, capsys: pytest.Capt
     arguments = ["judge", str(store), "Thick", "FOG", "--accept", "--by", " Anna ", "--sense", "dense", "--note", "-x"]
     arguments += ["--label", "weather", "--label", "sea", "--example", place]
     assert main(arguments) == 0
-    assert capsys.readouterr().err == "thick fog: accept, by Anna\n"
+    recorded = "a pair: the two words near each other, in any order"
+    assert capsys.readouterr().err == f"thick fog: accept, by Anna; recorded as {recorded}\n"
     row = colloc.decisions(store).to_dicts()[0]
     assert {name: row[name] for name in ("words", "layer", "kind", "judge", "sense", "note", "labels")} == {
         "words": ["thick", "fog"],
@@ -290,3 +291,25 @@ def test_a_store_that_cannot_be_written_keeps_its_decisions(store: Path, tmp_pat
     copy = Path(shutil.copy(store, tmp_path / "copy"))
     copy.chmod(0o444)
     assert len(colloc.decisions(copy)) == 1
+
+
+@pytest.mark.parametrize(
+    ("words", "more", "told"),
+    [
+        (["thick", "fog"], [], "a pair: the two words near each other, in any order"),
+        (["thick", "fog"], ["--kind", "directed"], "a directed pair: the second word after the first"),
+        (["thick fog"], [], "an expression: the words in a row"),
+        (["by", "and", "large"], [], "an expression: the words in a row"),
+        (["thick fog"], ["--kind", "pair"], "a pair: the two words near each other, in any order"),
+    ],
+)
+def test_what_was_recorded_is_told(
+    store: Path, capsys: pytest.CaptureFixture[str], words: list[str], more: list[str], told: str
+) -> None:
+    assert main(["judge", str(store), *words, "--accept", "--by", "Anna", *more]) == 0
+    assert capsys.readouterr().err == f"{' '.join(words)}: accept, by Anna; recorded as {told}\n"
+    [one] = colloc.decisions(store)
+    assert (
+        one["kind"]
+        == {"a pair": "pair", "a directed pair": "directed", "an expression": "expression"}[told.split(":")[0]]
+    )

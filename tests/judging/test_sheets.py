@@ -141,6 +141,45 @@ def test_a_decision_made_meanwhile_is_a_conflict(store: Path, sheet: Path, tmp_p
     assert [row["verdict"] for row in colloc.decisions(store, by="Anna", history=True)] == ["reject", "accept"]
 
 
+@pytest.mark.parametrize("verdict", ["accept", "Accepted", " ACCEPT ", "A", "accept\u00a0"])
+def test_what_means_the_same_is_no_conflict(store: Path, sheet: Path, tmp_path: Path, verdict: str) -> None:
+    rows = rows_of(sheet)
+    words = rows[1]["words"].split()
+    labels = ["sea", "old  word"]
+    colloc.judge(store, words, "accept", by="Anna", sense="dense  air", note="two\nlines", labels=labels)
+    rows[1] |= {"verdict": verdict, "sense": " dense air\u00a0", "note": "two\r\nlines ", "labels": "old word ;sea"}
+    found = colloc.take_sheet(store, _read(write(tmp_path / "same.csv", rows)), by="Anna")
+    assert (len(found.decisions), found.unchanged) == (0, 1)
+    rows[1] |= {"sense": "", "note": " ", "labels": ""}
+    found = colloc.take_sheet(store, _read(write(tmp_path / "blank.csv", rows)), by="Anna")
+    assert (len(found.decisions), found.unchanged) == (0, 1), "an empty cell contradicts nothing"
+    [kept] = [row for row in colloc.decisions(store, by="Anna") if list(row["words"]) == words]
+    assert (kept["sense"], kept["note"], list(kept["labels"])) == ("dense  air", "two\nlines", labels)
+    for change in ({"verdict": "reject"}, {"sense": "thin air"}, {"labels": "sea"}, {"note": "two lines, no"}):
+        changed = [*rows[:1], rows[1] | change, *rows[2:]]
+        with pytest.raises(DataError, match=r"is accept by Anna since .*--override"):
+            colloc.take_sheet(store, _read(write(tmp_path / "other.csv", changed)), by="Anna")
+
+
+def test_the_same_words_twice_meaning_the_same(store: Path, sheet: Path, tmp_path: Path) -> None:
+    rows = rows_of(sheet)
+    rows[1] |= {"verdict": "Accepted", "sense": "x y"}
+    again = rows[1] | {"verdict": " a", "sense": "x  y ", "kind": rows[1]["kind"].upper()}
+    found = colloc.take_sheet(store, _read(write(tmp_path / "f.csv", [*rows, again])), by="Anna")
+    assert [(one.verdict, one.sense) for one in found.decisions] == [("accept", "x y")]
+
+
+def test_a_changed_blank_is_kept_where_the_row_knows_the_decision(store: Path, tmp_path: Path) -> None:
+    colloc.judge(store, ["thick", "fog"], "accept", by="Anna", sense="dense  air")
+    given = tmp_path / "given.txt"
+    given.write_text("thick fog\n", encoding="utf-8")
+    path = tmp_path / "s.csv"
+    assert main(["sheet", str(store), "--given", str(given), "--by", "Anna", "-o", str(path), "-q"]) == 0
+    rows = rows_of(path)
+    rows[0]["sense"] = "dense air"
+    assert [one.sense for one in colloc.take_sheet(store, _read(write(path, rows))).decisions] == ["dense air"]
+
+
 def test_a_sheet_of_a_judge_has_what_was_decided_and_knows_when_that_changes(store: Path, tmp_path: Path) -> None:
     colloc.judge(store, ["thick", "fog"], "accept", by="Anna", sense="dense", labels=["a; b"])
     path = tmp_path / "s.csv"

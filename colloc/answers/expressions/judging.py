@@ -87,9 +87,14 @@ def holding(table: Gathered, weakest: FloatArray) -> FloatArray:
     Elsewhere is outside the document that holds most of them, so that one document's repeats and names carry no
     weight; where all tokens are in one document, all occurrences count. (Own definition.)
     """
-    counts = table.counts[table.edges[1] :]
-    alone = table.spread.documents.max(initial=0) < 2
-    elsewhere = counts if alone else counts - table.spread.largest
+    spread = table.spread
+    return weighed(weakest, table.counts[table.edges[1] :], spread.documents, spread.largest)
+
+
+def weighed(weakest: FloatArray, counts: Int64Array, documents: Int64Array, largest: Int64Array) -> FloatArray:
+    """The weakest split weighed by occurrences elsewhere; all arrays by sequence."""
+    alone = documents.max(initial=0) < 2
+    elsewhere = counts if alone else counts - largest
     with np.errstate(invalid="ignore"):  # minus infinity times 0: what was looked up and never occurs
         result: FloatArray = weakest * np.log2(1.0 + elsewhere)
     return result
@@ -97,15 +102,21 @@ def holding(table: Gathered, weakest: FloatArray) -> FloatArray:
 
 def only_common(table: Gathered) -> NDArray[np.bool_]:
     """Which sequences are made only of the words that make up the first half of the running text."""
-    counts = table.counts[: table.edges[1]]
-    order = np.argsort(-counts, kind="stable")
-    before = np.cumsum(counts[order]) - counts[order]
     common = np.zeros(table.edges[-1], bool)
-    common[order[before < COMMON_SHARE * table.total]] = True
+    common[: table.edges[1]] = common_terms(table.counts[: table.edges[1]])
     for words in range(2, table.longest + 1):
         rows = table.rows(words)
         common[rows] = common[table.left[rows]] & common[table.right[rows]]
     return common[table.edges[1] :]
+
+
+def common_terms(counts: Int64Array) -> NDArray[np.bool_]:
+    """Which terms make up the first half of the running text; ``counts`` by term."""
+    order = np.argsort(-counts, kind="stable")
+    before = np.cumsum(counts[order]) - counts[order]
+    common = np.zeros(len(counts), bool)
+    common[order[before < COMMON_SHARE * counts.sum()]] = True
+    return common
 
 
 def in_order(
@@ -122,16 +133,21 @@ def in_order(
     """
     first, count = table.edges[1], table.counts
     values = score[rows - first]
-    order = np.lexsort((-count[rows], -values))
-    if limit and len(rows) > limit:
-        last = order[limit - 1]
-        reach = (values > values[last]) | ((values == values[last]) & (count[rows] >= count[rows[last]]))
-        order = order[reach[order]]
-    rows, values = rows[order], values[order]
+    rows, values = reaching(rows, values, count[rows], limit)
     found = texts(store, layer, table, rows)
     ordered = sorted(range(len(rows)), key=lambda place: (-values[place], -count[rows[place]], found[place]))
     ordered = ordered[: limit or None]
     return rows[ordered], [found[place] for place in ordered]
+
+
+def reaching(rows: Int64Array, values: NDArray[Any], counts: Int64Array, limit: int) -> tuple[Int64Array, NDArray[Any]]:
+    """Rows and their scores, highest first, with all that tie with the last one of the list: texts decide then."""
+    order = np.lexsort((-counts, -values))
+    if limit and len(rows) > limit:
+        last = order[limit - 1]
+        reach = (values > values[last]) | ((values == values[last]) & (counts >= counts[last]))
+        order = order[reach[order]]
+    return rows[order], values[order]
 
 
 def texts(store: Store, layer: str, table: Gathered, rows: Int64Array) -> list[str]:

@@ -15,6 +15,7 @@ from colloc.answers.expressions.interaction import interactions
 from colloc.answers.expressions.judging import Judged, in_order, judge, texts
 from colloc.answers.expressions.orders import in_any_order
 from colloc.answers.expressions.scoring import c_values, nesting
+from colloc.answers.expressions.sets import ranked_sets
 from colloc.answers.expressions.settings import Asked, ExpressionOptions, resolve, shown_columns
 from colloc.answers.expressions.sureness import split_intervals
 from colloc.answers.patterns import matches
@@ -63,6 +64,8 @@ def expressions(
         jobs=jobs,
         memory=memory,
     ) as grower:
+        if options.any_order:
+            return ranked_sets(store, asked, grower, limit, tell).select(shown)
         pattern = options.pattern
         # before the long work: the store may not tell word classes
         places = None if pattern is None else grower.keep_matches(matches(store, pattern, asked.where))

@@ -20,28 +20,17 @@ CONTIGUOUS_ONLY = ("c_value", "c_value_length", "any_order")
 """Columns that frames with open slots do not have."""
 PATTERNS_ONLY = ("pattern_count",)
 FRAMES_ONLY = ("fillers", "filler_kinds", "filler_entropy")
+SETS_ONLY = ("adjacent", "order_kinds", "order_entropy", "orders")
+NOT_OF_SETS = (
+    *("completeness", "split_low", "split_high", "cut", "specific_interaction", "best_split_g2", "c_value"),
+    *("c_value_length", "any_order", "pattern_count", *FRAMES_ONLY),
+)
+"""Columns that need an order of the words."""
 COLUMNS = (
-    *("expression", "words", "count", "documents", "dp_norm", "capitals", "strength", "completeness", "weakest_split"),
-    *(
-        "split_low",
-        "split_high",
-        "cut",
-        "specific_correlation",
-        "specific_interaction",
-        "best_split_g2",
-        "c_value",
-        "c_value_length",
-    ),
-    *(
-        "any_order",
-        "pattern_count",
-        "fragment",
-        "fragment_count",
-        "fragments",
-        "filler_kinds",
-        "filler_entropy",
-        "fillers",
-    ),
+    *("expression", "words", "count", "adjacent", "documents", "dp_norm", "capitals", "strength", "completeness"),
+    *("weakest_split", "split_low", "split_high", "cut", "specific_correlation", "specific_interaction"),
+    *("best_split_g2", "c_value", "c_value_length", "any_order", "pattern_count", "fragment", "fragment_count"),
+    *("fragments", "filler_kinds", "filler_entropy", "fillers", "order_kinds", "order_entropy", "orders"),
 )
 """All columns of an answer, in their order:
 
@@ -72,10 +61,20 @@ COLUMNS = (
 ``filler_kinds``, ``filler_entropy``, ``fillers``
     Different words in an open slot, their entropy in bits (where there are several slots: of the one where it is
     smallest), and the most frequent with their counts, slots divided by ``|``.
+``adjacent``, ``order_kinds``, ``order_entropy``, ``orders``
+    Of sets in any order: occurrences side by side; different orders, their entropy in bits, and the most frequent
+    orders with their counts.
 """
 SHOWN = ("count", "documents", "strength", "c_value", "fragment", "fragment_count")
 SHOWN_OF_FRAMES = ("count", "documents", "strength", "filler_kinds", "filler_entropy", "fillers")
+SHOWN_OF_SETS = ("count", "adjacent", "documents", "strength", "order_kinds", "orders")
 """What is shown beside the expression when nothing else is asked for."""
+MOST_GAP = 4
+"""Other words that can stand among those of a set, at most."""
+MOST_OF_SETS = 4
+"""Words of the largest sets when nothing else is asked for: the places to choose from grow with the gap."""
+LONGEST_SHOWN = 6
+"""Words of the longest expressions when nothing else is asked for."""
 LONGEST = 8
 """Words of the longest expressions that can be asked for."""
 FEWEST_DOCUMENTS = 3
@@ -107,6 +106,10 @@ class ExpressionOptions:
         most are left out).
     slots : int
         0: words side by side. Else frames with 1 to so many open slots, each of one word.
+    any_order : bool
+        Sets of words instead, in whatever order they meet.
+    gap : int
+        Of sets: at most so many other words stand among theirs.
     pattern : str
         Only sequences of which at least half of the occurrences follow this pattern of word classes from end to end;
         see `colloc.answers.tagpatterns`.
@@ -116,13 +119,15 @@ class ExpressionOptions:
     where: Sequence[str] = ()
     inside: Inside | None = None
     min_words: int = 2
-    max_words: int = 6
+    max_words: int = LONGEST_SHOWN
     min_count: int = DEFAULT_MIN_COUNT
     min_docs: int | None = None
     names: Treatment = "drop"
     common: Treatment = "drop"
     fragments: Literal["fold", "keep"] = "fold"
     slots: int = 0
+    any_order: bool = False
+    gap: int = 0
     pattern: str | None = None
     rank: str = "strength"
 
@@ -135,6 +140,14 @@ class ExpressionOptions:
             raise UsageError(f"an expression has 0 to {MOST_WORDS - LONGEST} open slots, not {self.slots}")
         if self.slots and self.rank in CONTIGUOUS_ONLY:
             raise UsageError(f"{self.rank} is not defined for expressions with open slots: rank by another column")
+        if self.any_order and (self.slots or self.pattern is not None):
+            raise UsageError("what stands in any order has neither open slots nor a pattern: give one of the three")
+        if self.any_order and self.rank in NOT_OF_SETS:
+            raise UsageError(f"{self.rank} is not defined for sets in any order: rank by another column")
+        if self.gap and not self.any_order:
+            raise UsageError("a gap is for what stands in any order; open slots of frames are asked for by slots")
+        if not 0 <= self.gap <= MOST_GAP:
+            raise UsageError(f"a gap has 0 to {MOST_GAP} words, not {self.gap}")
         if self.slots and self.pattern is not None:
             raise UsageError("a pattern of word classes leaves no slot open: give either a pattern or slots")
         if self.min_count < 2:
@@ -175,6 +188,8 @@ class Asked:
             "common": chosen.common,
             "fragments": chosen.fragments,
             "slots": chosen.slots or None,
+            "any_order": chosen.any_order or None,
+            "gap": chosen.gap if chosen.any_order else None,
             "pattern": chosen.pattern,
             "rank": chosen.rank,
         }
@@ -197,8 +212,10 @@ def shown_columns(show: Sequence[str] | None, options: ExpressionOptions) -> lis
     UsageError
         A name that is no column, or none of this kind of expression.
     """
-    without: tuple[str, ...] = CONTIGUOUS_ONLY if options.slots else FRAMES_ONLY
-    if options.pattern is None:
+    without: tuple[str, ...] = (*SETS_ONLY, *(CONTIGUOUS_ONLY if options.slots else FRAMES_ONLY))
+    if options.any_order:
+        without = NOT_OF_SETS
+    elif options.pattern is None:
         without += PATTERNS_ONLY
     known = [name for name in COLUMNS if name not in without]
     if show is not None and "all" in show:
@@ -206,7 +223,7 @@ def shown_columns(show: Sequence[str] | None, options: ExpressionOptions) -> lis
     for name in show or ():
         if name not in known:
             raise UsageError(f"no column {name!r} here: choose from all, {', '.join(known)}")
-    usual: tuple[str, ...] = SHOWN_OF_FRAMES if options.slots else SHOWN
+    usual: tuple[str, ...] = SHOWN_OF_FRAMES if options.slots else SHOWN_OF_SETS if options.any_order else SHOWN
     if options.pattern is not None:
         usual += PATTERNS_ONLY
     chosen = {"expression", options.rank, *(usual if show is None else show)}

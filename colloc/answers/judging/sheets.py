@@ -10,6 +10,7 @@ from __future__ import annotations
 import base64
 import hashlib
 import json
+import unicodedata
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, cast
@@ -135,7 +136,8 @@ class Filled:
     decisions : list of Decision
         New ones.
     unchanged, empty : int
-        Rows that say what the store says already, and rows that nobody filled in.
+        Rows that say what the store says already (or mean it, where it was decided since the sheet was written), and
+        rows that nobody filled in.
     problems : list of str
         Rows that cannot be taken; each begins with its place.
     conflicts : list of str
@@ -176,23 +178,37 @@ def read_sheet(store: Store, rows: Iterable[SheetRow], judge: str, now: str) -> 
         key = (decision.key, decision.judge)
         if key in first_places:
             place, other = first_places[key]
-            if _says(other) != _says(decision):
+            if _means(other) != _means(decision):
                 filled.problems.append(
                     f"{row.place}: {read.matter.text!r} stands in {place} too, decided differently; keep one"
                 )
             continue
         first_places[key] = row.place, decision
         number, before = kept.get(key, (0, None))
-        if before is not None and _says(before) == _says(decision):
+        unknown = number != read.seen
+        if before is not None and (_says(before) == _says(decision) or (unknown and _agrees(decision, before))):
             filled.unchanged += 1
             continue
-        if before is not None and number != read.seen:
+        if before is not None and unknown:
             filled.conflicts.append(
                 f"{row.place}: {read.matter.text!r} is {before.verdict} by {before.judge} since {before.decided}, "
                 f"the row says {decision.verdict}"
             )
         filled.decisions.append(decision)
     return filled
+
+
+def _means(decision: Decision) -> tuple[Any, ...]:
+    """What is decided, whatever the blanks, the line ends and the order of labels and places."""
+    verdict, sense, note, labels, places = _says(decision)
+    texts = (" ".join(unicodedata.normalize("NFC", text).split()) for text in (sense, note))
+    return verdict, *texts, frozenset(" ".join(label.split()) for label in labels), frozenset(places)
+
+
+def _agrees(row: Decision, before: Decision) -> bool:
+    """Whether a row means what was decided, as far as it says anything: an empty cell contradicts nothing."""
+    said, known = _means(row), _means(before)
+    return said[0] == known[0] and all(not one or one == other for one, other in zip(said[1:], known[1:], strict=True))
 
 
 def _says(decision: Decision) -> tuple[Any, ...]:
@@ -221,7 +237,7 @@ class _Row:
         return (self._cells.get(name) or "").strip()
 
     def _matter(self) -> Matter:
-        kind = self._cell("kind") or None
+        kind = self._cell("kind").casefold() or None
         if kind not in (None, "pair", "directed", "expression"):
             raise DataError(f"the kind {kind!r} is none: pair, directed or expression")
         words = read_list(self._cells.get("words") or "", WORDS)
@@ -275,10 +291,11 @@ class _Row:
         )
 
     def _example(self, text: str) -> Example:
-        if text.isascii() and text.isdigit():
-            place = self._cell(f"place_{int(text)}")
+        number = text.removesuffix(".0")  # as spreadsheets that take it for a number write it
+        if number.isascii() and number.isdigit():
+            place = self._cell(f"place_{int(number)}")
             if not place:
-                raise DataError(f"the row has no line {text}")
+                raise DataError(f"the row has no line {number}")
             text = place
         document, offset = read_place(text)
         for example in self._chosen:

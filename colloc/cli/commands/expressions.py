@@ -17,7 +17,12 @@ LIMIT = 50
 def expressions(
     store: opt.StoreArgument,
     min_words: Annotated[int, typer.Option("--min-words", metavar="N", help="Fewest words of an expression.")] = 2,
-    max_words: Annotated[int, typer.Option("--max-words", metavar="N", help="Most words of an expression, to 8.")] = 6,
+    max_words: Annotated[
+        int | None,
+        typer.Option(
+            "--max-words", metavar="N", help="Most words of an expression, to 8: 6 if not given, 4 with --any-order."
+        ),
+    ] = None,
     rank: Annotated[
         Literal[
             "strength",
@@ -69,6 +74,13 @@ def expressions(
             "--slots", metavar="N", min=0, help="Instead: frames with 1 to N open slots, and the words that fill them."
         ),
     ] = 0,
+    any_order: Annotated[
+        bool, typer.Option("--any-order", help="Instead: sets of words that meet in whatever order.")
+    ] = False,
+    gap: Annotated[
+        int,
+        typer.Option("--gap", metavar="N", min=0, help="With --any-order: at most N other words among those of a set."),
+    ] = 0,
     pattern: Annotated[
         str | None,
         typer.Option("--pattern", metavar="CLASSES", help="Only sequences of these word classes, such as 'ADJ NOUN'."),
@@ -102,6 +114,8 @@ def expressions(
             common=common,
             fragments=fragments,
             slots=slots,
+            any_order=any_order,
+            gap=gap,
             pattern=pattern,
             rank=rank,
             show=opt.split_names(show),

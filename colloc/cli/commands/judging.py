@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any, Literal
 
@@ -16,6 +17,17 @@ if TYPE_CHECKING:
     from colloc.answers.judging.matters import Verdict
 
 MORE_CANDIDATES = 200
+_RECORDED_AS = {
+    "pair": "a pair: the two words near each other, in any order",
+    "directed": "a directed pair: the second word after the first",
+    "expression": "an expression: the words in a row",
+}
+_COUNTED = {
+    "pair": ("pair", "pairs"),
+    "directed": ("directed pair", "directed pairs"),
+    "expression": ("expression", "expressions"),
+}
+"""Kinds of decisions in words, one and several."""
 ByOption = Annotated[str | None, typer.Option("--by", metavar="NAME", help="Who decides.")]
 KindOption = Annotated[
     Literal["pair", "directed", "expression"] | None,
@@ -43,7 +55,8 @@ MinOption = Annotated[
 def judge(
     store: opt.StoreArgument,
     words: Annotated[
-        list[str] | None, typer.Argument(metavar="X Y", help="A pair, or an expression such as 'by and large'.")
+        list[str] | None,
+        typer.Argument(metavar="X Y", help="A pair, or a quoted phrase: an expression such as 'by and large'."),
     ] = None,
     accept: Annotated[bool, typer.Option("--accept", help="It belongs in.")] = False,
     reject: Annotated[bool, typer.Option("--reject", help="It does not.")] = False,
@@ -82,7 +95,9 @@ def judge(
 ) -> None:
     """Accept or reject pairs and expressions: one here, many by keys, or from a filled-in sheet.
 
-    With words and a verdict one decision is recorded. Without words the candidates
+    With words and a verdict one decision is recorded: of two words as a pair, of a
+    quoted phrase or more words as an expression, unless --kind says otherwise; what
+    was recorded is told. Without words the candidates
     are shown one after another, each with its numbers and lines, and one key decides.
     Nothing is overwritten: `colloc decisions --history` shows all that was decided.
     """
@@ -110,7 +125,10 @@ def judge(
             kind=kind,
             layer=layer,
         )
-        remark(f"{' '.join(made.words)}: {made.verdict}, by {made.judge}", quiet=quiet)
+        remark(
+            f"{' '.join(made.words)}: {made.verdict}, by {made.judge}; recorded as {_RECORDED_AS[made.kind]}",
+            quiet=quiet,
+        )
         return
     if chosen or sense or note or label or example:
         raise UsageError("say what is decided: X Y, or a quoted phrase")
@@ -155,9 +173,10 @@ def _take(store: Path, path: Path, by: str | None, override: bool, quiet: bool) 
         remark(f"{added} new decisions", quiet=quiet)
         return
     filled = judging.take_sheet(store, sheet_rows(path), by=by or "", override=override)
-    remark(
-        f"{len(filled.decisions)} decisions recorded, {filled.unchanged} unchanged, {filled.empty} open", quiet=quiet
-    )
+    kinds = Counter(one.kind for one in filled.decisions)
+    told = ", ".join(f"{kinds[kind]} {_COUNTED[kind][kinds[kind] != 1]}" for kind in _COUNTED if kinds[kind])
+    recorded = f"{len(filled.decisions)} decisions recorded" + (f" ({told})" if told else "")
+    remark(f"{recorded}, {filled.unchanged} unchanged, {filled.empty} open", quiet=quiet)
     for conflict in filled.conflicts:
         remark(f"overridden: {conflict}", quiet=quiet)
 

@@ -26,6 +26,7 @@ from colloc.counts.processes import crew
 from colloc.counts.runs import Column
 from colloc.counts.selection import Selection, documents_selection
 from colloc.counts.sequences.capitals import capital_marks
+from colloc.counts.sequences.ground import Ground, written_with_capitals
 from colloc.counts.sequences.levels import Level, Spread
 from colloc.counts.sequences.places import NONE, fill, left_of, right_of
 from colloc.counts.sequences.sharing import MOST_WORDS, Facts
@@ -58,6 +59,8 @@ class Grower:
         Units of the selection.
     single : Level
         The words themselves.
+    ground : Ground
+        What it goes by, for sets of words.
     groups : int
         Groups that the documents are dealt into, for intervals.
     """
@@ -73,11 +76,11 @@ class Grower:
         self._shop = make_shop(len(self._selection))
         self._folder = {"folder": str(self._shop.folder)}
         self._documents = self._shop.keep("documents", _places(self._selection, begins))
-        self._sizes = self._shop.keep("sizes", sizes)
+        kept_sizes = self._shop.keep("sizes", sizes)
         dealt = deal(len(sizes))
         self.groups = int(dealt.max(initial=-1)) + 1
         self._groups = self._shop.keep("groups", dealt)
-        self._least_share = float(sizes.min() / max(sizes.sum(), 1)) if len(sizes) else 1.0
+        least_share = float(sizes.min() / max(sizes.sum(), 1)) if len(sizes) else 1.0
         self.words: WordCounts = slice_word_counts(store, layer, where)
         self.total = int(self.words.tokens.sum())
         kinds = {"ids": "<u4", "room": "|u1", "marks": "|u1"}
@@ -87,6 +90,9 @@ class Grower:
         marks = self._shop.keep("capitals", capital_marks(store))
         laid = {"layer": layer, "inside": inside, "selection": stretches, "capitals": marks, "into": places}
         self.units = sum(share["units"] for share in self._shop.share_out("lay_out", laid))
+        self.ground = Ground(
+            self._shop, places["ids"], self._room, self._marks, self._documents, kept_sizes, least_share
+        )
         nothing = np.empty(0, np.uint64)
         self.single = Level((0,), None, None, nothing, self.words.tokens, Column(**places["ids"]), None)
 
@@ -202,28 +208,6 @@ class Grower:
             counts += taken(share)
         return counts
 
-    def bags(self, terms: Int64Array) -> Int64Array:
-        """How often some words stand side by side, in whatever order.
-
-        Parameters
-        ----------
-        terms : int64 array, shape (n, words)
-            Each row ascending; rows ascending, each once.
-        """
-        self._made += 1
-        name = f"bags-{self._made}"
-        chain = []
-        before = np.zeros(len(terms), np.int64)
-        for word in range(terms.shape[1]):
-            keys = before.astype(np.uint64) << np.uint64(32) | terms[:, word].astype(np.uint64)
-            distinct, before = np.unique(keys, return_inverse=True)
-            chain.append(self._shop.keep(f"{name}-{word}", distinct))
-        asked = {"terms": asdict(self.single.ids), "room": self._room, "chain": chain, **self._folder}
-        counts = np.zeros(len(terms), np.int64)
-        for share in self._shop.share_out("count_bags", asked, name):
-            counts += taken(share)
-        return counts
-
     def _begun(self, left: Level, right: Level, offset: int) -> tuple[str, tuple[int, ...], Facts]:
         words = tuple(sorted({*left.words, *(offset + word for word in right.words)}))
         if words[-1] >= MOST_WORDS:
@@ -249,17 +233,9 @@ class Grower:
             for what, so_far in sums.items():
                 so_far += taken(share[what])
         runs = [run_file(share["run"]) for share in surveyed]
-        cuts = self._shop.number_cuts(runs, n)
-        parts = self._shop.merge("spread_sequences", cuts, {"sizes": self._sizes}, runs, f"{name}-spread")
-        none = np.empty(0, np.int64)
-        documents, largest = (
-            np.concatenate([none, *(taken(part[what]) for part in parts)]) for what in ("documents", "largest")
-        )
-        dp = np.concatenate([np.empty(0), *(taken(part["distance"]) for part in parts)]) / 2
-        with np.errstate(invalid="ignore", divide="ignore"):
-            written = np.where(sums["marked"] > 0, sums["capitals"] / sums["marked"], np.nan)
-            dp_norm = dp / (1 - self._least_share) if self._least_share < 1 else np.full(n, np.nan)
-        return Spread(documents, largest, dp, dp_norm, written, sums["opening"], sums["closing"])
+        written = written_with_capitals(sums["capitals"], sums["marked"])
+        spread = self.ground.over_documents(runs, n, name)
+        return Spread(*spread, written, sums["opening"], sums["closing"])
 
 
 @contextmanager

@@ -127,7 +127,7 @@ def number_joins(
     places, pairs = _joined(left, right, offset, span, room, begin, stop)
     table: UInt64Array = Column(**keys).read()
     numbers = np.full(stop - begin, NONE)
-    found, there = _look_up(table, pairs)
+    found, there = looked_up(table, pairs)
     numbers[places[there]] = found
     fill(Column(**ids), begin, numbers)
     counts = np.bincount(found, minlength=len(table))
@@ -265,37 +265,7 @@ def count_matches(
     return dataclasses.asdict(write_column(Path(folder) / f"{name}.counts", counts))
 
 
-def count_bags(terms: Facts, room: Facts, chain: list[Facts], begin: int, stop: int, folder: str, name: str) -> Facts:
-    """Count sequences by their words in ascending order, of those that are given.
-
-    Parameters
-    ----------
-    chain : list of Column facts
-        First the lowest terms, ascending; then keys of the place in the column before << 32 | the next term, ascending.
-
-    Returns
-    -------
-    dict
-        The column of counts by place in the last column of the chain.
-    """
-    words = len(chain)
-    tables: list[UInt64Array] = [Column(**link).read() for link in chain]
-    window = [padded(Column(**terms), begin + word, stop + word, int(NONE)) for word in range(words)]
-    places = np.flatnonzero((Column(**room).read(begin, stop) >= words) & np.isin(window[0], _terms_of(tables)))
-    bag = np.sort(np.stack([column[places] for column in window], axis=1), axis=1)
-    found, there = _look_up(tables[0], bag[:, 0].astype(np.uint64))
-    for word, table in enumerate(tables[1:], 1):
-        bag = bag[there]
-        found, there = _look_up(table, pair_keys(found, bag[:, word]))
-    counts = np.bincount(found, minlength=len(tables[-1]))
-    return dataclasses.asdict(write_column(Path(folder) / f"{name}.counts", counts))
-
-
-def _terms_of(tables: list[UInt64Array]) -> UInt32Array:
-    return np.unique(np.concatenate([right_of(table) for table in tables]))
-
-
-def _look_up(table: UInt64Array, keys: UInt64Array) -> tuple[UInt32Array, np.ndarray]:
+def looked_up(table: UInt64Array, keys: UInt64Array) -> tuple[UInt32Array, np.ndarray]:
     """Places in the sorted table of those keys that are in it, and which of the keys these are."""
     if not len(table):
         return np.empty(0, np.uint32), np.zeros(len(keys), bool)
