@@ -202,12 +202,16 @@ def similar(
     ----------
     vectors : path or Vectors, optional
         Take the cosines of these vectors instead; the shared contexts are still those of the PPMI matrix.
+    min_row_count, min_context_count : int, optional
+        Words seen less often are not compared, or no contexts. When not given: 50, and 20 in a text that has fewer
+        than 1,000 words seen 50 times; the answer's settings say which.
 
     Raises
     ------
     NotSeenError
         When one of the words has no row.
     """
+    from colloc.answers.spaces.choosing import Choice
     from colloc.answers.spaces.likeness import Space
     from colloc.answers.spaces.likeness import similar as nearest
     from colloc.answers.spaces.matrix import MatrixOptions
@@ -220,8 +224,8 @@ def similar(
         shift=shift,
         smoothing=smoothing,
         weighting=weighting,
-        rows=_choice(None, min_row_count, None),
-        contexts=_choice(None, min_context_count, None),
+        rows=Choice(min_count=min_row_count),
+        contexts=Choice(min_count=min_context_count),
         context_layer=context_layer,
     )
     given = vectors if vectors is None or isinstance(vectors, Vectors) else read_vectors(Path(vectors))

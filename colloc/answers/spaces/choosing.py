@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,18 +22,18 @@ class Choice:
     ----------
     words : tuple of str, optional
         These words, in this order; a word that the store does not know has an empty row or column.
-    min_count : int
-        Words seen at least so often (in the slice asked for).
+    min_count : int or None
+        Words seen at least so often (in the slice asked for); None: as often as `reliable_count` says.
     most : int, optional
         So many words, the most frequent; ties by number, which is the order of first appearance.
     """
 
     words: tuple[str, ...] | None = None
-    min_count: int = 1
+    min_count: int | None = 1
     most: int | None = None
 
     def __post_init__(self) -> None:
-        if self.words is not None and (self.min_count > 1 or self.most is not None):
+        if self.words is not None and (self.min_count != 1 or self.most is not None):
             raise UsageError("words are chosen by a list or by frequency: give one of them")
         if self.words is not None and len(set(self.words)) < len(self.words):
             twice = sorted({word for word in self.words if self.words.count(word) > 1})
@@ -41,11 +41,15 @@ class Choice:
         if self.most is not None and self.most < 1:
             raise UsageError(f"at least 1 word must be chosen, not {self.most}")
 
+    def settled(self, tokens: Int64Array) -> Choice:
+        """The choice with a least count that is a number."""
+        return self if self.min_count is not None else replace(self, min_count=reliable_count(tokens))
+
     def described(self) -> str:
         """In words, for the settings; empty where all words are taken."""
         if self.words is not None:
             return f"{len(self.words)} listed"
-        parts = [f"seen {self.min_count} times or more"] if self.min_count > 1 else []
+        parts = [f"seen {self.min_count} times or more"] if self.min_count != 1 else []
         return ", ".join([*parts, *([f"{self.most} most frequent"] if self.most is not None else [])])
 
 
@@ -95,6 +99,27 @@ class Chosen:
         return vocabulary.term_texts(known.store, known.layer, terms)
 
 
+def reliable_count(tokens: Int64Array) -> int:
+    """From how many occurrences on a word is compared with others by its PPMI row.
+
+    Rows of rare words say more of the places they happened to stand in than of the words. In two halves of 99 novels
+    (11 million words) a word seen 5 to 20 times in each has itself among the ten nearest of the other half in 15 to
+    21 % of cases, seen 20 to 50 times in 26 %, seen 50 to 100 times in 60 %, seen more often in 80 to 97 %: most rows
+    hold from `RELIABLE` on. A small text has few such words; there `RELIABLE_IN_SMALL`, so that an answer can be given.
+
+    Parameters
+    ----------
+    tokens : int64 array
+        How often each word was seen.
+    """
+    return RELIABLE if np.count_nonzero(tokens >= RELIABLE) >= ENOUGH_WORDS else RELIABLE_IN_SMALL
+
+
+RELIABLE, RELIABLE_IN_SMALL = 50, 20
+ENOUGH_WORDS = 1000
+"""With fewer words of `RELIABLE` occurrences a text is small."""
+
+
 def choose(known: Words, choice: Choice, what: str) -> Chosen:
     """The terms that a choice means.
 
@@ -107,8 +132,9 @@ def choose(known: Words, choice: Choice, what: str) -> Chosen:
         return _listed(known, choice.words, what)
     tokens = known.tokens
     mask: NDArray[np.bool] | None = None
-    if choice.min_count > 1:
-        mask = tokens >= choice.min_count
+    least = choice.settled(tokens).min_count or 1
+    if least > 1:
+        mask = tokens >= least
     if choice.most is not None:
         first = np.argsort(-tokens, kind="stable")[: choice.most]
         frequent = np.zeros(len(tokens), bool)

@@ -96,7 +96,10 @@ def similar(space: Space, words: Sequence[str], *, limit: int = 20, contexts: Ma
     numbers = space.numbers(words)
     for word, number in zip(words, numbers.tolist(), strict=True):
         if number < 0:
-            raise NotSeenError(f"{word!r} has no row: it never occurs, or less often than rows are asked for")
+            rows = space.settings.get("rows") or "all that occur"
+            raise NotSeenError(
+                f"{word!r} has no row: rows are words {rows}; a lower least count of rows takes rarer ones"
+            )
     asked: list[str] = []
     found: list[str] = []
     scores: list[float] = []

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any, get_args
 
 import numpy as np
@@ -113,6 +113,8 @@ def matrix(
     """
     wanted, asked = chosen or MatrixOptions(), options or PairOptions()
     table = _table(store, asked, wanted, jobs, memory, progress)
+    settled = (wanted.rows.settled(table.rows.tokens), wanted.contexts.settled(table.columns.tokens))
+    wanted = replace(wanted, rows=settled[0], contexts=settled[1])
     value = value_rule(wanted.value, wanted.shift, wanted.smoothing, table.maker)
     rows, columns = choose(table.rows, wanted.rows, "rows"), choose(table.columns, wanted.contexts, "contexts")
     gathered = _Gathered(table)

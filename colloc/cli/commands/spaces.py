@@ -55,6 +55,24 @@ LeastContextOption = Annotated[
         "--min-context-count", metavar="N", min=1, help="Contexts are words seen at least so often; 5 when not given."
     ),
 ]
+ReliableRowOption = Annotated[
+    int | None,
+    typer.Option(
+        "--min-row-count",
+        metavar="N",
+        min=1,
+        help="Words compared are those seen at least so often; when not given 50, in small texts 20.",
+    ),
+]
+ReliableContextOption = Annotated[
+    int | None,
+    typer.Option(
+        "--min-context-count",
+        metavar="N",
+        min=1,
+        help="Contexts are words seen at least so often; when not given 50, in small texts 20.",
+    ),
+]
 MostRowsOption = Annotated[
     int | None, typer.Option("--most-rows", metavar="N", min=1, help="Rows are the N most frequent words.")
 ]
@@ -273,8 +291,8 @@ def similar(
     shift: ShiftOption = 1.0,
     smoothing: SmoothingOption = VECTOR_SMOOTHING,
     weighting: WeightingOption = "flat",
-    min_row_count: LeastRowOption = None,
-    min_context_count: LeastContextOption = None,
+    min_row_count: ReliableRowOption = None,
+    min_context_count: ReliableContextOption = None,
     layer: opt.LayerOption = None,
     context_layer: ContextLayerOption = None,
     window: opt.WindowOption = None,

@@ -62,7 +62,7 @@ def count_crossed(
     directed : bool
         Whether y follows x (depends on x); otherwise each pair of tokens counts in both roles.
     pending : int
-        Memory is 16 bytes for each, and some 40 bytes for each cell of the result.
+        Memory is 16 bytes for each, and some 80 bytes for each cell of the result while runs are merged.
     """
     selection = slice_selection(store, spec.where)
     documents = document_places(store, selection)

@@ -13,6 +13,7 @@ from scipy.stats import spearmanr
 from sklearn.utils.extmath import randomized_svd
 
 import colloc
+from colloc.answers.spaces.choosing import Choice, reliable_count
 from colloc.answers.spaces.judged import judged_pairs
 from colloc.answers.spaces.likeness import Space, similar
 from colloc.answers.spaces.matrix import Matrix
@@ -243,3 +244,26 @@ def test_listed_rows_need_no_frequency(demo: Path) -> None:
     assert len(colloc.vectors(demo, dimensions=2).words) < len(
         colloc.vectors(demo, dimensions=2, min_row_count=1).words
     )
+
+
+def test_how_often_words_are_seen_that_are_compared() -> None:
+    """50 times, and 20 where fewer than 1,000 words are seen 50 times."""
+    assert reliable_count(np.array([50] * 1000)) == 50
+    assert reliable_count(np.array([50] * 999 + [49] * 5000)) == 20
+    assert reliable_count(np.zeros(0, np.int64)) == 20
+    with pytest.raises(UsageError, match="by a list or by frequency"):
+        Choice(words=("fog",), min_count=None)
+
+
+def test_rare_words_are_not_compared_unless_asked_for(demo: Path) -> None:
+    seen = {row["word"]: row["count"] for row in colloc.words(demo, limit=0)}
+    assert sum(count >= 50 for count in seen.values()) < 1000
+    answer = colloc.similar(demo, "fog", limit=0)
+    assert set(answer["similar"]) == {word for word, count in seen.items() if count >= 20} - {"fog"}
+    assert answer.settings["rows"] == answer.settings["contexts"] == "seen 20 times or more"
+    rare = next(word for word, count in seen.items() if 2 <= count < 20)
+    with pytest.raises(NotSeenError, match="rows are words seen 20 times or more; a lower least count"):
+        colloc.similar(demo, rare)
+    lower = colloc.similar(demo, rare, limit=0, min_row_count=2)
+    assert set(lower["similar"]) == {word for word, count in seen.items() if count >= 2} - {rare}
+    assert lower.settings["contexts"] == "seen 20 times or more"
