@@ -13,12 +13,54 @@ SHORT, LONG, PLAIN, UNKEYED = range(4)
 """Tables by their place; what cannot be spelled as a key has none."""
 _CODED_WORD = 8
 _PLAIN_WORD = 3
+ABSENT = np.uint32(0xFFFFFFFF)
 _NOTHING = np.uint64(0)
 _ONE = np.uint64(1)
 _HALF = np.uint64(32)
 _ONES = np.uint64(0x0101010101010101)
 _HIGHS = np.uint64(0x8080808080808080)
 _ALL = np.uint64(0xFFFFFFFFFFFFFFFF)
+
+
+@kernel(
+    "void(uint8[::1], Array(int64, 1, 'C', True), Array(int64, 1, 'C', True), uint64[::1], uint32[::1], "
+    "uint64, uint64, uint32[::1])"
+)
+def find_short(
+    coded: NDArray[np.uint8],
+    starts: NDArray[Any],
+    ends: NDArray[Any],
+    keys: NDArray[np.uint64],
+    values: NDArray[np.uint32],
+    multiplier: np.uint64,
+    shift: np.uint64,
+    numbers: NDArray[np.uint32],
+) -> None:
+    """Write the numbers of the short tokens that the table of short ones knows, ``ABSENT`` for all others.
+
+    Most tokens of most texts are done with this. See `number_tokens` for the parameters.
+    """
+    # Unsigned, since for indices with a sign the compiler adds a look whether they count from the end.
+    last = np.uint64(len(values) - 1)
+    for token in range(len(starts)):
+        start = np.uint64(starts[token])
+        length = ends[token] - starts[token]
+        value = ABSENT
+        if length <= _CODED_WORD:
+            key = np.uint64(0)
+            for k in range(_CODED_WORD):
+                key |= np.uint64(coded[start + np.uint64(k)]) << np.uint64(8 * k)
+            if length < _CODED_WORD:
+                key &= ~(_ALL << np.uint64(8 * length))
+            slot = (key * multiplier) >> shift
+            found = keys[slot]
+            while found != key and found != _NOTHING:
+                slot = (slot + _ONE) & last
+                found = keys[slot]
+            # A token that ends in 0 has the key of a shorter one; a key with 0 inside is never entered.
+            if found == key and key >> np.uint64(8 * (length - 1)) != _NOTHING:
+                value = values[slot]
+        numbers[token] = value
 
 
 @kernel(
@@ -48,7 +90,9 @@ def number_tokens(
     fresh: NDArray[Any],
     slots: NDArray[Any],
 ) -> int:
-    """Number tokens from ``first`` on until all are done or a table has no room; return where it stopped.
+    """Number the tokens from ``first`` on that have no number yet, until all are done or a table has no room.
+
+    Returns where it stopped.
 
     The k-th token that no table knows gets the number ``base`` + k, also in the table that it is entered
     in, and is told: ``room[3]`` counts them.
@@ -67,17 +111,19 @@ def number_tokens(
     room : int64 array, shape (4,)
         How many keys each table may take, counted down; and the count of tokens told.
     numbers : uint32 array, shape (n_tokens,)
+        As `find_short` leaves them.
     fresh, slots : int64 arrays, shape (n_tokens,)
         Tokens told, ascending, and where they were entered: 4 * slot + table.
     """
     n_fresh = room[UNKEYED]
-    # Unsigned, since for indices with a sign the compiler adds a look whether they count from the end.
     short_last = np.uint64(len(short_values) - 1)
     long_last = np.uint64(len(long_values) - 1)
     plain_last = np.uint64(len(plain_values) - 1)
     short_multiplier = multipliers[0]
     short_shift = np.uint64(shifts[SHORT])
     for token in range(first, len(starts)):
+        if numbers[token] != ABSENT:
+            continue
         start = np.uint64(starts[token])
         length = ends[token] - starts[token]
         table = UNKEYED

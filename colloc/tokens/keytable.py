@@ -8,10 +8,10 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.kernels.numbers import ABSENT
 from colloc.records import Int64Array, UInt32Array, UInt64Array
 
 _SMALLEST = 1 << 12
-ABSENT = np.uint32(0xFFFFFFFF)
 
 
 class KeyTable:

@@ -19,12 +19,12 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.kernels.numbers import UNKEYED, number_tokens
+from colloc.kernels.numbers import ABSENT, UNKEYED, find_short, number_tokens
 from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, Segments, UInt32Array, UInt64Array
 from colloc.tokens.arrays import distinct
 from colloc.tokens.classes import Points, code_points
-from colloc.tokens.keytable import ABSENT, KeyTable
+from colloc.tokens.keytable import KeyTable
 
 _CODED_WORD: Final = 8
 _PLAIN_WORD: Final = 3
@@ -129,6 +129,8 @@ class TypeNumberer:
         multipliers = np.array(
             [table.multipliers[word % len(table.multipliers)] for table in tables for word in (0, 1)]
         )
+        short = (*self._short.arrays, self._short.multipliers[0], np.uint64(self._short.shift))
+        find_short(coded, segments.starts, segments.ends, *short, numbers)
         done = 0
         while True:
             base, first = len(self._numbers), done

@@ -110,7 +110,9 @@ def test_the_loop_of_numbers_is_its_plain_python(stretches: list[str]) -> None:
         for text in stretches:
             found = segmenter.segment(text)
             compiled = numberers[0].number(found).tolist()
-            patch.setattr(numbering, "number_tokens", number_loop.number_tokens.python)
+            for loop in (number_loop.find_short, number_loop.number_tokens):
+                patch.setattr(numbering, loop.python.__name__, loop.python)
             assert numberers[1].number(found).tolist() == compiled
-            patch.setattr(numbering, "number_tokens", number_loop.number_tokens)
+            for loop in (number_loop.find_short, number_loop.number_tokens):
+                patch.setattr(numbering, loop.python.__name__, loop)
             assert numberers[0].take_new() == numberers[1].take_new()
