@@ -176,7 +176,9 @@ def test_accepted_in_the_store(tmp_path: Path) -> None:
     assert [one.text for one in colloc.join(path, ["at dawn", "x"], ["at dawn"], joiner="+")] == ["at+dawn", "x"]
     with pytest.raises(UsageError, match="has the layer lemma where the store was built with --lemma, which it was"):
         colloc.join(path, "x", ["a b"], layer="lemma")
-    with pytest.raises(UsageError, match=r"running text has the layers form, fold, and .* lemma and lemma_fold; not 'u"):
+    with pytest.raises(
+        UsageError, match=r"running text has the layers form, fold, and .* lemma and lemma_fold; not 'u"
+    ):
         colloc.join(path, "x", ["a b"], layer="upos")
 
 
