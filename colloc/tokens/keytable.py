@@ -8,10 +8,11 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.kernels.numbers import ABSENT
+from colloc.kernels import numbers as loop
 from colloc.records import Int64Array, UInt32Array, UInt64Array
 
 _SMALLEST = 1 << 12
+ABSENT = loop.ABSENT
 
 
 class KeyTable:

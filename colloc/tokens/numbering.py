@@ -19,12 +19,12 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from colloc.kernels.numbers import ABSENT, UNKEYED, find_short, number_tokens
+from colloc.kernels.numbers import UNKEYED, find_short, number_tokens
 from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, Segments, UInt32Array, UInt64Array
 from colloc.tokens.arrays import distinct
 from colloc.tokens.classes import Points, code_points
-from colloc.tokens.keytable import KeyTable
+from colloc.tokens.keytable import ABSENT, KeyTable
 
 _CODED_WORD: Final = 8
 _PLAIN_WORD: Final = 3
@@ -129,8 +129,9 @@ class TypeNumberer:
         multipliers = np.array(
             [table.multipliers[word % len(table.multipliers)] for table in tables for word in (0, 1)]
         )
-        short = (*self._short.arrays, self._short.multipliers[0], np.uint64(self._short.shift))
-        find_short(coded, segments.starts, segments.ends, *short, numbers)
+        keys, values = self._short.arrays
+        shift = np.uint64(self._short.shift)
+        find_short(coded, segments.starts, segments.ends, keys, values, self._short.multipliers[0], shift, numbers)
         done = 0
         while True:
             base, first = len(self._numbers), done
@@ -147,7 +148,7 @@ class TypeNumberer:
             # Tokens told twice, and forms that are canonically equivalent, share a number.
             if n_fresh and not np.array_equal(final, np.arange(base, base + n_fresh)):
                 told = numbers[first:done]
-                moved = told >= base
+                moved = np.flatnonzero(told >= base)
                 told[moved] = final[told[moved] - np.uint32(base)]
             for place, table in enumerate(tables):
                 table.note(int(before[place] - room[place]))
