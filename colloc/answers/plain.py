@@ -163,6 +163,11 @@ class Grid:
         self._numeric = list(numeric)
         self._widths = [width(head) for head in self._heads]
 
+    @property
+    def widths(self) -> tuple[int, ...]:
+        """How wide each column is, in terminal columns, with all rows so far."""
+        return tuple(self._widths)
+
     def lines(self, columns: Sequence[Sequence[Any]], *, heading: bool) -> list[str]:
         """Lines for equally long columns of values, after the column names where ``heading``."""
         cells = [self._column(values, name) for values, name in zip(columns, self._names, strict=True)]

@@ -217,6 +217,9 @@ PlotListOption = Annotated[
         help="Measure against expected count with the chance floors, or one word and its company as a network.",
     ),
 ]
+WideOption = Annotated[
+    bool, _option("--wide", help="All columns in the table, as files have them, however wide they are.")
+]
 LimitOption = Annotated[int, _option("--limit", "-n", metavar="N", min=0, help="Rows shown; 0 for all.")]
 
 # Measures

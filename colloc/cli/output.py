@@ -9,8 +9,10 @@ from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from itertools import chain
 from pathlib import Path
+from textwrap import wrap
 from typing import TYPE_CHECKING, Any, BinaryIO, get_args
 
+from colloc.cli.fitting import fitting, left_out_line, terminal_width
 from colloc.cli.render import make_writer
 from colloc.errors import UsageError
 from colloc.exports.replacing import replacing
@@ -53,12 +55,15 @@ class Target:
         No remarks on standard error.
     settings_beside : bool
         Also write the settings as JSON to ``PATH.settings.json``.
+    whole : bool
+        All columns of a table, even where the terminal is too narrow for them.
     """
 
     format: str = "table"
     path: Path | None = None
     quiet: bool = False
     settings_beside: bool = False
+    whole: bool = False
 
     def __post_init__(self) -> None:
         if self.settings_beside and not self.to_file:
@@ -99,13 +104,18 @@ def deliver_parts(parts: Iterable[Columns], settings: Mapping[str, Any], target:
     rest = iter(parts)
     first = next(rest)
     remark(settings_line(command, settings), quiet=target.quiet)
+    room = terminal_width() if target.format == "table" and not target.to_file and not target.whole else None
+    shown = first.names if room is None else fitting(first, room)
     with opened(target.path) as stream:
         writer = make_writer(target.format, stream, settings)
         n_rows = 0
         for part in chain([first], rest):
-            writer.write(part)
+            writer.write(part if shown == first.names else part.select(shown))
             n_rows += len(part)
         writer.close()
+    if shown != first.names:
+        # Belongs to the table, whose reader sees what is missing even where no remarks are wanted.
+        print_lines(wrap(left_out_line(first, shown), room or 0))
     if not n_rows:
         remark(no_rows_line(settings), quiet=target.quiet)
     if target.settings_beside and target.path is not None:

@@ -33,6 +33,9 @@ named with `-o` is whole or not there: it is written beside its place and then r
 | `json` | one object with `settings` and `rows` |
 | `parquet` | Apache Parquet, settings in the schema's metadata; needs `pip install 'colloc[tables]'` |
 
+On a terminal a table shows the columns that fit beside each other and names the others below; `COLUMNS` in the
+environment overrules its width. A pipe, a file and all other formats have every column.
+
 In CSV and TSV a text that begins with `=`, `+`, `-`, `@`, a tab or a carriage return and is no number has an
 apostrophe put before it, so that no spreadsheet takes it for a formula; texts that begin with apostrophes before such a
 character get one more. `colloc measure` takes it off again.

@@ -106,7 +106,7 @@ def contrast(
     ] = 0,
     seed: Annotated[int, typer.Option("--seed", metavar="N", min=0, help="Of the exchanges.")] = 1,
     limit: opt.LimitOption = LIMIT,
-    wide: Annotated[bool, typer.Option("--wide", help="All columns in the table, as files have them.")] = False,
+    wide: opt.WideOption = False,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
     format: opt.FormatOption = "table",
@@ -122,7 +122,7 @@ def contrast(
     """
     from colloc.verbs import contrasting
 
-    target = Target(format, output, quiet, settings_beside)
+    target = Target(format, output, quiet, settings_beside, whole=wide)
     with ProgressLine(quiet=quiet) as progress:
         answer = contrasting.contrast(
             store,

@@ -72,7 +72,7 @@ def drift(
         ),
     ] = "documents",
     limit: opt.LimitOption = LIMIT,
-    wide: Annotated[bool, typer.Option("--wide", help="All columns in the table, as files have them.")] = False,
+    wide: opt.WideOption = False,
     plot: opt.PlotOption = None,
     jobs: opt.JobsOption = None,
     memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
@@ -89,7 +89,7 @@ def drift(
     from colloc.verbs import drifting
 
     opt.check_plot(plot)
-    target = Target(format, output, quiet, settings_beside)
+    target = Target(format, output, quiet, settings_beside, whole=wide)
     with ProgressLine(quiet=quiet) as progress:
         answer = drifting.drift(
             store,
