@@ -79,6 +79,18 @@ def test_a_known_word_keeps_its_total_beside_an_unknown_one(store: Path, options
     assert second[1:] == [second[0], 0, 0]
 
 
+def test_many_words_are_numbered_as_few(store: Path) -> None:
+    """Many are looked up in a table of all words, few one by one: also folded, unknown ones and what is no text."""
+    words = ["the", "The", "kraken", "PASSENGERS", "", None, 7, "straße"] * 1000
+    table = {"first": words, "second": words[3:] + words[:3]}
+    many = colloc.score(store, table, show=["pmi"])
+    few = colloc.score(store, {name: values[:8] for name, values in table.items()}, show=["pmi"])
+    for name in many.names:
+        np.testing.assert_array_equal(many[name][:8], few[name])
+        np.testing.assert_array_equal(many[name], np.tile(few[name], 1000))
+    assert few["unknown"].tolist()[:3] == ["", "second", "both"]
+
+
 def test_other_columns_pass_through(store: Path) -> None:
     found = colloc.score(store, {"n": [1, 2], "first": ["the", "a"], "second": ["passengers", "boat"]}, show=["pmi"])
     assert found.names[:4] == ("n", "first", "second", "unknown")

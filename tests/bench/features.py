@@ -10,9 +10,12 @@ from __future__ import annotations
 import argparse
 import json
 import os
+import resource
+import subprocess
 import sys
 import tempfile
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 from time import perf_counter, process_time
 from typing import Any
@@ -20,7 +23,7 @@ from typing import Any
 import numpy as np
 
 from .running import Run, run
-from .subject import build
+from .subject import COLLOC, build
 from .texts import real_sources, write_real, write_stream
 
 WIDE = 10
@@ -111,25 +114,58 @@ def score_polars(store: Path, folder: Path) -> Answer:
 
     first, second = drawn_pairs(folder)
     given = pl.DataFrame({"first": pl.Series(first.tolist()), "second": pl.Series(second.tolist())})
-
-    def work() -> Any:
-        words = pl.read_parquet(folder / "words.parquet")
-        pairs = pl.read_parquet(folder / "pairs.parquet")
-        total = int(words["margin"].sum())
-        found = (
-            given.lazy()
-            .join(words.lazy().rename({"word": "first", "term": "a", "margin": "r"}), on="first", how="left")
-            .join(words.lazy().rename({"word": "second", "term": "b", "margin": "c"}), on="second", how="left")
-            .with_columns(low=pl.min_horizontal("a", "b"), high=pl.max_horizontal("a", "b"))
-            .join(pairs.lazy(), on=["low", "high"], how="left", maintain_order="left")
-            .with_columns(joint=pl.col("joint").fill_null(0))
-            .with_columns(pmi=(pl.col("joint") * total / (pl.col("r") * pl.col("c"))).log(2))
-            .with_columns(npmi=pl.col("pmi") / -(pl.col("joint") / total).log(2))
-        )
-        return found.collect()
-
-    made, times = timed(work)
+    made, times = timed(lambda: polars_scores(folder, given))
     return {**times, "pairs": len(made), "measures": 2, "sum": float(made["joint"].sum())}
+
+
+def polars_scores(folder: Path, given: Any) -> Any:
+    import polars as pl
+
+    words = pl.read_parquet(folder / "words.parquet")
+    pairs = pl.read_parquet(folder / "pairs.parquet")
+    total = int(words["margin"].sum())
+    found = (
+        given.lazy()
+        .join(words.lazy().rename({"word": "first", "term": "a", "margin": "r"}), on="first", how="left")
+        .join(words.lazy().rename({"word": "second", "term": "b", "margin": "c"}), on="second", how="left")
+        .with_columns(low=pl.min_horizontal("a", "b"), high=pl.max_horizontal("a", "b"))
+        .join(pairs.lazy(), on=["low", "high"], how="left", maintain_order="left")
+        .with_columns(joint=pl.col("joint").fill_null(0))
+        .with_columns(pmi=(pl.col("joint") * total / (pl.col("r") * pl.col("c"))).log(2))
+        .with_columns(npmi=pl.col("pmi") / -(pl.col("joint") / total).log(2))
+    )
+    return found.collect()
+
+
+# The same from one file to another
+
+
+def of_children(command: list[str]) -> Answer:
+    """Wall and processor seconds of a command from start to exit."""
+    wall, before = perf_counter(), resource.getrusage(resource.RUSAGE_CHILDREN)
+    subprocess.run(command, check=True, stdin=subprocess.DEVNULL)
+    after = resource.getrusage(resource.RUSAGE_CHILDREN)
+    cpu = after.ru_utime + after.ru_stime - before.ru_utime - before.ru_stime
+    return {"seconds": perf_counter() - wall, "cpu": cpu}
+
+
+def score_command(store: Path, folder: Path, *show: str) -> Answer:
+    given, scored = folder / "given.csv", folder / "scored.csv"
+    return {
+        **of_children([COLLOC, "score", str(store), str(given), "-w", str(WIDE), *show, "-o", str(scored), "--quiet"]),
+        "bytes": scored.stat().st_size,
+    }
+
+
+def score_polars_files(store: Path, folder: Path) -> Answer:
+    import polars as pl
+
+    def work() -> int:
+        polars_scores(folder, pl.read_csv(folder / "given.csv")).write_csv(folder / "scored.csv")
+        return (folder / "scored.csv").stat().st_size
+
+    size, times = timed(work)
+    return {**times, "bytes": size}
 
 
 # Vectors
@@ -155,19 +191,29 @@ def vectors_colloc(store: Path, folder: Path) -> Answer:
     return {**times, "quality": kept(matrix, made[2])}
 
 
-def vectors_sklearn(store: Path, folder: Path) -> Answer:
+def vectors_sklearn(store: Path, folder: Path, **options: Any) -> Answer:
     from sklearn.utils.extmath import randomized_svd
 
     matrix = ppmi(folder)
-    made, times = timed(lambda: randomized_svd(matrix, DIMENSIONS, random_state=0))
+    made, times = timed(lambda: randomized_svd(matrix, DIMENSIONS, random_state=0, **options))
     return {**times, "quality": kept(matrix, made[2])}
 
 
-def vectors_arpack(store: Path, folder: Path) -> Answer:
+def vectors_sklearn_single(store: Path, folder: Path) -> Answer:
+    """In single precision and with as many iterations as it takes to keep as much."""
+    from sklearn.utils.extmath import randomized_svd
+
+    matrix = ppmi(folder)
+    single = matrix.astype(np.float32)
+    made, times = timed(lambda: randomized_svd(single, DIMENSIONS, n_iter=10, n_oversamples=30, random_state=0))
+    return {**times, "quality": kept(matrix, made[2])}
+
+
+def vectors_scipy(store: Path, folder: Path, **options: Any) -> Answer:
     from scipy.sparse.linalg import svds
 
     matrix = ppmi(folder)
-    made, times = timed(lambda: svds(matrix, k=DIMENSIONS, rng=np.random.default_rng(0)))
+    made, times = timed(lambda: svds(matrix, k=DIMENSIONS, rng=np.random.default_rng(0), **options))
     return {**times, "quality": kept(matrix, made[2])}
 
 
@@ -273,10 +319,20 @@ TASKS: dict[str, dict[str, Callable[[Path, Path], Answer]]] = {
         "colloc, 3 measures": score_three,
         "polars": score_polars,
     },
+    "the same by CSV": {
+        "colloc score, all measures": score_command,
+        "colloc score, 3 measures": lambda store, folder: score_command(store, folder, "--show", "pmi,npmi,g2"),
+        "polars": score_polars_files,
+    },
     "vectors": {
         "colloc": vectors_colloc,
-        "scikit-learn randomized_svd": vectors_sklearn,
-        "scipy svds (arpack)": vectors_arpack,
+        "randomized_svd": vectors_sklearn,
+        "randomized_svd, 8 iterations": partial(vectors_sklearn, n_iter=8),
+        "randomized_svd, float32, 10 it.": vectors_sklearn_single,
+        "svds, arpack": partial(vectors_scipy, solver="arpack"),
+        "svds, arpack, tol 0.01": partial(vectors_scipy, solver="arpack", tol=0.01),
+        "svds, lobpcg, 20 it.": partial(vectors_scipy, solver="lobpcg", tol=0.01, maxiter=20),
+        "svds, propack, tol 0.01": partial(vectors_scipy, solver="propack", tol=0.01),
     },
     "harmonic window": {"colloc": weighted_colloc, "one weighted pass": weighted_pass},
     "join": {"colloc": join_colloc, "plain Python": join_python},
@@ -326,6 +382,8 @@ def prepare(folder: Path, store: Path | None) -> Path:
         folder / "words.parquet"
     )
     (folder / "words.json").write_text(json.dumps([texts[place] for place in order[:WORDS].tolist()]))
+    first, second = drawn_pairs(folder)
+    pl.DataFrame({"first": first.tolist(), "second": second.tolist()}).write_csv(folder / "given.csv")
     strong = colloc.pairs(store, window=1, directed=True, min_count=5, measure="npmi", limit=EXPRESSIONS)
     lines = [f"{row['first']} {row['second']}\t{row['npmi']}" for row in strong]
     (folder / "expressions.json").write_text(json.dumps(lines))

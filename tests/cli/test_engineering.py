@@ -51,6 +51,18 @@ def test_matrix_with_lists(run: Run, store: Path, tmp_path: Path) -> None:
     assert run("matrix", store, "-o", tmp_path / "no" / "m").code == 73
 
 
+def test_contexts_of_another_layer(run: Run, store: Path, tmp_path: Path) -> None:
+    ran = run("matrix", store, "-o", tmp_path / "m.npz", "--context-layer", "form", "--value", "count")
+    assert ran.code == 0, ran.err
+    assert "layer fold; " in ran.err
+    assert "context layer form" in ran.err
+    labels = json.loads((tmp_path / "m.labels.json").read_text())
+    assert "the" in labels["rows"]
+    assert "The" not in labels["rows"]
+    assert {"the", "The"} <= set(labels["columns"])
+    assert run("matrix", store, "-o", tmp_path / "m.npz", "--context-layer", "form", "--unit").code == 2
+
+
 def test_vectors_written_and_judged(run: Run, store: Path, tmp_path: Path) -> None:
     ran = run("vectors", store, "-d", 5, "-o", tmp_path / "v")
     assert ran.code == 0, ran.err
