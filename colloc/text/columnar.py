@@ -12,6 +12,7 @@ import datetime
 import decimal
 import json
 import math
+import os
 import tempfile
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
@@ -28,6 +29,8 @@ ROWS = 1024
 """Rows read at once, at most."""
 LARGEST_BATCH = 2**29
 """Bytes that the strings of a batch can come to, whatever the file does."""
+STRINGS_AT_ONCE = 2**22
+"""Bytes of rows that are made values of Python at once, about."""
 _IN_MEMORY = 2**26
 _LARGEST_INTEGER = 2**63 - 1
 _PARQUET = b"PAR1"
@@ -63,11 +66,12 @@ def read(opened: Opened, skip: int) -> Iterator[Document]:
 @contextmanager
 def _seekable(opened: Opened) -> Iterator[Any]:
     """The file itself, or a temporary copy where it is packed or comes through a pipe."""
-    if opened.path != STANDARD_INPUT and not opened.is_packed_by_name:
-        with open(opened.path, "rb") as file:
-            if file.seekable():
-                yield file
-                return
+    if opened.path != STANDARD_INPUT and not opened.is_packed_by_name and os.path.isfile(opened.path):
+        import pyarrow as pa
+
+        with pa.OSFile(opened.path) as file:
+            yield file
+        return
     with tempfile.SpooledTemporaryFile(_IN_MEMORY) as copy:
         for chunk in opened.chunks():
             copy.write(chunk)
@@ -79,7 +83,7 @@ def _documents(opened: Opened, file: Any, skip: int) -> Iterator[Document]:
     settings = opened.settings
     record = skip
     characters = 0
-    for schema, first, batch in _batches(opened, file, skip):
+    for schema, batch in _bounded(_batches(opened, file, skip), skip):
         if record == skip:
             _check_columns(opened, schema)
         columns = _columns(batch)
@@ -88,7 +92,7 @@ def _documents(opened: Opened, file: Any, skip: int) -> Iterator[Document]:
         id_column = settings.id_column or "id"
         others = [(name, value) for name, value in columns if name not in (settings.text_column, id_column)]
         identifier_of = columns[names.index(id_column)][1] if id_column in names else None
-        for row in range(max(record - first, 0), batch.num_rows):
+        for row in range(batch.num_rows):
             text = text_of(row)
             if not isinstance(text, str):
                 raise _wrong(opened, record, f"column {settings.text_column!r} holds no text; leave the row out")
@@ -103,6 +107,19 @@ def _documents(opened: Opened, file: Any, skip: int) -> Iterator[Document]:
             metadata = {name: _value(opened, record, name, value(row)) for name, value in others}
             yield record_document(opened, record, text, None if identifier == "" else identifier, metadata)
             record += 1
+
+
+def _bounded(batches: Iterator[tuple[Any, int, Any]], skip: int) -> Iterator[tuple[Any, Any]]:
+    """Schema and rows from ``skip`` on, a few at a time, so that not all of a batch are Python's strings at once."""
+    import pyarrow as pa
+
+    for schema, first, batch in batches:
+        begin = max(skip - first, 0)
+        rows = max(batch.num_rows * STRINGS_AT_ONCE // max(batch.nbytes, 1), 1)
+        if any(pa.types.is_dictionary(column.type) for column in batch.columns):
+            rows = max(batch.num_rows, 1)  # their strings are made once for all rows
+        for at in range(begin, batch.num_rows, rows):
+            yield schema, batch.slice(at, rows)
 
 
 def _wrong(opened: Opened, record: int, message: str) -> DataError:

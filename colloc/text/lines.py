@@ -10,7 +10,7 @@ from colloc.errors import DataError
 from colloc.records import Document, MetaValue
 from colloc.text.opening import Opened
 
-PIECE = 2**20
+PIECE = 2**21
 """Code points in a piece of a record's text."""
 MOST_COLUMNS = 4096
 """Columns of a record; a table with more is no table of documents."""

@@ -129,6 +129,8 @@ class _Handler:
         """Says what makes the file unreadable, and where; set by who has the parser."""
         self._paths = paths
         self._largest = largest
+        self._enough = min(_UNDECIDED, largest)
+        """Characters that are handed on at once."""
         self._header: _Header | None = None
         self._header_depth = 0
         self._header_size = 0
@@ -149,7 +151,8 @@ class _Handler:
             self._in_header(name, attributes)
         elif self._body is not None:
             self._body.start(name, attributes)
-            self._drain()
+            if self._body.size > self._enough or not self._announced:
+                self._drain()
         elif name == "teiHeader":
             self._header = _Header() if self._paths else None
             self._header_size = 0
@@ -182,7 +185,8 @@ class _Handler:
                 self._header.text(data)
         elif self._body is not None:
             self._body.text(data)
-            self._drain()
+            if self._body.size > self._enough or not self._announced:
+                self._drain()
 
     def end(self, name: str) -> None:
         if self._header_depth:
@@ -225,7 +229,7 @@ class _Handler:
                 return
             self._announce(body.marks_words)
             body.decide(self._annotated)
-        if final or body.size > min(_UNDECIDED, self._largest):
+        if final or body.size > self._enough:
             piece = body.take(self._annotated)
             if piece:
                 self.queue.append(piece)

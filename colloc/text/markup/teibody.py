@@ -31,10 +31,11 @@ _NEW_PARAGRAPH = "# newpar\n"
 class _Sink:
     """Text, and lines of words beside it as long as these may be wanted."""
 
-    def __init__(self, lines: bool) -> None:
+    def __init__(self, lines: bool = True, text: bool = True) -> None:
         self.flow = Flow()
         self.lines: list[str] = []
         self.with_lines = lines
+        self.with_text = text
         self.ready = 0
         """Lines up to the end of the last whole sentence."""
         self.size = 0
@@ -47,9 +48,13 @@ class _Sink:
 
     def text(self, data: str) -> None:
         """Text outside of words."""
-        self.flow.text(data)
         self.size += len(data)
+        if self.with_text:
+            self.flow.text(data)
         if self.with_lines:
+            if not self._rest and data.isspace():
+                self._gap = True
+                return
             self._rest.append(data)
             self._rest_size += len(data)
             if self._rest_size > _LONGEST_REST:
@@ -75,10 +80,12 @@ class _Sink:
 
     def word(self, form: str, lemma: str, word_class: str, join: str) -> None:
         """A marked word."""
-        self.flow.text(form)
+        if self.with_text:
+            self.flow.text(form)
         if not self.with_lines:
             return
-        self._divide()
+        if self._rest:
+            self._divide()
         if join in ("left", "both"):
             self._gap = False
         self._put(form, lemma, word_class)
@@ -146,7 +153,7 @@ class Body:
         self.marks_words = annotated
         self.size = 0
         """Characters waiting to be taken."""
-        self._sinks = [_Sink(True)]
+        self._sinks = [_Sink()]
         self._aside: list[_Sink] = []
         self._depth = 0
         self._left_out = 0
@@ -160,7 +167,7 @@ class Body:
     def decide(self, annotated: bool) -> None:
         """Whether words or text will be taken."""
         for sink in (*self._sinks, *self._aside):
-            sink.with_lines = annotated
+            sink.with_lines, sink.with_text = annotated, not annotated
 
     def at_end(self, name: str) -> bool:
         """Whether an end tag is that of the body itself."""
@@ -180,7 +187,7 @@ class Body:
                 self.marks_words |= name == "w"
                 self._word_depth, self._word, self._word_attributes = self._depth, [], attributes
         elif name in _ASIDE:
-            self._sinks.append(_Sink(self._sinks[0].with_lines))
+            self._sinks.append(_Sink(self._sinks[0].with_lines, self._sinks[0].with_text))
         elif name in _BLOCKS:
             self._end_paragraph()
         elif name in ("lb", "l") and attributes.get("break") != "no":
@@ -221,7 +228,9 @@ class Body:
 
     def _end_word(self, name: str) -> None:
         attributes = self._word_attributes
-        form = "".join("".join(self._word).split())
+        form = "".join(self._word)
+        if not form.isalnum():
+            form = "".join(form.split())
         self._word_depth = 0
         part = attributes.get("part", "N")
         if part in ("I", "M", "F") and name == "w":
@@ -273,4 +282,6 @@ class Body:
 
 def _field(value: str | None, otherwise: str) -> str:
     """An attribute as a column: without tabs and line ends."""
-    return "_".join((value or "").split()) or otherwise
+    if value is None:
+        return otherwise
+    return value if value.isalnum() else "_".join(value.split()) or otherwise

@@ -8,7 +8,7 @@ Names come without their namespaces, but for ``xml:id`` and its like.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from typing import NoReturn, Protocol
 from xml.parsers import expat
 
@@ -17,6 +17,8 @@ from colloc.text.opening import Opened
 
 DEEPEST = 256
 """Elements inside each other; libxml2 has the same limit."""
+_MOST_KNOWN, _LONGEST_KNOWN = 512, 128
+"""How many names are remembered, and of how many characters."""
 _BUFFER = 2**16
 _STEP = 2**16
 LARGEST_TAG = 2**20
@@ -57,6 +59,7 @@ class XmlParser:
         self._depth = 0
         self._since = 0
         """Characters fed since the last event."""
+        self._names, self._attributes = _Known(_local), _Known(_attribute)
         # No shared dictionary of names: a file with endless different names must not fill it.
         parser = expat.ParserCreate(namespace_separator=" ", intern={})
         parser.buffer_text = True
@@ -111,12 +114,13 @@ class XmlParser:
         self._depth += 1
         if self._depth > DEEPEST:
             self.fail(f"more than {DEEPEST} elements inside each other; no text needs that, check the file")
-        self._handler.start(_local(name), {_attribute(key): value for key, value in attributes.items()})
+        names = self._attributes
+        self._handler.start(self._names[name], {names[key]: value for key, value in attributes.items()})
 
     def _end(self, name: str) -> None:
         self._since = 0
         self._depth -= 1
-        self._handler.end(_local(name))
+        self._handler.end(self._names[name])
 
     def _text(self, data: str) -> None:
         self._since = 0
@@ -133,6 +137,19 @@ class XmlParser:
 
     def _external(self, *_: object) -> int:
         self._refuse_entity("uses an entity of another file")
+
+
+class _Known(dict[str, str]):
+    """What names are made into; some are remembered."""
+
+    def __init__(self, make: Callable[[str], str]) -> None:
+        self._make = make
+
+    def __missing__(self, name: str) -> str:
+        made = self._make(name)
+        if len(self) < _MOST_KNOWN and len(name) < _LONGEST_KNOWN:
+            self[name] = made
+        return made
 
 
 def _local(name: str) -> str:

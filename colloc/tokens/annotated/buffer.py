@@ -68,8 +68,9 @@ class Slices:
 
     def are(self, buffer: Buffer, text: bytes) -> NDArray[np.bool_]:
         """Which of them hold ``text`` (of at most eight bytes) and nothing else."""
-        wanted = np.uint64(int.from_bytes(text, "little"))
-        return np.logical_and(buffer.words[self.starts] & MASKS[len(text)] == wanted, self.lengths == len(text))
+        same: NDArray[np.bool_] = self.lengths == len(text)
+        same &= buffer.words[self.starts] & MASKS[len(text)] == np.uint64(int.from_bytes(text, "little"))
+        return same
 
 
 def gather(data: UInt8Array, slices: Slices) -> tuple[UInt8Array, Int64Array]:
