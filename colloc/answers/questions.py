@@ -7,7 +7,6 @@ from dataclasses import asdict, dataclass
 from typing import Any, cast, get_args
 
 from colloc.answers.tables import Convention, TableReader
-from colloc.counts.tallying import cached_tally
 from colloc.counts.words import slice_word_counts
 from colloc.errors import DataError, UsageError
 from colloc.measures.catalogue import MEASURES, find_ranking
@@ -168,6 +167,8 @@ def ask(
     progress: Any = None,
 ) -> Question:
     """Resolve the options, find or count the tally, and check the measures against the convention."""
+    from colloc.counts.tallying import cached_tally  # lines resolve options too, and need no machinery of counting
+
     spec, margins = resolve_spec(store, options)
     convention = Convention(margins=margins, directed=options.directed, spanned=options.spanned)
     convention.check(spec.kind)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import subprocess
 import sys
 from pathlib import Path
@@ -64,16 +65,27 @@ def test_every_option_of_every_command_as_typer_has_it(name: str) -> None:
                 assert outcome(own, context, value) == outcome(other, context, value), (own.name, value)
 
 
-def test_a_question_loads_no_converter(tmp_path: Path) -> None:
-    """What the module is for: an ordinary question leaves the converter's library alone."""
-    text, store = tmp_path / "text.txt", tmp_path / "text.colloc"
-    text.write_text("A cup of tea. A cup of coffee.\n" * 3, encoding="utf-8")
-    assert main(["build", str(store), str(text), "--quiet"]) == 0
+@pytest.fixture(scope="module")
+def tea(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    folder = tmp_path_factory.mktemp("tea")
+    text = "A cup of tea. The salt of the sea. No boat, no rope."
+    records = [json.dumps({"id": str(number), "text": text}) for number in range(6)]
+    (folder / "tea.jsonl").write_text("\n".join(records), encoding="utf-8")
+    assert main(["build", str(folder / "tea.colloc"), str(folder / "tea.jsonl"), "--quiet"]) == 0
+    return folder / "tea.colloc"
+
+
+@pytest.mark.parametrize(
+    "asked", ["info", "words -f csv", "lines tea", "lines tea cup --best", "around tea -f json", "explain tea cup"]
+)
+def test_short_questions_load_nothing_heavy(tea: Path, asked: str) -> None:
+    """What the module is for, and the tails of distributions written out: loading took longer than answering."""
+    name, *others = asked.split()
     code = (
         "import sys; from colloc.cli.app import main; "
-        f"code = main(['words', {str(store)!r}, 'tea', '-n', '5', '--quiet', '--format', 'csv']); "
-        "sys.exit(code or ('pydantic' in sys.modules))"
+        f"code = main([{name!r}, {str(tea)!r}, *{others!r}, '--quiet']); "
+        "print(code, [name for name in ('pydantic', 'scipy', 'numba', 'rich', 'pyarrow') if name in sys.modules])"
     )
     run = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)
     assert run.returncode == 0, run.stderr
-    assert run.stdout.splitlines()[1].startswith("tea,3,")
+    assert run.stdout.splitlines()[-1] == "0 []"

@@ -138,7 +138,7 @@ def explain(
     """Show the evidence for one pair of words, and what the text can and cannot bear.
 
     One card with the table, probabilities and surprisal, all measures, intervals, spread
-    over documents, positions, slices, forms and example lines.
+    over documents, positions, relations (of annotated text), slices, forms and example lines.
     """
     from colloc.verbs import evidence
 
