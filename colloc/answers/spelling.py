@@ -13,6 +13,7 @@ from colloc.store.connection import Store
 
 NAMED = 10
 """Unknown words that a message names."""
+_CURLY = "\u2019"
 _COMPARED = 5000
 """Candidates that are compared letter by letter, the most frequent: some hundredths of a second."""
 _ALIKE = 0.75
@@ -32,6 +33,18 @@ def near_spellings(store: Store, layer: str, word: str, most: int = 3) -> list[s
         chosen = np.sort(np.argsort(-tokens, kind="stable")[:_COMPARED]).tolist()
         texts = [texts[place] for place in chosen]
     return difflib.get_close_matches(wanted, texts, n=most, cutoff=_ALIKE)
+
+
+def apostrophe_twins(store: Store) -> int:
+    """How many folded words stand in a store with a curly apostrophe as well as with a straight one.
+
+    None where its folding takes them for one (``apostrophes``), or where it has no layer ``fold``.
+    """
+    if "fold" not in vocabulary.layer_names(store) or vocabulary.brought_to(store, "fold", _CURLY) != _CURLY:
+        return 0
+    curly = vocabulary.term_texts(store, "fold", vocabulary.terms_matching(store, "fold", f"*{_CURLY}*"))
+    straight = vocabulary.term_numbers(store, "fold", [text.replace(_CURLY, "'") for text in curly if text != _CURLY])
+    return int(np.count_nonzero(straight >= 0))
 
 
 def meant(near: Sequence[str]) -> str:

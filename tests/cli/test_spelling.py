@@ -74,6 +74,27 @@ def test_the_most_frequent_are_compared_where_there_are_many(store: Path, monkey
         assert near_spellings(opened, "fold", "fogy") == []
 
 
+def test_two_kinds_of_apostrophes_are_told_at_build(run: Run, tmp_path: Path) -> None:
+    (tmp_path / "a.txt").write_text("Don’t go. Don't stay. It’s late, o'clock; it's ’tis.", encoding="utf-8")
+    apart = run("build", tmp_path / "apart", tmp_path / "a.txt")
+    assert apart.err == (
+        "colloc: 2 words stand with a curly and with a straight apostrophe and are counted apart; "
+        "`build --fold apostrophes` takes them for one\n"
+    )
+    assert run("build", tmp_path / "quiet", tmp_path / "a.txt", "-q").err == ""
+    joined = run("build", tmp_path / "joined", tmp_path / "a.txt", "--fold", "apostrophes")
+    assert joined.err == ""
+    counts = {
+        store: dict(zip(*(colloc.words(tmp_path / store)[name].tolist() for name in ("word", "count")), strict=True))
+        for store in ("apart", "joined")
+    }
+    assert (counts["apart"]["don't"], counts["apart"]["don’t"], counts["joined"]["don't"]) == (1, 1, 2)
+    assert "don’t" not in counts["joined"]
+    # asked for in either spelling, and kept apart as they are written
+    assert run("around", tmp_path / "joined", "DON’T", "--min-count", 1, "--any-strength").code == 0
+    assert set(colloc.words(tmp_path / "joined", layer="form")["word"]) >= {"Don’t", "Don't"}
+
+
 def test_messages_name_them(run: Run, store: Path) -> None:
     with open_for_reading(store) as opened:
         assert not_seen(opened, "fold", "harbor").endswith(

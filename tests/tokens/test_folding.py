@@ -18,6 +18,7 @@ from colloc.tokens.folding import fold, folder
 from colloc.tokens.folding.additions import ADDITIONS
 
 SPELLINGS = [
+    ("apostrophes", "Don’t don't O‘Clock м\u02bcята ‛tis", "don't don't o'clock м'ята 'tis"),
     ("arabic", "مُحَمَّدٌ", "محمد"),
     ("arabic", "الإســـلام", "الاسلام"),
     ("arabic", "آثار أثر ٱلله", "اثار اثر الله"),
@@ -66,7 +67,7 @@ def test_several_together() -> None:
 
 
 def test_unknown_name() -> None:
-    with pytest.raises(UsageError, match="unknown folding 'klingon': choose from arabic, hebrew"):
+    with pytest.raises(UsageError, match="unknown folding 'klingon': choose from apostrophes, arabic, hebrew"):
         folder(("klingon",))
 
 

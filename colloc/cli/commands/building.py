@@ -112,7 +112,9 @@ def build(
     ] = "drop",
     folding: Annotated[
         list[str] | None,
-        typer.Option("--fold", metavar="NAMES", help="What folds besides case: arabic, turkish, sharp-s, width, ..."),
+        typer.Option(
+            "--fold", metavar="NAMES", help="What folds besides case: apostrophes, arabic, turkish, sharp-s, width, ..."
+        ),
     ] = None,
     lemma: Annotated[
         str | None, typer.Option("--lemma", metavar="LANG", help="Dictionary that gives lemmas to words without.")
@@ -198,6 +200,22 @@ def build(
             progress=progress,
         )
     _tell(done, quiet)
+    if not quiet and not done.already_complete:
+        _tell_apostrophes(store)
+
+
+def _tell_apostrophes(path: Path) -> None:
+    """One line where the same words are written with two kinds of apostrophes, with the option that joins them."""
+    from colloc.answers.spelling import apostrophe_twins
+    from colloc.verbs.opening import reading
+
+    with reading(path) as store:
+        twins = apostrophe_twins(store)
+    if twins:
+        remark(
+            f"colloc: {twins:,} words stand with a curly and with a straight apostrophe and are counted apart; "
+            "`build --fold apostrophes` takes them for one"
+        )
 
 
 def _first_tally(

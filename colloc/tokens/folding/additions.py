@@ -96,6 +96,10 @@ ADDITIONS: Mapping[str, Addition] = {
         "fullwidth and halfwidth forms are the ordinary ones (ＡＢＣ, ｶﾀｶﾅ, ﾡ)",
         before=lambda text: unicodedata.normalize("NFC", text.translate(_width_table())),
     ),
+    "apostrophes": Addition(
+        "curly apostrophes and the letter apostrophe are straight ones: don’t is don't",
+        after=_translation(dict.fromkeys("\u2018\u2019\u201b\u02bc", "'")),
+    ),
     "arabic": Addition(
         "vowel signs and tatweel go; alef with hamza or madda is alef, alef maksura is yeh, teh marbuta is heh",
         after=_translation(
