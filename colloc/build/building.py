@@ -150,13 +150,15 @@ def check_segmenting(settings: SegmentSettings) -> None:
 def fill(store: Store, inputs: Sequence[str], limits: Resources, progress: Progress | None, read: ReadSettings) -> Read:
     """Read what is missing and count what is not counted; the caller makes it durable."""
     layer = TallySpec.from_json(facts.get(store, "default_tally")).layer
-    ensure_layer(store, layer)
+    segment = SegmentSettings.from_json(facts.get(store, "segment_settings"))
+    for name in [layer] if segment.lemma is None else [layer, "lemma"]:
+        ensure_layer(store, name)
     with scratch_folder(store.path, limits.temp) as folder:
         done = read_into(
             store,
             inputs,
             read,
-            SegmentSettings.from_json(facts.get(store, "segment_settings")),
+            segment,
             keep_text=facts.get(store, "keep_text") == "1",
             resources=limits,
             folder=folder,

@@ -42,7 +42,6 @@ def test_turkish_casing(tmp_path: Path) -> None:
 def test_lemmas_are_those_of_the_dictionary(tmp_path: Path) -> None:
     """Beside the library itself, asked for every token (the store asks once for each type)."""
     path = build(tmp_path, [TEXT * 3], SegmentSettings(lemma="en"))
-    colloc.tally(path, layer="lemma")
     counts = {row["word"]: row["count"] for row in colloc.words(path, layer="lemma").to_dicts()}
     tokens = [token.strip(".;:") for token in (TEXT * 3).split()]
     assert counts == Counter(lemmatize(token, lang="en") for token in tokens)
@@ -52,6 +51,21 @@ def test_lemmas_are_those_of_the_dictionary(tmp_path: Path) -> None:
     assert {("ship", "sail")} <= set(zip(pairs["first"], pairs["second"], strict=True)) | set(
         zip(pairs["second"], pairs["first"], strict=True)
     )
+
+
+def test_added_words_get_lemmas_too(tmp_path: Path) -> None:
+    """What a store answers after `add` is what one build of both texts answers, in the layer and in its tables."""
+    path = build(tmp_path, [TEXT], SegmentSettings(lemma="en"))
+    colloc.tally(path, layer="lemma", window=2)
+    colloc.add(path, documents=["Mice left the houses. She sees ships."])
+    (tmp_path / "whole").mkdir()
+    whole = build(tmp_path / "whole", [TEXT, "Mice left the houses. She sees ships."], SegmentSettings(lemma="en"))
+    for answer in (
+        lambda store: colloc.words(store, layer="lemma", limit=0),
+        lambda store: colloc.pairs(store, layer="lemma", window=2, min_count=1, limit=0),
+    ):
+        assert answer(path).to_dicts() == answer(whole).to_dicts()
+    assert {"mouse", "house"} <= set(colloc.words(path, layer="lemma", limit=0)["word"])
 
 
 def test_without_a_language_there_are_no_lemmas(tmp_path: Path) -> None:
