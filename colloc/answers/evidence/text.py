@@ -27,7 +27,7 @@ def card_lines(card: Evidence, columns: int) -> list[str]:
     notes = card.notes()
     sections: list[tuple[str, list[str]]] = [
         ("Table (observed, expected if independent)", _cells(card) + _wrapped(notes["table"], columns - 2)),
-        ("Information", _information(card)),
+        ("Information", _information(card, columns)),
         ("Measures", _measures(card, columns)),
         ("Intervals (95 %)", _intervals(card)),
         ("Chance", _chance(card, columns)),
@@ -70,7 +70,7 @@ def _cells(card: Evidence) -> list[str]:
     return _grid(names, rows, (False, True, True))
 
 
-def _information(card: Evidence) -> list[str]:
+def _information(card: Evidence, columns: int) -> list[str]:
     lines = []
     for row in card.information:
         of, given = shown_text(row["of"]), shown_text(row["given"])
@@ -84,17 +84,19 @@ def _information(card: Evidence) -> list[str]:
         )
     if card.mutual_information is not None:
         found = card.mutual_information
-        lines.append(
+        lines += _wrapped(
             f"{found['share']:.2g} of the table's mutual information "
-            f"({_number(found['table_bits'], 3)} bits as counted, much of it noise)"
+            f"({_number(found['table_bits'], 3)} bits as counted, much of it noise)",
+            columns - 2,
         )
     return lines
 
 
 def _measures(card: Evidence, columns: int) -> list[str]:
+    places = [f"{place:,}" if place else "-" for place in card.measures["rank"].tolist()]
     rows = [
-        (row["measure"], measure_text(row["value"], row["measure"]), row["unit"], rank_text(row))
-        for row in card.measures
+        (row["measure"], measure_text(row["value"], row["measure"]), row["unit"], place)
+        for row, place in zip(card.measures, places, strict=True)
     ]
     lines = _grid(("measure", "value", "unit", "rank"), rows, (False, True, False, True))
     if not card.compared["compared"]:
@@ -187,11 +189,11 @@ def _slice(table: Columns, counted: str) -> list[str]:
             _count(row["expected"]),
             *(_number(row[rate], 1) for rate in rates.values()),
             _number(row["pmi"], 2),
-            f"{_number(row['pmi_low'], 2)} .. {_number(row['pmi_high'], 2)}" if row["joint"] else "-",
+            f"{_number(row['pmi_low'], 2)}..{_number(row['pmi_high'], 2)}" if row["joint"] else "-",
         )
         for row in table
     ]
-    names = ("", "documents", "joint", "expected", *rates, "pmi", "asymptotic")
+    names = ("", "docs", "joint", "expected", *rates, "pmi", "asymptotic")
     return _grid(names, rows, (False, *[True] * (len(names) - 2), False))
 
 
@@ -255,11 +257,6 @@ def measure_text(value: float, name: str) -> str:
     if value == 0 and name.endswith("_p"):
         return LEAST_PROBABILITY
     return f"{value:.4g}" if 0 < abs(value) < 0.1 else _number(value)
-
-
-def rank_text(row: dict[str, Any]) -> str:
-    """The rank of a measure as a row of ``measures`` has it."""
-    return f"{row['rank']:,} of {row['compared']:,}" if row["rank"] else "-"
 
 
 def p_text(tests: Mapping[str, Any]) -> str:
