@@ -143,7 +143,8 @@ def test_wrong_questions(run: Run, store: Path, arguments: list[str], words: str
 def test_what_was_never_seen(run: Run, store: Path) -> None:
     ran = run("around", store, "zeppelin")
     assert (ran.code, ran.out) == (1, "")
-    assert f"'zeppelin' never occurs in layer 'fold'; `colloc words {store} 'zep*'` lists words that begin like it" in ran.err
+    listing = f"`colloc words {store} 'zep*'` lists words that begin like it"
+    assert f"'zeppelin' never occurs in layer 'fold'; {listing}" in ran.err
     gone = run("remove", store, "no-such-document")
     assert gone.code == 1
     assert "has no document 'no-such-document'; `colloc info --documents` lists them" in gone.err
