@@ -92,14 +92,18 @@ def _check(store: Store, other: Store) -> None:
 
 
 def _copy(store: Store, other: Store, limit: int) -> None:
-    """Append everything of ``other``, block by block."""
+    """Append everything of ``other``, in one transaction: documents never stand there without their words and text."""
+    with store.transaction():
+        _append_all(store, other, limit)
+
+
+def _append_all(store: Store, other: Store, limit: int) -> None:
     registry = TypeRegistry(store, limit=limit)
     token_shift = stream.token_count(store)
     character_shift = texts.next_character(store)
     sources: dict[int, int] = {}
-    with store.transaction():
-        for source in source_list(other):
-            sources[source.number] = copy_source(store, source)
+    for source in source_list(other):
+        sources[source.number] = copy_source(store, source)
     numbers: dict[int, int] = {}
     next_number = documents.next_document(store)
     rows = []
@@ -115,19 +119,16 @@ def _copy(store: Store, other: Store, limit: int) -> None:
             )
         )
         next_number += 1
-    with store.transaction():
-        documents.append_documents(store, rows)
+    documents.append_documents(store, rows)
     mapping = _type_map(store, other, registry)
-    with store.transaction():
-        values = {
-            name: annotation.number_values(store, name, annotation.values_of(other, name)) for name in annotation.VALUED
-        }
+    values = {
+        name: annotation.number_values(store, name, annotation.values_of(other, name)) for name in annotation.VALUED
+    }
     for head in stream.block_heads(other):
         _copy_block(store, other, head.number, mapping, values, numbers, character_shift)
-    with store.transaction():
-        texts.append_packed(store, character_shift, list(texts.packed_blocks(other)))
-        # A merge that begins again finds those that it has copied already, and leaves them out.
-        decisions.append(store, (decision for _, decision in decisions.iterate(other)))
+    texts.append_packed(store, character_shift, list(texts.packed_blocks(other)))
+    # A merge that begins again finds those that it has copied already, and leaves them out.
+    decisions.append(store, (decision for _, decision in decisions.iterate(other)))
 
 
 _TYPES_AT_ONCE = 65_536
@@ -138,8 +139,7 @@ def _type_map(store: Store, other: Store, registry: TypeRegistry) -> UInt32Array
     parts = [np.zeros(0, dtype=np.uint32)]
     for start in range(0, vocabulary.type_count(other), _TYPES_AT_ONCE):
         keys = vocabulary.type_keys(other, start, start + _TYPES_AT_ONCE)
-        with store.transaction():
-            parts.append(registry.number(keys))
+        parts.append(registry.number(keys))
     return np.concatenate(parts)
 
 
@@ -165,11 +165,10 @@ def _copy_block(
         document_numbers=np.array([numbers.get(int(old), -1) for old in block.document_numbers], dtype=np.int64),
         anchors=Anchors(block.anchors.tokens, block.anchors.characters + character_shift),
     )
-    with store.transaction():
-        stream.append_block(store, copied, np.sort(mapping[stream.block_types(other, number)]))
-        for name in stream.column_names(other, number):
-            column = stream.read_column(other, number, name)
-            if name in values:
-                column = narrow(values[name][column])
-            stream.append_column(store, next_block, name, column)
-        annotation.copy_rests(store, other, number, next_block, numbers)
+    stream.append_block(store, copied, np.sort(mapping[stream.block_types(other, number)]))
+    for name in stream.column_names(other, number):
+        column = stream.read_column(other, number, name)
+        if name in values:
+            column = narrow(values[name][column])
+        stream.append_column(store, next_block, name, column)
+    annotation.copy_rests(store, other, number, next_block, numbers)

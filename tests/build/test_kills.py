@@ -92,6 +92,25 @@ def test_a_few_kills(prepared: dict[str, Any], tmp_path: Path, what: str) -> Non
     assert any([kill_once(prepared, what, tmp_path / str(number), moments.uniform(0.3, 0.95)) for number in range(3)])
 
 
+def test_a_merge_killed_before_the_text_is_copied(prepared: dict[str, Any], tmp_path: Path) -> None:
+    """Documents must never stand in the store without their words and text."""
+    start, expected, _ = prepared["merge"]
+    shutil.copytree(start, tmp_path / "m")
+    script = (
+        "import os, sys\n"
+        "from pathlib import Path\n"
+        "from colloc.store import texts\n"
+        "texts.append_packed = lambda *_: os._exit(9)\n"
+        "from tests.build.killed import change\n"
+        "change('merge', Path(sys.argv[1]))\n"
+    )
+    assert subprocess.run([sys.executable, "-c", script, str(tmp_path / "m")], cwd=ROOT).returncode == 9
+    with open_for_reading(tmp_path / "m" / "store") as opened:
+        assert check(opened) == []
+    change("merge", tmp_path / "m")
+    assert content(tmp_path / "m" / "store", by_text=True) == expected
+
+
 @pytest.mark.long
 @pytest.mark.parametrize("what", CHANGES)
 def test_many_kills(prepared: dict[str, Any], tmp_path: Path, what: str) -> None:
