@@ -12,8 +12,9 @@ from colloc.answers.spelling import not_seen
 from colloc.errors import DataError, NotSeenError, UsageError
 from colloc.store import vocabulary
 from colloc.store.connection import Store
-from colloc.store.decisions import Decision, Key, Kind, key_of
+from colloc.store.decisions import Decision, Key, key_of
 from colloc.store.decisions import Example as Example
+from colloc.store.decisions import Kind as Kind
 from colloc.store.decisions import Verdict as Verdict
 
 OPEN = "*"

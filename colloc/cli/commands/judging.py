@@ -14,7 +14,7 @@ from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
 if TYPE_CHECKING:
-    from colloc.answers.judging.matters import Verdict
+    from colloc.answers.judging.matters import Kind, Verdict
 
 MORE_CANDIDATES = 200
 _RECORDED_AS = {
@@ -22,7 +22,7 @@ _RECORDED_AS = {
     "directed": "a directed pair: the second word after the first",
     "expression": "an expression: the words in a row",
 }
-_COUNTED = {
+_COUNTED: dict[Kind, tuple[str, str]] = {
     "pair": ("pair", "pairs"),
     "directed": ("directed pair", "directed pairs"),
     "expression": ("expression", "expressions"),
@@ -174,7 +174,7 @@ def _take(store: Path, path: Path, by: str | None, override: bool, quiet: bool) 
         return
     filled = judging.take_sheet(store, sheet_rows(path), by=by or "", override=override)
     kinds = Counter(one.kind for one in filled.decisions)
-    told = ", ".join(f"{kinds[kind]} {_COUNTED[kind][kinds[kind] != 1]}" for kind in _COUNTED if kinds[kind])
+    told = ", ".join(f"{kinds[kind]} {names[kinds[kind] != 1]}" for kind, names in _COUNTED.items() if kinds[kind])
     recorded = f"{len(filled.decisions)} decisions recorded" + (f" ({told})" if told else "")
     remark(f"{recorded}, {filled.unchanged} unchanged, {filled.empty} open", quiet=quiet)
     for conflict in filled.conflicts:
