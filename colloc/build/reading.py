@@ -80,6 +80,9 @@ def read_into(
         For input that cannot be read, naming file and line; what was committed stays.
     """
     sources = _Sources(store, list(open_sources(inputs, read)))
+    if progress is not None:
+        # The first time on a machine loops are compiled, which takes some seconds.
+        progress(0.0, 0, "preparing")
     # Before processes are made: they inherit what is loaded.
     prefer_compiled(sources.bytes_left > WORTH_BYTES)
     with SeenHashes(store, folder) as seen:
