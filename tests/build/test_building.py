@@ -80,8 +80,11 @@ def test_vocabularies_that_spill_change_nothing(
     assert content(tmp_path / "tight") == content(tmp_path / "roomy")
 
 
-def test_one_huge_line_in_bounded_memory(tmp_path: Path) -> None:
+@pytest.mark.parametrize("switch", ["0", "1"])
+def test_one_huge_line_in_bounded_memory(tmp_path: Path, switch: str, monkeypatch: pytest.MonkeyPatch) -> None:
     """A line of 24 MB: what it takes beyond a line of 1 MB is no more than a few batches."""
+    # The library of compiled loops takes its 100 MB however long the line is.
+    monkeypatch.setenv("COLLOC_COMPILED", switch)
     peaks = []
     for megabytes in (1, 24):
         (tmp_path / f"{megabytes}.txt").write_text("the sea and the fog " * (megabytes * 50_000), encoding="ascii")
