@@ -19,6 +19,7 @@ from typer.core import TyperGroup
 from typer.exceptions import Abort, TyperException
 from typer.main import get_command
 
+from colloc.cli.groups import spread
 from colloc.cli.output import ReaderGone, remark
 from colloc.cli.quick_values import with_quick_values
 from colloc.errors import CollocError, InputOutputError, LockedError, StoreDamagedError
@@ -78,7 +79,7 @@ class CommandTable(TyperGroup):
         if cmd_name not in self._functions:
             return None
         alone = typer.Typer(add_completion=False, rich_markup_mode=None, pretty_exceptions_enable=False)
-        alone.command(cmd_name, context_settings=CONTEXT)(self._functions[cmd_name])
+        alone.command(cmd_name, context_settings=CONTEXT)(spread(self._functions[cmd_name]))
         return with_quick_values(get_command(alone))
 
     def format_commands(self, ctx: Any, formatter: Any) -> None:

@@ -7,16 +7,17 @@ from typing import Annotated, Literal
 
 import typer
 
+from colloc.cli import groups
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver, remark_unknown
+from colloc.cli.output import deliver, remark_unknown
 from colloc.cli.progress import ProgressLine
-from colloc.settings import DEFAULT_MIN_EXPECTED
 
 LIMIT = 50
 
 
 def words(
     store: opt.StoreArgument,
+    *,
     pattern: Annotated[
         str | None, typer.Argument(metavar="PATTERN", help="Only words like this; * stands for any characters.")
     ] = None,
@@ -28,15 +29,12 @@ def words(
         Literal["count", "documents", "word", "dp_norm"], typer.Option("--sort", help="What the list is sorted by.")
     ] = "count",
     limit: opt.LimitOption = LIMIT,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    result: groups.Result,
 ) -> None:
     """List words with their frequency, rate per million, documents and dispersion."""
     from colloc.verbs import asking
 
-    target = Target(format, output, quiet, settings_beside)
+    target = result.target()
     answer = asking.words(
         store,
         layer=layer,
@@ -52,29 +50,11 @@ def words(
 
 def pairs(
     store: opt.StoreArgument,
+    *,
     measure: opt.MeasureOption = None,
     show: opt.ShowColumnsOption = None,
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    no_span: opt.NoSpanOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
-    min_count: opt.MinJointOption = None,
-    min_word_count: opt.MinWordCountOption = 1,
-    sure: opt.SureOption = False,
-    min_docs: opt.MinDocsOfPairOption = None,
-    max_q: opt.MaxQOption = None,
-    above_chance: opt.AboveChanceOption = None,
-    interval_above: opt.IntervalAboveOption = None,
-    any_strength: opt.AnyStrengthOption = False,
-    avoid: opt.AvoidOption = False,
-    min_expected: opt.MinExpectedOption = DEFAULT_MIN_EXPECTED,
+    counting: groups.Measured,
+    held: groups.Held,
     upos: Annotated[
         str | None,
         typer.Option(
@@ -86,14 +66,10 @@ def pairs(
     stop: opt.StopOption = None,
     no_self: opt.NoSelfOption = False,
     limit: opt.LimitOption = LIMIT,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    resources: groups.Resources,
     plot: opt.PlotOption = None,
     plot_as: opt.PlotListOption = None,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    result: groups.Result,
 ) -> None:
     """List the strongest pairs of words, or with --avoid those that keep apart.
 
@@ -105,39 +81,19 @@ def pairs(
 
     ranking = opt.one_ranking(measure)
     opt.check_plot(plot)
-    target = Target(format, output, quiet, settings_beside)
-    with ProgressLine(quiet=quiet) as progress:
+    target = result.target()
+    with ProgressLine(quiet=result.quiet) as progress:
         answer = asking.pairs(
             store,
             measure=ranking,
             show=opt.shown_columns(show),
-            layer=layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            spanned=not no_span,
-            relation=relation,
-            where=where or (),
-            min_count=min_count,
-            min_word_count=min_word_count,
-            sure=sure,
-            min_docs=min_docs,
-            max_q=max_q,
-            above_chance=above_chance,
-            interval_above=interval_above,
-            any_strength=any_strength,
-            avoid=avoid,
-            min_expected=min_expected,
+            **counting.asked(),
+            **held.asked(),
             upos=upos,
             stop=stop or (),
             no_self=no_self,
             limit=limit,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **resources.asked(),
             progress=progress,
         )
     deliver(answer, target, "pairs")
@@ -147,6 +103,7 @@ def pairs(
 
 def around(
     store: opt.StoreArgument,
+    *,
     words: Annotated[list[str] | None, typer.Argument(metavar="WORD", help="Words asked for.")] = None,
     words_from: Annotated[
         Path | None, typer.Option("--words-from", metavar="FILE", help="Also the words of this file, one a line.")
@@ -168,46 +125,16 @@ def around(
     ] = None,
     measure: opt.MeasureOption = None,
     show: opt.ShowColumnsOption = None,
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    no_span: opt.NoSpanOption = False,
-    relation: Annotated[
-        str | None,
-        typer.Option(
-            "--relation",
-            metavar="NAME",
-            help="Heads and dependents in this relation; all lists every relation apart, in one table.",
-        ),
-    ] = None,
-    where: opt.WhereOption = None,
-    min_count: opt.MinJointOption = None,
-    min_word_count: opt.MinWordCountOption = 1,
-    sure: opt.SureOption = False,
-    min_docs: opt.MinDocsOfPairOption = None,
-    max_q: opt.MaxQOption = None,
-    above_chance: opt.AboveChanceOption = None,
-    interval_above: opt.IntervalAboveOption = None,
-    any_strength: opt.AnyStrengthOption = False,
-    avoid: opt.AvoidOption = False,
-    min_expected: opt.MinExpectedOption = DEFAULT_MIN_EXPECTED,
+    counting: groups.MeasuredByRelation,
+    held: groups.Held,
     stop: opt.StopOption = None,
     limit: Annotated[
         int, typer.Option("--limit", "-n", metavar="N", min=0, help="Rows shown for each word; 0 for all.")
     ] = LIMIT,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    resources: groups.Resources,
     plot: opt.PlotOption = None,
     plot_as: opt.PlotListOption = None,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    result: groups.Result,
 ) -> None:
     """List what stands around each word, strongest first; the word asked for is `first`."""
     from colloc.verbs import asking
@@ -216,8 +143,8 @@ def around(
     ranking = opt.one_ranking(measure)
     opt.check_plot(plot)
     asked = opt.read_words(words or [], words_from)
-    target = Target(format, output, quiet, settings_beside)
-    with ProgressLine(quiet=quiet) as progress:
+    target = result.target()
+    with ProgressLine(quiet=result.quiet) as progress:
         answer = asking.around(
             store,
             asked,
@@ -225,35 +152,15 @@ def around(
             upos=opt.split_names(upos) or (),
             measure=ranking,
             show=opt.shown_columns(show),
-            layer=layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            spanned=not no_span,
-            relation=relation,
-            where=where or (),
-            min_count=min_count,
-            min_word_count=min_word_count,
-            sure=sure,
-            min_docs=min_docs,
-            max_q=max_q,
-            above_chance=above_chance,
-            interval_above=interval_above,
-            any_strength=any_strength,
-            avoid=avoid,
-            min_expected=min_expected,
+            **counting.asked(),
+            **held.asked(),
             stop=stop or (),
             limit=limit,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **resources.asked(),
             progress=progress,
         )
     deliver(answer, target, "around")
-    remark_unknown(answer.settings, quiet=quiet)
+    remark_unknown(answer.settings, quiet=result.quiet)
     if plot is not None:
         picture(answer, plot, plot_as, store=store)
 

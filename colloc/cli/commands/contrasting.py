@@ -7,9 +7,10 @@ from typing import Annotated, Literal
 
 import typer
 
+from colloc.cli import groups
 from colloc.cli import options as opt
 from colloc.cli.frequency_lists import read_counts
-from colloc.cli.output import Target, deliver, print_lines
+from colloc.cli.output import deliver, print_lines
 from colloc.cli.progress import ProgressLine
 from colloc.settings import DEFAULT_MIN_COUNT
 
@@ -40,6 +41,7 @@ STRENGTH_DIFFERENCE = ("pmi_difference", "pmi_low", "pmi_high", "log_odds_q", "s
 
 def contrast(
     store: opt.StoreArgument,
+    *,
     first: Annotated[str | None, typer.Argument(metavar="X", help="With Y, and --this or --by: this one pair.")] = None,
     second: Annotated[str | None, typer.Argument(metavar="Y")] = None,
     this: Annotated[
@@ -75,16 +77,7 @@ def contrast(
     pattern: Annotated[
         str | None, typer.Option("--pattern", metavar="PATTERN", help="Only words like this; * is any characters.")
     ] = None,
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
+    counting: groups.Counted,
     min_count: Annotated[
         int, typer.Option("--min-count", metavar="N", min=0, help="Least count, both sides together.")
     ] = DEFAULT_MIN_COUNT,
@@ -107,12 +100,8 @@ def contrast(
     seed: Annotated[int, typer.Option("--seed", metavar="N", min=0, help="Of the exchanges.")] = 1,
     limit: opt.LimitOption = LIMIT,
     wide: opt.WideOption = False,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    resources: groups.Resources,
+    result: groups.Result,
 ) -> None:
     """Compare sub-corpora, near-synonyms, or the store with a frequency list; effect size first.
 
@@ -122,8 +111,8 @@ def contrast(
     """
     from colloc.verbs import contrasting
 
-    target = Target(format, output, quiet, settings_beside, whole=wide)
-    with ProgressLine(quiet=quiet) as progress:
+    target = result.target(whole=wide)
+    with ProgressLine(quiet=result.quiet) as progress:
         answer = contrasting.contrast(
             store,
             first,
@@ -138,17 +127,8 @@ def contrast(
             reference=reference,
             pairs=pairs,
             side=side,
-            where=where or (),
             pattern=pattern,
-            layer=layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            relation=relation,
+            **counting.asked(),
             min_count=min_count,
             min_word_count=min_word_count,
             min_docs=min_docs,
@@ -156,16 +136,15 @@ def contrast(
             limit=limit,
             permutations=permutations,
             seed=seed,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **resources.asked(),
             progress=progress,
         )
     verdict = answer.settings.get("says")
-    if format == "table" and not wide and this and first is None:
+    if result.format == "table" and not wide and this and first is None:
         shown = (*STRENGTH, *STRENGTH_DIFFERENCE) if sort == "association" else NARROW
         answer = answer.select(name for name in shown if name in answer)
     deliver(answer, target, "contrast")
-    if verdict and format == "table" and not target.to_file:
+    if verdict and result.format == "table" and not target.to_file:
         print_lines(["", str(verdict)])
 
 

@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING, Annotated, Any, Literal
 
 import typer
 
+from colloc.cli import groups
 from colloc.cli import options as opt
 from colloc.cli.output import Target, deliver, print_lines
 from colloc.cli.progress import ProgressLine
@@ -37,6 +38,7 @@ NARROW = (
 
 def drift(
     store: opt.StoreArgument,
+    *,
     first: Annotated[str | None, typer.Argument(metavar="X", help="The word followed, or the first of a pair.")] = None,
     second: Annotated[str | None, typer.Argument(metavar="Y", help="The second word of the pair.")] = None,
     by: Annotated[str, typer.Option("--by", metavar="KEY", help="A metadata key with numbers, such as year.")] = "year",
@@ -51,16 +53,7 @@ def drift(
     width: Annotated[
         float | None, typer.Option("--width", metavar="N", help="Periods of this length, such as 10 for decades.")
     ] = None,
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
+    counting: groups.Counted,
     min_count: Annotated[
         int, typer.Option("--min-count", metavar="N", min=0, help="With --all: least count, all periods together.")
     ] = LEAST,
@@ -74,12 +67,8 @@ def drift(
     limit: opt.LimitOption = LIMIT,
     wide: opt.WideOption = False,
     plot: opt.PlotOption = None,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    resources: groups.Resources,
+    result: groups.Result,
 ) -> None:
     """Follow a word or a pair over time, or rank what changed most.
 
@@ -89,8 +78,8 @@ def drift(
     from colloc.verbs import drifting
 
     opt.check_plot(plot)
-    target = Target(format, output, quiet, settings_beside, whole=wide)
-    with ProgressLine(quiet=quiet) as progress:
+    target = result.target(whole=wide)
+    with ProgressLine(quiet=result.quiet) as progress:
         answer = drifting.drift(
             store,
             first,
@@ -101,27 +90,17 @@ def drift(
             bins=bins,
             edges=_numbers(edges),
             width=width,
-            where=where or (),
-            layer=layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            relation=relation,
+            **counting.asked(),
             min_count=min_count,
             min_docs=min_docs,
             sort=sort,
             limit=limit,
             plot=plot,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **resources.asked(),
             progress=progress,
         )
     if everything:
-        if format == "table" and not wide and sort != "association":
+        if result.format == "table" and not wide and sort != "association":
             answer = answer.select(name for name in NARROW if name in answer)
         deliver(answer, target, "drift")
     else:

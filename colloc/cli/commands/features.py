@@ -6,13 +6,15 @@ from typing import Annotated, Literal
 
 import typer
 
+from colloc.cli import groups
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver
+from colloc.cli.output import deliver
 from colloc.cli.progress import ProgressLine
 
 
 def features(
     store: opt.StoreArgument,
+    *,
     label: Annotated[str, typer.Option("--label", metavar="KEY", help="Metadata key that holds the label.")],
     pairs: Annotated[bool, typer.Option("--pairs", help="Pairs of words instead of words.")] = False,
     sort: Annotated[
@@ -22,16 +24,7 @@ def features(
     each_label: Annotated[
         bool, typer.Option("--each-label", help="Also the documents and the contribution of every label.")
     ] = False,
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
+    counting: groups.Counted,
     min_docs: Annotated[
         int,
         typer.Option("--min-docs", metavar="N", min=1, help="Tested is what N documents have and N others have not."),
@@ -40,12 +33,8 @@ def features(
         int, typer.Option("--most-pairs", metavar="N", min=1, help="Look at the N pairs met most often.")
     ] = 20_000,
     limit: opt.LimitOption = 50,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    resources: groups.Resources,
+    result: groups.Result,
 ) -> None:
     """List words, or pairs, whose presence in a document tells most about its label.
 
@@ -54,29 +43,19 @@ def features(
     """
     from colloc.verbs import features as verbs
 
-    target = Target(format, output, quiet, settings_beside)
-    with ProgressLine(quiet=quiet) as progress:
+    target = result.target()
+    with ProgressLine(quiet=result.quiet) as progress:
         answer = verbs.features(
             store,
             label,
             pairs=pairs,
-            layer=layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            where=where or (),
-            relation=relation,
+            **counting.asked(),
             min_docs=min_docs,
             most_pairs=most_pairs,
             sort=sort,
             each_label=each_label,
             limit=limit,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **resources.asked(),
             progress=progress,
         )
     deliver(answer, target, "features")

@@ -9,6 +9,7 @@ from typing import Annotated, Any
 
 import typer
 
+from colloc.cli import groups
 from colloc.cli import options as opt
 from colloc.cli.output import Target, deliver, deliver_parts, opened, print_lines, write_settings
 from colloc.cli.progress import ProgressLine
@@ -18,6 +19,7 @@ from colloc.processor import prefer_fast_sorting
 
 def info(
     store: opt.StoreArgument,
+    *,
     by: Annotated[
         str | None, typer.Option("--by", metavar="KEY", help="Documents, tokens and types for each value of this key.")
     ] = None,
@@ -32,15 +34,12 @@ def info(
         Path | None,
         typer.Option("--result", metavar="FILE", help="With --methods: what --settings-beside wrote for a result."),
     ] = None,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    written: groups.Result,
 ) -> None:
     """Tell what is inside a store: sizes, settings, layers, tables and sources."""
     from colloc.verbs import keeping
 
-    target = Target(format, output, quiet, settings_beside)
+    target = written.target()
     if by is not None and documents:
         raise UsageError("--by and --documents are two questions: ask one at a time")
     if methods and (by is not None or documents):
@@ -53,11 +52,11 @@ def info(
         deliver(keeping.documents_by(store, by), target, "info")
     elif documents:
         deliver_parts(keeping.documents(store), {"store": str(store)}, target, "info")
-    elif format == "json":
-        with opened(output) as stream:
+    elif target.format == "json":
+        with opened(target.path) as stream:
             stream.write((json.dumps(keeping.info(store), ensure_ascii=False, indent=2) + "\n").encode())
-        if settings_beside and output is not None:
-            write_settings(output, {"store": str(store)}, "info")
+        if target.settings_beside and target.path is not None:
+            write_settings(target.path, {"store": str(store)}, "info")
     else:
         from colloc.answers.columns import Columns
 
@@ -126,23 +125,12 @@ def check(store: opt.StoreArgument, quiet: opt.QuietOption = False) -> None:
 
 def tally(
     store: opt.StoreArgument,
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
+    *,
+    counting: groups.Tabled,
     drop: Annotated[bool, typer.Option("--drop", help="Drop this table instead of counting it.")] = False,
     listed: Annotated[bool, typer.Option("--list", help="List the tables that are kept, and count nothing.")] = False,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    resources: groups.Resources,
+    result: groups.Result,
 ) -> None:
     """Count another table and keep it, so that questions about it are answered at once.
 
@@ -151,25 +139,16 @@ def tally(
     prefer_fast_sorting()
     from colloc.verbs import keeping
 
-    target = Target(format, output, quiet, settings_beside)
+    target = result.target()
     if listed and drop:
         raise UsageError("--list changes nothing: leave out --drop")
     if not listed:
-        with ProgressLine(quiet=quiet) as progress:
+        with ProgressLine(quiet=result.quiet) as progress:
             keeping.tally(
                 store,
-                layer=layer,
-                window=window,
-                left=left,
-                right=right,
-                unit=unit,
-                inside=inside,
-                margins=margins,
-                relation=relation,
-                where=where or (),
+                **counting.asked(),
                 drop=drop,
-                jobs=jobs,
-                memory=opt.memory_bytes(memory),
+                **resources.asked(),
                 progress=progress,
             )
     deliver(keeping.tallies(store), target, "tally")

@@ -4,29 +4,18 @@ from __future__ import annotations
 
 import typer
 
+from colloc.cli import groups
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver
+from colloc.cli.output import deliver
 from colloc.cli.progress import ProgressLine
 
 
 def floors(
     store: opt.StoreArgument,
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    no_span: opt.NoSpanOption = False,
-    where: opt.WhereOption = None,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    *,
+    counting: groups.Shuffled,
+    resources: groups.Resources,
+    result: groups.Result,
 ) -> None:
     """Shuffle the words, count again, and keep how strong pairs come out by chance.
 
@@ -37,22 +26,12 @@ def floors(
     """
     from colloc.verbs import asking
 
-    target = Target(format, output, quiet, settings_beside)
-    with ProgressLine(quiet=quiet) as progress:
+    target = result.target()
+    with ProgressLine(quiet=result.quiet) as progress:
         answer = asking.floors(
             store,
-            layer=layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            spanned=not no_span,
-            where=where or (),
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **counting.asked(),
+            **resources.asked(),
             progress=progress,
         )
     deliver(answer, target, "floors")
