@@ -16,6 +16,7 @@ from colloc.build.building import build
 from colloc.build.changing import add, remove
 from colloc.build.merging import merge
 from colloc.errors import CannotCreateError, CollocError, DataError, NoInputError, NotSeenError, UsageError
+from colloc.kernels import switch
 from colloc.settings import ReadSettings, SegmentSettings, TallySpec
 from colloc.store.documents import iterate_documents
 from colloc.store.opening import open_for_reading
@@ -37,6 +38,23 @@ def test_jobs_do_not_change_the_content(tmp_path: Path, small_batches: None) -> 
         stores.append(content(tmp_path / f"s{jobs}"))
     assert stores[0] == stores[1] == stores[2]
     assert len(stores[0]["documents"]) == 40
+
+
+def test_compiled_loops_do_not_change_the_content(
+    tmp_path: Path, small_batches: None, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """All tables of the store, by arrays and by compiled loops, in this process and in two that it forks."""
+    write_corpus(tmp_path / "c.jsonl", 8, 40)
+    stores = []
+    for on in ("0", "1"):
+        monkeypatch.setenv(switch.SWITCH, on)
+        switch.use_numpy()
+        for jobs in (1, 2):
+            build(tmp_path / f"{on}{jobs}", [str(tmp_path / "c.jsonl")], jobs=jobs)
+            assert switch.compiled() is (on == "1")
+            stores.append(content(tmp_path / f"{on}{jobs}"))
+    switch.use_numpy()
+    assert stores[0] == stores[1] == stores[2] == stores[3]
 
 
 def test_batches_do_not_change_the_counts(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -80,11 +98,11 @@ def test_vocabularies_that_spill_change_nothing(
     assert content(tmp_path / "tight") == content(tmp_path / "roomy")
 
 
-@pytest.mark.parametrize("switch", ["0", "1"])
-def test_one_huge_line_in_bounded_memory(tmp_path: Path, switch: str, monkeypatch: pytest.MonkeyPatch) -> None:
+@pytest.mark.parametrize("setting", ["0", "1"])
+def test_one_huge_line_in_bounded_memory(tmp_path: Path, setting: str, monkeypatch: pytest.MonkeyPatch) -> None:
     """A line of 24 MB: what it takes beyond a line of 1 MB is no more than a few batches."""
     # The library of compiled loops takes its 100 MB however long the line is.
-    monkeypatch.setenv("COLLOC_COMPILED", switch)
+    monkeypatch.setenv(switch.SWITCH, setting)
     peaks = []
     for megabytes in (1, 24):
         (tmp_path / f"{megabytes}.txt").write_text("the sea and the fog " * (megabytes * 50_000), encoding="ascii")
