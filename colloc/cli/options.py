@@ -62,37 +62,26 @@ def shown_measures(values: Iterable[str] | None) -> list[str] | None:
     UsageError
         For an unknown name, with the nearest known one.
     """
-    from colloc.measures.catalogue import MEASURES
-
-    names = split_names(values)
-    if names is None:
-        return None
-    if "all" in names:
-        return list(MEASURES)
-    for name in names:
-        _check_known(name, list(MEASURES))
-    return names
+    return _shown(values, ())
 
 
 def shown_columns(values: Iterable[str] | None) -> list[str] | None:
-    """Names given with ``--show`` where word frequencies and columns of sureness can be shown beside measures.
-
-    Raises
-    ------
-    UsageError
-        For an unknown name, with the nearest known one.
-    """
+    """The same where word frequencies and columns of sureness can be shown beside measures."""
     from colloc.answers.sureness.wishes import SHOWN_COLUMNS
+
+    return _shown(values, SHOWN_COLUMNS)
+
+
+def _shown(values: Iterable[str] | None, others: Sequence[str]) -> list[str] | None:
     from colloc.measures.catalogue import MEASURES
 
     names = split_names(values)
     if names is None:
         return None
-    others = [name for name in names if name in SHOWN_COLUMNS]
     if "all" in names:
-        return [*MEASURES, *others]
+        return [*MEASURES, *(name for name in names if name in others)]
     for name in names:
-        _check_known(name, [*MEASURES, *SHOWN_COLUMNS])
+        _check_known(name, [*MEASURES, *others])
     return names
 
 
