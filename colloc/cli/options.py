@@ -203,7 +203,7 @@ PlotListOption = Annotated[
     Literal["frequency", "network"] | None,
     _option(
         "--plot-as",
-        help="Measure against expected count with the chance floors, or one word and its company as a network.",
+        help="frequency: strength against expected count, with the chance floors; network: one word and its company.",
     ),
 ]
 WideOption = Annotated[
@@ -218,7 +218,7 @@ MeasureOption = Annotated[
         "--measure",
         "-m",
         metavar="NAME",
-        help="Rank by this one measure, or by joint.",
+        help="The measure that ranks, npmi when not given; joint ranks by how often two words meet.",
         autocompletion=complete_rankings,
     ),
 ]
@@ -244,32 +244,49 @@ ShowColumnsOption = Annotated[
 ]
 
 # Which co-occurrences
-LayerOption = Annotated[str | None, _option("--layer", metavar="NAME", help="Layer counted: form, fold, lemma, ...")]
-WindowOption = Annotated[int | None, _option("--window", "-w", metavar="N", help="Words of reach on either side.")]
+LayerOption = Annotated[
+    str | None,
+    _option(
+        "--layer",
+        metavar="NAME",
+        help="What counts as the same word: form (as written), fold (whatever the case), lemma, ...",
+    ),
+]
+WindowOption = Annotated[
+    int | None, _option("--window", "-w", metavar="N", help="How many words apart two words may stand, on either side.")
+]
 LeftOption = Annotated[
-    int | None, _option("--left", metavar="N", help="Words of reach to the left; goes with --right.")
+    int | None, _option("--left", metavar="N", help="The same for the left side alone; goes with --right.")
 ]
 RightOption = Annotated[
-    int | None, _option("--right", metavar="N", help="Words of reach to the right; goes with --left.")
+    int | None, _option("--right", metavar="N", help="The same for the right side alone; goes with --left.")
 ]
 UnitOption = Annotated[
-    bool, _option("--unit", help="Count the units (--inside) that hold both words, instead of windows.")
+    bool,
+    _option(
+        "--unit", help="Instead of windows: count the sentences, paragraphs or documents (--inside) with both words."
+    ),
 ]
-InsideOption = Annotated[Inside | None, _option("--inside", help="What no window reaches beyond.")]
+InsideOption = Annotated[
+    Inside | None, _option("--inside", help="What both words stand in: no window reaches beyond it.")
+]
 MarginsOption = Annotated[
     Margins | None,
-    _option("--margins", help="What one observation is: a pair of tokens, a position, or a token."),
+    _option(
+        "--margins",
+        help="What is one observation, and so what totals count: pairs of words, places in the text, or words.",
+    ),
 ]
 DirectedOption = Annotated[bool, _option("--directed", help="Count (x, y) only where y follows x.")]
 NoSpanOption = Annotated[
-    bool, _option("--no-span", help="With --margins tokens: divide by the number of tokens, not of pairs.")
+    bool, _option("--no-span", help="With --margins tokens: divide by the number of words, not of pairs.")
 ]
 WhereOption = Annotated[
     list[str] | None,
     _option(
         "--where",
         metavar="SLICE",
-        help="Only documents with this metadata: key=value, key=a,b or key=1990..1999. Repeats join.",
+        help="Only documents with this metadata: key=value, key=a,b or key=1990..1999. Given again: both hold.",
     ),
 ]
 RelationOption = Annotated[
@@ -282,7 +299,7 @@ RelationOption = Annotated[
 ]
 
 # Thresholds
-MinCountOption = Annotated[int, _option("--min-count", metavar="N", min=0, help="Least joint count shown.")]
+MinCountOption = Annotated[int, _option("--min-count", metavar="N", min=0, help="How often a row occurs at least.")]
 MinWordCountOption = Annotated[
     int, _option("--min-word-count", metavar="N", min=0, help="Least frequency of each word shown.")
 ]
@@ -301,30 +318,41 @@ MinDocsOfPairOption = Annotated[
 ]
 MinJointOption = Annotated[
     int | None,
-    _option("--min-count", metavar="N", min=0, help="Least joint count shown: 5 when not given, 0 with --avoid."),
+    _option(
+        "--min-count", metavar="N", min=0, help="How often two words meet at least: 5 when not given, 0 with --avoid."
+    ),
 ]
 
 # Sureness
 SureOption = Annotated[
-    bool, _option("--sure", help="Show all columns of sureness: intervals, q-values, documents, chance floors.")
+    bool, _option("--sure", help="Show how sure each row is: documents, intervals, q-values, chance floors.")
 ]
 MaxQOption = Annotated[
     float | None,
-    _option("--max-q", metavar="Q", help="Largest q-value shown: the share of false findings among those shown."),
+    _option(
+        "--max-q", metavar="Q", help="Largest q-value shown: the share of false findings to expect among all up to it."
+    ),
 ]
 AboveChanceOption = Annotated[
     Literal["order", "corpus"] | None,
-    _option("--above-chance", help="Only rows above this chance floor; see colloc floors."),
+    _option(
+        "--above-chance",
+        help="Only rows stronger than text shuffled within documents (order) or across all (corpus); see colloc floors.",
+    ),
 ]
 IntervalAboveOption = Annotated[
     float | None,
-    _option("--interval-above", metavar="BITS", help="Only rows whose interval of PMI lies above this."),
+    _option("--interval-above", metavar="BITS", help="Only rows whose 95 % interval of PMI lies above this."),
 ]
 AnyStrengthOption = Annotated[
-    bool, _option("--any-strength", help="Also rows that meet as often as expected or less, not only attraction.")
+    bool,
+    _option(
+        "--any-strength",
+        help="Also pairs that meet as often as chance has it, or less; not only those that meet more often.",
+    ),
 ]
 AvoidOption = Annotated[
-    bool, _option("--avoid", help="Instead of attraction: rows that meet much less often than chance, or never.")
+    bool, _option("--avoid", help="Instead: pairs that meet much less often than chance has it, or never.")
 ]
 StopOption = Annotated[
     list[str] | None,

@@ -23,6 +23,23 @@ STORE is the SQLite file that holds a corpus and its counts; it comes first. Res
 output or to the file of `-o`, everything else (the line with the settings, progress, errors) to standard error. A file
 named with `-o` is whole or not there: it is written beside its place and then renamed.
 
+## Words that the options use
+
+| word | what it means |
+| --- | --- |
+| document | one text with its identifier and metadata |
+| layer | what counts as the same word: as it is written, whatever its case, by lemma, ... |
+| slice | documents chosen by their metadata, such as `year=1880..1889` |
+| window | how far apart two words may stand to count as a pair |
+| table | how often each word stands near each other one: of one layer, window and slice (`tally` lists them) |
+| joint | how often two words meet |
+| margins | the totals that `joint` is held against: how often each of the two words meets any word, or occurs |
+| attraction, avoidance | that two words meet more often, or less often, than their margins explain |
+| chance floor | the strength that only 1 % of pairs reach in shuffled text |
+| relation | head and dependent in annotated text, such as a verb and its object |
+
+[`measures.md`](measures.md) has every measure, [`sureness.md`](sureness.md) every column about how sure a row is.
+
 ## Formats
 
 | `--format` | result |

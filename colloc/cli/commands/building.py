@@ -28,7 +28,7 @@ _INPUT_FORMAT = typer.Option(
     "--input-format", metavar="NAME", help="txt, jsonl, csv, tsv, ...; auto goes by the file name."
 )
 _ENCODING = typer.Option(
-    "--encoding", metavar="NAME", help="Name of an encoding; detect guesses it for each file: see what it chose."
+    "--encoding", metavar="NAME", help="Name of an encoding; detect guesses it for each file and tells which."
 )
 _ERRORS = typer.Option("--errors", help="Bytes that cannot be decoded: stop, or replace and count them.")
 _TEXT_COLUMN = typer.Option("--text-column", metavar="NAME", help="Column or key that holds the text.")
@@ -60,12 +60,23 @@ def build(
     left: opt.LeftOption = None,
     right: opt.RightOption = None,
     unit: opt.UnitOption = False,
-    inside: Annotated[Inside, typer.Option("--inside", help="What no window reaches beyond.")] = "sentence",
+    inside: Annotated[
+        Inside, typer.Option("--inside", help="What both words stand in: no window reaches beyond it.")
+    ] = "sentence",
     margins: Annotated[
-        Margins, typer.Option("--margins", help="What one observation is: a pair of tokens, a position, or a token.")
+        Margins,
+        typer.Option(
+            "--margins",
+            help="What is one observation, and so what totals count: pairs of words, places in the text, or words.",
+        ),
     ] = "pairs",
     layer: Annotated[
-        str, typer.Option("--layer", metavar="NAME", help="Layer counted: form, fold, lemma, ...")
+        str,
+        typer.Option(
+            "--layer",
+            metavar="NAME",
+            help="What counts as the same word: form (as written), fold (whatever the case), lemma, ...",
+        ),
     ] = DEFAULT_LAYER,
     relation: opt.RelationOption = None,
     input_format: Annotated[str, _INPUT_FORMAT] = "auto",
@@ -82,9 +93,12 @@ def build(
     hyphens: Annotated[
         Literal["keep", "split"], typer.Option("--hyphens", help="Words joined by a hyphen: one word, or its parts.")
     ] = "keep",
-    numbers: Annotated[KeepOrDrop, typer.Option("--numbers", help="Tokens without a letter.")] = "keep",
+    numbers: Annotated[
+        KeepOrDrop, typer.Option("--numbers", help="Numbers and other words without a letter.")
+    ] = "keep",
     addresses: Annotated[
-        Literal["keep", "drop", "split"], typer.Option("--addresses", help="Web and e-mail addresses.")
+        Literal["keep", "drop", "split"],
+        typer.Option("--addresses", help="Web and e-mail addresses: one word, no word, or their parts."),
     ] = "keep",
     line_ends: Annotated[
         Literal["paragraph", "space"],
@@ -94,11 +108,13 @@ def build(
         bool, typer.Option("--abbreviations/--no-abbreviations", help="No sentence ends after known abbreviations.")
     ] = True,
     max_token: Annotated[
-        int, typer.Option("--max-token", metavar="N", help="Longer tokens, in characters, are left out.")
+        int, typer.Option("--max-token", metavar="N", help="Longer words, in characters, are left out.")
     ] = 256,
     pattern: Annotated[
         str | None,
-        typer.Option("--pattern", metavar="REGEX", help="A regular expression for tokens, instead of Unicode's words."),
+        typer.Option(
+            "--pattern", metavar="REGEX", help="A regular expression that finds words, instead of Unicode's rules."
+        ),
     ] = None,
     scripts: Annotated[
         Literal["unicode", "dictionary"],
@@ -108,16 +124,24 @@ def build(
         Literal["split", "keep"], typer.Option("--hashtags", help="#tag and @name: without the sign, or whole.")
     ] = "split",
     punctuation: Annotated[
-        Literal["drop", "keep"], typer.Option("--punctuation", help="Marks outside of words: no tokens, or tokens.")
+        Literal["drop", "keep"],
+        typer.Option("--punctuation", help="Marks outside of words: left out, or kept as words."),
     ] = "drop",
     folding: Annotated[
         list[str] | None,
         typer.Option(
-            "--fold", metavar="NAMES", help="What folds besides case: apostrophes, arabic, turkish, sharp-s, width, ..."
+            "--fold",
+            metavar="NAMES",
+            help="What layer fold takes for the same besides case: apostrophes, arabic, turkish, sharp-s, width, ...",
         ),
     ] = None,
     lemma: Annotated[
-        str | None, typer.Option("--lemma", metavar="LANG", help="Dictionary that gives lemmas to words without.")
+        str | None,
+        typer.Option(
+            "--lemma",
+            metavar="LANG",
+            help="Language whose dictionary gives lemmas to words that carry none, such as en.",
+        ),
     ] = None,
     text: Annotated[
         bool, typer.Option("--text/--no-text", help="Keep the text in the store; lines can only be shown from it.")

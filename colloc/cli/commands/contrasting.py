@@ -45,7 +45,7 @@ def contrast(
     first: Annotated[str | None, typer.Argument(metavar="X", help="With Y, and --this or --by: this one pair.")] = None,
     second: Annotated[str | None, typer.Argument(metavar="Y")] = None,
     this: Annotated[
-        list[str] | None, typer.Option("--this", metavar="SLICE", help="One side: key=value. Repeats join.")
+        list[str] | None, typer.Option("--this", metavar="SLICE", help="One side: key=value. Given again: both hold.")
     ] = None,
     that: Annotated[
         list[str] | None,
@@ -94,10 +94,15 @@ def contrast(
     permutations: Annotated[
         int,
         typer.Option(
-            "--permutations", metavar="N", min=0, help="p-values from N exchanges of document labels (max-T)."
+            "--permutations",
+            metavar="N",
+            min=0,
+            help="p-values from N random exchanges of documents between the sides (max-T).",
         ),
     ] = 0,
-    seed: Annotated[int, typer.Option("--seed", metavar="N", min=0, help="Of the exchanges.")] = 1,
+    seed: Annotated[
+        int, typer.Option("--seed", metavar="N", min=0, help="Where the random numbers of --permutations begin.")
+    ] = 1,
     limit: opt.LimitOption = LIMIT,
     wide: opt.WideOption = False,
     resources: groups.Resources,
