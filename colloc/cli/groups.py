@@ -29,8 +29,8 @@ class Group:
     @classmethod
     def options(cls) -> dict[str, Any]:
         """Names of the options with their defaults."""
-        own = [name for kind in reversed(cls.__mro__) for name in inspect.get_annotations(kind)]
-        return {name: getattr(cls, name) for name in own}
+        # One that is told anew keeps its place.
+        return {name: getattr(cls, name) for kind in reversed(cls.__mro__) for name in inspect.get_annotations(kind)}
 
     def asked(self) -> dict[str, Any]:
         """The options as keyword arguments of the Python call with the same names."""
@@ -128,6 +128,12 @@ class Result(Group):
     def target(self, *, whole: bool = False) -> Target:
         """The same as the writers take it."""
         return Target(self.format, self.output, self.quiet, self.settings_beside, whole)
+
+
+class CsvResult(Result):
+    """The same where a table of data is what is wanted most."""
+
+    format: opt.FormatOption = "csv"
 
 
 def is_group(annotation: Any) -> bool:

@@ -337,7 +337,7 @@ AboveChanceOption = Annotated[
     Literal["order", "corpus"] | None,
     _option(
         "--above-chance",
-        help="Only rows stronger than text shuffled within documents (order) or across all (corpus); see colloc floors.",
+        help="Only rows stronger than text shuffled in documents (order) or across all (corpus); see colloc floors.",
     ),
 ]
 IntervalAboveOption = Annotated[

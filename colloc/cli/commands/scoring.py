@@ -8,8 +8,9 @@ from typing import TYPE_CHECKING, Annotated
 
 import typer
 
+from colloc.cli import groups
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver_parts
+from colloc.cli.output import deliver_parts
 from colloc.cli.progress import ProgressLine
 from colloc.cli.tables_in import Rows, TableFormat, read_rows
 from colloc.errors import DataError
@@ -21,6 +22,7 @@ if TYPE_CHECKING:
 
 def score(
     store: opt.StoreArgument,
+    *,
     pairs: Annotated[
         Path,
         typer.Argument(
@@ -31,23 +33,9 @@ def score(
     input_format: Annotated[
         TableFormat, typer.Option("--input-format", help="auto goes by the file's ending, else by its first line.")
     ] = "auto",
-    layer: opt.LayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    no_span: opt.NoSpanOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
-    format: opt.FormatOption = "csv",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    counting: groups.Measured,
+    resources: groups.Resources,
+    result: groups.CsvResult,
 ) -> None:
     """Append counts and measures to a list of pairs, in its order.
 
@@ -56,25 +44,14 @@ def score(
     """
     from colloc.verbs import scoring
 
-    target = Target(format, output, quiet, settings_beside)
+    target = result.target()
     with (
-        ProgressLine(quiet=quiet) as progress,
+        ProgressLine(quiet=result.quiet) as progress,
         scoring.scorer(
             store,
             show=opt.shown_measures(show),
-            layer=layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            spanned=not no_span,
-            relation=relation,
-            where=where or (),
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **counting.asked(),
+            **resources.asked(),
             progress=progress,
         ) as prepared,
     ):

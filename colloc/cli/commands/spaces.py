@@ -7,6 +7,7 @@ from typing import Annotated, Literal
 
 import typer
 
+from colloc.cli import groups
 from colloc.cli import options as opt
 from colloc.cli.output import Target, deliver, print_lines, remark, settings_line
 from colloc.cli.progress import ProgressLine
@@ -95,6 +96,7 @@ def listed(path: Path | None) -> list[str] | None:
 
 def matrix(
     store: opt.StoreArgument,
+    *,
     output: OutputFile,
     value: Annotated[
         Literal["ppmi", "npmi", "g2", "count"], typer.Option("--value", help="What the cells hold.")
@@ -108,24 +110,13 @@ def matrix(
     min_context_count: MinContextOption = 1,
     most_rows: MostRowsOption = None,
     most_contexts: MostContextsOption = None,
-    layer: opt.LayerOption = None,
     context_layer: ContextLayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    no_span: opt.NoSpanOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
+    counting: groups.Measured,
     min_count: Annotated[float, typer.Option("--min-count", metavar="N", min=0, help="Least joint count kept.")] = 1,
     min_value: Annotated[
         float | None, typer.Option("--min-value", metavar="V", help="Least value of a cell kept.")
     ] = None,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    resources: groups.Resources,
     quiet: opt.QuietOption = False,
 ) -> None:
     """Write the sparse matrix of a table: words as rows, their company as columns.
@@ -148,22 +139,11 @@ def matrix(
             min_context_count=min_context_count,
             most_rows=most_rows,
             most_contexts=most_contexts,
-            layer=layer,
             context_layer=context_layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            spanned=not no_span,
-            relation=relation,
-            where=where or (),
+            **counting.asked(),
             min_count=min_count,
             min_value=min_value,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **resources.asked(),
             progress=progress,
         )
     remark(settings_line("matrix", made.settings), quiet=quiet)
@@ -176,6 +156,7 @@ VECTOR_SMOOTHING = 0.75
 
 def vectors(
     store: opt.StoreArgument,
+    *,
     output: Annotated[
         Path | None,
         typer.Option(
@@ -209,20 +190,10 @@ def vectors(
     min_context_count: LeastContextOption = None,
     most_rows: MostRowsOption = None,
     most_contexts: MostContextsOption = None,
-    layer: opt.LayerOption = None,
     context_layer: ContextLayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
+    counting: groups.Counted,
     min_count: Annotated[float, typer.Option("--min-count", metavar="N", min=0, help="Least joint count used.")] = 1,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
+    resources: groups.Resources,
     format: opt.FormatOption = "table",
     quiet: opt.QuietOption = False,
 ) -> None:
@@ -254,20 +225,10 @@ def vectors(
             min_context_count=min_context_count,
             most_rows=most_rows,
             most_contexts=most_contexts,
-            layer=layer,
             context_layer=context_layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            relation=relation,
-            where=where or (),
+            **counting.asked(),
             min_count=min_count,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **resources.asked(),
             progress=progress,
         )
     if lists:
@@ -280,6 +241,7 @@ def vectors(
 
 def similar(
     store: opt.StoreArgument,
+    *,
     words: Annotated[list[str] | None, typer.Argument(metavar="WORD", help="Words asked for.")] = None,
     words_from: Annotated[
         Path | None, typer.Option("--words-from", metavar="FILE", help="Also the words of this file, one a line.")
@@ -293,33 +255,20 @@ def similar(
     weighting: WeightingOption = "flat",
     min_row_count: ReliableRowOption = None,
     min_context_count: ReliableContextOption = None,
-    layer: opt.LayerOption = None,
     context_layer: ContextLayerOption = None,
-    window: opt.WindowOption = None,
-    left: opt.LeftOption = None,
-    right: opt.RightOption = None,
-    unit: opt.UnitOption = False,
-    inside: opt.InsideOption = None,
-    margins: opt.MarginsOption = None,
-    directed: opt.DirectedOption = False,
-    relation: opt.RelationOption = None,
-    where: opt.WhereOption = None,
+    counting: groups.Counted,
     limit: Annotated[
         int, typer.Option("--limit", "-n", metavar="N", min=0, help="Rows shown for each word; 0 for all.")
     ] = 20,
-    jobs: opt.JobsOption = None,
-    memory: opt.MemoryOption = opt.DEFAULT_MEMORY,
-    format: opt.FormatOption = "table",
-    output: opt.OutputOption = None,
-    settings_beside: opt.BesideOption = False,
-    quiet: opt.QuietOption = False,
+    resources: groups.Resources,
+    result: groups.Result,
 ) -> None:
     """List the words that keep the same company as a word, with the contexts that they share."""
     from colloc.verbs import spaces
 
     asked = opt.read_words(words or [], words_from)
-    target = Target(format, output, quiet, settings_beside)
-    with ProgressLine(quiet=quiet) as progress:
+    target = result.target()
+    with ProgressLine(quiet=result.quiet) as progress:
         answer = spaces.similar(
             store,
             asked,
@@ -329,20 +278,10 @@ def similar(
             weighting=weighting,
             min_row_count=min_row_count,
             min_context_count=min_context_count,
-            layer=layer,
             context_layer=context_layer,
-            window=window,
-            left=left,
-            right=right,
-            unit=unit,
-            inside=inside,
-            margins=margins,
-            directed=directed,
-            relation=relation,
-            where=where or (),
+            **counting.asked(),
             limit=limit,
-            jobs=jobs,
-            memory=opt.memory_bytes(memory),
+            **resources.asked(),
             progress=progress,
         )
     deliver(answer, target, "similar")
