@@ -114,7 +114,8 @@ class CandidatePass:
         sink = Fork([sieve, margins]) if self._with_margins else sieve
         labels = apply_layer(wanted.labels, layer_map(self._store, self._spec.layer))
         gathered = _Gathered()
-        for document in feed(self._store, self._spec, self._selection, documents, labels, sink):
+        cover = None if self._with_margins else wanted.cover
+        for document in feed(self._store, self._spec, self._selection, documents, labels, sink, cover):
             found = gathered.add(sieve.take(), document)
             if found is not None:
                 yield _given(found, wanted, documents)

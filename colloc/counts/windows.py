@@ -41,6 +41,26 @@ def add_windows(span: TokenSpan, left: int, right: int, into: PairSink) -> None:
             into.pair(second, first, valid)
 
 
+def add_windows_near(span: TokenSpan, left: int, right: int, into: PairSink, centres: Int64Array) -> None:
+    """`add_windows` for the pairs of which one token, or both, is among ``centres`` (offsets, ascending)."""
+    into.load(span.terms)
+    edges = np.concatenate([[0], span.units, [len(span.terms)]])
+    unit = np.searchsorted(span.units, centres, side="right")
+    begins, ends = edges[unit], edges[unit + 1]
+    is_centre = np.zeros(len(span.terms), np.bool_)
+    is_centre[centres] = True
+    for distance in range(1, max(left, right) + 1):
+        ahead = centres[(centres + distance < ends) & (centres + distance >= span.context)]
+        back = centres[(centres - distance >= begins) & (centres >= span.context)]
+        # a pair of two centres is found from its first token
+        back = back[~is_centre[back - distance]]
+        first, second = np.concatenate([ahead, back - distance]), np.concatenate([ahead + distance, back])
+        if distance <= right:
+            into.pair(first, second)
+        if distance <= left:
+            into.pair(second, first)
+
+
 def count_windows(span: TokenSpan, left: int, right: int) -> Run:
     """The pairs of ``span`` alone, as a run."""
     into = Accumulator()

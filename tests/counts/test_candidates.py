@@ -18,6 +18,13 @@ from colloc.store.opening import open_for_reading
 from tests.counts import brute
 from tests.counts.placed import Placed, random_documents, write_store
 
+
+@pytest.fixture(autouse=True, params=[0, 10**9], ids=["around", "everywhere"])
+def sparse(request: pytest.FixtureRequest, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Windows looked at only around the words in question, and everywhere."""
+    monkeypatch.setattr(feeding, "_SPARSE", request.param)
+
+
 N_TERMS = 20
 MADE = random_documents(seed=3, n=40, n_terms=N_TERMS, longest=90)
 REMOVED = (4, 17)

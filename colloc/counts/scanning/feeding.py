@@ -15,10 +15,14 @@ from colloc.counts.selection import Selection
 from colloc.counts.spans import PIECE, read_stretches, whole_units, window_spans
 from colloc.counts.tasks import reach
 from colloc.counts.units import add_units
-from colloc.counts.windows import add_windows
-from colloc.records import Int64Array, UInt32Array
+from colloc.counts.windows import add_windows, add_windows_near
+from colloc.records import Int64Array, TokenSpan, UInt32Array
 from colloc.settings import TallySpec
 from colloc.store.connection import Store
+
+
+_SPARSE = 16
+"""Tokens for each one that matters from which on it is faster to look around those alone."""
 
 
 class PlacedSink(PairSink, Protocol):
@@ -45,6 +49,7 @@ def feed(
     documents: DocumentPlaces,
     labels: UInt32Array,
     sink: PlacedSink,
+    cover: BoolArray | None = None,
 ) -> Iterator[int]:
     """Hand every pair that a tally of ``spec`` counts to ``sink``.
 
@@ -52,6 +57,8 @@ def feed(
     ----------
     labels : uint32 array, shape (n_types,)
         What each type counts as; `NO_TERM` for no word at all.
+    cover : bool array, optional
+        By label, the last place for `NO_TERM`: pairs without any of these labels may be left out.
 
     Yields
     ------
@@ -86,9 +93,18 @@ def feed(
         if spec.kind == "positions":
             add_positions(span, spec.left, spec.right, sink)
         else:
-            add_windows(span, spec.left, spec.right, sink)
+            _add_windows(span, spec, sink, cover)
         place = end - span.ahead
         yield int(documents.of(np.array([place - 1]))[0])
+
+
+def _add_windows(span: TokenSpan, spec: TallySpec, sink: PlacedSink, cover: BoolArray | None) -> None:
+    if cover is not None:
+        centres = np.flatnonzero(cover[np.minimum(span.terms, len(cover) - 1)])
+        if len(centres) * _SPARSE < len(span.terms):
+            add_windows_near(span, spec.left, spec.right, sink, centres)
+            return
+    add_windows(span, spec.left, spec.right, sink)
 
 
 class Fork:

@@ -32,6 +32,8 @@ class Wanted:
         Which pair a key stands for: a number below ``n_pairs``.
     given : int64 array
         For each pair that was given, the number of the one it is equal to.
+    cover : bool array, shape (n_labels + 1,)
+        Labels of which each wanted pair has one at least; one place more for tokens without a term.
     """
 
     labels: UInt32Array
@@ -39,6 +41,7 @@ class Wanted:
     keys: UInt64Array
     pair: Int64Array
     given: Int64Array
+    cover: BoolArray
 
     @property
     def n_pairs(self) -> int:
@@ -62,7 +65,9 @@ def wanted_pairs(first: UInt32Array, second: UInt32Array, n_terms: int, *, direc
         keys, pair = np.concatenate([keys, turned[other]]), np.concatenate([pair, pair[other]])
         order = np.argsort(keys)
         keys, pair = keys[order], pair[order]
-    return Wanted(labels, len(terms) + 1, keys, pair, given.astype(np.int64).reshape(-1))
+    cover = np.zeros(len(terms) + 2, np.bool_)
+    cover[labels[first]] = True
+    return Wanted(labels, len(terms) + 1, keys, pair, given.astype(np.int64).reshape(-1), cover)
 
 
 class Sieve:
