@@ -30,11 +30,11 @@ def count_sets(
     dict
         ``run``: place in the last column of the chain << 32 | term. ``chances``: choices of places of this shape.
     """
-    _, window = _windows(terms, room, shape, begin, stop)
-    bag = np.sort(window, axis=1)
+    places, window = _windows(terms, room, shape, begin, stop)
+    bag = _ascending(window)
     numbers, there = _walked(bag, chain)
-    run = run_of_keys(pair_keys(numbers, bag[there, len(chain)]))
-    return {"run": dataclasses.asdict(write_run(Path(folder), name, run)), "chances": len(window)}
+    run = run_of_keys(pair_keys(numbers, bag[len(chain)][there]))
+    return {"run": dataclasses.asdict(write_run(Path(folder), name, run)), "chances": len(places)}
 
 
 def survey_sets(
@@ -57,8 +57,8 @@ def survey_sets(
         ``run``: number << 32 | document. Columns by number: ``times``, ``capitals`` and ``marked``. ``chances``.
     """
     places, window = _windows(terms, room, shape, begin, stop)
-    numbers, there = _walked(np.sort(window, axis=1), chain)
-    places = places[there]
+    numbers, there = _walked(_ascending(window), chain)
+    chances, places = len(places), places[there]
     starts: Int64Array = Column(**documents).read()
     document = np.searchsorted(starts, places + begin, side="right") - 1
     n = Column(**chain[-1]).n
@@ -75,7 +75,7 @@ def survey_sets(
     run = run_of_keys(pair_keys(numbers, document.astype(np.uint32)))
     place = Path(folder)
     kept = {what: dataclasses.asdict(write_column(place / f"{name}.{what}", of)) for what, of in columns.items()}
-    return {"run": dataclasses.asdict(write_run(place, name, run)), "chances": len(window), **kept}
+    return {"run": dataclasses.asdict(write_run(place, name, run)), "chances": chances, **kept}
 
 
 def count_orders(
@@ -90,31 +90,49 @@ def count_orders(
         places of the terms in ascending order (of equal terms the first comes first).
     """
     _, window = _windows(terms, room, shape, begin, stop)
-    order = np.argsort(window, axis=1, kind="stable")
-    numbers, there = _walked(np.take_along_axis(window, order, axis=1), chain)
+    numbers, there = _walked(_ascending(window), chain)
+    order = np.argsort(np.stack([column[there] for column in window], axis=1), axis=1, kind="stable")
     weights = len(shape) ** np.arange(len(shape))
-    run = run_of_keys(pair_keys(numbers, (order[there] @ weights).astype(np.uint32)))
+    run = run_of_keys(pair_keys(numbers, (order @ weights).astype(np.uint32)))
     return dataclasses.asdict(write_run(Path(folder), name, run))
 
 
-def _windows(terms: Facts, room: Facts, shape: list[int], begin: int, stop: int) -> tuple[Int64Array, UInt32Array]:
-    """Places (less ``begin``) from which the shape fits into its unit, and the terms there: shape (n, words)."""
+def _windows(
+    terms: Facts, room: Facts, shape: list[int], begin: int, stop: int
+) -> tuple[Int64Array, list[UInt32Array]]:
+    """Places (less ``begin``) from which the shape fits into its unit, and the terms there, a column a word."""
     space: UInt8Array = Column(**room).read(begin, stop)
     columns = [padded(Column(**terms), begin + word, stop + word, int(NONE)) for word in shape]
     fits = space > shape[-1]
     for column in columns:
         fits &= column != NONE
     places = np.flatnonzero(fits)
-    return places, np.stack([column[places] for column in columns], axis=1)
+    return places, [column[places] for column in columns]
 
 
-def _walked(bag: UInt32Array, chain: list[Facts]) -> tuple[UInt32Array, Int64Array]:
+def _ascending(columns: list[UInt32Array]) -> list[UInt32Array]:
+    """The same with each row in ascending order: neighbours change places until none has to (Habermann 1972).
+
+    Rows are short and many, so whole columns are compared instead of sorting row by row.
+    """
+    sorted_ = list(columns)
+    for turn in range(len(sorted_)):
+        for one in range(turn % 2, len(sorted_) - 1, 2):
+            low, high = sorted_[one], sorted_[one + 1]
+            sorted_[one], sorted_[one + 1] = np.minimum(low, high), np.maximum(low, high)
+    return sorted_
+
+
+def _walked(bag: list[UInt32Array], chain: list[Facts]) -> tuple[UInt32Array, Int64Array]:
     """Numbers in the last column of a chain of those rows of ascending terms that are in it; and which rows."""
     tables: list[UInt64Array] = [Column(**link).read() for link in chain]
-    rows = np.arange(len(bag))
-    numbers, there = looked_up(tables[0], bag[:, 0].astype(np.uint64))
-    rows = rows[there]
+    # the lowest terms are few numbers, each looked up often: by a table of all of them, not by halving
+    place = np.full(max(int(tables[0].max(initial=0)), int(bag[0].max(initial=0))) + 1, NONE)
+    place[tables[0]] = np.arange(len(tables[0]))
+    numbers = place[bag[0]]
+    rows = np.flatnonzero(numbers != NONE)
+    numbers = numbers[rows]
     for word, table in enumerate(tables[1:], 1):
-        numbers, there = looked_up(table, pair_keys(numbers, bag[rows, word]))
+        numbers, there = looked_up(table, pair_keys(numbers, bag[word][rows]))
         rows = rows[there]
     return numbers, rows
