@@ -20,7 +20,6 @@ from colloc.records import Int64Array, TokenSpan, UInt32Array
 from colloc.settings import TallySpec
 from colloc.store.connection import Store
 
-
 _SPARSE = 16
 """Tokens for each one that matters from which on it is faster to look around those alone."""
 
