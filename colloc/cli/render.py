@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import json
 import math
-import re
 from collections.abc import Mapping
+from itertools import compress, repeat
+from operator import contains
 from typing import TYPE_CHECKING, Any, BinaryIO, Protocol
 
 from colloc.answers.plain import is_count
@@ -55,7 +56,6 @@ class DelimitedWriter:
         self._stream = stream
         self._delimiter = delimiter
         self._signs = f"{_QUOTE}\r\n{delimiter}"
-        self._special = re.compile(f"[{self._signs}]").search
         self._begun = False
         self._quick = False
 
@@ -92,10 +92,18 @@ class DelimitedWriter:
     def _quoted(self, cells: list[str]) -> list[str]:
         # Not csv.writer: with line feeds as row ends it leaves a carriage return inside a cell unquoted.
         joined = "\0".join(cells)
-        if not any(sign in joined for sign in self._signs):
+        places = {
+            place
+            for sign in self._signs
+            if sign in joined
+            for place in compress(range(len(cells)), map(contains, cells, repeat(sign)))
+        }
+        if not places:
             return cells
-        special = self._special
-        return [f'"{cell.replace(_QUOTE, _QUOTE * 2)}"' if special(cell) else cell for cell in cells]
+        quoted = cells.copy()
+        for place in places:
+            quoted[place] = f'"{cells[place].replace(_QUOTE, _QUOTE * 2)}"'
+        return quoted
 
     def close(self) -> None:
         """Nothing is left to write."""
