@@ -31,6 +31,8 @@ class Table:
         Columns to be filled in, shown apart.
     hidden : sequence of str
         Columns that are there for reading back only; shown narrow and grey.
+    printed : int
+        Only so many columns, the first ones, are printed; 0 for all.
     """
 
     name: str
@@ -38,6 +40,7 @@ class Table:
     choices: Mapping[str, Sequence[str]]
     open_cells: Sequence[str] = ()
     hidden: Sequence[str] = ()
+    printed: int = 0
 
 
 def workbook(tables: Sequence[Table]) -> bytes:
@@ -104,6 +107,8 @@ def _write(book: Any, table: Table) -> None:
     sheet.freeze_panes(1, 1)
     sheet.autofilter(0, 0, len(answer), last)
     sheet.repeat_rows(0)
+    if table.printed:
+        sheet.print_area(0, 0, len(answer), table.printed - 1)
     sheet.set_landscape()
     sheet.set_paper(9)
     sheet.fit_to_pages(1, 0)

@@ -313,3 +313,21 @@ def test_what_was_recorded_is_told(
         one["kind"]
         == {"a pair": "pair", "a directed pair": "directed", "an expression": "expression"}[told.split(":")[0]]
     )
+
+
+def test_expressions_that_are_found_in_the_text_have_counts(store: Path) -> None:
+    """Too long to be grown, or open at an end: looked for place by place; counted here by a plain search."""
+    texts = {
+        "* tide into account": ["the tide into account"],
+        "the thick fog *": ["the thick fog came", "the thick fog stayed"],
+        "the lamp burned clean oil by and large all night": ["the lamp burned clean oil by and large all night"],
+    }
+    documents = [json.loads(line)["text"].lower() for line in harbour_lines()]
+    for words in texts:
+        colloc.judge(store, words, "accept", by="Anna")
+    found = {entry.matter.text: entry.figures for entry in colloc.entries(store).entries}
+    for words, spelled in texts.items():
+        assert found[words].joint == sum(text.count(one) for text in documents for one in spelled)
+        assert found[words].documents == sum(any(one in text for one in spelled) for text in documents)
+        assert found[words].scores["specific_correlation"] > 0
+        assert ("c_value" in found[words].scores) == ("*" not in words)

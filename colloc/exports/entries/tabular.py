@@ -12,6 +12,7 @@ from typing import Any
 import numpy as np
 
 from colloc.answers.columns import Columns
+from colloc.answers.expressions.measures import SHOWN
 from colloc.answers.judging.entries import Entries
 from colloc.exports.entries.wording import source_in_words
 from colloc.exports.spreadsheets import defuse
@@ -188,16 +189,22 @@ def _cell(value: Any) -> str:
 
 
 def entry_workbook(entries: Entries) -> bytes:
-    """The tables as worksheets that print: the words first, long texts wrapped."""
+    """The tables as worksheets that print: the words first, long texts wrapped; minor columns are not printed."""
     tables = entry_tables(entries)
-    order = [
-        "words", "sense", "labels", "notes", "joint", "documents", *(score.name for score in entries.scores),
-        "kind", "layer", "word_counts", "expected", "judges", "entry", "sense_number",
-    ]  # fmt: skip
-    main = tables["entries"].select(order)
+    minor = [score.name for score in entries.scores if score.kind == "expression" and score.name not in SHOWN]
+    main = [score.name for score in entries.scores if score.name not in minor]
+    printed = ["words", "sense", "labels", "notes", "joint", "documents", *main]
+    order = [*printed, *minor, "kind", "layer", "word_counts", "expected", "judges", "entry", "sense_number"]
+    whole = tables["entries"].select(order)
     return workbook(
         [
-            Table("entries", main, {}, hidden=("kind", "layer", "word_counts", "judges", "entry")),
+            Table(
+                "entries",
+                whole,
+                {},
+                hidden=("kind", "layer", "word_counts", "judges", "entry"),
+                printed=len(printed),
+            ),
             Table(
                 "examples",
                 tables["examples"].select(["text", "document", "source", "start", "marks", "entry", "sense_number"]),

@@ -56,7 +56,13 @@ def _cells(row: dict[str, str]) -> dict[str, float]:
 
 
 def xlsx_numbers(path: Path) -> dict[str, float]:
-    rows = list(openpyxl.load_workbook(path)["entries"].values)
+    sheet = openpyxl.load_workbook(path)["entries"]
+    rows = list(sheet.values)
+    printed = list(sheet[sheet.print_area.split("!")[-1]])
+    assert len(printed) == len(rows)
+    names = [cell.value for cell in printed[0]]
+    assert {"words", "joint", "documents", "pmi", "strength", "weakest_split", "c_value"} <= set(names)
+    assert not {"split_low", "completeness", "c_value_length", "entry"} & set(names)
     return _cells(next(dict(zip(rows[0], row, strict=True)) for row in rows[1:] if row[0] == TEXT))
 
 
