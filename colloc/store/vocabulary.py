@@ -20,7 +20,6 @@ from colloc.store.lexicon.layers import (
     layer_map,
     layer_names,
     number_texts,
-    remember,
     require_terms,
     term_count,
     type_keys,
@@ -118,11 +117,11 @@ class TypeRegistry:
             if len(known) > 2 * self._limit:
                 known.clear()
             self._look_up({key for key in keys if key not in known})
-        numbers, fresh = number_texts(keys, known, self._count)
-        if fresh:
-            self._add(list(fresh), bool(annotated))
-            self._complete &= remember(known, fresh, self._limit)
-        return numbers
+        found = number_texts(keys, known, self._count, self._limit)
+        if found.fresh:
+            self._add(found.fresh, bool(annotated))
+            self._complete &= found.remembered
+        return found.numbers
 
     def _add(self, keys: list[TypeKey], annotated: bool) -> None:
         first, stop = self._count, self._count + len(keys)

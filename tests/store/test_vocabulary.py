@@ -14,6 +14,7 @@ from hypothesis import strategies as st
 from colloc.errors import DataError, StoreDamagedError, UsageError
 from colloc.records import NO_TERM
 from colloc.store import vocabulary
+from colloc.store.lexicon.layers import number_texts
 from colloc.store.opening import Store, open_for_reading
 from colloc.store.vocabulary import TypeKey, TypeRegistry
 
@@ -194,3 +195,22 @@ def test_word_counts_that_were_not_made_or_fall_below_zero(tmp_path: Path) -> No
         vocabulary.append_word_counts(store, "fold", np.zeros(1, dtype=np.uint32), -99 * one, one)
         with pytest.raises(StoreDamagedError, match="below zero"):
             vocabulary.word_counts(store, "fold")
+
+
+@given(st.lists(st.lists(st.text("abc", max_size=3), max_size=12), max_size=6), st.integers(0, 15))
+def test_numbers_of_texts_are_those_of_a_plain_loop(batches: list[list[str]], limit: int) -> None:
+    """Whatever the batches and the limit of what is remembered, as long as that is not passed."""
+    known: dict[str, int] = {}
+    plain: dict[str, int] = {}
+    for texts in batches:
+        before = len(plain)
+        for text in texts:
+            if text:
+                plain.setdefault(text, len(plain))
+        found = number_texts(texts, known, before, limit)
+        assert found.numbers.tolist() == [plain.get(text, int(NO_TERM)) for text in texts]
+        assert found.fresh == list(plain)[before:]
+        assert found.remembered == (len(plain) <= limit)
+        if not found.remembered:
+            return
+        assert known == plain

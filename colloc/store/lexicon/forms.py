@@ -9,7 +9,7 @@ from functools import cache
 from colloc.settings import SegmentSettings
 from colloc.store import facts
 from colloc.store.connection import Store
-from colloc.tokens.folding import folder
+from colloc.tokens.folding import fold, folder
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,6 +26,13 @@ class Forms:
 
     fold: Callable[[str], str]
     language: str | None
+
+    def folded(self, forms: Sequence[str]) -> list[str]:
+        """Forms, folded."""
+        if self.fold is fold:
+            # Most words are of ASCII letters, and a call for each would take most of the time.
+            return [form.lower() if form.isascii() else fold(form) for form in forms]
+        return [*map(self.fold, forms)]
 
     def lemmas(self, forms: Sequence[str], given: Sequence[str]) -> list[str]:
         """Lemmas of some types: those that they carry, else those of the dictionary, else empty."""

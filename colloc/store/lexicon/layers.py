@@ -9,12 +9,13 @@ in order of first appearance. While a store holds plain text only, the layer
 from __future__ import annotations
 
 import operator
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from itertools import compress, islice, repeat
-from typing import TypeVar
+from itertools import compress, count, islice, repeat
+from typing import Generic, TypeVar
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colloc.errors import StoreDamagedError, UsageError
 from colloc.records import NO_TERM, UInt32Array
@@ -35,9 +36,9 @@ Columns = tuple[Sequence[str], Sequence[str], Sequence[str]]
 
 _COMPONENTS: dict[str, Callable[[Columns, Forms], list[str]]] = {
     "form": lambda columns, forms: list(columns[0]),
-    "fold": lambda columns, forms: [*map(forms.fold, columns[0])],
+    "fold": lambda columns, forms: forms.folded(columns[0]),
     "lemma": lambda columns, forms: forms.lemmas(columns[0], columns[1]),
-    "lemma_fold": lambda columns, forms: [*map(forms.fold, forms.lemmas(columns[0], columns[1]))],
+    "lemma_fold": lambda columns, forms: forms.folded(forms.lemmas(columns[0], columns[1])),
     "upos": lambda columns, forms: list(columns[2]),
 }
 
@@ -117,28 +118,55 @@ def _read_part(store: Store, layer: Layer, part: int) -> UInt32Array:
     return packing.unpack_as(data, np.uint32, f"{store.path}: map of layer {layer.name}, part {part}")
 
 
-def number_texts(texts: Sequence[Key], known: Mapping[Key, int], first: int) -> tuple[UInt32Array, dict[Key, int]]:
-    """Numbers of the texts, and those that were new, numbered from ``first`` in order of appearance.
+@dataclass(frozen=True, slots=True)
+class Numbered(Generic[Key]):
+    """Texts with numbers.
 
-    The empty text is no term: NO_TERM.
+    Attributes
+    ----------
+    numbers : uint32 array
+        One a text; NO_TERM for the empty text.
+    fresh : list
+        Those that were new, in order of appearance: the numbers after the last one.
+    remembered : bool
+        Whether all of them are among the known ones from now on.
     """
+
+    numbers: UInt32Array
+    fresh: list[Key]
+    remembered: bool
+
+
+def number_texts(texts: Sequence[Key], known: dict[Key, int], first: int, limit: int) -> Numbered[Key]:
+    """Number texts as they are known, new ones from ``first`` on; these become known as far as ``limit`` allows."""
+    if "" in texts or len(known) + len(texts) > limit:
+        return _number_some(texts, known, first, limit)
+    # One look at the dictionary for each text. A new one gets `first` and its place in the list: in order, with gaps.
+    raw = np.fromiter(map(known.setdefault, texts, count(first)), np.int64, len(texts))
+    new: NDArray[np.bool_] = raw == np.arange(first, first + len(texts))
+    fresh: list[Key] = list(compress(texts, new.tolist()))
+    if len(fresh) == len(texts):
+        return Numbered(raw.astype(np.uint32), fresh, True)
+    places = np.flatnonzero(new)
+    recent = raw >= first
+    raw[recent] = first + np.searchsorted(places, raw[recent] - first)
+    known.update(zip(fresh, range(first, first + len(fresh)), strict=True))
+    return Numbered(raw.astype(np.uint32), fresh, True)
+
+
+def _number_some(texts: Sequence[Key], known: dict[Key, int], first: int, limit: int) -> Numbered[Key]:
+    """`number_texts` where not all can be remembered, or a text is empty."""
     numbers = [*map(known.get, texts)]
-    if None not in numbers:
-        return np.array(numbers, dtype=np.uint32), {}
     unknown = dict.fromkeys(compress(texts, map(operator.is_, numbers, repeat(None))))
     empty = "" in unknown
     if empty:
         del unknown[""]
-    fresh = dict(zip(unknown, range(first, first + len(unknown)), strict=True))
-    given = fresh | {"": int(NO_TERM)} if empty else fresh
-    return np.fromiter(map(given.get, texts, numbers), dtype=np.uint32, count=len(texts)), fresh
-
-
-def remember(known: dict[Key, int], fresh: dict[Key, int], limit: int) -> bool:
-    """Put as many of ``fresh`` into ``known`` as the limit allows; says whether that was all."""
+    added: dict[Key, int] = dict(zip(unknown, range(first, first + len(unknown)), strict=True))
+    given = added | {"": int(NO_TERM)} if empty else added
+    found = np.fromiter(map(given.get, texts, numbers), dtype=np.uint32, count=len(texts))
     room = max(limit - len(known), 0)
-    known.update(fresh if len(fresh) <= room else islice(fresh.items(), room))
-    return len(fresh) <= room
+    known.update(added if len(added) <= room else islice(added.items(), room))
+    return Numbered(found, list(added), len(added) <= room)
 
 
 class LayerWriter:
@@ -179,11 +207,13 @@ class LayerWriter:
                 known.clear()
             wanted = {text for text in texts if text and text not in known}
             known.update(look_up_terms(self._store, self.layer.number, wanted))
-        numbers, fresh = number_texts(texts, known, self.layer.terms)
-        self._store.insert_columns("terms", [[self.layer.number] * len(fresh), [*fresh.values()], [*fresh]])
+        first = self.layer.terms
+        found = number_texts(texts, known, first, self._limit)
+        fresh = found.fresh
+        self._store.insert_columns("terms", [[self.layer.number] * len(fresh), range(first, first + len(fresh)), fresh])
         self.layer.terms += len(fresh)
-        self._complete &= remember(known, fresh, self._limit)
-        return numbers
+        self._complete &= found.remembered
+        return found.numbers
 
     def _append_map(self, terms: UInt32Array) -> None:
         part, filled = divmod(self.layer.types, PART)
