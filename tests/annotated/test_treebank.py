@@ -131,9 +131,11 @@ def test_relations_between_two_words(store_path: Path, text: str) -> None:
         totals[name] += n
         heads[name, head] += n
         dependents[name, other] += n
+    met = Counter[tuple[str, str]]()
+    for (_, head, other), n in counts.items():
+        met[min(head, other), max(head, other)] += n
     both_ways = sorted(
-        {(head, other) for _, head, other in counts if head < other},
-        key=lambda pair: -sum(n for (_, *ends), n in counts.items() if sorted(ends) == [*pair]),
+        {(head, other) for _, head, other in counts if head < other}, key=lambda pair: (-met[pair], pair)
     )[:3]
     same = Counter({(head, other): n for (_, head, other), n in counts.items() if head == other}).most_common(1)
     for first, second in [*both_ways, *(pair for pair, _ in same)]:
