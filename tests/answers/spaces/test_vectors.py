@@ -7,7 +7,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from scipy.sparse import csr_array, random_array
+from scipy.sparse import block_diag, csr_array, random_array
 from scipy.spatial.distance import cosine
 from scipy.stats import spearmanr
 from sklearn.utils.extmath import randomized_svd
@@ -244,6 +244,20 @@ def test_listed_rows_need_no_frequency(demo: Path) -> None:
     assert len(colloc.vectors(demo, dimensions=2).words) < len(
         colloc.vectors(demo, dimensions=2, min_row_count=1).words
     )
+
+
+def test_equal_and_missing_singular_values() -> None:
+    """Where a Lanczos method misses some, or does not end: 300 blocks alike, and a rank below what is asked."""
+    alike = block_diag([np.ones((5, 5))] * 300, format="csr")
+    left, values, right = leading_vectors(csr_array(alike), 250)
+    np.testing.assert_allclose(values, 5.0, rtol=1e-6)
+    np.testing.assert_allclose(right @ right.T, np.eye(250), atol=1e-6)
+    np.testing.assert_allclose(left.T @ left, np.eye(250), atol=1e-6)
+    random = np.random.default_rng(8)
+    low = random_array((900, 20), density=0.1, rng=random) @ random_array((20, 800), density=0.1, rng=random)
+    values = leading_vectors(csr_array(low), 30)[1]
+    np.testing.assert_allclose(values[:20], np.linalg.svd(low.toarray(), compute_uv=False)[:20], rtol=1e-4)
+    assert (values[20:] < 1e-4 * values[0]).all()
 
 
 def test_how_often_words_are_seen_that_are_compared() -> None:
