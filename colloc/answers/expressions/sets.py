@@ -111,11 +111,10 @@ def ranked_sets(store: Store, asked: Asked, grower: Grower, limit: int, tell: An
 
 def _counted(grower: Grower, counter: SetCounter, asked: Asked, tell: Any) -> _Table:
     options = asked.options
-    usable = np.flatnonzero(grower.words.tokens >= options.min_count)
     wanted: dict[int, list[Int64Array]] = {words: [] for words in range(2, options.max_words + 1)}
     for words in wanted:
         tell((words - 2) / options.max_words, grower.total, f"sets of {words} words")
-        found = counter.frequent(words, usable, options.min_count)
+        found = counter.frequent(words, grower.words.tokens, options.min_count)
         wanted[words].append(found)
         for fewer in range(2, words):
             wanted[fewer] += [found[:, list(chosen)] for chosen in combinations(range(words), fewer)]

@@ -65,15 +65,18 @@ class SetCounter:
     def __init__(self, ground: Ground, gap: int) -> None:
         self._ground, self._gap, self._made = ground, gap, 0
 
-    def frequent(self, words: int, terms: Int64Array, least: int) -> Int64Array:
+    def frequent(self, words: int, tokens: Int64Array, least: int) -> Int64Array:
         """The sets of so many words that meet at least ``least`` times: their terms, as in `WordSets`.
 
         Parameters
         ----------
-        terms : int64 array
-            Those that a set can be made of, ascending: what occurs less than ``least`` times need not be among them.
+        tokens : int64 array
+            How often each term occurs.
         """
-        chain = [terms.astype(np.uint64)]
+        # one occurrence is in as many choices of places as there are shapes and places in them: a word between two of
+        # another meets it twice
+        most = words * len(set_shapes(words, self._gap))
+        chain = [np.flatnonzero(tokens * most >= least).astype(np.uint64)]
         kept = [self._keep(chain[0])]
         shop = self._ground.shop
         for _ in range(words - 1):

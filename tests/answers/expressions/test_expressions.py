@@ -14,7 +14,7 @@ import numpy as np
 import pytest
 
 import colloc
-from colloc.answers.expressions.settings import COLUMNS, FRAMES_ONLY, PATTERNS_ONLY
+from colloc.answers.expressions.settings import COLUMNS, FRAMES_ONLY, NOT_OF_SETS, PATTERNS_ONLY, SETS_ONLY
 from colloc.errors import UsageError
 
 EVERYTHING = {"min_docs": 0, "names": "keep", "common": "keep", "fragments": "keep", "limit": 0, "show": "all"}
@@ -346,13 +346,16 @@ def test_what_makes_no_sense_is_refused(store: Path, asked: dict[str, object], m
 def test_all_columns_have_a_place(store: Path) -> None:
     plain = colloc.expressions(store, min_count=4, show="all", limit=1)
     frames = colloc.expressions(store, min_count=4, show="all", slots=1, limit=1)
-    assert {*plain.names, *frames.names, *PATTERNS_ONLY} == set(COLUMNS)
+    sets = colloc.expressions(store, min_count=4, show="all", any_order=True, limit=1)
+    assert {*plain.names, *frames.names, *sets.names, *PATTERNS_ONLY} == set(COLUMNS)
+    assert set(sets.names) - set(plain.names) == set(SETS_ONLY)
+    assert set(plain.names) - set(sets.names) == set(NOT_OF_SETS) - {*PATTERNS_ONLY, *FRAMES_ONLY}
     assert set(frames.names) - set(plain.names) == set(FRAMES_ONLY)
 
 
 def test_nothing_to_find(tmp_path: Path) -> None:
     store = built(tmp_path, [["one two three"]])
-    for slots in (0, 1):
-        answer = colloc.expressions(store, slots=slots, show="all")
+    for kind in ({}, {"slots": 1}, {"any_order": True, "gap": 1}):
+        answer = colloc.expressions(store, show="all", **kind)  # type: ignore[arg-type]
         assert len(answer) == 0
         assert "expression" in answer

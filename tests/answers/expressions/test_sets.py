@@ -132,6 +132,11 @@ def test_a_word_twice_and_processes(tmp_path: Path, store: Path, monkeypatch: py
     rows = {tuple(sorted(row["expression"].split())): row for row in answer}
     # twice "side by side", once "by the side side", in each of three pairs of documents
     assert rows["by", "side", "side"]["orders"] == "side by side 6, by side side 3"
+    # a word that stands between two of another meets it twice: the set is more frequent than the word
+    (tmp_path / "between").mkdir()
+    between = built(tmp_path / "between", [["a side crab side sank", "side crab side"]])
+    answer = colloc.expressions(between, any_order=True, min_count=4, **EVERYTHING)  # type: ignore[arg-type]
+    assert dict(zip(answer["expression"], answer["orders"], strict=True)) == {"crab side": "crab side 2, side crab 2"}
     one = colloc.expressions(store, any_order=True, gap=1, min_count=6, jobs=1, **EVERYTHING)  # type: ignore[arg-type]
     monkeypatch.setattr(growing, "_WORTH_A_PROCESS", 100)
     two = colloc.expressions(store, any_order=True, gap=1, min_count=6, jobs=2, memory=2**27, **EVERYTHING)  # type: ignore[arg-type]
