@@ -15,6 +15,7 @@ from pathlib import Path
 import pytest
 
 from colloc import errors
+from colloc.cli.tables_in import ROWS_A_PART
 from colloc.verbs import asking
 
 from .conftest import COLLOC, Run, process
@@ -158,7 +159,7 @@ def test_interrupting_a_process() -> None:
     assert waiting.stdin is not None
     assert waiting.stderr is not None
     # Enough for the first rows to be measured; then it waits at the open pipe, as the settings line tells.
-    waiting.stdin.write(table(70_000))
+    waiting.stdin.write(table(ROWS_A_PART + 20_000))
     waiting.stdin.flush()
     assert waiting.stderr.readline().startswith(b"# measure")
     waiting.send_signal(signal.SIGINT)
