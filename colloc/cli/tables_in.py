@@ -244,7 +244,7 @@ def _plain_cells(stretch: list[bytes], delimiter: str, width: int) -> list[str] 
         plain = stretch.copy()
         for place in reversed(quoted):
             del plain[place]
-    data = b"".join(plain)
+    data = b"".join(plain).replace(b"\r\n", b"\n")
     if b"\r" in data or b"\n\n" in data or data.startswith(b"\n"):
         return None
     if {*map(bytes.count, plain, repeat(delimiter.encode()))} - {width - 1}:
