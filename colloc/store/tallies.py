@@ -137,12 +137,12 @@ class Tally:
 
 
 def find(store: Store, spec: TallySpec) -> Tally | None:
-    """The tally of this spec, or None. Where the store can be written, notes that it was used."""
+    """The tally of this spec, or None. Where the store can be written, the use of one that may be dropped is noted."""
     number = store.value("SELECT id FROM tallies WHERE spec = ?", (spec.to_json(),))
     if number is None:
         return None
     if store.writable:
-        store.execute("UPDATE tallies SET last_used = ? WHERE id = ?", (int(time.time()), number))
+        store.execute("UPDATE tallies SET last_used = ? WHERE id = ? AND kept = 0", (int(time.time()), number))
     return Tally(store, number, spec)
 
 

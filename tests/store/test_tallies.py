@@ -217,13 +217,16 @@ def test_cache_limit_drops_the_least_recently_used(tmp_path: Path) -> None:
     store.close()
 
 
-def test_using_a_tally_is_noted_only_by_writers(tmp_path: Path) -> None:
+def test_using_a_cached_tally_is_noted_only_by_writers(tmp_path: Path) -> None:
     store = store_of_terms(tmp_path, 5)
     write_tally(store, SPEC, {(0, 1): 1})
     store.execute("UPDATE tallies SET last_used = 5")
     with open_for_reading(store.path) as reader:
         assert tallies.find(reader, SPEC) is not None
         assert reader.value("SELECT last_used FROM tallies") == 5
+    tallies.find(store, SPEC)
+    assert store.value("SELECT last_used FROM tallies") == 5, "kept for good: a look at it changes nothing"
+    store.execute("UPDATE tallies SET kept = 0")
     tallies.find(store, SPEC)
     assert store.value("SELECT last_used FROM tallies") > 5
     store.close()
