@@ -41,6 +41,9 @@ def create(path: str | os.PathLike[str], facts: Mapping[str, str], purpose: str 
         if path.exists():
             raise CannotCreateError(f"{path}: exists already; choose another name or remove it first")
         scratch.clean_leftovers(path)
+        for companion in ("-wal", "-shm"):
+            # Of a store that was removed without them: SQLite would take them for the new one's.
+            Path(f"{path}{companion}").unlink(missing_ok=True)
         with scratch.scratch_folder(path) as folder:
             new = folder / "new"
             with translated(path):

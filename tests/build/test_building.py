@@ -192,7 +192,7 @@ def test_same_build_again_does_nothing(tmp_path: Path) -> None:
     assert content(tmp_path / "s")
     with pytest.raises(CannotCreateError, match="INPUT was"):
         build(tmp_path / "s", [str(tmp_path)])
-    with pytest.raises(CannotCreateError, match="other default tally"):
+    with pytest.raises(CannotCreateError, match="--window was"):
         build(tmp_path / "s", [str(tmp_path / "a.jsonl")], tally=TallySpec(right=2))
     assert len(before) == (tmp_path / "s").stat().st_size
 

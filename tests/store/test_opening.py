@@ -50,6 +50,27 @@ def test_created_stores_say_whose_they_are(path: Path) -> None:
     assert _files(path.parent) == ["a.colloc"]
 
 
+def test_a_write_ahead_log_left_by_another_store_is_not_taken_in(tmp_path: Path) -> None:
+    """Whoever removes a store that was killed in the middle of its work leaves the log beside it."""
+    script = (
+        "import os, sys\n"
+        "from colloc.store import facts\n"
+        "from colloc.store.opening import create\n"
+        "store = create(sys.argv[1], {'state': 'complete'})\n"
+        "for number in range(400):\n"
+        "    facts.put(store, f'key {number}', 'x' * 2000)\n"
+        "os._exit(9)\n"
+    )
+    name = tmp_path / "a.colloc"
+    assert subprocess.run([sys.executable, "-c", script, str(name)]).returncode == 9
+    assert (tmp_path / "a.colloc-wal").stat().st_size > 0
+    name.unlink()
+    create(name, {"state": "complete", "segment_settings": "{}"}).close()
+    with open_for_reading(name) as store:
+        assert store.value("PRAGMA integrity_check") == "ok"
+        assert facts.get(store, "key 1", "nothing") == "nothing"
+
+
 def test_create_refuses_what_exists(path: Path) -> None:
     before = path.read_bytes()
     with pytest.raises(CannotCreateError, match=r"a\.colloc: exists already; choose another name"):
