@@ -15,6 +15,8 @@ import sys
 import tempfile
 from collections import Counter
 from collections.abc import Callable, Iterator
+from dataclasses import replace
+from functools import partial
 from pathlib import Path
 
 from . import subject
@@ -29,6 +31,8 @@ QUICK_TOKENS = 2_000_000
 STREAM_TOKENS = 15_000_000
 WINDOWS = (1, 2, 5, 10)
 ENGINE_WINDOWS = {"polars": (1, 5), "duckdb": (1, 5), "sklearn": (1,), "coreutils": (1, 5)}
+SLOW = ("sklearn", "coreutils")
+"""Run once: they take a minute and more."""
 HERE = Path(__file__).resolve().parents[2]
 
 
@@ -56,14 +60,32 @@ def words_to_ask(text: Path) -> list[str]:
     return [ranked[0], next((word for word in ranked if counts[word] <= 10), ranked[-1])]
 
 
-def fastest(times: int, measure: Callable[[], Run]) -> Run:
-    return min((measure() for _ in range(times)), key=lambda one: one.seconds)
+Measure = Callable[[bool], Run]
+"""Runs something once; the argument says whether its memory is watched, which slows it down."""
 
 
-def engine(name: str, text: Path, window: int, threads: int) -> Run:
+def by_turns(contenders: dict[str, Measure], times: int) -> dict[str, Run]:
+    """Each contender in turn, some times over, and once more for its memory; the fastest time of each counts.
+
+    What takes a minute is run once, watched.
+    """
+    timed: dict[str, list[Run]] = {name: [] for name in contenders}
+    for _ in range(times):
+        for name, once in contenders.items():
+            if name not in SLOW:
+                timed[name].append(once(False))
+    found = {}
+    for name, once in contenders.items():
+        watched = once(True)
+        best = min(timed[name] or [watched], key=lambda one: one.seconds)
+        found[name] = replace(best, peak_bytes=watched.peak_bytes)
+    return found
+
+
+def engine(name: str, text: Path, window: int, threads: int, watch: bool) -> Run:
     command = [sys.executable, "-m", "tests.bench.engines", name, str(text)]
     environment = {**os.environ, "PYTHONPATH": str(HERE)}
-    return run([*command, "--window", str(window), "--threads", str(threads)], environment)
+    return run([*command, "--window", str(window), "--threads", str(threads)], environment, watch_memory=watch)
 
 
 def measure(text: Path, folder: Path, chosen: argparse.Namespace) -> Iterator[Task]:
@@ -71,18 +93,21 @@ def measure(text: Path, folder: Path, chosen: argparse.Namespace) -> Iterator[Ta
     store = folder / "bench.colloc"
     tokens = 0
     for window in WINDOWS:
+        contenders: dict[str, Measure] = {}
         if "colloc" in chosen.engines:
-            built = fastest(chosen.repeat, lambda w=window: subject.build(store, [text], w, chosen.jobs))
-            tokens = subject.tokens_in(store)
-            yield Task("build", "colloc", window, built, tokens, subject.occurrences_in(store))
+            contenders["colloc"] = partial(subject.build, store, [text], window, chosen.jobs)
         for name in chosen.engines:
             if window in ENGINE_WINDOWS.get(name, ()):
-                times = 1 if name in ("coreutils", "sklearn") else chosen.repeat
-                counted = fastest(times, lambda n=name, w=window: engine(n, text, w, chosen.jobs))
-                yield Task("build", name, window, counted, tokens, json.loads(counted.output)["occurrences"])
+                contenders[name] = partial(engine, name, text, window, chosen.jobs)
+        for name, done in by_turns(contenders, chosen.repeat).items():
+            if name == "colloc":
+                tokens = subject.tokens_in(store)
+                yield Task("build", name, window, done, tokens, subject.occurrences_in(store))
+            else:
+                yield Task("build", name, window, done, tokens, json.loads(done.output)["occurrences"])
     if "colloc" in chosen.engines:
-        single = fastest(chosen.repeat, lambda: subject.build(store, [text], 5, 1))
-        yield Task("build, one core", "colloc", 5, single, tokens)
+        alone = by_turns({"colloc": partial(subject.build, store, [text], 5, 1)}, chosen.repeat)
+        yield Task("build, one core", "colloc", 5, alone["colloc"], tokens)
         yield from subject.questions(store, words_to_ask(text), tokens, folder)
         yield from subject.adding(store, text, folder, chosen.jobs)
 

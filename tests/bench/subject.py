@@ -37,11 +37,12 @@ def drop(store: Path) -> None:
             path.unlink()
 
 
-def build(store: Path, inputs: Sequence[Path], window: int, jobs: int) -> Run:
+def build(store: Path, inputs: Sequence[Path], window: int, jobs: int, watch: bool = True) -> Run:
     """A fresh store, text and token stream kept."""
     drop(store)
     names = [str(path) for path in inputs]
-    return run([COLLOC, "build", str(store), *names, "--window", str(window), "--jobs", str(jobs), "--quiet"])
+    command = [COLLOC, "build", str(store), *names, "--window", str(window), "--jobs", str(jobs), "--quiet"]
+    return run(command, watch_memory=watch)
 
 
 def tokens_in(store: Path) -> int:
