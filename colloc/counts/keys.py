@@ -73,7 +73,9 @@ def run_of_keys(keys: UInt64Array) -> Run:
     if compiled():
         sorted_keys, spare = keys, np.empty_like(keys)
         for shift, bits in pairs.bit_ranges(*_bits(keys), _DIGIT):
-            pairs.radix_keys(sorted_keys, spare, shift, np.zeros(1 << bits, np.int64))
+            places = np.zeros(1 << bits, np.int64)
+            pairs.find_places(sorted_keys, shift, places)
+            pairs.move_keys(sorted_keys, spare, shift, places)
             sorted_keys, spare = spare, sorted_keys
         counts = np.zeros(len(keys), np.int64)
         n = pairs.group_keys(sorted_keys, counts)
@@ -115,7 +117,9 @@ def _by_digits(keys: UInt64Array, counts: Int64Array) -> Run:
     """`sorted_run` by a radix sort, which carries the counts along."""
     run, other = (keys, counts), (np.empty_like(keys), np.empty_like(counts))
     for shift, bits in pairs.bit_ranges(*_bits(keys), _DIGIT):
-        pairs.radix_pass(*run, *other, shift, np.zeros(1 << bits, np.int64))
+        places = np.zeros(1 << bits, np.int64)
+        pairs.find_places(run[0], shift, places)
+        pairs.move_entries(*run, *other, shift, places)
         run, other = other, run
     return Run(*run)
 

@@ -55,7 +55,23 @@ class Alone:
             yield perform(self._store, name, arguments)
 
 
-class Workers:
+class _Closing:
+    """A context manager that closes."""
+
+    def close(self) -> None:
+        """End whatever is at work."""
+        raise NotImplementedError
+
+    def __enter__(self) -> Self:
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, traceback: TracebackType | None
+    ) -> None:
+        self.close()
+
+
+class Workers(_Closing):
     """Several processes that share the tasks out among themselves.
 
     Raises
@@ -147,16 +163,8 @@ class Workers:
                     pipe.close()
             process.wait()
 
-    def __enter__(self) -> Self:
-        return self
 
-    def __exit__(
-        self, kind: type[BaseException] | None, error: BaseException | None, traceback: TracebackType | None
-    ) -> None:
-        self.close()
-
-
-class Threads:
+class Threads(_Closing):
     """Several threads of this process: compiled loops run beside each other, and nothing has to be started."""
 
     def __init__(self, path: Path, jobs: int) -> None:
@@ -182,14 +190,6 @@ class Threads:
         self._pool.shutdown(cancel_futures=True)
         for store in self._stores:
             store.close()
-
-    def __enter__(self) -> Self:
-        return self
-
-    def __exit__(
-        self, kind: type[BaseException] | None, error: BaseException | None, traceback: TracebackType | None
-    ) -> None:
-        self.close()
 
 
 def _pipe(pipe: Any) -> Any:

@@ -98,9 +98,15 @@ def add_windows(
     state[1] = n_keys
 
 
-@kernel("void(uint64[::1], uint64[::1], int64, int64[::1])")
-def radix_keys(keys: NDArray[np.uint64], keys_out: NDArray[np.uint64], shift: int, places: NDArray[np.int64]) -> None:
-    """Sort keys stably by their bits from ``shift`` on; ``places`` (zeros) has a place for each digit."""
+@kernel("void(uint64[::1], int64, int64[::1])")
+def find_places(keys: NDArray[np.uint64], shift: int, places: NDArray[np.int64]) -> None:
+    """Where keys with each digit begin when they are sorted by it: the bits from ``shift`` on.
+
+    Parameters
+    ----------
+    places : int64 array of zeros
+        As long as there are digits, a power of two; receives the places.
+    """
     mask = np.uint64(len(places) - 1)
     move = np.uint64(shift)
     for i in range(len(keys)):
@@ -110,6 +116,13 @@ def radix_keys(keys: NDArray[np.uint64], keys_out: NDArray[np.uint64], shift: in
         here = places[digit]
         places[digit] = total
         total += here
+
+
+@kernel("void(uint64[::1], uint64[::1], int64, int64[::1])")
+def move_keys(keys: NDArray[np.uint64], keys_out: NDArray[np.uint64], shift: int, places: NDArray[np.int64]) -> None:
+    """Keys to the places that `find_places` found, in order."""
+    mask = np.uint64(len(places) - 1)
+    move = np.uint64(shift)
     for i in range(len(keys)):
         digit = (keys[i] >> move) & mask
         place = places[digit]
@@ -167,7 +180,7 @@ def list_cells(
 
 
 @kernel("void(uint64[::1], int64[::1], uint64[::1], int64[::1], int64, int64[::1])")
-def radix_pass(
+def move_entries(
     keys: NDArray[np.uint64],
     counts: NDArray[np.int64],
     keys_out: NDArray[np.uint64],
@@ -175,16 +188,9 @@ def radix_pass(
     shift: int,
     places: NDArray[np.int64],
 ) -> None:
-    """Sort entries stably by the bits of the key from ``shift`` on; ``places`` (zeros) has a place for each digit."""
+    """Keys with counts to the places that `find_places` found, in order."""
     mask = np.uint64(len(places) - 1)
     move = np.uint64(shift)
-    for i in range(len(keys)):
-        places[(keys[i] >> move) & mask] += 1
-    total = 0
-    for digit in range(len(places)):
-        here = places[digit]
-        places[digit] = total
-        total += here
     for i in range(len(keys)):
         digit = (keys[i] >> move) & mask
         place = places[digit]
@@ -231,7 +237,7 @@ def count_words(
 
 
 def bit_ranges(low_bits: int, high_bits: int, widest: int) -> list[tuple[int, int]]:
-    """Shifts and widths of the digits that `radix_pass` has to sort keys of such terms by, least first."""
+    """Shifts and widths of the digits by which keys of such terms are sorted, least first."""
     found: list[tuple[int, int]] = []
     for begin, bits in ((0, high_bits + 1), (32, low_bits)):
         parts = -(-bits // widest)

@@ -10,7 +10,7 @@ from pathlib import Path
 
 from .tree import ROOT, module_name, package_modules, syntax
 
-BASE = ("errors", "processor", "records", "settings")
+BASE = ("errors", "hiding", "processor", "records", "settings")
 
 
 @dataclass(frozen=True)

@@ -16,6 +16,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from colloc.errors import DataError, StoreDamagedError
+from colloc.hiding import hidden
 from colloc.store.database import schema
 
 if TYPE_CHECKING:
@@ -86,16 +87,13 @@ def _pandas_hidden() -> Iterator[None]:
 
     What is imported inside is forgotten afterwards, so that whoever else imports sqlite-utils gets it whole.
     """
-    if any(name in sys.modules for name in ("pandas", "sqlite_utils")):
+    if "sqlite_utils" in sys.modules:
         yield
         return
-    sys.modules["pandas"] = None  # type: ignore[assignment]  # the import system's own sign for "cannot be imported"
-    try:
+    with hidden("pandas"):
         yield
-    finally:
-        del sys.modules["pandas"]
-        for name in [name for name in sys.modules if name.split(".")[0] == "sqlite_utils"]:
-            del sys.modules[name]
+    for name in [name for name in sys.modules if name.split(".")[0] == "sqlite_utils"]:
+        del sys.modules[name]
 
 
 def migrate(connection: sqlite3.Connection) -> None:
