@@ -45,7 +45,8 @@ def test_without_numba(monkeypatch: pytest.MonkeyPatch) -> None:
 def test_no_place_for_the_cache_is_said(tmp_path: Path) -> None:
     """numba looks beside the module, then in the user's cache folder; where neither can be written it refuses."""
     script = (
-        "import warnings; warnings.simplefilter('error')\n"
+        "import warnings\nimport numpy\n"  # which warns itself where an earlier test chose its vectors
+        "warnings.simplefilter('error')\n"
         "from numba.core import caching\n"
         "caching.CacheImpl._locator_classes = []\n"
         "from colloc.kernels.switch import prefer_compiled\n"
