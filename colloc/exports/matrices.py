@@ -6,9 +6,10 @@
     Matrix Market, coordinate, real, general (Boisvert, Pozo & Remington 1996, NISTIR 5935).
 ``NAME.arrow``
     Arrow IPC file, a cell a row: ``row`` and ``column`` (int32, from 0), ``value`` (float64).
-``NAME.labels.json``
-    ``rows`` and ``columns``: the words, in the order of the matrix.
-``NAME.settings.json``
+``FILE.labels.json``
+    Beside each file, by its whole name (``NAME.npz.labels.json``). ``rows`` and ``columns``: the words, in
+    the order of the matrix.
+``FILE.settings.json``
     Everything that decided the numbers.
 """
 
@@ -48,19 +49,27 @@ def write_matrix(matrix: Matrix, output: Path) -> list[Path]:
     for ending, path in zip(chosen, paths, strict=True):
         with replacing(path) as stream:
             WRITERS[ending](matrix, stream)
-    return [*paths, *write_beside(stem, "matrix", {"rows": matrix.rows, "columns": matrix.columns}, matrix.settings)]
+    return [*paths, *write_beside(paths, "matrix", {"rows": matrix.rows, "columns": matrix.columns}, matrix.settings)]
+
+
+def companions(path: Path) -> tuple[Path, Path]:
+    """Where the labels and the settings of a file stand: beside it, by its whole name."""
+    return path.with_name(f"{path.name}.labels.json"), path.with_name(f"{path.name}.settings.json")
 
 
 def write_beside(
-    stem: Path, command: str, labels: Mapping[str, Sequence[str]], settings: Mapping[str, Any]
+    files: Sequence[Path], command: str, labels: Mapping[str, Sequence[str]], settings: Mapping[str, Any]
 ) -> list[Path]:
-    """Write ``STEM.labels.json`` and ``STEM.settings.json``."""
-    paths = [stem.with_name(f"{stem.name}.{ending}.json") for ending in ("labels", "settings")]
+    """Write the labels and the settings of each file beside it, and return the paths."""
     facts = {"colloc": version("colloc"), "command": command, "settings": dict(settings)}
-    for path, record in zip(paths, (labels, facts), strict=True):
-        with replacing(path) as stream:
-            stream.write((json.dumps(record, ensure_ascii=False, indent=2) + "\n").encode())
-    return paths
+    texts = [(json.dumps(record, ensure_ascii=False, indent=2) + "\n").encode() for record in (labels, facts)]
+    written = []
+    for file in files:
+        for path, text in zip(companions(file), texts, strict=True):
+            with replacing(path) as stream:
+                stream.write(text)
+            written.append(path)
+    return written
 
 
 def _npz(matrix: Matrix, stream: BinaryIO) -> None:

@@ -5,9 +5,9 @@
 ``NAME.txt``
     Plain text, UTF-8: a word and its numbers a line, separated by spaces; no heading line. A space inside a word
     is written as an underscore.
-``NAME.labels.json``
-    ``rows``: the words, in the order of the rows.
-``NAME.settings.json``
+``FILE.labels.json``
+    Beside each file, by its whole name (``NAME.npy.labels.json``). ``rows``: the words, in the order of the rows.
+``FILE.settings.json``
     Everything that decided the numbers.
 """
 
@@ -22,7 +22,7 @@ import numpy as np
 
 from colloc.answers.spaces.vectors import Vectors
 from colloc.errors import DataError, NoInputError
-from colloc.exports.matrices import write_beside
+from colloc.exports.matrices import companions, write_beside
 from colloc.exports.replacing import replacing
 
 
@@ -45,7 +45,7 @@ def write_vectors(vectors: Vectors, output: Path) -> list[Path]:
     for ending, path in zip(chosen, paths, strict=True):
         with replacing(path) as stream:
             WRITERS[ending](vectors, stream)
-    return [*paths, *write_beside(stem, "vectors", {"rows": vectors.words}, vectors.settings)]
+    return [*paths, *write_beside(paths, "vectors", {"rows": vectors.words}, vectors.settings)]
 
 
 def read_vectors(path: Path) -> Vectors:
@@ -60,11 +60,10 @@ def read_vectors(path: Path) -> Vectors:
     DataError
         Where one is not what it should be, or labels and rows differ in number.
     """
-    stem = path.with_name(path.name.removesuffix(".npy"))
+    file = path if path.suffix == ".npy" else path.with_name(f"{path.name}.npy")
     try:
-        values = np.load(stem.with_name(f"{stem.name}.npy"), allow_pickle=False)
-        labels: Any = json.loads(stem.with_name(f"{stem.name}.labels.json").read_text(encoding="utf-8"))
-        settings: Any = json.loads(stem.with_name(f"{stem.name}.settings.json").read_text(encoding="utf-8"))
+        values = np.load(file, allow_pickle=False)
+        labels, settings = (json.loads(beside.read_text(encoding="utf-8")) for beside in companions(file))
         words, chosen = labels["rows"], settings["settings"]
     except FileNotFoundError as error:
         raise NoInputError(f"{error.filename}: no such file; `colloc vectors` writes it beside the vectors") from error

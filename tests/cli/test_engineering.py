@@ -45,7 +45,7 @@ def test_matrix_with_lists(run: Run, store: Path, tmp_path: Path) -> None:
     assert ran.out.startswith(f"{tmp_path}/m.mtx: 2 rows, ")
     assert "rows 2 listed" in ran.err
     assert "weighting linear" in ran.err
-    assert json.loads((tmp_path / "m.labels.json").read_text())["rows"] == ["ferry", "fog"]
+    assert json.loads((tmp_path / "m.mtx.labels.json").read_text())["rows"] == ["ferry", "fog"]
     assert run("matrix", store, "-o", tmp_path / "m", "--value", "g2", "--weighting", "linear").code == 2
     assert run("matrix", store, "-o", tmp_path / "m", "--rows-from", tmp_path / "none.txt").code == 66
     assert run("matrix", store, "-o", tmp_path / "no" / "m").code == 73
@@ -56,7 +56,7 @@ def test_contexts_of_another_layer(run: Run, store: Path, tmp_path: Path) -> Non
     assert ran.code == 0, ran.err
     assert "layer fold; " in ran.err
     assert "context layer form" in ran.err
-    labels = json.loads((tmp_path / "m.labels.json").read_text())
+    labels = json.loads((tmp_path / "m.npz.labels.json").read_text())
     assert "the" in labels["rows"]
     assert "The" not in labels["rows"]
     assert {"the", "The"} <= set(labels["columns"])

@@ -71,18 +71,31 @@ def test_matrix_is_the_dense_one(store: Path, tmp_path: Path, directed: bool, sh
 def test_the_files_are_read_back_equal(store: Path, tmp_path: Path) -> None:
     made = colloc.matrix(store, tmp_path / "m.x", shift=1.5)
     assert sorted(path.name for path in tmp_path.iterdir()) == [
-        "m.x.labels.json",
         "m.x.mtx",
+        "m.x.mtx.labels.json",
+        "m.x.mtx.settings.json",
         "m.x.npz",
-        "m.x.settings.json",
+        "m.x.npz.labels.json",
+        "m.x.npz.settings.json",
     ]
     loaded = scipy.sparse.load_npz(tmp_path / "m.x.npz")
     np.testing.assert_array_equal(loaded.toarray(), made.values.toarray())
     np.testing.assert_array_equal(scipy.io.mmread(tmp_path / "m.x.mtx").toarray(), made.values.toarray())
-    labels = json.loads((tmp_path / "m.x.labels.json").read_text())
+    labels = json.loads((tmp_path / "m.x.npz.labels.json").read_text())
     assert labels == {"rows": made.rows, "columns": made.columns}
-    settings = json.loads((tmp_path / "m.x.settings.json").read_text())["settings"]
+    settings = json.loads((tmp_path / "m.x.mtx.settings.json").read_text())["settings"]
     assert (settings["shift"], settings["right"], settings["layer"]) == (1.5, 2, "fold")
+
+
+def test_a_second_file_of_the_same_stem_leaves_the_labels_of_the_first(store: Path, tmp_path: Path) -> None:
+    first = colloc.matrix(store, tmp_path / "m", rows=["fog", "heavy"])
+    second = colloc.matrix(store, tmp_path / "m.mtx", rows=["dawn", "fog", "at"])
+    for ending, made in (("npz", first), ("mtx", second)):
+        labels = json.loads((tmp_path / f"m.{ending}.labels.json").read_text())
+        assert labels == {"rows": made.rows, "columns": made.columns}
+        settings = json.loads((tmp_path / f"m.{ending}.settings.json").read_text())["settings"]
+        assert settings["rows"] == made.settings["rows"]
+    assert scipy.sparse.load_npz(tmp_path / "m.npz").shape == (2, len(first.columns))
 
 
 def test_thresholds_leave_the_margins(store: Path, tmp_path: Path) -> None:

@@ -121,7 +121,7 @@ def matrix(
 ) -> None:
     """Write the sparse matrix of a table: words as rows, their company as columns.
 
-    Labels and settings stand beside it as FILE.labels.json and FILE.settings.json (without its ending).
+    Labels and settings stand beside it as FILE.labels.json and FILE.settings.json.
     """
     from colloc.verbs import spaces
 

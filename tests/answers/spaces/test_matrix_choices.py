@@ -171,7 +171,7 @@ def test_one_file_by_its_ending(store: Path, tmp_path: Path, ending: str) -> Non
     made = colloc.matrix(store, smoothing=0.75)
     paths = write_matrix(made, tmp_path / f"m.{ending}")
     assert sorted(path.name for path in tmp_path.iterdir()) == sorted(path.name for path in paths)
-    assert {path.name for path in paths} == {f"m.{ending}", "m.labels.json", "m.settings.json"}
+    assert {path.name for path in paths} == {f"m.{ending}{beside}" for beside in ("", ".labels.json", ".settings.json")}
     dense = made.values.toarray()
     if ending == "npz":
         found = load_npz(tmp_path / "m.npz").toarray()
@@ -183,7 +183,7 @@ def test_one_file_by_its_ending(store: Path, tmp_path: Path, ending: str) -> Non
         found = np.zeros_like(dense)
         found[cells["row"], cells["column"]] = cells["value"]
     np.testing.assert_array_equal(found, dense)
-    assert json.loads((tmp_path / "m.settings.json").read_text())["settings"]["smoothing"] == 0.75
+    assert json.loads((tmp_path / f"m.{ending}.settings.json").read_text())["settings"]["smoothing"] == 0.75
 
 
 @given(

@@ -144,7 +144,8 @@ def test_power_and_joined_contexts(demo: Path, power: float) -> None:
 
 def test_written_vectors_come_back(demo: Path, tmp_path: Path) -> None:
     made = colloc.vectors(demo, tmp_path / "v", dimensions=6)
-    assert sorted(p.name for p in tmp_path.iterdir()) == ["v.labels.json", "v.npy", "v.settings.json", "v.txt"]
+    beside = ("", ".labels.json", ".settings.json")
+    assert sorted(p.name for p in tmp_path.iterdir()) == [f"v.{end}{more}" for end in ("npy", "txt") for more in beside]
     np.testing.assert_array_equal(np.load(tmp_path / "v.npy"), made.values.astype(np.float32))
     back = read_vectors(tmp_path / "v.npy")
     assert (back.words, back.settings) == (made.words, json.loads(json.dumps(made.settings)))
@@ -154,8 +155,8 @@ def test_written_vectors_come_back(demo: Path, tmp_path: Path) -> None:
     assert word == made.words[7]
     np.testing.assert_allclose(np.array(numbers, float), made.values[7], rtol=1e-5, atol=1e-6)
     paths = write_vectors(made, tmp_path / "w.txt")
-    assert [path.name for path in paths] == ["w.txt", "w.labels.json", "w.settings.json"]
-    (tmp_path / "v.labels.json").write_text('{"rows": ["a"]}', encoding="utf-8")
+    assert [path.name for path in paths] == [f"w.txt{more}" for more in beside]
+    (tmp_path / "v.npy.labels.json").write_text('{"rows": ["a"]}', encoding="utf-8")
     with pytest.raises(DataError, match="numbers for 1 labels"):
         read_vectors(tmp_path / "v.npy")
     with pytest.raises(NoInputError, match=r"w\.npy: no such file"):
