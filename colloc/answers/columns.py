@@ -153,7 +153,7 @@ class Columns:
         """
         arrow = _library("pyarrow")
         arrays = [
-            arrow.array(_texts(array), type=arrow.string()) if array.dtype.kind == "O" else arrow.array(array)
+            arrow.array(_texts(array), type=arrow.string()) if _holds_text(array) else arrow.array(array)
             for array in self.data.values()
         ]
         table: pa.Table = arrow.table(arrays, names=list(self.names))
@@ -168,8 +168,8 @@ class Columns:
             Where polars is not installed.
         """
         polars = _library("polars")
-        text = {name: polars.String for name in self.names if self[name].dtype.kind == "O"}
-        columns = {name: _texts(array) if name in text else array for name, array in self.data.items()}
+        text = {name: polars.String for name in self.names if _holds_text(self[name])}
+        columns = {name: _texts(array) if name in text else _plain(array) for name, array in self.data.items()}
         frame: pl.DataFrame = polars.DataFrame(columns, schema_overrides=text)
         return frame
 
@@ -216,6 +216,15 @@ def _is_text(values: ArrayLike) -> bool:
     if not isinstance(values, list | tuple):
         return False
     return not values or any(isinstance(value, str) or value is None for value in values)
+
+
+def _holds_text(array: NDArray[Any]) -> bool:
+    """Whether a column goes into data frames as text: one of yes and no, some of them unknown, does not."""
+    return array.dtype.kind == "O" and {*map(type, array)} - {type(None)} != {bool}
+
+
+def _plain(array: NDArray[Any]) -> NDArray[Any] | list[Any]:
+    return array.tolist() if array.dtype.kind == "O" else array
 
 
 def _texts(array: NDArray[Any]) -> list[str | None]:

@@ -337,7 +337,8 @@ AboveChanceOption = Annotated[
     Literal["order", "corpus"] | None,
     _option(
         "--above-chance",
-        help="Only rows stronger than text shuffled in documents (order) or across all (corpus); see colloc floors.",
+        help="Only rows stronger than text shuffled in documents (order) or across all (corpus); see colloc floors. "
+        "Rows so rarely expected that no floor is known for them do not pass.",
     ),
 ]
 IntervalAboveOption = Annotated[

@@ -373,7 +373,9 @@ def test_chance_floors_are_shown_where_they_are_kept(tmp_path: Path, demo: Demo)
     colloc.floors(path)
     rows = list(colloc.explain(path, "thick", "fog").floors)
     assert {row["shuffle"] for row in rows} == {"order", "corpus"}
-    assert all(row["above"] == (row["value"] > row["floor"]) for row in rows)
+    known = [row for row in rows if row["floor"] == row["floor"]]
+    assert known
+    assert all(row["above"] == (row["value"] > row["floor"]) for row in known)
     assert all(row["above"] for row in rows if row["measure"] == "npmi")
 
 
@@ -406,6 +408,25 @@ def test_differences_are_told_where_they_were_planted(demo: Demo) -> None:
     assert "where genre is notice" in told("thick", "fog")
     assert "where year is" not in told("thick", "fog")
     assert "not the same everywhere" not in told("heavy", "rain")
+
+
+def test_no_part_of_few_documents_is_named(tmp_path: Path) -> None:
+    """A part is told apart by three documents that hold both words, not by what one says over and over."""
+    plain = "The old mill stood by the river. " * 4 + "The river was old. A mill was there. "
+    loud = "Old mill, old mill, old mill, old mill. " * 12 + "She went by the river and sat down there. " * 30
+
+    def told(louds: int) -> str:
+        texts = [(plain + f"Filler number {n} says that. " * 9, 1850) for n in range(12)] + [(loud, 1920)] * louds
+        rows = [{"id": f"d{n}", "text": text, "year": year} for n, (text, year) in enumerate(texts)]
+        name = tmp_path / f"{louds}.jsonl"
+        name.write_text("".join(json.dumps(row) + "\n" for row in rows), encoding="utf-8")
+        colloc.build(tmp_path / f"{louds}.colloc", [str(name)], jobs=1)
+        card = colloc.explain(tmp_path / f"{louds}.colloc", "old", "mill", examples=0)
+        assert card.slices["year"]["holding"].tolist() == [12, louds]
+        return " ".join(card.statements)
+
+    assert "not the same everywhere" not in told(2)
+    assert "not the same everywhere: PMI" in told(3)
 
 
 CONLLU = """# newdoc id = one

@@ -54,11 +54,22 @@ def test_all_columns_in_their_order(everything: Columns) -> None:
     assert everything.names[-len(SURE_COLUMNS) :] == SURE_COLUMNS
     assert everything.settings["groups_of_documents"] == 20
     assert "99th percentile of npmi" in everything.settings["order_floor"]
-    assert (everything["above_order"] == (everything["npmi"] > everything["order_floor"])).all()
-    assert (everything["above_corpus"] == (everything["npmi"] > everything["corpus_floor"])).all()
+    for shuffle in ("order", "corpus"):
+        above, floor = everything[f"above_{shuffle}"], everything[f"{shuffle}_floor"]
+        unknown = np.isnan(floor)
+        assert 0 < unknown.sum() < len(everything)
+        assert (above[~unknown] == (everything["npmi"] > floor)[~unknown]).all()
+        assert {*above[unknown].tolist()} == {None}
+        assert everything["expected"][unknown].max() < everything["expected"][~unknown].min() + 1
     assert ((everything["q_value"] >= 0) & (everything["q_value"] <= 1)).all()
     inside = (everything["pmi_low"] <= everything["pmi"]) & (everything["pmi"] <= everything["pmi_high"])
     assert inside.all()
+
+
+def test_what_is_unknown_stays_so_in_data_frames(everything: Columns) -> None:
+    assert str(everything.to_arrow().schema.field("above_order").type) == "bool"
+    assert everything.to_arrow()["above_order"].to_pylist() == everything["above_order"].tolist()
+    assert everything.to_polars()["above_order"].to_list() == everything["above_order"].tolist()
 
 
 FILTERS: list[tuple[dict[str, Any], str]] = [
@@ -80,7 +91,7 @@ def test_filters_leave_what_the_columns_say(
     keep &= everything["documents"] >= wish.get("min_docs", 1)
     keep &= everything["q_value"] <= wish.get("max_q", 1.0)
     keep &= everything["pmi_low"] > wish.get("interval_above", -np.inf) if "interval_above" in wish else True
-    keep &= everything[f"above_{wish['above_chance']}"] if "above_chance" in wish else True
+    keep &= everything[f"above_{wish['above_chance']}"].astype(bool) if "above_chance" in wish else True
     assert 0 < keep.sum() < len(everything)
     found = colloc.pairs(demo, limit=limit, **wish)
     wanted = everything.take(keep)[: limit or None]
@@ -255,6 +266,10 @@ def test_command_line(demo: Path, run: Run) -> None:
     ran = run("pairs", demo, "--sure", "-n", 3, "-f", "csv")
     assert ran.code == 0
     assert ran.out.splitlines()[0].endswith(",".join(SURE_COLUMNS))
+    ran = run("pairs", demo, "--show", "order_floor,above_order", "-n", 0, "-f", "jsonl")
+    rows = [json.loads(line) for line in ran.out.splitlines()]
+    assert {row["above_order"] for row in rows} == {True, False, None}
+    assert all((row["above_order"] is None) == (row["order_floor"] is None) for row in rows)
     ran = run("pairs", demo, "--max-q", 0.01, "--above-chance", "order", "--interval-above", 0, "--min-docs", 3)
     assert ran.code == 0
     assert "hypotheses" in ran.err

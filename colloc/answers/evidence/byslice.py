@@ -8,7 +8,7 @@ from collections.abc import Iterable
 import numpy as np
 
 from colloc.answers.columns import Columns
-from colloc.answers.evidence.occurring import PairOccurrences
+from colloc.answers.evidence.occurring import FIRST, SECOND, PairOccurrences
 from colloc.measures.contingency import expected
 from colloc.measures.intervals import pmi_interval
 from colloc.measures.pmi import pmi
@@ -42,12 +42,14 @@ def _table(seen: PairOccurrences, labels: list[str | None]) -> Columns:
     tokens = np.array([seen.tokens[mask].sum() for mask in masks], np.float64)
     counted = np.array([seen.total[mask].sum() for mask in masks], np.float64)
     interval = pmi_interval(*columns)
+    holding = (seen.words[:, FIRST] > 0) & (seen.words[:, FIRST if seen.same else SECOND] > 0)
     with np.errstate(divide="ignore", invalid="ignore"):
         rates = [columns[0] * 1e6 / of for of in (tokens, counted)]
     return Columns(
         {
             "value": values,
             "documents": np.array([int(mask.sum()) for mask in masks]),
+            "holding": np.array([int(holding[mask].sum()) for mask in masks]),
             "joint": columns[0],
             "expected": expected(*columns),
             "per_million_words": rates[0],

@@ -41,7 +41,8 @@ class Evidence:
         For pairs met less often than expected: pmi_if_one (PMI of a single meeting, the smallest association that
         the sample could have shown) and pmi_at_most (what such a count speaks against at 95 %).
     floors : Columns
-        shuffle, measure, value, floor, above; no rows where the store keeps none.
+        shuffle, measure, value, floor, above (nan and None where none is known for so small an expected count); no rows
+        where the store keeps none.
     spread : mapping
         documents, of_documents, tokens (of all), dp, dp_norm, largest_share, largest_document.
     by_document : Columns
@@ -53,8 +54,8 @@ class Evidence:
         word is the syntactic head of the other, however far apart, within each relation. None where the store holds
         no text with heads.
     slices : mapping of str to Columns
-        By metadata key: value, documents, joint, expected, per_million_words (joint in a million words of the text),
-        per_million_counted (in a million of what is ``counted``), pmi, pmi_low, pmi_high.
+        By metadata key: value, documents, holding (documents with both words), joint, expected, per_million_words
+        (joint in a million words of the text), per_million_counted (in a million of what is ``counted``), pmi, pmi_low, pmi_high.
     forms : Columns
         first_form, second_form, order, count: of cases, each with the nearest second word. Where the store has
         lemmas, cases of all forms of the two lemmas.

@@ -225,7 +225,7 @@ def _floors(question: Question, table: PairTable) -> Columns:
             "measure": [row[1] for row in rows],
             "value": np.array([row[2] for row in rows], np.float64),
             "floor": np.array([row[3] for row in rows], np.float64),
-            "above": np.array([row[2] > row[3] for row in rows], np.bool_),
+            "above": np.array([None if row[3] != row[3] else row[2] > row[3] for row in rows], object),
         }
     )
 

@@ -12,6 +12,7 @@ from colloc.answers.plain import LEAST_PROBABILITY, Grid, number_text, shown_tex
 
 LEAST_WIDTH = 40
 _BAR = 24
+NO_FLOOR = "too few pairs so rarely expected met for a chance floor to be known"
 
 
 def card_lines(card: Evidence, columns: int) -> list[str]:
@@ -126,6 +127,9 @@ def _chance(card: Evidence, columns: int) -> list[str]:
         )
     for row in card.floors:
         what = "within documents" if row["shuffle"] == "order" else "across documents"
+        if row["floor"] != row["floor"]:
+            lines += _wrapped(f"{row['measure']}: {NO_FLOOR} in text shuffled {what}", columns - 2)
+            continue
         place = "above" if row["above"] else "not above"
         lines.append(
             f"{row['measure']} {_number(row['value'], 3)} is {place} {_number(row['floor'], 3)}, "

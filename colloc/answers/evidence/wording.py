@@ -18,6 +18,8 @@ FEW = 5
 APART = 4.0
 """Standard errors between two parts from which on they are said to differ: the asymptotic ones are too small on
 running text, and the two parts are the most different of several."""
+LEAST_HOLDING = 3
+"""Documents of a part that must hold both words for it to be named: fewer tell of documents, not of the part."""
 ONE_AUTHOR = 0.5
 """From this share on a single document is named as the possible cause."""
 
@@ -86,12 +88,12 @@ def _floors(floors: Columns) -> list[str]:
             "The pair is stronger than 99 % of equally expected pairs in text shuffled within its documents: "
             "their standing near each other is more than a shared topic."
         )
-    elif order is not None and corpus is not None and corpus["above"]:
+    elif order is not None and order["value"] <= order["floor"] and corpus is not None and corpus["above"]:
         found.append(
             "The pair is above the floor of text shuffled across documents, not above that of text shuffled "
             "within them: that they share a topic explains it."
         )
-    elif corpus is not None and not corpus["above"]:
+    elif corpus is not None and corpus["value"] <= corpus["floor"]:
         found.append("Shuffled text has pairs as strong as this one: it is not above the chance floor.")
     return found
 
@@ -160,7 +162,7 @@ def _changing(slices: dict[str, Columns]) -> str | None:
     """The key whose parts differ most, where they differ by far more than the best of many pairs would by chance."""
     best = (APART, "")
     for key, table in slices.items():
-        rows = [row for row in table if row["joint"] >= FEW]
+        rows = [row for row in table if row["joint"] >= FEW and row["holding"] >= LEAST_HOLDING]
         if len(rows) < 2:
             continue
         low = min(rows, key=lambda row: row["pmi"])

@@ -77,8 +77,8 @@ class Floors:
     values: dict[str, list[float | None]]
 
     def at(self, measure: str, expected_counts: FloatArray) -> FloatArray:
-        """The floor for pairs with these expected counts; -inf where even one meeting is rarer than 1 in 100."""
-        known = np.array([-np.inf if value is None else value for value in self.values[measure]])
+        """The floor for pairs with these expected counts; nan where too few such pairs met for one to be known."""
+        known = np.array([np.nan if value is None else value for value in self.values[measure]])
         band = np.searchsorted(np.array(self.edges), expected_counts, side="right") - 1
         floor: FloatArray = known[np.maximum(band, 0)]
         return floor
@@ -257,5 +257,5 @@ def floor_summary(floors: Floors) -> dict[str, Any]:
         "expected_from": floors.edges,
         "pairs": floors.pairs,
         "met": floors.seen,
-        **{f"{name}_floor": [-np.inf if v is None else v for v in values] for name, values in floors.values.items()},
+        **{f"{name}_floor": [np.nan if v is None else v for v in values] for name, values in floors.values.items()},
     }

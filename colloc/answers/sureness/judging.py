@@ -159,7 +159,7 @@ class Judge:
         for shuffle in ("corpus", "order"):
             if f"{shuffle}_floor" in self.columns or f"above_{shuffle}" in self.columns:
                 found[f"{shuffle}_floor"] = self._floor(table, shuffle)
-                found[f"above_{shuffle}"] = self._above(table, shuffle)
+                found[f"above_{shuffle}"] = self._told_above(table, shuffle)
         return {name: found[name] for name in self.columns}
 
     def _floor(self, table: PairTable, shuffle: Shuffle) -> FloatArray:
@@ -168,3 +168,13 @@ class Judge:
     def _above(self, table: PairTable, shuffle: Shuffle) -> NDArray[np.bool_]:
         above: NDArray[np.bool_] = MEASURES[self.floor_measure].compute(*table.arguments) > self._floor(table, shuffle)
         return above
+
+    def _told_above(self, table: PairTable, shuffle: Shuffle) -> NDArray[np.generic]:
+        """Whether each row is above its floor; None where there is none to hold it against."""
+        above = self._above(table, shuffle)
+        unknown = np.isnan(self._floor(table, shuffle))
+        if not unknown.any():
+            return above
+        told = above.astype(object)
+        told[unknown] = None
+        return told

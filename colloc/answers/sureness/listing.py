@@ -27,7 +27,7 @@ def listed_floors(
     -------
     Columns
         shuffle, expected_from (where the band begins), pairs and met (pairs of words in the band, and how many of
-        them met, on average over the rounds of shuffling), and for each measure its floor, -inf where fewer than
+        them met, on average over the rounds of shuffling), and for each measure its floor, nan where fewer than
         1 % of the pairs met.
     """
     question = ask(store, options, jobs=jobs, memory=memory, progress=progress)

@@ -7,7 +7,7 @@ from typing import Any
 
 from colloc.answers.columns import Columns
 from colloc.answers.evidence.card import Evidence
-from colloc.answers.evidence.text import measure_text, p_text
+from colloc.answers.evidence.text import NO_FLOOR, measure_text, p_text
 from colloc.exports.pages.frame import Markup, number, page, settings_footer, table, text
 from colloc.exports.pages.lines import marked
 
@@ -145,6 +145,9 @@ def _chance(card: Evidence) -> Markup:
         if row["measure"] != "npmi":
             continue
         what = "within" if row["shuffle"] == "order" else "across"
+        if row["floor"] != row["floor"]:
+            found += f"<p>NPMI: {NO_FLOOR} in text shuffled {what} documents.</p>"
+            continue
         place = "above" if row["above"] else "not above"
         found += (
             f"<p>NPMI {number(row['value'], 3)} is <strong>{place}</strong> the chance floor "
