@@ -152,6 +152,20 @@ def remark(text: str, *, quiet: bool = False) -> None:
         print(text, file=sys.stderr, flush=True)
 
 
+def remark_picture(path: Path, lacking: str | None = None, *, quiet: bool = False) -> None:
+    """Say which picture was written, and what it lacks."""
+    remark(f"# {path}: picture written" + (f"; {lacking}" if lacking else ""), quiet=quiet)
+
+
+def counted(n: int, one: str, several: str) -> str:
+    """A number with what it counts.
+
+    >>> counted(1, "expression", "expressions"), counted(1200, "expression", "expressions")
+    ('1 expression', '1200 expressions')
+    """
+    return f"{n} {one if n == 1 else several}"
+
+
 def remark_unknown(settings: Mapping[str, Any], *, quiet: bool = False) -> None:
     """Name the words asked for that the store does not know, the first ten of them."""
     unknown = settings.get("unknown", [])

@@ -86,6 +86,15 @@ def judge(
     return decision
 
 
+def occurrences(store: StorePath | Store, decision: Decision) -> int:
+    """How often the words of a decision meet in the store, counted as it was built, or stand in a row there."""
+    from colloc.answers.judging.figures import occurrences as count
+    from colloc.answers.judging.matters import matter_of
+
+    with reading(store) as opened:
+        return count(opened, matter_of(decision))
+
+
 def decisions(
     store: StorePath | Store, *, by: str | None = None, history: bool = False, disagreements: bool = False
 ) -> Columns:
@@ -216,11 +225,18 @@ def take_sheet(store: StorePath | Store, rows: Iterable[SheetRow], *, by: str = 
         if problems:
             shown = "; ".join(problems[:MOST_PROBLEMS])
             more = f"; and {len(problems) - MOST_PROBLEMS} more" if len(problems) > MOST_PROBLEMS else ""
-            cure = "; nothing was recorded" if filled.problems else "; nothing was recorded: --override lets rows win"
-            raise DataError(f"{shown}{more}{cure}")
+            raise DataError(f"{shown}{more}; nothing was recorded{_cure(filled)}")
         with writing.transaction():
             append(writing, filled.decisions)
     return filled
+
+
+def _cure(filled: Filled) -> str:
+    if not filled.conflicts:
+        return ""
+    if not filled.problems:
+        return ": --override lets rows win"
+    return ": --override lets rows win over decisions; what else is wrong must be put right"
 
 
 def check_judge(by: str | None) -> str:

@@ -75,6 +75,40 @@ def test_what_cannot_be_recorded(
     assert len(colloc.decisions(store, history=True)) == 0
 
 
+@pytest.mark.parametrize(
+    ("words", "remark"),
+    [
+        (["fog bay"], "fog bay: never occurs in a row in this store"),
+        (["fog * bay"], "fog * bay: never occurs in a row in this store"),
+        (["fog", "oil"], "fog oil: the two words never meet within reach of each other in this store"),
+        (["fog", "thick", "--kind", "directed"], "fog thick: the second word never follows the first within reach"),
+        (["thick fog"], ""),
+        (["thick * came"], ""),
+        (["fog", "bay"], ""),
+        (["thick", "fog", "--kind", "directed"], ""),
+    ],
+)
+def test_what_never_occurs_is_recorded_and_said(
+    store: Path, words: list[str], remark: str, capsys: pytest.CaptureFixture[str]
+) -> None:
+    assert main(["judge", str(store), *words, "--accept", "--by", "Anna"]) == 0
+    _, *said = capsys.readouterr().err.splitlines()
+    assert [line[: len(remark)] for line in said] == ([remark] if remark else [])
+    assert len(colloc.decisions(store)) == 1
+    assert main(["judge", str(store), *words, "--withdraw", "--by", "Anna"]) == 0
+    assert len(capsys.readouterr().err.splitlines()) == 1
+
+
+def test_a_list_of_decisions_can_be_cut(store: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    for words in ("thick fog", "strong wind", "clean oil"):
+        colloc.judge(store, words.split(), "accept", by="Anna")
+    for limit, rows, more in (("2", 2, True), ("3", 3, False), ("0", 3, False)):
+        assert main(["decisions", str(store), "-n", limit, "-f", "csv"]) == 0
+        out, err = capsys.readouterr()
+        assert len(out.splitlines()) == rows + 1
+        assert ("1 row more: --limit 0 for all" in err) == more
+
+
 def test_expressions_and_open_places(store: Path) -> None:
     made = colloc.judge(store, "By and Large", "accept", by="Anna")
     assert (made.kind, made.words) == ("expression", ("by", "and", "large"))

@@ -5,6 +5,7 @@ from __future__ import annotations
 import csv
 import io
 import random
+import re
 import shutil
 import tempfile
 import zipfile
@@ -82,7 +83,7 @@ def _read(path: Path) -> list[SheetRow]:
     [
         ({"words": "fog boat"}, "were changed since the sheet was written"),
         ({"kind": "directed"}, "were changed"),
-        ({"seen": "7"}, "were changed"),
+        ({"seen": "7"}, "words, layer, kind or seen were changed"),
         ({"seen": "x"}, "`seen` was changed"),
         ({"verdict": "perhaps"}, "the verdict 'perhaps' is none"),
         ({"verdict": "", "note": "why"}, "note without a verdict"),
@@ -93,7 +94,7 @@ def _read(path: Path) -> list[SheetRow]:
         ({"words": "fog", "check": ""}, "one word only"),
         ({"words": "fog zebra", "check": ""}, "'zebra' never occurs"),
         ({"words": '["fog"', "check": ""}, "begins like a list"),
-        ({"judge": "Ben"}, "Ben's, not Anna's"),
+        ({"judge": "Ben"}, "Ben's, not Anna's: leave --by out, or clear the cell `judge`"),
     ],
 )
 def test_what_was_broken_by_hand_is_refused_by_row(
@@ -133,7 +134,8 @@ def test_a_decision_made_meanwhile_is_a_conflict(store: Path, sheet: Path, tmp_p
     rows[1]["verdict"] = "accept"
     path = write(tmp_path / "f.csv", rows)
     colloc.judge(store, rows[1]["words"].split(), "reject", by="Anna")
-    with pytest.raises(DataError, match=r"is reject by Anna since .*the row says accept.*--override"):
+    differing = r"is reject by Anna since .*; verdict: the store says 'reject', the row says 'accept'; .*--override"
+    with pytest.raises(DataError, match=differing):
         colloc.take_sheet(store, _read(path), by="Anna")
     assert len(colloc.take_sheet(store, _read(path), by="Ben").decisions) == 1, "another judge is no conflict"
     assert len(colloc.take_sheet(store, _read(path), by="Anna", override=True).decisions) == 1
@@ -155,10 +157,63 @@ def test_what_means_the_same_is_no_conflict(store: Path, sheet: Path, tmp_path: 
     assert (len(found.decisions), found.unchanged) == (0, 1), "an empty cell contradicts nothing"
     [kept] = [row for row in colloc.decisions(store, by="Anna") if list(row["words"]) == words]
     assert (kept["sense"], kept["note"], list(kept["labels"])) == ("dense  air", "two\nlines", labels)
-    for change in ({"verdict": "reject"}, {"sense": "thin air"}, {"labels": "sea"}, {"note": "two lines, no"}):
+    for change, name, said in (
+        ({"verdict": "reject"}, "verdict", "accept"),
+        ({"sense": "thin air"}, "sense", "dense  air"),
+        ({"labels": "sea"}, "labels", "sea; old  word"),
+        ({"note": "two lines, no"}, "note", r"two\nlines"),
+    ):
         changed = [*rows[:1], rows[1] | change, *rows[2:]]
-        with pytest.raises(DataError, match=r"is accept by Anna since .*--override"):
+        both = f"; {name}: the store says '{said}', the row says '{change[name]}'; nothing was recorded: --override"
+        with pytest.raises(DataError, match=f"is accept by Anna since .*{re.escape(both)}"):
             colloc.take_sheet(store, _read(write(tmp_path / "other.csv", changed)), by="Anna")
+
+
+def test_a_sheet_filled_in_over_two_sittings(store: Path, sheet: Path, tmp_path: Path) -> None:
+    rows = rows_of(sheet)
+    rows[0] |= {"verdict": "accept", "labels": "sea"}
+    first = write(tmp_path / "first.csv", rows)
+    assert len(colloc.take_sheet(store, _read(first), by="Anna").decisions) == 1
+    rows[0] |= {"sense": "dense air", "labels": "", "examples": "1"}
+    rows[1]["verdict"] = "reject"
+    second = write(tmp_path / "second.csv", rows)
+    found = colloc.take_sheet(store, _read(second), by="Anna")
+    assert (len(found.decisions), found.conflicts) == (2, [])
+    again = colloc.take_sheet(store, _read(second), by="Anna")
+    older = colloc.take_sheet(store, _read(first), by="Anna")
+    assert (len(again.decisions), again.unchanged) == (0, 2)
+    assert (len(older.decisions), older.unchanged) == (0, 1)
+    kept = {" ".join(row["words"]): row for row in colloc.decisions(store).to_dicts()}
+    row = kept[rows[0]["words"]]
+    assert (row["verdict"], row["sense"], row["labels"]) == ("accept", "dense air", ["sea"])
+    assert len(row["examples"]) == 1
+    assert kept[rows[1]["words"]]["verdict"] == "reject"
+    assert [row["sense"] for row in colloc.decisions(store, history=True).to_dicts()] == ["", "dense air", ""]
+
+
+def test_the_way_out_of_a_conflict_is_told_beside_other_errors(store: Path, sheet: Path, tmp_path: Path) -> None:
+    rows = rows_of(sheet)
+    colloc.judge(store, rows[0]["words"].split(), "reject", by="Anna")
+    rows[0]["verdict"] = "accept"
+    rows[1]["verdict"] = "perhaps"
+    with pytest.raises(DataError, match=r"'perhaps' is none.*'accept'; nothing was recorded: --override lets rows win"):
+        colloc.take_sheet(store, _read(write(tmp_path / "f.csv", rows)), by="Anna")
+
+
+def test_a_row_made_for_one_judge_is_taken_for_another_once_its_judge_is_cleared(store: Path, tmp_path: Path) -> None:
+    colloc.judge(store, ["thick", "fog"], "accept", by="Anna")
+    given = tmp_path / "given.txt"
+    given.write_text("thick fog\nstrong wind\nclean oil\n", encoding="utf-8")
+    path = tmp_path / "s.csv"
+    assert main(["sheet", str(store), "--given", str(given), "--by", "Anna", "-o", str(path), "-q"]) == 0
+    rows = rows_of(path)
+    for row, verdict in zip(rows, ("", "reject", ""), strict=True):
+        row |= {"judge": "", "verdict": verdict}
+    found = colloc.take_sheet(store, _read(write(path, rows)), by="Ben")
+    assert [(one.judge, one.words) for one in found.decisions] == [("Ben", ("strong", "wind"))]
+    assert found.empty == 2, "what Anna had decided is nothing that Ben emptied"
+    with pytest.raises(DataError, match="write withdrawn"):
+        colloc.take_sheet(store, _read(path), by="Anna")
 
 
 def test_the_same_words_twice_meaning_the_same(store: Path, sheet: Path, tmp_path: Path) -> None:

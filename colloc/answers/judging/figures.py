@@ -89,6 +89,19 @@ def figures(
     return [found[row] for row in range(len(matters))]
 
 
+def occurrences(store: Store, matter: Matter) -> int:
+    """The joint count of a pair, or how often an expression stands in the text; soon told, since without scores.
+
+    Of an expression of more than `MOST_PARTS` words so many are looked for, the first ones.
+    """
+    # Annotated words may have blanks in them, which a search takes for borders of words.
+    if matter.kind != "expression" or any(len(word.split()) > 1 for word in matter.words):
+        return figures(store, [matter], ())[0].joint
+    inside = chosen_spec(PairOptions(), built_spec(store), "pairs").inside
+    search = matching.prepare(store, matter.layer, [" ".join(matter.words[: matching.MOST_PARTS])])
+    return len(finding.find(store, search, left=0, right=0, inside=inside, where=""))
+
+
 def _of_pairs(question: Question, matters: Sequence[Matter], measures: Sequence[str]) -> list[Figures]:
     terms = [
         vocabulary.term_numbers(question.store, question.layer, [matter.words[place] for matter in matters])

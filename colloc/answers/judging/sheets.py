@@ -12,7 +12,7 @@ import hashlib
 import json
 import unicodedata
 from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Any, cast
 
 import numpy as np
@@ -77,7 +77,7 @@ def sheet(store: Store, rows: Sequence[Candidate], measures: Sequence[str], judg
         "kind": [row.matter.kind for row in rows],
         "judge": [judge for _ in rows],
         "seen": np.array([row.number for row in rows], np.int64),
-        "check": [_check(row.matter, judge, row.number) for row in rows],
+        "check": [_check(row.matter, row.number) for row in rows],
     }
     return Columns(columns, {"store": str(store.path), "judge": judge, "measures": list(measures), "lines": lines})
 
@@ -108,13 +108,9 @@ def written_cells(answer: Columns) -> Columns:
     return answer.adding(texts)
 
 
-def _place(example: Mapping[str, Any]) -> str:
-    return f"{example['document']}:{example['start'] + example['marks'][0][0]}"
-
-
-def _check(matter: Matter, judge: str, seen: int) -> str:
+def _check(matter: Matter, seen: int) -> str:
     """A checksum that no spreadsheet takes for a number or a date."""
-    data = json.dumps([matter.layer, matter.kind, matter.words, judge, seen], ensure_ascii=False)
+    data = json.dumps([matter.layer, matter.kind, matter.words, seen], ensure_ascii=False)
     digest = hashlib.blake2b(data.encode("utf-8", "surrogatepass"), digest_size=10).digest()
     return "k" + base64.b32encode(digest).decode().lower()
 
@@ -142,7 +138,7 @@ class Filled:
         Rows that cannot be taken; each begins with its place.
     conflicts : list of str
         Rows that contradict a decision of the same judge made after the sheet was written, or made before where the
-        row does not know of it.
+        row does not know of it; each names the cells that differ.
     """
 
     decisions: list[Decision] = field(default_factory=list)
@@ -185,15 +181,18 @@ def read_sheet(store: Store, rows: Iterable[SheetRow], judge: str, now: str) -> 
             continue
         first_places[key] = row.place, decision
         number, before = kept.get(key, (0, None))
-        unknown = number != read.seen
-        if before is not None and (_says(before) == _says(decision) or (unknown and _agrees(decision, before))):
+        if before is not None and number != read.seen:
+            differing = _differing(decision, before)
+            if differing:
+                filled.conflicts.append(
+                    f"{row.place}: {read.matter.text!r} is {before.verdict} by {before.judge} since {before.decided}; "
+                    + ", ".join(differing)
+                )
+            else:
+                decision = _completed(before, decision)
+        if before is not None and _says(before) == _says(decision):
             filled.unchanged += 1
             continue
-        if before is not None and unknown:
-            filled.conflicts.append(
-                f"{row.place}: {read.matter.text!r} is {before.verdict} by {before.judge} since {before.decided}, "
-                f"the row says {decision.verdict}"
-            )
         filled.decisions.append(decision)
     return filled
 
@@ -205,10 +204,32 @@ def _means(decision: Decision) -> tuple[Any, ...]:
     return verdict, *texts, frozenset(" ".join(label.split()) for label in labels), frozenset(places)
 
 
-def _agrees(row: Decision, before: Decision) -> bool:
-    """Whether a row means what was decided, as far as it says anything: an empty cell contradicts nothing."""
-    said, known = _means(row), _means(before)
-    return said[0] == known[0] and all(not one or one == other for one, other in zip(said[1:], known[1:], strict=True))
+def _differing(row: Decision, before: Decision) -> list[str]:
+    """Cells that contradict what was decided; where one side is empty there is nothing to contradict."""
+    sides = zip(FILLED, _means(row), _means(before), _written(row), _written(before), strict=True)
+    return [
+        f"{name}: the store says {kept!r}, the row says {said!r}"
+        for name, here, there, said, kept in sides
+        if here and there and here != there
+    ]
+
+
+def _completed(before: Decision, row: Decision) -> Decision:
+    """What was decided, with what the row says where nothing was said before; the row contradicts nothing."""
+    return replace(
+        before,
+        decided=row.decided,
+        sense=before.sense if before.sense.strip() else row.sense,
+        note=before.note if before.note.strip() else row.note,
+        labels=before.labels or row.labels,
+        examples=before.examples or row.examples,
+    )
+
+
+def _written(decision: Decision) -> tuple[str, ...]:
+    """The cells of a decision, in the order of `FILLED`."""
+    examples = written_list([place_of(one) for one in decision.examples], LABELS)
+    return decision.verdict, decision.sense, decision.note, written_list(decision.labels, LABELS), examples
 
 
 def _says(decision: Decision) -> tuple[Any, ...]:
@@ -226,12 +247,17 @@ class _Row:
         self._cells = row.cells
         self.judge = self._cell("judge") or judge
         if judge and self.judge != judge:
-            raise DataError(f"the row is {self.judge}'s, not {judge}'s: leave --by out, or clear the cell `judge`")
+            raise DataError(
+                f"the row is {self.judge}'s, not {judge}'s: leave --by out, or clear the cell `judge` "
+                f"if {judge} decides what stands in the row"
+            )
         self.matter = self._matter()
         self.seen = self._seen()
         self._checked()
-        before = kept.get((self.matter.key, self.judge))
-        self._chosen = before[1].examples if before else ()
+        number, before = kept.get((self.matter.key, self.judge), (0, None))
+        self._chosen = before.examples if before else ()
+        # With the cell `judge` cleared, the decision that was filled in may be another judge's.
+        self._knows = self.seen > 0 and (bool(self._cell("judge")) or self.seen == number)
 
     def _cell(self, name: str) -> str:
         return (self._cells.get(name) or "").strip()
@@ -259,9 +285,9 @@ class _Row:
 
     def _checked(self) -> None:
         check = self._cell("check")
-        if check and check != _check(self.matter, self._cell("judge"), self.seen):
+        if check and check != _check(self.matter, self.seen):
             raise DataError(
-                f"{self.matter.text!r}: words, layer, kind, judge or seen were changed since the sheet was written; "
+                f"{self.matter.text!r}: words, layer, kind or seen were changed since the sheet was written; "
                 "write the sheet again, or clear the cell `check` if the row is meant so"
             )
 
@@ -270,7 +296,7 @@ class _Row:
         text = self._cell("verdict")
         if not text:
             remarks = [name for name in FILLED[1:] if self._cell(name)]
-            if self.seen:
+            if self._knows:
                 raise DataError("the verdict was emptied: write withdrawn to take the decision back")
             if remarks:
                 raise DataError(f"{', '.join(remarks)} without a verdict: write accept, reject or unsure")

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Annotated, Any, Literal
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver, deliver_bytes, remark
+from colloc.cli.output import Target, counted, deliver, deliver_bytes, remark
 from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
@@ -21,6 +21,11 @@ _RECORDED_AS = {
     "pair": "a pair: the two words near each other, in any order",
     "directed": "a directed pair: the second word after the first",
     "expression": "an expression: the words in a row",
+}
+_NOWHERE: dict[Kind, str] = {
+    "pair": "the two words never meet within reach of each other",
+    "directed": "the second word never follows the first within reach",
+    "expression": "never occurs in a row",
 }
 _COUNTED: dict[Kind, tuple[str, str]] = {
     "pair": ("pair", "pairs"),
@@ -129,6 +134,8 @@ def judge(
             f"{' '.join(made.words)}: {made.verdict}, by {made.judge}; recorded as {_RECORDED_AS[made.kind]}",
             quiet=quiet,
         )
+        if made.verdict != "withdrawn" and not judging.occurrences(store, made):
+            remark(f"{' '.join(made.words)}: {_NOWHERE[made.kind]} in this store", quiet=quiet)
         return
     if chosen or sense or note or label or example:
         raise UsageError("say what is decided: X Y, or a quoted phrase")
@@ -170,13 +177,13 @@ def _take(store: Path, path: Path, by: str | None, override: bool, quiet: bool) 
 
     if is_json_lines(path):
         added = judging.take_decisions(store, decision_records(path))
-        remark(f"{added} new decisions", quiet=quiet)
+        remark(counted(added, "new decision", "new decisions"), quiet=quiet)
         return
     filled = judging.take_sheet(store, sheet_rows(path), by=by or "", override=override)
     kinds = Counter(one.kind for one in filled.decisions)
-    told = ", ".join(f"{kinds[kind]} {names[kinds[kind] != 1]}" for kind, names in _COUNTED.items() if kinds[kind])
-    recorded = f"{len(filled.decisions)} decisions recorded" + (f" ({told})" if told else "")
-    remark(f"{recorded}, {filled.unchanged} unchanged, {filled.empty} open", quiet=quiet)
+    told = ", ".join(counted(kinds[kind], *names) for kind, names in _COUNTED.items() if kinds[kind])
+    recorded = counted(len(filled.decisions), "decision", "decisions")
+    remark(f"{recorded} recorded{f' ({told})' if told else ''}, {filled.unchanged} unchanged, {filled.empty} open", quiet=quiet)
     for conflict in filled.conflicts:
         remark(f"overridden: {conflict}", quiet=quiet)
 
@@ -263,6 +270,7 @@ def decisions(
     history: Annotated[bool, typer.Option("--history", help="All that was ever decided.")] = False,
     agreement: Annotated[bool, typer.Option("--agreement", help="Cohen's kappa of each two judges.")] = False,
     disagreements: Annotated[bool, typer.Option("--disagreements", help="Only what judges disagree on.")] = False,
+    limit: opt.LimitOption = 0,
     format: opt.FormatOption = "table",
     output: opt.OutputOption = None,
     quiet: opt.QuietOption = False,
@@ -272,6 +280,8 @@ def decisions(
     With --history --format jsonl the file can be taken into another store by
     `colloc judge STORE --from FILE`, such as one that was built anew.
     """
+    import numpy as np
+
     from colloc.verbs import judging
 
     if agreement + disagreements + history > 1:
@@ -281,11 +291,16 @@ def decisions(
         answer = judging.judge_agreement(store)
     else:
         answer = judging.decisions(store, by=by, history=history, disagreements=disagreements)
+    more = len(answer) - limit if limit else 0
+    if more > 0:
+        answer = answer.take(np.arange(limit))
     if format in ("table", "parquet") and not agreement:
         from colloc.answers.judging.sheets import written_cells
 
         answer = written_cells(answer)
     deliver(answer, target, "decisions")
+    if more > 0:
+        remark(f"{counted(more, 'row', 'rows')} more: --limit 0 for all", quiet=quiet)
 
 
 def register(app: typer.Typer) -> None:
