@@ -67,7 +67,7 @@ def label_features(
     Columns
         word (or first, second), documents, label (the one it speaks for most), documents_in (of that label),
         contribution (of that label, bits), mutual_information (bits), chi2, chi2_present, p, q. Ties stand by
-        chi2, then by word.
+        chi2, then by word. Its setting ``caution`` warns where there are more labels than half of the documents.
 
     Raises
     ------
@@ -127,8 +127,17 @@ def label_features(
     return Columns(
         columns,
         {**settings, "label": label, "what": what, "min_docs": min_docs, "sort": sort, "limit": limit,
-         "labels": len(groups), "documents": int(groups.sizes.sum()), "tested": len(tested)},
+         "labels": len(groups), "documents": int(groups.sizes.sum()), "tested": len(tested), **_caution(groups)},
     )  # fmt: skip
+
+
+def _caution(groups: Groups) -> dict[str, str]:
+    """What the settings say where labels are nearly names of documents."""
+    n_documents = int(groups.sizes.sum())
+    if 2 * len(groups) <= n_documents:
+        return {}
+    told = f"{len(groups)} labels for {n_documents} documents: mutual information says little of labels so small"
+    return {"caution": told}
 
 
 def _words(store: Store, layer: str, groups: Groups) -> tuple[Int64Array, Int64Array]:

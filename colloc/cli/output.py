@@ -132,10 +132,11 @@ def deliver_bytes(data: bytes, settings: Mapping[str, Any], target: Target, comm
 
 
 def write_settings(path: Path, settings: Mapping[str, Any], command: str) -> None:
-    """The settings of the result ``path`` as JSON in ``PATH.settings.json``."""
+    """The settings of the result ``path`` as JSON in ``PATH.settings.json``, a table's reach as the options ask for it."""
     from importlib.metadata import version
 
-    record = {"colloc": version("colloc"), "command": command, "settings": dict(settings)}
+    told = _told_table(dict(settings)) if settings.get("kind") in get_args(TallyKind) else dict(settings)
+    record = {"colloc": version("colloc"), "command": command, "settings": told}
     with replacing(path.with_name(f"{path.name}.settings.json")) as stream:
         stream.write((json.dumps(record, ensure_ascii=False, indent=2) + "\n").encode())
 

@@ -124,7 +124,7 @@ def picture(
     kind: PictureKind | None = None,
     *,
     store: StorePath | Store,
-) -> None:
+) -> str | None:
     """Draw an answer into an SVG or PNG file; needs matplotlib (``colloc[plots]``).
 
     Parameters
@@ -137,6 +137,11 @@ def picture(
         list; when not given the network where there is one first word.
     store : path or Store
         Where the answer came from.
+
+    Returns
+    -------
+    str or None
+        What the picture lacks, and how to get it: chance floors that the store does not keep.
 
     Raises
     ------
@@ -155,11 +160,11 @@ def picture(
         if (kind or "both") not in drawn:
             raise UsageError(f"a card is drawn as {', '.join(drawn)}, not as {kind!r}")
         drawn[kind or "both"](answer, target)
-        return
-    _draw_list(answer, target, kind, store)
+        return None
+    return _draw_list(answer, target, kind, store)
 
 
-def _draw_list(answer: Columns, target: Path, kind: PictureKind | None, store: StorePath | Store) -> None:
+def _draw_list(answer: Columns, target: Path, kind: PictureKind | None, store: StorePath | Store) -> str | None:
     from colloc.answers.evidence.linking import kept_floors, partner_links, question_of
     from colloc.exports.pictures import frequency, network
 
@@ -177,7 +182,12 @@ def _draw_list(answer: Columns, target: Path, kind: PictureKind | None, store: S
     with reading(store) as opened:
         question = question_of(opened, answer.settings)
         if kind == "frequency":
-            frequency.draw_frequency(answer, measure, kept_floors(question), target)
-            return
+            floors = [kept for kept in kept_floors(question) if measure in kept.values]
+            frequency.draw_frequency(answer, measure, floors, target)
+            lacking = (
+                f"no chance floors of {measure} are kept: `colloc floors {opened.path}`, counting alike, adds them"
+            )
+            return None if floors else lacking
         links = partner_links(question, answer, measure, network.MOST, DEFAULT_MIN_COUNT)
     network.draw_network(answer, measure, links, target)
+    return None

@@ -201,7 +201,9 @@ def similar(
     Parameters
     ----------
     vectors : path or Vectors, optional
-        Take the cosines of these vectors instead; the shared contexts are still those of the PPMI matrix.
+        Take the cosines of these vectors instead; the shared contexts are still those of the PPMI matrix. Where the
+        vectors were made from another store, shared contexts are left out, and the answer's setting ``shared``
+        names both stores.
     min_row_count, min_context_count : int, optional
         Words seen less often are not compared, or no contexts. When not given: 50, and 20 in a text that has fewer
         than 1,000 words seen 50 times; the answer's settings say which.
@@ -209,10 +211,12 @@ def similar(
     Raises
     ------
     NotSeenError
-        When one of the words has no row.
+        When one of the words never occurs, or has no row.
     """
+    from colloc.answers.columns import Columns
+    from colloc.answers.questions import resolve_spec
     from colloc.answers.spaces.choosing import Choice
-    from colloc.answers.spaces.likeness import Space
+    from colloc.answers.spaces.likeness import Space, check_seen, made_elsewhere
     from colloc.answers.spaces.likeness import similar as nearest
     from colloc.answers.spaces.matrix import MatrixOptions
     from colloc.answers.spaces.matrix import matrix as make_matrix
@@ -229,9 +233,15 @@ def similar(
         context_layer=context_layer,
     )
     given = vectors if vectors is None or isinstance(vectors, Vectors) else read_vectors(Path(vectors))
+    asked = as_list(words)
     with reading(store) as opened:
+        apart = None if given is None else made_elsewhere(given, opened)
+        if given is not None and apart is not None:
+            answer = nearest(Space(given), asked, limit=limit)
+            return Columns(answer.data, {**answer.settings, "shared": apart})
+        check_seen(opened, resolve_spec(opened, options)[0].layer, asked)
         made = make_matrix(opened, options=options, chosen=chosen, jobs=jobs, memory=memory, progress=progress)
-    return nearest(Space(made if given is None else given), as_list(words), limit=limit, contexts=made)
+    return nearest(Space(made if given is None else given), asked, limit=limit, contexts=made)
 
 
 def agreement(

@@ -154,3 +154,12 @@ def test_any_table(drawn: tuple[list[int], list[list[float]]]) -> None:
 def test_tables_that_cannot_be(present: list[object], documents: list[int]) -> None:
     with pytest.raises(UsageError):
         label_tables(present, documents)  # type: ignore[arg-type]
+
+
+def test_labels_that_are_nearly_names_of_documents_are_told(tmp_path: Path) -> None:
+    lines = [json.dumps({"text": f"fog {'rain' if n % 2 else 'sun'}", "year": n // 2, "own": n}) for n in range(12)]
+    (tmp_path / "a.jsonl").write_text("\n".join(lines), encoding="utf-8")
+    colloc.build(tmp_path / "a.colloc", [str(tmp_path / "a.jsonl")], jobs=1)
+    told = colloc.features(tmp_path / "a.colloc", "own").settings["caution"]
+    assert told == "12 labels for 12 documents: mutual information says little of labels so small"
+    assert "caution" not in colloc.features(tmp_path / "a.colloc", "year").settings

@@ -216,3 +216,13 @@ def test_from_python() -> None:
     assert colloc.measure(answer, measures=["pmi"]) == answer
     with pytest.raises(DataError, match="row 1: total must be above 0"):
         colloc.measure({**table, "total": [0], "joint": [0], "first_total": [0], "second_total": [0]})
+
+
+def test_tables_round_numbers_that_pass_through(run: Run, tmp_path: Path) -> None:
+    table = tmp_path / "t.csv"
+    rows = ["7,64,47,16065942,0.00018722836171075434,1.10,007,a", "8,64,47,16065942,,1.2,012,0.123456"]
+    table.write_text("\n".join([f"{HEADER},expected,version,id,note", *rows]) + "\n", encoding="utf-8")
+    shown = [line.split() for line in run("measure", table, "-m", "npmi", "-f", "table", "-q").out.splitlines()[1:]]
+    assert [row[4:-1] for row in shown] == [["0.0002", "1.10", "007", "a"], ["1.2", "012", "0.123456"]]
+    kept = run("measure", table, "-m", "npmi", "-q").out.splitlines()[1:]
+    assert [line.rpartition(",")[0] for line in kept] == rows

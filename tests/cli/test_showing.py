@@ -7,6 +7,7 @@ import html
 import io
 import json
 import re
+import shutil
 import unicodedata
 from pathlib import Path
 
@@ -227,3 +228,16 @@ def test_pictures_from_the_command_line(run: Run, store: Path, tmp_path: Path) -
         assert (done.code, done.err) == (0, "")
         assert done.out
     assert sorted(path.name for path in tmp_path.iterdir()) == ["card.svg", "company.svg", "pairs.png", "spread.png"]
+
+
+def test_written_pictures_are_told(run: Run, store: Path, tmp_path: Path) -> None:
+    bare = run("pairs", store, "--min-count", 1, "--plot", tmp_path / "p.png").err
+    assert f"# {tmp_path}/p.png: picture written; no chance floors of npmi are kept: `colloc floors {store}`" in bare
+    card = run("explain", store, "sea", "wave", "--plot", tmp_path / "c.svg").err
+    assert card.endswith(f"# {tmp_path}/c.svg: picture written\n")
+    kept = tmp_path / "kept.colloc"
+    shutil.copy(store, kept)
+    assert run("floors", kept).code == 0
+    with_floors = run("pairs", kept, "--min-count", 1, "--plot", tmp_path / "p.svg").err
+    assert with_floors.endswith(f"# {tmp_path}/p.svg: picture written\n")
+    assert "Strength against chance" in (tmp_path / "p.svg").read_text(encoding="utf-8")

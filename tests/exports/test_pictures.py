@@ -13,7 +13,7 @@ import pytest
 import colloc
 from colloc.errors import CannotCreateError, UsageError
 from colloc.exports.pictures.canvas import shorten
-from colloc.exports.pictures.network import circle
+from colloc.exports.pictures.network import circle, draw_network
 
 CORPORA = Path(__file__).resolve().parents[2] / "corpora_demo"
 SVG = "{http://www.w3.org/2000/svg}"
@@ -130,3 +130,18 @@ def test_partners_that_hold_together_stand_side_by_side() -> None:
     assert sorted(order) == [0, 1, 2, 3]
     assert abs(order.index(0) - order.index(3)) == 1
     assert abs(order.index(1) - order.index(2)) == 1
+
+
+def test_the_title_speaks_of_chance_and_dashes_only_where_they_are_drawn(tmp_path: Path) -> None:
+    store = tmp_path / "a.colloc"
+    (tmp_path / "a.txt").write_text("thick fog lay. thick fog came. fog lay. " * 9, encoding="utf-8")
+    colloc.build(store, [str(tmp_path / "a.txt")], jobs=1)
+    pairs = colloc.pairs(store, min_count=1, any_strength=True)
+    lacking = colloc.picture(pairs, tmp_path / "p.svg", "frequency", store=store)
+    assert lacking is not None
+    assert "no chance floors of npmi" in lacking
+    assert "Strength against expected count" in texts(tmp_path / "p.svg")
+    company = colloc.around(store, "fog", min_count=1, any_strength=True)
+    for links, dashed in (({}, False), ({(0, 1): 0.5}, True)):
+        draw_network(company, "npmi", links, tmp_path / "n.svg")
+        assert any("Dashed" in text for text in texts(tmp_path / "n.svg")) is dashed

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from functools import cached_property
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -11,8 +12,11 @@ import numpy as np
 from colloc.answers.columns import Columns
 from colloc.answers.spaces.matrix import Matrix
 from colloc.answers.spaces.vectors import Vectors
+from colloc.answers.spelling import not_seen
 from colloc.errors import NotSeenError
 from colloc.records import FloatArray, Int64Array
+from colloc.store import vocabulary
+from colloc.store.connection import Store
 from colloc.tokens.folding import fold
 
 SHARED_SHOWN = 5
@@ -96,10 +100,7 @@ def similar(space: Space, words: Sequence[str], *, limit: int = 20, contexts: Ma
     numbers = space.numbers(words)
     for word, number in zip(words, numbers.tolist(), strict=True):
         if number < 0:
-            rows = space.settings.get("rows") or "all that occur"
-            raise NotSeenError(
-                f"{word!r} has no row: rows are words {rows}; a lower least count of rows takes rarer ones"
-            )
+            raise NotSeenError(_no_row(word, space.settings))
     asked: list[str] = []
     found: list[str] = []
     scores: list[float] = []
@@ -113,6 +114,30 @@ def similar(space: Space, words: Sequence[str], *, limit: int = 20, contexts: Ma
     if contexts is not None:
         columns["shared"] = _shared(contexts, asked, found)
     return Columns(columns, {**space.settings, "limit": limit})
+
+
+def check_seen(store: Store, layer: str, words: Sequence[str]) -> None:
+    """Raise NotSeenError, with near spellings, for the first word that never occurs in a layer."""
+    for word, number in zip(words, vocabulary.term_numbers(store, layer, list(words)).tolist(), strict=True):
+        if number < 0:
+            raise NotSeenError(not_seen(store, layer, word))
+
+
+def made_elsewhere(vectors: Vectors, store: Store) -> str | None:
+    """Why the contexts of a store say nothing about these vectors; None where they were made from it."""
+    source = vectors.settings.get("store")
+    if source is not None and Path(source).resolve() == store.path.resolve():
+        return None
+    return f"left out: the vectors were made from {source or 'an unnamed store'}, not from {store.path}"
+
+
+def _no_row(word: str, settings: Mapping[str, Any]) -> str:
+    vectors = "dimensions" in settings
+    lacking = f"{word!r} has no {'vector' if vectors else 'row'}"
+    if not settings.get("rows"):
+        return f"{lacking}: it meets no other word in what was counted"
+    remedy = "make the vectors anew with a lower --min-row-count" if vectors else "lower --min-row-count"
+    return f"{lacking}: compared are only words {settings['rows']}; {remedy}"
 
 
 def _nearest(space: Space, cosines: FloatArray, number: int, limit: int) -> list[int]:

@@ -8,7 +8,7 @@ from typing import Annotated, Literal
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver, remark
+from colloc.cli.output import Target, counted, deliver, remark, remark_picture
 from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 from colloc.settings import DEFAULT_MIN_COUNT
@@ -108,6 +108,7 @@ def appraise(
     if ranking is not None and not combined:
         raise UsageError("--ranking writes what was learnt: give --combined too")
     target = Target(format, output, quiet, settings_beside)
+    places = _places(at)
     with ProgressLine(quiet=quiet) as progress:
         found = appraising.appraise(
             store,
@@ -115,7 +116,7 @@ def appraise(
             gold=read_matters(gold) if gold is not None else None,
             by=by,
             show=_names(show, items),
-            at=_places(at),
+            at=places,
             min_count=min_count,
             combined=combined,
             limit=limit if ranking is not None else 0,
@@ -139,6 +140,13 @@ def appraise(
             progress=progress,
         )
     deliver(found.measures, target, "appraise")
+    candidates = found.measures.settings["candidates"]
+    beyond = [str(place) for place in places if place > candidates]
+    if beyond:
+        there = counted(candidates, "candidate", "candidates")
+        remark(f"{there}: nothing to tell at {', '.join(beyond)}; choose nearer places with --at", quiet=quiet)
+    if plot is not None:
+        remark_picture(plot, quiet=quiet)
     if found.folds is not None and found.weights is not None:
         ours, single = found.folds["combined"].mean(), found.folds["single"].mean()
         chosen = ", ".join(dict.fromkeys(found.folds["measure"].tolist()))

@@ -9,7 +9,7 @@ import typer
 
 from colloc.cli import groups
 from colloc.cli import options as opt
-from colloc.cli.output import deliver, remark_unknown
+from colloc.cli.output import deliver, remark_picture, remark_unknown
 from colloc.cli.progress import ProgressLine
 
 LIMIT = 50
@@ -98,7 +98,7 @@ def pairs(
         )
     deliver(answer, target, "pairs")
     if plot is not None:
-        picture(answer, plot, plot_as, store=store)
+        remark_picture(plot, picture(answer, plot, plot_as, store=store), quiet=result.quiet)
 
 
 def around(
@@ -162,7 +162,7 @@ def around(
     deliver(answer, target, "around")
     remark_unknown(answer.settings, quiet=result.quiet)
     if plot is not None:
-        picture(answer, plot, plot_as, store=store)
+        remark_picture(plot, picture(answer, plot, plot_as, store=store), quiet=result.quiet)
 
 
 def register(app: typer.Typer) -> None:

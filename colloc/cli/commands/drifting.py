@@ -8,7 +8,7 @@ import typer
 
 from colloc.cli import groups
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver, print_lines
+from colloc.cli.output import Target, deliver, print_lines, remark_picture
 from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
@@ -64,7 +64,9 @@ def drift(
             "--sort", help="With --all: by the trend over documents, by slope, or by the trend of association."
         ),
     ] = "documents",
-    limit: opt.LimitOption = LIMIT,
+    limit: Annotated[
+        int, typer.Option("--limit", "-n", metavar="N", min=0, help="With --all: rows shown; 0 for all.")
+    ] = LIMIT,
     wide: opt.WideOption = False,
     plot: opt.PlotOption = None,
     resources: groups.Resources,
@@ -105,6 +107,8 @@ def drift(
         deliver(answer, target, "drift")
     else:
         _deliver_course(answer, target)
+    if plot is not None:
+        remark_picture(plot, quiet=result.quiet)
 
 
 def _deliver_course(answer: Columns, target: Target) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
@@ -14,6 +15,8 @@ from colloc.cli.tables_in import Rows, TableFormat, read_rows
 from colloc.errors import DataError
 
 if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
     from colloc.answers.columns import Columns
 
 
@@ -47,7 +50,8 @@ def measure(
     names = opt.shown_measures(measures)
     target = Target(format, output, quiet, settings_beside)
     settings: dict[str, Any] = {"table": "standard input" if str(table) == "-" else str(table), "measures": names}
-    deliver_parts(_measured(read_rows(table, input_format), names), settings, target, "measure")
+    parts = _measured(read_rows(table, input_format), names)
+    deliver_parts(map(_readable, parts) if format == "table" else parts, settings, target, "measure")
 
 
 def _measured(parts: Iterator[Rows], names: list[str] | None) -> Iterator[Columns]:
@@ -61,6 +65,28 @@ def _measured(parts: Iterator[Rows], names: list[str] | None) -> Iterator[Column
             raise DataError(f"{rows.name}:{rows.lines[error.row]}: {error.problem}") from error
         except DataError as error:
             raise DataError(f"{rows.name}:1: {error}") from error
+
+
+def _readable(part: Columns) -> Columns:
+    """Texts that are numbers with more decimals than a table shows as numbers; all else as it is."""
+    import numpy as np
+
+    from colloc.answers.columns import Columns
+
+    def column(values: NDArray[Any]) -> NDArray[Any]:
+        texts = values.tolist() if values.dtype.kind == "O" else []
+        if any(type(text) is str and _LONG.fullmatch(text) for text in texts) and all(
+            type(text) is str and _NUMBER.fullmatch(text) for text in texts
+        ):
+            return np.array([float(text or "nan") for text in texts])
+        return values
+
+    return Columns({name: column(values) for name, values in part.data.items()}, part.settings)
+
+
+_LONG = re.compile(r"[-+]?[0-9]*\.[0-9]{5,}(?:[eE][-+]?[0-9]+)?")
+_NUMBER = re.compile(r"(?:[-+]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][-+]?[0-9]+)?)?")
+"""A number in digits, or nothing."""
 
 
 def register(app: typer.Typer) -> None:

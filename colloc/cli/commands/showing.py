@@ -7,7 +7,7 @@ from typing import Annotated, Literal
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import Target, deliver, deliver_bytes
+from colloc.cli.output import Target, deliver, deliver_bytes, remark_picture
 from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
@@ -178,7 +178,7 @@ def explain(
         data = "".join(f"{line}\n" for line in card_lines(card, terminal_width())).encode()
     deliver_bytes(data, card.settings, target, "explain")
     if plot is not None:
-        evidence.picture(card, plot, plot_as, store=store)
+        remark_picture(plot, evidence.picture(card, plot, plot_as, store=store), quiet=quiet)
 
 
 def register(app: typer.Typer) -> None:

@@ -26,7 +26,7 @@ def draw_frequency(answer: Columns, measure: str, floors: Sequence[Floors], path
     Parameters
     ----------
     floors : sequence of Floors
-        Drawn as steps where they know the measure: 99 of 100 pairs of shuffled text lie below.
+        Drawn as steps: 99 of 100 pairs of shuffled text lie below.
     """
     often, values = answer["expected"].astype(np.float64), answer[measure].astype(np.float64)
     known = np.isfinite(values) & (often > 0)
@@ -52,19 +52,18 @@ def draw_frequency(answer: Columns, measure: str, floors: Sequence[Floors], path
         low, high = _limits(often[known])
         axes.set_xlim(low, high)
         for floor in floors:
-            if measure in floor.values:
-                style, name = _STYLES[floor.shuffle]
-                edges, steps = _steps(floor, measure, low, high)
-                axes.plot(
-                    edges,
-                    steps,
-                    drawstyle="steps-post",
-                    color=INK,
-                    linestyle=style,
-                    linewidth=1.2,
-                    label=f"99 % floor, {name}",
-                    zorder=3,
-                )
+            style, name = _STYLES[floor.shuffle]
+            edges, steps = _steps(floor, measure, low, high)
+            axes.plot(
+                edges,
+                steps,
+                drawstyle="steps-post",
+                color=INK,
+                linestyle=style,
+                linewidth=1.2,
+                label=f"99 % floor, {name}",
+                zorder=3,
+            )
         for row in _spaced(np.log(np.where(often > 0, often, 1.0)), values, known):
             label = f"{shorten(answer['first'][row], 14)} {shorten(answer['second'][row], 14)}"
             axes.annotate(
@@ -78,7 +77,9 @@ def draw_frequency(answer: Columns, measure: str, floors: Sequence[Floors], path
             )
         axes.set_xlabel("expected joint count, if the words were independent (pairs of tokens, logarithmic)")
         axes.set_ylabel(f"{title}" + (f" ({unit})" if unit != "none" else ""))
-        axes.set_title("Strength against chance", loc="left", fontsize=10)
+        axes.set_title(
+            "Strength against chance" if floors else "Strength against expected count", loc="left", fontsize=10
+        )
         axes.legend(frameon=False, fontsize=8, loc="best")
 
 

@@ -88,7 +88,7 @@ def draw_network(answer: Columns, measure: str, links: Mapping[Link, float], pat
         named = find(measure).title + (f", {unit}" if unit != "none" else "")
         axes.set_title(
             f"Strongest company of ‘{shorten(first)}’\n"
-            f"numbers: {named}; joint count. Dashed: partners that attract each other.",
+            f"numbers: {named}; joint count.{' Dashed: partners that attract each other.' if links else ''}",
             loc="left",
             fontsize=9,
         )

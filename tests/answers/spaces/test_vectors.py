@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import dataclasses
 import json
 from pathlib import Path
 
@@ -178,11 +179,39 @@ def test_nearest_words_by_scipys_cosine(demo: Path) -> None:
     # The first shared context has the largest product of values.
     best = made.columns[int((dense[number] * dense[made.rows.index(expected[0][0])]).argmax())]
     assert found["shared"][0].split(", ")[0] == best
-    with pytest.raises(NotSeenError, match="'kraken' has no row"):
+    with pytest.raises(NotSeenError, match="'kraken' never occurs in layer 'fold'"):
         colloc.similar(demo, ["fog", "kraken"])
     by_vectors = colloc.similar(demo, "fog", vectors=colloc.vectors(demo, dimensions=20), limit=0)
     assert len(by_vectors) == len(made.rows) - 1
     assert (np.diff(by_vectors["cosine"]) <= 0).all()
+
+
+def test_words_that_never_occur_are_told_from_rare_ones(demo: Path) -> None:
+    with pytest.raises(NotSeenError, match=r"'kraken' never occurs in layer 'fold'; `colloc words .* 'kra\*'`"):
+        colloc.similar(demo, "kraken")
+    with pytest.raises(NotSeenError, match="'foggg' never occurs in layer 'fold'; did you mean 'fog'"):
+        colloc.similar(demo, "foggg", vectors=colloc.vectors(demo, dimensions=5))
+    few = colloc.vectors(demo, dimensions=5, most_rows=30)
+    rare = next(row["word"] for row in colloc.words(demo, limit=0) if row["count"] == 3)
+    with pytest.raises(NotSeenError, match=r"has no vector: .* 30 most frequent; make the vectors anew"):
+        colloc.similar(demo, rare, vectors=few)
+
+
+def test_contexts_of_another_store_are_not_shown_beside_vectors(demo: Path, tmp_path: Path) -> None:
+    other = tmp_path / "other.colloc"
+    text = tmp_path / "a.txt"
+    text.write_text("The fog lay thick on the sea. " * 30, encoding="utf-8")
+    colloc.build(other, [str(text)], jobs=1)
+    made = colloc.vectors(demo, tmp_path / "v", dimensions=10)
+    answer = colloc.similar(other, "fog", vectors=tmp_path / "v.npy", limit=4)
+    own = colloc.similar(demo, "fog", vectors=tmp_path / "v.npy", limit=4)
+    assert answer.names == ("word", "similar", "cosine")
+    assert own.names == ("word", "similar", "cosine", "shared")
+    assert answer["similar"].tolist() == own["similar"].tolist()
+    assert answer.settings["store"] == own.settings["store"] == str(demo)
+    assert answer.settings["shared"] == f"left out: the vectors were made from {demo}, not from {other}"
+    unnamed = dataclasses.replace(made, settings={"layer": "fold"})
+    assert "an unnamed store" in colloc.similar(demo, "fog", vectors=unnamed).settings["shared"]
 
 
 def test_ties_stand_by_word() -> None:
@@ -277,7 +306,9 @@ def test_rare_words_are_not_compared_unless_asked_for(demo: Path) -> None:
     assert set(answer["similar"]) == {word for word, count in seen.items() if count >= 20} - {"fog"}
     assert answer.settings["rows"] == answer.settings["contexts"] == "seen 20 times or more"
     rare = next(word for word, count in seen.items() if 2 <= count < 20)
-    with pytest.raises(NotSeenError, match="rows are words seen 20 times or more; a lower least count"):
+    with pytest.raises(
+        NotSeenError, match="has no row: compared are only words seen 20 times or more; lower --min-row-count"
+    ):
         colloc.similar(demo, rare)
     lower = colloc.similar(demo, rare, limit=0, min_row_count=2)
     assert set(lower["similar"]) == {word for word, count in seen.items() if count >= 2} - {rare}
