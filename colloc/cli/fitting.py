@@ -34,7 +34,7 @@ def terminal_width() -> int | None:
 
 
 def fitting(answer: Columns, room: int) -> tuple[str, ...]:
-    """Names of the columns that fit into so many characters side by side; the first two stay in any case.
+    """Names of the columns that fit into so many characters side by side; the first two and what ranks always stay.
 
     Columns that only support others go first, then those at the right end.
     """
@@ -43,7 +43,7 @@ def fitting(answer: Columns, room: int) -> tuple[str, ...]:
     grid = Grid(answer.names, [answer.is_numeric(name) for name in answer.names])
     grid.lines([array.tolist() for array in answer.data.values()], heading=True)
     widths = dict(zip(answer.names, grid.widths, strict=True))
-    kept = {*answer.names[:2], *_KEPT}
+    kept = {*answer.names[:2], *_KEPT, answer.settings.get("measure")}
     single = [_together(name) for name in reversed(answer.names) if name not in chain(kept, *FIRST_TO_GO)]
     supporting = [group for group in FIRST_TO_GO if not kept.intersection(group)]
 

@@ -14,6 +14,8 @@ if TYPE_CHECKING:
 _SPACES = re.compile(r"\s+")
 _WIDEST_NAME = 22
 _WIDEST_MATCH = 24
+_LEAST_KEY, _LEAST_NAME = 3, 8
+"""Columns that metadata and the document's name keep."""
 _ELLIPSIS = "…"
 
 
@@ -30,7 +32,7 @@ def kwic_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[
     columns : int
         Display columns of a whole line; at least 40 are used.
     keys : sequence of str
-        Metadata shown beside the document.
+        Metadata shown beside the document; cut, before the document's name is, so that half of the line is text.
 
     Lines of right-to-left text have what is read first on the right, as their readers expect; every cell is an
     isolate of its own, so that the match stands in the same columns as in all other lines.
@@ -43,7 +45,8 @@ def kwic_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[
     names = ["document", *keys, "word"]
     left = [[row["document"], *(row[key] for key in keys), row["token"] + 1] for row in rows]
     heads = [[_cut_end(_plain(value), _WIDEST_NAME) for value in cells] for cells in [names, *left]]
-    head_widths = [max(map(width, cells)) for cells in zip(*heads, strict=True)]
+    head_widths = _narrowed([max(map(width, cells)) for cells in zip(*heads, strict=True)], max(columns, 40) // 2)
+    heads = [[_cut_end(cell, wide) for cell, wide in zip(cells, head_widths, strict=True)] for cells in heads]
     match_width = min(max(width(_plain(row["match"])) for row in rows), _WIDEST_MATCH)
     room = max(columns, 40) - sum(head_widths) - 2 * len(head_widths)
     side = max((room - match_width) // 2, 8)
@@ -56,6 +59,15 @@ def kwic_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[
         )
         lines.append(f"{head}  {body}".rstrip())
     return lines
+
+
+def _narrowed(widths: list[int], most: int) -> list[int]:
+    """Widths of document, keys and place that take so many columns with what parts them; the place is never cut."""
+    widths = widths.copy()
+    for cells, least in ((range(1, len(widths) - 1), _LEAST_KEY), (range(1), _LEAST_NAME)):
+        while sum(widths) + 2 * len(widths) > most and any(widths[cell] > least for cell in cells):
+            widths[max(cells, key=widths.__getitem__)] -= 1
+    return widths
 
 
 def sentence_lines(answer: Columns, columns: int, keys: Sequence[str] = ()) -> list[str]:

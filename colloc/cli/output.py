@@ -132,7 +132,7 @@ def deliver_bytes(data: bytes, settings: Mapping[str, Any], target: Target, comm
 
 
 def write_settings(path: Path, settings: Mapping[str, Any], command: str) -> None:
-    """The settings of the result ``path`` as JSON in ``PATH.settings.json``, a table's reach as the options ask for it."""
+    """The settings of the result ``path`` as JSON in ``PATH.settings.json``, a table's reach as options give it."""
     from importlib.metadata import version
 
     told = _told_table(dict(settings)) if settings.get("kind") in get_args(TallyKind) else dict(settings)

@@ -28,6 +28,8 @@ from colloc.measures.tails import chi_square_log_p
 
 Alternative = Literal["two-sided", "greater", "less"]
 
+EXACT_BELOW = 5.0
+"""Expected counts below which the exact mid-p value is taken."""
 _SUM_TERMS = 1024
 """Tails of at most this many terms are added up; longer ones are integrated."""
 _NEGLIGIBLE = 45.0
@@ -80,7 +82,11 @@ def fisher_log10_p(table: Table) -> FloatArray:
 
 
 def association_log_p(
-    joint: ArrayLike, first_total: ArrayLike, second_total: ArrayLike, total: ArrayLike, exact_below: float = 5.0
+    joint: ArrayLike,
+    first_total: ArrayLike,
+    second_total: ArrayLike,
+    total: ArrayLike,
+    exact_below: float = EXACT_BELOW,
 ) -> FloatArray:
     """Natural log of a two-sided p-value fit for any table: mid-p where E is small, else the G2 test.
 

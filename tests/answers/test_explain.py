@@ -7,6 +7,7 @@ import math
 import random
 from collections import Counter
 from collections.abc import Iterable, Iterator
+from dataclasses import replace
 from itertools import pairwise
 from pathlib import Path
 from typing import Any
@@ -408,6 +409,25 @@ def test_differences_are_told_where_they_were_planted(demo: Demo) -> None:
     assert "where genre is notice" in told("thick", "fog")
     assert "where year is" not in told("thick", "fog")
     assert "not the same everywhere" not in told("heavy", "rain")
+
+
+def test_a_word_with_itself_has_one_row_for_both_orders(demo: Demo) -> None:
+    card = colloc.explain(demo.store, "the", "the", examples=0)
+    forms = [(row["first_form"], row["second_form"]) for row in card.forms]
+    assert forms
+    assert len(forms) == len(set(forms))
+    assert "before" not in card.forms["order"].tolist()
+    assert card.forms["count"].sum() == card.cases["with_second"]
+
+
+def test_the_test_is_named_and_no_q_is_nought(demo: Demo) -> None:
+    card = colloc.explain(demo.store, "thick", "fog", examples=0)
+    assert card.tests["test"] == ("G2" if card.table["expected"] >= 5 else "mid-p of Fisher's exact test")
+    assert card.tests["test"] in " ".join(card.statements)
+    tiny = replace(card, tests={**card.tests, "p": 0.0, "log10_p": -404.2, "q": 0.0, "q_is": "at most"})
+    said = f"p 10^-404 (two-sided, {card.tests['test']}), q below 1e-300 among"
+    assert said in " ".join(card_lines(tiny, 200))
+    assert "q below 1e−300 among" in card_page(tiny).decode()
 
 
 def test_no_part_of_few_documents_is_named(tmp_path: Path) -> None:

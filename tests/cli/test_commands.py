@@ -341,8 +341,17 @@ def test_every_format_into_a_file(run: Run, built: Path, tmp_path: Path, file_fo
     assert goal.stat().st_size > 100
     settings = json.loads((tmp_path / "out.settings.json").read_text())
     assert settings["command"] == "pairs"
-    assert settings["settings"]["right"] == WINDOW
+    assert settings["settings"]["window"] == WINDOW
+    assert not {"kind", "left", "right"} & set(settings["settings"])
     assert settings["settings"]["min_count"] == 1
+
+
+def test_settings_beside_of_unequal_sides(run: Run, built: Path, tmp_path: Path) -> None:
+    goal = tmp_path / "out"
+    assert run("pairs", built, "--left", 1, "--right", 3, "-f", "csv", "-o", goal, "--settings-beside").code == 0
+    settings = json.loads((tmp_path / "out.settings.json").read_text())["settings"]
+    assert (settings["left"], settings["right"]) == (1, 3)
+    assert "window" not in settings
 
 
 def test_the_python_calls_give_the_same(run: Run, built: Path) -> None:

@@ -19,6 +19,7 @@ import colloc
 from colloc.answers.columns import Columns
 from colloc.answers.plain import Grid, width
 from colloc.cli.fitting import fitting, left_out_line
+from colloc.cli.kwic import kwic_lines
 
 LINES = ("Thick fog at dawn. The thick fog came in from the sea.", "Thick fog again. The sea was calm at dawn.")
 
@@ -54,6 +55,27 @@ def on_terminal(columns: int, *arguments: object, environment: dict[str, str] | 
     os.close(ours)
     assert running.wait() == 0
     return data.decode().replace("\r\n", "\n").splitlines()
+
+
+def test_what_ranks_stays_and_so_do_the_words() -> None:
+    names = ("first", "second", "joint", "pmi", "npmi", "pmi_low", "pmi_high", "sound", "g2", "q_value")
+    answer = Columns({name: np.full(3, 1234.5) for name in names}, {"measure": "g2"})
+    for room in (24, 40, 80):
+        assert {"first", "second", "g2"} <= set(fitting(answer, room))
+    assert "g2" not in fitting(Columns(answer.data, {"measure": "pmi"}), 40)
+
+
+@pytest.mark.parametrize("columns", [64, 80, 120])
+def test_half_of_a_line_is_text(columns: int) -> None:
+    keys = {key: np.array(["a very long value of metadata"], object) for key in ("author", "title", "place")}
+    row = {"document": ["a-long-name-of-a-document"], **keys, "token": np.array([1233])}
+    text = {"before": ["so it was said " * 9], "match": ["fog"], "after": [" came in again" * 9]}
+    heading, line = kwic_lines(Columns(row | text), columns, list(keys))
+    assert width(line) <= columns
+    begin = line.index("1234") + 4
+    assert width(line[begin:]) >= columns // 2 - 2
+    assert line.startswith("a-long-")
+    assert heading.startswith("docum")
 
 
 @pytest.mark.parametrize("columns", [60, 80, 120, 200])

@@ -36,7 +36,8 @@ class Evidence:
     intervals : Columns
         measure, method, value, low, high, trusted.
     tests : mapping
-        p, log10_p, q, q_is (``exact`` or ``at most``), hypotheses; empty where margins have no cells.
+        test (its name), p (two-sided), log10_p, q, q_is (``exact`` or ``at most``), hypotheses; empty where margins
+        have no cells.
     avoidance : mapping or None
         For pairs met less often than expected: pmi_if_one (PMI of a single meeting, the smallest association that
         the sample could have shown) and pmi_at_most (what such a count speaks against at 95 %).
@@ -55,7 +56,8 @@ class Evidence:
         no text with heads.
     slices : mapping of str to Columns
         By metadata key: value, documents, holding (documents with both words), joint, expected, per_million_words
-        (joint in a million words of the text), per_million_counted (in a million of what is ``counted``), pmi, pmi_low, pmi_high.
+        (joint in a million words of the text), per_million_counted (in a million of what is ``counted``), pmi,
+        pmi_low, pmi_high.
     forms : Columns
         first_form, second_form, order, count: of cases, each with the nearest second word. Where the store has
         lemmas, cases of all forms of the two lemmas.

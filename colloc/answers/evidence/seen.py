@@ -48,7 +48,7 @@ def examples_and_forms(
         one, two = (_same_lemma(question, of_type == term) for term in (first, second))
         search = _search(one, two)
         hits = finding.find(store, search, left=seen.left, right=seen.right, inside=spec.inside, where=spec.where)
-    return lines, _forms(reader, hits)
+    return lines, _forms(reader, hits, same=first == second)
 
 
 def _search(first: np.ndarray, second: np.ndarray) -> Search:
@@ -64,11 +64,15 @@ def _same_lemma(question: Question, types: np.ndarray) -> np.ndarray:
     return same
 
 
-def _forms(reader: StreamReader, hits: Hits) -> Columns:
+def _forms(reader: StreamReader, hits: Hits, *, same: bool) -> Columns:
+    """Rows of forms and order; those of a word with itself stand in the order of the text, whichever is the case."""
     firsts = reader.forms(reader.types_at(hits.places))
     seconds = reader.forms(reader.types_at(hits.partners))
     orders = ["after" if distance > 0 else "before" for distance in hits.distances.tolist()]
-    counted = Counter(zip(firsts, seconds, orders, strict=True))
+    met = zip(firsts, seconds, orders, strict=True)
+    if same:
+        met = ((two, one, "after") if order == "before" else (one, two, order) for one, two, order in met)
+    counted = Counter(met)
     rows = sorted(counted.items(), key=lambda entry: (-entry[1], entry[0]))
     shown = rows[:MOST_FORMS]
     rest = sum(count for _, count in rows[MOST_FORMS:])

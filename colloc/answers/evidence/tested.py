@@ -14,6 +14,8 @@ from colloc.answers.sureness.documents import SOUND_DOCUMENTS, SOUND_JOINT
 from colloc.answers.sureness.hypotheses import all_pairs, family_size, two_sided
 from colloc.answers.tables import PairTable
 from colloc.counts.grouping import GROUPS, deal
+from colloc.measures.contingency import expected
+from colloc.measures.exact import EXACT_BELOW
 from colloc.measures.intervals import Interval, jackknife, log_odds_interval, pmi_interval
 from colloc.measures.odds import log_odds
 from colloc.measures.pmi import pmi
@@ -80,7 +82,9 @@ def tests_of(question: Question, table: PairTable, progress: Any) -> dict[str, A
     else:
         hypotheses = family_size(question, 1)
         q = math.exp(min(log_p + math.log(hypotheses), 0.0))
+    few = expected(*table.arguments)[0] < EXACT_BELOW
     return {
+        "test": "mid-p of Fisher's exact test" if few else "G2",
         "p": math.exp(log_p),
         "log10_p": log_p / math.log(10),
         "q": q,

@@ -119,9 +119,8 @@ def _intervals(card: Evidence) -> list[str]:
 def _chance(card: Evidence, columns: int) -> list[str]:
     lines = []
     if card.tests:
-        at_most = "at most " if card.tests["q_is"] == "at most" else ""
         lines += _wrapped(
-            f"p {p_text(card.tests)}, q {at_most}{_probability(card.tests['q'])} "
+            f"p {p_text(card.tests)} (two-sided, {card.tests['test']}), q {q_text(card.tests)} "
             f"among {card.tests['hypotheses']:,} pairs of words",
             columns - 2,
         )
@@ -266,6 +265,13 @@ def measure_text(value: float, name: str) -> str:
 def p_text(tests: Mapping[str, Any]) -> str:
     """A p-value, also one too small for a float."""
     return _probability(tests["p"]) if tests["p"] > 0 else f"10^{tests['log10_p']:.0f}"
+
+
+def q_text(tests: Mapping[str, Any]) -> str:
+    """A q-value or its bound, also one too small for a float."""
+    if not tests["q"]:
+        return f"below {LEAST_PROBABILITY.removeprefix('<')}"
+    return f"{'at most ' if tests['q_is'] == 'at most' else ''}{_probability(tests['q'])}"
 
 
 def _probability(value: float) -> str:

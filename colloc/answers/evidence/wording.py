@@ -37,7 +37,8 @@ def _strength(parts: dict[str, Any], joint: float, often: float) -> str:
         return f"They were never met together in this text; chance alone would give about {_count(often)}."
     ratio = joint / often if often else math.inf
     how = f"{_times(ratio)} as often" if ratio >= 1 else f"{ratio:.0%} of that"
-    return f"They are met {joint:,} times where chance alone would give about {_count(often)}: {how}."
+    often_met = "once" if joint == 1 else f"{joint:,} times"
+    return f"They are met {often_met} where chance alone would give about {_count(often)}: {how}."
 
 
 def _chance(parts: dict[str, Any], joint: float, often: float) -> list[str]:
@@ -55,16 +56,18 @@ def _chance(parts: dict[str, Any], joint: float, often: float) -> list[str]:
         bound = "at most " if tests["q_is"] == "at most" and tests["q"] >= 0.0001 else ""
         found.append(
             f"Chance is an unlikely explanation: among all {tests['hypotheses']:,} pairs of words the q-value "
-            f"is {bound}{q}. Words of running text are not independent trials, so hold this against the documents."
+            f"is {bound}{q} ({tests['test']}). Words of running text are not independent trials, so hold this "
+            "against the documents."
         )
     elif tests["q_is"] == "at most":
         found.append(
-            f"The p-value is {tests['p']:.2g}; among {tests['hypotheses']:,} pairs of words that alone is no proof."
+            f"The p-value ({tests['test']}) is {tests['p']:.2g}; "
+            f"among {tests['hypotheses']:,} pairs of words that alone is no proof."
         )
     else:
         found.append(
             f"Among {tests['hypotheses']:,} pairs of words chance would bring forth some like this one "
-            f"(q-value {tests['q']:.2g}): the sample cannot bear the claim."
+            f"(q-value {tests['q']:.2g}, {tests['test']}): the sample cannot bear the claim."
         )
     if joint > often:
         return found + _floors(parts["floors"])

@@ -7,7 +7,7 @@ from typing import Any
 
 from colloc.answers.columns import Columns
 from colloc.answers.evidence.card import Evidence
-from colloc.answers.evidence.text import NO_FLOOR, measure_text, p_text
+from colloc.answers.evidence.text import NO_FLOOR, measure_text, p_text, q_text
 from colloc.exports.pages.frame import Markup, number, page, settings_footer, table, text
 from colloc.exports.pages.lines import marked
 
@@ -136,9 +136,9 @@ def _intervals(card: Evidence) -> Markup:
 def _chance(card: Evidence) -> Markup:
     found = ""
     if card.tests:
-        at_most = "at most " if card.tests["q_is"] == "at most" else ""
         found += (
-            f"<p>p {text(p_text(card.tests).replace('-', '−'))}; q {at_most}{_small(card.tests['q'])} among "
+            f"<p>p {text(p_text(card.tests).replace('-', '−'))} (two-sided, {text(card.tests['test'])}); "
+            f"q {text(q_text(card.tests).replace('-', '−'))} among "
             f"{number(card.tests['hypotheses'])} pairs of words.</p>"
         )
     for row in card.floors:
