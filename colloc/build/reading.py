@@ -120,8 +120,11 @@ def read_into(
 
 
 def registry_limit(memory: int) -> int:
-    """Types the registry keeps in memory: about 200 bytes each, an eighth of the memory."""
-    return max(memory // 8 // 200, 10_000)
+    """Types the registry keeps in memory, 200 to 300 bytes each: an eighth of the memory, and more of what passes 1 GB.
+
+    Whatever goes beyond it is looked up in the store, whose indexes then grow at random places: three times as slow.
+    """
+    return max(memory // 8 // 200 + max(memory - 2**30, 0) * 3 // 8 // 300, 10_000)
 
 
 def _until_document_end(writer: StreamWriter, segmented: Iterator[object]) -> bool:

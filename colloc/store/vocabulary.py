@@ -21,6 +21,7 @@ from colloc.store.lexicon.layers import (
     layer_names,
     number_texts,
     require_terms,
+    rows_among,
     term_count,
     type_keys,
 )
@@ -151,8 +152,16 @@ class TypeRegistry:
         """Learn the numbers of types that are in the store already, for this batch."""
         if keys:
             index_words(self._store)  # without the index each look-up would read the whole table
+        self._known.update(
+            rows_among(
+                self._store,
+                "SELECT form, id FROM types WHERE lemma = '' AND upos = '' AND form IN",
+                (),
+                [key for key in keys if isinstance(key, str)],
+            )
+        )
         for key in keys:
-            triple = key if isinstance(key, tuple) else (key, "", "")
-            row = self._store.row("SELECT id FROM types WHERE form = ? AND lemma = ? AND upos = ?", triple)
-            if row is not None:
-                self._known[key] = row[0]
+            if isinstance(key, tuple):
+                row = self._store.row("SELECT id FROM types WHERE form = ? AND lemma = ? AND upos = ?", key)
+                if row is not None:
+                    self._known[key] = row[0]

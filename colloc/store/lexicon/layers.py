@@ -9,7 +9,7 @@ in order of first appearance. While a store holds plain text only, the layer
 from __future__ import annotations
 
 import operator
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from itertools import compress, count, islice, repeat
 from typing import Generic, TypeVar
@@ -30,6 +30,8 @@ Key = TypeVar("Key", str, TypeKey)
 
 PART = 65_536
 _BATCH = 65_536
+_TEXTS_AT_ONCE = 500
+"""Parameters of one statement; some builds of SQLite take no more than 999."""
 
 Columns = tuple[Sequence[str], Sequence[str], Sequence[str]]
 """Forms, lemmas and word classes of a stretch of types."""
@@ -228,12 +230,16 @@ class LayerWriter:
 
 def look_up_terms(store: Store, layer: int, texts: set[str]) -> dict[str, int]:
     """Numbers of those texts that are terms of a layer which keeps its own texts."""
-    found = {}
-    for text in texts:
-        row = store.row("SELECT id FROM terms WHERE layer = ? AND text = ?", (layer, text))
-        if row is not None:
-            found[text] = row[0]
-    return found
+    return dict(rows_among(store, "SELECT text, id FROM terms WHERE layer = ? AND text IN", (layer,), list(texts)))
+
+
+def rows_among(store: Store, sql: str, parameters: Sequence[int], texts: list[str]) -> Iterator[tuple[str, int]]:
+    """Rows of a query that ends in ``IN`` and lacks its list: many texts at a time, which takes a third of the time."""
+    # In the order of the index, so that neighbours are found on the same page.
+    texts.sort()
+    for start in range(0, len(texts), _TEXTS_AT_ONCE):
+        some = texts[start : start + _TEXTS_AT_ONCE]
+        yield from store.rows(f"{sql} ({', '.join('?' * len(some))})", (*parameters, *some))
 
 
 def type_keys(store: Store, first: int, stop: int) -> list[tuple[str, str, str]]:
