@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING, Any, BinaryIO, get_args
 from colloc.cli.fitting import fitting, left_out_line, terminal_width
 from colloc.cli.render import make_writer
 from colloc.errors import UsageError
-from colloc.exports.replacing import replacing
+from colloc.exports.replacing import check_folder, replacing
 from colloc.settings import TallyKind, told_reach
 
 if TYPE_CHECKING:
@@ -70,6 +70,8 @@ class Target:
             raise UsageError("--settings-beside writes next to a file: name one with -o")
         if self.format == "parquet" and not self.to_file and sys.stdout.isatty():
             raise UsageError("parquet is not for a terminal: name a file with -o")
+        if self.path is not None and self.to_file:
+            check_folder(self.path)
 
     @property
     def to_file(self) -> bool:

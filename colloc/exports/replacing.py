@@ -13,6 +13,14 @@ from typing import BinaryIO
 from colloc.errors import CannotCreateError
 
 
+def check_folder(path: Path) -> None:
+    """Raise CannotCreateError where the folder that ``path`` would stand in is missing: before any work for it."""
+    try:
+        os.stat(Path(os.path.realpath(path)).parent)
+    except OSError as error:
+        raise _refused(path, error) from error
+
+
 @contextlib.contextmanager
 def replacing(path: Path) -> Iterator[BinaryIO]:
     """Open ``path`` for writing bytes; the old file stays until the new one is complete.

@@ -346,6 +346,17 @@ def test_every_format_into_a_file(run: Run, built: Path, tmp_path: Path, file_fo
     assert settings["settings"]["min_count"] == 1
 
 
+def test_a_folder_that_is_missing_is_told_before_any_work(
+    run: Run, built: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(colloc, "pairs", lambda *_, **__: pytest.fail("counted first"))
+    monkeypatch.setattr("colloc.verbs.asking.pairs", lambda *_, **__: pytest.fail("counted first"))
+    ran = run("pairs", built, "-o", tmp_path / "no" / "o.csv")
+    assert ran.code
+    assert "cannot write" in ran.err
+    assert not (tmp_path / "no").exists()
+
+
 def test_settings_beside_of_unequal_sides(run: Run, built: Path, tmp_path: Path) -> None:
     goal = tmp_path / "out"
     assert run("pairs", built, "--left", 1, "--right", 3, "-f", "csv", "-o", goal, "--settings-beside").code == 0

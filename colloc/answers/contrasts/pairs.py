@@ -133,7 +133,7 @@ def contrast_pairs(
         "sort": sort,
         "limit": limit,
         "tested": len(found),
-        "candidates": len(candidates),
+        "tested_over_documents": len(candidates),
         **({"permutations": permutations, "seed": seed} if permutations else {}),
     }
     document = {

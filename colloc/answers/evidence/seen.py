@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
+from collections.abc import Iterable
 
 import numpy as np
 
@@ -69,7 +70,7 @@ def _forms(reader: StreamReader, hits: Hits, *, same: bool) -> Columns:
     firsts = reader.forms(reader.types_at(hits.places))
     seconds = reader.forms(reader.types_at(hits.partners))
     orders = ["after" if distance > 0 else "before" for distance in hits.distances.tolist()]
-    met = zip(firsts, seconds, orders, strict=True)
+    met: Iterable[tuple[str, str, str]] = zip(firsts, seconds, orders, strict=True)
     if same:
         met = ((two, one, "after") if order == "before" else (one, two, order) for one, two, order in met)
     counted = Counter(met)

@@ -70,7 +70,14 @@ def contrast(
         str | None,
         typer.Option("--reference", metavar="LANG", help="Compare with general word frequencies of a language: en."),
     ] = None,
-    pairs: Annotated[bool, typer.Option("--pairs", help="Compare pairs of words instead of words.")] = False,
+    pairs: Annotated[
+        bool,
+        typer.Option(
+            "--pairs",
+            help="Compare pairs of words instead of words; the 10,000 most different by G2 of either direction are "
+            "tested over documents.",
+        ),
+    ] = False,
     side: Annotated[
         Literal["both", "left", "right"], typer.Option("--side", help="With --word: on which side of it.")
     ] = "both",
