@@ -63,6 +63,15 @@ def join(
     return ready.join(text) if isinstance(text, str) else ready.join_many(as_list(text))
 
 
+def accepted_pairs(store: StorePath | Store, *, layer: str | None = None) -> int:
+    """How many pairs without direction are accepted in the store: `join` leaves them out, as they may stand apart."""
+    from colloc.answers.joining.listed import accepted_words
+    from colloc.answers.questions import built_spec
+
+    with reading(store) as opened:
+        return len(accepted_words(opened, layer or built_spec(opened).layer, "pair"))
+
+
 def make_joiner(
     store: StorePath | Store,
     expressions: Sequence[str | Expression] | None = None,

@@ -5,6 +5,7 @@ from __future__ import annotations
 import csv
 import io
 import json
+import shutil
 from pathlib import Path
 
 import numpy as np
@@ -155,6 +156,18 @@ def test_join_wants_to_know_which(run: Run, store: Path) -> None:
     ran = run("join", store, "-", stdin="x")
     assert (ran.code, "say which expressions" in ran.err) == (2, True)
     assert run("join", store, "-", "--accepted", stdin="x").code == 2  # none is accepted in this store
+
+
+def test_join_says_what_it_leaves_out(run: Run, store: Path, tmp_path: Path) -> None:
+    own = Path(shutil.copy(store, tmp_path / "own.colloc"))
+    colloc.judge(own, ["fog", "thick"], "accept", by="Ann")
+    ran = run("join", own, "-", "--accepted", stdin="x")
+    assert (ran.code, "is accepted (1 of its pairs without direction" in ran.err) == (2, True)
+    colloc.judge(own, "thick fog", "accept", by="Ann")
+    ran = run("join", own, "-", "--accepted", stdin="thick fog")
+    assert ran.out == "thick_fog"
+    assert ran.err.splitlines()[0] == "# join: 1 expression; 1 joined"
+    assert ran.err.splitlines()[1].startswith("# 1 accepted pair was left out: only expressions and directed pairs")
 
 
 def test_features(run: Run, store: Path) -> None:

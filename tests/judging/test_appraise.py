@@ -54,7 +54,7 @@ def test_against_a_list_by_brute_force(planted: tuple[Path, list[tuple[str, str]
     store, gold, text = planted
     listed = [*gold, ("naa", "zebra"), ("one", "two", "three")]
     found = colloc.appraise(
-        store, gold=listed, window=1, directed=True, min_count=3, repeats=200, at=[20, 5000]
+        store, gold=listed, window=1, directed=True, min_count=3, repeats=200, at=[20, 1000, 50_000]
     ).measures
     counts: dict[tuple[str, str], int] = {}
     for sentence in text.split("\n"):
@@ -64,14 +64,17 @@ def test_against_a_list_by_brute_force(planted: tuple[Path, list[tuple[str, str]
     wanted = np.array([pair in set(gold) for pair in kept])
     rows = {row["measure"]: row for row in found.to_dicts()}
     assert rows["joint"]["average_precision"] == pytest.approx(average_precision_score(wanted, list(kept.values())))
-    assert set(rows) == {"joint", *MEASURES}
+    p_values = {"g2_p", "chi2_p", "fisher_p"}
+    assert set(rows) == {"joint", *MEASURES} - p_values - {"log_odds_se"}
     assert (found.settings["candidates"], found.settings["wanted"]) == (len(kept), int(wanted.sum()))
     assert (found.settings["listed"], found.settings["passed_over"]) == (PLANTED + 1, PLANTED + 1 - int(wanted.sum()))
     order = found["average_precision"].tolist()
     assert order == sorted(order, reverse=True)
     assert rows["dice"]["average_precision"] > 0.95 > rows["joint"]["average_precision"]
     assert rows["dice"]["precision_at_20"] == 1.0
-    assert rows["dice"]["recall_at_5000"] == 1.0
+    assert rows["dice"]["recall_at_1000"] == 1.0
+    assert len(kept) < 50_000
+    assert all(np.isnan(row[f"{name}_at_50000"]) for row in rows.values() for name in ("precision", "recall"))
     for row in rows.values():
         assert row["ap_low"] <= row["average_precision"] <= row["ap_high"]
 
@@ -156,6 +159,14 @@ def test_against_decisions(store: Path, tmp_path: Path, capsys: pytest.CaptureFi
     assert "<svg" in picture.read_text(encoding="utf-8")
     assert main([*arguments, "--by", "Anna"]) == 0
     assert "candidates 7; wanted 3" in capsys.readouterr().err
+    assert main([*arguments, "--at", "7,8,100", "--by", "Anna", "-f", "jsonl"]) == 0
+    out, err = capsys.readouterr()
+    row = json.loads(out.splitlines()[0])
+    assert row["precision_at_7"] == pytest.approx(3 / 7)
+    assert {row[f"{name}_at_{place}"] for name in ("precision", "recall") for place in (8, 100)} == {None}
+    assert "7 candidates: nothing to tell at 8, 100; choose nearer places with --at" in err
+    assert main(["appraise", str(store), "--show", "log_odds_se"]) == 2
+    assert "rank by another" in capsys.readouterr().err
     assert main([*arguments, "--at", "x"]) == 2
     assert main([*arguments, "--ranking", "x.csv"]) == 2
 
@@ -164,7 +175,7 @@ def test_export_by_command(store: Path, tmp_path: Path, capsys: pytest.CaptureFi
     colloc.judge(store, ["thick", "fog"], "accept", by="Anna")
     for name in ("folder", "e.xlsx", "e.jsonl", "e.json", "e.xml", "e.tei", "e.ttl", "e.jsonld", "e.graphml"):
         assert main(["export", str(store), str(tmp_path / name), "--language", "en", "--show", "dice"]) == 0
-        assert f"1 entries in {tmp_path / name}" in capsys.readouterr().err
+        assert f"1 entry in {tmp_path / name}" in capsys.readouterr().err
     record = json.loads((tmp_path / "e.jsonl").read_text(encoding="utf-8"))
     expected = colloc.pairs(store, show=["dice"], limit=0).to_dicts()
     row = next(one for one in expected if (one["first"], one["second"]) == ("thick", "fog"))

@@ -46,7 +46,8 @@ def appraised(
     Returns
     -------
     Columns
-        measure, average_precision, ap_low, ap_high (95 %), precision_at_N and recall_at_N, threshold (in the unit of
+        measure, average_precision, ap_low, ap_high (95 %), precision_at_N and recall_at_N (nan where there are fewer
+        than N candidates), threshold (in the unit of
         the measure, with the highest F1) and threshold_precision, threshold_recall, threshold_f1. The threshold was
         chosen on the same candidates, so its precision and recall flatter it a little.
     """
@@ -64,7 +65,8 @@ def appraised(
             "ap_high": high,
         }
         for place in dict.fromkeys(at):
-            row[f"precision_at_{place}"], row[f"recall_at_{place}"] = precision_recall_at(ranking, place)
+            there = precision_recall_at(ranking, place) if place <= len(labelled) else (np.nan, np.nan)
+            row[f"precision_at_{place}"], row[f"recall_at_{place}"] = there
         cut = best_threshold(ranking)
         row["threshold"] = -cut.score if labelled.turned(name) else cut.score
         row |= {"threshold_precision": cut.precision, "threshold_recall": cut.recall, "threshold_f1": cut.f1}

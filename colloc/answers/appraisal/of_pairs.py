@@ -16,7 +16,7 @@ from colloc.answers.questions import PairOptions, Question, ask
 from colloc.answers.ranking import TopRows
 from colloc.answers.tables import TOKEN_MARGIN_MEASURES, PairTable, joined
 from colloc.errors import NotSeenError, UsageError
-from colloc.measures.catalogue import MEASURES, compute_all, find
+from colloc.measures.catalogue import MEASURES, compute_all, find_ranking
 from colloc.records import FloatArray, Int64Array
 from colloc.store import vocabulary
 from colloc.store.connection import Store
@@ -40,11 +40,15 @@ class LabelledPairs(Labelled):
         return self.table.first.astype(np.int64)
 
     def measures(self, names: Sequence[str] | None) -> list[str]:
-        """``joint`` and all that the margins can bear when not given."""
+        """``joint`` and all that can rank and that the margins can bear when not given.
+
+        A p-value ranks as its logarithm does, but is 0 for the strongest pairs: only the logarithm is held against.
+        """
         if names is not None:
-            return [name if name == "joint" else find(name).name for name in dict.fromkeys(names)]
+            return [name if name == "joint" else find_ranking(name).name for name in dict.fromkeys(names)]
         bearable = TOKEN_MARGIN_MEASURES if self.question.convention.margins == "tokens" else tuple(MEASURES)
-        return ["joint", *bearable]
+        doubled = {name.replace("_log10_p", "_p") for name in MEASURES if name.endswith("_log10_p")}
+        return ["joint", *(one for one in bearable if MEASURES[one].tells != "error" and one not in doubled)]
 
     def scores(self, measures: Sequence[str]) -> Scores:
         """Ranking values; ``joint`` is frequency."""

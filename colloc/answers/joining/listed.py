@@ -59,21 +59,30 @@ def accepted(store: Store, layer: str) -> list[Expression]:
     UsageError
         Where there is none of this layer.
     """
+    found = accepted_words(store, layer, "expression", "directed")
+    if not found:
+        pairs = len(accepted_words(store, layer, "pair"))
+        others = f" ({pairs} of its pairs without direction, which are not joined)" if pairs else ""
+        raise UsageError(
+            f"{store.path}: no expression of the layer {layer!r} is accepted{others}; "
+            "accept some, or list them in a file"
+        )
+    return [Expression(words, float(count)) for words, count in found.items()]
+
+
+def accepted_words(store: Store, layer: str, *kinds: decisions.Kind) -> dict[tuple[str, ...], int]:
+    """Words that someone accepted and nobody rejected as one of these kinds, and how many did."""
     votes: dict[tuple[str, ...], int] = {}
     rejected: set[tuple[str, ...]] = set()
     for decision in (decision for _, decision in decisions.newest(store).values()):
-        if decision.layer != layer or decision.kind == "pair":
+        if decision.layer != layer or decision.kind not in kinds:
             continue
+        words = decision.key[2]
         if decision.verdict == "accept":
-            votes[decision.words] = votes.get(decision.words, 0) + 1
+            votes[words] = votes.get(words, 0) + 1
         elif decision.verdict == "reject":
-            rejected.add(decision.words)
-    found = [Expression(words, float(count)) for words, count in votes.items() if words not in rejected]
-    if not found:
-        raise UsageError(
-            f"{store.path}: no expression of the layer {layer!r} is accepted; accept some, or list them in a file"
-        )
-    return found
+            rejected.add(words)
+    return {words: count for words, count in votes.items() if words not in rejected}
 
 
 def brought_to_layer(expressions: Sequence[Expression], written: Callable[[str], str]) -> list[Expression]:

@@ -8,7 +8,7 @@ from typing import Annotated
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import remark, settings_line
+from colloc.cli.output import counted, remark, settings_line
 from colloc.cli.progress import ProgressLine
 from colloc.errors import UsageError
 
@@ -84,7 +84,7 @@ def export(
         )
     remark(settings_line("export", made.settings), quiet=quiet)
     left_out = f"; {made.disputed} left out, on which judges disagree" if made.disputed else ""
-    remark(f"{len(made.entries)} entries in {output}{left_out}", quiet=quiet)
+    remark(f"{counted(len(made.entries), 'entry', 'entries')} in {output}{left_out}", quiet=quiet)
 
 
 def register(app: typer.Typer) -> None:

@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING, Annotated, Any, BinaryIO, Literal
 import typer
 
 from colloc.cli import options as opt
-from colloc.cli.output import opened, remark
+from colloc.cli.output import counted, opened, remark
 from colloc.cli.tables_in import listed_expressions, opened_input
 from colloc.errors import DataError, UsageError
 
@@ -58,12 +58,12 @@ def join(
     Nothing but blanks may stand between the words of an expression. The text is read and
     written as it comes; JSON Lines keep their other keys.
     """
-    from colloc.verbs.joining import make_joiner
+    from colloc.verbs import joining
 
     if (expressions is None) != accepted:
         raise UsageError("say which expressions: --expressions FILE, or --accepted for those accepted in the store")
     listed = None if expressions is None else listed_expressions(expressions)
-    ready = make_joiner(store, listed, layer=layer, joiner=joiner, across_lines=across_lines)
+    ready = joining.make_joiner(store, listed, layer=layer, joiner=joiner, across_lines=across_lines)
     lines = input_format == "jsonl" or (input_format == "auto" and text.suffix.lower() in (".jsonl", ".ndjson"))
     count = 0
     with ExitStack() as stack:
@@ -79,7 +79,15 @@ def join(
             count += len(joined.numbers)
             if places is not None:
                 _write_offsets(ready, record, joined, places)
-    remark(f"# join: {len(ready.expressions)} expressions; {count} joined", quiet=quiet)
+    known = counted(len(ready.expressions), "expression", "expressions")
+    remark(f"# join: {known}; {count} joined", quiet=quiet)
+    pairs = joining.accepted_pairs(store, layer=layer) if accepted else 0
+    if pairs:
+        were = counted(pairs, "accepted pair was", "accepted pairs were")
+        remark(
+            f"# {were} left out: only expressions and directed pairs are words in a row (`colloc judge --kind`)",
+            quiet=quiet,
+        )
 
 
 def _plain(ready: Joiner, source: BinaryIO, target: BinaryIO, name: str) -> Iterator[tuple[int, Joined]]:

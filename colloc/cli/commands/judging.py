@@ -183,7 +183,10 @@ def _take(store: Path, path: Path, by: str | None, override: bool, quiet: bool) 
     kinds = Counter(one.kind for one in filled.decisions)
     told = ", ".join(counted(kinds[kind], *names) for kind, names in _COUNTED.items() if kinds[kind])
     recorded = counted(len(filled.decisions), "decision", "decisions")
-    remark(f"{recorded} recorded{f' ({told})' if told else ''}, {filled.unchanged} unchanged, {filled.empty} open", quiet=quiet)
+    remark(
+        f"{recorded} recorded{f' ({told})' if told else ''}, {filled.unchanged} unchanged, {filled.empty} open",
+        quiet=quiet,
+    )
     for conflict in filled.conflicts:
         remark(f"overridden: {conflict}", quiet=quiet)
 

@@ -21,6 +21,7 @@ from colloc.settings import SegmentSettings
 from colloc.store import decisions
 from colloc.store.opening import open_for_writing
 from colloc.store.vocabulary import layer_map, term_texts
+from colloc.verbs.joining import accepted_pairs
 
 
 def joiner(*expressions: str, **options: object) -> Joiner:
@@ -172,6 +173,8 @@ def test_accepted_in_the_store(tmp_path: Path) -> None:
     ]
     with open_for_writing(path, "test") as store, store.transaction():
         decisions.append(store, made)
+    assert accepted_pairs(path) == 1
+    assert accepted_pairs(path, layer="form") == 0
     assert colloc.join(path, "Thick fog at dawn, heavy rain").text == "Thick_fog at_dawn, heavy rain"
     assert [one.text for one in colloc.join(path, ["at dawn", "x"], ["at dawn"], joiner="+")] == ["at+dawn", "x"]
     with pytest.raises(UsageError, match="has the layer lemma where the store was built with --lemma, which it was"):
