@@ -283,8 +283,6 @@ def decisions(
     With --history --format jsonl the file can be taken into another store by
     `colloc judge STORE --from FILE`, such as one that was built anew.
     """
-    import numpy as np
-
     from colloc.verbs import judging
 
     if agreement + disagreements + history > 1:
@@ -296,7 +294,7 @@ def decisions(
         answer = judging.decisions(store, by=by, history=history, disagreements=disagreements)
     more = len(answer) - limit if limit else 0
     if more > 0:
-        answer = answer.take(np.arange(limit))
+        answer = answer[:limit]
     if format in ("table", "parquet") and not agreement:
         from colloc.answers.judging.sheets import written_cells
 
