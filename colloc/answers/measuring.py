@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Mapping, Sequence
 from typing import Any
 
@@ -121,3 +122,22 @@ def _number(value: Any) -> float:
         return math.nan if value is True or value is False or (type(value) is str and "_" in value) else float(value)
     except (TypeError, ValueError, OverflowError):
         return math.nan
+
+
+def readable(part: Columns) -> Columns:
+    """Texts that are numbers with more decimals than a table shows as numbers; all else as it is."""
+
+    def column(values: NDArray[Any]) -> NDArray[Any]:
+        texts = values.tolist() if values.dtype.kind == "O" else []
+        if any(type(text) is str and _LONG.fullmatch(text) for text in texts) and all(
+            type(text) is str and _NUMBER.fullmatch(text) for text in texts
+        ):
+            return np.array([float(text or "nan") for text in texts])
+        return values
+
+    return Columns({name: column(values) for name, values in part.data.items()}, part.settings)
+
+
+_LONG = re.compile(r"[-+]?[0-9]*\.[0-9]{5,}(?:[eE][-+]?[0-9]+)?")
+_NUMBER = re.compile(r"(?:[-+]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][-+]?[0-9]+)?)?")
+"""A number in digits, or nothing."""

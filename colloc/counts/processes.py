@@ -12,6 +12,7 @@ import selectors
 import subprocess
 import sys
 import threading
+from abc import ABC, abstractmethod
 from collections import deque
 from collections.abc import Iterator, Sequence
 from concurrent.futures import ThreadPoolExecutor
@@ -55,12 +56,12 @@ class Alone:
             yield perform(self._store, name, arguments)
 
 
-class _Closing:
+class _Closing(ABC):
     """A context manager that closes."""
 
+    @abstractmethod
     def close(self) -> None:
         """End whatever is at work."""
-        raise NotImplementedError
 
     def __enter__(self) -> Self:
         return self

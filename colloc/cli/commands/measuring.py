@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Iterator
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Any
@@ -15,8 +14,6 @@ from colloc.cli.tables_in import Rows, TableFormat, read_rows
 from colloc.errors import DataError
 
 if TYPE_CHECKING:
-    from numpy.typing import NDArray
-
     from colloc.answers.columns import Columns
 
 
@@ -51,7 +48,11 @@ def measure(
     target = Target(format, output, quiet, settings_beside)
     settings: dict[str, Any] = {"table": "standard input" if str(table) == "-" else str(table), "measures": names}
     parts = _measured(read_rows(table, input_format), names)
-    deliver_parts(map(_readable, parts) if format == "table" else parts, settings, target, "measure")
+    if format == "table":
+        from colloc.answers.measuring import readable
+
+        parts = map(readable, parts)
+    deliver_parts(parts, settings, target, "measure")
 
 
 def _measured(parts: Iterator[Rows], names: list[str] | None) -> Iterator[Columns]:
@@ -65,28 +66,6 @@ def _measured(parts: Iterator[Rows], names: list[str] | None) -> Iterator[Column
             raise DataError(f"{rows.name}:{rows.lines[error.row]}: {error.problem}") from error
         except DataError as error:
             raise DataError(f"{rows.name}:1: {error}") from error
-
-
-def _readable(part: Columns) -> Columns:
-    """Texts that are numbers with more decimals than a table shows as numbers; all else as it is."""
-    import numpy as np
-
-    from colloc.answers.columns import Columns
-
-    def column(values: NDArray[Any]) -> NDArray[Any]:
-        texts = values.tolist() if values.dtype.kind == "O" else []
-        if any(type(text) is str and _LONG.fullmatch(text) for text in texts) and all(
-            type(text) is str and _NUMBER.fullmatch(text) for text in texts
-        ):
-            return np.array([float(text or "nan") for text in texts])
-        return values
-
-    return Columns({name: column(values) for name, values in part.data.items()}, part.settings)
-
-
-_LONG = re.compile(r"[-+]?[0-9]*\.[0-9]{5,}(?:[eE][-+]?[0-9]+)?")
-_NUMBER = re.compile(r"(?:[-+]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][-+]?[0-9]+)?)?")
-"""A number in digits, or nothing."""
 
 
 def register(app: typer.Typer) -> None:
