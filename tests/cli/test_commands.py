@@ -358,8 +358,9 @@ def test_a_folder_that_is_missing_is_told_before_any_work(
 
 
 def test_settings_beside_of_unequal_sides(run: Run, built: Path, tmp_path: Path) -> None:
-    goal = tmp_path / "out"
-    assert run("pairs", built, "--left", 1, "--right", 3, "-f", "csv", "-o", goal, "--settings-beside").code == 0
+    store, goal = tmp_path / "copy.colloc", tmp_path / "out"
+    shutil.copy(built, store)  # the answer leaves its table in the store
+    assert run("pairs", store, "--left", 1, "--right", 3, "-f", "csv", "-o", goal, "--settings-beside").code == 0
     settings = json.loads((tmp_path / "out.settings.json").read_text())["settings"]
     assert (settings["left"], settings["right"]) == (1, 3)
     assert "window" not in settings
