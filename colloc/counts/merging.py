@@ -28,7 +28,7 @@ MOST_RANGES = 2**15
 _SAMPLES = 2**17
 _END = 2**64 - 1
 _WIDEST = 4
-"""Terms for each pair up to which pairs are sorted by a table of all terms of their range."""
+"""Places for each value up to which values are sorted by a place for each that there could be."""
 _FIELDS = ("low", "high", "forward", "backward")
 
 
@@ -107,19 +107,11 @@ def _widened(run: Run) -> Run:
 
 
 def _deal(block: PairBlock, highs: Sequence[int], folder: Path, name: str) -> Dealt:
-    if compiled():
-        places, dealt = np.zeros(len(highs), np.int64), _room(len(block))
-        merging.deal(*_columns(block), np.array(highs[1:-1], np.uint32), places, *dealt)
-        return Dealt(_write(folder, name, dealt), places.tolist())
-    group = np.searchsorted(np.array(highs[1:-1], np.uint32), block.high, side="right").astype(np.uint16)
-    order = np.argsort(group, kind="stable")
+    group = np.searchsorted(np.array(highs[1:-1], np.uint32), block.high, side="right").astype(np.uint32)
+    order = stable_order(group)
     edges = np.concatenate([[0], np.cumsum(np.bincount(group, minlength=len(highs) - 1))])
-    return Dealt(_write(folder, name, [column[order] for column in _columns(block)]), edges.tolist())
-
-
-def _write(folder: Path, name: str, columns: Sequence[NDArray[Any]]) -> list[Column]:
-    fields = zip(_FIELDS, columns, strict=True)
-    return [write_column(folder / f"{name}.{field}", smallest(column)) for field, column in fields]
+    columns = [write_column(folder / f"{name}.{field}", smallest(getattr(block, field))[order]) for field in _FIELDS]
+    return Dealt(columns, edges.tolist())
 
 
 def transpose_range(dealt: Sequence[Dealt], group: int, folder: Path, name: str) -> PageFile:
@@ -130,34 +122,21 @@ def transpose_range(dealt: Sequence[Dealt], group: int, folder: Path, name: str)
     ]
     low, high = (np.concatenate(piece).astype(np.uint32) for piece in pieces[:2])
     forward, backward = (np.concatenate([part.astype(np.int64) for part in piece]) for piece in pieces[2:])
-    block = PairBlock(low, high, forward, backward)
-    least = int(high.min()) if len(high) else 0
-    width = int(high.max()) - least + 1 if len(high) else 0
-    if compiled() and 0 < width <= _WIDEST * len(high):
-        turned = _room(len(block))
-        merging.sort_by_high(*_columns(block), least, np.zeros(width, np.int64), *turned)
-        return write_pages(folder, name, PairBlock(*turned), "high")
     order = stable_order(high)
     return write_pages(folder, name, PairBlock(low[order], high[order], forward[order], backward[order]), "high")
 
 
-_FourColumns = tuple[UInt32Array, UInt32Array, Int64Array, Int64Array]
-
-
-def _room(n: int) -> _FourColumns:
-    return np.empty(n, np.uint32), np.empty(n, np.uint32), np.empty(n, np.int64), np.empty(n, np.int64)
-
-
-def _columns(block: PairBlock) -> _FourColumns:
-    return block.low, block.high, block.forward, block.backward
-
-
 def stable_order(values: UInt32Array) -> Int64Array:
-    """What ``np.argsort(values, kind="stable")`` gives, by radix passes of 16 bits: linear, where that is not."""
+    """What ``np.argsort(values, kind="stable")`` gives in linear time: by counting, or by passes of 16 bits."""
     if not len(values):
         return np.empty(0, np.int64)
     values = values - values.min()
+    width = int(values.max()) + 1
+    if compiled() and width <= _WIDEST * len(values):
+        order = np.empty(len(values), np.int64)
+        merging.order_by_value(values, np.zeros(width, np.int64), order)
+        return order
     order = np.argsort(values.astype(np.uint16), kind="stable")
-    if values.max() >= 2**16:
+    if width > 2**16:
         order = order[np.argsort((values >> np.uint32(16)).astype(np.uint16)[order], kind="stable")]
     return order

@@ -12,14 +12,12 @@ import selectors
 import subprocess
 import sys
 import threading
-from abc import ABC, abstractmethod
 from collections import deque
 from collections.abc import Iterator, Sequence
 from concurrent.futures import ThreadPoolExecutor
-from contextlib import contextmanager
+from contextlib import closing, contextmanager
 from pathlib import Path
-from types import TracebackType
-from typing import Any, Protocol, Self
+from typing import Any, Protocol
 
 from colloc import errors
 from colloc.counts.tasks import Facts, perform
@@ -56,23 +54,7 @@ class Alone:
             yield perform(self._store, name, arguments)
 
 
-class _Closing(ABC):
-    """A context manager that closes."""
-
-    @abstractmethod
-    def close(self) -> None:
-        """End whatever is at work."""
-
-    def __enter__(self) -> Self:
-        return self
-
-    def __exit__(
-        self, kind: type[BaseException] | None, error: BaseException | None, traceback: TracebackType | None
-    ) -> None:
-        self.close()
-
-
-class Workers(_Closing):
+class Workers:
     """Several processes that share the tasks out among themselves.
 
     Raises
@@ -165,7 +147,7 @@ class Workers(_Closing):
             process.wait()
 
 
-class Threads(_Closing):
+class Threads:
     """Several threads of this process: compiled loops run beside each other, and nothing has to be started."""
 
     def __init__(self, path: Path, jobs: int) -> None:
@@ -208,10 +190,10 @@ def crew(store: Store, jobs: int) -> Iterator[Crew]:
         yield Alone(store)
         return
     if compiled():
-        with Threads(store.path, jobs) as threads:
+        with closing(Threads(store.path, jobs)) as threads:
             yield threads
         return
-    with Workers(store.path, jobs) as workers:
+    with closing(Workers(store.path, jobs)) as workers:
         yield workers
 
 

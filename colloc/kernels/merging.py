@@ -1,4 +1,4 @@
-"""Loops of merging runs of counted pairs and of turning them round."""
+"""Loops of merging runs of counted pairs and of putting them in order."""
 
 from __future__ import annotations
 
@@ -78,78 +78,25 @@ def pair_up(
     return n + 1
 
 
-@kernel(
-    "void(uint32[::1], uint32[::1], int64[::1], int64[::1], uint32[::1], int64[::1],"
-    " uint32[::1], uint32[::1], int64[::1], int64[::1])"
-)
-def deal(
-    low: NDArray[np.uint32],
-    high: NDArray[np.uint32],
-    forward: NDArray[np.int64],
-    backward: NDArray[np.int64],
-    bounds: NDArray[np.uint32],
-    edges: NDArray[np.int64],
-    low_out: NDArray[np.uint32],
-    high_out: NDArray[np.uint32],
-    forward_out: NDArray[np.int64],
-    backward_out: NDArray[np.int64],
-) -> None:
-    """Group pairs stably by the range of their higher term.
+@kernel("void(uint32[::1], int64[::1], int64[::1])")
+def order_by_value(values: NDArray[np.uint32], places: NDArray[np.int64], order: NDArray[np.int64]) -> None:
+    """The stable order of values.
 
     Parameters
     ----------
-    bounds : uint32 array, shape (groups - 1,)
-        First higher term of every group but the first, ascending.
-    edges : int64 array of zeros, shape (groups + 1,)
-        Receives where each group begins, and at the end the number of pairs.
+    places : int64 array of zeros
+        One for each value from 0 to the largest.
+    order : int64 array, shape (n,)
+        Receives where the least value stands, and so on.
     """
-    groups = len(edges) - 1
-    for i in range(len(high)):
-        edges[np.searchsorted(bounds, high[i], side="right") + 1] += 1
-    for group in range(groups):
-        edges[group + 1] += edges[group]
-    # Each start is moved through its group; when all are placed it is where the next group begins.
-    for i in range(len(high)):
-        group = np.searchsorted(bounds, high[i], side="right")
-        place = edges[group]
-        edges[group] = place + 1
-        low_out[place] = low[i]
-        high_out[place] = high[i]
-        forward_out[place] = forward[i]
-        backward_out[place] = backward[i]
-    for group in range(groups, 0, -1):
-        edges[group] = edges[group - 1]
-    edges[0] = 0
-
-
-@kernel(
-    "void(uint32[::1], uint32[::1], int64[::1], int64[::1], int64, int64[::1],"
-    " uint32[::1], uint32[::1], int64[::1], int64[::1])"
-)
-def sort_by_high(
-    low: NDArray[np.uint32],
-    high: NDArray[np.uint32],
-    forward: NDArray[np.int64],
-    backward: NDArray[np.int64],
-    least: int,
-    places: NDArray[np.int64],
-    low_out: NDArray[np.uint32],
-    high_out: NDArray[np.uint32],
-    forward_out: NDArray[np.int64],
-    backward_out: NDArray[np.int64],
-) -> None:
-    """Sort pairs stably by the higher term; ``places`` (zeros) has a place for each from ``least`` to the largest."""
-    for i in range(len(high)):
-        places[high[i] - least] += 1
+    for i in range(len(values)):
+        places[values[i]] += 1
     total = 0
-    for term in range(len(places)):
-        here = places[term]
-        places[term] = total
+    for value in range(len(places)):
+        here = places[value]
+        places[value] = total
         total += here
-    for i in range(len(high)):
-        place = places[high[i] - least]
-        places[high[i] - least] = place + 1
-        low_out[place] = low[i]
-        high_out[place] = high[i]
-        forward_out[place] = forward[i]
-        backward_out[place] = backward[i]
+    for i in range(len(values)):
+        place = places[values[i]]
+        places[values[i]] = place + 1
+        order[place] = i

@@ -7,6 +7,7 @@ import signal
 import subprocess
 import sys
 import time
+from contextlib import closing
 from pathlib import Path
 
 import numpy as np
@@ -75,7 +76,10 @@ def test_errors_of_workers_keep_their_kind_and_message(store_path: Path) -> None
         nowhere["begins"] |= {"path": str(store_path.parent / "b"), "n": 1}
         nowhere["stops"] |= {"path": str(store_path.parent / "e"), "n": 1}
         task = ("count", {"spec": TallySpec().to_json(), "selection": nowhere, **arguments})
-        with Workers(store.path, 1) as workers, pytest.raises(StoreDamagedError, match="block 1 of the token stream"):
+        with (
+            closing(Workers(store.path, 1)) as workers,
+            pytest.raises(StoreDamagedError, match="block 1 of the token stream"),
+        ):
             list(workers.results([task]))
 
 

@@ -144,3 +144,10 @@ def test_radix_passes_sort(values: list[int], digit: int) -> None:
     np.testing.assert_array_equal(alone, keys[order])
     np.testing.assert_array_equal(beside[0], keys[order])
     np.testing.assert_array_equal(beside[1], counts[order])
+
+
+@given(st.lists(st.integers(0, 500), max_size=300))
+def test_order_of_values_is_the_stable_one(values: list[int]) -> None:
+    found = np.empty(len(values), np.int64)
+    merging.order_by_value(np.array(values, np.uint32), np.zeros(501, np.int64), found)
+    np.testing.assert_array_equal(found, np.argsort(np.array(values, np.uint32), kind="stable"))

@@ -14,7 +14,7 @@ from colloc.answers.expressions.judging import judge
 from colloc.answers.expressions.measures import MEASURES
 from colloc.answers.expressions.ranking import looked_up, scores_of
 from colloc.answers.expressions.settings import CONTIGUOUS_ONLY, Asked, ExpressionOptions, resolve
-from colloc.counts.sequences.growing import Grower, growing
+from colloc.counts.sequences.growing import Grower
 from colloc.counts.sequences.levels import Level
 from colloc.counts.sequences.sharing import MOST_WORDS
 from colloc.records import FloatArray, Int64Array, UInt64Array
@@ -61,15 +61,7 @@ def given_expressions(
     columns["count"], columns["documents"] = np.zeros(len(sequences)), np.zeros(len(sequences))
     shapes = [_shape(terms) for terms in sequences]
     framed = np.array([shape[-1] >= len(shape) for shape in shapes], np.bool_)
-    with growing(
-        store,
-        layer=asked.layer,
-        where=asked.where,
-        inside=asked.inside,
-        min_count=options.min_count,
-        jobs=jobs,
-        memory=memory,
-    ) as grower:
+    with asked.growing(store, jobs, memory) as grower:
         for frames in (False, True):
             chosen = np.flatnonzero(framed == frames)
             if not len(chosen):

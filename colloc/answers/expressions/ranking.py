@@ -20,7 +20,7 @@ from colloc.answers.expressions.settings import Asked, ExpressionOptions, resolv
 from colloc.answers.expressions.sureness import split_intervals
 from colloc.answers.patterns import matches
 from colloc.counts.runs import Column
-from colloc.counts.sequences.growing import Grower, growing
+from colloc.counts.sequences.growing import Grower
 from colloc.records import Int64Array
 from colloc.settings import DEFAULT_MEMORY
 from colloc.store.connection import Store
@@ -55,15 +55,7 @@ def expressions(
     asked = resolve(store, options)
     shown = shown_columns(show, options)
     tell = progress if progress is not None else _silent
-    with growing(
-        store,
-        layer=asked.layer,
-        where=asked.where,
-        inside=asked.inside,
-        min_count=options.min_count,
-        jobs=jobs,
-        memory=memory,
-    ) as grower:
+    with asked.growing(store, jobs, memory) as grower:
         if options.any_order:
             return ranked_sets(store, asked, grower, limit, tell).select(shown)
         pattern = options.pattern

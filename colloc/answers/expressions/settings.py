@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from contextlib import AbstractContextManager
 from dataclasses import dataclass
 from typing import Any, Literal
 
 from colloc.answers.expressions.measures import RANKS
 from colloc.answers.questions import built_spec
+from colloc.counts.sequences.growing import Grower, growing
 from colloc.counts.sequences.sharing import MOST_WORDS
 from colloc.errors import UsageError
 from colloc.settings import DEFAULT_MIN_COUNT, Inside
@@ -171,6 +173,18 @@ class Asked:
     inside: Inside
     where: str
     min_docs: int
+
+    def growing(self, store: Store, jobs: int | None, memory: int) -> AbstractContextManager[Grower]:
+        """Where sequences are grown for these options; its files and processes end with it."""
+        return growing(
+            store,
+            layer=self.layer,
+            where=self.where,
+            inside=self.inside,
+            min_count=self.options.min_count,
+            jobs=jobs,
+            memory=memory,
+        )
 
     def settings(self, store: Store) -> dict[str, Any]:
         """Everything that decides the numbers."""
