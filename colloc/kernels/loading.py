@@ -7,10 +7,10 @@ import warnings
 from contextlib import AbstractContextManager, nullcontext
 
 from colloc.hiding import hidden
-from colloc.kernels import characters, merging, numbers, pairs, sentences, words
+from colloc.kernels import characters, merging, numbers, pairs, sentences, slices, words
 from colloc.kernels.kernel import KERNELS
 
-MODULES = (characters, merging, numbers, pairs, sentences, words)
+MODULES = (characters, merging, numbers, pairs, sentences, slices, words)
 
 
 def _without_matrices() -> AbstractContextManager[None]:

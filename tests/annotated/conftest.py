@@ -8,9 +8,20 @@ from pathlib import Path
 import pytest
 
 from colloc.build.building import build
+from colloc.kernels import switch
 from colloc.store.opening import Store, open_for_reading
 
 from .treebanks import treebank_files
+
+
+@pytest.fixture(scope="module", params=["numpy", "compiled"])
+def loops(request: pytest.FixtureRequest) -> Iterator[None]:
+    """Each test of a module that uses it runs once with numpy and once with compiled loops."""
+    switch.use_numpy()
+    if request.param == "compiled":
+        assert switch.prefer_compiled(True), "numba is missing, or its cache cannot be written"
+    yield
+    switch.use_numpy()
 
 
 @pytest.fixture(scope="session")

@@ -23,6 +23,8 @@ from colloc.text.sources import open_sources
 
 from .treebanks import read_sentences, relation_counts, treebank
 
+pytestmark = pytest.mark.usefixtures("loops")
+
 PLUS = """# global.columns = ID FORM UPOS HEAD DEPREL MISC PARSEME:MWE
 # newdoc id = one
 # sent_id = 1

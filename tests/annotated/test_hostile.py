@@ -18,6 +18,8 @@ from colloc.store.stream import token_count
 
 from .treebanks import treebank
 
+pytestmark = pytest.mark.usefixtures("loops")
+
 
 def line(word: object, head: object = 0, form: str = "a", relation: str = "dep") -> str:
     """A word line."""

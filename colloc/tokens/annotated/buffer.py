@@ -8,6 +8,8 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.kernels import slices as loops
+from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, UInt8Array, UInt64Array
 
 WORD = 8
@@ -28,15 +30,17 @@ class Buffer:
     ----------
     data : bytes
     bytes : uint8 array, shape (n,)
+    padded : uint8 array, shape (n + 8,)
+        The same with zeros behind the end.
     words : uint64 array, shape (n + 1,)
-        Little-endian; zeros stand behind the end.
+        Little-endian, of ``padded``.
     """
 
     def __init__(self, data: bytes) -> None:
         self.data = data
-        padded = np.frombuffer(data + bytes(WORD), np.uint8)
-        self.bytes = padded[: len(data)]
-        self.words: UInt64Array = np.ndarray((len(data) + 1,), "<u8", padded, strides=(1,))
+        self.padded: UInt8Array = np.frombuffer(data + bytes(WORD), np.uint8)
+        self.bytes: UInt8Array = self.padded[: len(data)]
+        self.words: UInt64Array = np.ndarray((len(data) + 1,), "<u8", self.padded, strides=(1,))
 
     @cached_property
     def is_ascii(self) -> bool:
@@ -73,8 +77,23 @@ class Slices:
         return same
 
 
+def dividers(data: UInt8Array) -> tuple[Int64Array, Int64Array]:
+    """Where tabs and line feeds stand, and which of them (offsets) are line feeds."""
+    # They are neighbours: the bytes 9 and 10.
+    either = data - np.uint8(ord("\t")) < 2
+    if compiled():
+        places, ends = (np.empty(np.count_nonzero(one) + 1, np.int64) for one in (either, data == ord("\n")))
+        return places[:-1], ends[: loops.divide(data, places, ends)]
+    found = np.flatnonzero(either)
+    return found, np.flatnonzero(data[found] == ord("\n"))
+
+
 def gather(data: UInt8Array, slices: Slices) -> tuple[UInt8Array, Int64Array]:
     """The bytes of slices, one after the other, and where each begins among them."""
+    if compiled():
+        copied, firsts = np.empty(int(slices.lengths.sum()), np.uint8), np.empty(len(slices), np.int64)
+        loops.copy(data, slices.starts, slices.lengths, copied, firsts)
+        return copied, firsts
     ends = np.cumsum(slices.lengths)
     begins = ends - slices.lengths
     places = np.repeat(slices.starts - begins, slices.lengths)
@@ -114,6 +133,10 @@ def whole_numbers(buffer: Buffer, column: Slices) -> tuple[Int64Array, NDArray[n
 
     Eight digits are added up at once: neighbours to pairs, pairs to fours, fours to eights.
     """
+    if compiled():
+        numbers, wrong = np.empty(len(column), np.int64), np.empty(len(column), bool)
+        loops.read_numbers(buffer.padded, column.starts, column.lengths, numbers, wrong)
+        return numbers, wrong
     shorts = np.minimum(column.lengths, WORD)
     digits = buffer.words[column.starts] << _SHIFTS[shorts]
     first = (digits >> _SHIFTS[shorts]) & np.uint64(0xFF)

@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from colloc.errors import DataError
 from colloc.records import Annotation, Int64Array
-from colloc.tokens.annotated.buffer import Buffer, Slices, whole_numbers
+from colloc.tokens.annotated.buffer import Buffer, Slices, dividers, whole_numbers
 
 NOTHING = "_"
 """CoNLL-U's word for a field that is not specified."""
@@ -144,10 +144,7 @@ class _Splitting:
     def __init__(self, text: bytes, parts: Sequence[Part], annotation: Annotation) -> None:
         self._names = annotation.columns
         self._buffer = Buffer(text)
-        data = self._buffer.bytes
-        # Tab and line feed are neighbours: the bytes 9 and 10.
-        self._dividers = np.flatnonzero(data - np.uint8(ord("\t")) < 2)
-        self._ends = np.flatnonzero(data[self._dividers] == ord("\n"))
+        self._dividers, self._ends = dividers(self._buffer.bytes)
         """Of the dividers, those that end a line."""
         stops = self._dividers[self._ends]
         starts = np.zeros_like(stops)

@@ -9,6 +9,8 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from colloc.kernels import slices as loops
+from colloc.kernels.switch import compiled
 from colloc.records import Int64Array, UInt32Array, UInt64Array
 from colloc.tokens.annotated.buffer import MASKS, WORD, Buffer, Slices, gather
 from colloc.tokens.keytable import ABSENT, KeyTable
@@ -98,9 +100,7 @@ class SliceTable:
         return numbers, np.append(short[fresh], self._number_apart(buffer, slices, long, numbers))
 
     def _number(self, buffer: Buffer, slices: Slices) -> tuple[UInt32Array, Int64Array]:
-        tails = _tails(buffer, slices)
-        hashes = self._hashes(buffer, slices, tails)
-        numbers = self._table.find([hashes])
+        numbers, hashes, unequal = self._look_up(buffer, slices)
         absent = np.flatnonzero(numbers == ABSENT)
         fresh = absent
         if len(absent):
@@ -109,13 +109,48 @@ class SliceTable:
             fresh = absent[firsts[order]]
             given = np.empty(len(keys), np.uint32)
             given[order] = np.arange(len(self), len(self) + len(keys), dtype=np.uint32)
-            self._keep(buffer, slices.only(fresh), tails[fresh])
+            entered = slices.only(fresh)
+            self._keep(buffer, entered, _tails(buffer, entered))
             self._table.add([keys], given)
             numbers[absent] = given[inverse]
-        unequal = self._unequal(buffer, slices, tails, numbers)
+            # Of those that were not there, some may have the hash of others among them.
+            rest = slices.only(absent)
+            odd = self._unequal(buffer, rest, _tails(buffer, rest), numbers[absent])
+            unequal = np.union1d(unequal, absent[odd])
         if len(unequal):
             fresh = np.append(fresh, self._number_apart(buffer, slices, unequal, numbers))
         return numbers, fresh
+
+    def _look_up(self, buffer: Buffer, slices: Slices) -> tuple[UInt32Array, UInt64Array, Int64Array]:
+        """Numbers of slices by their hashes, ``ABSENT`` for none; the hashes; and which slices are not what is kept."""
+        if compiled():
+            numbers, hashes = np.empty(len(slices), np.uint32), np.empty(len(slices), np.uint64)
+            differing = np.empty(len(slices), bool)
+            table = self._table
+            keys, values = table.arrays
+            loops.look_up_slices(
+                buffer.padded,
+                slices.starts,
+                slices.lengths,
+                self._multiplier,
+                keys,
+                values,
+                table.multipliers[0],
+                np.uint64(table.shift),
+                self._kept.values,
+                self._starts.values,
+                self._lengths.values,
+                numbers,
+                hashes,
+                differing,
+            )
+            return numbers, hashes, np.flatnonzero(differing)
+        tails = _tails(buffer, slices)
+        hashes = self._hashes(buffer, slices, tails)
+        numbers = self._table.find([hashes])
+        there = np.flatnonzero(numbers != ABSENT)
+        found = slices if len(there) == len(slices) else slices.only(there)
+        return numbers, hashes, there[self._unequal(buffer, found, tails[there], numbers[there])]
 
     def _number_apart(self, buffer: Buffer, slices: Slices, rows: Int64Array, numbers: UInt32Array) -> Int64Array:
         """Number some slices by their bytes; tells the new ones."""

@@ -156,7 +156,7 @@ def _slices(lines: Lines, names: tuple[str, ...]) -> tuple[Buffer, Slices]:
     copied, begins = gather(lines.buffer.bytes, Slices(starts, lengths))
     # The last may have ended a line in some file and a field in another.
     copied[begins + lengths - 1] = ord("\t")
-    begins = begins[:: len(names)]
+    begins = begins[:: len(names)].copy()
     return Buffer(copied.tobytes()), Slices(begins, np.diff(begins, append=len(copied)) - 1)
 
 
