@@ -41,7 +41,7 @@ def divide(data: NDArray[np.uint8], dividers: NDArray[Any], ends: NDArray[Any]) 
     for divider in range(count):
         ends[lines] = np.int64(divider)
         lines += np.uint64(data[np.uint64(dividers[divider])] == _LINE_FEED)
-    return np.int64(lines)
+    return int(lines)
 
 
 @kernel(
@@ -93,13 +93,13 @@ def read_numbers(
     for row in range(len(starts)):
         start = np.uint64(starts[row])
         length = lengths[row]
-        number = 0
+        number = np.int64(0)
         wrong = length == 0 or length > _WORD or (length > 1 and data[start] == _ZERO)
         if not wrong:
             for k in range(np.uint64(length)):
-                digit = np.int64(data[start + k]) - _ZERO
+                digit = np.int64(data[start + k]) - np.int64(_ZERO)
                 wrong |= digit < 0 or digit > 9
-                number = 10 * number + digit
+                number = np.int64(10) * number + digit
         numbers[row] = number
         other[row] = wrong
 
